@@ -1,0 +1,99 @@
+"""Elements, isotopes and formulas, from ``data/isotopes.csv`` (masses AME 2020, weights CIAAW; sources in the file)."""
+
+from __future__ import annotations
+
+from collections import Counter
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass
+from functools import cache
+
+from heatwright.resources import data_rows
+
+
+@dataclass(frozen=True, slots=True)
+class Element:
+    """One element: atomic number, symbol, average weight (u) and its isotopes as (mass number, mass u, abundance %)."""
+
+    number: int
+    symbol: str
+    average_weight_u: float
+    isotopes: tuple[tuple[int, float, float], ...]
+
+    @property
+    def common_mass_u(self) -> float:
+        """Mass of the most abundant isotope, u."""
+        return max(self.isotopes, key=lambda isotope: isotope[2])[1]
+
+
+@cache
+def _elements() -> dict[int, Element]:
+    grouped: dict[int, list[dict[str, str]]] = {}
+    for row in data_rows("isotopes"):
+        grouped.setdefault(int(row["atomic_number"]), []).append(row)
+    return {
+        number: Element(
+            number,
+            rows[0]["symbol"],
+            float(rows[0]["average_weight_u"]),
+            tuple((int(r["mass_number"]), float(r["mass_u"]), float(r["abundance_percent"])) for r in rows),
+        )
+        for number, rows in grouped.items()
+    }
+
+
+@cache
+def _numbers() -> dict[str, int]:
+    return {element.symbol: element.number for element in _elements().values()}
+
+
+def element(number: int) -> Element:
+    """The element with this atomic number.
+
+    Raises KeyError when the number is outside the table (1 to 103).
+
+    >>> element(6).symbol, element(6).common_mass_u
+    ('C', 12.0)
+    """
+    return _elements()[int(number)]
+
+
+def symbol(number: int) -> str:
+    """The element's symbol.
+
+    >>> symbol(17)
+    'Cl'
+    """
+    return element(number).symbol
+
+
+def atomic_number(sym: str) -> int:
+    """The atomic number of a symbol in any case; raises KeyError for an unknown one.
+
+    >>> atomic_number("CL")
+    17
+    """
+    return _numbers()[sym.capitalize()]
+
+
+def composition(numbers: Iterable[int]) -> dict[str, int]:
+    """Atoms by element symbol in Hill order: carbon, hydrogen, then by alphabet (all by alphabet without carbon).
+
+    >>> composition([8, 1, 6, 1, 1, 1])
+    {'C': 1, 'H': 4, 'O': 1}
+    """
+    counts = Counter(symbol(z) for z in numbers)
+    first = [s for s in ("C", "H") if s in counts] if "C" in counts else []
+    order = first + sorted(s for s in counts if s not in first)
+    return {s: counts[s] for s in order}
+
+
+def formula(atoms: Mapping[str, int], charge: int = 0) -> str:
+    """The formula of a composition, with its charge as sign and number.
+
+    >>> formula({"C": 1, "H": 4, "O": 1}), formula({"N": 1, "H": 4}, 1)
+    ('CH4O', 'NH4+')
+    """
+    text = "".join(f"{s}{n if n > 1 else ''}" for s, n in atoms.items())
+    if charge:
+        text += ("+" if charge > 0 else "-") * (1 if abs(charge) == 1 else 0) or f"{charge:+d}"
+    return text

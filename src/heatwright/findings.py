@@ -1,0 +1,155 @@
+"""Findings: what was noticed about an input, in one form for people and for scripts.
+
+A finding names *where* (file, line, atom or mode), *what was found*, *what was expected* and *what to do*.  Its code is
+registered in :data:`CODES`, the one table of everything heatwright can say about an input.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from dataclasses import dataclass
+from typing import Final, Literal
+
+from heatwright.errors import HeatwrightError
+
+Severity = Literal["refuse", "warn", "note"]
+
+SEVERITY_WORD: Final[dict[str, str]] = {"refuse": "error", "warn": "warning", "note": "note"}
+"""How each severity opens its line on the terminal."""
+
+CODES: Final[dict[str, str]] = {
+    # --- the file -------------------------------------------------------------------------------------------------
+    "file-missing": "The path names no readable file.",
+    "file-empty": "The file holds no bytes.",
+    "not-an-output": "The text is not the output of a quantum-chemistry program that heatwright reads.",
+    "parser-failed": "The output was recognised, but its text could not be read through to the end.",
+    "truncated": "The output ends before the data that are needed.",
+    "no-normal-termination": "The program's own closing line is missing, although the data needed are all there.",
+    "job-failed": "The program itself says that the job failed.",
+    "several-molecules": "The file holds jobs for more than one molecule; one of them has to be chosen.",
+    "several-jobs": "The file holds several jobs; which of them was read is said.",
+    "not-a-number": "A value that is needed is NaN or infinite.",
+    # --- what the job gives ---------------------------------------------------------------------------------------
+    "no-frequencies": "There are no vibrational modes in the output, so there is no thermochemistry to compute.",
+    "no-geometry": "There is no geometry in the output.",
+    "no-energy": "There is no total energy in the output.",
+    "no-charge": "The output does not state the molecule's charge.",
+    "no-multiplicity": "The output does not state the spin multiplicity.",
+    "energy-not-total": "The printed energy is not a total energy (a heat of formation, a bond energy against fragments).",
+    "masses-from-table": "The output does not print the atomic masses; those of the most abundant isotopes were taken.",
+    "average-masses": "The output used average atomic weights instead of isotopic masses.",
+    "non-default-isotope": "An atom has a mass that is neither its most abundant isotope's nor its average weight.",
+    "ghost-atoms": "The output holds ghost or dummy atoms.",
+    "atoms-disagree": "Geometry, atoms, masses and modes in the output do not describe the same molecule.",
+    "multiplicity-impossible": "The spin multiplicity cannot belong to this number of electrons.",
+    # --- is it a minimum ------------------------------------------------------------------------------------------
+    "imaginary-modes": "The structure is not a minimum: there are imaginary modes.",
+    "mode-count": "The number of vibrational modes is not 3N−6 (3N−5 for a linear molecule).",
+    "not-stationary": "The geometry of the frequencies is not a stationary point.",
+    "printed-values-differ": "The output's own zero-point energy, enthalpy or entropy is not reproduced from its modes.",
+    "zero-wavenumber": "A vibrational mode has no or nearly no wavenumber.",
+    # --- scans ----------------------------------------------------------------------------------------------------
+    "rigid-scan": "The scan was done without relaxing the rest of the molecule; it is no torsional potential.",
+    # --- choices made for the user --------------------------------------------------------------------------------
+    "symmetry-ambiguous": "The geometry is close to a symmetry that was not accepted, or only just fits the one that was.",
+    "user-value": "A value was given by the user and replaces what the output or the geometry says.",
+    "spin-degeneracy": "No electronic levels are known for the species; the spin degeneracy 2S+1 was taken.",
+    "linear-radical": "A linear open-shell molecule outside the table: its spatial degeneracy is not known.",
+    "atom-not-ground-state": "An atom is not in the multiplicity of its ground state.",
+    "unscaled": "Wavenumbers and zero-point energy were used as computed, without a scale factor.",
+    "name-from-formula": "The file's name cannot serve as a species name, so the formula was taken.",
+    "source-not-stated": "An enthalpy of formation was given without its source.",
+    # --- formation ------------------------------------------------------------------------------------------------
+    "no-formation": "An entry needs an enthalpy of formation and there is no way to it.",
+    "level-differs": "Energies that have to be combined were not computed at the same level of theory.",
+    "level-trusted": "Energies of different programs or levels were combined because the user said so.",
+    "level-unknown": "A part of the level of theory is not printed, so it could not be compared.",
+    "atom-missing": "There is no atom output for an element of the molecule.",
+    "atom-twice": "Two outputs hold the same atom, and they disagree.",
+    "no-reference": "There is no reference enthalpy for an element.",
+    # --- fitting and writing --------------------------------------------------------------------------------------
+    "temperature-range": "The temperatures asked for cannot carry a two-range polynomial anchored at 298.15 K.",
+    "name-unfit": "The species name does not fit the format's field or cannot be read back from it.",
+    "composition-unfit": "The composition cannot be written in this format.",
+    "value-unfit": "A number does not fit its fixed field.",
+    "duplicate-name": "Two species of one output file would carry the same name.",
+    "target-exists": "The file to be written exists already.",
+    "target-unwritable": "The file to be written cannot be written.",
+    "template-failed": "The user's template could not be rendered.",
+}
+"""Every code a finding may carry, and what it means."""
+
+
+@dataclass(frozen=True, slots=True)
+class Finding:
+    """One thing noticed about an input.
+
+    severity : ``refuse`` (cannot be used), ``warn`` (used, but look at it) or ``note`` (a choice that was made).
+    code : a key of :data:`CODES`.
+    found : what was found, as the start of a sentence without a full stop.
+    where : file, line, atom or mode; empty when the file as a whole is meant and is named by the caller.
+    expected : what was expected, or empty.
+    action : what to do, a whole sentence, or empty.
+    """
+
+    severity: Severity
+    code: str
+    found: str
+    where: str = ""
+    expected: str = ""
+    action: str = ""
+
+    def __post_init__(self) -> None:
+        if self.code not in CODES:
+            raise ValueError(f"finding code {self.code!r} is not registered in heatwright.findings.CODES")
+
+    @property
+    def text(self) -> str:
+        """The finding as one or two sentences, without severity and code."""
+        head = f"{self.where}: {self.found}" if self.where else self.found
+        if self.expected:
+            head = f"{head}; expected {self.expected}"
+        return f"{head}. {self.action}".rstrip() if self.action else f"{head}."
+
+    def __str__(self) -> str:
+        return f"{SEVERITY_WORD[self.severity]}: {self.text} [{self.code}]"
+
+    def at(self, where: str) -> Finding:
+        """The same finding with *where* put before what it already says of its place."""
+        place = f"{where}:{self.where}" if self.where else where
+        return Finding(self.severity, self.code, self.found, place, self.expected, self.action)
+
+    def as_json(self) -> dict[str, str]:
+        """Severity, code and text, as ``--json`` shows them."""
+        return {"severity": self.severity, "code": self.code, "text": self.text}
+
+
+def refuse(code: str, found: str, *, where: str = "", expected: str = "", action: str = "") -> Finding:
+    """A finding that makes the input unusable."""
+    return Finding("refuse", code, found, where, expected, action)
+
+
+def warn(code: str, found: str, *, where: str = "", expected: str = "", action: str = "") -> Finding:
+    """A finding the user should look at; the input is used."""
+    return Finding("warn", code, found, where, expected, action)
+
+
+def note(code: str, found: str, *, where: str = "", expected: str = "", action: str = "") -> Finding:
+    """A choice that was made and is said."""
+    return Finding("note", code, found, where, expected, action)
+
+
+class Refused(HeatwrightError):
+    """One input cannot be used; ``findings`` says why (at least one of them has severity ``refuse``)."""
+
+    def __init__(self, findings: Iterable[Finding]) -> None:
+        self.findings = tuple(findings)
+        super().__init__(self.findings)
+
+    def __str__(self) -> str:
+        return "\n".join(str(f) for f in self.findings)
+
+
+def refusals(findings: Iterable[Finding]) -> tuple[Finding, ...]:
+    """Those findings that make an input unusable."""
+    return tuple(f for f in findings if f.severity == "refuse")

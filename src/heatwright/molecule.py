@@ -1,0 +1,157 @@
+"""Molecule: what one quantum-chemistry output says, in one set of units and with nothing of its program's habits left."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field, replace
+from typing import Any, Literal
+
+import numpy as np
+from numpy.typing import NDArray
+
+from heatwright.findings import Finding
+
+FloatArray = NDArray[np.float64]
+IntArray = NDArray[np.int64]
+
+Kind = Literal["frequency", "energy", "optimisation", "relaxed scan", "rigid scan", "atom", "unknown"]
+MassKind = Literal["isotopic", "average"]
+
+
+@dataclass(frozen=True, slots=True)
+class Source:
+    """Where a molecule was read from: path as given, SHA-256 of the file's bytes, program and its version."""
+
+    file: str
+    sha256: str
+    program: str
+    version: str
+
+    @property
+    def program_version(self) -> str:
+        """Program and version as one phrase, ``NWChem 7.0.2``."""
+        return f"{self.program} {self.version}".rstrip()
+
+
+@dataclass(frozen=True, slots=True)
+class Level:
+    """A level of theory as far as the output prints it; ``None`` or an empty text means "not printed".
+
+    method : normalised name, ``HF``, ``B3LYP``, ``MP2``, ``CCSD(T)``.
+    basis : normalised name, ``6-31G*``, ``cc-pVTZ``.
+    functional : what tells variants of one functional name apart, for instance the correlation part ``VWN1RPA``
+        (``VWN5`` in other programs) of B3LYP; for methods other than density functionals empty.
+    spherical : True for pure (5d, 7f) functions, False for Cartesian ones.
+    frozen_core : ``"all"`` when all electrons are correlated, ``"frozen"`` or a count such as ``"frozen 2"``.
+    core_potential : name of an effective core potential.
+    dispersion : ``"D3BJ"`` and the like.
+    solvent : continuum model and solvent.
+    program : the program's family, without version.
+    """
+
+    method: str
+    basis: str
+    functional: str = ""
+    spherical: bool | None = None
+    frozen_core: str = ""
+    core_potential: str = ""
+    dispersion: str = ""
+    solvent: str = ""
+    program: str = ""
+
+    @property
+    def label(self) -> str:
+        """Method and basis as a chemist writes them, ``B3LYP-D3BJ/6-31G*``."""
+        method = f"{self.method}-{self.dispersion}" if self.dispersion else self.method
+        label = f"{method}/{self.basis}" if self.basis else method
+        return f"{label} ({self.solvent})" if self.solvent else label
+
+
+@dataclass(frozen=True, slots=True)
+class PrintedThermo:
+    """What the program itself printed of its thermochemistry at one temperature: a check, never an input.
+
+    zpe_hartree, enthalpy_correction_hartree (H(T) − E_electronic, zero-point energy included), entropy_J_mol_K,
+    temperature_K, pressure_Pa, symmetry_number; ``None`` where nothing is printed.
+    """
+
+    temperature_K: float | None = None
+    pressure_Pa: float | None = None
+    symmetry_number: int | None = None
+    zpe_hartree: float | None = None
+    enthalpy_correction_hartree: float | None = None
+    entropy_J_mol_K: float | None = None
+
+
+@dataclass(frozen=True, eq=False, kw_only=True)
+class Molecule:
+    """One molecule from one output.
+
+    atomic_numbers : (n,) int.
+    masses_u : (n,) atomic masses in u; ``mass_kind`` says whether isotopic or average; ``masses_printed`` whether the
+        output gave them (else they come from the table of the most abundant isotopes).
+    coordinates_A : (n, 3) in Å, the geometry of the frequencies.
+    wavenumbers_cm1 : (m,) in 1/cm, ascending, translations and rotations removed, imaginary ones negative;
+        empty when the job has no frequencies.
+    normal_modes : (m, n, 3) Cartesian displacements (not mass-weighted, each of norm 1), same order, or None.
+    hessian_hartree_bohr2 : (3n, 3n) Cartesian force constants in hartree/bohr², or None.
+    energies_hartree : every total energy by name (``SCF``, ``MP2``, ``CCSD(T)``); ``energy_kind`` is the one in use.
+    max_gradient_hartree_bohr : largest component of the gradient at this geometry, or None.
+    printed : the program's own thermochemistry, one item for each temperature.
+    n_jobs : how many jobs the file holds; ``job`` counts from 1.
+    """
+
+    source: Source
+    kind: Kind
+    atomic_numbers: IntArray
+    masses_u: FloatArray
+    mass_kind: MassKind
+    masses_printed: bool
+    coordinates_A: FloatArray
+    wavenumbers_cm1: FloatArray = field(default_factory=lambda: np.empty(0))
+    normal_modes: FloatArray | None = None
+    hessian_hartree_bohr2: FloatArray | None = None
+    energies_hartree: Mapping[str, float] = field(default_factory=dict)
+    energy_kind: str = ""
+    charge: int | None = None
+    multiplicity: int | None = None
+    level: Level | None = None
+    max_gradient_hartree_bohr: float | None = None
+    printed: tuple[PrintedThermo, ...] = ()
+    job: int = 1
+    n_jobs: int = 1
+    findings: tuple[Finding, ...] = ()
+
+    @property
+    def n_atoms(self) -> int:
+        """Number of atoms."""
+        return int(self.atomic_numbers.size)
+
+    @property
+    def is_atom(self) -> bool:
+        """Whether this is a single atom."""
+        return self.n_atoms == 1
+
+    @property
+    def energy_hartree(self) -> float | None:
+        """The electronic energy in use, hartree."""
+        return self.energies_hartree.get(self.energy_kind)
+
+    @property
+    def n_imaginary(self) -> int:
+        """Number of imaginary modes."""
+        return int(np.count_nonzero(self.wavenumbers_cm1 < 0.0))
+
+    @property
+    def mass_u(self) -> float:
+        """Molecular mass, u."""
+        return float(self.masses_u.sum())
+
+    @property
+    def has_thermochemistry(self) -> bool:
+        """Whether the output carries all that a partition function needs: modes, or a single atom."""
+        return self.is_atom or self.wavenumbers_cm1.size > 0
+
+    def but(self, **changes: Any) -> Molecule:
+        """A copy with some fields changed."""
+        return replace(self, **changes)

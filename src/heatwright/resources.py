@@ -1,0 +1,40 @@
+"""Files that belong to the project: templates, sample outputs and data tables, from a wheel or from a checkout."""
+
+from __future__ import annotations
+
+import csv
+from functools import cache
+from importlib.resources import files
+from importlib.resources.abc import Traversable
+from pathlib import Path
+
+from heatwright.errors import ShippedFileMissing
+
+
+def _shipped(name: str) -> Traversable:
+    """The folder *name*, which an installed package carries inside itself and a checkout at its top."""
+    installed = files("heatwright").joinpath(f"_{name}")
+    if installed.is_dir():
+        return installed
+    checkout = Path(__file__).resolve().parents[2] / name
+    if checkout.is_dir():
+        return checkout
+    raise ShippedFileMissing(f"the folder {name!r} is neither inside the installed package nor at {checkout}")
+
+
+def templates() -> Traversable:
+    """The folder of the text templates."""
+    return _shipped("templates")
+
+
+def sample_outputs() -> Traversable:
+    """The folder of the sample outputs."""
+    return _shipped("sample_outputs")
+
+
+@cache
+def data_rows(name: str) -> tuple[dict[str, str], ...]:
+    """The rows of ``data/NAME.csv`` as texts by column name; lines that start with ``#`` are its sources."""
+    text = files("heatwright").joinpath("data", f"{name}.csv").read_text(encoding="utf-8")
+    lines = [line for line in text.splitlines() if line and not line.startswith("#")]
+    return tuple(csv.DictReader(lines))
