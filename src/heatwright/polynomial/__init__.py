@@ -1,0 +1,1 @@
+"""polynomial: from a thermodynamic table to the two-range NASA polynomial, and how good that polynomial is."""
