@@ -69,6 +69,9 @@ CODES: Final[dict[str, str]] = {
     "no-reference": "There is no reference enthalpy for an element.",
     # --- fitting and writing --------------------------------------------------------------------------------------
     "temperature-range": "The temperatures asked for cannot carry a two-range polynomial anchored at 298.15 K.",
+    "cp-not-positive": "The fitted heat capacity is zero or negative somewhere in the range.",
+    "cp-above-classical": "The fitted heat capacity exceeds the classical limit by more than the fit error.",
+    "fit-not-closest": "The fit is farther from the heat capacity than the best polynomial of this kind needs to be.",
     "name-unfit": "The species name does not fit the format's field or cannot be read back from it.",
     "composition-unfit": "The composition cannot be written in this format.",
     "value-unfit": "A number does not fit its fixed field.",

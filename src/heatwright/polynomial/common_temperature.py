@@ -11,13 +11,16 @@ from typing import Final
 
 import numpy as np
 
+from heatwright.constants import STANDARD_TEMPERATURE_K
 from heatwright.molecule import FloatArray
 from heatwright.polynomial.minimax import NOISE, design, minimax_errors
 
 USUAL_COMMON_K: Final = 1000.0
 """The common temperature most files have, and the one preferred among equals."""
 LEAST_WIDTH_K: Final = 100.0
-"""Each range has to be at least this wide, K: a quartic on less needs more digits than the text field has."""
+LEAST_END_RATIO: Final = 1.2
+"""Each range has to be 100 K wide, and the high one has to end at 1.2 times the common temperature: the coefficients
+of a quartic on less are so large that nine digits no longer carry it."""
 
 _NODES: Final = 24
 _ITERATIONS: Final = 12
@@ -44,9 +47,17 @@ def best_common_temperature(cp_R: Callable[[FloatArray], FloatArray], t_low_K: f
     return min(errors, key=lambda t: _rank(t, errors))
 
 
+def common_limits(t_low_K: float, t_high_K: float) -> tuple[float, float]:
+    """Lowest and highest common temperature (K) that the ends of the range allow; lowest > highest if there is none."""
+    above_standard = float(np.nextafter(STANDARD_TEMPERATURE_K, np.inf))
+    lowest = max(t_low_K + LEAST_WIDTH_K, above_standard)
+    return lowest, min(t_high_K - LEAST_WIDTH_K, t_high_K / LEAST_END_RATIO)
+
+
 def search_interval(t_low_K: float, t_high_K: float) -> tuple[float, float]:
     """First and last common temperature that the search looks at, K: 600 to 2000 K where the range allows."""
-    lowest, highest = np.ceil(t_low_K + LEAST_WIDTH_K), np.floor(t_high_K - LEAST_WIDTH_K)
+    lowest, highest = common_limits(t_low_K, t_high_K)
+    lowest, highest = float(np.ceil(lowest)), float(np.floor(highest))
     upper = max(min(2000.0, 0.6 * t_high_K), 0.2 * t_high_K)
     first = _nearest(600.0, lowest, highest)
     return first, max(first, float(np.floor(min(upper, highest))))

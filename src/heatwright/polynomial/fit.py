@@ -16,7 +16,12 @@ import numpy as np
 from heatwright.constants import STANDARD_TEMPERATURE_K
 from heatwright.findings import Finding, Refused, refuse
 from heatwright.molecule import FloatArray
-from heatwright.polynomial.common_temperature import LEAST_WIDTH_K, USUAL_COMMON_K, best_common_temperature
+from heatwright.polynomial.common_temperature import (
+    LEAST_WIDTH_K,
+    USUAL_COMMON_K,
+    best_common_temperature,
+    common_limits,
+)
 from heatwright.polynomial.minimax import Minimax, design, minimax
 from heatwright.polynomial.nasa7 import Coefficients, Nasa7, cp_of, h_of, round_coefficient, s_of
 
@@ -119,23 +124,21 @@ def check_temperatures(t_low_K: float, t_common_K: float | Literal["auto"], t_hi
 
 
 def _range_fault(t_low: float, t_common: float | None, t_high: float) -> Finding | None:
-    asked = " to ".join(f"{t:g}" for t in (t_low, t_common, t_high) if t is not None)
-    width = LEAST_WIDTH_K if t_common is not None else 2.0 * LEAST_WIDTH_K
-    middle, its_name = (t_low, "start") if t_common is None else (t_common, "common temperature")
+    lowest, highest = common_limits(t_low, t_high)
     # NaN fails every comparison and is refused with the rest.
     if not 0.0 < t_low <= LATEST_START_K:
         expected = f"a start above 0 and at most {LATEST_START_K:g} K"
         action = "The low range has to carry the enthalpy of formation, which belongs to 298.15 K"
-    elif t_common is not None and not (t_common > STANDARD_TEMPERATURE_K and t_common - t_low >= width):
-        expected = f"a common temperature above 298.15 K and at least {width:g} K above the start"
-        action = "Choose another common temperature, or let it be searched for"
-    elif not (np.isfinite(t_high) and t_high - middle >= width):
-        expected = f"an end at least {width:g} K above the {its_name}"
+    elif not (np.isfinite(t_high) and np.ceil(lowest) <= highest):
+        expected = f"an end that leaves room for two ranges of {LEAST_WIDTH_K:g} K, joined above 298.15 K"
         action = "A quartic on a shorter range needs more digits than its fields have"
+    elif t_common is not None and not lowest <= t_common <= highest:
+        expected = f"a common temperature of {lowest:g} to {highest:g} K, above 298.15 K and apart from both ends"
+        action = "Choose another common temperature, or let it be searched for"
     else:
         return None
-    found = f"a range of {asked} K was asked for"
-    return refuse("temperature-range", found, expected=expected, action=action)
+    asked = " to ".join(f"{t:g}" for t in (t_low, t_common, t_high) if t is not None)
+    return refuse("temperature-range", f"a range of {asked} K was asked for", expected=expected, action=action)
 
 
 def _check_anchors(h298_R_K: float, s298_R: float) -> None:
@@ -168,7 +171,8 @@ def _best_over_common(cp_R: HeatCapacity, t_low_K: float, t_high_K: float) -> tu
     """The searched common temperature, or 1000 K when the full fit there is no worse."""
     found = best_common_temperature(cp_R, float(t_low_K), float(t_high_K))
     fits = {found: _fit_at(cp_R, t_low_K, found, t_high_K)}
-    if t_low_K + LEAST_WIDTH_K <= USUAL_COMMON_K <= t_high_K - LEAST_WIDTH_K:
+    lowest, highest = common_limits(t_low_K, t_high_K)
+    if lowest <= USUAL_COMMON_K <= highest:
         fits.setdefault(USUAL_COMMON_K, _fit_at(cp_R, t_low_K, USUAL_COMMON_K, t_high_K))
     best = min(fits, key=lambda t: (fits[t].error, t))
     return best, fits[best]

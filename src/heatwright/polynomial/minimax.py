@@ -27,6 +27,7 @@ NOISE: Final = 1.0e-12
 
 _WEIGHT_GAIN: Final = 1.0e-3
 _LEAST_WEIGHT: Final = 1.0e-10
+_SMALLEST: Final = 1.0e-300
 
 
 @dataclass(frozen=True, eq=False)
@@ -102,29 +103,32 @@ def minimax(design: Design, cp_R: FloatArray) -> Minimax:
 
 def _lawson(Q: FloatArray, f: FloatArray, noise: float) -> tuple[FloatArray, float, float, int]:
     n, m = Q.shape
-    best, error, bound = np.zeros(m), float(np.abs(f).max()), 0.0
+    best: FloatArray = np.zeros(m)
+    error, bound = float(np.abs(f).max()), 0.0
     if error <= noise:
         return best, error, 0.0, 0
     w: FloatArray = np.full(n, 1.0 / n)
-    iteration = 0
-    while iteration < MAX_ITERATIONS and error > max(STOP_RATIO * bound, noise):
-        iteration += 1
+    for iteration in range(1, MAX_ITERATIONS + 1):
         wQ = w[:, None] * Q
         y = np.linalg.solve(Q.T @ wQ, wQ.T @ f)
-        r = np.abs(Q @ y - f)
+        r: FloatArray = np.abs(Q @ y - f)
         largest = float(r.max())
         if largest < error:
             best, error = y, largest
         wr = w * r
-        bound = max(bound, float(wr @ r / wr.sum())) if largest > 0.0 else 0.0
-        w = _heavier(w, wr, largest)
+        bound = max(bound, float(wr @ r) / max(float(wr.sum()), _SMALLEST))
+        if error <= max(STOP_RATIO * bound, noise) or iteration == MAX_ITERATIONS:
+            break
+        w = _heavier(w, wr, np.array(largest))
     return best, error, min(bound, error), iteration
 
 
-def _heavier(w: FloatArray, wr: FloatArray, largest: float | FloatArray) -> FloatArray:
+def _heavier(w: FloatArray, wr: FloatArray, largest: FloatArray) -> FloatArray:
     """The next weights: w·|r|, with a little of the old ones so that no point is lost for good."""
     w = wr + _WEIGHT_GAIN * largest * w
-    return np.maximum(w / w.sum(axis=-1, keepdims=True), _LEAST_WEIGHT / w.shape[-1])
+    normalised: FloatArray = w / w.sum(axis=-1, keepdims=True)
+    floored: FloatArray = np.maximum(normalised, _LEAST_WEIGHT / w.shape[-1])
+    return floored
 
 
 def minimax_errors(Q: FloatArray, f: FloatArray, iterations: int) -> FloatArray:
@@ -133,15 +137,15 @@ def minimax_errors(Q: FloatArray, f: FloatArray, iterations: int) -> FloatArray:
     Q : (p, 2n, 8) orthonormal designs; f : (p, 2n) heat capacities; returns (p,).
     """
     p, n, _ = Q.shape
-    w = np.full((p, n), 1.0 / n)
+    w: FloatArray = np.full((p, n), 1.0 / n)
     error, bound = np.full(p, np.inf), np.zeros(p)
     for _ in range(iterations):
         wQ = w[:, :, None] * Q
         y = np.linalg.solve(Q.transpose(0, 2, 1) @ wQ, (f[:, None, :] @ wQ)[:, 0, :, None])
-        r = np.abs((Q @ y)[:, :, 0] - f)
-        largest = np.maximum(r.max(axis=1), np.finfo(float).tiny)
+        r: FloatArray = np.abs((Q @ y)[:, :, 0] - f)
+        largest: FloatArray = np.maximum(r.max(axis=1), _SMALLEST)
         error = np.minimum(error, largest)
-        wr = w * r
-        bound = np.maximum(bound, (wr * r).sum(axis=1) / np.maximum(wr.sum(axis=1), np.finfo(float).tiny))
+        wr: FloatArray = w * r
+        bound = np.maximum(bound, (wr * r).sum(axis=1) / np.maximum(wr.sum(axis=1), _SMALLEST))
         w = _heavier(w, wr, largest[:, None])
     return np.asarray(np.sqrt(error * bound))

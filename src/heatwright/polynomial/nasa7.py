@@ -48,14 +48,16 @@ def round_coefficient(value: float, digits: int = TEXT_DIGITS) -> float:
     if abs(rounded) < 1.0e-99:
         return 0.0
     if abs(rounded) >= 1.0e100:
-        raise Refused([
-            refuse(
-                "value-unfit",
-                f"a polynomial coefficient is {value:.8E}",
-                expected="a magnitude below 1E+100, which a two-digit exponent can hold",
-                action="Check the heat capacity and the temperature range that were fitted",
-            )
-        ])
+        raise Refused(
+            [
+                refuse(
+                    "value-unfit",
+                    f"a polynomial coefficient is {value:.8E}",
+                    expected="a magnitude below 1E+100, which a two-digit exponent can hold",
+                    action="Check the heat capacity and the temperature range that were fitted",
+                )
+            ]
+        )
     return rounded
 
 

@@ -1,0 +1,189 @@
+"""How good a polynomial is: its residuals, its joint, its physics, and its distance from the best possible one.
+
+Everything is computed from the coefficients as they are printed.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+
+from heatwright.findings import Finding, refuse, warn
+from heatwright.molecule import FloatArray
+from heatwright.polynomial.nasa7 import Nasa7, cp_of, h_of, s_of, slope_of
+
+Reference = Callable[[FloatArray], FloatArray] | FloatArray
+
+POINTS_PER_SPACING: Final = 200
+TEXT_RESOLUTION_R: Final = 1.0e-5
+"""Errors in Cp/R below this come from the nine digits of the text, not from the fit."""
+FAR_FROM_MINIMAX: Final = 1.10
+"""A fit whose error is more than this times the proven lower bound is pointed out."""
+
+
+@dataclass(frozen=True, slots=True)
+class Deviation:
+    """The largest absolute deviation of one function and the temperature where it occurs (K)."""
+
+    largest: float
+    at_K: float
+
+
+@dataclass(frozen=True, slots=True)
+class Jumps:
+    """High minus low range at the common temperature: Cp/R, H/R (K), S/R and d(Cp/R)/dT (1/K)."""
+
+    cp_R: float
+    h_R_K: float
+    s_R: float
+    dcp_R_K: float
+
+
+@dataclass(frozen=True, slots=True)
+class FitQuality:
+    """What there is to know about a polynomial against the functions it was made from.
+
+    dcp_R, dh_RT, ds_R : largest |ΔCp|/R, |ΔH|/RT and |ΔS|/R over the range.
+    jumps : discontinuities at the common temperature.
+    least_cp : smallest Cp/R, as a Deviation from zero.
+    greatest_cp : largest Cp/R and where.
+    minimax_dCp_R : proven lower bound of max |ΔCp|/R for any two quartics joined with continuous value and slope.
+    classical_limit_R : Cp/R that the species' equipartition limit allows, or None when it has none.
+    """
+
+    dcp_R: Deviation
+    dh_RT: Deviation
+    ds_R: Deviation
+    jumps: Jumps
+    least_cp: Deviation
+    greatest_cp: Deviation
+    minimax_dCp_R: float
+    classical_limit_R: float | None = None
+
+    @property
+    def ratio(self) -> float:
+        """Largest |ΔCp| over the proven lower bound; 1 when the error is no more than the text's last digits."""
+        if self.dcp_R.largest <= TEXT_RESOLUTION_R:
+            return 1.0
+        return self.dcp_R.largest / self.minimax_dCp_R if self.minimax_dCp_R > 0.0 else np.inf
+
+    @property
+    def exceeds_classical_limit(self) -> bool:
+        """Whether Cp goes above the classical limit by more than the fit error explains."""
+        limit = self.classical_limit_R
+        return limit is not None and self.greatest_cp.largest > limit + self.dcp_R.largest + TEXT_RESOLUTION_R
+
+    def findings(self) -> tuple[Finding, ...]:
+        """What has to be said about the polynomial; empty when all is well."""
+        candidates = (self._not_positive(), self._above_classical(), self._far_from_minimax())
+        return tuple(f for f in candidates if f is not None)
+
+    def _not_positive(self) -> Finding | None:
+        if self.least_cp.largest > 0.0:
+            return None
+        return refuse(
+            "cp-not-positive",
+            f"the polynomial's Cp/R is {self.least_cp.largest:.4g} at {self.least_cp.at_K:g} K",
+            expected="a positive heat capacity over the whole range",
+            action="Check the wavenumbers and electronic levels, or fit a shorter range",
+        )
+
+    def _above_classical(self) -> Finding | None:
+        if not self.exceeds_classical_limit:
+            return None
+        return warn(
+            "cp-above-classical",
+            f"the polynomial's Cp/R is {self.greatest_cp.largest:.4f} at {self.greatest_cp.at_K:g} K",
+            expected=f"at most the classical limit of {self.classical_limit_R:.4g}",
+            action="Check the number of modes, or fit a shorter range",
+        )
+
+    def _far_from_minimax(self) -> Finding | None:
+        if self.ratio <= FAR_FROM_MINIMAX:
+            return None
+        return warn(
+            "fit-not-closest",
+            f"the largest error in Cp/R is {self.dcp_R.largest:.4g}, at {self.dcp_R.at_K:g} K",
+            expected=f"at most {FAR_FROM_MINIMAX:g} times {self.minimax_dCp_R:.4g}, which no such polynomial can beat",
+            action="Look at the heat capacity for a step or a kink, or fit a shorter range",
+        )
+
+
+def fit_quality(
+    polynomial: Nasa7,
+    cp_R: Reference,
+    h_RT: Reference,
+    s_R: Reference,
+    lower_bound: float,
+    *,
+    classical_limit_R: float | None = None,
+) -> FitQuality:
+    """Compare *polynomial* with the functions it was made from, on :func:`quality_grid`.
+
+    cp_R, h_RT, s_R : functions of an array of temperatures (K), or their values at ``quality_grid(polynomial)``;
+        the enthalpy on the polynomial's own scale (enthalpy of formation at 298.15 K included).
+    lower_bound : proven lower bound of max |ΔCp|/R, as the fit gives it.
+    classical_limit_R : Cp/R at which all modes are classical, for species of rigid rotation and harmonic modes only.
+
+    >>> both = (2.5, 0.0, 0.0, 0.0, 0.0, 0.0, 4.0)
+    >>> atom = Nasa7(200.0, 1000.0, 6000.0, both, both)
+    >>> quality = fit_quality(atom, lambda T: 2.5 + 0.01 * (T > 5000), lambda T: 2.5 + 0 * T, atom.s_R, 0.005)
+    >>> round(quality.dcp_R.largest, 9), quality.ds_R.largest, round(quality.ratio, 6), quality.findings()[0].code
+    (0.01, 0.0, 2.0, 'fit-not-closest')
+    """
+    T = quality_grid(polynomial)
+    cp = polynomial.cp_R(T)
+    lowest, highest = int(np.argmin(cp)), int(np.argmax(cp))
+    return FitQuality(
+        dcp_R=_largest(T, cp - _values(cp_R, T)),
+        dh_RT=_largest(T, polynomial.h_RT(T) - _values(h_RT, T)),
+        ds_R=_largest(T, polynomial.s_R(T) - _values(s_R, T)),
+        jumps=jumps_at_common(polynomial),
+        least_cp=Deviation(float(cp[lowest]), float(T[lowest])),
+        greatest_cp=Deviation(float(cp[highest]), float(T[highest])),
+        minimax_dCp_R=lower_bound,
+        classical_limit_R=classical_limit_R,
+    )
+
+
+def quality_grid(polynomial: Nasa7) -> FloatArray:
+    """Ascending temperatures (K) that show every ripple: uniform in T and in ln T in each range, with all ends.
+
+    The common temperature is there twice, as itself for the low range and as the next number above for the high one.
+    """
+    t_low, t_common, t_high = polynomial.t_low_K, polynomial.t_common_K, polynomial.t_high_K
+    above = float(np.nextafter(t_common, np.inf))
+    return np.concatenate([_spread(t_low, t_common), _spread(above, t_high)])
+
+
+def jumps_at_common(polynomial: Nasa7) -> Jumps:
+    """Discontinuities of *polynomial* at its common temperature."""
+    low, high, T = polynomial.low, polynomial.high, np.array(polynomial.t_common_K)
+    cp, h, s, slope = (float(of(high, T) - of(low, T)) for of in (cp_of, h_of, s_of, slope_of))
+    return Jumps(cp, h, s, slope)
+
+
+def _spread(start: float, end: float) -> FloatArray:
+    inside = np.concatenate(
+        [
+            np.linspace(start, end, POINTS_PER_SPACING)[1:-1],
+            np.geomspace(start, end, POINTS_PER_SPACING)[1:-1],
+        ]
+    )
+    return np.unique(np.concatenate([[start], inside[(inside > start) & (inside < end)], [end]]))
+
+
+def _values(reference: Reference, T: FloatArray) -> FloatArray:
+    values = np.asarray(reference(T) if callable(reference) else reference, dtype=np.float64)
+    if values.shape != T.shape:
+        raise ValueError(f"the reference has shape {values.shape}, the grid of temperatures {T.shape}")
+    return values
+
+
+def _largest(T: FloatArray, difference: FloatArray) -> Deviation:
+    size = np.abs(difference)
+    worst = int(np.argmax(size))
+    return Deviation(float(size[worst]), float(T[worst]))
