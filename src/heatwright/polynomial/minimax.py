@@ -110,7 +110,7 @@ def _lawson(Q: FloatArray, f: FloatArray, noise: float) -> tuple[FloatArray, flo
     w: FloatArray = np.full(n, 1.0 / n)
     for iteration in range(1, MAX_ITERATIONS + 1):
         wQ = w[:, None] * Q
-        y = np.linalg.solve(Q.T @ wQ, wQ.T @ f)
+        y = np.asarray(np.linalg.solve(Q.T @ wQ, wQ.T @ f), dtype=np.float64)
         r: FloatArray = np.abs(Q @ y - f)
         largest = float(r.max())
         if largest < error:
