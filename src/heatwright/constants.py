@@ -53,8 +53,8 @@ CALORIE_J: Final = 4.184
 EV_KJ_MOL: Final = ELEMENTARY_CHARGE_C * AVOGADRO_MOL / 1000.0
 """One electronvolt in kJ/mol."""
 
-INERTIA_CM1_U_A2: Final = PLANCK_J_S / (8.0 * 3.141592653589793**2 * LIGHT_SPEED_M_S * 100.0) / (
-    ATOMIC_MASS_KG * 1.0e-20
+INERTIA_CM1_U_A2: Final = (
+    PLANCK_J_S / (8.0 * 3.141592653589793**2 * LIGHT_SPEED_M_S * 100.0) / (ATOMIC_MASS_KG * 1.0e-20)
 )
 """h/(8 pi^2 c) in u Å^2 cm^-1: divided by a moment of inertia in u Å^2 it gives the rotational constant in 1/cm."""
 

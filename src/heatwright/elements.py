@@ -94,6 +94,6 @@ def formula(atoms: Mapping[str, int], charge: int = 0) -> str:
     ('CH4O', 'NH4+')
     """
     text = "".join(f"{s}{n if n > 1 else ''}" for s, n in atoms.items())
-    if charge:
-        text += ("+" if charge > 0 else "-") * (1 if abs(charge) == 1 else 0) or f"{charge:+d}"
-    return text
+    if abs(charge) == 1:
+        return text + ("+" if charge > 0 else "-")
+    return f"{text}{charge:+d}" if charge else text

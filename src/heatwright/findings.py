@@ -35,7 +35,7 @@ CODES: Final[dict[str, str]] = {
     "no-energy": "There is no total energy in the output.",
     "no-charge": "The output does not state the molecule's charge.",
     "no-multiplicity": "The output does not state the spin multiplicity.",
-    "energy-not-total": "The printed energy is not a total energy (a heat of formation, a bond energy against fragments).",
+    "energy-not-total": "The printed energy is not a total energy (but a heat of formation or a bond energy).",
     "masses-from-table": "The output does not print the atomic masses; those of the most abundant isotopes were taken.",
     "average-masses": "The output used average atomic weights instead of isotopic masses.",
     "non-default-isotope": "An atom has a mass that is neither its most abundant isotope's nor its average weight.",
@@ -46,12 +46,12 @@ CODES: Final[dict[str, str]] = {
     "imaginary-modes": "The structure is not a minimum: there are imaginary modes.",
     "mode-count": "The number of vibrational modes is not 3N−6 (3N−5 for a linear molecule).",
     "not-stationary": "The geometry of the frequencies is not a stationary point.",
-    "printed-values-differ": "The output's own zero-point energy, enthalpy or entropy is not reproduced from its modes.",
+    "printed-values-differ": "The output's own zero-point energy, enthalpy or entropy does not follow from its modes.",
     "zero-wavenumber": "A vibrational mode has no or nearly no wavenumber.",
     # --- scans ----------------------------------------------------------------------------------------------------
     "rigid-scan": "The scan was done without relaxing the rest of the molecule; it is no torsional potential.",
     # --- choices made for the user --------------------------------------------------------------------------------
-    "symmetry-ambiguous": "The geometry is close to a symmetry that was not accepted, or only just fits the one that was.",
+    "symmetry-ambiguous": "The geometry is close to a symmetry not accepted, or only just fits the accepted one.",
     "user-value": "A value was given by the user and replaces what the output or the geometry says.",
     "spin-degeneracy": "No electronic levels are known for the species; the spin degeneracy 2S+1 was taken.",
     "linear-radical": "A linear open-shell molecule outside the table: its spatial degeneracy is not known.",
@@ -117,9 +117,12 @@ class Finding:
     def __str__(self) -> str:
         return f"{SEVERITY_WORD[self.severity]}: {self.text} [{self.code}]"
 
-    def at(self, where: str) -> Finding:
-        """The same finding with *where* put before what it already says of its place."""
-        place = f"{where}:{self.where}" if self.where else where
+    def at(self, file: str) -> Finding:
+        """The same finding with its file: ``line 12`` becomes ``FILE:12``, other places follow the file's name."""
+        if self.where == file or self.where.startswith(f"{file}:"):
+            return self
+        line = self.where.removeprefix("line ")
+        place = file if not self.where else f"{file}:{line}" if line != self.where else f"{file}: {self.where}"
         return Finding(self.severity, self.code, self.found, place, self.expected, self.action)
 
     def as_json(self) -> dict[str, str]:

@@ -1,4 +1,4 @@
-"""Molecule: what one quantum-chemistry output says, in one set of units and with nothing of its program's habits left."""
+"""Molecule: what one quantum-chemistry output says, in one set of units and free of its program's habits."""
 
 from __future__ import annotations
 
@@ -47,6 +47,8 @@ class Level:
     dispersion : ``"D3BJ"`` and the like.
     solvent : continuum model and solvent.
     program : the program's family, without version.
+    atoms : atomic numbers of the molecule the level was used for (not part of the level itself, so it does not count
+        when two levels are compared with ``==``); it says where a dispersion correction or a core potential cannot act.
     """
 
     method: str
@@ -58,6 +60,7 @@ class Level:
     dispersion: str = ""
     solvent: str = ""
     program: str = ""
+    atoms: tuple[int, ...] = field(default=(), compare=False)
 
     @property
     def label(self) -> str:

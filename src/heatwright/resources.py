@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import csv
+from collections.abc import Iterator
 from functools import cache
 from importlib.resources import files
 from importlib.resources.abc import Traversable
@@ -38,3 +39,18 @@ def data_rows(name: str) -> tuple[dict[str, str], ...]:
     text = files("heatwright").joinpath("data", f"{name}.csv").read_text(encoding="utf-8")
     lines = [line for line in text.splitlines() if line and not line.startswith("#")]
     return tuple(csv.DictReader(lines))
+
+
+def sample_files() -> dict[str, bytes]:
+    """The content of each sample file by its path below the folder of samples, sorted."""
+    return dict(sorted(_walk(sample_outputs(), "")))
+
+
+def _walk(folder: Traversable, prefix: str) -> Iterator[tuple[str, bytes]]:
+    for item in folder.iterdir():
+        if item.name.startswith((".", "__")):
+            continue
+        if item.is_dir():
+            yield from _walk(item, f"{prefix}{item.name}/")
+        else:
+            yield f"{prefix}{item.name}", item.read_bytes()

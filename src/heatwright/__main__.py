@@ -1,0 +1,6 @@
+"""``python -m heatwright``."""
+
+from heatwright.cli.main import main
+
+if __name__ == "__main__":
+    main()

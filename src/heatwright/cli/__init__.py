@@ -1,0 +1,1 @@
+"""cli: the commands; the only room that prints, reads configuration or exits."""

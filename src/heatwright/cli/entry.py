@@ -1,0 +1,330 @@
+"""``heatwright entry``: the main job in one go, outputs to thermo entries."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any
+
+import click
+
+from heatwright.cli.options import (
+    Reading,
+    fit_options,
+    model_options,
+    outputs_argument,
+    taken_model_options,
+    taken_reading,
+    usable_model,
+    words_options,
+)
+from heatwright.cli.reporter import Reporter
+from heatwright.errors import UsageError
+
+if TYPE_CHECKING:
+    from heatwright.entry import Entry, FitOptions
+    from heatwright.formation.atomization import Atoms
+    from heatwright.formation.formation import Formation, GivenEnthalpy
+    from heatwright.partition.model import ModelOptions, ThermoModel
+
+
+@dataclass(frozen=True, slots=True)
+class Request:
+    """What was asked for, once for all outputs of a run."""
+
+    reading: Reading
+    model: ModelOptions
+    fit: FitOptions
+    atoms: Atoms | None
+    trust_levels: bool
+
+
+@click.command(short_help="Outputs to thermo entries; residuals on standard error.")
+@outputs_argument
+@click.option("--name", "names", multiple=True, metavar="NAME", help="Species name; once for each output.")
+@click.option(
+    "--dHf298",
+    "enthalpies",
+    multiple=True,
+    metavar="TEXT",
+    help='ΔfH°(298.15 K) with its unit, "-200.7 kJ/mol" or "-200.7 +/- 0.2 kJ/mol"; once for each output.',
+)
+@click.option("--source", "sources", multiple=True, metavar="TEXT", help="Where --dHf298 is from.")
+@click.option(
+    "--atoms",
+    "atoms_folder",
+    type=click.Path(),
+    metavar="DIR",
+    help="Folder of atom outputs at the same level: ΔfH° by atomization.",
+)
+@click.option("--route", type=click.Choice(["given", "atomization"]), help="Which way to ΔfH°, when both are there.")
+@click.option("--trust-levels", is_flag=True, help="Combine energies of different levels or programs; recorded.")
+@click.option(
+    "--format",
+    "format_name",
+    type=click.Choice(["nasa7", "yaml", "json", "csv"]),
+    default="nasa7",
+    show_default=True,
+    help="80-column record, Cantera YAML, everything as JSON, or the table as CSV.",
+)
+@click.option("--json", "as_json", is_flag=True, help="The same as --format json.")
+@click.option("--template", type=click.Path(), metavar="FILE", help="Your own jinja2 template instead of a format.")
+@click.option("-o", "--output", "target", type=click.Path(), metavar="FILE", help="Write here, whole or not at all.")
+@click.option("--force", is_flag=True, help="Replace FILE when it exists.")
+@click.option(
+    "--range",
+    "range_text",
+    default="200,6000",
+    show_default=True,
+    metavar="LOW,HIGH",
+    help="Range of the polynomial, K.",
+)
+@click.option(
+    "--common",
+    default="1000",
+    show_default=True,
+    metavar="T|auto",
+    help="Where its two halves meet, K; auto looks for the best.",
+)
+@model_options
+@words_options
+@click.pass_context
+def entry(ctx: click.Context, /, outputs: tuple[str, ...], quiet: bool, verbose: bool, **options: Any) -> None:
+    """Make the thermo entry of each OUTPUT: partition function, table, constrained fit, exact text, residuals.
+
+    Several outputs are several species in one file.  The enthalpy of formation is given by --dHf298, or reached
+    through the atoms in --atoms.
+
+    \b
+    Examples:
+      heatwright entry CH3OH.out --dHf298 "-200.7 kJ/mol" --source "ATcT 1.112"
+      heatwright entry *.out --atoms atoms --format yaml -o thermo.yaml
+    """
+    from heatwright.writing.render import check_target
+
+    reporter = Reporter(quiet=quiet, verbose=verbose)
+    style = _Style("json" if options["as_json"] else options["format_name"], options["template"])
+    jobs = _jobs(outputs, options)
+    if options["target"] is not None:
+        check_target(options["target"], options["force"])
+    request = _request(options, reporter)
+    entries = _without_twins(_made(jobs, request, style, reporter), reporter)
+    for path, made in entries:
+        _describe(path, made, reporter)
+    if entries or style.is_json:
+        _deliver(style.render([made for _, made in entries], reporter), options["target"], len(entries), reporter)
+    reporter.tally(len(entries), "made")
+    ctx.exit(reporter.exit_code)
+
+
+@dataclass(frozen=True, slots=True)
+class _Job:
+    """One output to make an entry of: its path, the name and the enthalpy of formation (with source) stated for it."""
+
+    path: str
+    name: str | None
+    given: tuple[GivenEnthalpy, str | None] | None
+
+
+def _jobs(outputs: tuple[str, ...], options: dict[str, Any]) -> list[_Job]:
+    names = options["names"]
+    if names and len(names) != len(outputs):
+        raise UsageError(
+            f"--name was given {len(names)} times for {len(outputs)} outputs; give it once for each output"
+        )
+    given = _given(outputs, options["enthalpies"], options["sources"], options["atoms_folder"], options["route"])
+    return [_Job(path, names[i] if names else None, given[i]) for i, path in enumerate(outputs)]
+
+
+def _made(jobs: list[_Job], request: Request, style: _Style, reporter: Reporter) -> list[tuple[str, Entry]]:
+    """The entries that could be made and written; the others are reported as failed."""
+    from heatwright.findings import Refused
+
+    entries = []
+    for job in jobs:
+        try:
+            made = _make(job, request)
+            style.check_name(made.name)
+            style.render([made], reporter)  # a value that does not fit its field fails here, alone
+        except Refused as error:
+            reporter.fail(job.path, error.findings)
+        else:
+            entries.append((job.path, made))
+    return entries
+
+
+def _without_twins(entries: list[tuple[str, Entry]], reporter: Reporter) -> list[tuple[str, Entry]]:
+    """The entries whose name is theirs alone; the others are reported as failed."""
+    from heatwright.writing.names import duplicate_names
+
+    twins = duplicate_names([made.name for _, made in entries])
+    for path, made in entries:
+        if made.name in twins:
+            reporter.fail(path, [twins[made.name]])
+    return [(path, made) for path, made in entries if made.name not in twins]
+
+
+def _deliver(text: str, target: str | None, count: int, reporter: Reporter) -> None:
+    from heatwright.writing.render import write_text
+
+    if target is None:
+        click.echo(text, nl=False)
+        return
+    write_text(target, text)
+    reporter.say(f"{count} {'entry' if count == 1 else 'entries'} written to {target}.")
+
+
+@dataclass(frozen=True, slots=True)
+class _Style:
+    """How entries become text: one of the formats, or the user's template."""
+
+    format_name: str
+    template: str | None
+
+    @property
+    def is_json(self) -> bool:
+        return self.template is None and self.format_name == "json"
+
+    def check_name(self, name: str) -> None:
+        from heatwright.findings import Refused
+        from heatwright.writing.formats import FORMATS
+
+        faults = FORMATS["json" if self.template else self.format_name].name_findings(name)
+        if faults:
+            raise Refused(faults)
+
+    def render(self, entries: list[Entry], reporter: Reporter) -> str:
+        from heatwright.writing.context import entries_context
+        from heatwright.writing.formats import FORMATS
+        from heatwright.writing.render import render_format, render_user_template
+
+        context = entries_context(entries, reporter.failed)
+        if self.template is not None:
+            return render_user_template(self.template, context)
+        return render_format(FORMATS[self.format_name].template, context)
+
+
+def _given(
+    outputs: tuple[str, ...],
+    enthalpies: tuple[str, ...],
+    sources: tuple[str, ...],
+    atoms_folder: str | None,
+    route: str | None,
+) -> list[tuple[GivenEnthalpy, str | None] | None]:
+    """The enthalpy of formation stated for each output with its source, or None for each when atomization is meant."""
+    from heatwright.formation.formation import parse_enthalpy
+
+    if route == "atomization" or (route is None and not enthalpies):
+        if route is not None and atoms_folder is None:
+            raise UsageError("--route atomization needs the atoms' outputs: name their folder by --atoms")
+        return [None] * len(outputs)
+    if route is None and atoms_folder is not None:
+        raise UsageError(
+            "--dHf298 and --atoms are two ways to one value; choose by --route given or --route atomization"
+        )
+    if len(enthalpies) != len(outputs):
+        raise UsageError(
+            f"--dHf298 was given {len(enthalpies)} times for {len(outputs)} outputs; give it once for each output"
+        )
+    if len(sources) not in (0, 1, len(outputs)):
+        raise UsageError(f"--source was given {len(sources)} times for {len(outputs)} outputs")
+    each = sources * len(outputs) if len(sources) == 1 else sources or (None,) * len(outputs)
+    return [(parse_enthalpy(text), source) for text, source in zip(enthalpies, each, strict=True)]
+
+
+def _request(options: dict[str, Any], reporter: Reporter) -> Request:
+    fit = fit_options(options["range_text"], options["common"])
+    _check_range(fit)
+    reading, model = taken_reading(options), taken_model_options(options)
+    folder = None if options["route"] == "given" else options["atoms_folder"]
+    atoms = None if folder is None else _read_atoms(folder, reporter)
+    return Request(reading, model, fit, atoms, options["trust_levels"])
+
+
+def _check_range(fit: FitOptions) -> None:
+    """Raises Refused before anything is read when no polynomial can have these temperatures."""
+    from heatwright.polynomial.fit import check_temperatures
+
+    check_temperatures(fit.t_low_K, fit.t_common_K, fit.t_high_K)
+
+
+def _read_atoms(folder: str, reporter: Reporter) -> Atoms:
+    """The atom outputs in a folder; files that are something else are passed over (``-v`` names them)."""
+    from pathlib import Path
+
+    from heatwright.findings import Refused, refuse
+    from heatwright.formation.atomization import collect_atoms
+    from heatwright.reading.outputs import read_output
+
+    if not Path(folder).is_dir():
+        raise Refused(
+            [
+                refuse(
+                    "file-missing",
+                    "there is no such folder",
+                    where=folder,
+                    action="Name the folder of the atoms' outputs by --atoms.",
+                )
+            ]
+        )
+    molecules = []
+    for file in sorted(p for p in Path(folder).iterdir() if p.is_file() and not p.name.startswith(".")):
+        try:
+            molecules.append(read_output(str(file)))
+        except Refused as error:
+            reporter.detail(f"passed over: {error.findings[0].at(str(file)).text}")
+    return collect_atoms(tuple(molecules))
+
+
+def _make(job: _Job, request: Request) -> Entry:
+    """The entry of one output; raises Refused."""
+    from dataclasses import replace
+
+    from heatwright.entry import make_entry
+    from heatwright.writing.names import default_name
+
+    model = usable_model(job.path, request.reading, request.model)
+    formation = _formation(model, job.given, request)
+    if job.name is not None:
+        return make_entry(job.name, model, formation, request.fit)
+    name, said = default_name(model.molecule, model.composition)
+    made = make_entry(name, model, formation, request.fit)
+    return replace(made, findings=(*made.findings, *said))
+
+
+def _formation(model: ThermoModel, given: tuple[GivenEnthalpy, str | None] | None, request: Request) -> Formation:
+    from heatwright.findings import Refused, refuse
+    from heatwright.formation.atomization import formation_by_atomization
+    from heatwright.formation.formation import formation_given
+
+    if given is not None:
+        enthalpy, source = given
+        return formation_given(enthalpy, source, model.composition, model.h298_minus_h0_kJ_mol)
+    if request.atoms is None:
+        raise Refused(
+            [
+                refuse(
+                    "no-formation",
+                    "there is no enthalpy of formation for the entry's H",
+                    expected='--dHf298 "VALUE kJ/mol" --source TEXT, or --atoms DIR with outputs of the atoms '
+                    f"{', '.join(model.composition)} at the same level",
+                    action="`heatwright table` shows the functions that need none.",
+                )
+            ]
+        )
+    return formation_by_atomization(model, request.atoms, trust_levels=request.trust_levels)
+
+
+def _describe(path: str, made: Entry, reporter: Reporter) -> None:
+    """The words about one finished entry."""
+    from heatwright.findings import refusals
+    from heatwright.writing.comment import formation_text, residual_text
+
+    p = made.polynomial
+    reporter.say(f"{made.name} from {path}: {formation_text(made.formation)}")
+    reporter.say(f"  fitted {p.t_low_K:g}-{p.t_common_K:g}-{p.t_high_K:g} K; {residual_text(made)}")
+    if len(made.formation.ledger) > 1:
+        for line in made.formation.ledger:
+            reporter.detail(
+                f"  {line.value_kJ_mol:14.3f} kJ/mol  {line.what}{f' ({line.source})' if line.source else ''}"
+            )
+    reporter.findings(path, [f for f in made.findings if f not in refusals(made.findings)])

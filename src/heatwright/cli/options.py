@@ -1,0 +1,170 @@
+"""Options that several commands share, and how their texts become values.  No heavy import at module level."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any, Literal, TypeVar
+
+import click
+
+from heatwright.errors import UsageError
+
+if TYPE_CHECKING:
+    from heatwright.entry import FitOptions
+    from heatwright.molecule import Molecule
+    from heatwright.partition.model import ModelOptions, ThermoModel
+
+F = TypeVar("F", bound=Callable[..., Any])
+
+outputs_argument = click.argument(
+    "outputs", nargs=-1, required=True, metavar="OUTPUT...", type=click.Path(exists=False, dir_okay=True)
+)
+
+
+def words_options(command: F) -> F:
+    """``-q`` and ``-v``."""
+    command = click.option("-v", "--verbose", is_flag=True, help="Say more: ledgers, files passed over.")(command)
+    return click.option("-q", "--quiet", is_flag=True, help="Say only what failed.")(command)
+
+
+_MODEL_OPTIONS = (
+    click.option(
+        "--pressure",
+        type=click.Choice(["1bar", "1atm"]),
+        default="1bar",
+        show_default=True,
+        help="Standard pressure.",
+    ),
+    click.option("--frequency-scale", type=float, metavar="X", help="Factor on the wavenumbers in Cp, H and S."),
+    click.option("--zpe-scale", type=float, metavar="X", help="Factor on the zero-point energy."),
+    click.option("--symmetry-number", type=click.IntRange(min=1), metavar="N", help="Instead of the geometry's."),
+    click.option("--optical-isomers", type=click.IntRange(min=1), metavar="N", help="Instead of the geometry's."),
+    click.option(
+        "--symmetry-tolerance",
+        type=float,
+        metavar="Å",
+        default=0.05,
+        show_default=True,
+        help="How far an atom may be from its image.",
+    ),
+    click.option(
+        "--electronic",
+        default="table",
+        show_default=True,
+        metavar="table|spin|LEVELS",
+        help='Electronic levels: the built-in table, the spin alone, or such as "0:2,139.21:2" (1/cm : degeneracy).',
+    ),
+    click.option("--masses", type=click.Choice(["isotopic", "average"]), help="Instead of the output's masses."),
+    click.option("--charge", type=int, metavar="Q", help="Instead of the output's."),
+    click.option("--multiplicity", type=click.IntRange(min=1), metavar="M", help="Instead of the output's."),
+    click.option("--job", type=click.IntRange(min=1), metavar="N", help="One of several jobs in a file."),
+)
+
+
+def model_options(command: F) -> F:
+    """The options that choose how a molecule becomes a model."""
+    for option in reversed(_MODEL_OPTIONS):
+        command = option(command)
+    return command
+
+
+@dataclass(frozen=True, slots=True)
+class Reading:
+    """How an output is to be read: which job, and values that replace its own."""
+
+    job: int | None
+    charge: int | None
+    multiplicity: int | None
+
+
+def taken_reading(options: dict[str, Any]) -> Reading:
+    """The reading options out of a command's keyword arguments."""
+    return Reading(options.pop("job"), options.pop("charge"), options.pop("multiplicity"))
+
+
+def taken_model_options(options: dict[str, Any]) -> ModelOptions:
+    """The model options out of a command's keyword arguments."""
+    from heatwright.constants import ATMOSPHERE_PA, BAR_PA
+    from heatwright.partition.electronic import parse_levels
+    from heatwright.partition.model import ModelOptions
+
+    electronic = options.pop("electronic")
+    return ModelOptions(
+        pressure_Pa={"1bar": BAR_PA, "1atm": ATMOSPHERE_PA}[options.pop("pressure")],
+        frequency_scale=options.pop("frequency_scale"),
+        zpe_scale=options.pop("zpe_scale"),
+        symmetry_number=options.pop("symmetry_number"),
+        optical_isomers=options.pop("optical_isomers"),
+        symmetry_tolerance_A=options.pop("symmetry_tolerance"),
+        electronic=electronic if electronic in ("table", "spin") else parse_levels(electronic),
+        masses=options.pop("masses"),
+    )
+
+
+def usable_molecule(path: str, reading: Reading) -> Molecule:
+    """The molecule of an output that a model can be built on; raises Refused with every reason why not."""
+    from heatwright.findings import Refused, refusals
+    from heatwright.reading.outputs import read_output
+    from heatwright.reading.soundness import no_thermochemistry
+
+    molecule = read_output(path, job=reading.job, charge=reading.charge, multiplicity=reading.multiplicity)
+    if refusals(molecule.findings):
+        raise Refused(molecule.findings)
+    missing = no_thermochemistry(molecule)
+    if missing:
+        raise Refused((*missing, *molecule.findings))
+    return molecule
+
+
+def usable_model(path: str, reading: Reading, options: ModelOptions) -> ThermoModel:
+    """The model of an output; raises Refused."""
+    from heatwright.partition.model import build_model
+
+    return build_model(usable_molecule(path, reading), options)
+
+
+def temperatures(text: str) -> list[float]:
+    """Temperatures in K, ``298.15,500,1000`` or ``300:3000:100`` (first, last, step) or both mixed.
+
+    Raises UsageError naming the part that cannot be read.
+
+    >>> temperatures("298.15,400:600:100")
+    [298.15, 400.0, 500.0, 600.0]
+    """
+    return [t for part in text.split(",") for t in _temperature_part(part)]
+
+
+def _temperature_part(part: str) -> list[float]:
+    values = [_number(word, f"temperature {part.strip()!r}") for word in part.split(":")]
+    if min(values) <= 0.0:
+        raise UsageError(f"temperature {part.strip()!r} is not positive; temperatures are in K")
+    if len(values) == 1:
+        return values
+    if len(values) != 3 or values[1] < values[0] or (values[1] - values[0]) / values[2] > 100_000:
+        raise UsageError(f"temperatures {part.strip()!r}: expected first:last:step in K, such as 300:3000:100")
+    first, last, step = values
+    return [first + i * step for i in range(int((last - first) / step * (1 + 1e-12)) + 1)]
+
+
+def fit_options(range_text: str, common: str) -> FitOptions:
+    """The polynomial's temperatures from ``--range LOW,HIGH`` and ``--common T|auto``; raises UsageError."""
+    from heatwright.entry import FitOptions
+
+    ends = [_number(word, f"--range {range_text!r}") for word in range_text.split(",")]
+    if len(ends) != 2:
+        raise UsageError(f"--range {range_text!r}: expected the two ends in K, such as 200,6000")
+    middle: float | Literal["auto"] = "auto" if common == "auto" else _number(common, f"--common {common!r}")
+    return FitOptions(t_low_K=ends[0], t_common_K=middle, t_high_K=ends[1])
+
+
+def _number(text: str, what: str) -> float:
+    from math import isfinite
+
+    try:
+        value = float(text)
+    except ValueError:
+        value = float("nan")
+    if not isfinite(value):
+        raise UsageError(f"{what}: {text.strip()!r} is not a number")
+    return value

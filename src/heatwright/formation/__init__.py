@@ -1,0 +1,1 @@
+"""formation: from electronic energies and references to enthalpies of formation."""

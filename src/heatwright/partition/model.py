@@ -1,0 +1,319 @@
+"""ThermoModel: a molecule with its chosen contributions and conventions, and the table it gives."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from math import isfinite
+from typing import Literal
+
+import numpy as np
+from numpy.typing import ArrayLike
+
+from heatwright.constants import BAR_PA, GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
+from heatwright.elements import composition, element, formula
+from heatwright.errors import UsageError
+from heatwright.findings import Finding, note, warn
+from heatwright.molecule import FloatArray, MassKind, Molecule
+from heatwright.partition.contribution import ConstantFactor, Contribution, LnQ, total_ln_q
+from heatwright.partition.electronic import ElectronicLevels, Levels, tabulated_levels
+from heatwright.partition.rotation import ClassicalRotor
+from heatwright.partition.translation import Translation
+from heatwright.partition.vibration import HarmonicVibration, zero_point_energy_kJ_mol
+from heatwright.structure.inertia import Inertia, inertia
+from heatwright.structure.symmetry import Symmetry, symmetry, symmetry_findings
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ModelOptions:
+    """The choices behind a model; ``None`` means "as the output or the geometry says" (unscaled for scale factors).
+
+    pressure_Pa : standard pressure.   frequency_scale, zpe_scale : factors on the wavenumbers for the thermal
+    functions and for the zero-point energy.   symmetry_number, optical_isomers : override the geometry.
+    electronic : ``"table"``, ``"spin"`` or explicit levels.   masses : isotopic or average atomic masses.
+    symmetry_tolerance_A : how far an atom may be from its image, Å.
+    """
+
+    pressure_Pa: float = BAR_PA
+    frequency_scale: float | None = None
+    zpe_scale: float | None = None
+    symmetry_number: int | None = None
+    optical_isomers: int | None = None
+    electronic: Literal["table", "spin"] | Levels = "table"
+    masses: MassKind | None = None
+    symmetry_tolerance_A: float = 0.05
+
+    def __post_init__(self) -> None:
+        for name in ("pressure_Pa", "frequency_scale", "zpe_scale", "symmetry_tolerance_A"):
+            value = getattr(self, name)
+            if value is not None and not (isfinite(value) and value > 0.0):
+                raise UsageError(f"{name} must be a positive number, not {value}")
+        for name in ("symmetry_number", "optical_isomers"):
+            value = getattr(self, name)
+            if value is not None and value < 1:
+                raise UsageError(f"{name} must be at least 1, not {value}")
+
+
+@dataclass(frozen=True, eq=False, slots=True)
+class Share:
+    """What one contribution adds, each (n,): Cp (J/mol/K), H − H(298.15 K) (kJ/mol) and S (J/mol/K)."""
+
+    cp_J_mol_K: FloatArray
+    h_minus_h298_kJ_mol: FloatArray
+    s_J_mol_K: FloatArray
+
+
+@dataclass(frozen=True, eq=False, slots=True)
+class ThermoTable:
+    """Standard thermodynamic functions on a temperature grid, with the share of each contribution.
+
+    T_K, cp_J_mol_K, h_minus_h298_kJ_mol, s_J_mol_K : (n,).   h298_minus_h0_kJ_mol : enthalpy increment from 0 K.
+    shares : by the contribution's name; they add up to the totals.
+    """
+
+    T_K: FloatArray
+    cp_J_mol_K: FloatArray
+    h_minus_h298_kJ_mol: FloatArray
+    s_J_mol_K: FloatArray
+    h298_minus_h0_kJ_mol: float
+    shares: Mapping[str, Share]
+
+    @property
+    def minus_g_minus_h298_over_T_J_mol_K(self) -> FloatArray:
+        """−[G°(T) − H°(298.15 K)]/T = S° − [H° − H°(298.15 K)]/T, J/mol/K."""
+        return self.s_J_mol_K - 1000.0 * self.h_minus_h298_kJ_mol / self.T_K
+
+
+@dataclass(frozen=True, eq=False, kw_only=True)
+class ThermoModel:
+    """A molecule's contributions and conventions; it knows how to tabulate, nothing else.
+
+    zpe_kJ_mol : scaled zero-point energy.   levels : electronic levels in use, ``levels_source`` where they are from.
+    findings : the choices that were made, for the user to read.
+    """
+
+    molecule: Molecule
+    options: ModelOptions
+    contributions: tuple[Contribution, ...]
+    inertia: Inertia
+    symmetry: Symmetry
+    symmetry_number: int
+    optical_isomers: int
+    masses_u: FloatArray
+    mass_kind: MassKind
+    levels: Levels
+    levels_source: str
+    zpe_kJ_mol: float
+    findings: tuple[Finding, ...] = field(default=())
+
+    @property
+    def frequency_scale(self) -> float:
+        """The factor on the wavenumbers in the thermal functions (1 when none was asked for)."""
+        return self.options.frequency_scale or 1.0
+
+    @property
+    def zpe_scale(self) -> float:
+        """The factor on the wavenumbers in the zero-point energy (1 when none was asked for)."""
+        return self.options.zpe_scale or 1.0
+
+    @property
+    def composition(self) -> dict[str, int]:
+        """Atoms by element symbol, Hill order."""
+        return composition(self.molecule.atomic_numbers)
+
+    def ln_q(self, T: FloatArray | float) -> LnQ:
+        """ln q of the whole molecule and its derivatives at temperatures in K."""
+        return total_ln_q(self.contributions, checked_temperatures(T))
+
+    def cp_R(self, T: FloatArray | float) -> FloatArray:
+        """Cp°/R, dimensionless."""
+        return self.ln_q(T).cp_R
+
+    def h_minus_h0_R(self, T: FloatArray | float) -> FloatArray:
+        """[H°(T) − H°(0)]/R, K."""
+        h_R: FloatArray = self.ln_q(T).h_RT * np.asarray(T, dtype=float)
+        return h_R
+
+    def s_R(self, T: FloatArray | float) -> FloatArray:
+        """S°/R, dimensionless."""
+        return self.ln_q(T).s_R
+
+    def tabulate(self, T: FloatArray | float) -> ThermoTable:
+        """The table at the temperatures *T*, K."""
+        grid = np.atleast_1d(checked_temperatures(T))
+        shares = {c.name: _share(c, grid) for c in self.contributions}
+        return ThermoTable(
+            T_K=grid,
+            cp_J_mol_K=np.sum([s.cp_J_mol_K for s in shares.values()], axis=0),
+            h_minus_h298_kJ_mol=np.sum([s.h_minus_h298_kJ_mol for s in shares.values()], axis=0),
+            s_J_mol_K=np.sum([s.s_J_mol_K for s in shares.values()], axis=0),
+            h298_minus_h0_kJ_mol=self.h298_minus_h0_kJ_mol,
+            shares=shares,
+        )
+
+    @property
+    def h298_minus_h0_kJ_mol(self) -> float:
+        """H°(298.15 K) − H°(0 K), kJ/mol."""
+        return float(self.h_minus_h0_R(STANDARD_TEMPERATURE_K)) * GAS_CONSTANT_J_MOL_K / 1000.0
+
+    @property
+    def classical_cp_R(self) -> float:
+        """The limit of Cp/R at high temperature when only rigid rotation and harmonic vibration are present."""
+        rotation = {"atom": 0.0, "linear": 1.0}.get(self.inertia.kind, 1.5)
+        return 2.5 + rotation + self.molecule.wavenumbers_cm1.size
+
+
+def checked_temperatures(T: ArrayLike) -> FloatArray:
+    """The temperatures as an array of floats; raises UsageError unless all are finite and positive."""
+    grid = np.asarray(T, dtype=float)
+    if grid.size == 0 or not np.all(np.isfinite(grid) & (grid > 0.0)):
+        raise UsageError(f"temperatures must be positive numbers in K, not {np.array2string(grid)}")
+    return grid
+
+
+def _share(contribution: Contribution, T: FloatArray) -> Share:
+    values = contribution.ln_q(T)
+    reference = contribution.ln_q(np.array([STANDARD_TEMPERATURE_K]))
+    h_R = values.h_RT * T - reference.h_RT[0] * STANDARD_TEMPERATURE_K
+    R = GAS_CONSTANT_J_MOL_K
+    return Share(values.cp_R * R, h_R * R / 1000.0, values.s_R * R)
+
+
+def build_model(molecule: Molecule, options: ModelOptions | None = None) -> ThermoModel:
+    """The rigid-rotor harmonic-oscillator model of a molecule that has passed the soundness checks.
+
+    Raises ValueError when the molecule has an imaginary mode or neither modes nor a single atom: the reading room
+    refuses those with a sentence before a model is asked for.
+    """
+    options = options or ModelOptions()
+    if molecule.n_imaginary or not molecule.has_thermochemistry:
+        raise ValueError(f"{molecule.source.file}: a thermodynamic model needs the real modes of a minimum, or an atom")
+    masses, mass_kind = chosen_masses(molecule, options.masses)
+    moments = inertia(masses, molecule.coordinates_A)
+    found = symmetry(molecule.atomic_numbers, masses, molecule.coordinates_A, tolerance_A=options.symmetry_tolerance_A)
+    levels, levels_source, electronic_findings = chosen_levels(molecule, moments, options)
+    sigma = options.symmetry_number or found.symmetry_number
+    isomers = options.optical_isomers or found.optical_isomers
+    return ThermoModel(
+        molecule=molecule,
+        options=options,
+        contributions=_contributions(molecule, options, masses, moments, sigma, isomers, levels),
+        inertia=moments,
+        symmetry=found,
+        symmetry_number=sigma,
+        optical_isomers=isomers,
+        masses_u=masses,
+        mass_kind=mass_kind,
+        levels=levels,
+        levels_source=levels_source,
+        zpe_kJ_mol=zero_point_energy_kJ_mol(molecule.wavenumbers_cm1) * (options.zpe_scale or 1.0),
+        findings=(
+            *_symmetry_choice(found, options),
+            *electronic_findings,
+            *_scale_findings(molecule, options),
+        ),
+    )
+
+
+def _contributions(
+    molecule: Molecule,
+    options: ModelOptions,
+    masses: FloatArray,
+    moments: Inertia,
+    sigma: int,
+    isomers: int,
+    levels: Levels,
+) -> tuple[Contribution, ...]:
+    parts: list[Contribution] = [Translation(float(masses.sum()), options.pressure_Pa)]
+    if not molecule.is_atom:
+        parts.append(ClassicalRotor(tuple(moments.rotational_constants_cm1), sigma))
+        scaled = molecule.wavenumbers_cm1 * (options.frequency_scale or 1.0)
+        parts.append(HarmonicVibration(tuple(scaled.tolist())))
+    parts.append(ElectronicLevels(levels))
+    if isomers > 1:
+        parts.append(ConstantFactor("optical isomers", isomers))
+    return tuple(parts)
+
+
+def chosen_masses(molecule: Molecule, kind: MassKind | None) -> tuple[FloatArray, MassKind]:
+    """The masses (u) to use: those of the output, or the table's; an isotope the job was given on purpose is kept."""
+    if kind is None:
+        return molecule.masses_u, molecule.mass_kind
+    chosen = molecule.masses_u.copy()
+    for i, number in enumerate(molecule.atomic_numbers):
+        atom = element(int(number))
+        if min(abs(chosen[i] - atom.common_mass_u), abs(chosen[i] - atom.average_weight_u)) < 0.1:
+            chosen[i] = atom.average_weight_u if kind == "average" else atom.common_mass_u
+    return chosen, kind
+
+
+def chosen_levels(
+    molecule: Molecule, moments: Inertia, options: ModelOptions
+) -> tuple[Levels, str, tuple[Finding, ...]]:
+    """The electronic levels, where they are from, and what has to be said about the choice."""
+    if not isinstance(options.electronic, str):
+        said = note("user-value", f"electronic levels {_levels_text(options.electronic)} were given")
+        return options.electronic, "given", (said,)
+    multiplicity, charge = molecule.multiplicity, molecule.charge
+    if multiplicity is None or charge is None:
+        raise ValueError(f"{molecule.source.file}: charge and multiplicity must be known before levels can be chosen")
+    hill = formula(composition(molecule.atomic_numbers))
+    row = tabulated_levels(hill, charge, multiplicity) if options.electronic == "table" else None
+    if row is not None:
+        return row.levels, f"{row.state}, {row.source}", ()
+    levels: Levels = ((0.0, multiplicity),)
+    if multiplicity == 1:
+        return levels, "closed shell", ()
+    said = note(
+        "spin-degeneracy",
+        f"no electronic levels are tabulated for {hill}; its spin degeneracy {multiplicity} was taken"
+        if options.electronic == "table"
+        else f"the spin degeneracy {multiplicity} was taken as asked for",
+    )
+    if moments.kind != "linear":
+        return levels, "spin degeneracy", (said,)
+    doubt = warn(
+        "linear-radical",
+        f"{hill} is linear and open-shell, and its electronic state is not tabulated, so a spatial degeneracy "
+        f"(2 in a Π or Δ state) may be missing from the spin degeneracy {multiplicity}",
+        action="Give the levels by --electronic, such as 0:4 for an unsplit doublet Π state.",
+    )
+    return levels, "spin degeneracy", (said, doubt)
+
+
+def _levels_text(levels: Levels) -> str:
+    return ",".join(f"{nu:g}:{g}" for nu, g in levels)
+
+
+def _symmetry_choice(found: Symmetry, options: ModelOptions) -> tuple[Finding, ...]:
+    said = []
+    if options.symmetry_number is not None:
+        said.append(
+            note(
+                "user-value",
+                f"symmetry number {options.symmetry_number} was given; the geometry says {found.symmetry_number} "
+                f"({found.point_group})",
+            )
+        )
+    if options.optical_isomers is not None:
+        said.append(
+            note(
+                "user-value",
+                f"{options.optical_isomers} optical isomer(s) were given; the geometry says {found.optical_isomers}",
+            )
+        )
+    return (*said, *(symmetry_findings(found) if options.symmetry_number is None else ()))
+
+
+def _scale_findings(molecule: Molecule, options: ModelOptions) -> tuple[Finding, ...]:
+    if molecule.is_atom:
+        return ()
+    if options.frequency_scale is not None and options.zpe_scale is not None:
+        return ()
+    if options.frequency_scale is None and options.zpe_scale is None:
+        what = "wavenumbers and zero-point energy were used as computed"
+    elif options.frequency_scale is None:
+        what = "the wavenumbers of the thermal functions were used as computed"
+    else:
+        what = "the zero-point energy was used as computed"
+    return (note("unscaled", f"{what}, without a scale factor"),)

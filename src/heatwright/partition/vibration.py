@@ -1,0 +1,55 @@
+"""Vibration: harmonic oscillators counted from their own ground level; the zero-point energy is kept apart."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import ClassVar
+
+import numpy as np
+
+from heatwright.constants import CM1_KJ_MOL, SECOND_RADIATION_CM_K
+from heatwright.molecule import FloatArray
+from heatwright.partition.contribution import LnQ
+
+
+@dataclass(frozen=True, slots=True)
+class HarmonicVibration:
+    r"""Independent harmonic oscillators.
+
+    .. math:: \ln q = -\sum_i \ln(1 - e^{-x_i}), \quad x_i = c_2 \tilde\nu_i / T
+
+    wavenumbers_cm1 : (m,) already scaled, 1/cm, all positive.
+    With n = 1/(eˣ − 1) one mode has U/RT = x n, Cv/R = U/RT (U/RT + x) and ln q = ln(1 + n): a form without
+    cancellation from x = 10⁻⁷ to the underflow of e⁻ˣ.
+
+    >>> co = HarmonicVibration((2143.237,)).ln_q(np.array([3000.0]))
+    >>> round(float(co.s_R[0]) * 8.31446261815324, 4)
+    8.4425
+    """
+
+    name: ClassVar[str] = "vibration"
+    wavenumbers_cm1: tuple[float, ...]
+
+    def __post_init__(self) -> None:
+        for i, wavenumber in enumerate(self.wavenumbers_cm1, start=1):
+            if not wavenumber > 0.0:
+                raise ValueError(f"mode {i} has the wavenumber {wavenumber} 1/cm; a vibration needs a positive one")
+
+    def ln_q(self, T: FloatArray) -> LnQ:
+        """Sums over the modes of ln q, u and w."""
+        x = SECOND_RADIATION_CM_K * np.asarray(self.wavenumbers_cm1, dtype=float) / T[..., None]
+        n = np.exp(-x) / -np.expm1(-x)
+        energy = x * n
+        heat_capacity = energy * (energy + x)
+        u = energy.sum(axis=-1)
+        return LnQ(np.log1p(n).sum(axis=-1), u, heat_capacity.sum(axis=-1) - 2.0 * u)
+
+
+def zero_point_energy_kJ_mol(wavenumbers_cm1: Sequence[float] | FloatArray) -> float:
+    """Harmonic zero-point energy, half the sum of the wavenumbers (1/cm), in kJ/mol.
+
+    >>> round(zero_point_energy_kJ_mol([2143.237]), 3)
+    12.82
+    """
+    return float(0.5 * np.sum(np.asarray(wavenumbers_cm1, dtype=float)) * CM1_KJ_MOL)

@@ -1,0 +1,1 @@
+"""writing: entries and tables as text, through plain-text templates."""

@@ -1,0 +1,126 @@
+"""The comment block before each entry: what it was made from, how, and how well the polynomial holds it."""
+
+from __future__ import annotations
+
+import textwrap
+from typing import Final
+
+from heatwright.constants import ATMOSPHERE_PA, BAR_PA, GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
+from heatwright.elements import formula
+from heatwright.entry import Entry
+from heatwright.formation.formation import Formation
+from heatwright.partition.model import ThermoModel
+
+WIDTH: Final = 76
+"""Longest comment text, so that a line with its mark stays inside 80 columns."""
+
+CAUTION: Final = (
+    "Computed thermodynamic data, not validated for safety decisions: for flame, explosion",
+    "and process-safety work rely on evaluated data, local codes and licensed practice.",
+)
+"""The usual caution, at the head of every file of entries."""
+
+
+def pressure_text(pressure_Pa: float) -> str:
+    """A standard pressure as people name it.
+
+    >>> pressure_text(101325.0)
+    '1 atm'
+    """
+    named = {BAR_PA: "1 bar", ATMOSPHERE_PA: "1 atm"}
+    return named.get(pressure_Pa, f"{pressure_Pa:g} Pa")
+
+
+def comment_lines(entry: Entry) -> tuple[str, ...]:
+    """The block as ASCII lines without a comment mark."""
+    paragraphs = (
+        *_identity(entry.name, entry.model),
+        *_treatment(entry.model),
+        *_thermochemistry(entry),
+        *_fit(entry),
+        *(f"{f.severity}: {f.text}" for f in entry.findings if f.severity == "warn" or f.code == "user-value"),
+    )
+    return tuple(line for text in paragraphs for line in _wrapped(text))
+
+
+def _wrapped(text: str) -> list[str]:
+    return textwrap.wrap(ascii_text(text), WIDTH, subsequent_indent="  ", break_on_hyphens=False)
+
+
+_ASCII: Final = str.maketrans(
+    {"°": "", "Δ": "d", "−": "-", "–": "-", "±": "+/-", "Π": "Pi", "Σ": "Sigma", "²": "^2", "³": "^3", "Å": "A"}
+)
+
+
+def ascii_text(text: str) -> str:
+    """*text* in printable ASCII on one line; what has no usual spelling there is written as its code point."""
+    one_line = " ".join(text.translate(_ASCII).split())
+    return one_line.encode("ascii", "backslashreplace").decode("ascii")
+
+
+def _identity(name: str, model: ThermoModel) -> tuple[str, ...]:
+    molecule = model.molecule
+    level = molecule.level.label if molecule.level else "level of theory not printed"
+    return (
+        f"{name}: {formula(model.composition)}, charge {molecule.charge}, multiplicity {molecule.multiplicity}",
+        f"from {molecule.source.file}",
+        f"sha256 {molecule.source.sha256}",
+        f"{molecule.source.program_version}, {level}",
+    )
+
+
+def _treatment(model: ThermoModel) -> tuple[str, ...]:
+    if model.molecule.is_atom:
+        motion = "atom"
+    else:
+        isomers = f", {model.optical_isomers} optical isomers" if model.optical_isomers > 1 else ""
+        motion = (
+            f"rigid rotor, harmonic oscillators; {model.symmetry.point_group}, "
+            f"symmetry number {model.symmetry_number}{isomers}"
+        )
+    levels = ", ".join(f"{nu:g} 1/cm x {g}" for nu, g in model.levels)
+    return (
+        f"{motion}; {model.mass_kind} masses",
+        *(() if model.molecule.is_atom else (scale_text(model),)),
+        f"electronic levels {levels} ({model.levels_source})",
+    )
+
+
+def scale_text(model: ThermoModel) -> str:
+    """The scale factors in words."""
+    return f"scale factors {model.frequency_scale:g} (thermal functions) and {model.zpe_scale:g} (zero-point energy)"
+
+
+def formation_text(formation: Formation) -> str:
+    """The formation in words: value, uncertainty, route and source."""
+    spread = "" if formation.u95_kJ_mol is None else f" +/- {formation.u95_kJ_mol:.3g}"
+    at_zero = "" if formation.dHf0_kJ_mol is None else f", dHf(0 K) = {formation.dHf0_kJ_mol:.3f}"
+    return (
+        f"dHf(298.15 K) = {formation.dHf298_kJ_mol:.3f}{spread}{at_zero} kJ/mol, {formation.method}: {formation.source}"
+    )
+
+
+def _thermochemistry(entry: Entry) -> tuple[str, ...]:
+    at_298 = entry.model.ln_q(STANDARD_TEMPERATURE_K)
+    s298 = float(at_298.s_R) * GAS_CONSTANT_J_MOL_K
+    cp298 = float(at_298.cp_R) * GAS_CONSTANT_J_MOL_K
+    return (
+        formation_text(entry.formation),
+        f"S(298.15 K) = {s298:.3f}, Cp(298.15 K) = {cp298:.3f} J/mol/K; "
+        f"H(298.15 K) - H(0) = {entry.table.h298_minus_h0_kJ_mol:.3f} kJ/mol",
+        f"standard pressure {pressure_text(entry.model.options.pressure_Pa)}",
+    )
+
+
+def residual_text(entry: Entry) -> str:
+    """The residuals of the printed text in words, with the proven bound."""
+    q = entry.quality
+    return (
+        f"largest residuals dCp/R {q.dcp_R.largest:.2g} at {q.dcp_R.at_K:.0f} K, dH/RT {q.dh_RT.largest:.2g}, "
+        f"dS/R {q.ds_R.largest:.2g}; no such polynomial has dCp/R below {q.minimax_dCp_R:.2g}"
+    )
+
+
+def _fit(entry: Entry) -> tuple[str, ...]:
+    p = entry.polynomial
+    return (f"fitted {p.t_low_K:g}-{p.t_common_K:g}-{p.t_high_K:g} K; {residual_text(entry)}",)

@@ -1,0 +1,45 @@
+"""What the templates see: the species as in the JSON document, with the few texts that only records need."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Sequence
+from typing import Any
+
+from heatwright.entry import Entry
+from heatwright.findings import Finding
+from heatwright.writing.comment import CAUTION, comment_lines
+from heatwright.writing.document import failure_document, species_document, whole_document
+from heatwright.writing.render import table_context
+
+
+def entries_context(entries: Sequence[Entry], failed: Iterable[tuple[str, Iterable[Finding]]] = ()) -> dict[str, Any]:
+    """The variables of an entry template.
+
+    species : the species objects of the JSON document, each with ``charged_composition`` (with ``E`` for the electrons
+    of an ion), ``phase``, ``standard_pressure_Pa`` and ``comment`` (lines of ASCII text) besides.
+    document : the whole JSON document.   defaults : low, common and high temperature for a file's head.
+    elements : all element symbols.   contribution_names : for the table.   caution : two lines for the file's head.
+    """
+    documents = [species_document(e.name, e.model, e.table, e.findings, e) for e in entries]
+    species = [document | _record(e) for document, e in zip(documents, entries, strict=True)]
+    polynomials = [e.polynomial for e in entries]
+    return {
+        "document": whole_document(documents, [failure_document(file, found) for file, found in failed]),
+        "defaults": [
+            min((p.t_low_K for p in polynomials), default=200.0),
+            1000.0,
+            max((p.t_high_K for p in polynomials), default=6000.0),
+        ],
+        "elements": list(dict.fromkeys(symbol for s in species for symbol in s["charged_composition"])),
+        "caution": CAUTION,
+        **table_context(species),
+    }
+
+
+def _record(entry: Entry) -> dict[str, Any]:
+    return {
+        "charged_composition": entry.charged_composition,
+        "phase": entry.phase,
+        "standard_pressure_Pa": entry.model.options.pressure_Pa,
+        "comment": list(comment_lines(entry)),
+    }

@@ -1,0 +1,139 @@
+"""Molecules, tables and entries as plain values: the JSON document (version 1), which is also what templates see."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Mapping, Sequence
+from typing import Any
+
+from heatwright.constants import BAR_PA
+from heatwright.elements import formula
+from heatwright.entry import Entry
+from heatwright.findings import Finding
+from heatwright.formation.formation import Formation
+from heatwright.molecule import FloatArray, Molecule
+from heatwright.partition.model import ThermoModel, ThermoTable
+from heatwright.polynomial.nasa7 import Nasa7
+from heatwright.polynomial.quality import FitQuality
+from heatwright.writing.numbers import significant
+
+JSON_VERSION = 1
+"""The version key of every JSON document; it changes when a key changes its meaning or goes."""
+
+
+def species_document(
+    name: str, model: ThermoModel, table: ThermoTable, findings: Iterable[Finding] = (), entry: Entry | None = None
+) -> dict[str, Any]:
+    """One species as plain values; with *entry* also its formation, polynomial and residuals."""
+    molecule = model.molecule
+    document: dict[str, Any] = {
+        "name": name,
+        "formula": formula(model.composition, molecule.charge or 0),
+        "composition": model.composition,
+        "charge": molecule.charge,
+        "multiplicity": molecule.multiplicity,
+        "point_group": model.symmetry.point_group,
+        "symmetry_number": model.symmetry_number,
+        "optical_isomers": model.optical_isomers,
+        "rotational_constants_cm-1": _numbers(model.inertia.rotational_constants_cm1),
+        "wavenumbers_cm-1": _numbers(molecule.wavenumbers_cm1),
+        "frequency_scale": model.frequency_scale,
+        "zpe_scale": model.zpe_scale,
+        "zpe_kJ_mol": significant(model.zpe_kJ_mol),
+        "standard_pressure_bar": model.options.pressure_Pa / BAR_PA,
+    }
+    if entry is not None:
+        document["formation"] = _formation(entry.formation)
+    document |= {
+        "energy_hartree": molecule.energy_hartree,
+        "energy_kind": molecule.energy_kind or None,
+        "masses": model.mass_kind,
+        "low_modes": "harmonic",
+        "electronic_levels_cm-1": [[nu, g] for nu, g in model.levels],
+        "torsions": [],
+        "H298_minus_H0_kJ_mol": significant(table.h298_minus_h0_kJ_mol),
+        "table": _table(table),
+    }
+    if entry is not None:
+        document |= {"nasa7": _nasa7(entry.polynomial), "residuals": _residuals(entry.quality)}
+    document["source"] = source_document(molecule)
+    document["findings"] = [f.as_json() for f in findings]
+    return document
+
+
+def source_document(molecule: Molecule) -> dict[str, Any]:
+    """Where a molecule was read from and at which level of theory it was computed."""
+    return {
+        "file": molecule.source.file,
+        "sha256": molecule.source.sha256,
+        "program": molecule.source.program_version,
+        "level": molecule.level.label if molecule.level else None,
+    }
+
+
+def failure_document(file: str, findings: Iterable[Finding]) -> dict[str, Any]:
+    """An output that could not be used, and why."""
+    return {"file": file, "findings": [f.as_json() for f in findings]}
+
+
+def whole_document(species: Sequence[Mapping[str, Any]], failed: Sequence[Mapping[str, Any]]) -> dict[str, Any]:
+    """The JSON document of a run: what was done and what failed."""
+    return {"heatwright": JSON_VERSION, "species": list(species), "failed": list(failed)}
+
+
+def _numbers(values: Iterable[float]) -> list[float]:
+    return [significant(float(v)) for v in values]
+
+
+def _formation(formation: Formation) -> dict[str, Any]:
+    def rounded(value: float | None) -> float | None:
+        return None if value is None else significant(value)
+
+    return {
+        "dHf0_kJ_mol": rounded(formation.dHf0_kJ_mol),
+        "dHf298_kJ_mol": significant(formation.dHf298_kJ_mol),
+        "u95_kJ_mol": rounded(formation.u95_kJ_mol),
+        "method": formation.method,
+        "source": formation.source,
+        "ledger": [
+            {"what": line.what, "value_kJ_mol": significant(line.value_kJ_mol), "source": line.source}
+            for line in formation.ledger
+        ],
+    }
+
+
+def _table(table: ThermoTable) -> dict[str, Any]:
+    def column(values: FloatArray) -> list[float]:
+        return _numbers(values.tolist())
+
+    return {
+        "T_K": column(table.T_K),
+        "Cp_J_mol_K": column(table.cp_J_mol_K),
+        "H_minus_H298_kJ_mol": column(table.h_minus_h298_kJ_mol),
+        "S_J_mol_K": column(table.s_J_mol_K),
+        "minus_G_minus_H298_over_T_J_mol_K": column(table.minus_g_minus_h298_over_T_J_mol_K),
+        "contributions": {
+            name: {
+                "Cp_J_mol_K": column(share.cp_J_mol_K),
+                "H_minus_H298_kJ_mol": column(share.h_minus_h298_kJ_mol),
+                "S_J_mol_K": column(share.s_J_mol_K),
+            }
+            for name, share in table.shares.items()
+        },
+    }
+
+
+def _nasa7(polynomial: Nasa7) -> dict[str, Any]:
+    return {
+        "T_K": [polynomial.t_low_K, polynomial.t_common_K, polynomial.t_high_K],
+        "low": list(polynomial.low),
+        "high": list(polynomial.high),
+    }
+
+
+def _residuals(quality: FitQuality) -> dict[str, Any]:
+    return {
+        "max_dCp_R": significant(quality.dcp_R.largest, 4),
+        "max_dH_RT": significant(quality.dh_RT.largest, 4),
+        "max_dS_R": significant(quality.ds_R.largest, 4),
+        "minimax_dCp_R": significant(quality.minimax_dCp_R, 4),
+    }

@@ -1,0 +1,51 @@
+"""Species names: the one taken when none is given, and the check that no two species share one."""
+
+from __future__ import annotations
+
+from collections import Counter
+from collections.abc import Mapping, Sequence
+from pathlib import PurePath
+from typing import Final
+
+from heatwright.elements import formula
+from heatwright.findings import Finding, note, refuse
+from heatwright.molecule import Molecule
+from heatwright.writing.formats import fits_record_name
+
+OUTPUT_ENDINGS: Final = frozenset(
+    {".out", ".log", ".gz", ".bz2", ".xz", ".txt", ".fchk", ".fch", ".adfout", ".c4", ".qcout", ".output"}
+)
+"""File endings that are not part of a species' name."""
+
+
+def default_name(molecule: Molecule, composition: Mapping[str, int]) -> tuple[str, tuple[Finding, ...]]:
+    """The name when none is given: that of the file where it can stand in a thermo record, else the formula.
+
+    Files are usually called after their species, and isomers have no other distinction.
+    """
+    name = PurePath(molecule.source.file).name
+    while PurePath(name).suffix.lower() in OUTPUT_ENDINGS:
+        name = PurePath(name).stem
+    if fits_record_name(name):
+        return name, ()
+    by_formula = formula(composition, molecule.charge or 0)
+    said = note(
+        "name-from-formula",
+        f"the file name {name!r} does not fit the name field of a thermo record, so the species is called {by_formula}",
+        action="Give a name by --name.",
+    )
+    return by_formula, (said,)
+
+
+def duplicate_names(names: Sequence[str]) -> dict[str, Finding]:
+    """A refusal for each name that occurs more than once: readers keep only one of such entries, without a word."""
+    return {
+        name: refuse(
+            "duplicate-name",
+            f"{count} of the outputs would be written as species {name}",
+            expected="one entry for each name",
+            action="Give each output a name of its own by --name.",
+        )
+        for name, count in Counter(names).items()
+        if count > 1
+    }

@@ -1,0 +1,147 @@
+"""Rendering templates and putting the result on disk whole or not at all."""
+
+from __future__ import annotations
+
+import os
+import tempfile
+from collections.abc import Mapping, Sequence
+from pathlib import Path
+from typing import Any
+
+from jinja2 import FileSystemLoader, StrictUndefined, TemplateError
+from jinja2.sandbox import SandboxedEnvironment
+
+from heatwright.findings import Refused, refuse
+from heatwright.resources import templates
+from heatwright.writing import numbers
+
+
+def _environment(folder: str) -> SandboxedEnvironment:
+    environment = SandboxedEnvironment(
+        loader=FileSystemLoader(folder),
+        undefined=StrictUndefined,
+        keep_trailing_newline=True,
+        trim_blocks=True,
+        lstrip_blocks=True,
+        autoescape=False,
+    )
+    environment.filters.update(
+        left=numbers.left,
+        fixed=numbers.fixed,
+        coefficient=numbers.coefficient,
+        element_fields=numbers.element_fields,
+        continuation=numbers.continuation,
+        yaml=numbers.yaml_text,
+        json=numbers.json_text,
+        csv=numbers.csv_text,
+    )
+    return environment
+
+
+def render_format(template: str, context: Mapping[str, Any]) -> str:
+    """The text of one of the shipped templates."""
+    return _environment(str(templates())).get_template(template).render(context)
+
+
+def render_user_template(path: str, context: Mapping[str, Any]) -> str:
+    """The text of the user's own template.
+
+    Raises Refused with file and line when it cannot be read, is not a template, or asks for an unknown variable.
+    """
+    file = Path(path)
+    try:
+        return _environment(str(file.parent)).get_template(file.name).render(context)
+    except Refused:
+        raise
+    except (TemplateError, ArithmeticError, LookupError, TypeError, ValueError, UnicodeDecodeError) as error:
+        line = getattr(error, "lineno", None) or _line_in_template(error, file)
+        raise Refused(
+            [
+                refuse(
+                    "template-failed",
+                    f"the template could not be rendered ({type(error).__name__}: {error})",
+                    where=f"{path}:{line}" if line else path,
+                    action="See README.md for the variables a template can use.",
+                )
+            ]
+        ) from error
+
+
+def _line_in_template(error: BaseException, file: Path) -> int | None:
+    """The line of *file* in which the error arose; jinja2 maps its code back to template lines in the traceback."""
+    line, trace = None, error.__traceback__
+    while trace is not None:
+        if Path(trace.tb_frame.f_code.co_filename).name == file.name:
+            line = trace.tb_lineno
+        trace = trace.tb_next
+    return line
+
+
+def check_target(path: str, force: bool) -> None:
+    """Raises Refused when *path* cannot be written, or exists and *force* is not given."""
+    target = Path(path)
+    if target.is_dir():
+        raise Refused([refuse("target-unwritable", "the output file is a folder", where=path)])
+    if target.exists() and not force:
+        raise Refused(
+            [
+                refuse(
+                    "target-exists",
+                    "the file exists already",
+                    where=path,
+                    action="Choose another name, or say --force to replace it.",
+                )
+            ]
+        )
+    folder = target.parent
+    if not folder.is_dir() or not os.access(folder, os.W_OK) or (target.exists() and not os.access(target, os.W_OK)):
+        raise _unwritable(path, "the folder is missing or must not be written to")
+
+
+def write_text(path: str, text: str) -> None:
+    """Writes *text* to *path* (UTF-8, ``\\n``), whole or not at all: a temporary file beside it is renamed.
+
+    Raises Refused when that fails; whatever was at *path* before is then still there.
+    """
+    target = Path(path)
+    temporary = None
+    try:
+        with tempfile.NamedTemporaryFile(
+            "w", encoding="utf-8", newline="\n", dir=target.parent, prefix=f".{target.name}.", delete=False
+        ) as stream:
+            temporary = stream.name
+            stream.write(text)
+            stream.flush()
+            os.fsync(stream.fileno())
+        os.chmod(temporary, 0o666 & ~_umask())
+        os.replace(temporary, target)
+    except OSError as error:
+        if temporary is not None:
+            Path(temporary).unlink(missing_ok=True)
+        raise _unwritable(path, error.strerror or str(error)) from error
+
+
+def _umask() -> int:
+    """The process's file mode mask, which can only be read by setting it."""
+    mask = os.umask(0)
+    os.umask(mask)
+    return mask
+
+
+def _unwritable(path: str, reason: str) -> Refused:
+    return Refused(
+        [
+            refuse(
+                "target-unwritable",
+                f"the file cannot be written ({reason})",
+                where=path,
+                action="Choose a folder that exists and may be written to.",
+            )
+        ]
+    )
+
+
+def table_context(documents: Sequence[Mapping[str, Any]]) -> dict[str, Any]:
+    """What the table template sees: the species and the names of all their contributions, in order of appearance."""
+    names = dict.fromkeys(name for species in documents for name in species["table"]["contributions"])
+    return {"species": documents, "contribution_names": list(names)}

@@ -1,0 +1,53 @@
+"""The table as text for a terminal."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+
+from heatwright.elements import formula
+from heatwright.partition.model import ThermoModel, ThermoTable
+from heatwright.writing.comment import pressure_text
+
+
+def text_table(name: str, model: ThermoModel, table: ThermoTable) -> str:
+    """Two blocks of columns under a heading: the totals, and the share of each contribution in Cp° and S°."""
+    return "\n".join((*_heading(name, model, table), "", *_totals(table), "", *_shares(table))) + "\n"
+
+
+def _heading(name: str, model: ThermoModel, table: ThermoTable) -> Iterable[str]:
+    molecule = model.molecule
+    level = molecule.level.label if molecule.level else "level of theory not printed"
+    constants = ", ".join(f"{b:.5g}" for b in model.inertia.rotational_constants_cm1)
+    yield f"{name}   {formula(model.composition, molecule.charge or 0)}, multiplicity {molecule.multiplicity}"
+    pressure = pressure_text(model.options.pressure_Pa)
+    yield f"{molecule.source.program_version}, {level}; {model.mass_kind} masses, {pressure}"
+    if not molecule.is_atom:
+        isomers = f", {model.optical_isomers} optical isomers" if model.optical_isomers > 1 else ""
+        yield f"{model.symmetry.point_group}, symmetry number {model.symmetry_number}{isomers}; {constants} cm⁻¹"
+        yield (
+            f"{molecule.wavenumbers_cm1.size} modes, scale factor {model.frequency_scale:g}; zero-point energy "
+            f"{model.zpe_kJ_mol:.3f} kJ/mol, scale factor {model.zpe_scale:g}"
+        )
+    levels = ", ".join(f"{nu:g} cm⁻¹ × {g}" for nu, g in model.levels)
+    yield f"electronic levels {levels} ({model.levels_source})"
+    yield f"H°(298.15 K) − H°(0 K) = {table.h298_minus_h0_kJ_mol:.3f} kJ/mol"
+
+
+def _totals(table: ThermoTable) -> Iterable[str]:
+    yield f"{'T':>9} {'Cp°':>10} {'H°−H°(298)':>12} {'S°':>10} {'−[G°−H°(298)]/T':>17}"
+    yield f"{'K':>9} {'J/mol/K':>10} {'kJ/mol':>12} {'J/mol/K':>10} {'J/mol/K':>17}"
+    columns = (table.T_K, table.cp_J_mol_K, table.h_minus_h298_kJ_mol, table.s_J_mol_K)
+    for T, cp, h, s, g in zip(*columns, table.minus_g_minus_h298_over_T_J_mol_K, strict=True):
+        yield f"{T:9.2f} {cp:10.3f} {h:12.3f} {s:10.3f} {g:17.3f}"
+
+
+def _shares(table: ThermoTable) -> Iterable[str]:
+    names = list(table.shares)
+    widths = [max(len(name), 9) for name in names]
+    labels = " ".join(f"{name:>{width}}" for name, width in zip(names, widths, strict=True))
+    yield f"{'T':>9}   {'share of Cp°, J/mol/K':<{len(labels)}}   share of S°, J/mol/K"
+    yield f"{'K':>9}   {labels}   {labels}"
+    for i, T in enumerate(table.T_K):
+        cp = " ".join(f"{table.shares[n].cp_J_mol_K[i]:{w}.3f}" for n, w in zip(names, widths, strict=True))
+        s = " ".join(f"{table.shares[n].s_J_mol_K[i]:{w}.3f}" for n, w in zip(names, widths, strict=True))
+        yield f"{T:9.2f}   {cp}   {s}"

@@ -1,0 +1,128 @@
+"""Every closed form against derivatives of its own ln q, by mpmath; Cp = dH/dT and dS/dT = Cp/T for any sum."""
+
+from __future__ import annotations
+
+import mpmath
+import numpy as np
+import pytest
+from hypothesis import given, settings
+from hypothesis import strategies as st
+
+from heatwright.constants import SECOND_RADIATION_CM_K
+from heatwright.partition.contribution import ConstantFactor, total_ln_q
+from heatwright.partition.electronic import ElectronicLevels
+from heatwright.partition.rotation import ClassicalRotor
+from heatwright.partition.translation import Translation
+from heatwright.partition.vibration import HarmonicVibration
+
+mpmath.mp.dps = 40
+C2 = mpmath.mpf(SECOND_RADIATION_CM_K)
+
+
+def exact_vibration(wavenumbers: list[float]):
+    return lambda T: -sum(mpmath.log(1 - mpmath.exp(-C2 * nu / T)) for nu in wavenumbers)
+
+
+def exact_levels(levels: list[tuple[float, int]]):
+    return lambda T: mpmath.log(sum(g * mpmath.exp(-C2 * mpmath.mpf(nu) / T) for nu, g in levels))
+
+
+def exact_translation(mass_u: float, pressure_Pa: float):
+    u, k, h = (mpmath.mpf(text) for text in ("1.66053906660e-27", "1.380649e-23", "6.62607015e-34"))
+    return lambda T: mpmath.log((2 * mpmath.pi * mass_u * u * k * T / h**2) ** mpmath.mpf("1.5") * k * T / pressure_Pa)
+
+
+def exact_rotor(constants: tuple[float, ...], sigma: int):
+    if len(constants) == 1:
+        return lambda T: mpmath.log(T / (sigma * C2 * mpmath.mpf(constants[0])))
+    product = mpmath.mpf(1)
+    for b in constants:
+        product *= b
+    return lambda T: mpmath.log(mpmath.sqrt(mpmath.pi * T**3 / (C2**3 * product)) / sigma)
+
+
+CASES = [
+    (Translation(31.5, 101325.0), exact_translation(31.5, 101325.0)),
+    (ClassicalRotor((1.9,), 2), exact_rotor((1.9,), 2)),
+    (ClassicalRotor((27.9, 14.5, 9.3), 2), exact_rotor((27.9, 14.5, 9.3), 2)),
+    (HarmonicVibration((12.0, 350.0, 1500.0, 3800.0)), exact_vibration([12.0, 350.0, 1500.0, 3800.0])),
+    (
+        ElectronicLevels(((0.0, 5), (158.265, 3), (226.977, 1), (15867.862, 5))),
+        exact_levels([(0.0, 5), (158.265, 3), (226.977, 1), (15867.862, 5)]),
+    ),
+]
+
+
+@pytest.mark.parametrize(("contribution", "exact"), CASES, ids=lambda case: getattr(case, "name", "ln q"))
+@pytest.mark.parametrize("T", [50.0, 298.15, 1000.0, 6000.0])
+def test_closed_forms_are_the_derivatives_of_ln_q(contribution, exact, T: float) -> None:
+    t = mpmath.mpf(T)
+    first, second = mpmath.diff(exact, t, 1), mpmath.diff(exact, t, 2)
+    got = contribution.ln_q(np.array([T]))
+    for value, truth in ((got.ln_q, exact(t)), (got.u, t * first), (got.w, t**2 * second)):
+        assert abs(float(value[0]) - truth) <= 1e-10 * max(1, abs(truth))
+
+
+levels_of = st.lists(
+    st.tuples(st.floats(1.0, 40000.0), st.integers(1, 12)), min_size=0, max_size=5, unique_by=lambda level: level[0]
+).map(lambda excited: ((0.0, 2), *sorted(excited)))
+
+molecules = st.tuples(
+    st.builds(Translation, st.floats(1.0, 1000.0), st.sampled_from([1.0e5, 101325.0])),
+    st.builds(
+        ClassicalRotor,
+        st.one_of(st.tuples(st.floats(0.001, 80.0)), st.tuples(*[st.floats(0.001, 80.0)] * 3)),
+        st.integers(1, 60),
+    ),
+    st.builds(HarmonicVibration, st.lists(st.floats(1.0, 5000.0), min_size=0, max_size=60).map(tuple)),
+    st.builds(ElectronicLevels, levels_of),
+    st.builds(ConstantFactor, st.just("optical isomers"), st.integers(1, 4)),
+)
+
+
+def derivative(function, T: float) -> float:
+    """First derivative by Richardson extrapolation of central differences (independent of the closed forms)."""
+    steps = [T * 0.02 / 2**i for i in range(6)]
+    table = [[(function(T + h) - function(T - h)) / (2 * h) for h in steps]]
+    for order in range(1, len(steps)):
+        last = table[-1]
+        factor = 4.0**order
+        table.append([(factor * last[i + 1] - last[i]) / (factor - 1) for i in range(len(last) - 1)])
+    return table[-1][0]
+
+
+@settings(max_examples=150, deadline=None)
+@given(molecules, st.floats(100.0, 6000.0))
+def test_cp_is_dh_dt_and_t_ds_dt(parts, T: float) -> None:
+    at = total_ln_q(parts, np.array([T]))
+    cp = float(at.cp_R[0])
+    h = derivative(lambda t: float(total_ln_q(parts, np.array([t])).h_RT[0]) * t, T)
+    s = derivative(lambda t: float(total_ln_q(parts, np.array([t])).s_R[0]), T) * T
+    assert h == pytest.approx(cp, rel=1e-9)
+    assert s == pytest.approx(cp, rel=1e-9)
+
+
+@given(st.lists(st.floats(1.0, 5000.0), min_size=1, max_size=30), st.randoms())
+def test_the_order_of_modes_does_not_matter(wavenumbers: list[float], random) -> None:
+    shuffled = list(wavenumbers)
+    random.shuffle(shuffled)
+    grid = np.array([200.0, 1000.0, 6000.0])
+    one, two = (HarmonicVibration(tuple(w)).ln_q(grid) for w in (wavenumbers, shuffled))
+    np.testing.assert_allclose(one.cp_R, two.cp_R, rtol=1e-12, atol=1e-14)
+    np.testing.assert_allclose(one.s_R, two.s_R, rtol=1e-12, atol=1e-14)
+
+
+def test_limits_of_the_oscillator() -> None:
+    # x = 1e-7 (classical) and x = 5000 (frozen): no overflow, no loss of digits.
+    grid = np.array([1.0])
+    hot = HarmonicVibration((1e-7 / SECOND_RADIATION_CM_K,)).ln_q(grid)
+    cold = HarmonicVibration((5000.0 / SECOND_RADIATION_CM_K,)).ln_q(grid)
+    assert float(hot.cp_R[0]) == pytest.approx(1.0, abs=1e-12)
+    assert float(hot.ln_q[0]) == pytest.approx(-np.log(1e-7), rel=1e-8)
+    assert float(cold.cp_R[0]) == float(cold.s_R[0]) == 0.0
+
+
+@pytest.mark.parametrize("wavenumber", [0.0, -100.0, float("nan")])
+def test_a_mode_that_is_not_positive_is_refused(wavenumber: float) -> None:
+    with pytest.raises(ValueError, match="mode 2"):
+        HarmonicVibration((1000.0, wavenumber))
