@@ -2,9 +2,10 @@
 
 Every operation of a molecule that is not linear is fixed by what it does to two atoms that are not collinear with the
 centre.  So two atoms with few possible images are chosen, each pair of images gives one proper and one improper
-candidate, and each candidate is refined: atoms are matched to the nearest atom of their kind, and the orthogonal
-matrix of the same handedness that fits this matching best replaces the candidate (orthogonal Procrustes problem,
-P. H. Schönemann, Psychometrika 31, 1 (1966), from memory).
+candidate: atoms are matched with the nearest atom of their kind, and the orthogonal matrix of the same handedness that
+fits this matching best replaces the candidate (orthogonal Procrustes problem, P. H. Schönemann, Psychometrika 31, 1
+(1966), from memory).  One round of matching and fitting is enough: a second one was tried and found no operation within
+the tolerance that the first had missed.
 
 The operations are those about the centre of mass, as rotation itself is.  A centre fitted freely would be more lenient:
 it hides part of what is amiss in light atoms by moving the heavy ones.
@@ -23,7 +24,6 @@ from heatwright.molecule import FloatArray, IntArray
 
 BoolArray = NDArray[np.bool_]
 
-_REFINEMENTS: Final = 3
 _CHUNK: Final = 2_000_000
 """Elements of the largest working array (candidates × atoms × atoms)."""
 
@@ -63,9 +63,9 @@ def find_operations(kinds: IntArray, x: FloatArray, reach_A: float) -> Operation
     same = kinds[:, None] == kinds[None, :]
     size = max(1, _CHUNK // x.shape[0] ** 2)
     candidates = _candidates(x, same, reach_A)
-    parts = [_refined(x, same, chunk) for chunk in _chunks(candidates, size)]
-    matrices, permutations, proper = (np.concatenate(column) for column in zip(*parts, strict=True))
-    return _distinct(x, matrices, permutations, proper)
+    parts = [_matched(x, same, chunk) for chunk in _chunks(candidates, size)]
+    permutations, proper = (np.concatenate(column) for column in zip(*parts, strict=True))
+    return _fitted(x, permutations, proper)
 
 
 def linear_operations(kinds: IntArray, x: FloatArray) -> Operations:
@@ -134,25 +134,17 @@ def _frames(p: FloatArray, q: FloatArray) -> tuple[FloatArray, BoolArray]:
     return np.stack([e1, np.cross(e3, e1), e3], axis=1), usable
 
 
-def _refined(x: FloatArray, same: BoolArray, matrices: FloatArray) -> tuple[FloatArray, IntArray, BoolArray]:
-    """Candidates after matching and fitting in turn, as matrices, permutations and handedness; only one-to-one ones."""
-    proper = np.linalg.det(matrices) > 0.0
-    permutations = _nearest(x, same, matrices)
-    for _ in range(_REFINEMENTS):
-        matrices = _procrustes(x, permutations, proper)
-        before, permutations = permutations, _nearest(x, same, matrices)
-        if np.array_equal(before, permutations):
-            break
-    one_to_one = (np.sort(permutations, axis=1) == np.arange(x.shape[0])).all(axis=1)
-    return matrices[one_to_one], permutations[one_to_one], proper[one_to_one]
+def _matched(x: FloatArray, same: BoolArray, matrices: FloatArray) -> tuple[IntArray, BoolArray]:
+    """Permutations (k, n) and handedness (k,) of the candidates that match the atoms one to one.
 
-
-def _nearest(x: FloatArray, same: BoolArray, matrices: FloatArray) -> IntArray:
-    """(k, n) the atom of its kind that each atom's image is nearest to."""
+    Each atom's image is matched with the atom of its kind that is nearest to it.
+    """
     images = x @ matrices.transpose(0, 2, 1)
     # |image − x_j|² without |image|², which is the same for every j; atoms of another kind are out of the question
     cost = (x**2).sum(axis=1) - 2.0 * images @ x.T
-    return np.asarray(np.where(same, cost, np.inf).argmin(axis=2), dtype=np.int64)
+    permutations = np.where(same, cost, np.inf).argmin(axis=2)
+    one_to_one = (np.sort(permutations, axis=1) == np.arange(x.shape[0])).all(axis=1)
+    return permutations[one_to_one], np.linalg.det(matrices[one_to_one]) > 0.0
 
 
 def _procrustes(x: FloatArray, permutations: IntArray, proper: BoolArray) -> FloatArray:
@@ -163,13 +155,12 @@ def _procrustes(x: FloatArray, permutations: IntArray, proper: BoolArray) -> Flo
     return np.asarray(u @ vt)
 
 
-def _distinct(x: FloatArray, matrices: FloatArray, permutations: IntArray, proper: BoolArray) -> Operations:
-    """Each (permutation, handedness) once, by growing deviation."""
+def _fitted(x: FloatArray, permutations: IntArray, proper: BoolArray) -> Operations:
+    """The best operation for each (permutation, handedness), once, by growing deviation."""
     _, first = np.unique(np.column_stack([permutations, proper]), axis=0, return_index=True)
-    matrices = _procrustes(x, permutations[first], proper[first])
-    images = x @ matrices.transpose(0, 2, 1)
-    deviations = np.linalg.norm(images - x[permutations[first]], axis=2).max(axis=1)
-    identity = proper[first] & (permutations[first] == np.arange(x.shape[0])).all(axis=1)
+    permutations, proper = permutations[first], proper[first]
+    matrices = _procrustes(x, permutations, proper)
+    deviations = np.linalg.norm(x @ matrices.transpose(0, 2, 1) - x[permutations], axis=2).max(axis=1)
+    identity = proper & (permutations == np.arange(x.shape[0])).all(axis=1)
     deviations[identity] = 0.0  # not the rounding of a singular-value decomposition
-    found = Operations(matrices, permutations[first], proper[first], deviations)
-    return found.take(np.argsort(deviations, kind="stable"))
+    return Operations(matrices, permutations, proper, deviations).take(np.argsort(deviations, kind="stable"))

@@ -92,7 +92,8 @@ def _cyclic(order: int, reflections: int) -> str:
 
 def _n_reflections(group: Operations) -> int:
     """Improper operations that are their own inverse, the inversion (trace −3) left out; a reflection has trace 1."""
-    own_inverse = np.array([_order(p) <= 2 for p in group.permutations])
+    twice = np.take_along_axis(group.permutations, group.permutations, axis=1)
+    own_inverse = (twice == np.arange(twice.shape[1])).all(axis=1)
     trace = np.trace(group.matrices, axis1=1, axis2=2)
     return int(np.count_nonzero(own_inverse & ~group.proper & (trace > -1.0)))
 

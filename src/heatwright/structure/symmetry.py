@@ -153,7 +153,7 @@ def _summary(found: Operations, tolerance: float, linear: bool) -> Symmetry:
     wider = None if linear else next_group(found, len(group), _DOUBT * tolerance)
     if linear and len(group) < len(found) and rejected[0] < _DOUBT * tolerance:
         wider = found
-    tighter = _accepted(found, tolerance / _DOUBT, linear)
+    tighter = _accepted(group, tolerance / _DOUBT, linear) if group.deviations_A[-1] > tolerance / _DOUBT else group
     return Symmetry(
         *_name(group, linear),
         chiral=bool(group.proper.all()),
