@@ -1,3 +1,110 @@
-"""heatwright: from quantum-chemistry outputs to NASA polynomial thermo entries with residuals that can be checked."""
+"""heatwright: from quantum-chemistry outputs to NASA polynomial thermo entries with residuals that can be checked.
+
+>>> from heatwright import read_output, build_model
+>>> from heatwright.resources import sample_outputs
+>>> model = build_model(read_output(str(sample_outputs() / "H2O.out")))
+>>> round(float(model.s_R(298.15)) * 8.31446261815324, 1)
+188.8
+"""
+
+from __future__ import annotations
+
+from importlib import import_module
+from typing import TYPE_CHECKING, Any
 
 __version__ = "0.1.0"
+
+if TYPE_CHECKING:
+    from heatwright.entry import Entry, FitOptions, make_entry
+    from heatwright.errors import HeatwrightError, UsageError
+    from heatwright.findings import Finding, Refused
+    from heatwright.formation.atomization import collect_atoms, formation_by_atomization
+    from heatwright.formation.formation import Formation, formation_given, parse_enthalpy
+    from heatwright.molecule import Level, Molecule
+    from heatwright.partition.contribution import Contribution, LnQ
+    from heatwright.partition.model import ModelOptions, ThermoModel, ThermoTable, build_model
+    from heatwright.polynomial.fit import fit_nasa7
+    from heatwright.polynomial.nasa7 import Nasa7
+    from heatwright.polynomial.quality import FitQuality, fit_quality
+    from heatwright.reading.outputs import read_output
+    from heatwright.structure.symmetry import Symmetry, symmetry
+    from heatwright.writing.context import entries_context
+    from heatwright.writing.render import render_format
+
+_HOME = {
+    "Contribution": "partition.contribution",
+    "Entry": "entry",
+    "Finding": "findings",
+    "FitOptions": "entry",
+    "FitQuality": "polynomial.quality",
+    "Formation": "formation.formation",
+    "HeatwrightError": "errors",
+    "Level": "molecule",
+    "LnQ": "partition.contribution",
+    "ModelOptions": "partition.model",
+    "Molecule": "molecule",
+    "Nasa7": "polynomial.nasa7",
+    "Refused": "findings",
+    "Symmetry": "structure.symmetry",
+    "ThermoModel": "partition.model",
+    "ThermoTable": "partition.model",
+    "UsageError": "errors",
+    "build_model": "partition.model",
+    "collect_atoms": "formation.atomization",
+    "entries_context": "writing.context",
+    "fit_nasa7": "polynomial.fit",
+    "fit_quality": "polynomial.quality",
+    "formation_by_atomization": "formation.atomization",
+    "formation_given": "formation.formation",
+    "make_entry": "entry",
+    "parse_enthalpy": "formation.formation",
+    "read_output": "reading.outputs",
+    "render_format": "writing.render",
+    "symmetry": "structure.symmetry",
+}
+"""Where each public name lives; it is imported when first asked for, so that a command starts quickly."""
+
+__all__ = [
+    "Contribution",
+    "Entry",
+    "Finding",
+    "FitOptions",
+    "FitQuality",
+    "Formation",
+    "HeatwrightError",
+    "Level",
+    "LnQ",
+    "ModelOptions",
+    "Molecule",
+    "Nasa7",
+    "Refused",
+    "Symmetry",
+    "ThermoModel",
+    "ThermoTable",
+    "UsageError",
+    "__version__",
+    "build_model",
+    "collect_atoms",
+    "entries_context",
+    "fit_nasa7",
+    "fit_quality",
+    "formation_by_atomization",
+    "formation_given",
+    "make_entry",
+    "parse_enthalpy",
+    "read_output",
+    "render_format",
+    "symmetry",
+]
+
+
+def __getattr__(name: str) -> Any:
+    if name not in _HOME:
+        raise AttributeError(f"module {__name__!r} has no attribute {name!r}")
+    value = getattr(import_module(f"{__name__}.{_HOME[name]}"), name)
+    globals()[name] = value
+    return value
+
+
+def __dir__() -> list[str]:
+    return sorted(__all__)

@@ -97,3 +97,17 @@ def formula(atoms: Mapping[str, int], charge: int = 0) -> str:
     if abs(charge) == 1:
         return text + ("+" if charge > 0 else "-")
     return f"{text}{charge:+d}" if charge else text
+
+
+@cache
+def _ground_states() -> dict[int, int]:
+    return {int(row["atomic_number"]): int(row["multiplicity"]) for row in data_rows("ground_states")}
+
+
+def ground_multiplicity(number: int) -> int | None:
+    """Spin multiplicity of the neutral atom's ground state, or None outside ``data/ground_states.csv``.
+
+    >>> ground_multiplicity(6)
+    3
+    """
+    return _ground_states().get(int(number))

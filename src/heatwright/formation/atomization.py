@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 
 from heatwright.constants import HARTREE_KJ_MOL
-from heatwright.elements import symbol
+from heatwright.elements import ground_multiplicity, symbol
 from heatwright.findings import Finding, Refused, refusals, refuse, warn
 from heatwright.formation.formation import (
     Formation,
@@ -17,7 +17,6 @@ from heatwright.formation.references import AtomReference, atom_reference, eleme
 from heatwright.molecule import Molecule
 from heatwright.partition.model import ThermoModel
 from heatwright.reading.levels import level_differences, level_unknowns
-from heatwright.reading.soundness import ground_multiplicity
 
 Atoms = Mapping[str, tuple[Molecule, ...]]
 """Atom outputs by element symbol; several levels of theory may lie side by side."""

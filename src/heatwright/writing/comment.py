@@ -8,6 +8,7 @@ from typing import Final
 from heatwright.constants import ATMOSPHERE_PA, BAR_PA, GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
 from heatwright.elements import formula
 from heatwright.entry import Entry
+from heatwright.findings import SEVERITY_WORD
 from heatwright.formation.formation import Formation
 from heatwright.partition.model import ThermoModel
 
@@ -38,7 +39,7 @@ def comment_lines(entry: Entry) -> tuple[str, ...]:
         *_treatment(entry.model),
         *_thermochemistry(entry),
         *_fit(entry),
-        *(f"{f.severity}: {f.text}" for f in entry.findings if f.severity == "warn" or f.code == "user-value"),
+        *(f"{SEVERITY_WORD[f.severity]}: {f.text}" for f in entry.findings if f.severity == "warn" or f.code == "user-value"),
     )
     return tuple(line for text in paragraphs for line in _wrapped(text))
 
@@ -78,12 +79,19 @@ def _treatment(model: ThermoModel) -> tuple[str, ...]:
             f"rigid rotor, harmonic oscillators; {model.symmetry.point_group}, "
             f"symmetry number {model.symmetry_number}{isomers}"
         )
-    levels = ", ".join(f"{nu:g} 1/cm x {g}" for nu, g in model.levels)
     return (
         f"{motion}; {model.mass_kind} masses",
         *(() if model.molecule.is_atom else (scale_text(model),)),
-        f"electronic levels {levels} ({model.levels_source})",
+        levels_text(model),
     )
+
+
+def levels_text(model: ThermoModel) -> str:
+    """The electronic levels in words, with where they are from."""
+    if model.levels == ((0.0, 1),):
+        return f"a single electronic level ({model.levels_source})"
+    levels = ", ".join(f"{nu:g} 1/cm x {g}" for nu, g in model.levels)
+    return f"electronic levels {levels} ({model.levels_source})"
 
 
 def scale_text(model: ThermoModel) -> str:

@@ -6,7 +6,7 @@ from collections.abc import Iterable
 
 from heatwright.elements import formula
 from heatwright.partition.model import ThermoModel, ThermoTable
-from heatwright.writing.comment import pressure_text
+from heatwright.writing.comment import levels_text, pressure_text
 
 
 def text_table(name: str, model: ThermoModel, table: ThermoTable) -> str:
@@ -28,8 +28,7 @@ def _heading(name: str, model: ThermoModel, table: ThermoTable) -> Iterable[str]
             f"{molecule.wavenumbers_cm1.size} modes, scale factor {model.frequency_scale:g}; zero-point energy "
             f"{model.zpe_kJ_mol:.3f} kJ/mol, scale factor {model.zpe_scale:g}"
         )
-    levels = ", ".join(f"{nu:g} cm⁻¹ × {g}" for nu, g in model.levels)
-    yield f"electronic levels {levels} ({model.levels_source})"
+    yield levels_text(model).replace("1/cm x", "cm⁻¹ ×")
     yield f"H°(298.15 K) − H°(0 K) = {table.h298_minus_h0_kJ_mol:.3f} kJ/mol"
 
 
