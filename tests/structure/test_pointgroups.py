@@ -312,6 +312,27 @@ def test_a_nearly_planar_molecule_is_in_doubt_of_its_chirality() -> None:
     assert "would make it C2h (symmetry number 2)" in finding.text
 
 
+def test_a_linear_molecule_with_unequal_halves() -> None:
+    """Reversal about the centre of mass misses by what the halves differ in."""
+    carbon_dioxide: Atoms = [("O", np.array([0, 0, -1.20])), ("C", np.zeros(3)), ("O", np.array([0, 0, 1.12]))]
+    found = symmetry_of(carbon_dioxide)
+    centre = 15.99491462 * (1.12 - 1.20) / (2 * 15.99491462 + 12)
+    assert found.point_group == "Cinfv"
+    assert found.smallest_rejected_deviation_A == pytest.approx(abs(2 * centre))
+    assert found.if_looser == ("Dinfh", 2)
+    assert "would make it Dinfh (symmetry number 2)" in symmetry_findings(found)[0].text
+    assert symmetry_of(carbon_dioxide, 0.1).point_group == "Dinfh"
+
+
+def test_a_tight_tolerance_keeps_the_axis_of_a_linear_molecule() -> None:
+    """What is linear is one rule for inertia and symmetry, so that the two cannot contradict each other."""
+    hcn: Atoms = [("H", np.array([0.01, 0, -1.066])), ("C", np.zeros(3)), ("N", np.array([0, 0, 1.153]))]
+    found = symmetry_of(hcn, 0.001)
+    assert (found.point_group, found.chiral) == ("Cinfv", False)
+    assert found.largest_accepted_deviation_A > 0.001
+    assert found.ambiguous
+
+
 # --- isotopes ---------------------------------------------------------------------------------------------------------
 
 METHANE: Atoms = [("C", np.zeros(3)), *(("H", p) for p in tetrahedron(1.09))]
