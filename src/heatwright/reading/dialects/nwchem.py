@@ -1,0 +1,354 @@
+"""NWChem 6 and 7: one banner, many tasks; 3N wavenumbers; masses and the geometry of the Hessian in "Atom information"."""
+
+from __future__ import annotations
+
+import re
+from typing import ClassVar, Final
+
+import numpy as np
+
+from heatwright.constants import CALORIE_J
+from heatwright.molecule import FloatArray, Level, PrintedThermo
+from heatwright.reading.dialects.base import (
+    Dialect,
+    Energy,
+    Facts,
+    Failure,
+    Identity,
+    as_integer,
+    chosen_point,
+)
+from heatwright.reading.levels import normalise_basis, normalise_method
+from heatwright.reading.parsing import Parsed
+from heatwright.reading.text import Text, number, numbers
+
+_TASK = "NWChem Input Module"
+_BOHR_PER_ANGSTROM: Final = 1.889725989
+"""The scale NWChem itself prints over its coordinates; used to turn its bohr back into the ångströms it was given."""
+_ENERGIES: Final = (
+    ("Total SCF energy =", "SCF"),
+    ("Total DFT energy =", "SCF"),
+    ("Total MP2 energy ", "MP2"),
+    ("Total MP2 energy:", "MP2"),
+    ("Total SCS-MP2 energy ", "SCS-MP2"),
+    ("Total CCSD energy:", "CCSD"),
+    ("Total CCSD(T) energy:", "CCSD(T)"),
+    ("CCSD total energy / hartree", "CCSD"),
+    ("CCSD(T) total energy / hartree", "CCSD(T)"),
+    ("CCSDT total energy / hartree", "CCSDT"),
+    ("MBPT(2) total energy / hartree", "MP2"),
+    ("QCISD total energy / hartree", "QCISD"),
+    ("CISD total energy / hartree", "CISD"),
+)
+_MODULES: Final = re.compile(r"^ +NWChem (?:\S+ )*(?:Module|Optimization|Analysis|Calculation)\s*$", re.MULTILINE)
+_LOCAL_CORRELATION: Final = {
+    "VWN I RPA": "VWN1RPA",
+    "VWN V ": "VWN5",
+    "VWN III": "VWN3",
+    "VWN II ": "VWN2",
+    "VWN IV": "VWN4",
+    "VWN I ": "VWN1",
+}
+_PAIRS: Final = (
+    ("PerdewBurkeErnzerhof Exchange", "Perdew 1996", "PBE"),
+    ("PerdewBurkeErnzerhof Exchange", "Perdew 1991 LDA", "PBE"),
+    ("Becke 1988 Exchange", "Lee-Yang-Parr", "BLYP"),
+    ("Becke 1988 Exchange", "Perdew 1986", "BP86"),
+    ("TPSS metaGGA Exchange", "TPSS metaGGA Corr", "TPSS"),
+)
+
+
+class NWChem(Dialect):
+    """The dialect of NWChem."""
+
+    name = "NWChem"
+    endings: ClassVar = ("Total times  cpu:",)
+    failures: ClassVar = (
+        Failure("Failed to converge in maximum number of steps or available time", "the geometry optimisation did not converge"),
+        Failure("This type of error is most commonly associated with", "NWChem stopped with an error"),
+        Failure("There is an error in the input file", "NWChem found an error in its input"),
+        Failure("Calculation failed to converge", "the SCF did not converge"),
+        Failure("Received an Error in Communication", "NWChem stopped with an error"),
+        Failure("Segmentation Violation error", "NWChem crashed"),
+    )
+    mode_anchors: ClassVar = ("NORMAL MODE EIGENVECTORS IN CARTESIAN COORDINATES",)
+    cumulative = True
+
+    def jobs(self, whole: Text) -> list[Text]:
+        """One job a task; the input module that closes the run, and input without a task, belong to their neighbours."""
+        starts = whole.spots(_TASK)
+        edges: list[int] = []
+        for start, end in zip(starts, [*starts, whole.end][1:], strict=True):
+            part = whole.part(start + len(_TASK), end)
+            if _MODULES.search(part.whole, part.start, part.end):
+                edges.append(start)
+        bounds = [whole.start, *edges[1:], whole.end]
+        return [whole.part(a, b) for a, b in zip(bounds, bounds[1:], strict=False)]
+
+    def prologue(self, first: Text, same_molecule: bool) -> Text:
+        start = first.find(_TASK)
+        module = _MODULES.search(first.whole, start + len(_TASK), first.end) if start >= 0 else None
+        if same_molecule and module:
+            return first.part(first.start, module.start())
+        return first.part(first.start, start if start >= 0 else first.end)
+
+    def identity(self, job: Text) -> Identity:
+        whole = Text(job.whole, 0, job.end)
+        return Identity(
+            atoms=_atoms(whole),
+            charge=_charge(job),
+            multiplicity=_multiplicity(job),
+            has_modes=any(anchor in job for anchor in self.mode_anchors),
+            optimises="NWChem Geometry Optimization" in job,
+        )
+
+    def terminated(self, job: Text) -> bool:
+        """The closing line stands once, after the last task; a task followed by another one has ended well too."""
+        return super().terminated(job) or (job.end < len(job.whole) and "Task  times  cpu:" in job)
+
+    def read(self, job: Text, parsed: Parsed) -> Facts:
+        energies = [Energy(spot, kind, value) for anchor, kind in _ENERGIES for spot, value in _values(job, anchor)]
+        finite = "NWChem Finite-difference Hessian" in job
+        has_modes = any(anchor in job for anchor in self.mode_anchors)
+        point, kind = chosen_point(energies, first=finite or has_modes)
+        if kind == "SCS-MP2":  # printed beside every MP2 energy, never the task's own method
+            kind = "MP2"
+        atoms, coordinates, masses = _atom_information(job)
+        return Facts(
+            version=_version(job),
+            charge=_charge(job),
+            multiplicity=_multiplicity(job),
+            energies=point,
+            energy_kind=kind,
+            level=_level(job, kind),
+            coordinates_A=coordinates,
+            masses_u=masses if masses is not None else _masses_by_tag(Text(job.whole, 0, job.end), atoms),
+            printed=_printed(job),
+            max_gradient_hartree_bohr=_max_gradient(Text(job.whole, 0, job.end), coordinates),
+        )
+
+
+def _values(job: Text, anchor: str) -> list[tuple[int, float]]:
+    found = ((spot, numbers(job.rest(spot, anchor))) for spot in job.spots(anchor))
+    return [(spot, values[0]) for spot, values in found if values]
+
+
+def _version(job: Text) -> str:
+    match = re.search(r"\(NWChem\) (\S+)", job.whole[:65536])
+    return match.group(1) if match else ""
+
+
+def _charge(job: Text) -> int | None:
+    dft, scf = job.rfind("          Charge           :"), job.rfind("  charge          =")
+    if dft < 0 and scf < 0:
+        return None
+    found = numbers(job.line(max(dft, scf)))
+    return as_integer(found[0]) if found else None
+
+
+def _multiplicity(job: Text) -> int | None:
+    dft, scf = job.rfind("          Spin multiplicity:"), job.rfind("  wavefunction    = ")
+    if dft < 0 and scf < 0:
+        return None
+    if dft > scf:
+        return as_integer(job.number_after("          Spin multiplicity:"))
+    block = job.part(max(job.rfind("NWChem SCF Module", scf), job.start), scf)
+    alpha, beta = block.number_after("  alpha electrons ="), block.number_after("  beta  electrons =")
+    if alpha is not None and beta is not None:
+        return as_integer(alpha - beta + 1.0)
+    unpaired = block.number_after("  open shells     =")
+    return as_integer(unpaired + 1.0) if unpaired is not None else None
+
+
+def _atoms(whole: Text) -> tuple[int, ...]:
+    """Nuclear charges of the last table of atoms; ghost atoms have none."""
+    spot = whole.rfind("  No.       Tag          Charge")
+    found: list[int] = []
+    if spot < 0:
+        return ()
+    lines = whole.lines(spot)
+    next(lines)
+    for line in lines:
+        fields = line.split()
+        if len(fields) != 6 or not fields[0].isdigit():
+            if fields and not line.startswith(" ----"):
+                break
+            if not fields and found:
+                break
+            continue
+        charge = number(fields[2])
+        found.append(round(charge) if charge is not None and np.isfinite(charge) else 0)
+    return tuple(found)
+
+
+def _atom_information(job: Text) -> tuple[tuple[int, ...], FloatArray | None, FloatArray | None]:
+    """Atoms, coordinates (Å) and masses (u) of the Hessian's geometry."""
+    spot = job.rfind("---- Atom information ----")
+    atoms = _atoms(Text(job.whole, 0, job.end))
+    if spot < 0:
+        return atoms, None, None
+    rows: list[list[float]] = []
+    for line in job.lines(spot):
+        values = [number(token) for token in line.split()[-4:]] if len(line.split()) >= 6 else []
+        if len(values) == 4 and all(v is not None for v in values):
+            rows.append([v for v in values if v is not None])
+        elif rows:
+            break
+    if len(rows) != len(atoms):
+        return atoms, None, None
+    table = np.array(rows, dtype=float)
+    return atoms, table[:, :3] / _BOHR_PER_ANGSTROM, table[:, 3].copy()
+
+
+def _masses_by_tag(whole: Text, atoms: tuple[int, ...]) -> FloatArray | None:
+    """Masses of the table of tags under the geometry, for jobs without a Hessian."""
+    table, spot = whole.rfind("  No.       Tag          Charge"), whole.rfind("Atomic Mass")
+    if table < 0 or spot < table:
+        return None
+    tags = [line.split()[1] for line in whole.part(table, spot).lines(table) if len(line.split()) == 6 and line.split()[0].isdigit()]
+    masses: dict[str, float] = {}
+    for line in _block(whole, spot):
+        fields = line.split()
+        value = number(fields[1]) if len(fields) == 2 else None
+        if value is not None:
+            masses[fields[0]] = value
+    if len(tags) != len(atoms) or not all(tag in masses for tag in tags):
+        return None
+    return np.array([masses[tag] for tag in tags])
+
+
+def _block(whole: Text, spot: int) -> list[str]:
+    """The lines of the table of masses: from its title to the nuclear repulsion energy."""
+    end = whole.find("Effective nuclear repulsion", spot)
+    return str(whole.part(spot, end if end >= 0 else whole.end)).splitlines()
+
+
+def _max_gradient(whole: Text, coordinates: FloatArray | None) -> float | None:
+    """Largest gradient component of the last gradient that was computed at the geometry of the frequencies."""
+    for spot in reversed(whole.spots("ENERGY GRADIENTS")):
+        rows: list[list[float]] = []
+        for line in whole.part(spot).lines(spot):
+            fields = line.split()
+            values = [number(f) for f in fields[2:]] if len(fields) == 8 and fields[0].isdigit() else []
+            if len(values) == 6 and all(v is not None for v in values):
+                rows.append([v for v in values if v is not None])
+            elif rows or len(line) > 200:
+                break
+        table = np.array(rows, dtype=float)
+        if coordinates is None and table.size:
+            return float(np.abs(table[:, 3:]).max())
+        if coordinates is not None and table.shape[:1] == coordinates.shape[:1]:
+            shift = np.abs(table[:, :3] - coordinates * _BOHR_PER_ANGSTROM).max()
+            if shift < 2e-5:
+                return float(np.abs(table[:, 3:]).max())
+    return None
+
+
+def _printed(job: Text) -> tuple[PrintedThermo, ...]:
+    """One block a temperature; no pressure is printed, and the constants are old (0.048 % low)."""
+    spots = job.spots(" Temperature                      =")
+    blocks = [job.part(a, b) for a, b in zip(spots, [*spots, job.end][1:], strict=True)]
+    return tuple(_printed_block(block) for block in blocks)
+
+
+def _printed_block(block: Text) -> PrintedThermo:
+    temperature = re.match(r"\s*([\d.]+)", block.rest_of_first(" Temperature                      ="))
+    entropy = block.number_after("Total Entropy                    =", last=False)
+    sigma = re.search(r"symmetry #  = *(\d+)", block.whole[block.start : min(block.end, block.start + 1500)])
+    return PrintedThermo(
+        temperature_K=float(temperature.group(1)) if temperature else None,
+        symmetry_number=int(sigma.group(1)) if sigma else None,
+        zpe_hartree=_hartree(block.rest_of_first("Zero-Point correction to Energy  =")),
+        enthalpy_correction_hartree=_hartree(block.rest_of_first("Thermal correction to Enthalpy   =")),
+        entropy_J_mol_K=None if entropy is None else entropy * CALORIE_J,
+    )
+
+
+def _hartree(rest: str) -> float | None:
+    match = re.search(r"\(\s*(-?[\d.]+) au\)", rest)
+    return float(match.group(1)) if match else None
+
+
+def _level(job: Text, kind: str) -> Level | None:
+    basis_spot = max(job.rfind('Basis "ao basis" -> "ao basis" ('), job.rfind('Summary of "ao basis" -> "'))
+    whole = Text(job.whole, 0, job.end)
+    if basis_spot < 0:
+        basis_spot = whole.rfind('Summary of "ao basis" -> "')
+    header = whole.line(basis_spot).lower() if basis_spot >= 0 else ""
+    is_dft = job.rfind("SCF calculation type: DFT") > job.rfind("NWChem SCF Module")
+    method, functional = _functional(job) if is_dft else ("HF" if kind == "SCF" else kind, "")
+    if not method and basis_spot < 0:
+        return None
+    return Level(
+        method=normalise_method(method),
+        basis=_basis_name(whole),
+        functional=functional,
+        spherical=True if "(spherical)" in header else False if "(cartesian)" in header else None,
+        frozen_core=_frozen(job) if kind not in ("SCF", "") else "",
+        core_potential=_core_potential(whole),
+        dispersion=_dispersion(job) if is_dft else "",
+        solvent=_solvent(job),
+        program="NWChem",
+    )
+
+
+def _basis_name(whole: Text) -> str:
+    """The names of the last summary; one name when all atoms share it, else element by element."""
+    spot = whole.rfind('Summary of "ao basis"')
+    names: dict[str, str] = {}
+    for line in whole.lines(spot) if spot >= 0 else ():
+        match = re.match(r"^ (\S+) {3,}(\S.*?) {2,}(?:\d+ +\d+ +\S+|on all atoms)\s*$", line)
+        if match:
+            names[match.group(1)] = normalise_basis(re.sub(r"\s+ecp$", "", match.group(2), flags=re.IGNORECASE))
+        elif names:
+            break
+    if len(set(names.values())) <= 1:
+        return next(iter(names.values()), "")
+    return ", ".join(f"{name} ({tag})" for tag, name in sorted(names.items()))
+
+
+def _functional(job: Text) -> tuple[str, str]:
+    spot = job.rfind("              XC Information")
+    block = job.part(spot, job.find("Grid Information", spot)) if spot >= 0 else job.part(job.start, job.start)
+    text = str(block)
+    named = re.search(r"^ +(\S.*?) Method XC (?:Potential|Functional)", text, re.MULTILINE)
+    local = next((short for long, short in _LOCAL_CORRELATION.items() if f"{long.rstrip()} Corr" in text), "")
+    if named:
+        return named.group(1).strip(), local
+    for exchange, correlation, name in _PAIRS:
+        if exchange in text and correlation in text and "Hartree-Fock (Exact)" not in text:
+            return name, local
+    parts = re.findall(r"^ +(\S.*?) (?:Functional|Exchange) +(\d\.\d+)", text, re.MULTILINE)
+    return " + ".join(f"{weight} {part}" for part, weight in parts), local
+
+
+def _frozen(job: Text) -> str:
+    match = re.search(r"(?:Frozen core +=|number of core +) *(\d+)", str(job))
+    core = re.search(r"Alpha frozen cores +: +(\d+)", str(job)) if not match else match
+    if core is None:
+        return ""
+    return f"frozen {core.group(1)}" if int(core.group(1)) else "all"
+
+
+def _core_potential(whole: Text) -> str:
+    if ' ECP       "ecp basis"' not in whole:
+        return ""
+    spot = whole.rfind('Summary of "ao basis"')
+    match = re.search(r" {3,}(\S+) ecp +", whole.whole[spot : spot + 2000], re.IGNORECASE) if spot >= 0 else None
+    return normalise_basis(match.group(1)) + " ECP" if match else "ECP"
+
+
+def _dispersion(job: Text) -> str:
+    spot = job.rfind("Dispersion Parameters")
+    if spot < 0:
+        return ""
+    match = re.search(r"DFT-(D\w+) Model", job.whole[spot : spot + 200])
+    return match.group(1) if match else "dispersion"
+
+
+def _solvent(job: Text) -> str:
+    if "-cosmo- solvent" not in job:
+        return ""
+    epsilon = job.number_after("dielectric constant -eps-     =")
+    model = "SMD" if "SMD model" in job or "smd" in job.rest_of_last("do_cosmo_smd") else "COSMO"
+    return f"{model}, epsilon {epsilon:g}" if epsilon is not None else model

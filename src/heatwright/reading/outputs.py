@@ -1,0 +1,154 @@
+"""The way in: one output file, one molecule, and a finding for everything that was noticed."""
+
+from __future__ import annotations
+
+import os
+
+from heatwright.findings import Finding, Refused, refuse, warn
+from heatwright.molecule import Molecule, Source
+from heatwright.reading.assembly import assemble
+from heatwright.reading.detection import Program, detect
+from heatwright.reading.dialects import Dialect, Facts, dialect_of
+from heatwright.reading.files import StoredText, read_text
+from heatwright.reading.jobs import Choice, choose
+from heatwright.reading.parsing import Mishap, Parsed, parse
+from heatwright.reading.soundness import expected_modes, soundness
+from heatwright.reading.text import Text
+
+
+def read_output(
+    path: str | os.PathLike[str],
+    *,
+    job: int | None = None,
+    charge: int | None = None,
+    multiplicity: int | None = None,
+) -> Molecule:
+    """The molecule in the output file of a quantum-chemistry program.
+
+    path : the file, plain or compressed with gzip, bzip2 or xz.
+    job : which job of the file, counted from 1; needed when the file holds more than one molecule.
+    charge, multiplicity : take the place of what the output says (noted among the findings).
+
+    Returns the molecule with every finding about it, those of severity ``refuse`` included: a transition state or a
+    truncated file is returned, and it is for the caller to use it or not (:func:`heatwright.findings.refusals`).
+
+    Raises Refused when no molecule can be made at all: ``file-missing``, ``file-empty``, ``not-an-output``,
+    ``several-molecules``, ``several-jobs`` (no such job), ``truncated``, ``job-failed``, ``no-geometry``.
+    """
+    stored = read_text(path)
+    program = _program(stored)
+    dialect = dialect_of(program.name)
+    text = dialect.repaired(stored.text)
+    choice = choose(dialect, Text.of(text), job)
+    parsed = parse(program.parser, "".join(str(piece) for piece in choice.pieces))
+    facts = _facts(dialect, choice, parsed)
+    source = Source(os.fspath(path) if not isinstance(path, bytes) else os.fsdecode(path), stored.sha256, program.name, facts.version)
+    molecule, remarks = assemble(source, choice.identity, parsed, facts, (charge, multiplicity))
+    if molecule is None:
+        raise Refused([*stored.findings, _no_molecule(dialect, choice, parsed, source)])
+    molecule = molecule.but(job=choice.number, n_jobs=choice.n_jobs)
+    molecule = _whole_modes(molecule, dialect, choice, parsed)
+    ends = _endings(molecule, dialect, choice, parsed)
+    findings = (*stored.findings, *choice.findings, *remarks, *ends, *soundness(molecule))
+    return molecule.but(findings=_once(findings))
+
+
+def _program(stored: StoredText) -> Program:
+    detected = detect(stored.text)
+    if detected.program is not None and detected.program.parser:
+        return detected.program
+    if detected.program is not None:
+        found = f"this is an output of {detected.program.name}, which heatwright does not read"
+    elif detected.look_alike:
+        found = f"this is {detected.look_alike}, not the output of the program it imitates"
+    else:
+        found = "no banner of a quantum-chemistry program is in the head of the file"
+    words = "the output of NWChem, Gaussian, ORCA, Q-Chem, Psi4 or another program that cclib reads"
+    raise Refused([*stored.findings, refuse("not-an-output", found, expected=words)])
+
+
+def _facts(dialect: Dialect, choice: Choice, parsed: Parsed) -> Facts:
+    """What the dialect reads; text that breaks its reader is a finding, and cclib's values stand."""
+    try:
+        return dialect.read(choice.job, parsed)
+    except Exception as error:  # hostile text must not end in a traceback
+        words = f"the text of the {dialect.name} job could not be read to its end ({type(error).__name__}: {error})"
+        return Facts(findings=(refuse("parser-failed", words, action="Check the file."),))
+
+
+def _line_of(choice: Choice, mishap: Mishap) -> str:
+    """The line in the file of a place in the text that the parser was given."""
+    rest = mishap.spot
+    for piece in choice.pieces:
+        length = piece.end - piece.start
+        if rest <= length:
+            return piece.where(max(piece.start + rest - 1, 0))
+        rest -= length
+    return f"line {choice.job.last_line}"
+
+
+def _no_molecule(dialect: Dialect, choice: Choice, parsed: Parsed, source: Source) -> Finding:
+    failed = _failure(dialect, choice)
+    if failed is not None:
+        return failed
+    who = source.program_version
+    if not dialect.terminated(choice.job):
+        last = choice.job.last_line
+        found = f"the {who} output ends before there is a geometry"
+        return refuse("truncated", found, where=f"line {last}", action="Fetch the whole file or run the job again.")
+    if parsed.mishaps:
+        first = parsed.mishaps[0]
+        found = f"the {who} output could not be read ({first.words})"
+        return refuse("parser-failed", found, where=_line_of(choice, first), action="Report the file if it is complete.")
+    return refuse("no-geometry", f"the {who} output holds no atoms with coordinates", action="Give the output that has them.")
+
+
+def _failure(dialect: Dialect, choice: Choice) -> Finding | None:
+    """What the program itself says of a failure, in the job that was read."""
+    spots = [(choice.job.rfind(f.anchor), f.words) for f in dialect.failures]
+    spot, words = max(spots, default=(-1, ""))
+    if spot < 0:
+        return None
+    return refuse("job-failed", words, where=choice.job.where(spot), action="Repair the job and run it again.")
+
+
+def _whole_modes(molecule: Molecule, dialect: Dialect, choice: Choice, parsed: Parsed) -> Molecule:
+    """Modes that were cut off with the end of the file are no modes: fewer than the molecule has, and nothing after."""
+    m = molecule.wavenumbers_cm1.size
+    short = 0 < m < expected_modes(molecule)
+    if short and not dialect.terminated(choice.job) and (parsed.mishaps or parsed.ended_inside or _cut(choice)):
+        return molecule.but(wavenumbers_cm1=molecule.wavenumbers_cm1[:0], normal_modes=None)
+    return molecule
+
+
+def _cut(choice: Choice) -> bool:
+    return choice.job.end >= len(choice.job.whole.rstrip())
+
+
+def _endings(molecule: Molecule, dialect: Dialect, choice: Choice, parsed: Parsed) -> tuple[Finding, ...]:
+    """How the job ended: well, failed, cut off with everything there, or cut off before that."""
+    complete = molecule.energy_hartree is not None and (
+        molecule.wavenumbers_cm1.size > 0 or not choice.identity.has_modes or molecule.is_atom
+    )
+    failed = _failure(dialect, choice)
+    if failed is not None:
+        softer = warn(failed.code, failed.found, where=failed.where, action="Look at the output.")
+        return (softer if complete and molecule.wavenumbers_cm1.size else failed,)
+    if dialect.terminated(choice.job) or not dialect.endings:
+        return () if complete or not parsed.mishaps else (_unread(choice, parsed, molecule),)
+    where = f"line {choice.job.last_line}" if _cut(choice) else choice.job.where(choice.job.end - 1)
+    if complete and molecule.kind in ("frequency", "atom", "energy"):
+        words = f"{molecule.source.program}'s closing line is missing; geometry, energy and modes are all there"
+        return (warn("no-normal-termination", words, where=where, expected=repr(dialect.endings[0].strip())),)
+    words = f"the {molecule.source.program} output ends before the job is done"
+    return (refuse("truncated", words, where=where, action="Fetch the whole file or run the job again."),)
+
+
+def _unread(choice: Choice, parsed: Parsed, molecule: Molecule) -> Finding:
+    first = parsed.mishaps[0]
+    words = f"a block of the {molecule.source.program_version} output could not be read ({first.words})"
+    return warn("parser-failed", words, where=_line_of(choice, first), action="Report the file if it is complete.")
+
+
+def _once(findings: tuple[Finding, ...]) -> tuple[Finding, ...]:
+    return tuple(dict.fromkeys(findings))

@@ -1,0 +1,124 @@
+"""The text of an output, or a part of it, with cheap searching: plain ``str.find`` for rare anchors, no regex passes."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+_NUMBER = re.compile(r"[-+]?(?:\d+\.?\d*|\.\d+)(?:[eEdD][-+]?\d+)?")
+
+
+def number(token: str) -> float | None:
+    """The number a token stands for, Fortran exponents included; None when it is none.
+
+    >>> number("-0.75002282127453D+02"), number("*****")
+    (-75.002282127453, None)
+    """
+    if not _NUMBER.fullmatch(token):
+        return None
+    return float(token.replace("D", "E").replace("d", "e"))
+
+
+def numbers(line: str) -> list[float]:
+    """All numbers of a line that stand alone between blanks, ``=``, ``:``, ``,`` or brackets.
+
+    >>> numbers("Zero-Point correction to Energy  =   12.444 kcal/mol  (  0.019831 au)")
+    [12.444, 0.019831]
+    """
+    values = (number(token) for token in re.split(r"[\s=:,()\[\]]+", line))
+    return [value for value in values if value is not None]
+
+
+@dataclass(frozen=True, slots=True)
+class Text:
+    """The part [start, end) of a whole output; positions are those of the whole, so line numbers stay true."""
+
+    whole: str
+    start: int
+    end: int
+
+    @classmethod
+    def of(cls, whole: str) -> Text:
+        """The whole as one part."""
+        return cls(whole, 0, len(whole))
+
+    def part(self, start: int, end: int | None = None) -> Text:
+        """A smaller part; positions as in the whole."""
+        return Text(self.whole, max(start, self.start), self.end if end is None else min(end, self.end))
+
+    def __str__(self) -> str:
+        return self.whole[self.start : self.end]
+
+    def __contains__(self, anchor: str) -> bool:
+        return self.find(anchor) >= 0
+
+    def find(self, anchor: str, after: int = 0) -> int:
+        """Position of the first *anchor* at or after a position, or -1."""
+        return self.whole.find(anchor, max(after, self.start), self.end)
+
+    def rfind(self, anchor: str, before: int | None = None) -> int:
+        """Position of the last *anchor* that ends before a position, or -1."""
+        return self.whole.rfind(anchor, self.start, self.end if before is None else min(before, self.end))
+
+    def spots(self, anchor: str) -> list[int]:
+        """Positions of every *anchor*."""
+        found: list[int] = []
+        spot = self.find(anchor)
+        while spot >= 0:
+            found.append(spot)
+            spot = self.find(anchor, spot + len(anchor))
+        return found
+
+    def count(self, anchor: str) -> int:
+        """How often *anchor* occurs."""
+        return self.whole.count(anchor, self.start, self.end)
+
+    def line(self, spot: int) -> str:
+        """The line a position lies in."""
+        first = self.whole.rfind("\n", 0, spot) + 1
+        last = self.whole.find("\n", spot)
+        return self.whole[first : last if last >= 0 else len(self.whole)]
+
+    def lines(self, spot: int) -> Iterator[str]:
+        """The lines from the one a position lies in to the end of the part."""
+        first = max(self.whole.rfind("\n", 0, spot) + 1, self.start)
+        while first < self.end:
+            last = self.whole.find("\n", first, self.end)
+            last = self.end if last < 0 else last
+            yield self.whole[first:last]
+            first = last + 1
+
+    def line_number(self, spot: int) -> int:
+        """Number of the line a position lies in, counted from 1 in the whole."""
+        return self.whole.count("\n", 0, spot) + 1
+
+    def where(self, spot: int) -> str:
+        """``line 1234``, as findings say it."""
+        return f"line {self.line_number(spot)}"
+
+    def rest(self, spot: int, anchor: str) -> str:
+        """What follows *anchor* (found at *spot*) on its line."""
+        first = spot + len(anchor)
+        last = self.whole.find("\n", first)
+        return self.whole[first : last if last >= 0 else len(self.whole)]
+
+    def rest_of_last(self, anchor: str) -> str:
+        """What follows the last *anchor* on its line, stripped; empty when it is not there."""
+        spot = self.rfind(anchor)
+        return self.rest(spot, anchor).strip() if spot >= 0 else ""
+
+    def rest_of_first(self, anchor: str) -> str:
+        """What follows the first *anchor* on its line, stripped; empty when it is not there."""
+        spot = self.find(anchor)
+        return self.rest(spot, anchor).strip() if spot >= 0 else ""
+
+    def number_after(self, anchor: str, *, last: bool = True) -> float | None:
+        """The first number that follows the last (or first) *anchor* on its line."""
+        found = numbers(self.rest_of_last(anchor) if last else self.rest_of_first(anchor))
+        return found[0] if found else None
+
+    @property
+    def last_line(self) -> int:
+        """Number of the last line with anything on it."""
+        return self.whole.count("\n", 0, len(self.whole.rstrip())) + 1
