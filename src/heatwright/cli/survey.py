@@ -124,7 +124,7 @@ def _line(row: dict[str, Any]) -> str:
     verdict = "usable" if row["usable"] else f"not usable: {refusal}"
     if row["kind"] == "unknown" and row["program"] is None:
         return f"{row['file']}  {verdict}"
-    modes = f"{row['n_modes']} modes" if row["n_modes"] else "no modes"
+    modes = {0: "no modes", 1: "1 mode"}.get(row["n_modes"], f"{row['n_modes']} modes")
     parts = (
         row["file"],
         row["kind"],

@@ -54,20 +54,22 @@ def formation_by_atomization(model: ThermoModel, atoms: Atoms, *, trust_levels: 
                 action="Give an enthalpy of formation by --dHf298.",
             )
         )
-    for element in model.composition:
-        atom, said = _atom_for(element, molecule, atoms, trust_levels)
+    missing = [element for element in model.composition if not atoms.get(element)]
+    if missing:
+        findings.append(
+            refuse(
+                "atom-missing",
+                f"there is no atom output for {', '.join(missing)}",
+                action=f"Put an output of {'this atom' if len(missing) == 1 else 'these atoms'} at the level of the "
+                "molecule into the --atoms folder.",
+            )
+        )
+    for element in (e for e in model.composition if e not in missing):
+        atom, said = _atom_for(element, molecule, atoms[element], trust_levels)
         findings.extend(said)
         if atom is not None:
             chosen[element] = atom
-        if atom_reference(element) is None:
-            findings.append(
-                refuse(
-                    "no-reference",
-                    f"element {element} has no reference enthalpy",
-                    expected=f"one of {', '.join(elements_with_reference())}",
-                    action="Give an enthalpy of formation by --dHf298.",
-                )
-            )
+    findings.extend(_no_reference(element) for element in model.composition if atom_reference(element) is None)
     if molecule.charge:
         findings.append(
             refuse(
@@ -132,19 +134,19 @@ def _energy(molecule: Molecule) -> float:
     return energy
 
 
+def _no_reference(element: str) -> Finding:
+    return refuse(
+        "no-reference",
+        f"element {element} has no reference enthalpy",
+        expected=f"one of {', '.join(elements_with_reference())}",
+        action="Give an enthalpy of formation by --dHf298.",
+    )
+
+
 def _atom_for(
-    element: str, molecule: Molecule, atoms: Atoms, trust_levels: bool
+    element: str, molecule: Molecule, candidates: tuple[Molecule, ...], trust_levels: bool
 ) -> tuple[Molecule | None, tuple[Finding, ...]]:
     """The atom output to use for one element, with what has to be said about it."""
-    candidates = [atom for atom in atoms.get(element, ()) if atom.energy_hartree is not None]
-    if not candidates:
-        return None, (
-            refuse(
-                "atom-missing",
-                f"there is no atom output for {element}",
-                action=f"Put an output of the {element} atom at the level of the molecule into the --atoms folder.",
-            ),
-        )
     judged = [(atom, _objections(element, atom, molecule, trust_levels)) for atom in candidates]
     usable = [(atom, said) for atom, said in judged if not refusals(said)]
     if not usable:
@@ -179,6 +181,8 @@ def _objections(element: str, atom: Molecule, molecule: Molecule, trust_levels: 
             )
         )
     said.extend(f.at(where) for f in refusals(atom.findings))
+    if atom.energy_hartree is None:
+        said.append(refuse("no-energy", f"the {element} atom has no total energy", where=where))
     said.extend(_level_objections(element, atom, molecule, trust_levels))
     return tuple(said)
 

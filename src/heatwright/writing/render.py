@@ -5,6 +5,7 @@ from __future__ import annotations
 import os
 import tempfile
 from collections.abc import Mapping, Sequence
+from functools import cache
 from pathlib import Path
 from typing import Any
 
@@ -16,6 +17,7 @@ from heatwright.resources import templates
 from heatwright.writing import numbers
 
 
+@cache
 def _environment(folder: str) -> SandboxedEnvironment:
     environment = SandboxedEnvironment(
         loader=FileSystemLoader(folder),

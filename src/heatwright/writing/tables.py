@@ -22,10 +22,11 @@ def _heading(name: str, model: ThermoModel, table: ThermoTable) -> Iterable[str]
     pressure = pressure_text(model.options.pressure_Pa)
     yield f"{molecule.source.program_version}, {level}; {model.mass_kind} masses, {pressure}"
     if not molecule.is_atom:
+        n = molecule.wavenumbers_cm1.size
         isomers = f", {model.optical_isomers} optical isomers" if model.optical_isomers > 1 else ""
         yield f"{model.symmetry.point_group}, symmetry number {model.symmetry_number}{isomers}; {constants} cm⁻¹"
         yield (
-            f"{molecule.wavenumbers_cm1.size} modes, scale factor {model.frequency_scale:g}; zero-point energy "
+            f"{n} mode{'s' if n != 1 else ''}, scale factor {model.frequency_scale:g}; zero-point energy "
             f"{model.zpe_kJ_mol:.3f} kJ/mol, scale factor {model.zpe_scale:g}"
         )
     yield levels_text(model).replace("1/cm x", "cm⁻¹ ×")
