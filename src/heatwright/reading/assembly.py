@@ -6,9 +6,10 @@ from dataclasses import dataclass, field, replace
 from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
 
 from heatwright.elements import element
-from heatwright.findings import Finding, note, refuse, warn
+from heatwright.findings import Finding, note, refuse
 from heatwright.molecule import FloatArray, IntArray, Kind, Level, MassKind, Molecule, Source
 from heatwright.reading.dialects.base import Facts, Identity
 from heatwright.reading.parsing import Parsed
@@ -35,10 +36,19 @@ def assemble(
     if atoms is None or coordinates is None or len(coordinates) != len(atoms):
         return None, ()
     findings: list[Finding] = [*facts.findings]
-    vibrations = _vibrations(parsed, facts, len(atoms), findings)
+    vibrations = _vibrations(parsed, facts, len(atoms))
     masses, mass_kind, printed = _masses(parsed, facts, atoms, findings)
+    real = _real(atoms, findings)
+    if not real.any():
+        return None, tuple(findings)
+    if not real.all():  # the atoms without a nucleus go, so that nothing later trips over them
+        atoms, coordinates, masses = atoms[real], coordinates[real], masses[real]
+        kept = None if vibrations.modes is None else vibrations.modes[:, real]
+        vibrations = replace(vibrations, modes=kept)
     charge = _said(user[0], facts.charge, identity.charge, parsed.integer("charge"), "charge", findings)
-    multiplicity = _said(user[1], facts.multiplicity, identity.multiplicity, parsed.integer("mult"), "multiplicity", findings)
+    multiplicity = _said(
+        user[1], facts.multiplicity, identity.multiplicity, parsed.integer("mult"), "multiplicity", findings
+    )
     energies = {name: value for name, value in facts.energies.items() if np.isfinite(value)}
     if len(energies) < len(facts.energies):
         findings.append(refuse("not-a-number", "a total energy is not a finite number", expected="hartree"))
@@ -90,7 +100,18 @@ def _coordinates(parsed: Parsed, facts: Facts, atoms: IntArray | None) -> FloatA
     return np.array(read[-1], dtype=float)
 
 
-def _vibrations(parsed: Parsed, facts: Facts, n_atoms: int, findings: list[Finding]) -> Vibrations:
+def _real(atoms: IntArray, findings: list[Finding]) -> NDArray[np.bool_]:
+    """Which atoms carry a nucleus; the others are ghosts or dummies and a reason to refuse."""
+    real = (atoms > 0) & (atoms <= 103)
+    ghosts = np.flatnonzero(~real) + 1
+    if ghosts.size:
+        words = f"{ghosts.size} of {atoms.size} atoms carry no nucleus (ghost or dummy atoms)"
+        action = "Run the molecule without them: they have no mass and no place in a partition function."
+        findings.append(refuse("ghost-atoms", words, where=f"atom {ghosts[0]}", action=action))
+    return real
+
+
+def _vibrations(parsed: Parsed, facts: Facts, n_atoms: int) -> Vibrations:
     """Zeros removed by value, ascending, modes in the same order and of norm 1."""
     if facts.wavenumbers_cm1 is not None:
         values, modes = np.asarray(facts.wavenumbers_cm1, dtype=float), facts.normal_modes
@@ -109,7 +130,8 @@ def _vibrations(parsed: Parsed, facts: Facts, n_atoms: int, findings: list[Findi
 
 def _normalised(modes: FloatArray) -> FloatArray:
     norms = np.linalg.norm(modes, axis=(1, 2), keepdims=True)
-    return np.divide(modes, norms, out=np.array(modes, dtype=float), where=norms > 0.0)
+    scaled: FloatArray = np.divide(modes, norms, out=np.array(modes, dtype=float), where=norms > 0.0)
+    return scaled
 
 
 def _masses(
@@ -122,9 +144,13 @@ def _masses(
     if read is not None and len(read) == len(atoms):
         if facts.mass_kind == "average":
             words = "the program worked with average atomic weights; rotation, translation and wavenumbers contain them"
-            findings.append(note("average-masses", words, action="Ask the program for isotopic masses to compare with tables."))
+            findings.append(
+                note("average-masses", words, action="Ask the program for isotopic masses to compare with tables.")
+            )
         return np.array(read, dtype=float), facts.mass_kind, True
-    findings.append(note("masses-from-table", "the output prints no atomic masses; the most abundant isotopes were taken"))
+    findings.append(
+        note("masses-from-table", "the output prints no atomic masses; the most abundant isotopes were taken")
+    )
     return np.array([element(int(z)).common_mass_u if 0 < z < 104 else 0.0 for z in atoms]), "isotopic", False
 
 

@@ -23,9 +23,9 @@ class Choice:
 
 
 def choose(dialect: Dialect, whole: Text, wanted: int | None) -> Choice:
-    """The job that gives the molecule: the last one with modes, else the last one.
+    """The job that gives the molecule: the last with modes, else the last.
 
-    Raises Refused when the file holds several molecules and none was asked for, or fewer jobs than the number asked for.
+    Raises Refused when the file holds several molecules and no job was asked for, or has no job of that number.
     """
     jobs = dialect.jobs(whole)
     identities = [dialect.identity(job) for job in jobs]

@@ -42,7 +42,12 @@ def read_output(
     choice = choose(dialect, Text.of(text), job)
     parsed = parse(program.parser, "".join(str(piece) for piece in choice.pieces))
     facts = _facts(dialect, choice, parsed)
-    source = Source(os.fspath(path) if not isinstance(path, bytes) else os.fsdecode(path), stored.sha256, program.name, facts.version)
+    source = Source(
+        os.fspath(path) if not isinstance(path, bytes) else os.fsdecode(path),
+        stored.sha256,
+        program.name,
+        facts.version,
+    )
     molecule, remarks = assemble(source, choice.identity, parsed, facts, (charge, multiplicity))
     if molecule is None:
         raise Refused([*stored.findings, _no_molecule(dialect, choice, parsed, source)])
@@ -99,8 +104,12 @@ def _no_molecule(dialect: Dialect, choice: Choice, parsed: Parsed, source: Sourc
     if parsed.mishaps:
         first = parsed.mishaps[0]
         found = f"the {who} output could not be read ({first.words})"
-        return refuse("parser-failed", found, where=_line_of(choice, first), action="Report the file if it is complete.")
-    return refuse("no-geometry", f"the {who} output holds no atoms with coordinates", action="Give the output that has them.")
+        return refuse(
+            "parser-failed", found, where=_line_of(choice, first), action="Report the file if it is complete."
+        )
+    return refuse(
+        "no-geometry", f"the {who} output holds no atoms with coordinates", action="Give the output that has them."
+    )
 
 
 def _failure(dialect: Dialect, choice: Choice) -> Finding | None:

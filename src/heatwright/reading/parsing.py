@@ -17,9 +17,34 @@ from typing import Any
 import numpy as np
 
 _WANTED = frozenset(
-    "atomnos atomcoords atommasses vibfreqs vibdisps grads scfenergies mpenergies ccenergies dispersionenergies "
-    "scanenergies scannames scanparm optdone optstatus charge mult natom metadata zpve enthalpy entropy temperature "
-    "pressure coreelectrons rotconsts".split()
+    [
+        "atomnos",
+        "atomcoords",
+        "atommasses",
+        "vibfreqs",
+        "vibdisps",
+        "grads",
+        "scfenergies",
+        "mpenergies",
+        "ccenergies",
+        "dispersionenergies",
+        "scanenergies",
+        "scannames",
+        "scanparm",
+        "optdone",
+        "optstatus",
+        "charge",
+        "mult",
+        "natom",
+        "metadata",
+        "zpve",
+        "enthalpy",
+        "entropy",
+        "temperature",
+        "pressure",
+        "coreelectrons",
+        "rotconsts",
+    ]
 )
 """Attributes used here; the others (orbitals, populations) are dropped before cclib turns them into arrays."""
 _MOST_MISHAPS = 10

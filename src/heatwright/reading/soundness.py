@@ -22,6 +22,9 @@ TINY_CM1: Final = 10.0
 """Wavenumbers below this are hardly a vibration: the harmonic entropy runs away (common practice, no source)."""
 _ZPE_TOLERANCE: Final = 1.5e-6
 """Largest difference between own and printed zero-point energy that digits explain, hartree."""
+_OWN_SUMS: Final = frozenset({"ADF", "GAMESS-UK"})
+"""Programs whose printed sum is of another list of modes than the one read (ADF leaves low ones out, GAMESS-UK sums
+before it projects rotations out)."""
 _NWCHEM_LOW: Final = 6.0e-4
 """NWChem's older constants make its printed values 0.048 % low (found by comparing 43 outputs)."""
 
@@ -37,7 +40,9 @@ def no_thermochemistry(molecule: Molecule) -> tuple[Finding, ...]:
     if molecule.has_thermochemistry:
         return ()
     words = f"this is {_a_kind(molecule)} without vibrational modes, so there is no thermochemistry to compute"
-    return (refuse("no-frequencies", words, expected="a frequency job", action="Give the output of the frequency job."),)
+    return (
+        refuse("no-frequencies", words, expected="a frequency job", action="Give the output of the frequency job."),
+    )
 
 
 def expected_modes(molecule: Molecule) -> int:
@@ -85,16 +90,12 @@ def _not_numbers(m: Molecule) -> list[Finding]:
 
 
 def _nan(where: str, what: str) -> Finding:
-    return refuse("not-a-number", f"{what} is not a finite number", where=where, action="The output is damaged; fetch it again.")
+    action = "The output is damaged; fetch it again or run the job again."
+    return refuse("not-a-number", f"{what} is not a finite number", where=where, action=action)
 
 
 def _atoms(m: Molecule) -> list[Finding]:
     found = []
-    ghosts = [i for i, z in enumerate(m.atomic_numbers, start=1) if z < 1 or z > 103]
-    if ghosts:
-        names = ", ".join(str(i) for i in ghosts[:5])
-        action = "Run the molecule without them: they have no mass and no place in a partition function."
-        found.append(refuse("ghost-atoms", f"atom{'s' if len(ghosts) > 1 else ''} {names} carry no nucleus", action=action))
     if len(m.masses_u) != m.n_atoms or m.coordinates_A.shape != (m.n_atoms, 3):
         words = f"{m.n_atoms} atoms, {len(m.masses_u)} masses and {len(m.coordinates_A)} positions"
         found.append(refuse("atoms-disagree", words, expected="the same number of each"))
@@ -104,7 +105,7 @@ def _atoms(m: Molecule) -> list[Finding]:
 
 def _distances(m: Molecule) -> list[Finding]:
     x = m.coordinates_A
-    if m.n_atoms < 2 or m.n_atoms > 400 or not np.isfinite(x).all():
+    if m.kind == "rigid scan" or m.n_atoms < 2 or m.n_atoms > 400 or not np.isfinite(x).all():
         return []
     d = np.linalg.norm(x[:, None] - x[None, :], axis=2)
     i, j = np.unravel_index(np.argmin(d + 1e9 * np.eye(len(d))), d.shape)
@@ -126,11 +127,15 @@ def _masses(m: Molecule) -> list[Finding]:
         near = min(known.isotopes, key=lambda iso: abs(iso[1] - mass))
         if abs(near[1] - mass) > 0.05:
             words = f"{known.symbol} has the mass {mass:g} u, which is no isotope's"
-            found.append(refuse("atoms-disagree", words, where=f"atom {index}", expected=f"{known.common_mass_u:.5f} u"))
+            found.append(
+                refuse("atoms-disagree", words, where=f"atom {index}", expected=f"{known.common_mass_u:.5f} u")
+            )
             continue
         action = "The symmetry number the program prints may be that of the common isotopes."
         words = f"the mass {mass:g} u is that of {near[0]}-{known.symbol}"
-        found.append(warn("non-default-isotope", words, where=f"atom {index}", expected=f"{default:.5f} u", action=action))
+        found.append(
+            warn("non-default-isotope", words, where=f"atom {index}", expected=f"{default:.5f} u", action=action)
+        )
     return found
 
 
@@ -171,10 +176,10 @@ def _imaginary(m: Molecule) -> list[Finding]:
         return []
     shown = ", ".join(f"{abs(w):.2f}i" for w in values[:6]) + (" …" if len(values) > 6 else "")
     if len(values) == 1:
-        words = f"1 imaginary mode ({shown} cm⁻¹): a first-order saddle point, as a transition state has it, is no minimum"
+        words = f"1 imaginary mode ({shown} cm⁻¹): this is a first-order saddle point (a transition state), no minimum"
         action = "A transition state has no thermo entry; follow the mode downhill to a minimum and compute that."
     else:
-        words = f"{len(values)} imaginary modes ({shown} cm⁻¹): the structure is a higher-order saddle point, no minimum"
+        words = f"{len(values)} imaginary modes ({shown} cm⁻¹): this is a higher-order saddle point, no minimum"
         action = "Distort the structure along these modes, optimise again and repeat the frequency job."
     return [refuse("imaginary-modes", words, expected="none", action=action)]
 
@@ -195,7 +200,8 @@ def _tiny(m: Molecule) -> list[Finding]:
         if 0.0 <= w < TINY_CM1:
             action = "Look at the mode: it is a free rotation, or noise of the Hessian."
             words = f"the wavenumber is {w:.2f} cm⁻¹"
-            found.append(warn("zero-wavenumber", words, where=f"mode {index}", expected=f"more than {TINY_CM1:g} cm⁻¹", action=action))
+            due = f"more than {TINY_CM1:g} cm⁻¹"
+            found.append(warn("zero-wavenumber", words, where=f"mode {index}", expected=due, action=action))
     return found
 
 
@@ -232,9 +238,7 @@ def _scan(m: Molecule) -> list[Finding]:
 
 
 def _printed(m: Molecule) -> list[Finding]:
-    if m.is_atom or m.normal_modes is None and not m.wavenumbers_cm1.size:
-        return []
-    if not np.isfinite(m.wavenumbers_cm1).all():
+    if m.is_atom or not m.wavenumbers_cm1.size or not np.isfinite(m.wavenumbers_cm1).all():
         return []
     for item in m.printed:
         finding = _zpe_differs(m, item)
@@ -244,7 +248,7 @@ def _printed(m: Molecule) -> list[Finding]:
 
 
 def _zpe_differs(m: Molecule, item: PrintedThermo) -> Finding | None:
-    if item.zpe_hartree is None or m.source.program in ("ADF",):
+    if item.zpe_hartree is None or m.source.program in _OWN_SUMS:
         return None
     real = m.wavenumbers_cm1[m.wavenumbers_cm1 > 0.0]
     own = float(real.sum()) / 2.0 / HARTREE_CM1
@@ -256,11 +260,6 @@ def _zpe_differs(m: Molecule, item: PrintedThermo) -> Finding | None:
     words = f"the zero-point energy of the modes is {own:.6f} hartree, the output prints {item.zpe_hartree:.6f}"
     action = "The program scaled, raised or left out modes, or the list is incomplete."
     return warn("printed-values-differ", words, expected=f"agreement within {allowed:.1e}", action=action)
-
-
-def _printed_symmetry(m: Molecule) -> list[Finding]:
-    """A symmetry number that contradicts the masses: two atoms the program treats as alike are different isotopes."""
-    return []
 
 
 _CHECKS: Final[tuple[Callable[[Molecule], list[Finding]], ...]] = (

@@ -1,4 +1,4 @@
-"""The text of an output, or a part of it, with cheap searching: plain ``str.find`` for rare anchors, no regex passes."""
+"""The text of an output, or a part of it, with cheap searching: ``str.find`` for rare anchors, no regex passes."""
 
 from __future__ import annotations
 

@@ -10,7 +10,8 @@ from heatwright.reading.dialects.others import OTHERS
 from heatwright.reading.dialects.psi4 import Psi4
 from heatwright.reading.dialects.qchem import QChem
 
-_DIALECTS = {kind.name: kind for kind in (NWChem, Gaussian, ORCA, QChem, Psi4, *OTHERS)}
+_KINDS: tuple[type[Dialect], ...] = (NWChem, Gaussian, ORCA, QChem, Psi4, *OTHERS)
+_DIALECTS = {kind.name: kind for kind in _KINDS}
 
 
 def dialect_of(program: str) -> Dialect:

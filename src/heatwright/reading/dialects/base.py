@@ -4,10 +4,12 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
+from itertools import pairwise
 from typing import ClassVar, Final
 
 import numpy as np
 
+from heatwright.constants import CCLIB_EV_PER_HARTREE
 from heatwright.findings import Finding
 from heatwright.molecule import FloatArray, IntArray, Kind, Level, MassKind, PrintedThermo
 from heatwright.reading.parsing import Parsed
@@ -16,8 +18,34 @@ from heatwright.reading.text import Text
 METHOD_RANK: Final[dict[str, int]] = {
     kind: rank
     for rank, kind in enumerate(
-        "SCF MP2 SCS-MP2 CASSCF MP3 MP2.5 MP4(DQ) MP4(SDQ) MP4 CISD CEPA QCISD BD CC2 CCSD CASPT2 NEVPT2 MRCI QCISD(T) BD(T) "
-        "CCSD[T] CCSD(T) CCSDT CCSDT(Q) double-hybrid composite".split()
+        [
+            "SCF",
+            "MP2",
+            "SCS-MP2",
+            "CASSCF",
+            "MP3",
+            "MP2.5",
+            "MP4(DQ)",
+            "MP4(SDQ)",
+            "MP4",
+            "CISD",
+            "CEPA",
+            "QCISD",
+            "BD",
+            "CC2",
+            "CCSD",
+            "CASPT2",
+            "NEVPT2",
+            "MRCI",
+            "QCISD(T)",
+            "BD(T)",
+            "CCSD[T]",
+            "CCSD(T)",
+            "CCSDT",
+            "CCSDT(Q)",
+            "double-hybrid",
+            "composite",
+        ]
     )
 }
 """Order in which energies of one geometry count as "higher": the last one printed for a job is what the job was for."""
@@ -106,13 +134,7 @@ class Dialect:
     def jobs(self, whole: Text) -> list[Text]:
         """The jobs of a file, one part for each, together covering the whole."""
         starts = sorted({spot for anchor in self.job_starts for spot in whole.spots(anchor)})
-        starts = [spot for spot in starts if spot > whole.start] if starts else []
-        edges = [whole.start, *self._merged(whole, starts), whole.end]
-        return [whole.part(a, b) for a, b in zip(edges, edges[1:], strict=False)]
-
-    def _merged(self, whole: Text, starts: list[int]) -> list[int]:
-        """Starts without the first one: what precedes it is its prologue."""
-        return starts[1:]
+        return cut(whole, starts[1:])  # what precedes the first start is its prologue
 
     def prologue(self, first: Text, same_molecule: bool) -> Text:
         """The part of the first job in which the program introduces itself (and the molecule, when it is the same)."""
@@ -128,7 +150,14 @@ class Dialect:
 
     def read(self, job: Text, parsed: Parsed) -> Facts:
         """What the text of a job says beyond cclib, or against it."""
-        return Facts(**plain_energies(parsed, bool(self.identity(job).has_modes)))
+        energies, kind = plain_energies(parsed, self.identity(job).has_modes)
+        return Facts(energies=energies, energy_kind=kind)
+
+
+def cut(whole: Text, edges: Iterable[int]) -> list[Text]:
+    """The parts between these positions, in order, from the start of the whole to its end."""
+    inner = sorted({edge for edge in edges if whole.start < edge < whole.end})
+    return [whole.part(a, b) for a, b in pairwise([whole.start, *inner, whole.end])]
 
 
 def points(energies: Iterable[Energy]) -> list[dict[str, float]]:
@@ -176,10 +205,8 @@ def chosen_point(
     return point, highest(point)
 
 
-def plain_energies(parsed: Parsed, first: bool) -> dict[str, object]:
-    """``energies`` and ``energy_kind`` from cclib's attributes: the first geometry of a Hessian job, else the last."""
-    from heatwright.constants import CCLIB_EV_PER_HARTREE
-
+def plain_energies(parsed: Parsed, first: bool) -> tuple[dict[str, float], str]:
+    """Energies and the kind in use from cclib's attributes: the first geometry of a Hessian job, else the last."""
     index = 0 if first else -1
     found: dict[str, float] = {}
     scf, mp, cc = (parsed.array(name) for name in ("scfenergies", "mpenergies", "ccenergies"))
@@ -190,14 +217,7 @@ def plain_energies(parsed: Parsed, first: bool) -> dict[str, object]:
             found[f"MP{order}"] = float(value) / CCLIB_EV_PER_HARTREE
     if cc is not None and cc.size:
         found["CCSD(T)"] = float(cc.flat[index]) / CCLIB_EV_PER_HARTREE
-    return {"energies": found, "energy_kind": highest(found)}
-
-
-def first_number(tokens: Iterable[str]) -> float | None:
-    """The first token that is a number."""
-    from heatwright.reading.text import number
-
-    return next((value for value in map(number, tokens) if value is not None), None)
+    return found, highest(found)
 
 
 def as_integer(value: float | None) -> int | None:

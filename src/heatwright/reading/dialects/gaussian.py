@@ -1,8 +1,9 @@
-"""Gaussian 03 to 16: linked jobs and internal steps, correlated energies in Fortran notation, masses of the thermochemistry."""
+"""Gaussian 03 to 16: linked jobs and internal steps, correlated energies in Fortran notation, double hybrids."""
 
 from __future__ import annotations
 
 import re
+from itertools import pairwise
 from typing import ClassVar, Final
 
 import numpy as np
@@ -10,7 +11,7 @@ import numpy as np
 from heatwright.constants import ATMOSPHERE_PA, CALORIE_J
 from heatwright.findings import Finding, warn
 from heatwright.molecule import FloatArray, Kind, Level, PrintedThermo
-from heatwright.reading.dialects.base import Dialect, Energy, Facts, Failure, Identity, as_integer, chosen_point
+from heatwright.reading.dialects.base import Dialect, Energy, Facts, Failure, Identity, as_integer, chosen_point, cut
 from heatwright.reading.levels import normalise_basis, normalise_method
 from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text, number, numbers
@@ -46,9 +47,7 @@ class Gaussian(Dialect):
 
     def jobs(self, whole: Text) -> list[Text]:
         entries = whole.spots(" Entering Gaussian System, Link 0=") or whole.spots(" Initial command:\n")
-        starts = sorted({*entries[1:], *(_line_start(whole, spot) for spot in whole.spots(_STEP))})
-        edges = [whole.start, *(s for s in starts if s > whole.start), whole.end]
-        return [whole.part(a, b) for a, b in zip(edges, edges[1:], strict=False)]
+        return cut(whole, [*entries[1:], *(_line_start(whole, spot) for spot in whole.spots(_STEP))])
 
     def identity(self, job: Text) -> Identity:
         spot = job.find(" Charge =")
@@ -135,7 +134,7 @@ def _iterative(job: Text) -> list[Energy]:
     kind = "QCISD" if "QCISD" in _route(job).upper() else "CCSD"
     scf = [*job.spots("SCF Done:  E("), job.end]
     found: list[Energy] = []
-    for start, end in zip(scf, scf[1:], strict=False):
+    for start, end in pairwise(scf):
         spot = job.rfind("E(CORR)=", end)
         values = numbers(job.rest(spot, "E(CORR)=")) if spot > start else []
         if values:
@@ -226,7 +225,9 @@ def _level(job: Text, kind: str) -> Level | None:
     functions = basis or job.rest_of_last("General basis read from cards:")
     if not method and not basis:
         return None
-    dispersion = "" if method in _BUILT_IN else next((s for a, s in _DISPERSION if f"{a} Dispersion energy=" in job), "")
+    dispersion = (
+        "" if method in _BUILT_IN else next((s for a, s in _DISPERSION if f"{a} Dispersion energy=" in job), "")
+    )
     return Level(
         method=method,
         basis=normalise_basis(re.sub(r"\(\d+[DF].*", "", basis).strip()) if basis else "general" if functions else "",

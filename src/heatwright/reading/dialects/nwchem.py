@@ -1,4 +1,4 @@
-"""NWChem 6 and 7: one banner, many tasks; 3N wavenumbers; masses and the geometry of the Hessian in "Atom information"."""
+"""NWChem 6 and 7: one banner, many tasks; 3N wavenumbers; masses and the Hessian's geometry under one heading."""
 
 from __future__ import annotations
 
@@ -17,6 +17,7 @@ from heatwright.reading.dialects.base import (
     Identity,
     as_integer,
     chosen_point,
+    cut,
 )
 from heatwright.reading.levels import normalise_basis, normalise_method
 from heatwright.reading.parsing import Parsed
@@ -64,7 +65,7 @@ class NWChem(Dialect):
     name = "NWChem"
     endings: ClassVar = ("Total times  cpu:",)
     failures: ClassVar = (
-        Failure("Failed to converge in maximum number of steps or available time", "the geometry optimisation did not converge"),
+        Failure("Failed to converge in maximum number of steps", "the geometry optimisation did not converge"),
         Failure("This type of error is most commonly associated with", "NWChem stopped with an error"),
         Failure("There is an error in the input file", "NWChem found an error in its input"),
         Failure("Calculation failed to converge", "the SCF did not converge"),
@@ -75,15 +76,14 @@ class NWChem(Dialect):
     cumulative = True
 
     def jobs(self, whole: Text) -> list[Text]:
-        """One job a task; the input module that closes the run, and input without a task, belong to their neighbours."""
+        """One job a task; input without a task, and the module that closes the run, belong to their neighbours."""
         starts = whole.spots(_TASK)
         edges: list[int] = []
         for start, end in zip(starts, [*starts, whole.end][1:], strict=True):
             part = whole.part(start + len(_TASK), end)
             if _MODULES.search(part.whole, part.start, part.end):
                 edges.append(start)
-        bounds = [whole.start, *edges[1:], whole.end]
-        return [whole.part(a, b) for a, b in zip(bounds, bounds[1:], strict=False)]
+        return cut(whole, edges[1:])
 
     def prologue(self, first: Text, same_molecule: bool) -> Text:
         start = first.find(_TASK)
@@ -205,7 +205,8 @@ def _masses_by_tag(whole: Text, atoms: tuple[int, ...]) -> FloatArray | None:
     table, spot = whole.rfind("  No.       Tag          Charge"), whole.rfind("Atomic Mass")
     if table < 0 or spot < table:
         return None
-    tags = [line.split()[1] for line in whole.part(table, spot).lines(table) if len(line.split()) == 6 and line.split()[0].isdigit()]
+    rows = [line.split() for line in whole.part(table, spot).lines(table)]
+    tags = [row[1] for row in rows if len(row) == 6 and row[0].isdigit()]
     masses: dict[str, float] = {}
     for line in _block(whole, spot):
         fields = line.split()
@@ -323,11 +324,12 @@ def _functional(job: Text) -> tuple[str, str]:
 
 
 def _frozen(job: Text) -> str:
-    match = re.search(r"(?:Frozen core +=|number of core +) *(\d+)", str(job))
-    core = re.search(r"Alpha frozen cores +: +(\d+)", str(job)) if not match else match
+    """Of the MP2, the CCSD and the TCE module, in their own words."""
+    counts = (job.number_after(a) for a in ("  Frozen core           =", " number of core  ", "Alpha frozen cores  :"))
+    core = next((int(count) for count in counts if count is not None), None)
     if core is None:
         return ""
-    return f"frozen {core.group(1)}" if int(core.group(1)) else "all"
+    return f"frozen {core}" if core else "all"
 
 
 def _core_potential(whole: Text) -> str:

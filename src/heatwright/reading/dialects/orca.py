@@ -5,12 +5,10 @@ from __future__ import annotations
 import re
 from typing import ClassVar, Final
 
-import numpy as np
-
 from heatwright.constants import ATMOSPHERE_PA, HARTREE_KJ_MOL
 from heatwright.elements import atomic_number
 from heatwright.molecule import Kind, Level, PrintedThermo
-from heatwright.reading.dialects.base import Dialect, Energy, Facts, Failure, Identity, as_integer, chosen_point
+from heatwright.reading.dialects.base import Dialect, Energy, Facts, Failure, Identity, as_integer, chosen_point, cut
 from heatwright.reading.levels import is_method, normalise_basis, normalise_method
 from heatwright.reading.masses import mass_kind
 from heatwright.reading.parsing import Parsed
@@ -30,7 +28,7 @@ _CORRELATED: Final = (
 _DISPERSION: Final = {
     "d3bj": "D3BJ", "d3": "D3BJ", "d3zero": "D3", "d2": "D2", "d4": "D4", "d3tz": "D3TZ", "nl": "NL", "scnl": "NL",
 }  # fmt: skip
-_BASES: Final = re.compile(r"^(?:ma-)?(?:def2-|aug-cc-|cc-|6-31|3-21|sto-|pc-|ano-|lanl|sv|tzv|qzv|ma-|jun-|may-|jul-)", re.IGNORECASE)
+_BASES: Final = re.compile(r"(?:ma-)?(?:def2-|aug-cc-|cc-|6-31|3-21|sto-|pc-|ano-|lanl|sv|tzv|qzv|jun-|may-|jul-)")
 
 
 class ORCA(Dialect):
@@ -41,7 +39,7 @@ class ORCA(Dialect):
     failures: ClassVar = (
         Failure("ORCA finished by error termination", "ORCA stopped with an error"),
         Failure("aborting the run", "ORCA stopped with an error"),
-        Failure("The optimization did not converge but reached the maximum", "the geometry optimisation did not converge"),
+        Failure("The optimization did not converge but reached", "the geometry optimisation did not converge"),
         Failure("SCF NOT CONVERGED AFTER", "the SCF did not converge"),
         Failure("This wavefunction IS NOT CONVERGED!", "the SCF did not converge"),
     )
@@ -57,15 +55,14 @@ class ORCA(Dialect):
             if re.fullmatch(rf"\W*{anchor} +\d+\W*", whole.line(spot))
         ]
         firsts = sorted(numbered)[1:] if numbered else []
-        edges = [whole.start, *sorted({*runs, *firsts}), whole.end]
-        return [whole.part(a, b) for a, b in zip(edges, edges[1:], strict=False)]
+        return cut(whole, [*runs, *firsts])
 
     def identity(self, job: Text) -> Identity:
         return Identity(
             atoms=_atoms(job),
             charge=as_integer(job.number_after(" Total Charge           Charge          ....")),
             multiplicity=as_integer(job.number_after(" Multiplicity           Mult            ....")),
-            has_modes=any(a in job for a in self.mode_anchors) or bool(re.search(r"^(?:an|num)?freq$", _keywords(job), re.MULTILINE)),
+            has_modes=any(a in job for a in self.mode_anchors) or _asks_for_modes(job),
             optimises="GEOMETRY OPTIMIZATION CYCLE" in job or "Geometry Optimization Run" in job,
         )
 
@@ -81,7 +78,9 @@ class ORCA(Dialect):
         if freq and reference is None:  # displaced points follow the reference before the modes are printed
             before = job.find(self.mode_anchors[0])
             energies = [e for e in energies if e.spot < before]
-        point, kind = chosen_point(energies, reference=reference, first=freq and "NUMERICAL FREQUENCIES" in job, tolerance=2e-8)
+        point, kind = chosen_point(
+            energies, reference=reference, first=freq and "NUMERICAL FREQUENCIES" in job, tolerance=2e-8
+        )
         masses, atoms = parsed.array("atommasses"), _atoms(job)
         if masses is not None and masses.ndim == 1 and len(masses) > len(atoms) > 0:
             masses = masses[-len(atoms) :]
@@ -121,6 +120,10 @@ def _keywords(job: Text) -> str:
     return "\n".join(words)
 
 
+def _asks_for_modes(job: Text) -> bool:
+    return bool({"freq", "anfreq", "numfreq"} & set(_keywords(job).splitlines()))
+
+
 def _atoms(job: Text) -> tuple[int, ...]:
     """Atoms of the first table of coordinates; embedding charges and ghosts count 0."""
     spot = job.find("CARTESIAN COORDINATES (ANGSTROEM)")
@@ -149,7 +152,7 @@ def _density_functional(job: Text) -> bool:
 
 
 def _energies(job: Text, kind: str) -> list[Energy]:
-    """The final energy of each geometry, all corrections included; the SCF's own where the final one is an excited state."""
+    """The final energy of each geometry, corrections included; the SCF's own where that is an excited state's."""
     found: list[Energy] = []
     excited = kind == "SCF" and any(anchor in job for anchor in _EXCITED)
     scf = [(s, v) for s in job.spots("Total Energy       :") if (v := numbers(job.rest(s, "Total Energy       :")))]
@@ -198,33 +201,53 @@ def _scan_kind(job: Text) -> Kind | None:
 def _level(job: Text, kind: str) -> Level | None:
     words = _keywords(job).splitlines()
     basis = job.rest_of_first("Your calculation utilizes the basis:")
-    local = job.rest_of_last(" LDA part of GGA corr.  LDAOpt          ....")
-    named = next((normalise_method(_bare(w)) for w in words if is_method(_bare(w))), "")
-    method = (named if named != "HF" or not _density_functional(job) else "") if kind in ("SCF", "", "double-hybrid") else kind
-    if not method and kind in ("SCF", "") and " Hartree-Fock" in job.rest_of_first(" Ab initio Hamiltonian  Method          ...."):
-        method = "HF"
+    method = _method(job, words) if kind in ("SCF", "", "double-hybrid") else kind
     if not method and not basis and not words:
         return None
-    solvent = re.search(r"^(c?pcmc?|smd|cosmo|alpb|ddcosmo)\(([^)]*)\)$", "\n".join(words), re.MULTILINE)
-    ecp = re.search(r"ECP (\S+) \(replacing", str(job.part(job.find("BASIS SET INFORMATION"))) if " ECP " in job else "")
+    local = {"VWN-5": "VWN5", "VWN-3": "VWN1RPA"}.get(
+        job.rest_of_last(" LDA part of GGA corr.  LDAOpt          ...."), ""
+    )
     return Level(
         method=method,
         basis=normalise_basis(basis or next((w for w in words if _BASES.match(w) and "/" not in w), "")),
-        functional={"VWN-5": "VWN5", "VWN-3": "VWN1RPA"}.get(local, "") if method in ("B3LYP", "B3PW91", "B3P86", "X3LYP", "O3LYP") else "",
+        functional=local if method in ("B3LYP", "B3PW91", "B3P86", "X3LYP", "O3LYP") else "",
         spherical=True,
         frozen_core=_frozen(job, words) if kind not in ("SCF", "") else "",
-        core_potential=normalise_basis(ecp.group(1)) if ecp else "",
-        dispersion=_dispersion(words, job),
-        solvent=f"{solvent.group(1).upper()}, {solvent.group(2)}" if solvent else "CPCM" if "CPCM SOLVATION MODEL" in job else "",
+        core_potential=_core_potential(job),
+        dispersion=_dispersion(words),
+        solvent=_solvent(job, words),
         program="ORCA",
     )
 
 
+def _method(job: Text, words: list[str]) -> str:
+    """The method among the keywords; ``rks`` says nothing, and HF is only meant when no functional is on."""
+    names = [normalise_method(_bare(word)) for word in words if is_method(_bare(word))]
+    functional = _density_functional(job)
+    named = next((name for name in names if name != "HF"), "")
+    return named or ("" if functional else "HF")
+
+
+def _solvent(job: Text, words: list[str]) -> str:
+    named = next((m for w in words if (m := re.fullmatch(r"(c?pcmc?|smd|cosmo|alpb|ddcosmo)\(([^)]*)\)", w))), None)
+    if named:
+        return f"{named.group(1).upper()}, {named.group(2)}"
+    return "CPCM" if "CPCM SOLVATION MODEL" in job else ""
+
+
+def _core_potential(job: Text) -> str:
+    spot = job.find(" core electrons, lmax=")
+    match = re.search(r"ECP (\S+) \(replacing", job.line(spot)) if spot >= 0 else None
+    return normalise_basis(match.group(1)) if match else ""
+
+
 def _bare(word: str) -> str:
-    return re.sub(r"-(?:d3bj|d3zero|d3|d4|d2)$", "", re.sub(r"^(?:ri|dlpno|lpno|ri-|dlpno-)-?(?=mp2|ccsd|b2)", "", word))
+    return re.sub(
+        r"-(?:d3bj|d3zero|d3|d4|d2)$", "", re.sub(r"^(?:ri|dlpno|lpno|ri-|dlpno-)-?(?=mp2|ccsd|b2)", "", word)
+    )
 
 
-def _dispersion(words: list[str], job: Text) -> str:
+def _dispersion(words: list[str]) -> str:
     for word in words:
         ending = word.rsplit("-", 1)[-1]
         if word in _DISPERSION or (ending in _DISPERSION and is_method(_bare(word)) and not is_method(word)):

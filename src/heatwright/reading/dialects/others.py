@@ -1,6 +1,426 @@
-"""The other programs cclib recognises: its attributes as they are, with version, closing line and failures."""
+"""The other programs cclib recognises, as far as they can be read without a wrong number."""
+
 from __future__ import annotations
 
-from heatwright.reading.dialects.base import Dialect
+import re
+from collections.abc import Iterable
+from dataclasses import replace
+from typing import ClassVar, Final
 
-OTHERS: tuple[type[Dialect], ...] = ()
+import numpy as np
+
+from heatwright.constants import ATMOSPHERE_PA, CALORIE_J, GAS_CONSTANT_J_MOL_K, HARTREE_CM1, HARTREE_KJ_MOL
+from heatwright.elements import atomic_number
+from heatwright.findings import Finding, warn
+from heatwright.molecule import FloatArray, IntArray, Kind, Level, PrintedThermo
+from heatwright.reading.dialects.base import Dialect, Failure, as_integer
+from heatwright.reading.dialects.gamess import GAMESS, GAMESSUK, Firefly
+from heatwright.reading.dialects.plain import Plain, last_column, wrapped_numbers
+from heatwright.reading.levels import normalise_basis, normalise_method
+from heatwright.reading.parsing import Parsed
+from heatwright.reading.text import Text, number, numbers
+
+_KCAL: Final = CALORIE_J / HARTREE_KJ_MOL
+
+
+class ADF(Plain):
+    """ADF: energies against fragments, which are no total energies; internal energy instead of enthalpy."""
+
+    name = "ADF"
+    version_pattern = r"\(ADF\) +(\S+)"
+    endings: ClassVar = ("NORMAL TERMINATION",)
+    mode_anchors: ClassVar = ("Vibrations and Normal Modes", "List of All Frequencies:")
+
+    def energies(self, job: Text, parsed: Parsed, has_modes: bool) -> tuple[dict[str, float], str]:
+        return {}, ""
+
+    def printed(self, job: Text) -> tuple[PrintedThermo, ...]:
+        block = job.part(max(job.rfind("Statistical Thermal Analysis"), job.start))
+        temperature = block.number_after("Temperature:", last=False)
+        pressure = block.number_after("Pressure:", last=False)
+        entropy = numbers(block.rest_of_first("Entropy (cal/mole-K):"))
+        energy = numbers(block.rest_of_first("Internal Energy (Kcal/mole):"))
+        sigma = re.search(r"sigma += +(\d+)", block.rest_of_first("reported below were computed using"))
+        rt = None if temperature is None else GAS_CONSTANT_J_MOL_K / 1000.0 * temperature / HARTREE_KJ_MOL
+        item = PrintedThermo(
+            temperature_K=temperature,
+            pressure_Pa=None if pressure is None else pressure * ATMOSPHERE_PA,
+            symmetry_number=int(sigma.group(1)) if sigma else None,
+            zpe_hartree=job.number_after("Zero-Point Energy :"),
+            enthalpy_correction_hartree=energy[-1] * _KCAL + rt if energy and rt is not None else None,
+            entropy_J_mol_K=entropy[-1] * CALORIE_J if entropy else None,
+        )
+        return (item,) if temperature is not None else ()
+
+    def remarks(self, job: Text) -> Iterable[Finding]:
+        words = "ADF prints bond energies against fragments, no total energy"
+        yield warn("energy-not-total", words, action="It cannot enter an atomization or a reaction.")
+
+
+class CFOUR(Plain):
+    """CFOUR: the pressure (1 bar) and the symmetry number of its table are not printed."""
+
+    name = "CFOUR"
+    version_pattern = r"Version (\S+)"
+    endings: ClassVar = ("executable xjoda finished with status     0",)
+    failures: ClassVar = (Failure("--executable xjoda finished with status     1", "CFOUR stopped with an error"),)
+    mode_anchors: ClassVar = ("Normal Coordinate Analysis",)
+
+    def energies(self, job: Text, parsed: Parsed, has_modes: bool) -> tuple[dict[str, float], str]:
+        """cclib takes whatever stands in an MP2 line; the level asked for decides."""
+        found, kind = super().energies(job, parsed, has_modes)
+        if re.match(r" *ICLLVL +(?:SCF|HF) ", job.rest_of_last("       CALCLEVEL")):
+            return {name: value for name, value in found.items() if name == "SCF"}, "SCF" if "SCF" in found else ""
+        return found, kind
+
+    def masses(self, job: Text) -> FloatArray | None:
+        return wrapped_numbers(job, "masses used (in AMU) in vibrational analysis:")
+
+    def printed(self, job: Text) -> tuple[PrintedThermo, ...]:
+        zpe = re.search(r"= +(\S+) cm-1", job.rest_of_last("Zero-point energy:"))
+        spot = job.rfind("Finite temperature thermodynamic corrections:")
+        rows = [numbers(line) for line in list(job.lines(spot))[1:60]] if spot >= 0 else []
+        zero = float(zpe.group(1)) / HARTREE_CM1 if zpe else None
+        return tuple(
+            PrintedThermo(
+                temperature_K=row[0],
+                zpe_hartree=zero,
+                enthalpy_correction_hartree=None if zero is None else row[2] / HARTREE_KJ_MOL + zero,
+                entropy_J_mol_K=row[1],
+            )
+            for row in rows
+            if len(row) == 4
+        )
+
+
+class DALTON(Plain):
+    """DALTON: frequencies without thermochemistry."""
+
+    name = "DALTON"
+    version_pattern = r"Release DALTON(\S+)"
+    endings: ClassVar = ("Total wall time used in DALTON",)
+    failures: ClassVar = (Failure("--- SEVERE ERROR, PROGRAM WILL BE ABORTED ---", "DALTON stopped with an error"),)
+    mode_anchors: ClassVar = ("Vibrational Frequencies and IR Intensities",)
+
+
+class Jaguar(Plain):
+    """Jaguar: enthalpies without the zero-point energy; version 13 raises low modes before it sums."""
+
+    name = "Jaguar"
+    version_pattern = r"Jaguar version (\S+?), release +(\S+)"
+    endings: ClassVar = ("\nJob ",)
+    failures: ClassVar = (Failure("ERROR: fatal error", "Jaguar stopped with an error"),)
+    mode_anchors: ClassVar = ("\n  frequencies ", "harmonic frequencies in")
+    _total: ClassVar = re.compile(r"^ +total +(.*)$", re.MULTILINE)
+
+    def version(self, job: Text) -> str:
+        return re.sub(r" (\d)", r" r\1", super().version(job))
+
+    def terminated(self, job: Text) -> bool:
+        spot = job.rfind("\nJob ")
+        return spot >= 0 and " completed on " in job.line(spot + 1)
+
+    def job_kind(self, job: Text) -> Kind | None:
+        return "relaxed scan" if "scan coordinate" in job or "of scan" in job or "Scan Results" in job else None
+
+    def level(self, job: Text, kind: str) -> Level | None:
+        functional = re.search(r"^ +U?DFT=.*\((\S+)\)", str(job), re.MULTILINE) if "DFT=" in job else None
+        method = normalise_method(functional.group(1)) if functional else "HF"
+        basis = job.rest_of_first("basis set: ")
+        local = "VWN1RPA" if method == "B3LYP" else ""  # reproduces the energies of that definition
+        return (
+            Level(method=method, basis=normalise_basis(basis), functional=local, program=self.name) if basis else None
+        )
+
+    def printed(self, job: Text) -> tuple[PrintedThermo, ...]:
+        zpe = re.search(r"([\d.]+) kcal/mol", job.rest_of_last("The zero point energy (ZPE):"))
+        zero = float(zpe.group(1)) * _KCAL if zpe else None
+        found = []
+        for spot in job.spots("\n  T =  "):
+            block = job.part(spot, spot + 1500)
+            total = self._total.search(str(block))
+            totals = numbers(total.group(1)) if total else []
+            if len(totals) < 5:
+                continue
+            pressure = job.number_after("Thermochemical properties at ")
+            found.append(
+                PrintedThermo(
+                    temperature_K=next(iter(numbers(job.line(spot + 1).replace("K", " "))), None),
+                    pressure_Pa=None if pressure is None else pressure * ATMOSPHERE_PA,
+                    symmetry_number=as_integer(job.number_after("rotational symmetry number:")),
+                    zpe_hartree=zero,
+                    enthalpy_correction_hartree=None if zero is None else totals[3] * _KCAL + zero,
+                    entropy_J_mol_K=totals[2] * CALORIE_J,
+                )
+            )
+        return tuple(found)
+
+
+class Molcas(Plain):
+    """OpenMolcas and Molcas: imaginary modes left out of its sums; several temperatures."""
+
+    name = "Molcas"
+    version_pattern = r"version +(\d\S*)"
+    endings: ClassVar = ("Happy landing!", "    Timing: Wall=")
+    failures: ClassVar = (Failure("Non-zero return code", "Molcas stopped with an error"),)
+    mode_anchors: ClassVar = ("Harmonic frequencies in cm-1", "Harmonic frequencies in")
+
+    def multiplicity(self, job: Text, parsed: Parsed) -> int | None:
+        spin = job.number_after("Total spin, S   ")
+        return None if spin is None else as_integer(2.0 * spin + 1.0)
+
+    def masses(self, job: Text) -> FloatArray | None:
+        return last_column(job, "Mass-centered Coordinates (Angstrom):", fields=6, skip=3)
+
+    def printed(self, job: Text) -> tuple[PrintedThermo, ...]:
+        spots = job.spots("\n Temperature = ")
+        zpe = re.search(r"([\d.]+) +(?:au|hartree)", job.rest_of_last("Zero-point vibrational energy"), re.IGNORECASE)
+        blocks = [job.part(a, b) for a, b in zip(spots, [*spots, job.end][1:], strict=True)]
+        items = [_molcas(block, job) for block in blocks]
+        zero = float(zpe.group(1)) if zpe else None
+        if zero is None and blocks and items[0].temperature_K == 0.0:
+            zero = items[0].enthalpy_correction_hartree
+        found = [replace(item, zpe_hartree=zero) for item in items if item.temperature_K]
+        return tuple(sorted(found, key=lambda i: abs((i.temperature_K or 0.0) - 298.15)))
+
+
+def _molcas(block: Text, job: Text) -> PrintedThermo:
+    head = re.search(r"([\d.]+) Kelvin, Pressure = +([\d.]+) atm", block.line(block.start + 1))
+    entropy = numbers(block.rest_of_first("\n TOTAL  "))
+    enthalpy = re.search(r"(-?[\d.]+) au", block.rest_of_first("\n ENTHALPY  "))
+    return PrintedThermo(
+        temperature_K=float(head.group(1)) if head else None,
+        pressure_Pa=float(head.group(2)) * ATMOSPHERE_PA if head else None,
+        symmetry_number=as_integer(job.number_after("Rotational Symmetry factor:")),
+        enthalpy_correction_hartree=float(enthalpy.group(1)) if enthalpy else None,
+        entropy_J_mol_K=entropy[-1] * CALORIE_J if entropy else None,
+    )
+
+
+class Molpro(Plain):
+    """Molpro: average masses; only the zero-point energy is printed."""
+
+    name = "Molpro"
+    version_pattern = r"Version (\d\S*)"
+    endings: ClassVar = ("Variable memory released",)
+    failures: ClassVar = (Failure("GLOBAL ERROR fehler", "Molpro stopped with an error"),)
+    mode_anchors: ClassVar = ("Wavenumbers [cm-1]",)
+
+    def masses(self, job: Text) -> FloatArray | None:
+        spot = job.rfind("\n Atomic Masses")
+        found: list[float] = []
+        for line in list(job.lines(spot + 1))[1:] if spot >= 0 else ():
+            match = re.match(r" +\d+- *\d+ +(.*)", line)
+            if not match:
+                break
+            found += numbers(match.group(1))
+        return np.array(found) if found else None
+
+    def level(self, job: Text, kind: str) -> Level | None:
+        group = re.match(r"(\S+?)=(\S+)", job.rest_of_last("Density functional group "))
+        basis = job.rest_of_last("SETTING BASIS          =")
+        method = normalise_method(group.group(1)) if group else "HF"
+        local = "VWN5" if group and "VWN5" in group.group(2) else ""
+        name = method if kind in ("SCF", "") else kind
+        return Level(method=name, basis=normalise_basis(basis), functional=local, program=self.name)
+
+    def printed(self, job: Text) -> tuple[PrintedThermo, ...]:
+        zpe = job.number_after("Zero point energy:")
+        return (PrintedThermo(zpe_hartree=zpe),) if zpe is not None else ()
+
+
+class MOPAC(Plain):
+    """MOPAC: heats of formation instead of energies; read here, as cclib loses degenerate modes and geometries."""
+
+    name = "MOPAC"
+    version_pattern = r"(?:Version |MOPAC v)(\d+\.\d+(?:\.\d+)?)"
+    endings: ClassVar = ("== MOPAC DONE ==",)
+    job_starts: ClassVar = ("CALCULATION DONE:",)
+    mode_anchors: ClassVar = ("NORMAL COORDINATE ANALYSIS", "DESCRIPTION OF VIBRATIONS")
+    cumulative = True
+
+    def terminated(self, job: Text) -> bool:
+        return super().terminated(job) or job.end < len(job.whole.rstrip())
+
+    def energies(self, job: Text, parsed: Parsed, has_modes: bool) -> tuple[dict[str, float], str]:
+        return {}, ""
+
+    def level(self, job: Text, kind: str) -> Level | None:
+        spot = job.whole.find(" CALCULATION RESULTS")
+        method = job.line(spot).split()[0] if spot >= 0 and job.line(spot).split() else ""
+        return Level(method=method, basis="", program=self.name) if method else None
+
+    def geometry(self, job: Text) -> tuple[IntArray | None, FloatArray | None]:
+        spot = max(job.rfind("ORIENTATION OF MOLECULE IN FORCE CALCULATION"), job.rfind("CARTESIAN COORDINATES \n"))
+        atoms: list[int] = []
+        rows: list[list[float]] = []
+        for line in job.lines(spot) if spot >= 0 else ():
+            fields = [token for token in line.split() if token != "*"]
+            values = [number(token) for token in fields[2:]]
+            if len(fields) == 5 and fields[0].isdigit() and all(v is not None for v in values):
+                atoms.append(_z(fields[1]))
+                rows.append([v for v in values if v is not None])
+            elif rows:
+                break
+        return (np.array(atoms, dtype=np.int64), np.array(rows)) if rows else (None, None)
+
+    def wavenumbers(self, job: Text) -> FloatArray | None:
+        """Every root of the analysis, so that degenerate modes stay as many as they are."""
+        start = job.find("NORMAL COORDINATE ANALYSIS")
+        if start < 0:
+            return None
+        end = job.find("MASS-WEIGHTED COORDINATE ANALYSIS", start)
+        block = job.part(start, end if end >= 0 else None)
+        found: list[float] = []
+        for spot in block.spots("Root No."):
+            n = len(block.line(spot).split()) - 2
+            for line in list(block.lines(spot))[1:6]:
+                values = [number(token) for token in line.split()]
+                if len(values) == n and all(v is not None for v in values):
+                    found += [v for v in values if v is not None]
+                    break
+        return np.array(found) if found else None
+
+    def printed(self, job: Text) -> tuple[PrintedThermo, ...]:
+        zpe = job.number_after("ZERO POINT ENERGY")
+        zero = None if zpe is None else zpe * _KCAL
+        sigma = re.search(r"= +(\d+)", job.rest_of_last("SYMMETRY NUMBER FOR POINT-GROUP"))
+        found = []
+        for spot in job.spots("  VIB.  "):
+            temperature = number(job.line(spot).split()[0])
+            totals = numbers(job.line(job.find(" TOT. ", spot)))
+            if temperature is not None and len(totals) == 4 and zero is not None:
+                heat = totals[1] / 1000.0 * _KCAL
+                number_of_rotations = int(sigma.group(1)) if sigma else None
+                item = PrintedThermo(temperature, None, number_of_rotations, zero, heat + zero, totals[3] * CALORIE_J)
+                found.append(item)
+        return tuple(found) or ((PrintedThermo(zpe_hartree=zero),) if zero is not None else ())
+
+    def remarks(self, job: Text) -> Iterable[Finding]:
+        words = "the energy MOPAC prints is a heat of formation at 298 K, not a total energy"
+        action = "Give the enthalpy of formation itself, or energies of a method that has them."
+        yield warn("energy-not-total", words, action=action)
+
+
+def _z(symbol: str) -> int:
+    try:
+        return atomic_number(re.sub(r"[^A-Za-z].*", "", symbol))
+    except KeyError:
+        return 0
+
+
+class Turbomole(Plain):
+    """Turbomole's aoforce: neither energy nor charge nor multiplicity."""
+
+    name = "Turbomole"
+    version_pattern = r"TURBOMOLE (?:rev\. )?V(\S+)"
+    endings: ClassVar = ("all done  ****", "ended normally")
+    failures: ClassVar = (Failure("ended abnormally", "Turbomole stopped with an error"),)
+    mode_anchors: ClassVar = ("NORMAL MODES and VIBRATIONAL FREQUENCIES", "zero point VIBRATIONAL energy")
+
+    def version(self, job: Text) -> str:
+        return super().version(job).replace("-", ".")
+
+    def printed(self, job: Text) -> tuple[PrintedThermo, ...]:
+        zpe = job.number_after("zero point VIBRATIONAL energy")
+        return (PrintedThermo(zpe_hartree=zpe),) if zpe is not None else ()
+
+
+class XTB(Plain):
+    """xtb: spin printed only when asked for, geometry only after an optimisation, entropies of its own."""
+
+    name = "xTB"
+    version_pattern = r"xtb version (\d\S*)"
+    endings: ClassVar = ("* finished run on",)
+    failures: ClassVar = (Failure("abnormal termination of xtb", "xtb stopped with an error"),)
+    mode_anchors: ClassVar = ("vibrational frequencies",)
+
+    def multiplicity(self, job: Text, parsed: Parsed) -> int | None:
+        call = job.rest_of_first("program call               :")
+        unpaired = re.search(r"(?:--uhf|-u) +(\d+)", call)
+        if unpaired:
+            return int(unpaired.group(1)) + 1
+        electrons = as_integer(job.number_after(":  # electrons"))
+        if not call or electrons is None or "$spin" in job or ".UHF" in call:
+            return parsed.integer("mult")
+        return 1 + electrons % 2  # the program's own choice when it is not told
+
+    def energies(self, job: Text, parsed: Parsed, has_modes: bool) -> tuple[dict[str, float], str]:
+        total = job.number_after("| TOTAL ENERGY  ")
+        return ({"SCF": total}, "SCF") if total is not None else ({}, "")
+
+    def level(self, job: Text, kind: str) -> Level | None:
+        match = re.match(r" *(\S+)", job.rest_of_last(":  Hamiltonian  "))
+        solvent = re.match(r" *(\S+)", job.rest_of_last(":  GBSA solvation  "))
+        model = "" if solvent is None or solvent.group(1) == "false" else "GBSA/ALPB"
+        return Level(method=match.group(1), basis="", solvent=model, program=self.name) if match else None
+
+    def geometry(self, job: Text) -> tuple[IntArray | None, FloatArray | None]:
+        """The structure after an optimisation; a plain Hessian run prints none."""
+        spot = job.rfind("final structure:")
+        atoms: list[int] = []
+        rows: list[list[float]] = []
+        for line in job.lines(spot) if spot >= 0 else ():
+            fields = line.split()
+            values = [number(token) for token in fields[1:]]
+            if len(fields) == 4 and fields[0].isalpha() and all(v is not None for v in values):
+                atoms.append(_z(fields[0]))
+                rows.append([v for v in values if v is not None])
+            elif rows:
+                break
+        return (np.array(atoms, dtype=np.int64), np.array(rows)) if rows else (None, None)
+
+    def job_kind(self, job: Text) -> Kind | None:
+        return "relaxed scan" if "RELAXED SCAN" in job else None
+
+    def printed(self, job: Text) -> tuple[PrintedThermo, ...]:
+        rows = [job.line(spot) for spot in job.spots(" TOT  ")]
+        values = next((v for v in map(numbers, rows) if len(v) >= 4), [])
+        temperature = next(iter(numbers(_xtb_temperature(job))), None)
+        total, enthalpy = job.number_after("| TOTAL ENERGY  "), job.number_after("| TOTAL ENTHALPY  ")
+        zpe = job.number_after(":: zero point energy  ")
+        if zpe is None:
+            return ()
+        item = PrintedThermo(
+            temperature_K=temperature,
+            symmetry_number=as_integer(job.number_after(":  rotational number  ")),
+            zpe_hartree=zpe,
+            enthalpy_correction_hartree=None if total is None or enthalpy is None else enthalpy - total,
+            entropy_J_mol_K=values[2] * CALORIE_J if values else None,
+        )
+        return (item,)
+
+
+def _xtb_temperature(job: Text) -> str:
+    spot = job.find(" VIB  ")
+    return job.line(spot) if spot >= 0 else ""
+
+
+class FChk(Plain):
+    """Formatted checkpoint files: everything but temperature, pressure, symmetry number and an ending."""
+
+    name = "FChk"
+    mode_anchors: ClassVar = ("Vib-Modes",)
+
+    def version(self, job: Text) -> str:
+        spot = job.find("Gaussian Version ")
+        lines = list(job.part(spot, spot + 200).lines(spot)) if spot >= 0 else []
+        return lines[1].strip() if len(lines) > 1 else ""
+
+    def level(self, job: Text, kind: str) -> Level | None:
+        line = next((text for index, text in enumerate(job.lines(job.start)) if index == 1), "")
+        fields = line.split()
+        if len(fields) < 3:
+            return None
+        method = normalise_method(fields[1])
+        return Level(method=method, basis=normalise_basis(fields[2]), functional="VWN1RPA" if method == "B3LYP" else "")
+
+    def remarks(self, job: Text) -> Iterable[Finding]:
+        words = "a formatted checkpoint file holds no temperature, pressure, symmetry number or closing line"
+        action = "Nothing of the program's own thermochemistry could be checked."
+        yield warn("no-normal-termination", words, action=action)
+
+
+OTHERS: Final[tuple[type[Dialect], ...]] = (
+    GAMESS, Firefly, GAMESSUK, ADF, CFOUR, DALTON, Jaguar, Molcas, Molpro, MOPAC, Turbomole, XTB, FChk,
+)  # fmt: skip

@@ -1,4 +1,4 @@
-"""Psi4 1.0 to 1.9: one banner, many calls; modes and masses read here; the well-bottom energy of the thermochemistry."""
+"""Psi4 1.0 to 1.9: one banner, many calls; modes and masses are read here; the energy of the well bottom decides."""
 
 from __future__ import annotations
 
@@ -10,7 +10,7 @@ import numpy as np
 
 from heatwright.elements import atomic_number
 from heatwright.molecule import FloatArray, Level, PrintedThermo
-from heatwright.reading.dialects.base import Dialect, Energy, Facts, Failure, Identity, chosen_point
+from heatwright.reading.dialects.base import Dialect, Energy, Facts, Failure, Identity, chosen_point, cut
 from heatwright.reading.levels import normalise_basis, normalise_method
 from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text, number, numbers
@@ -29,6 +29,7 @@ _ENERGIES: Final = (
     ("CCSD Total Energy (a.u.)", "CCSD"),
     ("CCSD(T) Total Energy (a.u.)", "CCSD(T)"),
 )
+_LOCAL: Final = (("VWN5_RPA", "VWN1RPA"), ("VWN_RPA", "VWN1RPA"), ("VWN5", "VWN5"), ("VWN3", "VWN3"))
 _REVISION: Final = re.compile(r"Git: Rev \{\} zzzzzzz")
 
 
@@ -54,8 +55,7 @@ class Psi4(Dialect):
         modules = whole.spots(_MODULE)
         ends = sorted([*whole.spots(_ANALYSIS), *whole.spots("Final optimized geometry")])
         edges = {next((m for m in modules if m > end), whole.end) for end in ends} | set(_changes(whole, modules))
-        bounds = [whole.start, *sorted(e for e in edges if whole.start < e < whole.end), whole.end]
-        return [whole.part(a, b) for a, b in zip(bounds, bounds[1:], strict=False)]
+        return cut(whole, edges)
 
     def prologue(self, first: Text, same_molecule: bool) -> Text:
         end = first.find(_MODULE)
@@ -188,21 +188,28 @@ def _modes(job: Text, n_atoms: int) -> tuple[FloatArray, FloatArray | None]:
     """Wavenumbers of the last analysis (``i`` marks imaginary ones) and their displacements."""
     values: list[float] = []
     columns: list[list[list[float]]] = []
+    width = 0
     for line in job.lines(job.rfind(_ANALYSIS)):
         if "==> Thermochemistry" in line:
             break
         if line.startswith("  Freq [cm^-1]"):
-            read = [-abs(float(t[:-1])) if t.endswith("i") else float(t) for t in line.split()[2:] if number(t.rstrip("i")) is not None]
+            read = _signed(line.split()[2:])
+            width = len(read)
             values += read
             columns += [[] for _ in read]
-            width = len(read)
-        elif values and re.match(r" +\d+ +[A-Za-z]", line):
-            numbers_of_line = [number(t) for t in line.split()[2:]]
-            if len(numbers_of_line) == 3 * width and all(v is not None for v in numbers_of_line):
+        elif width and re.match(r" +\d+ +[A-Za-z]", line):
+            row = [number(token) for token in line.split()[2:]]
+            if len(row) == 3 * width and all(v is not None for v in row):
                 for k in range(width):
-                    columns[len(values) - width + k].append([v for v in numbers_of_line[3 * k : 3 * k + 3] if v is not None])
+                    columns[k - width].append([v for v in row[3 * k : 3 * k + 3] if v is not None])
     whole = bool(values) and all(len(column) == n_atoms for column in columns)
     return np.array(values), np.array(columns) if whole else None
+
+
+def _signed(tokens: list[str]) -> list[float]:
+    """Wavenumbers with imaginary ones negative; what is no number becomes NaN, to be refused by name."""
+    values = [(number(token.rstrip("i")), token.endswith("i")) for token in tokens]
+    return [float("nan") if v is None else -abs(v) if imaginary else v for v, imaginary in values]
 
 
 def _printed(job: Text) -> tuple[PrintedThermo, ...]:
@@ -263,7 +270,7 @@ def _level(job: Text, kind: str) -> Level | None:
     return Level(
         method=method,
         basis=normalise_basis(basis.rest_of_first("Basis Set:")) if basis is not None else "",
-        functional="VWN1RPA" if local.startswith(("VWN5_RPA", "VWN_RPA")) else "VWN5" if local.startswith("VWN5") else "VWN3" if local.startswith("VWN3") else "",
+        functional=next((short for long, short in _LOCAL if local.startswith(long)), ""),
         spherical={"true": True, "false": False}.get(spherical.lower()),
         frozen_core=_frozen(job) if kind not in ("SCF", "") else "",
         core_potential="ECP" if "Core potential:" in job or "ECP:" in job else "",
@@ -277,7 +284,9 @@ def _split_dispersion(method: str) -> tuple[str, str]:
     match = re.fullmatch(r"(.+)-(D3BJ|D3\(BJ\)|D3MBJ|D3M|D3ZERO|D3|D2|D4BJ|D4)", method, re.IGNORECASE)
     if not match:
         return method, ""
-    return normalise_method(match.group(1)), match.group(2).upper().replace("(", "").replace(")", "").replace("ZERO", "")
+    return normalise_method(match.group(1)), match.group(2).upper().replace("(", "").replace(")", "").replace(
+        "ZERO", ""
+    )
 
 
 def _frozen(job: Text) -> str:

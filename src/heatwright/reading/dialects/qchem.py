@@ -1,4 +1,4 @@
-"""Q-Chem 4 to 6: one banner a job; the first energy of a frequency job is that of its geometry; kcal and cal printed."""
+"""Q-Chem 4 to 6: one banner a job; the first energy of a frequency job belongs to its geometry; kcal and cal."""
 
 from __future__ import annotations
 
