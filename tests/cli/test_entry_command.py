@@ -151,7 +151,7 @@ def test_cut_after_the_frequencies_is_a_warning(run, cut, methanol: Path) -> Non
     assert "[no-normal-termination]" in done.err
 
     def coefficients(text: str) -> list[str]:
-        return [line for line in text.splitlines() if line[79:80] in "1234" and line[0] != "!"]
+        return [line for line in text.splitlines() if line[79:80] in set("1234") and line[0] != "!"]
 
     assert coefficients(done.out) == coefficients(run("entry", methanol, *GIVEN).out)
 
