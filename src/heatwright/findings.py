@@ -73,7 +73,6 @@ CODES: Final[dict[str, str]] = {
     "cp-above-classical": "The fitted heat capacity exceeds the classical limit by more than the fit error.",
     "fit-not-closest": "The fit is farther from the heat capacity than the best polynomial of this kind needs to be.",
     "name-unfit": "The species name does not fit the format's field or cannot be read back from it.",
-    "composition-unfit": "The composition cannot be written in this format.",
     "value-unfit": "A number does not fit its fixed field.",
     "duplicate-name": "Two species of one output file would carry the same name.",
     "target-exists": "The file to be written exists already.",

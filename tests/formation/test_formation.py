@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import pytest
-from molecules import LEVEL, atom, molecule, water
 
 from heatwright.constants import HARTREE_KJ_MOL
 from heatwright.errors import UsageError
@@ -18,6 +17,7 @@ from heatwright.formation.formation import (
 from heatwright.formation.references import atom_reference, elements_with_reference
 from heatwright.molecule import Molecule
 from heatwright.partition.model import ModelOptions, build_model
+from molecules import LEVEL, atom, molecule, water
 
 
 def from_dataclass(instance, **changes):

@@ -120,7 +120,7 @@ def formation_given(
     """The formation a user states at 298.15 K, taken to 0 K where the elements' increments are known."""
     increment = element_increment_kJ_mol(atoms)
     value = enthalpy.value_kJ_mol
-    findings = ()
+    findings: tuple[Finding, ...] = ()
     if not source:
         findings = (
             note(
