@@ -8,7 +8,6 @@ import sys
 from pathlib import Path
 
 import numpy as np
-from molecules import molecule
 
 from heatwright.entry import Entry, FitOptions, make_entry
 from heatwright.formation.formation import formation_given, parse_enthalpy
@@ -17,6 +16,7 @@ from heatwright.partition.model import ModelOptions, build_model
 from heatwright.writing.context import entries_context
 from heatwright.writing.formats import FORMATS
 from heatwright.writing.render import render_format
+from molecules import molecule
 
 
 def entry_of(
@@ -82,7 +82,7 @@ def quiet_run(*arguments: str, cwd: Path) -> str:
 
 
 def cantera_reads(text: str, format_name: str, folder: Path, temperatures: list[float]) -> dict[str, dict]:
-    """What Cantera makes of a text of ours, by species, each with composition, pressure and [Cp, H, S] in SI per kmol."""
+    """What Cantera makes of our text, by species: composition, pressure, range and [Cp, H, S] in SI per kmol."""
     file = folder / ("entries.dat" if format_name == "nasa7" else "entries.yaml")
     file.write_text(text, encoding="utf-8")
     if format_name == "nasa7":

@@ -13,7 +13,12 @@ LEVEL = Level(method="B3LYP", basis="6-31G*", functional="VWN1RPA", spherical=Tr
 
 
 def molecule(
-    symbols: str, coordinates_A: list[list[float]], wavenumbers_cm1: list[float], *, file: str = "made.out", **changes: Any
+    symbols: str,
+    coordinates_A: list[list[float]],
+    wavenumbers_cm1: list[float],
+    *,
+    file: str = "made.out",
+    **changes: Any,
 ) -> Molecule:
     """A molecule from blank-separated element symbols, its geometry and its modes; everything else has a default."""
     numbers = np.array([atomic_number(s) for s in symbols.split()])

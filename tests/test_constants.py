@@ -33,8 +33,8 @@ def test_constant(ours: float, name: str, factor: float) -> None:
 
 def test_derived_factors() -> None:
     # h/(8 π² c) in u Å² cm⁻¹, as spectroscopists use it (16.857629, common practice).
-    assert c.INERTIA_CM1_U_A2 == pytest.approx(16.857629, abs=5e-7)
+    assert pytest.approx(16.857629, abs=5e-7) == c.INERTIA_CM1_U_A2
     # 1 hartree in kJ/mol and 1 eV in kJ/mol from the same adjustment (P. J. Mohr et al., CODATA 2018).
-    assert c.HARTREE_KJ_MOL == pytest.approx(2625.4996395, rel=1e-9)
-    assert c.EV_KJ_MOL == pytest.approx(96.48533212, rel=1e-9)
-    assert c.CM1_KJ_MOL * c.HARTREE_CM1 == pytest.approx(c.HARTREE_KJ_MOL, rel=1e-12)
+    assert pytest.approx(2625.4996395, rel=1e-9) == c.HARTREE_KJ_MOL
+    assert pytest.approx(96.48533212, rel=1e-9) == c.EV_KJ_MOL
+    assert pytest.approx(c.HARTREE_KJ_MOL, rel=1e-12) == c.CM1_KJ_MOL * c.HARTREE_CM1

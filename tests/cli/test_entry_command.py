@@ -1,4 +1,4 @@
-"""``heatwright entry`` as a user meets it: the good ones done, the bad ones refused with a sentence, nothing half written."""
+"""``heatwright entry`` as a user meets it: the good ones done, the bad ones refused, nothing half written."""
 
 from __future__ import annotations
 

@@ -8,13 +8,13 @@ from pathlib import Path
 
 import numpy as np
 import pytest
-from entries import entry_of, text_of
-from outside import SHARED
 
+from entries import entry_of, text_of
 from heatwright import FitOptions, Molecule, read_output
 from heatwright.entry import Entry
 from heatwright.findings import refusals
 from heatwright.resources import sample_outputs
+from outside import SHARED
 
 R = 8.31446261815324
 # What a two-range polynomial needs at most for each vibrational mode, in Cp/R (measured on some sixty species).

@@ -5,7 +5,6 @@ from __future__ import annotations
 import janaf
 import numpy as np
 import pytest
-from spectroscopy import contributions, rows
 
 from heatwright.constants import GAS_CONSTANT_J_MOL_K as R
 from heatwright.elements import atomic_number, element
@@ -14,6 +13,7 @@ from heatwright.partition.electronic import ElectronicLevels, tabulated_levels
 from heatwright.partition.rotation import ClassicalRotor
 from heatwright.partition.translation import Translation, translational_states_per_volume
 from heatwright.partition.vibration import HarmonicVibration
+from spectroscopy import contributions, rows
 
 SPECTRA = rows("spectroscopic_constants")
 TABLES = rows("gas_standard_thermo")

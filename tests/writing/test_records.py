@@ -7,7 +7,7 @@ from pathlib import Path
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import assume, given
 from hypothesis import strategies as st
 
 from entries import cantera_reads, entry_of, heap, text_of
@@ -184,7 +184,10 @@ def test_names_that_can(name: str) -> None:
 
 @given(st.floats(allow_nan=True, allow_infinity=True))
 def test_a_coefficient_never_leaves_its_field(value: float) -> None:
-    if value == 0.0 or 1e-99 <= abs(value) < 9.999999995e99:
+    size = abs(value)
+    assume(not 9.9e-100 < size < 1e-99)  # rounds up into the field or not
+    assume(not 9.99999999e99 < size < 1e100)
+    if size == 0.0 or 1e-99 <= size <= 9.99999999e99:
         text = numbers.coefficient(value)
         assert len(text) == 15
         assert float(text) == pytest.approx(value, rel=6e-9)

@@ -8,7 +8,7 @@ from typing import Final
 from heatwright.constants import ATMOSPHERE_PA, BAR_PA, GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
 from heatwright.elements import formula
 from heatwright.entry import Entry
-from heatwright.findings import SEVERITY_WORD
+from heatwright.findings import SEVERITY_WORD, Finding
 from heatwright.formation.formation import Formation
 from heatwright.partition.model import ThermoModel
 
@@ -39,9 +39,14 @@ def comment_lines(entry: Entry) -> tuple[str, ...]:
         *_treatment(entry.model),
         *_thermochemistry(entry),
         *_fit(entry),
-        *(f"{SEVERITY_WORD[f.severity]}: {f.text}" for f in entry.findings if f.severity == "warn" or f.code == "user-value"),
+        *(f"{SEVERITY_WORD[f.severity]}: {f.text}" for f in entry.findings if _is_recorded(f)),
     )
     return tuple(line for text in paragraphs for line in _wrapped(text))
+
+
+def _is_recorded(finding: Finding) -> bool:
+    """Whether a reader of the entry must know of it: every warning, and every value the user put in."""
+    return finding.severity == "warn" or finding.code == "user-value"
 
 
 def _wrapped(text: str) -> list[str]:
