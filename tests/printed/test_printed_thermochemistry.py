@@ -298,8 +298,8 @@ def test_the_list_of_outputs_covers_every_program() -> None:
     assert len(OUTPUTS) >= 12
 
 
-# GAMESS-UK prints two tables of wavenumbers that differ by up to 0.8 1/cm; its thermochemistry is that of the first,
-# cclib reads the second, so the two cannot be compared to printed digits (31 µhartree in the zero-point energy).
+# GAMESS-UK makes its thermochemistry from the wavenumbers before translation and rotation are projected out and cclib
+# reads those after it (up to 1 1/cm apart, 31 µhartree in the zero-point energy), so it cannot be compared to digits.
 OTHERS = [pytest.param(r, id=r["file"]) for r in usable_rows(("GAMESS", "Firefly", "Jaguar", "CFOUR", "ADF"))]
 
 
