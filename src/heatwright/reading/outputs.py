@@ -114,11 +114,12 @@ def _no_molecule(dialect: Dialect, choice: Choice, parsed: Parsed, source: Sourc
 
 def _failure(dialect: Dialect, choice: Choice) -> Finding | None:
     """What the program itself says of a failure, in the job that was read."""
-    spots = [(choice.job.rfind(f.anchor), f.words) for f in dialect.failures]
-    spot, words = max(spots, default=(-1, ""))
-    if spot < 0:
-        return None
-    return refuse("job-failed", words, where=choice.job.where(spot), action="Repair the job and run it again.")
+    for failure in dialect.failures:  # the telling ones stand first
+        spot = choice.job.rfind(failure.anchor)
+        if spot >= 0:
+            action = "Repair the job and run it again."
+            return refuse("job-failed", failure.words, where=choice.job.where(spot), action=action)
+    return None
 
 
 def _whole_modes(molecule: Molecule, dialect: Dialect, choice: Choice, parsed: Parsed) -> Molecule:
@@ -146,7 +147,7 @@ def _endings(molecule: Molecule, dialect: Dialect, choice: Choice, parsed: Parse
     if dialect.terminated(choice.job) or not dialect.endings:
         return () if complete or not parsed.mishaps else (_unread(choice, parsed, molecule),)
     where = f"line {choice.job.last_line}" if _cut(choice) else choice.job.where(choice.job.end - 1)
-    if complete and molecule.kind in ("frequency", "atom", "energy"):
+    if complete and molecule.wavenumbers_cm1.size:  # without modes nobody knows which energy was still to come
         words = f"{molecule.source.program}'s closing line is missing; geometry, energy and modes are all there"
         return (warn("no-normal-termination", words, where=where, expected=repr(dialect.endings[0].strip())),)
     words = f"the {molecule.source.program} output ends before the job is done"

@@ -81,10 +81,12 @@ class Text:
         return self.whole[first : last if last >= 0 else len(self.whole)]
 
     def lines(self, spot: int) -> Iterator[str]:
-        """The lines from the one a position lies in to the end of the part."""
+        """The lines from the one a position lies in to the end of the part, without a last one that the file cuts off."""
         first = max(self.whole.rfind("\n", 0, spot) + 1, self.start)
         while first < self.end:
             last = self.whole.find("\n", first, self.end)
+            if last < 0 and self.end >= len(self.whole):
+                return
             last = self.end if last < 0 else last
             yield self.whole[first:last]
             first = last + 1

@@ -53,7 +53,7 @@ def coefficient(value: float) -> str:
     '-1.23456789E-03'
     """
     text = f"{value:15.8E}"
-    if not isfinite(value) or len(text) != 15:
+    if not isfinite(value) or len(text) != 15 or text[-4] != "E":
         raise Refused(
             [refuse("value-unfit", f"the coefficient {value!r} does not fit 15 columns with a two-digit exponent")]
         )

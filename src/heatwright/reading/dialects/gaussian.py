@@ -39,9 +39,9 @@ class Gaussian(Dialect):
     name = "Gaussian"
     endings: ClassVar = ("Normal termination of Gaussian",)
     failures: ClassVar = (
-        Failure("Error termination", "Gaussian stopped with an error"),
         Failure("Convergence failure -- run terminated.", "the SCF did not converge"),
         Failure(" Optimization stopped.", "the geometry optimisation did not converge"),
+        Failure("Error termination", "Gaussian stopped with an error"),
     )
     mode_anchors: ClassVar = (" Frequencies --", "Harmonic frequencies (cm**-1)")
 
@@ -110,8 +110,8 @@ def _atoms(job: Text) -> tuple[int, ...]:
             if int(fields[1]) >= 0:
                 found.append(0 if fields[2].startswith("1000") else int(fields[1]))
         elif found:
-            break
-    return tuple(found)
+            return tuple(found)
+    return ()  # no table, or one that the end of the file cuts off
 
 
 def _energies(job: Text) -> list[Energy]:

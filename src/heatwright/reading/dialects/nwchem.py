@@ -124,7 +124,7 @@ class NWChem(Dialect):
             coordinates_A=coordinates,
             masses_u=masses if masses is not None else _masses_by_tag(Text(job.whole, 0, job.end), atoms),
             printed=_printed(job),
-            max_gradient_hartree_bohr=_max_gradient(Text(job.whole, 0, job.end), coordinates),
+            max_gradient_hartree_bohr=_max_gradient(Text(job.whole, 0, job.end), coordinates) if has_modes else None,
         )
 
 
@@ -171,14 +171,14 @@ def _atoms(whole: Text) -> tuple[int, ...]:
     for line in lines:
         fields = line.split()
         if len(fields) != 6 or not fields[0].isdigit():
+            if found:
+                return tuple(found)
             if fields and not line.startswith(" ----"):
-                break
-            if not fields and found:
                 break
             continue
         charge = number(fields[2])
         found.append(round(charge) if charge is not None and np.isfinite(charge) else 0)
-    return tuple(found)
+    return ()  # a table that the end of the file cuts off
 
 
 def _atom_information(job: Text) -> tuple[tuple[int, ...], FloatArray | None, FloatArray | None]:

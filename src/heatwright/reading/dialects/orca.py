@@ -37,11 +37,11 @@ class ORCA(Dialect):
     name = "ORCA"
     endings: ClassVar = ("ORCA TERMINATED NORMALLY",)
     failures: ClassVar = (
-        Failure("ORCA finished by error termination", "ORCA stopped with an error"),
-        Failure("aborting the run", "ORCA stopped with an error"),
         Failure("The optimization did not converge but reached", "the geometry optimisation did not converge"),
         Failure("SCF NOT CONVERGED AFTER", "the SCF did not converge"),
         Failure("This wavefunction IS NOT CONVERGED!", "the SCF did not converge"),
+        Failure("ORCA finished by error termination", "ORCA stopped with an error"),
+        Failure("aborting the run", "ORCA stopped with an error"),
     )
     mode_anchors: ClassVar = ("VIBRATIONAL FREQUENCIES",)
 
@@ -136,8 +136,8 @@ def _atoms(job: Text) -> tuple[int, ...]:
             except KeyError:
                 found.append(0)
         elif found:
-            break
-    return tuple(found)
+            return tuple(found)
+    return ()  # no table, or one that the end of the file cuts off
 
 
 def _highest(job: Text) -> str:

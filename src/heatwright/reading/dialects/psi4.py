@@ -39,9 +39,9 @@ class Psi4(Dialect):
     name = "Psi4"
     endings: ClassVar = ("Psi4 exiting successfully",)
     failures: ClassVar = (
-        Failure("Psi4 encountered an error", "Psi4 stopped with an error"),
         Failure("Could not converge geometry optimization", "the geometry optimisation did not converge"),
         Failure("Could not converge SCF iterations", "the SCF did not converge"),
+        Failure("Psi4 encountered an error", "Psi4 stopped with an error"),
     )
     mode_anchors: ClassVar = (_ANALYSIS,)
     cumulative = True
@@ -105,13 +105,15 @@ def _version(job: Text) -> str:
 
 
 def _asks_for_modes(job: Text) -> bool:
+    """Whether the echoed input calls for more vibrational analyses than the output holds."""
     whole = Text.of(job.whole)
     start = whole.find("==> Input File <==")
     if start < 0:
         return False
     end = whole.find("\n---", whole.find("\n---", start) + 4)
     echo = whole.whole[start : end if end >= 0 else start + 20000]
-    return bool(re.search(r"^[^#\n]*\b(?:freq|frequency|frequencies|hess|hessian)\s*\(", echo, re.MULTILINE))
+    calls = re.findall(r"^[^#\n]*\b(?:freq|frequency|frequencies)\s*\(", echo, re.MULTILINE)
+    return len(calls) > whole.count(_ANALYSIS)
 
 
 def _table_head(job: Text, spot: int) -> tuple[int | None, int | None]:
@@ -150,7 +152,9 @@ def _rows(job: Text, spot: int) -> tuple[tuple[int, ...], FloatArray | None, Flo
             rows.append([v for v in values if v is not None])
         elif rows:
             break
-    if not rows or len({len(row) for row in rows}) != 1:
+    else:  # no table, or one that the end of the file cuts off
+        return (), None, None
+    if len({len(row) for row in rows}) != 1:
         return (), None, None
     table = np.array(rows)
     return tuple(atoms), table[:, :3].copy(), table[:, 3].copy() if table.shape[1] == 4 else None

@@ -35,9 +35,9 @@ class QChem(Dialect):
     name = "Q-Chem"
     endings: ClassVar = ("Thank you very much for using Q-Chem",)
     failures: ClassVar = (
-        Failure("Q-Chem fatal error occurred", "Q-Chem stopped with an error"),
         Failure("SCF failed to converge", "the SCF did not converge"),
         Failure("MAXIMUM OPTIMIZATION CYCLES REACHED", "the geometry optimisation did not converge"),
+        Failure("Q-Chem fatal error occurred", "Q-Chem stopped with an error"),
     )
     job_starts: ClassVar = ("Welcome to Q-Chem",)
     mode_anchors: ClassVar = ("VIBRATIONAL FREQUENCIES (CM**-1) AND NORMAL MODES", " Frequency: ")
@@ -101,8 +101,8 @@ def _atoms(job: Text) -> tuple[int, ...]:
             except KeyError:
                 found.append(0)
         elif found:
-            break
-    return tuple(found)
+            return tuple(found)
+    return ()  # no table, or one that the end of the file cuts off
 
 
 def _charge_and_multiplicity(job: Text, atoms: tuple[int, ...]) -> tuple[int | None, int | None]:
