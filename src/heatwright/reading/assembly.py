@@ -50,8 +50,10 @@ def assemble(
         user[1], facts.multiplicity, identity.multiplicity, parsed.integer("mult"), "multiplicity", findings
     )
     energies = {name: value for name, value in facts.energies.items() if np.isfinite(value)}
-    if len(energies) < len(facts.energies):
-        findings.append(refuse("not-a-number", "a total energy is not a finite number", expected="hartree"))
+    for name in facts.energies.keys() - energies.keys():
+        findings.append(
+            refuse("not-a-number", f"the {name} energy is not a finite number", action="Look at the output.")
+        )
     return (
         Molecule(
             source=source,

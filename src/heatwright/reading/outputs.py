@@ -4,6 +4,8 @@ from __future__ import annotations
 
 import os
 
+import numpy as np
+
 from heatwright.findings import Finding, Refused, refuse, warn
 from heatwright.molecule import Molecule, Source
 from heatwright.reading.assembly import assemble
@@ -48,13 +50,14 @@ def read_output(
         program.name,
         facts.version,
     )
-    molecule, remarks = assemble(source, choice.identity, parsed, facts, (charge, multiplicity))
-    if molecule is None:
-        raise Refused([*stored.findings, _no_molecule(dialect, choice, parsed, source)])
-    molecule = molecule.but(job=choice.number, n_jobs=choice.n_jobs)
-    molecule = _whole_modes(molecule, dialect, choice, parsed)
-    ends = _endings(molecule, dialect, choice, parsed)
-    findings = (*stored.findings, *choice.findings, *remarks, *ends, *soundness(molecule))
+    with np.errstate(all="ignore"):  # what is not finite is refused by name, not warned about
+        molecule, remarks = assemble(source, choice.identity, parsed, facts, (charge, multiplicity))
+        if molecule is None:
+            raise Refused([*stored.findings, *remarks, _no_molecule(dialect, choice, parsed, source)])
+        molecule = molecule.but(job=choice.number, n_jobs=choice.n_jobs)
+        molecule = _whole_modes(molecule, dialect, choice, parsed)
+        ends = _endings(molecule, dialect, choice, parsed)
+        findings = (*stored.findings, *choice.findings, *remarks, *ends, *soundness(molecule))
     return molecule.but(findings=_once(findings))
 
 
@@ -145,7 +148,7 @@ def _endings(molecule: Molecule, dialect: Dialect, choice: Choice, parsed: Parse
         softer = warn(failed.code, failed.found, where=failed.where, action="Look at the output.")
         return (softer if complete and molecule.wavenumbers_cm1.size else failed,)
     if dialect.terminated(choice.job) or not dialect.endings:
-        return () if complete or not parsed.mishaps else (_unread(choice, parsed, molecule),)
+        return () if complete else _incomplete(choice, parsed, molecule)
     where = f"line {choice.job.last_line}" if _cut(choice) else choice.job.where(choice.job.end - 1)
     if complete and molecule.wavenumbers_cm1.size:  # without modes nobody knows which energy was still to come
         words = f"{molecule.source.program}'s closing line is missing; geometry, energy and modes are all there"
@@ -154,10 +157,20 @@ def _endings(molecule: Molecule, dialect: Dialect, choice: Choice, parsed: Parse
     return (refuse("truncated", words, where=where, action="Fetch the whole file or run the job again."),)
 
 
-def _unread(choice: Choice, parsed: Parsed, molecule: Molecule) -> Finding:
-    first = parsed.mishaps[0]
-    words = f"a block of the {molecule.source.program_version} output could not be read ({first.words})"
-    return warn("parser-failed", words, where=_line_of(choice, first), action="Report the file if it is complete.")
+def _incomplete(choice: Choice, parsed: Parsed, molecule: Molecule) -> tuple[Finding, ...]:
+    """A job that ended well and lacks what it was run for: the block that could not be read, if there was one."""
+    no_modes = choice.identity.has_modes and not molecule.wavenumbers_cm1.size
+    if parsed.mishaps:
+        first = parsed.mishaps[0]
+        words = f"a block of the {molecule.source.program_version} output could not be read ({first.words})"
+        make = refuse if no_modes else warn
+        return (
+            make("parser-failed", words, where=_line_of(choice, first), action="Report the file if it is complete."),
+        )
+    if no_modes:
+        words = f"the {molecule.source.program} job computed a Hessian, but its wavenumbers are not in the output"
+        return (refuse("no-frequencies", words, action="Look at the output."),)
+    return ()
 
 
 def _once(findings: tuple[Finding, ...]) -> tuple[Finding, ...]:

@@ -59,9 +59,9 @@ def is_linear(coordinates_A: FloatArray) -> bool:
     >>> is_linear(np.array([[0.0, 0.0, 0.0], [0.0, 0.0, 1.16], [0.0, 0.0, -1.16]]))
     True
     """
-    centred = coordinates_A - coordinates_A.mean(axis=0)
-    if not np.isfinite(centred).all():
+    if not np.isfinite(coordinates_A).all():
         return False
+    centred = coordinates_A - coordinates_A.mean(axis=0)
     axis = np.linalg.svd(centred, full_matrices=False)[2][0]
     away = centred - np.outer(centred @ axis, axis)
     return bool(np.linalg.norm(away, axis=1).max() < LINEAR_A)
@@ -86,6 +86,13 @@ def _not_numbers(m: Molecule) -> list[Finding]:
     if m.normal_modes is not None:
         bad = np.flatnonzero(~np.isfinite(m.normal_modes).all(axis=(1, 2)))
         found += [_nan(f"mode {index + 1}", "a displacement") for index in bad]
+    if m.max_gradient_hartree_bohr is not None and not np.isfinite(m.max_gradient_hartree_bohr):
+        found.append(_nan("", "the gradient"))
+    for item in m.printed:
+        for name in ("temperature_K", "pressure_Pa", "zpe_hartree", "enthalpy_correction_hartree", "entropy_J_mol_K"):
+            value = getattr(item, name)
+            if value is not None and not np.isfinite(value):
+                found.append(_nan("", f"the printed {name.rsplit('_', 1)[0].replace('_', ' ')}"))
     return found
 
 
@@ -207,11 +214,7 @@ def _tiny(m: Molecule) -> list[Finding]:
 
 def _gradient(m: Molecule) -> list[Finding]:
     g = m.max_gradient_hartree_bohr
-    if g is None or m.is_atom or not m.wavenumbers_cm1.size:
-        return []
-    if not np.isfinite(g):
-        return [refuse("not-a-number", "the gradient is not a finite number")]
-    if g <= STATIONARY_HARTREE_BOHR:
+    if g is None or m.is_atom or not m.wavenumbers_cm1.size or not g > STATIONARY_HARTREE_BOHR:
         return []
     words = f"the largest gradient component at the geometry of the frequencies is {g:.2e} hartree/bohr"
     action = "Optimise at the level of the frequencies first: wavenumbers away from a stationary point mean little."
@@ -220,9 +223,6 @@ def _gradient(m: Molecule) -> list[Finding]:
 
 def _energy(m: Molecule) -> list[Finding]:
     found = []
-    for kind, value in m.energies_hartree.items():
-        if not np.isfinite(value):
-            found.append(refuse("not-a-number", f"the {kind} energy is not a finite number"))
     if m.energy_hartree is None and m.kind not in ("relaxed scan", "rigid scan", "unknown"):
         action = "Heat capacity, enthalpy increment and entropy do not need it; an enthalpy of formation does."
         found.append(warn("no-energy", "there is no total energy in the output", action=action))
@@ -253,9 +253,7 @@ def _zpe_differs(m: Molecule, item: PrintedThermo) -> Finding | None:
     real = m.wavenumbers_cm1[m.wavenumbers_cm1 > 0.0]
     own = float(real.sum()) / 2.0 / HARTREE_CM1
     allowed = _ZPE_TOLERANCE + 3.0e-8 * real.size + (_NWCHEM_LOW * own if m.source.program == "NWChem" else 0.0)
-    if not np.isfinite(item.zpe_hartree):
-        return refuse("not-a-number", "the printed zero-point energy is not a finite number")
-    if abs(own - item.zpe_hartree) <= allowed:
+    if not abs(own - item.zpe_hartree) > allowed:  # NaN was refused before
         return None
     words = f"the zero-point energy of the modes is {own:.6f} hartree, the output prints {item.zpe_hartree:.6f}"
     action = "The program scaled, raised or left out modes, or the list is incomplete."

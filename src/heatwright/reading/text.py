@@ -7,17 +7,21 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 
 _NUMBER = re.compile(r"[-+]?(?:\d+\.?\d*|\.\d+)(?:[eEdD][-+]?\d+)?")
+_NO_NUMBER = re.compile(r"[-+]?(?:nan|inf|infinity)|\*{3,}", re.IGNORECASE)
 
 
 def number(token: str) -> float | None:
     """The number a token stands for, Fortran exponents included; None when it is none.
 
-    >>> number("-0.75002282127453D+02"), number("*****")
-    (-75.002282127453, None)
+    ``NaN``, ``Infinity`` and the asterisks of a number that did not fit its field are NaN: something was meant to stand
+    there.
+
+    >>> number("-0.75002282127453D+02"), number("*****"), number("H1")
+    (-75.002282127453, nan, None)
     """
-    if not _NUMBER.fullmatch(token):
-        return None
-    return float(token.replace("D", "E").replace("d", "e"))
+    if _NUMBER.fullmatch(token):
+        return float(token.replace("D", "E").replace("d", "e"))
+    return float("nan") if _NO_NUMBER.fullmatch(token) else None
 
 
 def numbers(line: str) -> list[float]:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Iterable, Iterator
+from itertools import islice
 from typing import ClassVar
 
 from heatwright.constants import ATMOSPHERE_PA, GAS_CONSTANT_J_MOL_K, HARTREE_CM1, HARTREE_KJ_MOL
@@ -93,7 +94,7 @@ class GAMESSUK(Plain):
         block = job.part(start)
         temperature = block.number_after(" temperature ", last=False)
         pressure = block.number_after(" pressure ", last=False)
-        zpe = [n for line in list(block.lines(block.find("zero point vibrational energy")))[:3] for n in numbers(line)]
+        zpe = [n for line in islice(block.lines(block.find("zero point vibrational energy")), 3) for n in numbers(line)]
         thermal = block.number_after("thermal energy correction to total energy:", last=False)
         totals = numbers(block.rest_of_first("\n total "))
         rt = None if temperature is None else GAS_CONSTANT_J_MOL_K / 1000.0 * temperature / HARTREE_KJ_MOL

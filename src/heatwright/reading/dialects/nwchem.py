@@ -8,6 +8,7 @@ from typing import ClassVar, Final
 import numpy as np
 
 from heatwright.constants import CALORIE_J
+from heatwright.findings import Finding, refuse
 from heatwright.molecule import FloatArray, Level, PrintedThermo
 from heatwright.reading.dialects.base import (
     Dialect,
@@ -24,6 +25,7 @@ from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text, number, numbers
 
 _TASK = "NWChem Input Module"
+_ATOM_INFORMATION: Final = "---- Atom information ----"
 _BOHR_PER_ANGSTROM: Final = 1.889725989
 """The scale NWChem itself prints over its coordinates; used to turn its bohr back into the ångströms it was given."""
 _ENERGIES: Final = (
@@ -124,6 +126,7 @@ class NWChem(Dialect):
             coordinates_A=coordinates,
             masses_u=masses if masses is not None else _masses_by_tag(Text(job.whole, 0, job.end), atoms),
             printed=_printed(job),
+            findings=_unread_masses(job, masses),
             max_gradient_hartree_bohr=_max_gradient(Text(job.whole, 0, job.end), coordinates) if has_modes else None,
         )
 
@@ -183,7 +186,7 @@ def _atoms(whole: Text) -> tuple[int, ...]:
 
 def _atom_information(job: Text) -> tuple[tuple[int, ...], FloatArray | None, FloatArray | None]:
     """Atoms, coordinates (Å) and masses (u) of the Hessian's geometry."""
-    spot = job.rfind("---- Atom information ----")
+    spot = job.rfind(_ATOM_INFORMATION)
     atoms = _atoms(Text(job.whole, 0, job.end))
     if spot < 0:
         return atoms, None, None
@@ -198,6 +201,15 @@ def _atom_information(job: Text) -> tuple[tuple[int, ...], FloatArray | None, Fl
         return atoms, None, None
     table = np.array(rows, dtype=float)
     return atoms, table[:, :3] / _BOHR_PER_ANGSTROM, table[:, 3].copy()
+
+
+def _unread_masses(job: Text, masses: FloatArray | None) -> tuple[Finding, ...]:
+    """The masses of the Hessian may differ from those of the elements, so they are not replaced when unreadable."""
+    spot = job.rfind(_ATOM_INFORMATION)
+    if spot < 0 or masses is not None or job.end - spot < 200:
+        return ()
+    words = "the table of atoms and masses of the Hessian cannot be read"
+    return (refuse("atoms-disagree", words, where=job.where(spot), action="The output is damaged; fetch it again."),)
 
 
 def _masses_by_tag(whole: Text, atoms: tuple[int, ...]) -> FloatArray | None:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import re
 from collections.abc import Iterable
 from dataclasses import replace
+from itertools import islice
 from typing import ClassVar, Final
 
 import numpy as np
@@ -79,7 +80,7 @@ class CFOUR(Plain):
     def printed(self, job: Text) -> tuple[PrintedThermo, ...]:
         zpe = re.search(r"= +(\S+) cm-1", job.rest_of_last("Zero-point energy:"))
         spot = job.rfind("Finite temperature thermodynamic corrections:")
-        rows = [numbers(line) for line in list(job.lines(spot))[1:60]] if spot >= 0 else []
+        rows = [numbers(line) for line in islice(job.lines(spot), 1, 60)] if spot >= 0 else []
         zero = float(zpe.group(1)) / HARTREE_CM1 if zpe else None
         return tuple(
             PrintedThermo(
@@ -209,7 +210,7 @@ class Molpro(Plain):
     def masses(self, job: Text) -> FloatArray | None:
         spot = job.rfind("\n Atomic Masses")
         found: list[float] = []
-        for line in list(job.lines(spot + 1))[1:] if spot >= 0 else ():
+        for line in islice(job.lines(spot + 1), 1, None) if spot >= 0 else ():
             match = re.match(r" +\d+- *\d+ +(.*)", line)
             if not match:
                 break
@@ -274,7 +275,7 @@ class MOPAC(Plain):
         found: list[float] = []
         for spot in block.spots("Root No."):
             n = len(block.line(spot).split()) - 2
-            for line in list(block.lines(spot))[1:6]:
+            for line in islice(block.lines(spot), 1, 6):
                 values = [number(token) for token in line.split()]
                 if len(values) == n and all(v is not None for v in values):
                     found += [v for v in values if v is not None]
