@@ -20,6 +20,7 @@ import numpy as np
 import pytest
 import scipy.constants as codata
 
+from heatwright.findings import refusals
 from heatwright.molecule import Molecule, PrintedThermo
 from heatwright.partition.model import ModelOptions, build_model
 from heatwright.reading.outputs import read_output
@@ -167,6 +168,7 @@ def printed_values(printed: PrintedThermo) -> Values:
 
 
 def check(molecule: Molecule, printed: PrintedThermo) -> None:
+    assert not refusals(molecule.findings)
     assert printed.temperature_K is not None
     values = own(molecule, printed.temperature_K, printed.pressure_Pa or ATMOSPHERE, printed.symmetry_number or 1)
     explained = as_the_program_does(values, molecule, printed.temperature_K)
