@@ -134,6 +134,13 @@ def _guarded(base: Any, log: list[Mishap], ended: list[bool]) -> Any:
             except Exception as error:
                 _note(log, inputfile.pos, error)
 
+        def set_attribute(self, name: str, value: Any, check_change: bool = True) -> None:
+            """Without the comparison with the old value: it only serves a log message and costs a third of the time."""
+            setattr(self, name, value)
+
+        def updateprogress(self, inputfile: Any, msg: str, xupdate: float = 0.05) -> None:
+            """Nobody watches."""
+
         def after_parsing(self) -> None:
             try:
                 super().after_parsing()

@@ -7,6 +7,7 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 
 _NUMBER = re.compile(r"[-+]?(?:\d+\.?\d*|\.\d+)(?:[eEdD][-+]?\d+)?")
+_LONG_EXPONENT = re.compile(r"([-+]?\d*\.\d+)([-+]\d{3})")  # Fortran drops the letter before three digits
 _NO_NUMBER = re.compile(r"[-+]?(?:nan|inf|infinity)|\*{3,}", re.IGNORECASE)
 
 
@@ -16,11 +17,13 @@ def number(token: str) -> float | None:
     ``NaN``, ``Infinity`` and the asterisks of a number that did not fit its field are NaN: something was meant to stand
     there.
 
-    >>> number("-0.75002282127453D+02"), number("*****"), number("H1")
-    (-75.002282127453, nan, None)
+    >>> number("-0.75002282127453D+02"), number("1.5-101"), number("*****"), number("H1")
+    (-75.002282127453, 1.5e-101, nan, None)
     """
     if _NUMBER.fullmatch(token):
         return float(token.replace("D", "E").replace("d", "e"))
+    if long := _LONG_EXPONENT.fullmatch(token):
+        return float(f"{long[1]}e{long[2]}")
     return float("nan") if _NO_NUMBER.fullmatch(token) else None
 
 
@@ -85,7 +88,7 @@ class Text:
         return self.whole[first : last if last >= 0 else len(self.whole)]
 
     def lines(self, spot: int) -> Iterator[str]:
-        """The lines from the one a position lies in to the end of the part, without a last one that the file cuts off."""
+        """The lines from the one a position lies in to the end of the part, without one that the file cuts off."""
         first = max(self.whole.rfind("\n", 0, spot) + 1, self.start)
         while first < self.end:
             last = self.whole.find("\n", first, self.end)

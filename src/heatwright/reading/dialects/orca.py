@@ -15,7 +15,8 @@ from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text, number, numbers
 
 _FINAL: Final = "FINAL SINGLE POINT ENERGY"
-_EXCITED: Final = ("ORCA TD-DFT", "ORCA CIS", "EOM-CCSD", "ORCA ROCIS", "STEOM")
+_EXCITED: Final = ("ORCA TD-DFT", "ORCA CIS", "TD-DFT EXCITED STATES", "EOM-CCSD", "ROCIS", "STEOM")
+"""Words of excited-state sections; they are looked for below the echoed input, as the credits name them too."""
 _CORRELATED: Final = (
     ("E(CCSD(T))  ", "CCSD(T)"),
     ("E(QCISD(T))  ", "QCISD(T)"),
@@ -154,7 +155,8 @@ def _density_functional(job: Text) -> bool:
 def _energies(job: Text, kind: str) -> list[Energy]:
     """The final energy of each geometry, corrections included; the SCF's own where that is an excited state's."""
     found: list[Energy] = []
-    excited = kind == "SCF" and any(anchor in job for anchor in _EXCITED)
+    body = job.part(max(job.find("END OF INPUT"), job.start))
+    excited = kind == "SCF" and any(anchor in body for anchor in _EXCITED)
     scf = [(s, v) for s in job.spots("Total Energy       :") if (v := numbers(job.rest(s, "Total Energy       :")))]
     if excited or kind != "SCF":
         correction = job.number_after("Dispersion correction  ") or 0.0 if excited else 0.0
