@@ -66,6 +66,7 @@ CODES: Final[dict[str, str]] = {
     "level-unknown": "A part of the level of theory is not printed, so it could not be compared.",
     "atom-missing": "There is no atom output for an element of the molecule.",
     "atom-twice": "Two outputs hold the same atom, and they disagree.",
+    "no-uncertainty": "The route to the enthalpy of formation has an error that it cannot state.",
     "no-reference": "There is no reference enthalpy for an element.",
     # --- fitting and writing --------------------------------------------------------------------------------------
     "temperature-range": "The temperatures asked for cannot carry a two-range polynomial anchored at 298.15 K.",

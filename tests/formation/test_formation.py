@@ -116,7 +116,7 @@ def test_another_level_is_refused_unless_trusted(change: dict, word: str) -> Non
     assert word in finding.found
     assert finding.where == "O.out"
     trusted = formation_by_atomization(build_model(target), atoms_of(ATOMS["H"], oxygen), trust_levels=True)
-    assert [f.code for f in trusted.findings] == ["level-trusted"]
+    assert [f.code for f in trusted.findings] == ["level-trusted", "no-uncertainty"]
 
 
 def test_a_correlated_molecule_does_not_go_with_scf_atoms() -> None:

@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 
 from heatwright.constants import HARTREE_KJ_MOL
 from heatwright.elements import ground_multiplicity, symbol
-from heatwright.findings import Finding, Refused, refusals, refuse, warn
+from heatwright.findings import Finding, Refused, note, refusals, refuse, warn
 from heatwright.formation.formation import (
     Formation,
     LedgerLine,
@@ -43,44 +43,57 @@ def formation_by_atomization(model: ThermoModel, atoms: Atoms, *, trust_levels: 
     their ground-state multiplicity and for levels of theory that differ.  The error of the level of theory itself is
     not known to this route, so no uncertainty is stated.
     """
-    molecule = model.molecule
+    findings = list(_obstacles(model, atoms))
     chosen: dict[str, Molecule] = {}
-    findings: list[Finding] = []
-    if molecule.energy_hartree is None:
-        findings.append(
-            refuse(
-                "no-energy",
-                "the output has no total energy to set against the atoms",
-                action="Give an enthalpy of formation by --dHf298.",
-            )
-        )
-    missing = [element for element in model.composition if not atoms.get(element)]
-    if missing:
-        findings.append(
-            refuse(
-                "atom-missing",
-                f"there is no atom output for {', '.join(missing)}",
-                action=f"Put an output of {'this atom' if len(missing) == 1 else 'these atoms'} at the level of the "
-                "molecule into the --atoms folder.",
-            )
-        )
-    for element in (e for e in model.composition if e not in missing):
-        atom, said = _atom_for(element, molecule, atoms[element], trust_levels)
+    for element in (e for e in model.composition if atoms.get(e)):
+        atom, said = _atom_for(element, model.molecule, atoms[element], trust_levels)
         findings.extend(said)
         if atom is not None:
             chosen[element] = atom
-    findings.extend(_no_reference(element) for element in model.composition if atom_reference(element) is None)
-    if molecule.charge:
-        findings.append(
-            refuse(
-                "no-formation",
-                f"the species carries the charge {molecule.charge:+d}; atomization is offered for neutral species",
-                action="Give an enthalpy of formation by --dHf298; --source should name its electron convention.",
-            )
-        )
     if refusals(findings):
         raise Refused(findings)
-    return _formation(model, chosen, tuple(findings))
+    return _formation(model, chosen, (*findings, _level_error(model)))
+
+
+def _level_error(model: ThermoModel) -> Finding:
+    level = model.molecule.level.label if model.molecule.level else "the level of theory"
+    return note(
+        "no-uncertainty",
+        f"the enthalpy of formation carries the error of {level} for breaking every bond, which this route cannot know",
+        action="Compare with an evaluated value where there is one.",
+    )
+
+
+def _obstacles(model: ThermoModel, atoms: Atoms) -> Iterator[Finding]:
+    """What stands in the way of atomization before any atom is looked at."""
+    if model.molecule.energy_hartree is None:
+        yield refuse(
+            "no-energy",
+            "the output has no total energy to set against the atoms",
+            action="Give an enthalpy of formation by --dHf298.",
+        )
+    missing = [element for element in model.composition if not atoms.get(element)]
+    if missing:
+        yield refuse(
+            "atom-missing",
+            f"there is no atom output for {', '.join(missing)}",
+            action=f"Put an output of {'this atom' if len(missing) == 1 else 'these atoms'} at the level of the "
+            "molecule into the --atoms folder.",
+        )
+    for element in model.composition:
+        if atom_reference(element) is None:
+            yield refuse(
+                "no-reference",
+                f"element {element} has no reference enthalpy",
+                expected=f"one of {', '.join(elements_with_reference())}",
+                action="Give an enthalpy of formation by --dHf298.",
+            )
+    if model.molecule.charge:
+        yield refuse(
+            "no-formation",
+            f"the species carries the charge {model.molecule.charge:+d}; atomization is offered for neutral species",
+            action="Give an enthalpy of formation by --dHf298; --source should name its electron convention.",
+        )
 
 
 def _formation(model: ThermoModel, atoms: Mapping[str, Molecule], findings: tuple[Finding, ...]) -> Formation:
@@ -132,15 +145,6 @@ def _energy(molecule: Molecule) -> float:
     energy = molecule.energy_hartree
     assert energy is not None  # checked before
     return energy
-
-
-def _no_reference(element: str) -> Finding:
-    return refuse(
-        "no-reference",
-        f"element {element} has no reference enthalpy",
-        expected=f"one of {', '.join(elements_with_reference())}",
-        action="Give an enthalpy of formation by --dHf298.",
-    )
 
 
 def _atom_for(

@@ -121,24 +121,24 @@ class ThermoModel:
         """Atoms by element symbol, Hill order."""
         return composition(self.molecule.atomic_numbers)
 
-    def ln_q(self, T: FloatArray | float) -> LnQ:
+    def ln_q(self, T: ArrayLike) -> LnQ:
         """ln q of the whole molecule and its derivatives at temperatures in K."""
         return total_ln_q(self.contributions, checked_temperatures(T))
 
-    def cp_R(self, T: FloatArray | float) -> FloatArray:
+    def cp_R(self, T: ArrayLike) -> FloatArray:
         """Cp°/R, dimensionless."""
         return self.ln_q(T).cp_R
 
-    def h_minus_h0_R(self, T: FloatArray | float) -> FloatArray:
+    def h_minus_h0_R(self, T: ArrayLike) -> FloatArray:
         """[H°(T) − H°(0)]/R, K."""
         h_R: FloatArray = self.ln_q(T).h_RT * np.asarray(T, dtype=float)
         return h_R
 
-    def s_R(self, T: FloatArray | float) -> FloatArray:
+    def s_R(self, T: ArrayLike) -> FloatArray:
         """S°/R, dimensionless."""
         return self.ln_q(T).s_R
 
-    def tabulate(self, T: FloatArray | float) -> ThermoTable:
+    def tabulate(self, T: ArrayLike) -> ThermoTable:
         """The table at the temperatures *T*, K."""
         grid = np.atleast_1d(checked_temperatures(T))
         shares = {c.name: _share(c, grid) for c in self.contributions}
