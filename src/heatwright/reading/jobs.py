@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from heatwright.elements import composition, formula
-from heatwright.findings import Finding, Refused, note, refuse
+from heatwright.findings import Finding, Refused, note, refuse, warn
 from heatwright.reading.dialects.base import Dialect, Identity
 from heatwright.reading.text import Text
 
@@ -126,4 +126,6 @@ def _remarks(identities: list[Identity], group: list[int], index: int, wanted: i
         return ()
     what = "vibrational modes, geometry and energy" if identities[index].has_modes else "geometry and energy"
     words = f"the file holds {len(identities)} jobs; {what} were read from job {index + 1}"
-    return (note("several-jobs", words, action="Another one can be chosen with --job N."),)
+    several_analyses = wanted is None and sum(identities[i].has_modes for i in group) > 1
+    say = warn if several_analyses else note  # two analyses may be of two structures of the same formula
+    return (say("several-jobs", words, action="Another one can be chosen with --job N."),)

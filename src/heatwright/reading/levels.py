@@ -9,7 +9,7 @@ from heatwright.molecule import Level
 
 _METHODS: Final = {
     "hf": "HF", "rhf": "HF", "uhf": "HF", "rohf": "HF", "scf": "HF", "hartree-fock": "HF",
-    "b3lyp": "B3LYP", "b3lyp/g": "B3LYP", "b3lyp_g": "B3LYP", "b3-lyp": "B3LYP", "b3lypg": "B3LYP",
+    "b3lyp": "B3LYP", "b3lyp/g": "B3LYP", "b3lyp_g": "B3LYP", "b3-lyp": "B3LYP", "b3lypg": "B3LYP", "b+hf-lyp": "B3LYP",
     "b3pw91": "B3PW91", "b3p86": "B3P86", "bp86": "BP86", "bp": "BP86", "b-p": "BP86", "blyp": "BLYP", "b-lyp": "BLYP",
     "pbe": "PBE", "pbepbe": "PBE", "pbe0": "PBE0", "pbe1pbe": "PBE0", "pbeh": "PBE0", "revpbe": "revPBE",
     "tpss": "TPSS", "tpsstpss": "TPSS", "tpssh": "TPSSh", "bhandhlyp": "BHandHLYP", "bhlyp": "BHandHLYP",

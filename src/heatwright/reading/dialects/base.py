@@ -205,6 +205,11 @@ def chosen_point(
     return point, highest(point)
 
 
+def or_plain(point: dict[str, float], kind: str, parsed: Parsed, first: bool) -> tuple[dict[str, float], str]:
+    """The energies a dialect found, or cclib's when it found none (a version that words its lines differently)."""
+    return (point, kind) if point else plain_energies(parsed, first)
+
+
 def plain_energies(parsed: Parsed, first: bool) -> tuple[dict[str, float], str]:
     """Energies and the kind in use from cclib's attributes: the first geometry of a Hessian job, else the last."""
     index = 0 if first else -1

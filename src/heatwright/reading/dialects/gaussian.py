@@ -11,7 +11,17 @@ import numpy as np
 from heatwright.constants import ATMOSPHERE_PA, CALORIE_J
 from heatwright.findings import Finding, warn
 from heatwright.molecule import FloatArray, Kind, Level, PrintedThermo
-from heatwright.reading.dialects.base import Dialect, Energy, Facts, Failure, Identity, as_integer, chosen_point, cut
+from heatwright.reading.dialects.base import (
+    Dialect,
+    Energy,
+    Facts,
+    Failure,
+    Identity,
+    as_integer,
+    chosen_point,
+    cut,
+    or_plain,
+)
 from heatwright.reading.levels import normalise_basis, normalise_method
 from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text, number, numbers
@@ -66,6 +76,7 @@ class Gaussian(Dialect):
         reference = _reference(job)
         freq = any(anchor in job for anchor in self.mode_anchors)
         point, kind = chosen_point(_energies(job), reference=reference, first=freq)
+        point, kind = or_plain(point, kind, parsed, freq)
         level = _level(job, kind)
         return Facts(
             version=_version(job),

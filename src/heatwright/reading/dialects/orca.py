@@ -8,7 +8,17 @@ from typing import ClassVar, Final
 from heatwright.constants import ATMOSPHERE_PA, HARTREE_KJ_MOL
 from heatwright.elements import atomic_number
 from heatwright.molecule import Kind, Level, PrintedThermo
-from heatwright.reading.dialects.base import Dialect, Energy, Facts, Failure, Identity, as_integer, chosen_point, cut
+from heatwright.reading.dialects.base import (
+    Dialect,
+    Energy,
+    Facts,
+    Failure,
+    Identity,
+    as_integer,
+    chosen_point,
+    cut,
+    or_plain,
+)
 from heatwright.reading.levels import is_method, normalise_basis, normalise_method
 from heatwright.reading.masses import mass_kind
 from heatwright.reading.parsing import Parsed
@@ -85,6 +95,7 @@ class ORCA(Dialect):
         masses, atoms = parsed.array("atommasses"), _atoms(job)
         if masses is not None and masses.ndim == 1 and len(masses) > len(atoms) > 0:
             masses = masses[-len(atoms) :]
+        point, kind = or_plain(point, kind, parsed, freq)
         return Facts(
             version=_version(job),
             energies=point,
@@ -203,7 +214,7 @@ def _scan_kind(job: Text) -> Kind | None:
 def _level(job: Text, kind: str) -> Level | None:
     words = _keywords(job).splitlines()
     basis = job.rest_of_first("Your calculation utilizes the basis:")
-    method = _method(job, words) if kind in ("SCF", "", "double-hybrid") else kind
+    method = _method(job, words) if kind in ("SCF", "", "double-hybrid") else _local_prefix(words) + kind
     if not method and not basis and not words:
         return None
     local = {"VWN-5": "VWN5", "VWN-3": "VWN1RPA"}.get(
@@ -228,6 +239,14 @@ def _method(job: Text, words: list[str]) -> str:
     functional = _density_functional(job)
     named = next((name for name in names if name != "HF"), "")
     return named or ("" if functional else "HF")
+
+
+def _local_prefix(words: list[str]) -> str:
+    """Local and density-fitted variants of correlated methods are methods of their own."""
+    for prefix in ("dlpno-", "lpno-", "ri-", "f12-"):
+        if any(word.startswith(prefix) and word != "ri-jk" for word in words):
+            return prefix.upper()
+    return ""
 
 
 def _solvent(job: Text, words: list[str]) -> str:

@@ -77,10 +77,11 @@ class Psi4(Dialect):
 
     def read(self, job: Text, parsed: Parsed) -> Facts:
         freq = _ANALYSIS in job
-        spot = _first_table(job) if freq else _last_table(job)
-        atoms, coordinates, masses = _rows(job, spot)
         reference = job.number_after("Total E0, Electronic energy at well bottom at 0 [K]")
-        point, kind = chosen_point(_energies(job), reference=reference, first=freq, tolerance=2e-8)
+        energies = _energies(job)
+        point, kind = chosen_point(energies, reference=reference, first=freq, tolerance=2e-8)
+        spot = _table_of(job, energies, point) if freq else _last_table(job)
+        atoms, coordinates, masses = _rows(job, spot)
         if not point and reference is not None:
             point, kind = {"SCF": reference}, "SCF"
         wavenumbers, modes = _modes(job, len(atoms)) if freq else (None, None)
@@ -130,6 +131,13 @@ def _tables(job: Text) -> Iterator[int]:
 
 def _first_table(job: Text) -> int:
     return next(_tables(job), -1)
+
+
+def _table_of(job: Text, energies: list[Energy], point: dict[str, float]) -> int:
+    """The table of the geometry that has these energies: displaced geometries may be printed before and after it."""
+    spots = [e.spot for e in energies if point.get(e.kind) == e.hartree]
+    before = max((t for t in _tables(job) if spots and t < spots[0]), default=-1)
+    return before if before >= 0 else _first_table(job)
 
 
 def _last_table(job: Text) -> int:

@@ -10,7 +10,16 @@ import numpy as np
 from heatwright.constants import ATMOSPHERE_PA, CALORIE_J, HARTREE_KJ_MOL
 from heatwright.elements import atomic_number
 from heatwright.molecule import FloatArray, Level, PrintedThermo
-from heatwright.reading.dialects.base import Dialect, Energy, Facts, Failure, Identity, as_integer, chosen_point
+from heatwright.reading.dialects.base import (
+    Dialect,
+    Energy,
+    Facts,
+    Failure,
+    Identity,
+    as_integer,
+    chosen_point,
+    or_plain,
+)
 from heatwright.reading.levels import normalise_basis, normalise_method
 from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text, numbers
@@ -62,6 +71,7 @@ class QChem(Dialect):
                 if values:
                     energies.append(Energy(spot, kind, values[0]))
         point, kind = chosen_point(energies, first=any(anchor in job for anchor in self.mode_anchors))
+        point, kind = or_plain(point, kind, parsed, any(anchor in job for anchor in self.mode_anchors))
         return Facts(
             version=_version(job),
             energies=point,
