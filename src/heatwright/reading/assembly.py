@@ -143,6 +143,9 @@ def _masses(
     if read is None:
         given = parsed.array("atommasses")  # linked jobs repeat them
         read = given[-len(atoms) :] if given is not None and given.ndim == 1 and len(given) >= len(atoms) else None
+    if facts.masses_u is not None and len(facts.masses_u) != len(atoms):
+        words = f"the output prints {len(facts.masses_u)} masses for {len(atoms)} atoms"
+        findings.append(refuse("atoms-disagree", words, expected="one for each"))
     if read is not None and len(read) == len(atoms):
         if facts.mass_kind == "average":
             words = "the program worked with average atomic weights; rotation, translation and wavenumbers contain them"

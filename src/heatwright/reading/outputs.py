@@ -40,7 +40,7 @@ def read_output(
     stored = read_text(path)
     program = _program(stored)
     dialect = dialect_of(program.name)
-    text = dialect.repaired(stored.text)
+    text = dialect.repaired(_whole_lines(stored.text, dialect))
     choice = choose(dialect, Text.of(text), job)
     parsed = parse(program.parser, "".join(str(piece) for piece in choice.pieces))
     facts = _facts(dialect, choice, parsed)
@@ -59,6 +59,14 @@ def read_output(
         ends = _endings(molecule, dialect, choice, parsed)
         findings = (*stored.findings, *choice.findings, *remarks, *ends, *soundness(molecule))
     return molecule.but(findings=_once(findings))
+
+
+def _whole_lines(text: str, dialect: Dialect) -> str:
+    """The text without a last line that the end of the file cuts off: half a number looks like a number."""
+    end = text.rfind("\n") + 1
+    if any(anchor.strip() in text[end:] for anchor in dialect.endings):
+        return text
+    return f"{text[:end]}…"  # something must stand there, so that the number of the last line stays true
 
 
 def _program(stored: StoredText) -> Program:

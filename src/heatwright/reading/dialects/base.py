@@ -168,7 +168,10 @@ def points(energies: Iterable[Energy]) -> list[dict[str, float]]:
     """
     grouped: list[dict[str, float]] = []
     for energy in sorted(energies, key=lambda e: e.spot):
-        if not grouped or energy.kind == "SCF" or energy.kind in grouped[-1]:
+        known = grouped[-1].get(energy.kind) if grouped else None
+        if known is not None and abs(known - energy.hartree) < 1e-9:
+            continue  # said again, as programs do in their summaries
+        if not grouped or energy.kind == "SCF" or known is not None:
             grouped.append({})
         grouped[-1][energy.kind] = energy.hartree
     return grouped

@@ -337,7 +337,7 @@ def _functional(job: Text) -> tuple[str, str]:
 
 def _frozen(job: Text) -> str:
     """Of the MP2, the CCSD and the TCE module, in their own words."""
-    counts = (job.number_after(a) for a in ("  Frozen core           =", " number of core  ", "Alpha frozen cores  :"))
+    counts = (job.number_after(a) for a in ("  Frozen core           =", " number of core  ", "Alpha frozen cores :"))
     core = next((int(count) for count in counts if count is not None), None)
     if core is None:
         return ""

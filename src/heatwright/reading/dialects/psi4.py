@@ -26,6 +26,7 @@ _ENERGIES: Final = (
     ("MP3 Total Energy (a.u.)", "MP3"),
     ("* CCSD total energy", "CCSD"),
     ("* CCSD(T) total energy", "CCSD(T)"),
+    ("@Final double-hybrid DFT total energy =", "double-hybrid"),
     ("CCSD Total Energy (a.u.)", "CCSD"),
     ("CCSD(T) Total Energy (a.u.)", "CCSD(T)"),
 )
@@ -105,16 +106,20 @@ def _version(job: Text) -> str:
     return match.group(1) if match else ""
 
 
-def _asks_for_modes(job: Text) -> bool:
-    """Whether the echoed input calls for more vibrational analyses than the output holds."""
+def _echo(job: Text) -> str:
+    """The input as the output repeats it."""
     whole = Text.of(job.whole)
     start = whole.find("==> Input File <==")
     if start < 0:
-        return False
+        return ""
     end = whole.find("\n---", whole.find("\n---", start) + 4)
-    echo = whole.whole[start : end if end >= 0 else start + 20000]
-    calls = re.findall(r"^[^#\n]*\b(?:freq|frequency|frequencies)\s*\(", echo, re.MULTILINE)
-    return len(calls) > whole.count(_ANALYSIS)
+    return whole.whole[start : end if end >= 0 else start + 20000]
+
+
+def _asks_for_modes(job: Text) -> bool:
+    """Whether the echoed input calls for more vibrational analyses than the output holds."""
+    calls = re.findall(r"^[^#\n]*\b(?:freq|frequency|frequencies)\s*\(", _echo(job), re.MULTILINE)
+    return len(calls) > job.whole.count(_ANALYSIS)
 
 
 def _table_head(job: Text, spot: int) -> tuple[int | None, int | None]:
@@ -187,7 +192,7 @@ def _energies(job: Text) -> list[Energy]:
     for anchor, kind in _ENERGIES:
         for spot in job.spots(anchor):
             values = numbers(job.rest(spot, anchor))
-            if values:
+            if values and not job.whole[spot - 1].strip("\t\n *"):  # not the spin-scaled ones, SCS-MP2 and the like
                 found.append(Energy(spot, kind, values[0]))
     for spot in job.spots("> DF-MP2 Energies <"):
         values = numbers(job.line(job.find(" Total Energy", spot)))
@@ -302,10 +307,13 @@ def _split_dispersion(method: str) -> tuple[str, str]:
 
 
 def _frozen(job: Text) -> str:
-    orbitals = re.search(r"CLASS +FOCC.*\n *PAIRS +(\d+)", str(job.part(job.rfind("CLASS")))) if "FOCC" in job else None
+    """From the module's own count; Psi4 correlates all electrons unless its input freezes some."""
+    table = job.rfind("CLASS    FOCC")
+    orbitals = re.search(r"PAIRS\s+(\d+)", job.whole[table : table + 200]) if table >= 0 else None
     if orbitals:
         return f"frozen {orbitals.group(1)}" if int(orbitals.group(1)) else "all"
     energy = job.number_after("Frozen core energy     =")
     if energy is not None:
         return "frozen" if abs(energy) > 0.0 else "all"
-    return ""
+    echo = _echo(job).lower()
+    return "all" if echo and "freeze" not in echo and "frozen" not in echo else ""
