@@ -52,7 +52,8 @@ def formation_by_atomization(model: ThermoModel, atoms: Atoms, *, trust_levels: 
             chosen[element] = atom
     if refusals(findings):
         raise Refused(findings)
-    return _formation(model, chosen, (*findings, _level_error(model)))
+    certain = model.molecule.is_atom  # an atom against itself has no bond to break
+    return _formation(model, chosen, tuple(findings) if certain else (*findings, _level_error(model)))
 
 
 def _level_error(model: ThermoModel) -> Finding:
