@@ -117,6 +117,29 @@ def test_values_that_are_no_numbers(tmp_path: Path, name: str, old: str, new: st
     assert where in f"{found[0].where} {found[0].found}"
 
 
+@pytest.mark.parametrize(
+    ("name", "pattern"),
+    [
+        ("gaussian16_dvb_freq.out", r"( Frequencies --- +)(\d)"),
+        ("gaussian16_dvb_freq.out", r"( Frequencies --  +)(\d)"),
+        ("orca50_dvb_freq.out", r"(   6:      )  (45)"),
+        ("orca60_dvb_freq.out", r"(\n +6: +)(\d\d\.\d\d cm)"),
+        ("qchem51_water_freq.out", r"(Frequency:     ) (1860)"),
+        ("psi4_132_h2o_opt_freq.out", r"(Freq \[cm\^-1\] +\d+\.\d+)( )"),
+        ("nwchem702_hdo_3temps.out", r"(P.Frequency +)(1600)"),
+    ],
+)
+def test_a_wavenumber_made_imaginary(tmp_path: Path, name: str, pattern: str) -> None:
+    """Wherever an output prints its wavenumbers first or second: one of them turned imaginary is not overlooked."""
+    text = text_of(name)
+    sign = r"\1i" if name.startswith("psi4") else r"\1-\2"
+    changed = re.sub(pattern, sign, text, count=1)
+    assert changed != text
+    m = read_text(tmp_path, changed)
+    assert "imaginary-modes" in codes(m, "refuse")
+    assert m.n_imaginary == 1
+
+
 def mangled(text: str, random_: random.Random) -> str:
     lines = text.split("\n")
     i, n = random_.randrange(len(lines)), random_.randrange(1, 80)

@@ -6,7 +6,7 @@ import os
 
 import numpy as np
 
-from heatwright.findings import Finding, Refused, refuse, warn
+from heatwright.findings import Finding, Refused, refusals, refuse, warn
 from heatwright.molecule import Molecule, Source
 from heatwright.reading.assembly import assemble
 from heatwright.reading.detection import Program, detect
@@ -56,7 +56,7 @@ def read_output(
             raise Refused([*stored.findings, *remarks, _no_molecule(dialect, choice, parsed, source)])
         molecule = molecule.but(job=choice.number, n_jobs=choice.n_jobs)
         molecule = _whole_modes(molecule, dialect, choice, parsed)
-        ends = _endings(molecule, dialect, choice, parsed)
+        ends = _endings(molecule, dialect, choice, parsed, damaged=bool(refusals(remarks)))
         findings = (*stored.findings, *choice.findings, *remarks, *ends, *soundness(molecule))
     return molecule.but(findings=_once(findings))
 
@@ -146,7 +146,9 @@ def _cut(choice: Choice) -> bool:
     return choice.job.end >= len(choice.job.whole.rstrip())
 
 
-def _endings(molecule: Molecule, dialect: Dialect, choice: Choice, parsed: Parsed) -> tuple[Finding, ...]:
+def _endings(
+    molecule: Molecule, dialect: Dialect, choice: Choice, parsed: Parsed, *, damaged: bool
+) -> tuple[Finding, ...]:
     """How the job ended: well, failed, cut off with everything there, or cut off before that."""
     complete = molecule.energy_hartree is not None and (
         molecule.wavenumbers_cm1.size > 0 or not choice.identity.has_modes or molecule.is_atom
@@ -158,7 +160,9 @@ def _endings(molecule: Molecule, dialect: Dialect, choice: Choice, parsed: Parse
     if dialect.terminated(choice.job) or not dialect.endings:
         return () if complete else _incomplete(choice, parsed, molecule)
     where = f"line {choice.job.last_line}" if _cut(choice) else choice.job.where(choice.job.end - 1)
-    if complete and molecule.wavenumbers_cm1.size:  # without modes nobody knows which energy was still to come
+    if (
+        complete and molecule.wavenumbers_cm1.size and not damaged
+    ):  # without modes nobody knows which energy was still to come
         words = f"{molecule.source.program}'s closing line is missing; geometry, energy and modes are all there"
         return (warn("no-normal-termination", words, where=where, expected=repr(dialect.endings[0].strip())),)
     words = f"the {molecule.source.program} output ends before the job is done"

@@ -10,7 +10,7 @@ from typing import ClassVar, Final
 import numpy as np
 
 from heatwright.constants import CCLIB_EV_PER_HARTREE
-from heatwright.findings import Finding
+from heatwright.findings import Finding, refuse
 from heatwright.molecule import FloatArray, IntArray, Kind, Level, MassKind, PrintedThermo
 from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text
@@ -206,6 +206,19 @@ def chosen_point(
     else:
         point = grouped[-1]
     return point, highest(point)
+
+
+def reconciled(printed: FloatArray, fine: FloatArray, where: str) -> tuple[FloatArray, tuple[Finding, ...]]:
+    """Two lists of the same wavenumbers made one: the finer digits where they agree, a refusal where they do not."""
+    agree = np.abs(printed - fine) <= 0.0051
+    if agree.all() or not np.isfinite(printed).all():
+        return np.where(agree, fine, printed), ()
+    worst = int(np.argmax(np.abs(printed - fine)))
+    words = f"two lists of wavenumbers in the output disagree ({printed[worst]:.2f} and {fine[worst]:.2f} cm⁻¹)"
+    finding = refuse(
+        "atoms-disagree", words, where=where, action="The output was changed or is damaged; fetch it again."
+    )
+    return np.where(agree, fine, np.minimum(printed, fine)), (finding,)  # so that an imaginary mode is never lost
 
 
 def or_plain(point: dict[str, float], kind: str, parsed: Parsed, first: bool) -> tuple[dict[str, float], str]:

@@ -21,6 +21,7 @@ from heatwright.reading.dialects.base import (
     chosen_point,
     cut,
     or_plain,
+    reconciled,
 )
 from heatwright.reading.levels import normalise_basis, normalise_method
 from heatwright.reading.parsing import Parsed
@@ -73,6 +74,7 @@ class Gaussian(Dialect):
 
     def read(self, job: Text, parsed: Parsed) -> Facts:
         thermo = _thermo(job)
+        wavenumbers, disagree = _wavenumbers(job, parsed)
         reference = _reference(job)
         freq = any(anchor in job for anchor in self.mode_anchors)
         point, kind = chosen_point(_energies(job), reference=reference, first=freq)
@@ -87,7 +89,9 @@ class Gaussian(Dialect):
             printed=(thermo,) if thermo else (),
             max_gradient_hartree_bohr=_max_gradient(job) if freq else None,
             kind=_scan_kind(job),
-            findings=_remarks(level),
+            wavenumbers_cm1=wavenumbers,
+            normal_modes=None if wavenumbers is None else parsed.array("vibdisps"),
+            findings=(*_remarks(level), *disagree),
         )
 
 
@@ -167,6 +171,17 @@ def _reference(job: Text) -> float | None:
     total = job.number_after("Sum of electronic and zero-point Energies=")
     zpe = job.number_after("Zero-point correction=")
     return None if total is None or zpe is None else total - zpe
+
+
+def _wavenumbers(job: Text, parsed: Parsed) -> tuple[FloatArray | None, tuple[Finding, ...]]:
+    """With ``freq=hpmodes`` the list is printed twice; what cclib took must be in both."""
+    fine = parsed.array("vibfreqs")
+    for anchor in (" Frequencies --- ", " Frequencies -- "):
+        values = [v for spot in job.spots(anchor) for v in numbers(job.rest(spot, anchor))]
+        printed = np.array(values)
+        if fine is not None and printed.shape == fine.shape and not (np.abs(printed - fine) <= 0.0051).all():
+            return reconciled(printed, fine, job.where(job.find(anchor)))
+    return None, ()
 
 
 def _thermo(job: Text) -> PrintedThermo | None:

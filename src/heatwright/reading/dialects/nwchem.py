@@ -19,6 +19,7 @@ from heatwright.reading.dialects.base import (
     as_integer,
     chosen_point,
     cut,
+    reconciled,
 )
 from heatwright.reading.levels import normalise_basis, normalise_method
 from heatwright.reading.parsing import Parsed
@@ -116,6 +117,7 @@ class NWChem(Dialect):
         if kind == "SCS-MP2":  # printed beside every MP2 energy, never the task's own method
             kind = "MP2"
         atoms, coordinates, masses = _atom_information(job)
+        wavenumbers, disagree = _wavenumbers(job, parsed)
         return Facts(
             version=_version(job),
             charge=_charge(job),
@@ -126,7 +128,9 @@ class NWChem(Dialect):
             coordinates_A=coordinates,
             masses_u=masses if masses is not None else _masses_by_tag(Text(job.whole, 0, job.end), atoms),
             printed=_printed(job),
-            findings=_unread_masses(job, masses),
+            wavenumbers_cm1=wavenumbers,
+            normal_modes=None if wavenumbers is None else parsed.array("vibdisps"),
+            findings=(*_unread_masses(job, masses), *disagree),
             max_gradient_hartree_bohr=_max_gradient(Text(job.whole, 0, job.end), coordinates) if has_modes else None,
         )
 
@@ -201,6 +205,19 @@ def _atom_information(job: Text) -> tuple[tuple[int, ...], FloatArray | None, Fl
         return atoms, None, None
     table = np.array(rows, dtype=float)
     return atoms, table[:, :3] / _BOHR_PER_ANGSTROM, table[:, 3].copy()
+
+
+def _wavenumbers(job: Text, parsed: Parsed) -> tuple[FloatArray | None, tuple[Finding, ...]]:
+    """All 3N projected wavenumbers as they stand over the modes, with the third decimal of the table of intensities."""
+    start = job.rfind("(Projected Frequencies expressed in cm-1)")
+    if start < 0:
+        return None, ()
+    block = job.part(start)
+    printed = np.array([v for spot in block.spots(" P.Frequency ") for v in numbers(block.rest(spot, " P.Frequency "))])
+    fine = parsed.array("vibfreqs")
+    if fine is None or fine.shape != printed.shape:
+        return None, ()
+    return reconciled(printed, fine, job.where(start))
 
 
 def _unread_masses(job: Text, masses: FloatArray | None) -> tuple[Finding, ...]:
