@@ -97,7 +97,7 @@ class Psi4(Dialect):
             wavenumbers_cm1=wavenumbers,
             normal_modes=modes,
             printed=_printed(job),
-            max_gradient_hartree_bohr=_max_gradient(job) if freq else None,
+            max_gradient_hartree_bohr=_max_gradient(job, coordinates) if freq else None,
         )
 
 
@@ -257,20 +257,27 @@ def _entropy(millihartree_per_kelvin: float) -> float:
     return millihartree_per_kelvin * HARTREE_KJ_MOL
 
 
-def _max_gradient(job: Text) -> float | None:
-    """The first gradient of a frequency job is that of its own geometry; without one, the last of the optimisation."""
-    spot = next((s for a in ("-Total Gradient:", "-Total gradient:") if (s := job.find(a)) >= 0), -1)
-    if spot < 0:
-        return None
-    rows: list[float] = []
+def _max_gradient(job: Text, coordinates: FloatArray | None) -> float | None:
+    """Largest component of the gradient at the geometry of the frequencies, not at a displaced one; None without it."""
+    for spot in sorted([*job.spots("-Total Gradient:"), *job.spots("-Total gradient:")]):
+        _, here, _ = _rows(job, max((t for t in _tables(job) if t < spot), default=-1))
+        if here is None or coordinates is None or here.shape != coordinates.shape:
+            continue
+        if np.abs(here - coordinates).max() < 1e-6:
+            return _largest(job, spot)
+    return None
+
+
+def _largest(job: Text, spot: int) -> float | None:
+    found: list[float] = []
     for line in job.lines(spot):
         fields = line.split()
         values = [number(f) for f in fields[1:]]
         if len(fields) == 4 and fields[0].isdigit() and all(v is not None for v in values):
-            rows += [abs(v) for v in values if v is not None]
-        elif rows:
+            found += [abs(v) for v in values if v is not None]
+        elif found:
             break
-    return max(rows, default=None)
+    return max(found, default=None)
 
 
 def _level(job: Text, kind: str) -> Level | None:
