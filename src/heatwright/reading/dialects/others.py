@@ -32,6 +32,10 @@ class ADF(Plain):
     endings: ClassVar = ("NORMAL TERMINATION",)
     mode_anchors: ClassVar = ("Vibrations and Normal Modes", "List of All Frequencies:")
 
+    def terminated(self, job: Text) -> bool:
+        """Each part of a run closes with the same line; the one of the whole run stands near its end."""
+        return job.rfind(self.endings[0]) > job.end - 20000
+
     def energies(self, job: Text, parsed: Parsed, has_modes: bool) -> tuple[dict[str, float], str]:
         return {}, ""
 
@@ -63,9 +67,9 @@ class CFOUR(Plain):
 
     name = "CFOUR"
     version_pattern = r"Version (\S+)"
-    endings: ClassVar = ("executable xjoda finished with status     0",)
+    endings: ClassVar = ("The final electronic energy is",)
     failures: ClassVar = (Failure("--executable xjoda finished with status     1", "CFOUR stopped with an error"),)
-    mode_anchors: ClassVar = ("Normal Coordinate Analysis",)
+    mode_anchors: ClassVar = ("Normal Coordinate Analysis", "IVIB           ANALYTIC", "IVIB           FINDIF")
 
     def energies(self, job: Text, parsed: Parsed, has_modes: bool) -> tuple[dict[str, float], str]:
         """cclib takes whatever stands in an MP2 line; the level asked for decides."""
@@ -251,7 +255,7 @@ class FChk(Plain):
     """Formatted checkpoint files: everything but temperature, pressure, symmetry number and an ending."""
 
     name = "FChk"
-    mode_anchors: ClassVar = ("Vib-Modes",)
+    mode_anchors: ClassVar = ("Vib-Modes", "\nFreq ")
 
     def version(self, job: Text) -> str:
         spot = job.find("Gaussian Version ")
