@@ -4,7 +4,7 @@
 >>> from heatwright.resources import sample_outputs
 >>> model = build_model(read_output(str(sample_outputs() / "H2O.out")))
 >>> round(float(model.s_R(298.15)) * 8.31446261815324, 1)
-188.8
+189.0
 """
 
 from __future__ import annotations

@@ -116,10 +116,7 @@ def json_text(value: Any) -> str:
     """*value* as indented JSON with lists of numbers on one line; raises ValueError for NaN.
 
     >>> print(json_text({"a": [1, 2], "b": {"c": None}}))
-    {
-      "a": [1, 2],
-      "b": {"c": null}
-    }
+    {"a": [1, 2], "b": {"c": null}}
     """
     return _json(value, "")
 
