@@ -16,6 +16,8 @@ from typing import Any
 
 import numpy as np
 
+from heatwright.reading.deferral import without_unused_packages
+
 _WANTED = frozenset(
     [
         "atomnos",
@@ -111,7 +113,8 @@ def _values(parser: str, text: str, log: list[Mishap], ended: list[bool]) -> dic
 
 
 def _parser_class(name: str) -> Any:
-    return getattr(importlib.import_module("cclib.parser"), name)
+    with without_unused_packages():
+        return getattr(importlib.import_module("cclib.parser"), name)
 
 
 def _note(log: list[Mishap], spot: int, error: Exception) -> None:
