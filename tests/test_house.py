@@ -19,7 +19,7 @@ TOP = {"README.md", "DEVELOPERS.md", "pyproject.toml", "src", "tests", "sample_o
 
 # A room may import from itself and from rooms before it.
 ORDER = [
-    "constants", "errors", "findings", "resources", "elements", "molecule", "reading", "structure", "partition",
+    "constants", "errors", "findings", "resources", "elements", "molecule", "structure", "reading", "scales", "partition",
     "formation", "polynomial", "entry", "writing", "cli",
 ]  # fmt: skip
 

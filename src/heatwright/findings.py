@@ -56,6 +56,8 @@ CODES: Final[dict[str, str]] = {
     "spin-degeneracy": "No electronic levels are known for the species; the spin degeneracy 2S+1 was taken.",
     "linear-radical": "A linear open-shell molecule outside the table: its spatial degeneracy is not known.",
     "atom-not-ground-state": "An atom is not in the multiplicity of its ground state.",
+    "published-scale": "Published scale factors were taken; which, and what another choice would change, is said.",
+    "no-published-scale": "No scale factors are published for the level of theory.",
     "unscaled": "Wavenumbers and zero-point energy were used as computed, without a scale factor.",
     "name-from-formula": "The file's name cannot serve as a species name, so the formula was taken.",
     "source-not-stated": "An enthalpy of formation was given without its source.",

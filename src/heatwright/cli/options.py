@@ -38,6 +38,11 @@ _MODEL_OPTIONS = (
     ),
     click.option("--frequency-scale", type=float, metavar="X", help="Factor on the wavenumbers in Cp, H and S."),
     click.option("--zpe-scale", type=float, metavar="X", help="Factor on the zero-point energy."),
+    click.option(
+        "--scale",
+        type=click.Choice(["published"]),
+        help="Both factors from the table of published ones, by the level of theory (see `heatwright scales`).",
+    ),
     click.option("--symmetry-number", type=click.IntRange(min=1), metavar="N", help="Instead of the geometry's."),
     click.option("--optical-isomers", type=click.IntRange(min=1), metavar="N", help="Instead of the geometry's."),
     click.option(
@@ -90,7 +95,11 @@ def taken_model_options(options: dict[str, Any]) -> ModelOptions:
     from heatwright.partition.model import ModelOptions
 
     electronic = options.pop("electronic")
+    scale = options.pop("scale")
+    if scale is not None and (options["frequency_scale"] is not None or options["zpe_scale"] is not None):
+        raise UsageError("--scale published chooses both factors; leave out --frequency-scale and --zpe-scale")
     return ModelOptions(
+        scale=scale,
         pressure_Pa={"1bar": BAR_PA, "1atm": ATMOSPHERE_PA}[options.pop("pressure")],
         frequency_scale=options.pop("frequency_scale"),
         zpe_scale=options.pop("zpe_scale"),

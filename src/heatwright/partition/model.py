@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from math import isfinite
 from typing import Literal
 
@@ -18,8 +18,10 @@ from heatwright.molecule import FloatArray, MassKind, Molecule
 from heatwright.partition.contribution import ConstantFactor, Contribution, LnQ, total_ln_q
 from heatwright.partition.electronic import ElectronicLevels, Levels, tabulated_levels
 from heatwright.partition.rotation import ClassicalRotor
+from heatwright.partition.scaling import published_choice, scale_findings
 from heatwright.partition.translation import Translation
 from heatwright.partition.vibration import HarmonicVibration, zero_point_energy_kJ_mol
+from heatwright.scales import ScaleChoice
 from heatwright.structure.inertia import Inertia, inertia
 from heatwright.structure.symmetry import Symmetry, symmetry, symmetry_findings
 
@@ -29,7 +31,8 @@ class ModelOptions:
     """The choices behind a model; ``None`` means "as the output or the geometry says" (unscaled for scale factors).
 
     pressure_Pa : standard pressure.   frequency_scale, zpe_scale : factors on the wavenumbers for the thermal
-    functions and for the zero-point energy.   symmetry_number, optical_isomers : override the geometry.
+    functions and for the zero-point energy.   scale : ``"published"`` takes both of them from the table of published
+    factors (:func:`heatwright.scales.choose_published`) for the molecule's level of theory.   symmetry_number, optical_isomers : override the geometry.
     electronic : ``"table"``, ``"spin"`` or explicit levels.   masses : isotopic or average atomic masses.
     symmetry_tolerance_A : how far an atom may be from its image, Å.
     """
@@ -37,6 +40,7 @@ class ModelOptions:
     pressure_Pa: float = BAR_PA
     frequency_scale: float | None = None
     zpe_scale: float | None = None
+    scale: Literal["published"] | None = None
     symmetry_number: int | None = None
     optical_isomers: int | None = None
     electronic: Literal["table", "spin"] | Levels = "table"
@@ -52,6 +56,8 @@ class ModelOptions:
             value = getattr(self, name)
             if value is not None and value < 1:
                 raise UsageError(f"{name} must be at least 1, not {value}")
+        if self.scale is not None and (self.frequency_scale is not None or self.zpe_scale is not None):
+            raise UsageError("published scale factors and stated ones (frequency_scale, zpe_scale) exclude each other")
 
 
 @dataclass(frozen=True, eq=False, slots=True)
@@ -105,6 +111,7 @@ class ThermoModel:
     levels_source: str
     zpe_kJ_mol: float
     findings: tuple[Finding, ...] = field(default=())
+    scale_choice: ScaleChoice | None = None
 
     @property
     def frequency_scale(self) -> float:
@@ -115,6 +122,13 @@ class ThermoModel:
     def zpe_scale(self) -> float:
         """The factor on the wavenumbers in the zero-point energy (1 when none was asked for)."""
         return self.options.zpe_scale or 1.0
+
+    @property
+    def scale_source(self) -> str:
+        """Where the scale factors are from: a publication, ``given``, or empty when there is none."""
+        if self.scale_choice is not None:
+            return self.scale_choice.source
+        return "" if self.options.frequency_scale is None and self.options.zpe_scale is None else "given"
 
     @property
     def composition(self) -> dict[str, int]:
@@ -185,7 +199,7 @@ def build_model(molecule: Molecule, options: ModelOptions | None = None) -> Ther
     Raises ValueError when the molecule has an imaginary mode or neither modes nor a single atom: the reading room
     refuses those with a sentence before a model is asked for.
     """
-    options = options or ModelOptions()
+    options, choice = _scaled(molecule, options or ModelOptions())
     if molecule.n_imaginary or not molecule.has_thermochemistry:
         raise ValueError(f"{molecule.source.file}: a thermodynamic model needs the real modes of a minimum, or an atom")
     masses, mass_kind = chosen_masses(molecule, options.masses)
@@ -210,8 +224,20 @@ def build_model(molecule: Molecule, options: ModelOptions | None = None) -> Ther
         findings=(
             *_symmetry_choice(found, options),
             *electronic_findings,
-            *_scale_findings(molecule, options),
+            *scale_findings(molecule, options.frequency_scale, options.zpe_scale, choice),
         ),
+        scale_choice=choice,
+    )
+
+
+def _scaled(molecule: Molecule, options: ModelOptions) -> tuple[ModelOptions, ScaleChoice | None]:
+    """The options with published factors put in where they were asked for, and the choice that was made."""
+    choice = published_choice(molecule) if options.scale == "published" else None
+    if choice is None:
+        return options, None
+    return (
+        replace(options, scale=None, frequency_scale=choice.frequency_factor, zpe_scale=choice.zpe_factor),
+        choice,
     )
 
 
@@ -303,17 +329,3 @@ def _symmetry_choice(found: Symmetry, options: ModelOptions) -> tuple[Finding, .
             )
         )
     return (*said, *(symmetry_findings(found) if options.symmetry_number is None else ()))
-
-
-def _scale_findings(molecule: Molecule, options: ModelOptions) -> tuple[Finding, ...]:
-    if molecule.is_atom:
-        return ()
-    if options.frequency_scale is not None and options.zpe_scale is not None:
-        return ()
-    if options.frequency_scale is None and options.zpe_scale is None:
-        what = "wavenumbers and zero-point energy were used as computed"
-    elif options.frequency_scale is None:
-        what = "the wavenumbers of the thermal functions were used as computed"
-    else:
-        what = "the zero-point energy was used as computed"
-    return (note("unscaled", f"{what}, without a scale factor"),)

@@ -44,9 +44,12 @@ def comment_lines(entry: Entry) -> tuple[str, ...]:
     return tuple(line for text in paragraphs for line in _wrapped(text))
 
 
+_RECORDED_NOTES: Final = frozenset({"user-value", "published-scale", "given-by-hand"})
+
+
 def _is_recorded(finding: Finding) -> bool:
-    """Whether a reader of the entry must know of it: every warning, and every value the user put in."""
-    return finding.severity == "warn" or finding.code == "user-value"
+    """Whether a reader of the entry must know of it: every warning, every value the user put in, published factors."""
+    return finding.severity == "warn" or finding.code in _RECORDED_NOTES
 
 
 def _wrapped(text: str) -> list[str]:
@@ -100,8 +103,10 @@ def levels_text(model: ThermoModel) -> str:
 
 
 def scale_text(model: ThermoModel) -> str:
-    """The scale factors in words."""
-    return f"scale factors {model.frequency_scale:g} (thermal functions) and {model.zpe_scale:g} (zero-point energy)"
+    """The scale factors in words, with where they are from."""
+    words = f"scale factors {model.frequency_scale:g} (thermal functions) and {model.zpe_scale:g} (zero-point energy)"
+    source = model.scale_source
+    return f"{words}, {source}" if source else f"{words}: unscaled"
 
 
 def formation_text(formation: Formation) -> str:

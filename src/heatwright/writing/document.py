@@ -38,6 +38,7 @@ def species_document(
         "wavenumbers_cm-1": _numbers(molecule.wavenumbers_cm1),
         "frequency_scale": model.frequency_scale,
         "zpe_scale": model.zpe_scale,
+        "scale_source": model.scale_source or None,
         "zpe_kJ_mol": significant(model.zpe_kJ_mol),
         "standard_pressure_bar": model.options.pressure_Pa / BAR_PA,
     }
