@@ -42,6 +42,8 @@ CODES: Final[dict[str, str]] = {
     "ghost-atoms": "The output holds ghost or dummy atoms.",
     "atoms-disagree": "Geometry, atoms, masses and modes in the output do not describe the same molecule.",
     "multiplicity-impossible": "The spin multiplicity cannot belong to this number of electrons.",
+    "hessian-unused": "The printed Hessian does not give the printed wavenumbers, so it was left aside.",
+    "modes-from-hessian": "No wavenumbers are printed; they were computed from the printed Hessian.",
     # --- is it a minimum ------------------------------------------------------------------------------------------
     "imaginary-modes": "The structure is not a minimum: there are imaginary modes.",
     "mode-count": "The number of vibrational modes is not 3N−6 (3N−5 for a linear molecule).",

@@ -32,9 +32,9 @@ class ModelOptions:
 
     pressure_Pa : standard pressure.   frequency_scale, zpe_scale : factors on the wavenumbers for the thermal
     functions and for the zero-point energy.   scale : ``"published"`` takes both of them from the table of published
-    factors (:func:`heatwright.scales.choose_published`) for the molecule's level of theory.   symmetry_number, optical_isomers : override the geometry.
-    electronic : ``"table"``, ``"spin"`` or explicit levels.   masses : isotopic or average atomic masses.
-    symmetry_tolerance_A : how far an atom may be from its image, Å.
+    factors (:func:`heatwright.scales.choose_published`) for the molecule's level of theory.   symmetry_number,
+    optical_isomers : override the geometry.   electronic : ``"table"``, ``"spin"`` or explicit levels.
+    masses : isotopic or average atomic masses.   symmetry_tolerance_A : how far an atom may be from its image, Å.
     """
 
     pressure_Pa: float = BAR_PA
