@@ -9,6 +9,7 @@ from pathlib import Path
 
 import pytest
 
+from heatwright.explanations import by_group
 from heatwright.findings import CODES
 from heatwright.resources import data_rows
 from heatwright.writing.formats import FORMATS
@@ -19,8 +20,8 @@ TOP = {"README.md", "DEVELOPERS.md", "pyproject.toml", "src", "tests", "sample_o
 
 # A room may import from itself and from rooms before it.
 ORDER = [
-    "constants", "errors", "findings", "resources", "elements", "molecule", "structure", "reading", "scales",
-    "partition", "formation", "polynomial", "entry", "writing", "cli",
+    "constants", "errors", "findings", "resources", "explanations", "elements", "molecule", "structure", "reading",
+    "scales", "partition", "formation", "polynomial", "entry", "writing", "cli",
 ]  # fmt: skip
 
 
@@ -65,6 +66,19 @@ def test_every_public_function_and_class_has_a_docstring(path: Path) -> None:
     for node in tree.body:
         if isinstance(node, ast.FunctionDef | ast.ClassDef) and not node.name.startswith("_"):
             assert ast.get_docstring(node), f"{path.name}: {node.name} has no docstring"
+
+
+def test_every_finding_code_is_explained() -> None:
+    explained = {e.code for group in by_group().values() for e in group}
+    assert [code for code in CODES if code not in explained] == []
+
+
+def test_explanations_are_sentences_that_carry_their_code() -> None:
+    for e in (e for group in by_group().values() for e in group):
+        assert e.example.endswith(f"[{e.code}]"), e.code
+        assert e.example.startswith(("error: ", "warning: ", "note: ")), e.code
+        assert e.advice[0].isupper(), e.code
+        assert e.advice.endswith("."), e.code
 
 
 def test_every_finding_code_is_used_in_the_source() -> None:

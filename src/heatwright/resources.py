@@ -33,11 +33,15 @@ def sample_outputs() -> Traversable:
     return _shipped("sample_outputs")
 
 
+def data_text(name: str) -> str:
+    """The text of ``data/NAME``."""
+    return files("heatwright").joinpath("data", name).read_text(encoding="utf-8")
+
+
 @cache
 def data_rows(name: str) -> tuple[dict[str, str], ...]:
     """The rows of ``data/NAME.csv`` as texts by column name; lines that start with ``#`` are its sources."""
-    text = files("heatwright").joinpath("data", f"{name}.csv").read_text(encoding="utf-8")
-    lines = [line for line in text.splitlines() if line and not line.startswith("#")]
+    lines = [line for line in data_text(f"{name}.csv").splitlines() if line and not line.startswith("#")]
     return tuple(csv.DictReader(lines))
 
 

@@ -11,7 +11,9 @@ import click
 
 from heatwright import __version__
 from heatwright.cli.entry import entry
+from heatwright.cli.explain import explain
 from heatwright.cli.samples import samples
+from heatwright.cli.scales import scales
 from heatwright.cli.survey import survey
 from heatwright.cli.table import table
 from heatwright.errors import HeatwrightError
@@ -21,7 +23,7 @@ INTERRUPTED = 130
 
 SECTIONS = {
     "One molecule": ("survey", "table", "entry"),
-    "Looking things up": ("samples",),
+    "Looking things up": ("scales", "explain", "samples"),
 }
 """How ``--help`` groups the commands."""
 
@@ -55,7 +57,7 @@ def cli() -> None:
     """
 
 
-for _command in (survey, table, entry, samples):
+for _command in (survey, table, entry, scales, explain, samples):
     cli.add_command(_command)
 
 
