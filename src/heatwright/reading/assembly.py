@@ -12,7 +12,9 @@ from heatwright.elements import element
 from heatwright.findings import Finding, note, refuse
 from heatwright.molecule import FloatArray, IntArray, Kind, Level, MassKind, Molecule, Source
 from heatwright.reading.dialects.base import Facts, Identity
+from heatwright.reading.hessians import turned_to
 from heatwright.reading.parsing import Parsed
+from heatwright.structure.modes import unit_displacements
 
 ZERO_CM1 = 0.005
 """Wavenumbers below this are the translations and rotations that a program projected out and prints as 0.00."""
@@ -65,7 +67,7 @@ def assemble(
             coordinates_A=coordinates,
             wavenumbers_cm1=vibrations.wavenumbers_cm1,
             normal_modes=vibrations.modes,
-            hessian_hartree_bohr2=facts.hessian_hartree_bohr2,
+            hessian_hartree_bohr2=_hessian(facts, coordinates) if real.all() else None,
             energies_hartree=energies,
             energy_kind=facts.energy_kind if facts.energy_kind in energies else "",
             charge=charge,
@@ -76,6 +78,12 @@ def assemble(
         ),
         tuple(findings),
     )
+
+
+def _hessian(facts: Facts, coordinates: FloatArray) -> FloatArray | None:
+    """The Hessian in the frame of the coordinates."""
+    H, own = facts.hessian_hartree_bohr2, facts.hessian_coordinates_A
+    return H if H is None or own is None else turned_to(H, own, coordinates)
 
 
 def _level(level: Level | None, source: Source, atoms: IntArray) -> Level | None:
@@ -126,14 +134,8 @@ def _vibrations(parsed: Parsed, facts: Facts, n_atoms: int) -> Vibrations:
         modes = None
     keep = np.flatnonzero(~(np.abs(values) < ZERO_CM1))  # NaN stays, to be refused by name
     order = keep[np.argsort(values[keep], kind="stable")]
-    kept = None if modes is None else _normalised(modes[order])
+    kept = None if modes is None else unit_displacements(modes[order])
     return Vibrations(values[order].copy(), kept, int(values.size))
-
-
-def _normalised(modes: FloatArray) -> FloatArray:
-    norms = np.linalg.norm(modes, axis=(1, 2), keepdims=True)
-    scaled: FloatArray = np.divide(modes, norms, out=np.array(modes, dtype=float), where=norms > 0.0)
-    return scaled
 
 
 def _masses(

@@ -12,6 +12,7 @@ from heatwright.reading.assembly import assemble
 from heatwright.reading.detection import Program, detect
 from heatwright.reading.dialects import Dialect, Facts, dialect_of
 from heatwright.reading.files import StoredText, read_text
+from heatwright.reading.hessians import with_checked_hessian
 from heatwright.reading.jobs import Choice, choose
 from heatwright.reading.parsing import Mishap, Parsed, parse
 from heatwright.reading.soundness import expected_modes, soundness
@@ -56,8 +57,9 @@ def read_output(
             raise Refused([*stored.findings, *remarks, _no_molecule(dialect, choice, parsed, source)])
         molecule = molecule.but(job=choice.number, n_jobs=choice.n_jobs)
         molecule = _whole_modes(molecule, dialect, choice, parsed)
+        molecule, of_hessian = with_checked_hessian(molecule, alone=not dialect.endings)
         ends = _endings(molecule, dialect, choice, parsed, damaged=bool(refusals(remarks)))
-        findings = (*stored.findings, *choice.findings, *remarks, *ends, *soundness(molecule))
+        findings = (*stored.findings, *choice.findings, *remarks, *of_hessian, *ends, *soundness(molecule))
     return molecule.but(findings=_once(findings))
 
 

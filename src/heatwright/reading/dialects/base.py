@@ -99,6 +99,7 @@ class Facts:
     wavenumbers_cm1: FloatArray | None = None
     normal_modes: FloatArray | None = None
     hessian_hartree_bohr2: FloatArray | None = None
+    hessian_coordinates_A: FloatArray | None = None
     printed: tuple[PrintedThermo, ...] = ()
     max_gradient_hartree_bohr: float | None = None
     kind: Kind | None = None

@@ -23,6 +23,7 @@ from heatwright.reading.dialects.base import (
     or_plain,
     reconciled,
 )
+from heatwright.reading.hessians import gaussian_archive
 from heatwright.reading.levels import normalise_basis, normalise_method
 from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text, number, numbers
@@ -80,12 +81,15 @@ class Gaussian(Dialect):
         point, kind = chosen_point(_energies(job), reference=reference, first=freq)
         point, kind = or_plain(point, kind, parsed, freq)
         level = _level(job, kind)
+        hessian, places = gaussian_archive(job) or (None, None)
         return Facts(
             version=_version(job),
             energies=point,
             energy_kind=kind,
             level=level,
             masses_u=_masses(job, parsed),
+            hessian_hartree_bohr2=hessian,
+            hessian_coordinates_A=places,
             printed=(thermo,) if thermo else (),
             max_gradient_hartree_bohr=_max_gradient(job) if freq else None,
             kind=_scan_kind(job),

@@ -22,6 +22,7 @@ from heatwright.reading.dialects.base import (
     reconciled,
 )
 from heatwright.reading.dialects.nwchem_level import level_of
+from heatwright.reading.hessians import nwchem_hessian
 from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text, number, numbers
 
@@ -112,6 +113,7 @@ class NWChem(Dialect):
             level=level_of(job, kind),
             coordinates_A=coordinates,
             masses_u=masses if masses is not None else _masses_by_tag(Text(job.whole, 0, job.end), atoms),
+            hessian_hartree_bohr2=nwchem_hessian(job, masses),
             printed=_printed(job),
             wavenumbers_cm1=wavenumbers,
             normal_modes=None if wavenumbers is None else parsed.array("vibdisps"),

@@ -10,16 +10,25 @@ from typing import ClassVar, Final
 
 import numpy as np
 
-from heatwright.constants import ATMOSPHERE_PA, CALORIE_J, GAS_CONSTANT_J_MOL_K, HARTREE_CM1, HARTREE_KJ_MOL
+from heatwright.constants import (
+    ATMOSPHERE_PA,
+    BOHR_ANGSTROM,
+    CALORIE_J,
+    GAS_CONSTANT_J_MOL_K,
+    HARTREE_CM1,
+    HARTREE_KJ_MOL,
+)
 from heatwright.findings import Finding, warn
-from heatwright.molecule import FloatArray, Kind, Level, PrintedThermo
-from heatwright.reading.dialects.base import Dialect, Failure, as_integer
+from heatwright.molecule import FloatArray, IntArray, Kind, Level, PrintedThermo
+from heatwright.reading.dialects.base import Dialect, Facts, Failure, as_integer
+from heatwright.reading.dialects.checkpoint import FChk
 from heatwright.reading.dialects.gamess import GAMESS, GAMESSUK, Firefly
 from heatwright.reading.dialects.plain import Plain, last_column, wrapped_numbers
 from heatwright.reading.dialects.semiempirical import MOPAC, XTB
+from heatwright.reading.hessians import molpro_hessian
 from heatwright.reading.levels import normalise_basis, normalise_method
 from heatwright.reading.parsing import Parsed
-from heatwright.reading.text import Text, numbers
+from heatwright.reading.text import Text, number, numbers
 
 _KCAL: Final = CALORIE_J / HARTREE_KJ_MOL
 
@@ -80,6 +89,14 @@ class CFOUR(Plain):
 
     def masses(self, job: Text) -> FloatArray | None:
         return wrapped_numbers(job, "masses used (in AMU) in vibrational analysis:")
+
+    def read(self, job: Text, parsed: Parsed) -> Facts:
+        """The printed normal coordinates are mass-weighted; here they become Cartesian displacements."""
+        facts = super().read(job, parsed)
+        wavenumbers, modes, masses = parsed.array("vibfreqs"), parsed.array("vibdisps"), facts.masses_u
+        if wavenumbers is None or modes is None or masses is None or modes.shape != (wavenumbers.size, masses.size, 3):
+            return facts
+        return replace(facts, wavenumbers_cm1=wavenumbers.ravel(), normal_modes=modes / np.sqrt(masses)[None, :, None])
 
     def printed(self, job: Text) -> tuple[PrintedThermo, ...]:
         zpe = re.search(r"= +(\S+) cm-1", job.rest_of_last("Zero-point energy:"))
@@ -229,6 +246,25 @@ class Molpro(Plain):
         name = method if kind in ("SCF", "") else kind
         return Level(method=name, basis=normalise_basis(basis), functional=local, program=self.name)
 
+    def geometry(self, job: Text) -> tuple[IntArray | None, FloatArray | None]:
+        """The table of the normal modes: it may have another order than the one at the head, which symmetry sorts."""
+        spot = job.rfind("\n Atomic Coordinates\n")
+        rows: list[list[float]] = []
+        for line in islice(job.lines(spot + 1), 1, None) if spot >= 0 else ():
+            fields = line.split()
+            values = [number(token) for token in fields[2:]]
+            if len(fields) == 6 and fields[0].isdigit() and all(v is not None for v in values):
+                rows.append([v for v in values if v is not None])
+            elif rows:
+                break
+        if not rows or not np.isfinite(rows).all():
+            return None, None
+        table = np.array(rows)
+        return table[:, 0].round().astype(np.int64), table[:, 1:] * BOHR_ANGSTROM
+
+    def hessian(self, job: Text, n_atoms: int) -> FloatArray | None:
+        return molpro_hessian(job, n_atoms)
+
     def printed(self, job: Text) -> tuple[PrintedThermo, ...]:
         zpe = job.number_after("Zero point energy:")
         return (PrintedThermo(zpe_hartree=zpe),) if zpe is not None else ()
@@ -249,31 +285,6 @@ class Turbomole(Plain):
     def printed(self, job: Text) -> tuple[PrintedThermo, ...]:
         zpe = job.number_after("zero point VIBRATIONAL energy")
         return (PrintedThermo(zpe_hartree=zpe),) if zpe is not None else ()
-
-
-class FChk(Plain):
-    """Formatted checkpoint files: everything but temperature, pressure, symmetry number and an ending."""
-
-    name = "FChk"
-    mode_anchors: ClassVar = ("Vib-Modes", "\nFreq ")
-
-    def version(self, job: Text) -> str:
-        spot = job.find("Gaussian Version ")
-        lines = list(job.part(spot, spot + 200).lines(spot)) if spot >= 0 else []
-        return lines[1].strip() if len(lines) > 1 else ""
-
-    def level(self, job: Text, kind: str) -> Level | None:
-        line = next((text for index, text in enumerate(job.lines(job.start)) if index == 1), "")
-        fields = line.split()
-        if len(fields) < 3:
-            return None
-        method = normalise_method(fields[1])
-        return Level(method=method, basis=normalise_basis(fields[2]), functional="VWN1RPA" if method == "B3LYP" else "")
-
-    def remarks(self, job: Text) -> Iterable[Finding]:
-        words = "a formatted checkpoint file holds no temperature, pressure, symmetry number or closing line"
-        action = "Nothing of the program's own thermochemistry could be checked."
-        yield warn("no-normal-termination", words, action=action)
 
 
 OTHERS: Final[tuple[type[Dialect], ...]] = (

@@ -44,7 +44,9 @@ class Plain(Dialect):
             masses_u=masses,
             mass_kind=mass_kind(masses, () if known is None else [int(z) for z in np.ravel(known)]),
             wavenumbers_cm1=self.wavenumbers(job),
+            hessian_hartree_bohr2=self.hessian(job, 0 if known is None else int(np.size(known))),
             printed=self.printed(job),
+            max_gradient_hartree_bohr=self.max_gradient(job),
             kind=self.job_kind(job),
             findings=tuple(self.remarks(job)),
         )
@@ -72,6 +74,12 @@ class Plain(Dialect):
         return None
 
     def wavenumbers(self, job: Text) -> FloatArray | None:
+        return None
+
+    def hessian(self, job: Text, n_atoms: int) -> FloatArray | None:
+        return None
+
+    def max_gradient(self, job: Text) -> float | None:
         return None
 
     def printed(self, job: Text) -> tuple[PrintedThermo, ...]:

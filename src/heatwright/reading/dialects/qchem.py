@@ -20,6 +20,7 @@ from heatwright.reading.dialects.base import (
     chosen_point,
     or_plain,
 )
+from heatwright.reading.hessians import qchem_hessian
 from heatwright.reading.levels import normalise_basis, normalise_method
 from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text, numbers
@@ -78,6 +79,7 @@ class QChem(Dialect):
             energy_kind=kind,
             level=_level(job, kind),
             masses_u=_masses(job, len(_atoms(job))),
+            hessian_hartree_bohr2=qchem_hessian(job, len(_atoms(job))),
             printed=_printed(job),
         )
 
