@@ -86,6 +86,24 @@ class PrintedThermo:
     entropy_J_mol_K: float | None = None
 
 
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Stated:
+    """What a molecule given by hand says in the place of what a geometry or a table would say; empty where it does not.
+
+    name : of the species.   rotational_constants_cm1 : one for a linear molecule, three otherwise, 1/cm.
+    symmetry_number, point_group, optical_isomers : of the rigid molecule.
+    electronic_levels : (1/cm above the ground level, degeneracy) pairs; ``electronic_source`` is where they are from.
+    """
+
+    name: str = ""
+    rotational_constants_cm1: tuple[float, ...] = ()
+    symmetry_number: int | None = None
+    point_group: str = ""
+    optical_isomers: int | None = None
+    electronic_levels: tuple[tuple[float, int], ...] = ()
+    electronic_source: str = ""
+
+
 @dataclass(frozen=True, eq=False, kw_only=True)
 class Molecule:
     """One molecule from one output.
@@ -93,7 +111,7 @@ class Molecule:
     atomic_numbers : (n,) int.
     masses_u : (n,) atomic masses in u; ``mass_kind`` says whether isotopic or average; ``masses_printed`` whether the
         output gave them (else they come from the table of the most abundant isotopes).
-    coordinates_A : (n, 3) in Å, the geometry of the frequencies.
+    coordinates_A : (n, 3) in Å, the geometry of the frequencies; (0, 3) when only rotational constants are stated.
     wavenumbers_cm1 : (m,) in 1/cm, ascending, translations and rotations removed, imaginary ones negative;
         empty when the job has no frequencies.
     normal_modes : (m, n, 3) Cartesian displacements (not mass-weighted, each of norm 1), same order, or None.
@@ -102,6 +120,7 @@ class Molecule:
     max_gradient_hartree_bohr : largest component of the gradient at this geometry, or None.
     printed : the program's own thermochemistry, one item for each temperature.
     n_jobs : how many jobs the file holds; ``job`` counts from 1.
+    stated : what a molecule given by hand says of itself.
     """
 
     source: Source
@@ -124,11 +143,17 @@ class Molecule:
     job: int = 1
     n_jobs: int = 1
     findings: tuple[Finding, ...] = ()
+    stated: Stated = Stated()
 
     @property
     def n_atoms(self) -> int:
         """Number of atoms."""
         return int(self.atomic_numbers.size)
+
+    @property
+    def has_geometry(self) -> bool:
+        """Whether there are coordinates (else there are stated rotational constants)."""
+        return len(self.coordinates_A) > 0
 
     @property
     def is_atom(self) -> bool:

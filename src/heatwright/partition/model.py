@@ -17,13 +17,14 @@ from heatwright.findings import Finding, note, warn
 from heatwright.molecule import FloatArray, MassKind, Molecule
 from heatwright.partition.contribution import ConstantFactor, Contribution, LnQ, total_ln_q
 from heatwright.partition.electronic import ElectronicLevels, Levels, tabulated_levels
+from heatwright.partition.rigid import rigid_body, symmetry_choice
 from heatwright.partition.rotation import ClassicalRotor
 from heatwright.partition.scaling import published_choice, scale_findings
 from heatwright.partition.translation import Translation
 from heatwright.partition.vibration import HarmonicVibration, zero_point_energy_kJ_mol
 from heatwright.scales import ScaleChoice
-from heatwright.structure.inertia import Inertia, inertia
-from heatwright.structure.symmetry import Symmetry, symmetry, symmetry_findings
+from heatwright.structure.inertia import Inertia
+from heatwright.structure.symmetry import Symmetry
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -131,6 +132,11 @@ class ThermoModel:
         return "" if self.options.frequency_scale is None and self.options.zpe_scale is None else "given"
 
     @property
+    def point_group_text(self) -> str:
+        """The point group, or that it is not stated."""
+        return self.symmetry.point_group or "point group not stated"
+
+    @property
     def composition(self) -> dict[str, int]:
         """Atoms by element symbol, Hill order."""
         return composition(self.molecule.atomic_numbers)
@@ -203,11 +209,11 @@ def build_model(molecule: Molecule, options: ModelOptions | None = None) -> Ther
     if molecule.n_imaginary or not molecule.has_thermochemistry:
         raise ValueError(f"{molecule.source.file}: a thermodynamic model needs the real modes of a minimum, or an atom")
     masses, mass_kind = chosen_masses(molecule, options.masses)
-    moments = inertia(masses, molecule.coordinates_A)
-    found = symmetry(molecule.atomic_numbers, masses, molecule.coordinates_A, tolerance_A=options.symmetry_tolerance_A)
+    moments, found = rigid_body(molecule, masses, options.symmetry_tolerance_A)
     levels, levels_source, electronic_findings = chosen_levels(molecule, moments, options)
-    sigma = options.symmetry_number or found.symmetry_number
-    isomers = options.optical_isomers or found.optical_isomers
+    stated = molecule.stated
+    sigma = options.symmetry_number or stated.symmetry_number or found.symmetry_number
+    isomers = options.optical_isomers or stated.optical_isomers or found.optical_isomers
     return ThermoModel(
         molecule=molecule,
         options=options,
@@ -222,7 +228,7 @@ def build_model(molecule: Molecule, options: ModelOptions | None = None) -> Ther
         levels_source=levels_source,
         zpe_kJ_mol=zero_point_energy_kJ_mol(molecule.wavenumbers_cm1) * (options.zpe_scale or 1.0),
         findings=(
-            *_symmetry_choice(found, options),
+            *symmetry_choice(molecule, found, options.symmetry_number, options.optical_isomers),
             *electronic_findings,
             *scale_findings(molecule, options.frequency_scale, options.zpe_scale, choice),
         ),
@@ -280,6 +286,8 @@ def chosen_levels(
     if not isinstance(options.electronic, str):
         said = note("user-value", f"electronic levels {_levels_text(options.electronic)} were given")
         return options.electronic, "given", (said,)
+    if molecule.stated.electronic_levels and options.electronic == "table":
+        return molecule.stated.electronic_levels, molecule.stated.electronic_source or "given by hand", ()
     multiplicity, charge = molecule.multiplicity, molecule.charge
     if multiplicity is None or charge is None:
         raise ValueError(f"{molecule.source.file}: charge and multiplicity must be known before levels can be chosen")
@@ -309,23 +317,3 @@ def chosen_levels(
 
 def _levels_text(levels: Levels) -> str:
     return ",".join(f"{nu:g}:{g}" for nu, g in levels)
-
-
-def _symmetry_choice(found: Symmetry, options: ModelOptions) -> tuple[Finding, ...]:
-    said = []
-    if options.symmetry_number is not None:
-        said.append(
-            note(
-                "user-value",
-                f"symmetry number {options.symmetry_number} was given; the geometry says {found.symmetry_number} "
-                f"({found.point_group})",
-            )
-        )
-    if options.optical_isomers is not None:
-        said.append(
-            note(
-                "user-value",
-                f"{options.optical_isomers} optical isomer(s) were given; the geometry says {found.optical_isomers}",
-            )
-        )
-    return (*said, *(symmetry_findings(found) if options.symmetry_number is None else ()))

@@ -50,6 +50,8 @@ def expected_modes(molecule: Molecule) -> int:
     n = molecule.n_atoms
     if n < 2:
         return 0
+    if not molecule.has_geometry:
+        return 3 * n - (5 if len(molecule.stated.rotational_constants_cm1) == 1 else 6)
     return 3 * n - (5 if is_linear(molecule.coordinates_A) else 6)
 
 
@@ -103,6 +105,8 @@ def _nan(where: str, what: str) -> Finding:
 
 def _atoms(m: Molecule) -> list[Finding]:
     found = []
+    if not m.has_geometry and m.stated.rotational_constants_cm1:
+        return _masses(m)
     if len(m.masses_u) != m.n_atoms or m.coordinates_A.shape != (m.n_atoms, 3):
         words = f"{m.n_atoms} atoms, {len(m.masses_u)} masses and {len(m.coordinates_A)} positions"
         found.append(refuse("atoms-disagree", words, expected="the same number of each"))

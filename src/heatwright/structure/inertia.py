@@ -91,6 +91,27 @@ def inertia(
     return Inertia(centre, moments, axes, INERTIA_CM1_U_A2 / moments, _top(moments, top_tolerance))
 
 
+def stated_rotor(rotational_constants_cm1: tuple[float, ...], top_tolerance: float = TOP_TOLERANCE) -> Inertia:
+    """The rotor that has these rotational constants (1/cm): one for a linear molecule, three otherwise, none: an atom.
+
+    There is no frame: the centre of mass is the origin and the axes are those of the frame.
+    Raises ValueError for another number of constants or one that is not finite and positive.
+
+    >>> water = stated_rotor((14.5216, 27.8806, 9.2777))
+    >>> water.kind, water.rotational_constants_cm1.tolist()
+    ('asymmetric top', [27.8806, 14.5216, 9.2777])
+    """
+    constants = np.sort(np.array(rotational_constants_cm1, dtype=float))[::-1]
+    if constants.size not in (0, 1, 3) or not np.all(np.isfinite(constants) & (constants > 0.0)):
+        raise ValueError(f"expected one or three positive rotational constants, not {rotational_constants_cm1}")
+    if constants.size == 0:
+        return Inertia(np.zeros(3), np.zeros(3), np.eye(3), constants, "atom")
+    moments = INERTIA_CM1_U_A2 / constants
+    if constants.size == 1:
+        return Inertia(np.zeros(3), np.array([0.0, *moments, *moments]), np.eye(3), constants, "linear")
+    return Inertia(np.zeros(3), moments, np.eye(3), constants, _top(moments, top_tolerance))
+
+
 def _top(moments: FloatArray, tolerance: float) -> RotorKind:
     first, last = moments[:2], moments[1:]
     first_equal = bool(np.ptp(first) <= tolerance * first[1])

@@ -121,6 +121,24 @@ def symmetry(
     return _summary(find_operations(kinds, x, _DOUBT * tolerance_A), tolerance_A, linear=False)
 
 
+def stated_symmetry(point_group: str, symmetry_number: int, optical_isomers: int = 1) -> Symmetry:
+    """A symmetry that was stated, not found: no operations are known and nothing deviates.
+
+    >>> stated_symmetry("C3v", 3).ambiguous
+    False
+    """
+    none = Operations(np.empty((0, 3, 3)), np.empty((0, 0), dtype=np.int64), np.empty(0, dtype=bool), np.empty(0))
+    return Symmetry(
+        point_group=point_group,
+        symmetry_number=symmetry_number,
+        chiral=optical_isomers > 1,
+        tolerance_A=TOLERANCE_A,
+        largest_accepted_deviation_A=0.0,
+        smallest_rejected_deviation_A=None,
+        operations=none,
+    )
+
+
 def atom_kinds(atomic_numbers: IntArray, masses_u: FloatArray, distinguish_isotopes: bool = True) -> IntArray:
     """(n,) numbers that are equal for atoms of one element and, if asked for, of one isotope.
 

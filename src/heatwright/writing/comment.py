@@ -84,7 +84,7 @@ def _treatment(model: ThermoModel) -> tuple[str, ...]:
     else:
         isomers = f", {model.optical_isomers} optical isomers" if model.optical_isomers > 1 else ""
         motion = (
-            f"rigid rotor, harmonic oscillators; {model.symmetry.point_group}, "
+            f"rigid rotor, harmonic oscillators; {model.point_group_text}, "
             f"symmetry number {model.symmetry_number}{isomers}"
         )
     return (

@@ -31,7 +31,7 @@ def species_document(
         "composition": model.composition,
         "charge": molecule.charge,
         "multiplicity": molecule.multiplicity,
-        "point_group": model.symmetry.point_group,
+        "point_group": model.symmetry.point_group or None,
         "symmetry_number": model.symmetry_number,
         "optical_isomers": model.optical_isomers,
         "rotational_constants_cm-1": _numbers(model.inertia.rotational_constants_cm1),

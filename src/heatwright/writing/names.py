@@ -14,6 +14,7 @@ from heatwright.writing.formats import fits_record_name
 
 OUTPUT_ENDINGS: Final = frozenset(
     {".out", ".log", ".gz", ".bz2", ".xz", ".txt", ".fchk", ".fch", ".adfout", ".c4", ".qcout", ".output"}
+    | {".toml", ".json"}
 )
 """File endings that are not part of a species' name."""
 
@@ -21,10 +22,12 @@ OUTPUT_ENDINGS: Final = frozenset(
 def default_name(molecule: Molecule, composition: Mapping[str, int]) -> tuple[str, tuple[Finding, ...]]:
     """The name when none is given: that of the file where it can stand in a thermo record, else the formula.
 
+    A molecule given by hand carries its name itself.
+
     Files are usually called after their species, and isomers have no other distinction.
     """
-    name = PurePath(molecule.source.file).name
-    while PurePath(name).suffix.lower() in OUTPUT_ENDINGS:
+    name = molecule.stated.name or PurePath(molecule.source.file).name
+    while not molecule.stated.name and PurePath(name).suffix.lower() in OUTPUT_ENDINGS:
         name = PurePath(name).stem
     if fits_record_name(name):
         return name, ()

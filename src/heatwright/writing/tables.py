@@ -24,7 +24,7 @@ def _heading(name: str, model: ThermoModel, table: ThermoTable) -> Iterable[str]
     if not molecule.is_atom:
         n = molecule.wavenumbers_cm1.size
         isomers = f", {model.optical_isomers} optical isomers" if model.optical_isomers > 1 else ""
-        yield f"{model.symmetry.point_group}, symmetry number {model.symmetry_number}{isomers}; {constants} cm⁻¹"
+        yield f"{model.point_group_text}, symmetry number {model.symmetry_number}{isomers}; {constants} cm⁻¹"
         yield (
             f"{n} mode{'s' if n != 1 else ''}, scale factor {model.frequency_scale:g}; zero-point energy "
             f"{model.zpe_kJ_mol:.3f} kJ/mol, scale factor {model.zpe_scale:g}"
