@@ -75,16 +75,29 @@ def atomic_number(sym: str) -> int:
     return _numbers()[sym.capitalize()]
 
 
-def composition(numbers: Iterable[int]) -> dict[str, int]:
+def composition(numbers: Iterable[int], masses_u: Iterable[float] | None = None) -> dict[str, int]:
     """Atoms by element symbol in Hill order: carbon, hydrogen, then by alphabet (all by alphabet without carbon).
+
+    With the masses (u), deuterium is counted by itself as ``D``, right after hydrogen; every other isotope counts as
+    its element.
 
     >>> composition([8, 1, 6, 1, 1, 1])
     {'C': 1, 'H': 4, 'O': 1}
+    >>> composition([8, 1, 1], [15.9949, 2.0141, 1.0078])
+    {'H': 1, 'D': 1, 'O': 1}
     """
-    counts = Counter(symbol(z) for z in numbers)
-    first = [s for s in ("C", "H") if s in counts] if "C" in counts else []
-    order = first + sorted(s for s in counts if s not in first)
+    if masses_u is None:
+        counts = Counter(symbol(z) for z in numbers)
+    else:
+        counts = Counter("D" if is_deuterium(z, m) else symbol(z) for z, m in zip(numbers, masses_u, strict=True))
+    rank = {"C": (0, ""), "H": (1, ""), "D": (2, "")} if "C" in counts else {"D": (9, "HD")}
+    order = sorted(counts, key=lambda s: rank.get(s, (9, s)))
     return {s: counts[s] for s in order}
+
+
+def is_deuterium(number: int, mass_u: float) -> bool:
+    """Whether an atom of this number and mass (u) is deuterium."""
+    return number == 1 and abs(mass_u - 2.0141) < 0.1
 
 
 def formula(atoms: Mapping[str, int], charge: int = 0) -> str:

@@ -63,6 +63,9 @@ CODES: Final[dict[str, str]] = {
     "unscaled": "Wavenumbers and zero-point energy were used as computed, without a scale factor.",
     "name-from-formula": "The file's name cannot serve as a species name, so the formula was taken.",
     "source-not-stated": "An enthalpy of formation was given without its source.",
+    "isotopes": "Isotopes were exchanged; the wavenumbers were computed anew from the force constants.",
+    "no-such-atom": "An isotope was asked for at an atom that is not there or is another element.",
+    "no-force-constants": "The output cannot give the force constants that another isotope needs.",
     # --- formation ------------------------------------------------------------------------------------------------
     "no-formation": "An entry needs an enthalpy of formation and there is no way to it.",
     "level-differs": "Energies that have to be combined were not computed at the same level of theory.",

@@ -14,6 +14,7 @@ if TYPE_CHECKING:
     from heatwright.entry import FitOptions
     from heatwright.molecule import Molecule
     from heatwright.partition.model import ModelOptions, ThermoModel
+    from heatwright.structure.isotopes import Isotope
 
 F = TypeVar("F", bound=Callable[..., Any])
 
@@ -61,6 +62,13 @@ _MODEL_OPTIONS = (
         help='Electronic levels: the built-in table, the spin alone, or such as "0:2,139.21:2" (1/cm : degeneracy).',
     ),
     click.option("--masses", type=click.Choice(["isotopic", "average"]), help="Instead of the output's masses."),
+    click.option(
+        "--isotope",
+        "isotopes",
+        multiple=True,
+        metavar="ATOM=ISOTOPE",
+        help="Another isotope: 2=2H (second atom), H=D (every H), 1=13C; wavenumbers anew. Can be repeated.",
+    ),
     click.option("--charge", type=int, metavar="Q", help="Instead of the output's."),
     click.option("--multiplicity", type=click.IntRange(min=1), metavar="M", help="Instead of the output's."),
     click.option("--job", type=click.IntRange(min=1), metavar="N", help="One of several jobs in a file."),
@@ -76,16 +84,20 @@ def model_options(command: F) -> F:
 
 @dataclass(frozen=True, slots=True)
 class Reading:
-    """How an output is to be read: which job, and values that replace its own."""
+    """How an output is to be read: which job, values that replace its own, and isotopes."""
 
     job: int | None
     charge: int | None
     multiplicity: int | None
+    isotopes: tuple[Isotope, ...] = ()
 
 
 def taken_reading(options: dict[str, Any]) -> Reading:
     """The reading options out of a command's keyword arguments."""
-    return Reading(options.pop("job"), options.pop("charge"), options.pop("multiplicity"))
+    from heatwright.structure.isotopes import parse_isotope
+
+    isotopes = tuple(parse_isotope(text) for text in options.pop("isotopes"))
+    return Reading(options.pop("job"), options.pop("charge"), options.pop("multiplicity"), isotopes)
 
 
 def taken_model_options(options: dict[str, Any]) -> ModelOptions:
@@ -116,6 +128,7 @@ def usable_molecule(path: str, reading: Reading) -> Molecule:
     from heatwright.findings import Refused, refusals
     from heatwright.reading.outputs import read_output
     from heatwright.reading.soundness import no_thermochemistry
+    from heatwright.structure.isotopes import with_isotopes
 
     molecule = read_output(path, job=reading.job, charge=reading.charge, multiplicity=reading.multiplicity)
     if refusals(molecule.findings):
@@ -123,7 +136,7 @@ def usable_molecule(path: str, reading: Reading) -> Molecule:
     missing = no_thermochemistry(molecule)
     if missing:
         raise Refused((*missing, *molecule.findings))
-    return molecule
+    return with_isotopes(molecule, reading.isotopes)
 
 
 def usable_model(path: str, reading: Reading, options: ModelOptions) -> ThermoModel:

@@ -91,7 +91,7 @@ def _row(path: str, molecule: Molecule) -> dict[str, Any]:
         "version": molecule.source.version,
         "kind": molecule.kind,
         "usable": not refusals(molecule.findings),
-        "formula": formula(composition(molecule.atomic_numbers), molecule.charge or 0),
+        "formula": formula(composition(molecule.atomic_numbers, molecule.masses_u), molecule.charge or 0),
         "charge": molecule.charge,
         "multiplicity": molecule.multiplicity,
         "level": molecule.level.label if molecule.level else None,

@@ -73,7 +73,7 @@ def _obstacles(model: ThermoModel, atoms: Atoms) -> Iterator[Finding]:
             "the output has no total energy to set against the atoms",
             action="Give an enthalpy of formation by --dHf298.",
         )
-    missing = [element for element in model.composition if not atoms.get(element)]
+    missing = [element for element in model.composition if not atoms.get(element) and atom_reference(element)]
     if missing:
         yield refuse(
             "atom-missing",
@@ -85,7 +85,7 @@ def _obstacles(model: ThermoModel, atoms: Atoms) -> Iterator[Finding]:
         if atom_reference(element) is None:
             yield refuse(
                 "no-reference",
-                f"element {element} has no reference enthalpy",
+                f"{'deuterium' if element == 'D' else f'element {element}'} has no reference enthalpy",
                 expected=f"one of {', '.join(elements_with_reference())}",
                 action="Give an enthalpy of formation by --dHf298.",
             )

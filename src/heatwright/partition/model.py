@@ -138,8 +138,8 @@ class ThermoModel:
 
     @property
     def composition(self) -> dict[str, int]:
-        """Atoms by element symbol, Hill order."""
-        return composition(self.molecule.atomic_numbers)
+        """Atoms by element symbol, Hill order; deuterium as ``D``."""
+        return composition(self.molecule.atomic_numbers, self.masses_u)
 
     def ln_q(self, T: ArrayLike) -> LnQ:
         """ln q of the whole molecule and its derivatives at temperatures in K."""

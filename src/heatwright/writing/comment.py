@@ -44,7 +44,9 @@ def comment_lines(entry: Entry) -> tuple[str, ...]:
     return tuple(line for text in paragraphs for line in _wrapped(text))
 
 
-_RECORDED_NOTES: Final = frozenset({"user-value", "published-scale", "given-by-hand"})
+_RECORDED_NOTES: Final = frozenset(
+    {"user-value", "published-scale", "given-by-hand", "isotopes", "energy-from-file", "anharmonic"}
+)
 
 
 def _is_recorded(finding: Finding) -> bool:

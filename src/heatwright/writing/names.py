@@ -29,12 +29,14 @@ def default_name(molecule: Molecule, composition: Mapping[str, int]) -> tuple[st
     name = molecule.stated.name or PurePath(molecule.source.file).name
     while not molecule.stated.name and PurePath(name).suffix.lower() in OUTPUT_ENDINGS:
         name = PurePath(name).stem
-    if fits_record_name(name):
+    exchanged = any(f.code == "isotopes" for f in molecule.findings)
+    if fits_record_name(name) and not exchanged:
         return name, ()
     by_formula = formula(composition, molecule.charge or 0)
+    why = "is that of other isotopes" if exchanged else "does not fit the name field of a thermo record"
     said = note(
         "name-from-formula",
-        f"the file name {name!r} does not fit the name field of a thermo record, so the species is called {by_formula}",
+        f"the file name {name!r} {why}, so the species is called {by_formula}",
         action="Give a name by --name.",
     )
     return by_formula, (said,)
