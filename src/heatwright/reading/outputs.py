@@ -12,6 +12,7 @@ from heatwright.reading.assembly import assemble
 from heatwright.reading.detection import Program, detect
 from heatwright.reading.dialects import Dialect, Facts, dialect_of
 from heatwright.reading.files import StoredText, read_text
+from heatwright.reading.given import given_molecule
 from heatwright.reading.hessians import with_checked_hessian
 from heatwright.reading.jobs import Choice, choose
 from heatwright.reading.parsing import Mishap, Parsed, parse
@@ -26,7 +27,7 @@ def read_output(
     charge: int | None = None,
     multiplicity: int | None = None,
 ) -> Molecule:
-    """The molecule in the output file of a quantum-chemistry program.
+    """The molecule in the output of a quantum-chemistry program, in a molecule file or in a QCSchema result.
 
     path : the file, plain or compressed with gzip, bzip2 or xz.
     job : which job of the file, counted from 1; needed when the file holds more than one molecule.
@@ -39,6 +40,9 @@ def read_output(
     ``several-molecules``, ``several-jobs`` (no such job), ``truncated``, ``job-failed``, ``no-geometry``.
     """
     stored = read_text(path)
+    given = given_molecule(path, stored, job, charge, multiplicity)
+    if given is not None:
+        return given.but(findings=_once(given.findings))
     program = _program(stored)
     dialect = dialect_of(program.name)
     text = dialect.repaired(_whole_lines(stored.text, dialect))
