@@ -9,9 +9,11 @@ import click
 from heatwright.cli.options import (
     model_options,
     outputs_argument,
+    taken_energies,
     taken_model_options,
     taken_reading,
     temperatures,
+    units_option,
     usable_model,
     words_options,
 )
@@ -33,6 +35,7 @@ if TYPE_CHECKING:
 )
 @click.option("--format", "format_name", type=click.Choice(["text", "csv", "json"]), default="text", show_default=True)
 @click.option("--json", "as_json", is_flag=True, help="The same as --format json.")
+@units_option
 @model_options
 @words_options
 @click.pass_context
@@ -43,6 +46,7 @@ def table(
     temperatures_text: str | None,
     format_name: str,
     as_json: bool,
+    units: str,
     quiet: bool,
     verbose: bool,
     **options: Any,
@@ -55,37 +59,41 @@ def table(
     Example:
       heatwright table CH3OH.out --temperatures 298.15,500,1000 --frequency-scale 0.9614
     """
+    from dataclasses import replace
+
     from heatwright.entry import TABLE_TEMPERATURES_K
     from heatwright.findings import Refused
     from heatwright.partition.model import checked_temperatures
     from heatwright.writing.names import default_name
 
     reporter = Reporter(quiet=quiet, verbose=verbose)
+    energies = taken_energies(options, len(outputs))
     reading, chosen = taken_reading(options), taken_model_options(options)
     grid = checked_temperatures(temperatures(temperatures_text) if temperatures_text else list(TABLE_TEMPERATURES_K))
     done: list[Tabulated] = []
-    for path in outputs:
+    for path, energy in zip(outputs, energies, strict=True):
         try:
-            model = usable_model(path, reading, chosen)
+            model = usable_model(path, replace(reading, energy=energy), chosen)
         except Refused as error:
             reporter.fail(path, error.findings)
             continue
         name, _ = default_name(model.molecule, model.composition)
         done.append((name, model, model.tabulate(grid)))
         reporter.findings(path, (*model.molecule.findings, *model.findings))
-    click.echo(_text(done, "json" if as_json else format_name, reporter), nl=False)
+    click.echo(_text(done, "json" if as_json else format_name, units, reporter), nl=False)
     reporter.tally(len(done), "tabulated")
     ctx.exit(reporter.exit_code)
 
 
-def _text(done: list[Tabulated], format_name: str, reporter: Reporter) -> str:
+def _text(done: list[Tabulated], format_name: str, units: str, reporter: Reporter) -> str:
     """The tables in one of the formats; empty when there is nothing to show."""
     from heatwright.writing.document import failure_document, species_document, whole_document
     from heatwright.writing.render import render_format, table_context
     from heatwright.writing.tables import text_table
+    from heatwright.writing.units import UNITS
 
     if format_name == "text":
-        return "\n".join(text_table(name, model, values) for name, model, values in done)
+        return "\n".join(text_table(name, model, values, UNITS[units]) for name, model, values in done)
     documents = [
         species_document(name, model, values, (*model.molecule.findings, *model.findings))
         for name, model, values in done
