@@ -14,6 +14,7 @@ from heatwright.cli.options import (
     outputs_argument,
     taken_model_options,
     taken_reading,
+    units_option,
     usable_model,
     words_options,
 )
@@ -85,6 +86,7 @@ class Request:
     metavar="T|auto",
     help="Where its two halves meet, K; auto looks for the best.",
 )
+@units_option
 @model_options
 @words_options
 @click.pass_context
@@ -109,7 +111,7 @@ def entry(ctx: click.Context, /, outputs: tuple[str, ...], quiet: bool, verbose:
     request = _request(options, reporter)
     entries = _without_twins(_made(jobs, request, style, reporter), reporter)
     for path, made in entries:
-        _describe(path, made, reporter)
+        _describe(path, made, options["units"], reporter)
     if entries or style.is_json:
         _deliver(style.render([made for _, made in entries], reporter), options["target"], len(entries), reporter)
     reporter.tally(len(entries), "made")
@@ -314,17 +316,19 @@ def _formation(model: ThermoModel, given: tuple[GivenEnthalpy, str | None] | Non
     return formation_by_atomization(model, request.atoms, trust_levels=request.trust_levels)
 
 
-def _describe(path: str, made: Entry, reporter: Reporter) -> None:
+def _describe(path: str, made: Entry, units_name: str, reporter: Reporter) -> None:
     """The words about one finished entry."""
     from heatwright.findings import refusals
     from heatwright.writing.comment import formation_text, residual_text
+    from heatwright.writing.units import UNITS
 
-    p = made.polynomial
-    reporter.say(f"{made.name} from {path}: {formation_text(made.formation)}")
+    p, units = made.polynomial, UNITS[units_name]
+    reporter.say(f"{made.name} from {path}: {formation_text(made.formation, units)}")
     reporter.say(f"  fitted {p.t_low_K:g}-{p.t_common_K:g}-{p.t_high_K:g} K; {residual_text(made)}")
     if len(made.formation.ledger) > 1:
         for line in made.formation.ledger:
             reporter.detail(
-                f"  {line.value_kJ_mol:14.3f} kJ/mol  {line.what}{f' ({line.source})' if line.source else ''}"
+                f"  {line.value_kJ_mol * units.factor:14.3f} {units.enthalpy}  {line.what}"
+                f"{f' ({line.source})' if line.source else ''}"
             )
     reporter.findings(path, [f for f in made.findings if f not in refusals(made.findings)])

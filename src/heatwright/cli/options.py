@@ -29,6 +29,15 @@ def words_options(command: F) -> F:
     return click.option("-q", "--quiet", is_flag=True, help="Say only what failed.")(command)
 
 
+units_option = click.option(
+    "--units",
+    type=click.Choice(["kJ", "kcal"]),
+    default="kJ",
+    show_default=True,
+    help="For reading on the terminal only: kJ and J, or kcal and cal. Files, JSON and CSV are always kJ and J.",
+)
+
+
 _MODEL_OPTIONS = (
     click.option(
         "--pressure",

@@ -11,6 +11,7 @@ from heatwright.entry import Entry
 from heatwright.findings import SEVERITY_WORD, Finding
 from heatwright.formation.formation import Formation
 from heatwright.partition.model import ThermoModel
+from heatwright.writing.units import UNITS, Units
 
 WIDTH: Final = 76
 """Longest comment text, so that a line with its mark stays inside 80 columns."""
@@ -111,13 +112,13 @@ def scale_text(model: ThermoModel) -> str:
     return f"{words}, {source}" if source else f"{words}: unscaled"
 
 
-def formation_text(formation: Formation) -> str:
+def formation_text(formation: Formation, units: Units = UNITS["kJ"]) -> str:
     """The formation in words: value, uncertainty, route and source."""
-    spread = "" if formation.u95_kJ_mol is None else f" +/- {formation.u95_kJ_mol:.3g}"
-    at_zero = "" if formation.dHf0_kJ_mol is None else f", dHf(0 K) = {formation.dHf0_kJ_mol:.3f}"
-    return (
-        f"dHf(298.15 K) = {formation.dHf298_kJ_mol:.3f}{spread}{at_zero} kJ/mol, {formation.method}: {formation.source}"
-    )
+    f, unit = units.factor, units.enthalpy
+    spread = "" if formation.u95_kJ_mol is None else f" +/- {formation.u95_kJ_mol * f:.3g}"
+    at_zero = "" if formation.dHf0_kJ_mol is None else f", dHf(0 K) = {formation.dHf0_kJ_mol * f:.3f}"
+    value = f"dHf(298.15 K) = {formation.dHf298_kJ_mol * f:.3f}{spread}{at_zero} {unit}"
+    return f"{value}, {formation.method}: {formation.source}"
 
 
 def _thermochemistry(entry: Entry) -> tuple[str, ...]:

@@ -7,14 +7,16 @@ from collections.abc import Iterable
 from heatwright.elements import formula
 from heatwright.partition.model import ThermoModel, ThermoTable
 from heatwright.writing.comment import levels_text, pressure_text
+from heatwright.writing.units import UNITS, Units
 
 
-def text_table(name: str, model: ThermoModel, table: ThermoTable) -> str:
+def text_table(name: str, model: ThermoModel, table: ThermoTable, units: Units = UNITS["kJ"]) -> str:
     """Two blocks of columns under a heading: the totals, and the share of each contribution in Cp° and S°."""
-    return "\n".join((*_heading(name, model, table), "", *_totals(table), "", *_shares(table))) + "\n"
+    blocks = (*_heading(name, model, table, units), "", *_totals(table, units), "", *_shares(table, units))
+    return "\n".join(blocks) + "\n"
 
 
-def _heading(name: str, model: ThermoModel, table: ThermoTable) -> Iterable[str]:
+def _heading(name: str, model: ThermoModel, table: ThermoTable, units: Units) -> Iterable[str]:
     molecule = model.molecule
     level = molecule.level.label if molecule.level else "level of theory not printed"
     constants = ", ".join(f"{b:.5g}" for b in model.inertia.rotational_constants_cm1)
@@ -27,27 +29,33 @@ def _heading(name: str, model: ThermoModel, table: ThermoTable) -> Iterable[str]
         yield f"{model.point_group_text}, symmetry number {model.symmetry_number}{isomers}; {constants} cm⁻¹"
         yield (
             f"{n} mode{'s' if n != 1 else ''}, scale factor {model.frequency_scale:g}; zero-point energy "
-            f"{model.zpe_kJ_mol:.3f} kJ/mol, scale factor {model.zpe_scale:g}"
+            f"{model.zpe_kJ_mol * units.factor:.3f} {units.enthalpy}, scale factor {model.zpe_scale:g}"
         )
     yield levels_text(model).replace("1/cm x", "cm⁻¹ ×")
-    yield f"H°(298.15 K) − H°(0 K) = {table.h298_minus_h0_kJ_mol:.3f} kJ/mol"
+    yield f"H°(298.15 K) − H°(0 K) = {table.h298_minus_h0_kJ_mol * units.factor:.3f} {units.enthalpy}"
 
 
-def _totals(table: ThermoTable) -> Iterable[str]:
+def _totals(table: ThermoTable, units: Units) -> Iterable[str]:
     yield f"{'T':>9} {'Cp°':>10} {'H°−H°(298)':>12} {'S°':>10} {'−[G°−H°(298)]/T':>17}"
-    yield f"{'K':>9} {'J/mol/K':>10} {'kJ/mol':>12} {'J/mol/K':>10} {'J/mol/K':>17}"
-    columns = (table.T_K, table.cp_J_mol_K, table.h_minus_h298_kJ_mol, table.s_J_mol_K)
-    for T, cp, h, s, g in zip(*columns, table.minus_g_minus_h298_over_T_J_mol_K, strict=True):
+    e, h_unit = units.entropy, units.enthalpy
+    yield f"{'K':>9} {e:>10} {h_unit:>12} {e:>10} {e:>17}"
+    gibbs = table.minus_g_minus_h298_over_T_J_mol_K
+    columns = [c * units.factor for c in (table.cp_J_mol_K, table.h_minus_h298_kJ_mol, table.s_J_mol_K, gibbs)]
+    for T, cp, h, s, g in zip(table.T_K, *columns, strict=True):
         yield f"{T:9.2f} {cp:10.3f} {h:12.3f} {s:10.3f} {g:17.3f}"
 
 
-def _shares(table: ThermoTable) -> Iterable[str]:
+def _shares(table: ThermoTable, units: Units) -> Iterable[str]:
     names = list(table.shares)
     widths = [max(len(name), 9) for name in names]
     labels = " ".join(f"{name:>{width}}" for name, width in zip(names, widths, strict=True))
-    yield f"{'T':>9}   {'share of Cp°, J/mol/K':<{len(labels)}}   share of S°, J/mol/K"
+    yield f"{'T':>9}   {f'share of Cp°, {units.entropy}':<{len(labels)}}   share of S°, {units.entropy}"
     yield f"{'K':>9}   {labels}   {labels}"
     for i, T in enumerate(table.T_K):
-        cp = " ".join(f"{table.shares[n].cp_J_mol_K[i]:{w}.3f}" for n, w in zip(names, widths, strict=True))
-        s = " ".join(f"{table.shares[n].s_J_mol_K[i]:{w}.3f}" for n, w in zip(names, widths, strict=True))
+        cp = " ".join(
+            f"{table.shares[n].cp_J_mol_K[i] * units.factor:{w}.3f}" for n, w in zip(names, widths, strict=True)
+        )
+        s = " ".join(
+            f"{table.shares[n].s_J_mol_K[i] * units.factor:{w}.3f}" for n, w in zip(names, widths, strict=True)
+        )
         yield f"{T:9.2f}   {cp}   {s}"
