@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import gzip
+import re
 from pathlib import Path
 
 import janaf
@@ -273,3 +274,11 @@ def test_lines_of_tables_written_in_other_ways() -> None:
 
 def test_every_table_takes_a_source() -> None:
     assert [name for name, keys in KEYS.items() if "source" not in keys] == []
+
+
+def test_the_file_in_the_readme(tmp_path: Path) -> None:
+    readme = (Path(__file__).resolve().parents[2] / "README.md").read_text(encoding="utf-8")
+    (block,) = re.findall(r"^```toml\n(.*?)^```", readme, re.MULTILINE | re.DOTALL)
+    molecule = read(tmp_path, block)
+    assert refusals(molecule.findings) == ()
+    assert float(build_model(molecule).s_R(298.15)) * R == pytest.approx(213.79, abs=0.02)  # NIST-JANAF 213.795
