@@ -12,7 +12,11 @@ from heatwright.reading.text import Text
 
 @dataclass(frozen=True, slots=True)
 class Choice:
-    """The job to read, the pieces of text it needs, its number and what has to be said about the choice."""
+    """The job to read, the pieces of text it needs, its number and what has to be said about the choice.
+
+    related : the job, and the last optimisation of the same molecule before it, whose constraints are the job's too.
+    other_analyses : numbers of other jobs that hold modes of the same formula, when none was asked for.
+    """
 
     job: Text
     identity: Identity
@@ -20,6 +24,8 @@ class Choice:
     number: int
     n_jobs: int
     findings: tuple[Finding, ...]
+    related: tuple[Text, ...] = ()
+    other_analyses: tuple[int, ...] = ()
 
 
 def choose(dialect: Dialect, whole: Text, wanted: int | None) -> Choice:
@@ -46,6 +52,8 @@ def choose(dialect: Dialect, whole: Text, wanted: int | None) -> Choice:
         index + 1,
         len(jobs),
         _remarks(identities, group, index, wanted),
+        _related(jobs, identities, group, index),
+        tuple(i + 1 for i in group if i != index and identities[i].has_modes) if wanted is None else (),
     )
 
 
@@ -95,6 +103,11 @@ def _pieces(
     if 0 not in before:
         pieces.insert(0, dialect.prologue(jobs[0], 0 in group))
     return (*pieces, jobs[index])
+
+
+def _related(jobs: list[Text], identities: list[Identity], group: list[int], index: int) -> tuple[Text, ...]:
+    optimised = [i for i in group if i < index and identities[i].optimises]
+    return (jobs[index], *(jobs[i] for i in optimised[-1:]))
 
 
 def _name(identity: Identity) -> str:

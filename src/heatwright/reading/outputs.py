@@ -3,12 +3,16 @@
 from __future__ import annotations
 
 import os
+from collections.abc import Collection
+from dataclasses import replace
 
 import numpy as np
 
 from heatwright.findings import Finding, Refused, refusals, refuse, warn
 from heatwright.molecule import Molecule, Source
+from heatwright.reading.acceptance import check_accepted, with_accepted
 from heatwright.reading.assembly import assemble
+from heatwright.reading.conditions import conditions, stated_scale
 from heatwright.reading.detection import Program, detect
 from heatwright.reading.dialects import Dialect, Facts, dialect_of
 from heatwright.reading.files import StoredText, read_text
@@ -16,7 +20,9 @@ from heatwright.reading.given import given_molecule
 from heatwright.reading.hessians import with_checked_hessian
 from heatwright.reading.jobs import Choice, choose
 from heatwright.reading.parsing import Mishap, Parsed, parse
+from heatwright.reading.scaling import unscaled
 from heatwright.reading.soundness import expected_modes, soundness
+from heatwright.reading.structures import bonded_differently, geometry_differs, isomers
 from heatwright.reading.text import Text
 
 
@@ -26,44 +32,66 @@ def read_output(
     job: int | None = None,
     charge: int | None = None,
     multiplicity: int | None = None,
+    accept: Collection[str] = (),
+    accept_imaginary_cm1: float = 0.0,
 ) -> Molecule:
     """The molecule in the output of a quantum-chemistry program, in a molecule file or in a QCSchema result.
 
-    path : the file, plain or compressed with gzip, bzip2 or xz.
+    path : the file, plain or compressed with gzip, bzip2, xz or zip.
     job : which job of the file, counted from 1; needed when the file holds more than one molecule.
     charge, multiplicity : take the place of what the output says (noted among the findings).
+    accept : words of :data:`heatwright.reading.acceptance.ACCEPTABLE`; what they name is a warning and no refusal.
+    accept_imaginary_cm1 : imaginary modes up to this (at most 50 1/cm) are taken as real ones of the same magnitude.
 
     Returns the molecule with every finding about it, those of severity ``refuse`` included: a transition state or a
     truncated file is returned, and it is for the caller to use it or not (:func:`heatwright.findings.refusals`).
 
     Raises Refused when no molecule can be made at all: ``file-missing``, ``file-empty``, ``not-an-output``,
-    ``several-molecules``, ``several-jobs`` (no such job), ``truncated``, ``job-failed``, ``no-geometry``.
+    ``file-too-large``, ``several-files``, ``several-molecules``, ``several-jobs`` (no such job), ``truncated``,
+    ``job-failed``, ``no-geometry``; UsageError for what cannot be accepted.
     """
+    check_accepted(accept, accept_imaginary_cm1)
     stored = read_text(path)
     given = given_molecule(path, stored, job, charge, multiplicity)
     if given is not None:
-        return given.but(findings=_once(given.findings))
+        return with_accepted(given.but(findings=_once(given.findings)), accept, accept_imaginary_cm1)
     program = _program(stored)
     dialect = dialect_of(program.name)
-    text = dialect.repaired(_whole_lines(stored.text, dialect))
-    choice = choose(dialect, Text.of(text), job)
-    parsed = parse(program.parser, "".join(str(piece) for piece in choice.pieces))
+    text = Text.of(dialect.repaired(_whole_lines(stored.text, dialect)))
+    choice = choose(dialect, text, job)
+    name = os.fspath(path) if not isinstance(path, bytes) else os.fsdecode(path)
+    source = Source(name, stored.sha256, program.name, "")
+    molecule = _molecule(source, program, dialect, choice, (charge, multiplicity), stored.findings)
+    for number in choice.other_analyses:
+        other = _molecule(source, program, dialect, choose(dialect, text, number), (charge, multiplicity), ())
+        if bonded_differently(molecule, other):
+            molecule = molecule.but(findings=(isomers(number, choice.number), *molecule.findings))
+    return with_accepted(molecule, accept, accept_imaginary_cm1)
+
+
+def _molecule(
+    source: Source,
+    program: Program,
+    dialect: Dialect,
+    choice: Choice,
+    user: tuple[int | None, int | None],
+    before: tuple[Finding, ...],
+) -> Molecule:
+    """The molecule of one job with its findings, those *before* first; raises Refused when there is none."""
+    parsed = parse(program.parser, choice.pieces)
     facts = _facts(dialect, choice, parsed)
-    source = Source(
-        os.fspath(path) if not isinstance(path, bytes) else os.fsdecode(path),
-        stored.sha256,
-        program.name,
-        facts.version,
-    )
+    source = replace(source, version=facts.version)
     with np.errstate(all="ignore"):  # what is not finite is refused by name, not warned about
-        molecule, remarks = assemble(source, choice.identity, parsed, facts, (charge, multiplicity))
+        molecule, remarks = assemble(source, choice.identity, parsed, facts, user)
         if molecule is None:
-            raise Refused([*stored.findings, *remarks, _no_molecule(dialect, choice, parsed, source)])
+            raise Refused([*before, *remarks, _no_molecule(dialect, choice, parsed, source)])
         molecule = molecule.but(job=choice.number, n_jobs=choice.n_jobs)
         molecule = _whole_modes(molecule, dialect, choice, parsed)
+        molecule, of_scale = unscaled(molecule, stated_scale(program.name, choice.job))
         molecule, of_hessian = with_checked_hessian(molecule, alone=not dialect.endings)
         ends = _endings(molecule, dialect, choice, parsed, damaged=bool(refusals(remarks)))
-        findings = (*stored.findings, *choice.findings, *remarks, *of_hessian, *ends, *soundness(molecule))
+        noticed = (*conditions(molecule, choice), *geometry_differs(molecule, parsed), *soundness(molecule))
+        findings = (*before, *choice.findings, *remarks, *of_scale, *of_hessian, *ends, *noticed)
     return molecule.but(findings=_once(findings))
 
 
@@ -72,7 +100,7 @@ def _whole_lines(text: str, dialect: Dialect) -> str:
     end = text.rfind("\n") + 1
     if any(anchor.strip() in text[end:] for anchor in dialect.endings):
         return text
-    return f"{text[:end]}…"  # something must stand there, so that the number of the last line stays true
+    return f"{text[:end]}~" if end < len(text) else text  # so that the number of the last line stays true
 
 
 def _program(stored: StoredText) -> Program:

@@ -9,7 +9,9 @@ from __future__ import annotations
 import importlib
 import io
 import logging
+import re
 import warnings
+from collections.abc import Iterator, Sequence
 from contextlib import redirect_stderr, redirect_stdout
 from dataclasses import dataclass, field
 from typing import Any
@@ -17,6 +19,7 @@ from typing import Any
 import numpy as np
 
 from heatwright.reading.deferral import without_unused_packages
+from heatwright.reading.text import Text
 
 _WANTED = frozenset(
     [
@@ -50,6 +53,8 @@ _WANTED = frozenset(
 )
 """Attributes used here; the others (orbitals, populations) are dropped before cclib turns them into arrays."""
 _MOST_MISHAPS = 10
+_BLOCK = 1 << 18
+_LINE = re.compile(r"[^\n]*\n|[^\n]+")
 
 
 @dataclass(frozen=True, slots=True)
@@ -87,29 +92,70 @@ class Parsed:
             return None
 
 
-def parse(parser: str, text: str) -> Parsed:
-    """Run cclib's parser class of this name over a text; never raises, never prints."""
+def parse(parser: str, pieces: Sequence[Text]) -> Parsed:
+    """Run cclib's parser class of this name over pieces of text, one after the other; never raises, never prints."""
     sink = io.StringIO()
     with warnings.catch_warnings(), redirect_stdout(sink), redirect_stderr(sink), np.errstate(all="ignore"):
         warnings.simplefilter("ignore")
         log: list[Mishap] = []
         ended: list[bool] = []
-        values = _values(parser, text, log, ended)
+        values = _values(parser, pieces, log, ended)
     return Parsed(values, tuple(log), bool(ended))
 
 
-def _values(parser: str, text: str, log: list[Mishap], ended: list[bool]) -> dict[str, Any]:
+def _values(parser: str, pieces: Sequence[Text], log: list[Mishap], ended: list[bool]) -> dict[str, Any]:
     guarded = _guarded(_parser_class(parser), log, ended)
     run: Any = None
     try:
-        run = guarded(io.StringIO(text), loglevel=logging.CRITICAL + 1, logstream=io.StringIO())
+        run = guarded(_lines(pieces), loglevel=logging.CRITICAL + 1, logstream=io.StringIO())
         return {name: value for name, value in vars(run.parse()).items() if name in _WANTED}
     except Exception as error:
-        _note(log, len(text), error)
+        _note(log, sum(piece.end - piece.start for piece in pieces), error)
         return {}
     finally:
         if run is not None:
             run.logger.handlers.clear()
+
+
+def _lines(pieces: Sequence[Text]) -> Any:
+    """The pieces as the kind of input cclib reads from, without a copy of the text."""
+    from cclib.parser.logfilewrapper import FileWrapper
+
+    class Lines(FileWrapper):
+        def __init__(self) -> None:
+            super().__init__()
+            self.filenames = ["output"]
+            self.size = sum(piece.end - piece.start for piece in pieces)
+            self.rest = _line_by_line(pieces)
+
+        def __next__(self) -> str:
+            line = next(self.rest)
+            self.last_lines.append(line)
+            self.pos += len(line)
+            return line
+
+        def sort(self, order: list[str]) -> None:
+            """There is one source."""
+
+        def reset(self) -> None:
+            self.rest, self.pos = _line_by_line(pieces), 0
+
+        def finish(self) -> None:
+            self.rest, self.pos = iter(()), self.size
+
+    return Lines()
+
+
+def _line_by_line(pieces: Sequence[Text]) -> Iterator[str]:
+    """Each line with its end; a block of lines is split at once, which is cheaper than line by line."""
+    for piece in pieces:
+        first = piece.start
+        while first < piece.end:
+            last = piece.end if piece.end - first <= _BLOCK else piece.whole.rfind("\n", first, first + _BLOCK) + 1
+            if last <= first:  # one line longer than a block
+                last = piece.whole.find("\n", first, piece.end) + 1 or piece.end
+            yield from _LINE.findall(piece.whole, first, last)
+            first = last
 
 
 def _parser_class(name: str) -> Any:

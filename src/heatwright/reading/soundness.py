@@ -12,12 +12,17 @@ from heatwright.constants import HARTREE_CM1
 from heatwright.elements import element, symbol
 from heatwright.findings import Finding, refuse, warn
 from heatwright.molecule import FloatArray, Molecule, PrintedThermo
+from heatwright.reading.structures import unbonded
 from heatwright.resources import data_rows
+from heatwright.structure.inertia import LINEAR_TOLERANCE_A
 
-LINEAR_A: Final = 1.0e-2
-"""A molecule is linear when no atom is farther than this from its axis, Å."""
+NEARLY_LINEAR_A: Final = 0.06
+"""A molecule whose atoms are all nearer than this to one line, yet not on it, is said to be nearly linear, Å: a bond
+angle of about 170° between bonds of 1.1 Å (common practice, no source)."""
 STATIONARY_HARTREE_BOHR: Final = 4.5e-4
 """Largest gradient component of a stationary point: the usual criterion of optimisers (common practice, no source)."""
+HIGH_CM1: Final = 5000.0
+"""No fundamental is higher; the highest is that of H2, 4161 1/cm (Huber and Herzberg 1979, from memory)."""
 TINY_CM1: Final = 10.0
 """Wavenumbers below this are hardly a vibration: the harmonic entropy runs away (common practice, no source)."""
 _ZPE_TOLERANCE: Final = 1.5e-6
@@ -56,17 +61,22 @@ def expected_modes(molecule: Molecule) -> int:
 
 
 def is_linear(coordinates_A: FloatArray) -> bool:
-    """Whether all atoms lie on one line, within :data:`LINEAR_A`.
+    """Whether all atoms lie on one line, as near as :mod:`heatwright.structure.inertia` asks.
 
     >>> is_linear(np.array([[0.0, 0.0, 0.0], [0.0, 0.0, 1.16], [0.0, 0.0, -1.16]]))
     True
     """
+    return farthest_from_line_A(coordinates_A) < LINEAR_TOLERANCE_A
+
+
+def farthest_from_line_A(coordinates_A: FloatArray) -> float:
+    """Distance of the farthest atom from the best line through all of them, Å; infinite when it cannot be told."""
     if not np.isfinite(coordinates_A).all():
-        return False
+        return float("inf")
     centred = coordinates_A - coordinates_A.mean(axis=0)
     axis = np.linalg.svd(centred, full_matrices=False)[2][0]
     away = centred - np.outer(centred @ axis, axis)
-    return bool(np.linalg.norm(away, axis=1).max() < LINEAR_A)
+    return float(np.linalg.norm(away, axis=1).max())
 
 
 def _a_kind(molecule: Molecule) -> str:
@@ -174,7 +184,7 @@ def _ground_multiplicities() -> dict[int, int]:
 def _modes(m: Molecule) -> list[Finding]:
     if not m.wavenumbers_cm1.size:
         return []
-    found = _imaginary(m) + _mode_count(m) + _tiny(m)
+    found = _imaginary(m) + _mode_count(m) + _tiny(m) + _nearly_linear(m)
     if m.normal_modes is not None and m.normal_modes.shape != (m.wavenumbers_cm1.size, m.n_atoms, 3):
         words = f"{len(m.normal_modes)} sets of displacements for {m.wavenumbers_cm1.size} wavenumbers"
         found.append(refuse("atoms-disagree", words, expected="one for each"))
@@ -213,7 +223,23 @@ def _tiny(m: Molecule) -> list[Finding]:
             words = f"the wavenumber is {w:.2f} cm⁻¹"
             due = f"more than {TINY_CM1:g} cm⁻¹"
             found.append(warn("zero-wavenumber", words, where=f"mode {index}", expected=due, action=action))
+        if w > HIGH_CM1:
+            words, due = f"the wavenumber is {w:.2f} cm⁻¹", f"at most {HIGH_CM1:g} cm⁻¹"
+            action = "Look at the level of theory and the geometry."
+            found.append(warn("high-wavenumber", words, where=f"mode {index}", expected=due, action=action))
     return found
+
+
+def _nearly_linear(m: Molecule) -> list[Finding]:
+    """A bent molecule that is hardly bent: its quick rotation about the line and its bend are one motion."""
+    if m.n_atoms < 3 or not m.has_geometry:
+        return []
+    away = farthest_from_line_A(m.coordinates_A)
+    if not LINEAR_TOLERANCE_A <= away < NEARLY_LINEAR_A:
+        return []
+    words = f"the molecule is nearly linear: no atom is farther than {away:.3f} Å from one line"
+    action = "Rotation about that line and the bend are one motion, which a rigid rotor with harmonic modes misses."
+    return [warn("nearly-linear", words, action=action)]
 
 
 def _gradient(m: Molecule) -> list[Finding]:
@@ -264,10 +290,15 @@ def _zpe_differs(m: Molecule, item: PrintedThermo) -> Finding | None:
     return warn("printed-values-differ", words, expected=f"agreement within {allowed:.1e}", action=action)
 
 
+def _parts(m: Molecule) -> list[Finding]:
+    return list(unbonded(m)) if m.kind != "rigid scan" else []
+
+
 _CHECKS: Final[tuple[Callable[[Molecule], list[Finding]], ...]] = (
     _not_numbers,
     _atoms,
     _spin,
+    _parts,
     _modes,
     _gradient,
     _energy,
