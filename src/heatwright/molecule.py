@@ -117,6 +117,7 @@ class Molecule:
     normal_modes : (m, n, 3) Cartesian displacements (not mass-weighted, each of norm 1), same order, or None.
     hessian_hartree_bohr2 : (3n, 3n) Cartesian force constants in hartree/bohr², or None.
     energies_hartree : every total energy by name (``SCF``, ``MP2``, ``CCSD(T)``); ``energy_kind`` is the one in use.
+    energy_source, energy_level : the file and level of the energy when it is from another output than the modes.
     max_gradient_hartree_bohr : largest component of the gradient at this geometry, or None.
     printed : the program's own thermochemistry, one item for each temperature.
     n_jobs : how many jobs the file holds; ``job`` counts from 1.
@@ -135,6 +136,8 @@ class Molecule:
     hessian_hartree_bohr2: FloatArray | None = None
     energies_hartree: Mapping[str, float] = field(default_factory=dict)
     energy_kind: str = ""
+    energy_source: Source | None = None
+    energy_level: Level | None = None
     charge: int | None = None
     multiplicity: int | None = None
     level: Level | None = None
@@ -164,6 +167,20 @@ class Molecule:
     def energy_hartree(self) -> float | None:
         """The electronic energy in use, hartree."""
         return self.energies_hartree.get(self.energy_kind)
+
+    @property
+    def level_of_energy(self) -> Level | None:
+        """The level of theory of the energy in use."""
+        return self.level if self.energy_source is None else self.energy_level
+
+    @property
+    def level_text(self) -> str:
+        """The level as chemists write it, ``CCSD(T)/cc-pVTZ//B3LYP/6-31G*`` when energy and geometry have two."""
+        unknown = "level of theory not printed"
+        own = self.level.label if self.level else unknown
+        if self.energy_source is None:
+            return own
+        return f"{self.energy_level.label if self.energy_level else unknown}//{own}"
 
     @property
     def n_imaginary(self) -> int:

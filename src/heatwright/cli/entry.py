@@ -12,6 +12,7 @@ from heatwright.cli.options import (
     fit_options,
     model_options,
     outputs_argument,
+    taken_energies,
     taken_model_options,
     taken_reading,
     units_option,
@@ -120,9 +121,10 @@ def entry(ctx: click.Context, /, outputs: tuple[str, ...], quiet: bool, verbose:
 
 @dataclass(frozen=True, slots=True)
 class _Job:
-    """One output to make an entry of: its path, the name and the enthalpy of formation (with source) stated for it."""
+    """One output to make an entry of: where its energy is, the name and enthalpy of formation (with source) stated."""
 
     path: str
+    energy: str | None
     name: str | None
     given: tuple[GivenEnthalpy, str | None] | None
 
@@ -134,7 +136,8 @@ def _jobs(outputs: tuple[str, ...], options: dict[str, Any]) -> list[_Job]:
             f"--name was given {len(names)} times for {len(outputs)} outputs; give it once for each output"
         )
     given = _given(outputs, options["enthalpies"], options["sources"], options["atoms_folder"], options["route"])
-    return [_Job(path, names[i] if names else None, given[i]) for i, path in enumerate(outputs)]
+    energies = taken_energies(options, len(outputs))
+    return [_Job(path, energies[i], names[i] if names else None, given[i]) for i, path in enumerate(outputs)]
 
 
 def _made(jobs: list[_Job], request: Request, style: _Style, reporter: Reporter) -> list[tuple[str, Entry]]:
@@ -284,7 +287,7 @@ def _make(job: _Job, request: Request) -> Entry:
     from heatwright.entry import make_entry
     from heatwright.writing.names import default_name
 
-    model = usable_model(job.path, request.reading, request.model)
+    model = usable_model(job.path, replace(request.reading, energy=job.energy), request.model)
     formation = _formation(model, job.given, request)
     if job.name is not None:
         return make_entry(job.name, model, formation, request.fit)

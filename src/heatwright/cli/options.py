@@ -78,6 +78,14 @@ _MODEL_OPTIONS = (
         metavar="ATOM=ISOTOPE",
         help="Another isotope: 2=2H (second atom), H=D (every H), 1=13C; wavenumbers anew. Can be repeated.",
     ),
+    click.option(
+        "--energy",
+        "energies",
+        multiple=True,
+        type=click.Path(),
+        metavar="FILE",
+        help="Output of a single point at the same geometry that gives the energy; once for each output.",
+    ),
     click.option("--charge", type=int, metavar="Q", help="Instead of the output's."),
     click.option("--multiplicity", type=click.IntRange(min=1), metavar="M", help="Instead of the output's."),
     click.option("--job", type=click.IntRange(min=1), metavar="N", help="One of several jobs in a file."),
@@ -99,6 +107,7 @@ class Reading:
     charge: int | None
     multiplicity: int | None
     isotopes: tuple[Isotope, ...] = ()
+    energy: str | None = None
 
 
 def taken_reading(options: dict[str, Any]) -> Reading:
@@ -107,6 +116,16 @@ def taken_reading(options: dict[str, Any]) -> Reading:
 
     isotopes = tuple(parse_isotope(text) for text in options.pop("isotopes"))
     return Reading(options.pop("job"), options.pop("charge"), options.pop("multiplicity"), isotopes)
+
+
+def taken_energies(options: dict[str, Any], n_outputs: int) -> tuple[str | None, ...]:
+    """The file of each output's energy out of a command's keyword arguments, None where that is the output itself."""
+    energies: tuple[str, ...] = options.pop("energies")
+    if energies and len(energies) != n_outputs:
+        raise UsageError(
+            f"--energy was given {len(energies)} times for {n_outputs} outputs; give it once for each output"
+        )
+    return energies or (None,) * n_outputs
 
 
 def taken_model_options(options: dict[str, Any]) -> ModelOptions:
@@ -136,6 +155,7 @@ def usable_molecule(path: str, reading: Reading) -> Molecule:
     """The molecule of an output that a model can be built on; raises Refused with every reason why not."""
     from heatwright.findings import Refused, refusals
     from heatwright.reading.outputs import read_output
+    from heatwright.reading.single_point import with_energy
     from heatwright.reading.soundness import no_thermochemistry
     from heatwright.structure.isotopes import with_isotopes
 
@@ -145,6 +165,9 @@ def usable_molecule(path: str, reading: Reading) -> Molecule:
     missing = no_thermochemistry(molecule)
     if missing:
         raise Refused((*missing, *molecule.findings))
+    if reading.energy is not None:
+        other = read_output(reading.energy, charge=reading.charge, multiplicity=reading.multiplicity)
+        molecule = with_energy(molecule, other)
     return with_isotopes(molecule, reading.isotopes)
 
 

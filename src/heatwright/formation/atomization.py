@@ -57,7 +57,7 @@ def formation_by_atomization(model: ThermoModel, atoms: Atoms, *, trust_levels: 
 
 
 def _level_error(model: ThermoModel) -> Finding:
-    level = model.molecule.level.label if model.molecule.level else "the level of theory"
+    level = model.molecule.level_of_energy.label if model.molecule.level_of_energy else "the level of theory"
     return note(
         "no-uncertainty",
         f"the enthalpy of formation carries the error of {level} for breaking every bond, which this route cannot know",
@@ -106,7 +106,7 @@ def _formation(model: ThermoModel, atoms: Mapping[str, Molecule], findings: tupl
     dHf0 = atom_sum - (electronic - model.zpe_kJ_mol)
     increment = element_increment_kJ_mol(counts)
     assert increment is not None  # every element has a reference here
-    level = model.molecule.level.label if model.molecule.level else "level of theory not printed"
+    level = model.molecule.level_of_energy.label if model.molecule.level_of_energy else "level of theory not printed"
     ledger = (
         *(
             LedgerLine(f"{n} x enthalpy of formation of {e} at 0 K", n * r.dHf0_kJ_mol, r.source)
@@ -194,12 +194,13 @@ def _objections(element: str, atom: Molecule, molecule: Molecule, trust_levels: 
 
 def _level_objections(element: str, atom: Molecule, molecule: Molecule, trust: bool) -> tuple[Finding, ...]:
     where = atom.source.file
-    if atom.level is None or molecule.level is None:
+    level = molecule.level_of_energy
+    if atom.level is None or level is None:
         differences: tuple[str, ...] = ("the level of theory is not printed",)
         unknowns: tuple[str, ...] = ()
     else:
-        differences = level_differences(molecule.level, atom.level)
-        unknowns = level_unknowns(molecule.level, atom.level)
+        differences = level_differences(level, atom.level)
+        unknowns = level_unknowns(level, atom.level)
     kinds = {molecule.energy_kind, atom.energy_kind}
     if len(kinds) == 2 and not _one_electron(atom):
         differences = (*differences, f"energy {molecule.energy_kind} against {atom.energy_kind}")

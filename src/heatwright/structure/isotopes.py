@@ -85,6 +85,8 @@ def with_isotopes(molecule: Molecule, wishes: Iterable[Isotope]) -> Molecule:
         return changes.but(findings=(*left, _said(changed, "")))
     hessian, source = _force_constants(molecule)
     wavenumbers, modes = projected_modes(hessian, masses, molecule.coordinates_A)
+    if not (wavenumbers > 0.0).all():
+        raise Refused([_no_minimum(float(wavenumbers[0]))])
     return changes.but(
         wavenumbers_cm1=wavenumbers,
         normal_modes=modes,
@@ -118,11 +120,16 @@ def _no_such_atom(molecule: Molecule, wish: Isotope) -> Finding:
     return refuse("no-such-atom", found, action="Atoms are counted from 1 in the order of the output.")
 
 
+def _no_minimum(wavenumber_cm1: float) -> Finding:
+    found = f"the force constants give the lowest mode {wavenumber_cm1:.2f} cm⁻¹ with these masses"
+    return refuse("imaginary-modes", found, expected="a minimum", action="Look at the lowest modes of the output.")
+
+
 def _force_constants(molecule: Molecule) -> tuple[FloatArray, str]:
     """Cartesian force constants, and where they are from."""
-    if molecule.hessian_hartree_bohr2 is not None:
-        return molecule.hessian_hartree_bohr2, "the printed Hessian"
-    x, modes = molecule.coordinates_A, molecule.normal_modes
+    H, x, modes = molecule.hessian_hartree_bohr2, molecule.coordinates_A, molecule.normal_modes
+    if H is not None and (projected_modes(H, molecule.masses_u, x)[0] > 0.0).all():  # else wavenumbers were changed
+        return H, "the printed Hessian"
     why = "it has neither a Hessian nor normal modes"
     if len(x) == molecule.n_atoms and modes is not None:
         due = 3 * molecule.n_atoms - overall_motion(molecule.masses_u, x).shape[1]

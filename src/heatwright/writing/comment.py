@@ -10,6 +10,7 @@ from heatwright.elements import formula
 from heatwright.entry import Entry
 from heatwright.findings import SEVERITY_WORD, Finding
 from heatwright.formation.formation import Formation
+from heatwright.molecule import Molecule
 from heatwright.partition.model import ThermoModel
 from heatwright.writing.units import UNITS, Units
 
@@ -72,13 +73,18 @@ def ascii_text(text: str) -> str:
 
 def _identity(name: str, model: ThermoModel) -> tuple[str, ...]:
     molecule = model.molecule
-    level = molecule.level.label if molecule.level else "level of theory not printed"
     return (
         f"{name}: {formula(model.composition)}, charge {molecule.charge}, multiplicity {molecule.multiplicity}",
         f"from {molecule.source.file}",
         f"sha256 {molecule.source.sha256}",
-        f"{molecule.source.program_version}, {level}",
+        f"{molecule.source.program_version}, {molecule.level_text}",
+        *_energy_source(molecule),
     )
+
+
+def _energy_source(molecule: Molecule) -> tuple[str, ...]:
+    source = molecule.energy_source
+    return () if source is None else (f"energy from {source.file}, {source.program_version}", f"sha256 {source.sha256}")
 
 
 def _treatment(model: ThermoModel) -> tuple[str, ...]:

@@ -63,12 +63,20 @@ def species_document(
 
 def source_document(molecule: Molecule) -> dict[str, Any]:
     """Where a molecule was read from and at which level of theory it was computed."""
-    return {
+    document: dict[str, Any] = {
         "file": molecule.source.file,
         "sha256": molecule.source.sha256,
         "program": molecule.source.program_version,
         "level": molecule.level.label if molecule.level else None,
     }
+    if molecule.energy_source is not None:
+        document |= {
+            "energy_file": molecule.energy_source.file,
+            "energy_sha256": molecule.energy_source.sha256,
+            "energy_program": molecule.energy_source.program_version,
+            "energy_level": molecule.energy_level.label if molecule.energy_level else None,
+        }
+    return document
 
 
 def failure_document(file: str, findings: Iterable[Finding]) -> dict[str, Any]:

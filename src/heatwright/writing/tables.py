@@ -18,11 +18,10 @@ def text_table(name: str, model: ThermoModel, table: ThermoTable, units: Units =
 
 def _heading(name: str, model: ThermoModel, table: ThermoTable, units: Units) -> Iterable[str]:
     molecule = model.molecule
-    level = molecule.level.label if molecule.level else "level of theory not printed"
     constants = ", ".join(f"{b:.5g}" for b in model.inertia.rotational_constants_cm1)
     yield f"{name}   {formula(model.composition, molecule.charge or 0)}, multiplicity {molecule.multiplicity}"
     pressure = pressure_text(model.options.pressure_Pa)
-    yield f"{molecule.source.program_version}, {level}; {model.mass_kind} masses, {pressure}"
+    yield f"{molecule.source.program_version}, {molecule.level_text}; {model.mass_kind} masses, {pressure}"
     if not molecule.is_atom:
         n = molecule.wavenumbers_cm1.size
         isomers = f", {model.optical_isomers} optical isomers" if model.optical_isomers > 1 else ""
