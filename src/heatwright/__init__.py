@@ -27,6 +27,7 @@ if TYPE_CHECKING:
     from heatwright.polynomial.nasa7 import Nasa7
     from heatwright.polynomial.quality import FitQuality, fit_quality
     from heatwright.reading.outputs import read_output
+    from heatwright.scales import PublishedFactor, ScaleChoice, choose_published, published_factors
     from heatwright.structure.symmetry import Symmetry, symmetry
     from heatwright.writing.context import entries_context
     from heatwright.writing.render import render_format
@@ -44,12 +45,15 @@ _HOME = {
     "ModelOptions": "partition.model",
     "Molecule": "molecule",
     "Nasa7": "polynomial.nasa7",
+    "PublishedFactor": "scales",
     "Refused": "findings",
+    "ScaleChoice": "scales",
     "Symmetry": "structure.symmetry",
     "ThermoModel": "partition.model",
     "ThermoTable": "partition.model",
     "UsageError": "errors",
     "build_model": "partition.model",
+    "choose_published": "scales",
     "collect_atoms": "formation.atomization",
     "entries_context": "writing.context",
     "fit_nasa7": "polynomial.fit",
@@ -58,6 +62,7 @@ _HOME = {
     "formation_given": "formation.formation",
     "make_entry": "entry",
     "parse_enthalpy": "formation.formation",
+    "published_factors": "scales",
     "read_output": "reading.outputs",
     "render_format": "writing.render",
     "symmetry": "structure.symmetry",
@@ -77,13 +82,16 @@ __all__ = [
     "ModelOptions",
     "Molecule",
     "Nasa7",
+    "PublishedFactor",
     "Refused",
+    "ScaleChoice",
     "Symmetry",
     "ThermoModel",
     "ThermoTable",
     "UsageError",
     "__version__",
     "build_model",
+    "choose_published",
     "collect_atoms",
     "entries_context",
     "fit_nasa7",
@@ -92,6 +100,7 @@ __all__ = [
     "formation_given",
     "make_entry",
     "parse_enthalpy",
+    "published_factors",
     "read_output",
     "render_format",
     "symmetry",
