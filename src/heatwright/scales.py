@@ -14,7 +14,7 @@ from typing import Final
 
 from heatwright.findings import Refused, refuse
 from heatwright.molecule import Level
-from heatwright.reading.levels import normalise_basis, normalise_method
+from heatwright.reading.levels import normalise_basis, normalise_method, split_dispersion
 from heatwright.resources import data_rows
 
 SOURCE_ORDER: Final = ("Scott", "Merrick", "Chan", "Alecu", "NIST", "Irikura")
@@ -249,7 +249,8 @@ def factors_like(text: str) -> tuple[PublishedFactor, ...]:
     if whole or "/" not in text:
         return _sorted(whole)
     method, basis = (part.strip() for part in text.rsplit("/", 1))
-    return published_factors(Level(method=_CORE.sub("", method), basis=basis, frozen_core=_core_mark(method)))
+    plain, dispersion = split_dispersion(_CORE.sub("", method))
+    return published_factors(Level(plain, basis, dispersion=dispersion, frozen_core=_core_mark(method)))
 
 
 def _sorted(rows: Iterable[PublishedFactor]) -> tuple[PublishedFactor, ...]:

@@ -137,6 +137,8 @@ def but(**changes: Any) -> Callable[[dict[str, Any]], None]:
         (but(return_result=[0.0] * 80), "qcschema-wrong", "81 numbers"),
         (but(return_result=[0.0] * 80 + [float("nan")]), "not-a-number", "number 81"),
         (but(return_result=[[0.0] * 9] * 8 + [[0.0] * 8]), "qcschema-wrong", "return_result"),
+        (but(return_result=[0.0] * 8 + [0.1] + [0.0] * 72), "qcschema-wrong", "not symmetric"),
+        (but(input_data={"specification": {}}), "qcschema-wrong", "schema_version 2"),
         (but(return_result={"a": 1}), "qcschema-wrong", "return_result"),
         (but(properties__return_energy="low"), "qcschema-wrong", "properties.return_energy"),
         (but(properties__scf_total_energy=float("inf")), "not-a-number", "scf_total_energy"),

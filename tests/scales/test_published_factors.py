@@ -117,6 +117,8 @@ def test_look_up_by_text() -> None:
     assert {basis_key(row.basis) for row in factors_like("6-31g(d)")} == {"6-31g*"}
     assert len(factors_like("MC-QCISD/3")) == 1  # a method with a stroke in its name
     assert len(factors_like("MP2(FULL)/6-31G*")) < len(factors_like("MP2/6-31G*"))
+    assert factors_like("B3LYP-D3BJ/6-31G*") == factors_like("B3LYP/6-31G*")
+    assert factors_like("B2PLYP-D3/cc-pVTZ")[0].source.startswith("Chan")
     assert factors_like("nothing/here") == ()
 
 

@@ -47,6 +47,19 @@ def normalise_method(name: str) -> str:
     return plain
 
 
+_DISPERSION: Final = re.compile(r"(.+)-(d[234](?:m?bj|m?zero|m)?)", re.IGNORECASE)
+
+
+def split_dispersion(name: str) -> tuple[str, str]:
+    """A method's name without its dispersion correction, and the correction; a name that is one method stays whole.
+
+    >>> split_dispersion("B3LYP-D3BJ"), split_dispersion("wB97X-D3"), split_dispersion("M06-2X")
+    (('B3LYP', 'D3BJ'), ('wB97X-D3', ''), ('M06-2X', ''))
+    """
+    found = None if is_method(name) else _DISPERSION.fullmatch(name.strip())
+    return (found[1], found[2].upper()) if found else (name.strip(), "")
+
+
 def normalise_basis(name: str) -> str:
     """One spelling for a basis set: Pople sets in capitals with stars, the others as their authors write them.
 

@@ -10,7 +10,7 @@ import numpy as np
 from heatwright.elements import atomic_number, composition, element, formula
 from heatwright.findings import Finding, Refused, note, refuse
 from heatwright.molecule import FloatArray, IntArray, Kind, Level, MassKind, Molecule, Source, Stated
-from heatwright.reading.levels import normalise_basis, normalise_method
+from heatwright.reading.levels import normalise_basis, normalise_method, split_dispersion
 from heatwright.reading.strict import Block, parsed
 
 KEYS: Final[dict[str, tuple[str, ...]]] = {
@@ -204,8 +204,10 @@ def _energies(block: Block) -> tuple[dict[str, float], str]:
 def _level(block: Block, numbers: IntArray) -> Level:
     block.needs("method")
     words = {key: block.word(key) for key in KEYS["level"] if key not in ("spherical", "source", "method", "basis")}
+    method, dispersion = split_dispersion(block.word("method"))
+    words["dispersion"] = words["dispersion"] or dispersion
     return Level(
-        method=normalise_method(block.word("method")),
+        method=normalise_method(method),
         basis=normalise_basis(block.word("basis")),
         spherical=block.flag("spherical"),
         atoms=tuple(int(z) for z in numbers),

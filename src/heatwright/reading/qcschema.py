@@ -16,7 +16,7 @@ from heatwright.constants import BOHR_ANGSTROM
 from heatwright.elements import atomic_number, element
 from heatwright.findings import Finding, Refused, note, refuse
 from heatwright.molecule import FloatArray, IntArray, Kind, Level, Molecule, Source
-from heatwright.reading.levels import is_method, normalise_basis, normalise_method
+from heatwright.reading.levels import normalise_basis, normalise_method, split_dispersion
 from heatwright.reading.masses import mass_kind
 from heatwright.structure.modes import projected_modes
 
@@ -30,7 +30,8 @@ ENERGIES: Final = {
 """The total energies among a result's properties, from the simplest to the most correlated, by their names here."""
 
 _SCHEMA: Final = re.compile(r"qc_?schema", re.IGNORECASE)
-_DISPERSION: Final = re.compile(r"(.+)-(d[234](?:m?bj|m?zero|m)?)", re.IGNORECASE)
+_ASYMMETRIC_HARTREE_BOHR2: Final = 1.0e-3
+"""A Hessian whose halves differ by more than this is none; finite differences leave some 1e-6."""
 
 
 def qcschema_document(text: str) -> dict[str, Any] | None:
@@ -107,6 +108,9 @@ def _check_success(document: Mapping[str, Any]) -> None:
     if "input" in str(document.get("schema_name", "")).lower() and "return_result" not in document:
         words = "this is a QCSchema input, not a result"
         raise Refused([refuse("not-an-output", words, action="Give the result that was computed from it.")])
+    before = document.get("input_data")
+    if isinstance(before, dict) and "specification" in before:
+        _wrong("input_data", "this result has the layout of QCSchema's schema_version 2", "schema_version 1")
     if document.get("success") is True:
         return
     if "success" not in document:
@@ -200,10 +204,16 @@ def _isotope(number: int, mass_number: int, atom: int) -> float:
 
 
 def _hessian(document: Mapping[str, Any], driver: str, n: int) -> FloatArray | None:
-    if driver == "hessian":
-        return _array(document.get("return_result"), "return_result", (3 * n, 3 * n))
-    value = _part(document, "properties", needed=False).get("return_hessian")
-    return None if value is None else _array(value, "properties.return_hessian", (3 * n, 3 * n))
+    value, where = document.get("return_result"), "return_result"
+    if driver != "hessian":
+        value, where = _part(document, "properties", needed=False).get("return_hessian"), "properties.return_hessian"
+        if value is None:
+            return None
+    hessian = _array(value, where, (3 * n, 3 * n))
+    uneven = float(np.abs(hessian - hessian.T).max())
+    if uneven > _ASYMMETRIC_HARTREE_BOHR2:
+        _wrong(where, f"the Hessian is not symmetric (halves differ by up to {uneven:.2g} hartree/bohr²)")
+    return hessian
 
 
 def _largest_gradient(document: Mapping[str, Any], driver: str, n: int) -> float | None:
@@ -225,10 +235,7 @@ def _level(document: Mapping[str, Any], program: str, numbers: IntArray) -> Leve
     basis = basis.get("name", "") if isinstance(basis, dict) else basis
     if not isinstance(model.get("method"), str):
         return None
-    method, dispersion = model["method"], ""
-    split = None if is_method(method) else _DISPERSION.fullmatch(method)
-    if split is not None:
-        method, dispersion = split[1], split[2].upper()
+    method, dispersion = split_dispersion(model["method"])
     keywords = _part(document, "keywords", needed=False)
     pure = {key.lower(): value for key, value in keywords.items()}.get("puream")
     return Level(
