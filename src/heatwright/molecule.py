@@ -116,6 +116,8 @@ class Molecule:
         empty when the job has no frequencies.
     normal_modes : (m, n, 3) Cartesian displacements (not mass-weighted, each of norm 1), same order, or None.
     hessian_hartree_bohr2 : (3n, 3n) Cartesian force constants in hartree/bohr², or None.
+    fundamentals_cm1 : (m,) anharmonic fundamentals in the order of the wavenumbers, 1/cm, or None;
+        ``anharmonic_zpe_hartree`` is the zero-point energy that goes with them.
     energies_hartree : every total energy by name (``SCF``, ``MP2``, ``CCSD(T)``); ``energy_kind`` is the one in use.
     energy_source, energy_level : the file and level of the energy when it is from another output than the modes.
     max_gradient_hartree_bohr : largest component of the gradient at this geometry, or None.
@@ -134,6 +136,8 @@ class Molecule:
     wavenumbers_cm1: FloatArray = field(default_factory=lambda: np.empty(0))
     normal_modes: FloatArray | None = None
     hessian_hartree_bohr2: FloatArray | None = None
+    fundamentals_cm1: FloatArray | None = None
+    anharmonic_zpe_hartree: float | None = None
     energies_hartree: Mapping[str, float] = field(default_factory=dict)
     energy_kind: str = ""
     energy_source: Source | None = None

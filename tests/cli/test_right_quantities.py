@@ -93,3 +93,28 @@ def test_energy_once_for_each_output(run) -> None:
     assert len(document["species"]) == len(document["failed"]) == 1
     assert "RMSD" in mixed.err
     assert run("table", H2O, "--energy", "missing.out").code == 3
+
+
+VPT2 = kept("qchem54_water_vpt2.out")
+
+
+def test_anharmonic_values_on_request(run) -> None:
+    done = run("entry", VPT2, "--anharmonic", *GIVEN, "--name", "H2O")
+    assert done.code == 0
+    assert "oscillators with anharmonic fundamentals" in done.out
+    assert "[anharmonic]" in done.err
+    (species,) = json.loads(run("table", VPT2, "--anharmonic", "--json").out)["species"]
+    assert species["anharmonic"] is True
+    assert species["fundamentals_cm-1"] == [1789.71, 3839.74, 4125.21]
+    assert species["zpe_kJ_mol"] == pytest.approx(13.945 * 4.184)
+    plain = run("table", VPT2, "--json")
+    assert json.loads(plain.out)["species"][0]["anharmonic"] is False
+    assert "[anharmonic-unused]" in plain.err
+
+
+def test_anharmonic_refusals(run) -> None:
+    assert run("table", VPT2, "--anharmonic", "--frequency-scale", 0.96).code == 2
+    assert run("table", VPT2, "--anharmonic", "--scale", "published").code == 2
+    absent = run("table", H2O, "--anharmonic")
+    assert absent.code == 3
+    assert "[no-anharmonic]" in absent.err

@@ -67,6 +67,36 @@ TABLE = {
     "nwchem702_o_atom_rohf.out": (
         "NWChem", "7.0.2", "atom", "SCF", -74.778268136217, 0, 3, 0, 0, "HF/6-31G*", "ok",
     ),
+    "nwchem702_h2o_freq.out": (
+        "NWChem", "7.0.2", "frequency", "SCF", -76.009341330677, 0, 1, 3, 0, "HF/6-31G*", "ok",
+    ),
+    "nwchem702_d2o_freq.out": (
+        "NWChem", "7.0.2", "frequency", "SCF", -76.009341330677, 0, 1, 3, 0, "HF/6-31G*", "warn",
+    ),
+    "nwchem702_methanol_freq.out": (
+        "NWChem", "7.0.2", "frequency", "SCF", -114.398019456264, 0, 1, 12, 0, "HF/3-21G", "ok",
+    ),
+    "nwchem702_methanol_od_freq.out": (
+        "NWChem", "7.0.2", "frequency", "SCF", -114.398019456264, 0, 1, 12, 0, "HF/3-21G", "warn",
+    ),
+    "nwchem702_water_mp2_energy.out": (
+        "NWChem", "7.0.2", "energy", "MP2", -76.193065146883, 0, 1, 0, 0, "MP2/6-31G*", "ok",
+    ),
+    "nwchem702_water_stretched_mp2_energy.out": (
+        "NWChem", "7.0.2", "energy", "MP2", -76.193422623779, 0, 1, 0, 0, "MP2/6-31G*", "ok",
+    ),
+    "nwchem702_water_cation_energy.out": (
+        "NWChem", "7.0.2", "energy", "SCF", -75.609446521759, 1, 2, 0, 0, "HF/6-31G*", "ok",
+    ),
+    "nwchem702_o_atom_mp2.out": (
+        "NWChem", "7.0.2", "atom", "MP2", -74.878159576034, 0, 3, 0, 0, "MP2/6-31G*", "ok",
+    ),
+    "nwchem702_h_atom_mp2.out": (
+        "NWChem", "7.0.2", "atom", "MP2", -0.498232910729, 0, 2, 0, 0, "MP2/6-31G*", "ok",
+    ),
+    "qchem54_water_vpt2.out": (
+        "Q-Chem", "5.4", "frequency", "SCF", -75.3178467153, 0, 1, 3, 0, "B3LYP/STO-3G", "ok",
+    ),
     "psi4_132_h2o_opt_freq.out": (
         "Psi4", "1.3.2", "frequency", "SCF", -76.0107206574669, 0, 1, 3, 0, "HF/6-31G*", "ok",
     ),

@@ -53,6 +53,9 @@ _MODEL_OPTIONS = (
         type=click.Choice(["published"]),
         help="Both factors from the table of published ones, by the level of theory (see `heatwright scales`).",
     ),
+    click.option(
+        "--anharmonic", is_flag=True, help="The output's anharmonic fundamentals and zero-point energy, unscaled."
+    ),
     click.option("--symmetry-number", type=click.IntRange(min=1), metavar="N", help="Instead of the geometry's."),
     click.option("--optical-isomers", type=click.IntRange(min=1), metavar="N", help="Instead of the geometry's."),
     click.option(
@@ -89,6 +92,20 @@ _MODEL_OPTIONS = (
     click.option("--charge", type=int, metavar="Q", help="Instead of the output's."),
     click.option("--multiplicity", type=click.IntRange(min=1), metavar="M", help="Instead of the output's."),
     click.option("--job", type=click.IntRange(min=1), metavar="N", help="One of several jobs in a file."),
+    click.option(
+        "--accept",
+        multiple=True,
+        type=click.Choice(["solvent", "field", "constraints", "excited-state", "gradient"]),
+        help="Use an output that is refused for this; recorded as a warning. Can be repeated.",
+    ),
+    click.option("--accept-gradient", is_flag=True, help="The same as --accept gradient."),
+    click.option(
+        "--accept-imaginary",
+        type=float,
+        default=0.0,
+        metavar="CM1",
+        help="Treat imaginary modes up to CM1 (at most 50) as real wavenumbers of the same magnitude.",
+    ),
 )
 
 
@@ -101,12 +118,14 @@ def model_options(command: F) -> F:
 
 @dataclass(frozen=True, slots=True)
 class Reading:
-    """How an output is to be read: which job, values that replace its own, and isotopes."""
+    """How an output is to be read: which job, values that replace its own, isotopes, and what is accepted."""
 
     job: int | None
     charge: int | None
     multiplicity: int | None
     isotopes: tuple[Isotope, ...] = ()
+    accept: tuple[str, ...] = ()
+    accept_imaginary_cm1: float = 0.0
     energy: str | None = None
 
 
@@ -115,7 +134,16 @@ def taken_reading(options: dict[str, Any]) -> Reading:
     from heatwright.structure.isotopes import parse_isotope
 
     isotopes = tuple(parse_isotope(text) for text in options.pop("isotopes"))
-    return Reading(options.pop("job"), options.pop("charge"), options.pop("multiplicity"), isotopes)
+    accept = (*options.pop("accept"), *(["gradient"] if options.pop("accept_gradient") else []))
+    imaginary = options.pop("accept_imaginary")
+    return Reading(
+        options.pop("job"),
+        options.pop("charge"),
+        options.pop("multiplicity"),
+        isotopes,
+        accept=accept,
+        accept_imaginary_cm1=imaginary,
+    )
 
 
 def taken_energies(options: dict[str, Any], n_outputs: int) -> tuple[str | None, ...]:
@@ -140,6 +168,7 @@ def taken_model_options(options: dict[str, Any]) -> ModelOptions:
         raise UsageError("--scale published chooses both factors; leave out --frequency-scale and --zpe-scale")
     return ModelOptions(
         scale=scale,
+        anharmonic=options.pop("anharmonic"),
         pressure_Pa={"1bar": BAR_PA, "1atm": ATMOSPHERE_PA}[options.pop("pressure")],
         frequency_scale=options.pop("frequency_scale"),
         zpe_scale=options.pop("zpe_scale"),
@@ -159,7 +188,14 @@ def usable_molecule(path: str, reading: Reading) -> Molecule:
     from heatwright.reading.soundness import no_thermochemistry
     from heatwright.structure.isotopes import with_isotopes
 
-    molecule = read_output(path, job=reading.job, charge=reading.charge, multiplicity=reading.multiplicity)
+    molecule = read_output(
+        path,
+        job=reading.job,
+        charge=reading.charge,
+        multiplicity=reading.multiplicity,
+        accept=reading.accept,
+        accept_imaginary_cm1=reading.accept_imaginary_cm1,
+    )
     if refusals(molecule.findings):
         raise Refused(molecule.findings)
     missing = no_thermochemistry(molecule)

@@ -113,7 +113,7 @@ def _formation(model: ThermoModel, atoms: Mapping[str, Molecule], findings: tupl
             for (e, n), r in zip(counts.items(), references.values(), strict=True)
         ),
         LedgerLine("electronic atomization energy", -electronic, level),
-        LedgerLine("zero-point energy", model.zpe_kJ_mol, f"harmonic, scaled by {model.zpe_scale:g}"),
+        LedgerLine("zero-point energy", model.zpe_kJ_mol, model.zpe_text),
         LedgerLine("H(298.15 K) - H(0) of the species", model.h298_minus_h0_kJ_mol, "partition function"),
         *(
             LedgerLine(

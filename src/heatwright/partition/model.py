@@ -11,17 +11,19 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from heatwright.constants import BAR_PA, GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
-from heatwright.elements import composition, element, formula
+from heatwright.elements import composition, element
 from heatwright.errors import UsageError
-from heatwright.findings import Finding, note, warn
+from heatwright.findings import Finding
 from heatwright.molecule import FloatArray, MassKind, Molecule
+from heatwright.partition.anharmonic import anharmonic_findings, oscillators
 from heatwright.partition.contribution import ConstantFactor, Contribution, LnQ, total_ln_q
-from heatwright.partition.electronic import ElectronicLevels, Levels, tabulated_levels
+from heatwright.partition.electronic import ElectronicLevels, Levels
+from heatwright.partition.levels import chosen_levels
 from heatwright.partition.rigid import rigid_body, symmetry_choice
 from heatwright.partition.rotation import ClassicalRotor
 from heatwright.partition.scaling import published_choice, scale_findings
 from heatwright.partition.translation import Translation
-from heatwright.partition.vibration import HarmonicVibration, zero_point_energy_kJ_mol
+from heatwright.partition.vibration import HarmonicVibration
 from heatwright.scales import ScaleChoice
 from heatwright.structure.inertia import Inertia
 from heatwright.structure.symmetry import Symmetry
@@ -36,6 +38,7 @@ class ModelOptions:
     factors (:func:`heatwright.scales.choose_published`) for the molecule's level of theory.   symmetry_number,
     optical_isomers : override the geometry.   electronic : ``"table"``, ``"spin"`` or explicit levels.
     masses : isotopic or average atomic masses.   symmetry_tolerance_A : how far an atom may be from its image, Å.
+    anharmonic : the output's anharmonic fundamentals and zero-point energy instead of the harmonic ones.
     """
 
     pressure_Pa: float = BAR_PA
@@ -47,6 +50,7 @@ class ModelOptions:
     electronic: Literal["table", "spin"] | Levels = "table"
     masses: MassKind | None = None
     symmetry_tolerance_A: float = 0.05
+    anharmonic: bool = False
 
     def __post_init__(self) -> None:
         for name in ("pressure_Pa", "frequency_scale", "zpe_scale", "symmetry_tolerance_A"):
@@ -57,6 +61,8 @@ class ModelOptions:
             value = getattr(self, name)
             if value is not None and value < 1:
                 raise UsageError(f"{name} must be at least 1, not {value}")
+        if self.anharmonic and any(x is not None for x in (self.scale, self.frequency_scale, self.zpe_scale)):
+            raise UsageError("scale factors are for harmonic wavenumbers; leave them out together with --anharmonic")
         if self.scale is not None and (self.frequency_scale is not None or self.zpe_scale is not None):
             raise UsageError("published scale factors and stated ones (frequency_scale, zpe_scale) exclude each other")
 
@@ -137,6 +143,16 @@ class ThermoModel:
         return self.symmetry.point_group or "point group not stated"
 
     @property
+    def vibration_text(self) -> str:
+        """What the oscillators are, in words."""
+        return "oscillators with anharmonic fundamentals" if self.options.anharmonic else "harmonic oscillators"
+
+    @property
+    def zpe_text(self) -> str:
+        """What the zero-point energy is, in words."""
+        return "anharmonic" if self.options.anharmonic else f"harmonic, scaled by {self.zpe_scale:g}"
+
+    @property
     def composition(self) -> dict[str, int]:
         """Atoms by element symbol, Hill order; deuterium as ``D``."""
         return composition(self.molecule.atomic_numbers, self.masses_u)
@@ -210,14 +226,15 @@ def build_model(molecule: Molecule, options: ModelOptions | None = None) -> Ther
         raise ValueError(f"{molecule.source.file}: a thermodynamic model needs the real modes of a minimum, or an atom")
     masses, mass_kind = chosen_masses(molecule, options.masses)
     moments, found = rigid_body(molecule, masses, options.symmetry_tolerance_A)
-    levels, levels_source, electronic_findings = chosen_levels(molecule, moments, options)
+    levels, levels_source, electronic_findings = chosen_levels(molecule, moments, options.electronic)
+    wavenumbers, zpe_kJ_mol = oscillators(molecule, options.anharmonic)
     stated = molecule.stated
     sigma = options.symmetry_number or stated.symmetry_number or found.symmetry_number
     isomers = options.optical_isomers or stated.optical_isomers or found.optical_isomers
     return ThermoModel(
         molecule=molecule,
         options=options,
-        contributions=_contributions(molecule, options, masses, moments, sigma, isomers, levels),
+        contributions=_contributions(molecule, wavenumbers, options, masses, moments, sigma, isomers, levels),
         inertia=moments,
         symmetry=found,
         symmetry_number=sigma,
@@ -226,11 +243,16 @@ def build_model(molecule: Molecule, options: ModelOptions | None = None) -> Ther
         mass_kind=mass_kind,
         levels=levels,
         levels_source=levels_source,
-        zpe_kJ_mol=zero_point_energy_kJ_mol(molecule.wavenumbers_cm1) * (options.zpe_scale or 1.0),
+        zpe_kJ_mol=zpe_kJ_mol * (options.zpe_scale or 1.0),
         findings=(
             *symmetry_choice(molecule, found, options.symmetry_number, options.optical_isomers),
             *electronic_findings,
-            *scale_findings(molecule, options.frequency_scale, options.zpe_scale, choice),
+            *anharmonic_findings(molecule, options.anharmonic),
+            *(
+                ()
+                if options.anharmonic
+                else scale_findings(molecule, options.frequency_scale, options.zpe_scale, choice)
+            ),
         ),
         scale_choice=choice,
     )
@@ -249,6 +271,7 @@ def _scaled(molecule: Molecule, options: ModelOptions) -> tuple[ModelOptions, Sc
 
 def _contributions(
     molecule: Molecule,
+    wavenumbers_cm1: FloatArray,
     options: ModelOptions,
     masses: FloatArray,
     moments: Inertia,
@@ -259,7 +282,7 @@ def _contributions(
     parts: list[Contribution] = [Translation(float(masses.sum()), options.pressure_Pa)]
     if not molecule.is_atom:
         parts.append(ClassicalRotor(tuple(moments.rotational_constants_cm1), sigma))
-        scaled = molecule.wavenumbers_cm1 * (options.frequency_scale or 1.0)
+        scaled = wavenumbers_cm1 * (options.frequency_scale or 1.0)
         parts.append(HarmonicVibration(tuple(scaled.tolist())))
     parts.append(ElectronicLevels(levels))
     if isomers > 1:
@@ -277,43 +300,3 @@ def chosen_masses(molecule: Molecule, kind: MassKind | None) -> tuple[FloatArray
         if min(abs(chosen[i] - atom.common_mass_u), abs(chosen[i] - atom.average_weight_u)) < 0.1:
             chosen[i] = atom.average_weight_u if kind == "average" else atom.common_mass_u
     return chosen, kind
-
-
-def chosen_levels(
-    molecule: Molecule, moments: Inertia, options: ModelOptions
-) -> tuple[Levels, str, tuple[Finding, ...]]:
-    """The electronic levels, where they are from, and what has to be said about the choice."""
-    if not isinstance(options.electronic, str):
-        said = note("user-value", f"electronic levels {_levels_text(options.electronic)} were given")
-        return options.electronic, "given", (said,)
-    if molecule.stated.electronic_levels and options.electronic == "table":
-        return molecule.stated.electronic_levels, molecule.stated.electronic_source or "given by hand", ()
-    multiplicity, charge = molecule.multiplicity, molecule.charge
-    if multiplicity is None or charge is None:
-        raise ValueError(f"{molecule.source.file}: charge and multiplicity must be known before levels can be chosen")
-    hill = formula(composition(molecule.atomic_numbers))
-    row = tabulated_levels(hill, charge, multiplicity) if options.electronic == "table" else None
-    if row is not None:
-        return row.levels, f"{row.state}, {row.source}", ()
-    levels: Levels = ((0.0, multiplicity),)
-    if multiplicity == 1:
-        return levels, "closed shell", ()
-    said = note(
-        "spin-degeneracy",
-        f"no electronic levels are tabulated for {hill}; its spin degeneracy {multiplicity} was taken"
-        if options.electronic == "table"
-        else f"the spin degeneracy {multiplicity} was taken as asked for",
-    )
-    if moments.kind != "linear":
-        return levels, "spin degeneracy", (said,)
-    doubt = warn(
-        "linear-radical",
-        f"{hill} is linear and open-shell, and its electronic state is not tabulated, so a spatial degeneracy "
-        f"(2 in a Π or Δ state) may be missing from the spin degeneracy {multiplicity}",
-        action="Give the levels by --electronic, such as 0:4 for an unsplit doublet Π state.",
-    )
-    return levels, "spin degeneracy", (said, doubt)
-
-
-def _levels_text(levels: Levels) -> str:
-    return ",".join(f"{nu:g}:{g}" for nu, g in levels)

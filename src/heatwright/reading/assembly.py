@@ -12,6 +12,7 @@ from heatwright.elements import element
 from heatwright.findings import Finding, note, refuse
 from heatwright.molecule import FloatArray, IntArray, Kind, Level, MassKind, Molecule, Source
 from heatwright.reading.dialects.base import Facts, Identity
+from heatwright.reading.fundamentals import Fundamentals
 from heatwright.reading.hessians import turned_to
 from heatwright.reading.parsing import Parsed
 from heatwright.structure.modes import unit_displacements
@@ -47,6 +48,7 @@ def assemble(
         atoms, coordinates, masses = atoms[real], coordinates[real], masses[real]
         kept = None if vibrations.modes is None else vibrations.modes[:, real]
         vibrations = replace(vibrations, modes=kept)
+    fundamentals, anharmonic_zpe = (facts.fundamentals or Fundamentals()).of(vibrations.wavenumbers_cm1)
     charge = _said(user[0], facts.charge, identity.charge, parsed.integer("charge"), "charge", findings)
     multiplicity = _said(
         user[1], facts.multiplicity, identity.multiplicity, parsed.integer("mult"), "multiplicity", findings
@@ -68,6 +70,8 @@ def assemble(
             wavenumbers_cm1=vibrations.wavenumbers_cm1,
             normal_modes=vibrations.modes,
             hessian_hartree_bohr2=_hessian(facts, coordinates) if real.all() else None,
+            fundamentals_cm1=fundamentals,
+            anharmonic_zpe_hartree=anharmonic_zpe,
             energies_hartree=energies,
             energy_kind=facts.energy_kind if facts.energy_kind in energies else "",
             charge=charge,

@@ -80,7 +80,9 @@ def with_isotopes(molecule: Molecule, wishes: Iterable[Isotope]) -> Molecule:
         electronic_levels=molecule.stated.electronic_levels,
         electronic_source=molecule.stated.electronic_source,
     )
-    changes = molecule.but(masses_u=masses, printed=(), stated=stated)
+    changes = molecule.but(
+        masses_u=masses, printed=(), stated=stated, fundamentals_cm1=None, anharmonic_zpe_hartree=None
+    )
     if molecule.is_atom:
         return changes.but(findings=(*left, _said(changed, "")))
     hessian, source = _force_constants(molecule)

@@ -93,7 +93,7 @@ def _treatment(model: ThermoModel) -> tuple[str, ...]:
     else:
         isomers = f", {model.optical_isomers} optical isomers" if model.optical_isomers > 1 else ""
         motion = (
-            f"rigid rotor, harmonic oscillators; {model.point_group_text}, "
+            f"rigid rotor, {model.vibration_text}; {model.point_group_text}, "
             f"symmetry number {model.symmetry_number}{isomers}"
         )
     return (
@@ -112,7 +112,9 @@ def levels_text(model: ThermoModel) -> str:
 
 
 def scale_text(model: ThermoModel) -> str:
-    """The scale factors in words, with where they are from."""
+    """The scale factors in words, with where they are from; that there are none in an anharmonic model."""
+    if model.options.anharmonic:
+        return "fundamentals and zero-point energy as printed: unscaled"
     words = f"scale factors {model.frequency_scale:g} (thermal functions) and {model.zpe_scale:g} (zero-point energy)"
     source = model.scale_source
     return f"{words}, {source}" if source else f"{words}: unscaled"

@@ -38,10 +38,13 @@ def species_document(
         "wavenumbers_cm-1": _numbers(molecule.wavenumbers_cm1),
         "frequency_scale": model.frequency_scale,
         "zpe_scale": model.zpe_scale,
+        "anharmonic": model.options.anharmonic,
         "scale_source": model.scale_source or None,
         "zpe_kJ_mol": significant(model.zpe_kJ_mol),
         "standard_pressure_bar": model.options.pressure_Pa / BAR_PA,
     }
+    if model.options.anharmonic and molecule.fundamentals_cm1 is not None:
+        document["fundamentals_cm-1"] = _numbers(molecule.fundamentals_cm1)
     if entry is not None:
         document["formation"] = _formation(entry.formation)
     document |= {

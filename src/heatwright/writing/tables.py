@@ -26,9 +26,11 @@ def _heading(name: str, model: ThermoModel, table: ThermoTable, units: Units) ->
         n = molecule.wavenumbers_cm1.size
         isomers = f", {model.optical_isomers} optical isomers" if model.optical_isomers > 1 else ""
         yield f"{model.point_group_text}, symmetry number {model.symmetry_number}{isomers}; {constants} cm⁻¹"
+        modes = "anharmonic" if model.options.anharmonic else f"scale factor {model.frequency_scale:g}"
+        zpe = "anharmonic" if model.options.anharmonic else f"scale factor {model.zpe_scale:g}"
         yield (
-            f"{n} mode{'s' if n != 1 else ''}, scale factor {model.frequency_scale:g}; zero-point energy "
-            f"{model.zpe_kJ_mol * units.factor:.3f} {units.enthalpy}, scale factor {model.zpe_scale:g}"
+            f"{n} mode{'s' if n != 1 else ''}, {modes}; zero-point energy "
+            f"{model.zpe_kJ_mol * units.factor:.3f} {units.enthalpy}, {zpe}"
         )
     yield levels_text(model).replace("1/cm x", "cm⁻¹ ×")
     yield f"H°(298.15 K) − H°(0 K) = {table.h298_minus_h0_kJ_mol * units.factor:.3f} {units.enthalpy}"

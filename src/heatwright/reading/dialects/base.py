@@ -12,6 +12,7 @@ import numpy as np
 from heatwright.constants import CCLIB_EV_PER_HARTREE
 from heatwright.findings import Finding, refuse
 from heatwright.molecule import FloatArray, IntArray, Kind, Level, MassKind, PrintedThermo
+from heatwright.reading.fundamentals import Fundamentals
 from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text
 
@@ -100,6 +101,7 @@ class Facts:
     normal_modes: FloatArray | None = None
     hessian_hartree_bohr2: FloatArray | None = None
     hessian_coordinates_A: FloatArray | None = None
+    fundamentals: Fundamentals | None = None
     printed: tuple[PrintedThermo, ...] = ()
     max_gradient_hartree_bohr: float | None = None
     kind: Kind | None = None

@@ -23,6 +23,7 @@ from heatwright.reading.dialects.base import (
     or_plain,
     reconciled,
 )
+from heatwright.reading.fundamentals import gaussian_fundamentals
 from heatwright.reading.hessians import gaussian_archive
 from heatwright.reading.levels import normalise_basis, normalise_method
 from heatwright.reading.parsing import Parsed
@@ -90,6 +91,7 @@ class Gaussian(Dialect):
             masses_u=_masses(job, parsed),
             hessian_hartree_bohr2=hessian,
             hessian_coordinates_A=places,
+            fundamentals=gaussian_fundamentals(job),
             printed=(thermo,) if thermo else (),
             max_gradient_hartree_bohr=_max_gradient(job) if freq else None,
             kind=_scan_kind(job),

@@ -20,6 +20,7 @@ from heatwright.reading.dialects.base import (
     chosen_point,
     or_plain,
 )
+from heatwright.reading.fundamentals import qchem_fundamentals
 from heatwright.reading.hessians import qchem_hessian
 from heatwright.reading.levels import normalise_basis, normalise_method
 from heatwright.reading.parsing import Parsed
@@ -80,6 +81,7 @@ class QChem(Dialect):
             level=_level(job, kind),
             masses_u=_masses(job, len(_atoms(job))),
             hessian_hartree_bohr2=qchem_hessian(job, len(_atoms(job))),
+            fundamentals=qchem_fundamentals(job),
             printed=_printed(job),
         )
 
@@ -92,13 +94,15 @@ def _version(job: Text) -> str:
 
 def _input(job: Text) -> str:
     start = job.find("User input:")
+    if start < 0:
+        return ""
     end = job.find("Standard Nuclear Orientation", start)
-    return str(job.part(start, end if end >= 0 else min(start + 20000, job.end))) if start >= 0 else ""
+    return str(job.part(start, min(end if end >= 0 else job.end, start + 50000)))
 
 
 def _rem(job: Text, key: str) -> str:
     """A setting of the echoed input, lower case; empty when it is not set."""
-    match = re.search(rf"^\s*{key}\s*[= \t]\s*(\S+)", _input(job), re.IGNORECASE | re.MULTILINE)
+    match = re.search(rf"^[ \t]*{key}[ \t]*[= \t][ \t]*(\S+)", _input(job), re.IGNORECASE | re.MULTILINE)
     return match.group(1).lower() if match else ""
 
 
