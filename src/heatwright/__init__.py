@@ -27,7 +27,10 @@ if TYPE_CHECKING:
     from heatwright.polynomial.nasa7 import Nasa7
     from heatwright.polynomial.quality import FitQuality, fit_quality
     from heatwright.reading.outputs import read_output
+    from heatwright.reading.single_point import with_energy
     from heatwright.scales import PublishedFactor, ScaleChoice, choose_published, published_factors
+    from heatwright.structure.isotopes import parse_isotope, with_isotopes
+    from heatwright.structure.modes import projected_modes
     from heatwright.structure.symmetry import Symmetry, symmetry
     from heatwright.writing.context import entries_context
     from heatwright.writing.render import render_format
@@ -62,10 +65,14 @@ _HOME = {
     "formation_given": "formation.formation",
     "make_entry": "entry",
     "parse_enthalpy": "formation.formation",
+    "parse_isotope": "structure.isotopes",
+    "projected_modes": "structure.modes",
     "published_factors": "scales",
     "read_output": "reading.outputs",
     "render_format": "writing.render",
     "symmetry": "structure.symmetry",
+    "with_energy": "reading.single_point",
+    "with_isotopes": "structure.isotopes",
 }
 """Where each public name lives; it is imported when first asked for, so that a command starts quickly."""
 
@@ -100,10 +107,14 @@ __all__ = [
     "formation_given",
     "make_entry",
     "parse_enthalpy",
+    "parse_isotope",
+    "projected_modes",
     "published_factors",
     "read_output",
     "render_format",
     "symmetry",
+    "with_energy",
+    "with_isotopes",
 ]
 
 

@@ -111,4 +111,6 @@ def test_a_checkpoint_file_with_a_hessian_alone_gets_its_wavenumbers_from_it(tmp
     assert m.kind == "frequency"
     assert largest_difference(m.wavenumbers_cm1, full.wavenumbers_cm1) < 0.001
     assert not refusals(m.findings)
-    assert m.max_gradient_hartree_bohr == pytest.approx(7.07e-5, abs=1e-4)
+    assert m.max_gradient_hartree_bohr == pytest.approx(4.738e-5, rel=1e-3)
+    optimised = read_text(tmp_path, text[: text.index("Number of Normal Modes")].replace("Freq   ", "FOpt   ", 1))
+    assert not optimised.wavenumbers_cm1.size  # the force constants may be those an optimiser estimated

@@ -202,7 +202,9 @@ def usable_molecule(path: str, reading: Reading) -> Molecule:
     if missing:
         raise Refused((*missing, *molecule.findings))
     if reading.energy is not None:
-        other = read_output(reading.energy, charge=reading.charge, multiplicity=reading.multiplicity)
+        other = read_output(
+            reading.energy, charge=reading.charge, multiplicity=reading.multiplicity, accept=reading.accept
+        )
         molecule = with_energy(molecule, other)
     return with_isotopes(molecule, reading.isotopes)
 

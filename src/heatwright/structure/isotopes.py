@@ -39,7 +39,7 @@ def parse_isotope(text: str) -> Isotope:
     """``2=2H`` (the second atom), ``H=D`` (all hydrogens), ``1=13C``; raises UsageError for anything else.
 
     >>> parse_isotope("H=D").name, parse_isotope("3=18O").mass_u
-    ('2H', 17.999159613)
+    ('2H', 17.999159612)
     """
     where, _, what = (part.strip() for part in text.partition("="))
     what = _NAMES.get(what.upper(), what)

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable
-from typing import ClassVar
+from typing import ClassVar, Final
 
 import numpy as np
 
@@ -13,6 +13,9 @@ from heatwright.reading.dialects.plain import Plain
 from heatwright.reading.hessians import checkpoint_array, from_triangle
 from heatwright.reading.levels import normalise_basis, normalise_method
 from heatwright.reading.text import Text
+
+_WITHOUT_HESSIAN: Final = frozenset({"sp", "opt", "fopt", "popt", "scan", "force", "ircmax", "irc"})
+"""Types of jobs whose force constants, when a file holds some, are the estimate of an optimiser."""
 
 
 class FChk(Plain):
@@ -35,6 +38,8 @@ class FChk(Plain):
         return Level(method=method, basis=normalise_basis(fields[2]), functional="VWN1RPA" if method == "B3LYP" else "")
 
     def hessian(self, job: Text, n_atoms: int) -> FloatArray | None:
+        if _job_type(job) in _WITHOUT_HESSIAN:
+            return None
         values = checkpoint_array(job, "Cartesian Force Constants")
         return None if values is None else from_triangle(values, 3 * n_atoms)
 
@@ -47,3 +52,9 @@ class FChk(Plain):
         words = "a formatted checkpoint file holds no temperature, pressure, symmetry number or closing line"
         action = "Nothing of the program's own thermochemistry could be checked."
         yield warn("no-normal-termination", words, action=action)
+
+
+def _job_type(job: Text) -> str:
+    """The first word of the second line, lower case."""
+    line = next((text for index, text in enumerate(job.lines(job.start)) if index == 1), "")
+    return line[:10].strip().lower()
