@@ -99,6 +99,13 @@ def test_atomization_compares_the_level_of_the_energy() -> None:
     assert "atoms at MP2/6-31G*" in formation.source
 
 
+def test_an_atom_takes_another_energy_too() -> None:
+    made = with_energy(single("o_atom_rohf"), single("o_atom_mp2"))
+    assert (made.energy_kind, made.level_text) == ("MP2", "MP2/6-31G*//HF/6-31G*")
+    formation = formation_by_atomization(build_model(made), collect_atoms((single("o_atom_mp2"),)))
+    assert formation.dHf0_kJ_mol == pytest.approx(246.844)  # ATcT 1.112
+
+
 def test_the_two_levels_of_atoms_made_by_hand() -> None:
     made = with_energy(water(), water(energies_hartree={"SCF": -76.0}, level=LEVEL))
     atoms = collect_atoms((atom("H", 2, -0.5), atom("O", 3, -75.0)))

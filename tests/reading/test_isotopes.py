@@ -109,6 +109,18 @@ def test_a_job_that_used_deuterium_itself_is_counted_so() -> None:
     assert "non-default-isotope" not in {f.code for f in exchanged(m, "2=1H").findings}
 
 
+def test_two_decimals_are_warned_about_and_enough_for_a_few_wavenumbers() -> None:
+    """Divinylbenzene of Gaussian 16, its displacements rounded as Gaussian prints them without hpmodes."""
+    m = read_output(kept("gaussian16_dvb_freq.out"))
+    assert m.normal_modes is not None
+    coarse = exchanged(m.but(hessian_hartree_bohr2=None, normal_modes=np.round(m.normal_modes, 2)), "H=D")
+    fine = exchanged(m, "H=D")
+    assert [f.severity for f in coarse.findings if f.code == "isotopes"] == ["note", "warn"]
+    assert [f.severity for f in fine.findings if f.code == "isotopes"] == ["note"]
+    assert coarse.wavenumbers_cm1 == pytest.approx(fine.wavenumbers_cm1, abs=8.0)
+    assert coarse.wavenumbers_cm1.sum() == pytest.approx(fine.wavenumbers_cm1.sum(), rel=2e-4)
+
+
 def test_an_atom_only_changes_its_mass() -> None:
     atom = read_output(kept("nwchem702_o_atom_rohf.out"))
     assert exchanged(atom, "O=18O").mass_u == pytest.approx(17.999159613)

@@ -11,12 +11,15 @@ import numpy as np
 
 from heatwright.elements import atomic_number, element
 from heatwright.errors import UsageError
-from heatwright.findings import Finding, Refused, note, refuse
+from heatwright.findings import Finding, Refused, note, refuse, warn
 from heatwright.molecule import FloatArray, Molecule, Stated
 from heatwright.structure.modes import overall_motion, projected_modes, rebuilt_hessian
 
 ORTHONORMAL: Final = 0.1
 """How far printed displacements may be from orthonormal; two printed decimals leave 0.03."""
+COARSE: Final = 3.0e-3
+"""Displacements farther than this from orthonormal are printed with two decimals.  Rounding those of divinylbenzene so
+moved single wavenumbers of its fully deuterated form by up to 8 cm⁻¹ and their sum by 0.02 %."""
 _NAMES: Final = {"D": "2H", "T": "3H"}
 
 
@@ -85,7 +88,7 @@ def with_isotopes(molecule: Molecule, wishes: Iterable[Isotope]) -> Molecule:
     )
     if molecule.is_atom:
         return changes.but(findings=(*left, _said(changed, "")))
-    hessian, source = _force_constants(molecule)
+    hessian, source, deviation = _force_constants(molecule)
     wavenumbers, modes = projected_modes(hessian, masses, molecule.coordinates_A)
     if not (wavenumbers > 0.0).all():
         raise Refused([_no_minimum(float(wavenumbers[0]))])
@@ -93,7 +96,7 @@ def with_isotopes(molecule: Molecule, wishes: Iterable[Isotope]) -> Molecule:
         wavenumbers_cm1=wavenumbers,
         normal_modes=modes,
         hessian_hartree_bohr2=hessian,
-        findings=(*left, _said(changed, f"; wavenumbers anew from {source}")),
+        findings=(*left, _said(changed, f"; wavenumbers anew from {source}"), *_coarse(deviation)),
     )
 
 
@@ -127,11 +130,11 @@ def _no_minimum(wavenumber_cm1: float) -> Finding:
     return refuse("imaginary-modes", found, expected="a minimum", action="Look at the lowest modes of the output.")
 
 
-def _force_constants(molecule: Molecule) -> tuple[FloatArray, str]:
-    """Cartesian force constants, and where they are from."""
+def _force_constants(molecule: Molecule) -> tuple[FloatArray, str, float]:
+    """Cartesian force constants, where they are from, and how far the modes behind them are from orthonormal."""
     H, x, modes = molecule.hessian_hartree_bohr2, molecule.coordinates_A, molecule.normal_modes
     if H is not None and (projected_modes(H, molecule.masses_u, x)[0] > 0.0).all():  # else wavenumbers were changed
-        return H, "the printed Hessian"
+        return H, "the printed Hessian", 0.0
     why = "it has neither a Hessian nor normal modes"
     if len(x) == molecule.n_atoms and modes is not None:
         due = 3 * molecule.n_atoms - overall_motion(molecule.masses_u, x).shape[1]
@@ -139,7 +142,7 @@ def _force_constants(molecule: Molecule) -> tuple[FloatArray, str]:
         if len(modes) == due:
             rebuilt, deviation = rebuilt_hessian(molecule.wavenumbers_cm1, modes, molecule.masses_u, x)
             if deviation <= ORTHONORMAL:
-                return rebuilt, "force constants rebuilt from the printed wavenumbers and modes"
+                return rebuilt, "force constants rebuilt from the printed wavenumbers and modes", deviation
             why = f"its normal modes overlap by {deviation:.2f}, so they are no Cartesian displacements"
     raise Refused(
         [
@@ -153,11 +156,19 @@ def _force_constants(molecule: Molecule) -> tuple[FloatArray, str]:
     )
 
 
+def _coarse(deviation: float) -> tuple[Finding, ...]:
+    if deviation <= COARSE:
+        return ()
+    found = (
+        f"the normal modes are printed with so few decimals that they overlap by {deviation:.3f}; single wavenumbers "
+        "of the other isotopologue may be off by several cm⁻¹"
+    )
+    return (warn("isotopes", found, action="Let the program print more digits, or run the job with the other masses."),)
+
+
 def _said(changed: dict[str, Isotope], how: str) -> Finding:
     by_isotope: dict[str, list[str]] = {}
     for where, wish in changed.items():
         by_isotope.setdefault(f"{wish.name} ({wish.mass_u:.6f} u)", []).append(where.removeprefix("atom "))
-    parts = [
-        f"{name} at atom{'s' if len(atoms) > 1 else ''} {', '.join(atoms)}" for name, atoms in by_isotope.items()
-    ]
+    parts = [f"{name} at atom{'s' if len(atoms) > 1 else ''} {', '.join(atoms)}" for name, atoms in by_isotope.items()]
     return note("isotopes", f"isotopes were exchanged: {'; '.join(parts)}{how}; the electronic energy stays")
