@@ -61,8 +61,12 @@ SIGNS: Final = (
         lines=("Frozen                 !", "frozen, calculate D2E"),
         echo=r"\bfreeze|\bphess|\boniom\b",
     ),
-    Sign("ORCA", "constraints", echo=r"^\s*constraints\b|\{\s*[badc]\s[^}]*\bc\s*\}|\bpartial_hess\b|\bhybrid_hess\b"),
-    Sign("Q-Chem", "constraints", echo=r"\$opt\b.*?\b(?:constraint|fixed)\b.*?\$end|^\s*phess\s*=?\s*[1-9t]"),
+    Sign(
+        "ORCA",
+        "constraints",
+        echo=r"^[ \t]*constraints\b|\{\s*[badc]\s[^}]*\bc\s*\}|\b(?:partial|hybrid)_hess\b|%geom\s+constraints\b",
+    ),
+    Sign("Q-Chem", "constraints", echo=r"\$opt\b.*?\b(?:constraint|fixed)\b.*?\$end|^[ \t]*phess[ \t=]+[1-9t]"),
     Sign(
         "Psi4",
         "constraints",
@@ -72,7 +76,7 @@ SIGNS: Final = (
     Sign("NWChem", "excited-state", lines=("NWChem TDDFT Gradient Module",)),
     Sign("Gaussian", "excited-state", lines=("This state for optimization and/or second-order correction.",)),
     Sign("ORCA", "excited-state", lines=("ORCA TD-DFT", "TD-DFT EXCITED STATES", "CIS EXCITED STATES", "EOM-CCSD")),
-    Sign("Q-Chem", "excited-state", echo=r"^\s*(?:cis_state_deriv|cis_n_roots|ee_states|set_iter)\s*=?\s*[\[1-9]"),
+    Sign("Q-Chem", "excited-state", echo=r"^[ \t]*(?:cis_state_deriv|cis_n_roots|ee_states)[ \t=]+[\[1-9]"),
     Sign("Psi4", "excited-state", echo=r"\beom-cc"),
     Sign("GAMESS", "excited-state", echo=r"\btddft\s*=\s*excite|\bcityp\s*=\s*(?:cis|sfcis)\b"),
 )

@@ -6,7 +6,7 @@ import re
 from dataclasses import dataclass
 from typing import Final
 
-_HEAD = 65536
+HEAD: Final = 65536
 """Characters looked at: programs echo their input, a scheduler's prologue may come first."""
 
 
@@ -99,7 +99,7 @@ def detect(text: str) -> Detected:
     >>> detect("mentions Gaussian, Inc. somewhere, and MOLCAS in a table head").program is None
     True
     """
-    head = text[:_HEAD]
+    head = text[:HEAD]
     imitation = _IMITATION.search(head, 0, 2000)
     if imitation:
         return Detected(None, f"a mode file for viewers written by {imitation.group(1)}")

@@ -78,7 +78,7 @@ def _molecule(
     before: tuple[Finding, ...],
 ) -> Molecule:
     """The molecule of one job with its findings, those *before* first; raises Refused when there is none."""
-    parsed = parse(program.parser, choice.pieces)
+    parsed = parse(program.parser, choice.pieces, with_modes=_shows_modes(dialect, choice))
     facts = _facts(dialect, choice, parsed)
     source = replace(source, version=facts.version)
     with np.errstate(all="ignore"):  # what is not finite is refused by name, not warned about
@@ -93,6 +93,10 @@ def _molecule(
         noticed = (*conditions(molecule, choice), *geometry_differs(molecule, parsed), *soundness(molecule))
         findings = (*before, *choice.findings, *remarks, *of_scale, *of_hessian, *ends, *noticed)
     return molecule.but(findings=_once(findings))
+
+
+def _shows_modes(dialect: Dialect, choice: Choice) -> bool:
+    return any(anchor in choice.job for anchor in dialect.mode_anchors)
 
 
 def _whole_lines(text: str, dialect: Dialect) -> str:

@@ -19,6 +19,7 @@ from typing import Any
 import numpy as np
 
 from heatwright.reading.deferral import without_unused_packages
+from heatwright.reading.skipping import shown_lines
 from heatwright.reading.text import Text
 
 _WANTED = frozenset(
@@ -92,19 +93,35 @@ class Parsed:
             return None
 
 
-def parse(parser: str, pieces: Sequence[Text]) -> Parsed:
-    """Run cclib's parser class of this name over pieces of text, one after the other; never raises, never prints."""
+def parse(parser: str, pieces: Sequence[Text], *, with_modes: bool = False, skip: bool = True) -> Parsed:
+    """Run cclib's parser class of this name over pieces of text, one after the other; never raises, never prints.
+
+    with_modes : whether the text holds vibrational modes.
+    skip : leave out the lines that cannot matter (:mod:`heatwright.reading.skipping`); when atoms, coordinates or modes
+        are missing then, all lines are parsed.
+    """
+    pattern = shown_lines(parser) if skip else None
+    found = _parsed(parser, pieces, pattern)
+    due = ("atomnos", "atomcoords", "charge", "mult", *(("vibfreqs", "vibdisps") if with_modes else ()))
+    if pattern is not None and any(name not in found.values for name in due):
+        found = _parsed(parser, pieces, None)
+    return found
+
+
+def _parsed(parser: str, pieces: Sequence[Text], pattern: re.Pattern[str] | None) -> Parsed:
     sink = io.StringIO()
     with warnings.catch_warnings(), redirect_stdout(sink), redirect_stderr(sink), np.errstate(all="ignore"):
         warnings.simplefilter("ignore")
         log: list[Mishap] = []
         ended: list[bool] = []
-        values = _values(parser, pieces, log, ended)
+        values = _values(parser, pieces, pattern, log, ended)
     return Parsed(values, tuple(log), bool(ended))
 
 
-def _values(parser: str, pieces: Sequence[Text], log: list[Mishap], ended: list[bool]) -> dict[str, Any]:
-    guarded = _guarded(_parser_class(parser), log, ended)
+def _values(
+    parser: str, pieces: Sequence[Text], pattern: re.Pattern[str] | None, log: list[Mishap], ended: list[bool]
+) -> dict[str, Any]:
+    guarded = _guarded(_parser_class(parser), pattern, log, ended)
     run: Any = None
     try:
         run = guarded(_lines(pieces), loglevel=logging.CRITICAL + 1, logstream=io.StringIO())
@@ -168,13 +185,17 @@ def _note(log: list[Mishap], spot: int, error: Exception) -> None:
         log.append(Mishap(spot, f"{type(error).__name__}: {error}".rstrip(": ")))
 
 
-def _guarded(base: Any, log: list[Mishap], ended: list[bool]) -> Any:
+def _guarded(base: Any, pattern: re.Pattern[str] | None, log: list[Mishap], ended: list[bool]) -> Any:
     from cclib.parser.logfileparser import StopParsing
+
+    show, extract = None if pattern is None else pattern.search, base.extract
 
     class Guarded(base):  # type: ignore[misc]
         def extract(self, inputfile: Any, line: str) -> None:
+            if show is not None and not show(line):
+                return
             try:
-                super().extract(inputfile, line)
+                extract(self, inputfile, line)
             except StopIteration:
                 ended.append(True)
                 raise
@@ -186,6 +207,10 @@ def _guarded(base: Any, log: list[Mishap], ended: list[bool]) -> Any:
         def set_attribute(self, name: str, value: Any, check_change: bool = True) -> None:
             """Without the comparison with the old value: it only serves a log message and costs a third of the time."""
             setattr(self, name, value)
+
+        def skip_lines(self, inputfile: Any, sequence: Any) -> list[str]:
+            """Without the checks of what is skipped: they only serve log messages, and cost a look at the stack."""
+            return [next(inputfile) for _ in sequence]
 
         def updateprogress(self, inputfile: Any, msg: str, xupdate: float = 0.05) -> None:
             """Nobody watches."""

@@ -8,6 +8,8 @@ from dataclasses import dataclass
 
 _NUMBER = re.compile(r"[-+]?(?:\d+\.?\d*|\.\d+)(?:[eEdD][-+]?\d+)?")
 _LONG_EXPONENT = re.compile(r"([-+]?\d*\.\d+)([-+]\d{3})")  # Fortran drops the letter before three digits
+LONGEST_LINE = 8192
+"""Characters looked at on either side of an anchor: a file without line ends must not be copied for each of them."""
 _NO_NUMBER = re.compile(r"[-+]?(?:nan|inf|infinity)|\*{3,}", re.IGNORECASE)
 
 
@@ -83,13 +85,23 @@ class Text:
 
     def line(self, spot: int) -> str:
         """The line a position lies in."""
-        first = self.whole.rfind("\n", 0, spot) + 1
-        last = self.whole.find("\n", spot)
-        return self.whole[first : last if last >= 0 else len(self.whole)]
+        return self.whole[self._line_start(spot) : self._line_end(spot)]
+
+    def _line_start(self, spot: int) -> int:
+        """Where the line of a position starts, at most :data:`LONGEST_LINE` before it."""
+        earliest = max(spot - LONGEST_LINE, 0)
+        found = self.whole.rfind("\n", earliest, spot) + 1
+        return found if found else earliest
+
+    def _line_end(self, spot: int) -> int:
+        """Where the line of a position ends, at most :data:`LONGEST_LINE` after it."""
+        latest = min(spot + LONGEST_LINE, len(self.whole))
+        found = self.whole.find("\n", spot, latest)
+        return found if found >= 0 else latest
 
     def lines(self, spot: int) -> Iterator[str]:
         """The lines from the one a position lies in to the end of the part, without one that the file cuts off."""
-        first = max(self.whole.rfind("\n", 0, spot) + 1, self.start)
+        first = max(self._line_start(spot), self.start)
         while first < self.end:
             last = self.whole.find("\n", first, self.end)
             if last < 0 and self.end >= len(self.whole):
@@ -109,8 +121,7 @@ class Text:
     def rest(self, spot: int, anchor: str) -> str:
         """What follows *anchor* (found at *spot*) on its line."""
         first = spot + len(anchor)
-        last = self.whole.find("\n", first)
-        return self.whole[first : last if last >= 0 else len(self.whole)]
+        return self.whole[first : self._line_end(first)]
 
     def rest_of_last(self, anchor: str) -> str:
         """What follows the last *anchor* on its line, stripped; empty when it is not there."""

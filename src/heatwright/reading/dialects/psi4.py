@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+from bisect import bisect_left, bisect_right
 from collections.abc import Iterator
 from typing import ClassVar, Final
 
@@ -55,7 +56,8 @@ class Psi4(Dialect):
         """A job ends with a vibrational analysis, with an optimisation, or where another molecule comes."""
         modules = whole.spots(_MODULE)
         ends = sorted([*whole.spots(_ANALYSIS), *whole.spots("Final optimized geometry")])
-        edges = {next((m for m in modules if m > end), whole.end) for end in ends} | set(_changes(whole, modules))
+        after = (bisect_right(modules, end) for end in ends)
+        edges = {modules[i] if i < len(modules) else whole.end for i in after} | set(_changes(whole, modules))
         return cut(whole, edges)
 
     def prologue(self, first: Text, same_molecule: bool) -> Text:
@@ -176,14 +178,14 @@ def _rows(job: Text, spot: int) -> tuple[tuple[int, ...], FloatArray | None, Flo
 def _changes(whole: Text, modules: list[int]) -> Iterator[int]:
     """Where another molecule, charge or multiplicity comes: the call that prints it first."""
     known: tuple[tuple[int, ...], int | None, int | None] | None = None
-    starts = np.array(modules)
     for spot in _tables(whole):
         atoms = _rows(whole, spot)[0]
         here = (tuple(sorted(atoms)), *_table_head(whole, spot))
         if not atoms:
             continue
-        if known is not None and here != known and starts.size and (starts < spot).any():
-            yield int(starts[starts < spot].max())
+        before = bisect_left(modules, spot)
+        if known is not None and here != known and before:
+            yield modules[before - 1]
         known = here
 
 
@@ -259,8 +261,10 @@ def _entropy(millihartree_per_kelvin: float) -> float:
 
 def _max_gradient(job: Text, coordinates: FloatArray | None) -> float | None:
     """Largest component of the gradient at the geometry of the frequencies, not at a displaced one; None without it."""
+    tables = list(_tables(job))
     for spot in sorted([*job.spots("-Total Gradient:"), *job.spots("-Total gradient:")]):
-        _, here, _ = _rows(job, max((t for t in _tables(job) if t < spot), default=-1))
+        before = bisect_left(tables, spot)
+        _, here, _ = _rows(job, tables[before - 1] if before else -1)
         if here is None or coordinates is None or here.shape != coordinates.shape:
             continue
         if np.abs(here - coordinates).max() < 1e-6:
