@@ -60,12 +60,12 @@ def cut_and_look(folder: Path, name: str, n: int) -> None:
 
 @pytest.mark.parametrize("name", NAMES)
 def test_cut_anywhere(tmp_path: Path, name: str) -> None:
-    cut_and_look(tmp_path, name, 40)
+    cut_and_look(tmp_path, name, 10)
 
 
 @pytest.mark.parametrize("name", LONG)
 def test_long_outputs_cut_anywhere(tmp_path: Path, name: str) -> None:
-    cut_and_look(tmp_path, name, 16)
+    cut_and_look(tmp_path, name, 5)
 
 
 @pytest.mark.long
@@ -181,7 +181,7 @@ def mangle_and_look(folder: Path, name: str, seed: int, n: int) -> None:
 
 @pytest.mark.parametrize("name", NAMES)
 def test_mangled_outputs(tmp_path: Path, name: str) -> None:
-    mangle_and_look(tmp_path, name, 1, 30)
+    mangle_and_look(tmp_path, name, 1, 8)
 
 
 @pytest.mark.long

@@ -78,7 +78,7 @@ def _molecule(
     before: tuple[Finding, ...],
 ) -> Molecule:
     """The molecule of one job with its findings, those *before* first; raises Refused when there is none."""
-    parsed = parse(program.parser, choice.pieces, with_modes=_shows_modes(dialect, choice))
+    parsed = parse(program.parser, choice.pieces, due=_due(dialect, choice))
     facts = _facts(dialect, choice, parsed)
     source = replace(source, version=facts.version)
     with np.errstate(all="ignore"):  # what is not finite is refused by name, not warned about
@@ -95,8 +95,16 @@ def _molecule(
     return molecule.but(findings=_once(findings))
 
 
-def _shows_modes(dialect: Dialect, choice: Choice) -> bool:
-    return any(anchor in choice.job for anchor in dialect.mode_anchors)
+def _due(dialect: Dialect, choice: Choice) -> list[str]:
+    """What cclib has to find in a job, as the dialect knows no better."""
+    due = ["atomnos", "atomcoords"]
+    if any(anchor in choice.job for anchor in dialect.mode_anchors):
+        due += ["vibfreqs", "vibdisps"]
+    if choice.identity.charge is None:
+        due.append("charge")
+    if choice.identity.multiplicity is None:
+        due.append("mult")
+    return due
 
 
 def _whole_lines(text: str, dialect: Dialect) -> str:

@@ -11,7 +11,7 @@ import io
 import logging
 import re
 import warnings
-from collections.abc import Iterator, Sequence
+from collections.abc import Collection, Iterator, Sequence
 from contextlib import redirect_stderr, redirect_stdout
 from dataclasses import dataclass, field
 from typing import Any
@@ -93,16 +93,15 @@ class Parsed:
             return None
 
 
-def parse(parser: str, pieces: Sequence[Text], *, with_modes: bool = False, skip: bool = True) -> Parsed:
+def parse(parser: str, pieces: Sequence[Text], *, due: Collection[str] = (), skip: bool = True) -> Parsed:
     """Run cclib's parser class of this name over pieces of text, one after the other; never raises, never prints.
 
-    with_modes : whether the text holds vibrational modes.
-    skip : leave out the lines that cannot matter (:mod:`heatwright.reading.skipping`); when atoms, coordinates or modes
-        are missing then, all lines are parsed.
+    due : attributes that the text has to have.
+    skip : leave out the lines that cannot matter (:mod:`heatwright.reading.skipping`); when something that is due is
+        missing then, all lines are parsed.
     """
     pattern = shown_lines(parser) if skip else None
     found = _parsed(parser, pieces, pattern)
-    due = ("atomnos", "atomcoords", "charge", "mult", *(("vibfreqs", "vibdisps") if with_modes else ()))
     if pattern is not None and any(name not in found.values for name in due):
         found = _parsed(parser, pieces, None)
     return found

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 
 _NUMBER = re.compile(r"[-+]?(?:\d+\.?\d*|\.\d+)(?:[eEdD][-+]?\d+)?")
 _LONG_EXPONENT = re.compile(r"([-+]?\d*\.\d+)([-+]\d{3})")  # Fortran drops the letter before three digits
-LONGEST_LINE = 8192
+LONGEST_LINE = 2048
 """Characters looked at on either side of an anchor: a file without line ends must not be copied for each of them."""
 _NO_NUMBER = re.compile(r"[-+]?(?:nan|inf|infinity)|\*{3,}", re.IGNORECASE)
 

@@ -138,7 +138,7 @@ def _atoms(job: Text) -> tuple[int, ...]:
 def _energies(job: Text) -> list[Energy]:
     found: list[Energy] = []
     for spot in job.spots("SCF Done:  E("):
-        match = re.search(r"E\([^)]*\) = +(\S+)", job.line(spot))
+        match = re.match(r"SCF Done:  E\([^)\n]{1,40}\) = +(\S+)", job.whole[spot : spot + 200])
         value = number(match.group(1)) if match else None
         if value is not None:
             found.append(Energy(spot, "SCF", value))
@@ -156,7 +156,7 @@ def _iterative(job: Text) -> list[Energy]:
     scf = [*job.spots("SCF Done:  E("), job.end]
     found: list[Energy] = []
     for start, end in pairwise(scf):
-        spot = job.rfind("E(CORR)=", end)
+        spot = job.part(start, end).rfind("E(CORR)=")
         values = numbers(job.rest(spot, "E(CORR)=")) if spot > start else []
         if values:
             found.append(Energy(spot, kind, values[0]))
