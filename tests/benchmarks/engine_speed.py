@@ -14,7 +14,15 @@ from collections.abc import Callable
 
 import numpy as np
 
-from heatwright import build_model, entries_context, formation_given, make_entry, parse_enthalpy, read_output, render_format
+from heatwright import (
+    build_model,
+    entries_context,
+    formation_given,
+    make_entry,
+    parse_enthalpy,
+    read_output,
+    render_format,
+)
 from heatwright.resources import sample_outputs
 
 

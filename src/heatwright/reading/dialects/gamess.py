@@ -4,15 +4,19 @@ from __future__ import annotations
 
 import re
 from collections.abc import Iterable, Iterator
+from dataclasses import replace
 from itertools import islice
 from typing import ClassVar
+
+import numpy as np
 
 from heatwright.constants import ATMOSPHERE_PA, GAS_CONSTANT_J_MOL_K, HARTREE_CM1, HARTREE_KJ_MOL
 from heatwright.findings import Finding, warn
 from heatwright.molecule import FloatArray, Kind, Level, PrintedThermo
-from heatwright.reading.dialects.base import Failure, as_integer
+from heatwright.reading.dialects.base import Facts, Failure, as_integer
 from heatwright.reading.dialects.plain import Plain, last_column
 from heatwright.reading.levels import normalise_method
+from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text, numbers
 
 _RELATIVE = ("AM1", "PM3", "MNDO", "RM1")
@@ -78,6 +82,18 @@ class GAMESSUK(Plain):
 
     def masses(self, job: Text) -> FloatArray | None:
         return last_column(job, " Nuclear masses:", fields=4)
+
+    def wavenumbers(self, job: Text) -> FloatArray | None:
+        """Those over the normal coordinates, which its thermochemistry uses; a second, projected list follows later."""
+        start = job.rfind("frequencies (cm**-1) and normalised normal coordinates")
+        if start < 0:
+            return None
+        found = [n for spot in job.part(start).spots("frequencies ----") for n in numbers(job.line(spot))]
+        return np.array(found) if found else None
+
+    def read(self, job: Text, parsed: Parsed) -> Facts:
+        facts = super().read(job, parsed)
+        return facts if facts.wavenumbers_cm1 is None else replace(facts, normal_modes=parsed.array("vibdisps"))
 
     def level(self, job: Text, kind: str) -> Level | None:
         echoed = re.search(r">>>>> *DFT +(\S+)", str(job.part(job.start, job.start + 20000)), re.IGNORECASE)
