@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import gzip
 from pathlib import Path
+from typing import Any
 
 from heatwright.findings import Refused
 from heatwright.molecule import Molecule
@@ -27,7 +28,7 @@ def codes(molecule: Molecule, severity: str | None = None) -> set[str]:
     return {f.code for f in molecule.findings if severity in (None, f.severity)}
 
 
-def read_text(folder: Path, text: str | bytes, **options: int) -> Molecule:
+def read_text(folder: Path, text: str | bytes, **options: Any) -> Molecule:
     """The molecule of a text that is written to a file first."""
     path = folder / "made.out"
     path.write_bytes(text if isinstance(text, bytes) else text.encode())

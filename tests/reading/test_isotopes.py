@@ -6,6 +6,8 @@ own optimisation, so they agree to the noise of two optimisations.
 
 from __future__ import annotations
 
+from functools import partial
+
 import numpy as np
 import pytest
 
@@ -20,6 +22,8 @@ from heatwright.structure.isotopes import parse_isotope, with_isotopes
 from kept_outputs import codes, kept
 from molecules import water
 from outside import SHARED, needs_shared
+
+read = partial(read_output, with_hessian=True)
 
 H2O, HDO, D2O = "nwchem702_h2o_freq.out", "nwchem702_hdo_3temps.out", "nwchem702_d2o_freq.out"
 CH3OH, CH3OD = "nwchem702_methanol_freq.out", "nwchem702_methanol_od_freq.out"
@@ -42,7 +46,7 @@ def exchanged(m: Molecule, *wishes: str) -> Molecule:
     ],
 )
 def test_against_a_job_of_the_isotopologue(name: str, wish: str, reference: str, hessian: bool) -> None:
-    m, due = read_output(kept(name)), read_output(kept(reference))
+    m, due = read(kept(name)), read(kept(reference))
     assert m.hessian_hartree_bohr2 is not None
     made = exchanged(m if hessian else m.but(hessian_hartree_bohr2=None), wish)
     assert made.wavenumbers_cm1 == pytest.approx(due.wavenumbers_cm1, abs=0.05)
@@ -54,7 +58,7 @@ def test_against_a_job_of_the_isotopologue(name: str, wish: str, reference: str,
 
 
 def test_symmetry_follows_the_masses() -> None:
-    m = read_output(kept(H2O))
+    m = read(kept(H2O))
     assert [build_model(exchanged(m, *w)).symmetry_number for w in ([], ["2=D"], ["H=D"], ["2=D", "3=T"])] == [
         2,
         1,
@@ -79,7 +83,7 @@ def test_symmetry_follows_the_masses() -> None:
 def test_product_rule(name: str, wishes: list[str]) -> None:
     """O. Redlich, Z. phys. Chem. B 28, 371 (1935), as in G. Herzberg, Infrared and Raman Spectra (1945), II,6 (from
     memory): the product of all wavenumbers changes by the masses and moments of inertia alone."""
-    m = read_output(kept(name))
+    m = read(kept(name))
     made = exchanged(m, *wishes)
     moments = [inertia(x.masses_u, x.coordinates_A).principal_moments_u_A2 for x in (m, made)]
     turns = [np.unique(i[i > 0]) if len(i[i > 0]) == 2 else i for i in moments]  # one moment twice when linear
@@ -93,7 +97,7 @@ def test_product_rule(name: str, wishes: list[str]) -> None:
 
 
 def test_what_was_done_is_said_and_the_program_s_own_numbers_no_longer_belong() -> None:
-    made = exchanged(read_output(kept(CH3OH)), "3=D", "C=13C")
+    made = exchanged(read(kept(CH3OH)), "3=D", "C=13C")
     (said,) = [f for f in made.findings if f.code == "isotopes"]
     assert (
         "2H (2.014102 u) at atom 3; 13C (13.003355 u) at atom 1; wavenumbers anew from the printed Hessian" in said.text
@@ -103,7 +107,7 @@ def test_what_was_done_is_said_and_the_program_s_own_numbers_no_longer_belong() 
 
 
 def test_a_job_that_used_deuterium_itself_is_counted_so() -> None:
-    m = read_output(kept(HDO))
+    m = read(kept(HDO))
     assert build_model(m).composition == {"H": 1, "D": 1, "O": 1}
     assert "non-default-isotope" in codes(m)
     assert "non-default-isotope" not in {f.code for f in exchanged(m, "2=1H").findings}
@@ -111,7 +115,7 @@ def test_a_job_that_used_deuterium_itself_is_counted_so() -> None:
 
 def test_two_decimals_are_warned_about_and_enough_for_a_few_wavenumbers() -> None:
     """Divinylbenzene of Gaussian 16, its displacements rounded as Gaussian prints them without hpmodes."""
-    m = read_output(kept("gaussian16_dvb_freq.out"))
+    m = read(kept("gaussian16_dvb_freq.out"))
     assert m.normal_modes is not None
     coarse = exchanged(m.but(hessian_hartree_bohr2=None, normal_modes=np.round(m.normal_modes, 2)), "H=D")
     fine = exchanged(m, "H=D")
@@ -122,7 +126,7 @@ def test_two_decimals_are_warned_about_and_enough_for_a_few_wavenumbers() -> Non
 
 
 def test_an_atom_only_changes_its_mass() -> None:
-    atom = read_output(kept("nwchem702_o_atom_rohf.out"))
+    atom = read(kept("nwchem702_o_atom_rohf.out"))
     assert exchanged(atom, "O=18O").mass_u == pytest.approx(17.999159613)
 
 
@@ -137,12 +141,12 @@ def test_what_is_no_isotope_is_wrong_usage(text: str) -> None:
 )
 def test_an_atom_that_is_not_there_is_refused(wish: str, words: str) -> None:
     with pytest.raises(Refused, match=words) as stopped:
-        exchanged(read_output(kept(H2O)), wish)
+        exchanged(read(kept(H2O)), wish)
     assert {f.code for f in stopped.value.findings} == {"no-such-atom"}
 
 
 def test_without_force_constants_it_is_refused() -> None:
-    m = read_output(kept(H2O)).but(hessian_hartree_bohr2=None)
+    m = read(kept(H2O)).but(hessian_hartree_bohr2=None)
     assert m.normal_modes is not None
     weighted = m.normal_modes * np.sqrt(m.masses_u)[None, :, None]
     for without, words in (
@@ -162,5 +166,5 @@ def test_without_force_constants_it_is_refused() -> None:
 def test_log_and_checkpoint_file_agree_on_a_deuterated_molecule() -> None:
     """Divinylbenzene, B3LYP/STO-3G, Gaussian 16: force constants of the archive entry and of the checkpoint file."""
     assert SHARED is not None
-    log, fchk = (read_output(SHARED / "outputs" / f"gaussian16_dvb_freq.{e}") for e in ("out", "fchk"))
+    log, fchk = (read(SHARED / "outputs" / f"gaussian16_dvb_freq.{e}") for e in ("out", "fchk"))
     assert exchanged(log, "H=D").wavenumbers_cm1 == pytest.approx(exchanged(fchk, "H=D").wavenumbers_cm1, abs=2.0)

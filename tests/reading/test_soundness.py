@@ -8,7 +8,7 @@ import pytest
 from heatwright.constants import HARTREE_CM1
 from heatwright.molecule import Molecule, PrintedThermo
 from heatwright.reading.soundness import expected_modes, is_linear, no_thermochemistry, soundness
-from molecules import molecule
+from molecules import molecule, water
 
 ENERGY = {"energies_hartree": {"SCF": -76.0}}
 WATER_A = [[0.0, 0.0, 0.117], [0.0, 0.757, -0.469], [0.0, -0.757, -0.469]]
@@ -155,3 +155,11 @@ def test_no_thermochemistry() -> None:
     (finding,) = no_thermochemistry(water([], kind="energy"))
     assert (finding.severity, finding.code) == ("refuse", "no-frequencies")
     assert "a single point without vibrational modes" in finding.text
+
+
+def test_a_nearly_linear_molecule_and_a_high_wavenumber_are_warned_about() -> None:
+    bent = molecule("C O O", [[0, 0, 0.03], [0, 1.16, 0], [0, -1.16, 0]], [600.0, 1300.0, 2300.0])
+    straight = molecule("H H", [[0, 0, 0], [0, 0, 0.74]], [5400.0])
+    assert "nearly-linear" in {f.code for f in soundness(bent)}
+    assert "high-wavenumber" in {f.code for f in soundness(straight)}
+    assert not {"nearly-linear", "high-wavenumber"} & {f.code for f in soundness(water())}

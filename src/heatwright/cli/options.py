@@ -195,6 +195,7 @@ def usable_molecule(path: str, reading: Reading) -> Molecule:
         multiplicity=reading.multiplicity,
         accept=reading.accept,
         accept_imaginary_cm1=reading.accept_imaginary_cm1,
+        with_hessian=bool(reading.isotopes),
     )
     if refusals(molecule.findings):
         raise Refused(molecule.findings)

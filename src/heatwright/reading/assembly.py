@@ -13,7 +13,6 @@ from heatwright.findings import Finding, note, refuse
 from heatwright.molecule import FloatArray, IntArray, Kind, Level, MassKind, Molecule, Source
 from heatwright.reading.dialects.base import Facts, Identity
 from heatwright.reading.fundamentals import Fundamentals
-from heatwright.reading.hessians import turned_to
 from heatwright.reading.parsing import Parsed
 from heatwright.structure.modes import unit_displacements
 
@@ -69,7 +68,6 @@ def assemble(
             coordinates_A=coordinates,
             wavenumbers_cm1=vibrations.wavenumbers_cm1,
             normal_modes=vibrations.modes,
-            hessian_hartree_bohr2=_hessian(facts, coordinates) if real.all() else None,
             fundamentals_cm1=fundamentals,
             anharmonic_zpe_hartree=anharmonic_zpe,
             energies_hartree=energies,
@@ -82,12 +80,6 @@ def assemble(
         ),
         tuple(findings),
     )
-
-
-def _hessian(facts: Facts, coordinates: FloatArray) -> FloatArray | None:
-    """The Hessian in the frame of the coordinates."""
-    H, own = facts.hessian_hartree_bohr2, facts.hessian_coordinates_A
-    return H if H is None or own is None else turned_to(H, own, coordinates)
 
 
 def _level(level: Level | None, source: Source, atoms: IntArray) -> Level | None:

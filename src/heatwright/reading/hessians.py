@@ -171,34 +171,39 @@ def turned_to(hessian: FloatArray, own_A: FloatArray, wanted_A: FloatArray) -> F
     return turned_hessian(hessian, found.rotation) if found.rmsd_A < 1.0e-3 else None
 
 
-def with_checked_hessian(molecule: Molecule, *, alone: bool) -> tuple[Molecule, tuple[Finding, ...]]:
-    """The molecule without a Hessian that contradicts its wavenumbers, or with those that only the Hessian has.
+def with_checked_hessian(
+    molecule: Molecule, hessian: FloatArray | None, own_A: FloatArray | None, *, alone: bool
+) -> tuple[Molecule, tuple[Finding, ...]]:
+    """The molecule with a printed Hessian that does not contradict its wavenumbers, or with those only the Hessian has.
 
+    own_A : the coordinates of the Hessian where they are not the molecule's; it is then turned into their frame.
     alone : whether a Hessian without wavenumbers is all that was meant to be there (a checkpoint file), rather than
         what an output that breaks off has left.
     """
-    H, n = molecule.hessian_hartree_bohr2, molecule.n_atoms
-    if H is None or molecule.is_atom:
-        return molecule.but(hessian_hartree_bohr2=None), ()
-    if H.shape != (3 * n, 3 * n) or not all(
-        np.isfinite(x).all() for x in (H, molecule.masses_u, molecule.coordinates_A)
-    ):
-        return molecule.but(hessian_hartree_bohr2=None), ()
+    H, n = hessian, molecule.n_atoms
+    if H is not None and own_A is not None:
+        H = turned_to(H, own_A, molecule.coordinates_A) if own_A.shape == molecule.coordinates_A.shape else None
+    if H is None or molecule.is_atom or H.shape != (3 * n, 3 * n):
+        return molecule, ()
+    if not all(np.isfinite(x).all() for x in (H, molecule.masses_u, molecule.coordinates_A)):
+        return molecule, ()
     wavenumbers, displacements = projected_modes(H, molecule.masses_u, molecule.coordinates_A)
     if not molecule.wavenumbers_cm1.size:
         if not alone:
-            return molecule.but(hessian_hartree_bohr2=None), ()
+            return molecule, ()
         words = "no wavenumbers are printed; they were computed from the printed Hessian"
-        found = molecule.but(wavenumbers_cm1=wavenumbers, normal_modes=displacements, kind="frequency")
+        found = molecule.but(
+            hessian_hartree_bohr2=H, wavenumbers_cm1=wavenumbers, normal_modes=displacements, kind="frequency"
+        )
         return found, (note("modes-from-hessian", words),)
     if (off := largest_difference(wavenumbers, molecule.wavenumbers_cm1)) <= AGREEMENT_CM1:
-        return molecule, ()
+        return molecule.but(hessian_hartree_bohr2=H), ()
     words = "the printed Hessian was not used: " + (
         f"its wavenumbers are up to {off:.1f} cm⁻¹ from the printed ones"
         if np.isfinite(off)
         else f"it has {wavenumbers.size} vibrations, and {molecule.wavenumbers_cm1.size} are printed"
     )
-    return molecule.but(hessian_hartree_bohr2=None), (
+    return molecule, (
         note("hessian-unused", words, expected=f"agreement within {AGREEMENT_CM1:g} cm⁻¹"),
     )
 

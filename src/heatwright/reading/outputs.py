@@ -34,6 +34,7 @@ def read_output(
     multiplicity: int | None = None,
     accept: Collection[str] = (),
     accept_imaginary_cm1: float = 0.0,
+    with_hessian: bool = False,
 ) -> Molecule:
     """The molecule in the output of a quantum-chemistry program, in a molecule file or in a QCSchema result.
 
@@ -41,6 +42,7 @@ def read_output(
     job : which job of the file, counted from 1; needed when the file holds more than one molecule.
     charge, multiplicity : take the place of what the output says (noted among the findings).
     accept : words of :data:`heatwright.reading.acceptance.ACCEPTABLE`; what they name is a warning and no refusal.
+    with_hessian : whether a printed Hessian is read too, which other isotopes need; without wavenumbers it always is.
     accept_imaginary_cm1 : imaginary modes up to this (at most 50 1/cm) are taken as real ones of the same magnitude.
 
     Returns the molecule with every finding about it, those of severity ``refuse`` included: a transition state or a
@@ -61,9 +63,10 @@ def read_output(
     choice = choose(dialect, text, job)
     name = os.fspath(path) if not isinstance(path, bytes) else os.fsdecode(path)
     source = Source(name, stored.sha256, program.name, "")
-    molecule = _molecule(source, program, dialect, choice, (charge, multiplicity), stored.findings)
+    user = (charge, multiplicity)
+    molecule = _molecule(source, program, dialect, choice, user, stored.findings, with_hessian)
     for number in choice.other_analyses:
-        other = _molecule(source, program, dialect, choose(dialect, text, number), (charge, multiplicity), ())
+        other = _molecule(source, program, dialect, choose(dialect, text, number), user, (), False)
         if bonded_differently(molecule, other):
             molecule = molecule.but(findings=(isomers(number, choice.number), *molecule.findings))
     return with_accepted(molecule, accept, accept_imaginary_cm1)
@@ -76,6 +79,7 @@ def _molecule(
     choice: Choice,
     user: tuple[int | None, int | None],
     before: tuple[Finding, ...],
+    with_hessian: bool,
 ) -> Molecule:
     """The molecule of one job with its findings, those *before* first; raises Refused when there is none."""
     parsed = parse(program.parser, choice.pieces, due=_due(dialect, choice))
@@ -88,7 +92,9 @@ def _molecule(
         molecule = molecule.but(job=choice.number, n_jobs=choice.n_jobs)
         molecule = _whole_modes(molecule, dialect, choice, parsed)
         molecule, of_scale = unscaled(molecule, stated_scale(program.name, choice.job))
-        molecule, of_hessian = with_checked_hessian(molecule, alone=not dialect.endings)
+        of_hessian: tuple[Finding, ...] = ()
+        if with_hessian or not molecule.wavenumbers_cm1.size:
+            molecule, of_hessian = with_checked_hessian(molecule, *facts.hessian(), alone=not dialect.endings)
         ends = _endings(molecule, dialect, choice, parsed, damaged=bool(refusals(remarks)))
         noticed = (*conditions(molecule, choice), *geometry_differs(molecule, parsed), *soundness(molecule))
         findings = (*before, *choice.findings, *remarks, *of_scale, *of_hessian, *ends, *noticed)

@@ -27,9 +27,8 @@ TINY_CM1: Final = 10.0
 """Wavenumbers below this are hardly a vibration: the harmonic entropy runs away (common practice, no source)."""
 _ZPE_TOLERANCE: Final = 1.5e-6
 """Largest difference between own and printed zero-point energy that digits explain, hartree."""
-_OWN_SUMS: Final = frozenset({"ADF", "GAMESS-UK"})
-"""Programs whose printed sum is of another list of modes than the one read (ADF leaves low ones out, GAMESS-UK sums
-before it projects rotations out)."""
+_OWN_SUMS: Final = frozenset({"ADF"})
+"""Programs whose printed sum is of another list of modes than the one read (ADF leaves low ones out)."""
 _NWCHEM_LOW: Final = 6.0e-4
 """NWChem's older constants make its printed values 0.048 % low (found by comparing 43 outputs)."""
 

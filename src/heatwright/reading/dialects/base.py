@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
 from itertools import pairwise
 from typing import ClassVar, Final
@@ -83,9 +83,16 @@ class Energy:
     hartree: float
 
 
+PrintedHessian = tuple[FloatArray | None, FloatArray | None]
+"""Force constants (hartree/bohr²) as printed, and the coordinates (Å) they belong to where those are not the modes'."""
+
+
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Facts:
-    """What a dialect read from the text of one job; None or empty where the text says nothing (cclib is asked then)."""
+    """What a dialect read from the text of one job; None or empty where the text says nothing (cclib is asked then).
+
+    hessian : reads the printed force constants when they are wanted, for that takes longer than all the rest.
+    """
 
     version: str = ""
     charge: int | None = None
@@ -99,8 +106,7 @@ class Facts:
     mass_kind: MassKind = "isotopic"
     wavenumbers_cm1: FloatArray | None = None
     normal_modes: FloatArray | None = None
-    hessian_hartree_bohr2: FloatArray | None = None
-    hessian_coordinates_A: FloatArray | None = None
+    hessian: Callable[[], PrintedHessian] = lambda: (None, None)
     fundamentals: Fundamentals | None = None
     printed: tuple[PrintedThermo, ...] = ()
     max_gradient_hartree_bohr: float | None = None

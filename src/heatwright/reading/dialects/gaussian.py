@@ -82,15 +82,13 @@ class Gaussian(Dialect):
         point, kind = chosen_point(_energies(job), reference=reference, first=freq)
         point, kind = or_plain(point, kind, parsed, freq)
         level = _level(job, kind)
-        hessian, places = gaussian_archive(job) or (None, None)
         return Facts(
             version=_version(job),
             energies=point,
             energy_kind=kind,
             level=level,
             masses_u=_masses(job, parsed),
-            hessian_hartree_bohr2=hessian,
-            hessian_coordinates_A=places,
+            hessian=lambda: gaussian_archive(job) or (None, None),
             fundamentals=gaussian_fundamentals(job),
             printed=(thermo,) if thermo else (),
             max_gradient_hartree_bohr=_max_gradient(job) if freq else None,

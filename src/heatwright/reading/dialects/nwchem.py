@@ -113,7 +113,7 @@ class NWChem(Dialect):
             level=level_of(job, kind),
             coordinates_A=coordinates,
             masses_u=masses if masses is not None else _masses_by_tag(Text(job.whole, 0, job.end), atoms),
-            hessian_hartree_bohr2=nwchem_hessian(job, masses),
+            hessian=lambda: (nwchem_hessian(job, masses), None),
             printed=_printed(job),
             wavenumbers_cm1=wavenumbers,
             normal_modes=None if wavenumbers is None else parsed.array("vibdisps"),

@@ -44,7 +44,7 @@ class Plain(Dialect):
             masses_u=masses,
             mass_kind=mass_kind(masses, () if known is None else [int(z) for z in np.ravel(known)]),
             wavenumbers_cm1=self.wavenumbers(job),
-            hessian_hartree_bohr2=self.hessian(job, 0 if known is None else int(np.size(known))),
+            hessian=lambda: (self.hessian(job, 0 if known is None else int(np.size(known))), None),
             printed=self.printed(job),
             max_gradient_hartree_bohr=self.max_gradient(job),
             kind=self.job_kind(job),

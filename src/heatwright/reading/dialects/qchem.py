@@ -80,7 +80,7 @@ class QChem(Dialect):
             energy_kind=kind,
             level=_level(job, kind),
             masses_u=_masses(job, len(_atoms(job))),
-            hessian_hartree_bohr2=qchem_hessian(job, len(_atoms(job))),
+            hessian=lambda: (qchem_hessian(job, len(_atoms(job))), None),
             fundamentals=qchem_fundamentals(job),
             printed=_printed(job),
         )
