@@ -87,6 +87,12 @@ CODES: Final[dict[str, str]] = {
     "anharmonic-unused": "Anharmonic fundamentals are printed; the harmonic wavenumbers were used.",
     "anharmonic": "Anharmonic fundamentals and zero-point energy were used, as asked for.",
     "no-anharmonic": "Anharmonic values were asked for, and the output has none that can be used.",
+    "conformer-differs": "An output given as a conformer is of another composition, charge, multiplicity or isomer.",
+    "conformer-merged": "Two outputs are one and the same conformer; it counts once.",
+    "conformer-mirror": "Mirror images were given one by one, and optical isomers count them already.",
+    "conformers-alike": "Two conformers have nearly the same geometry, but not the same energy.",
+    "conformer-not-lowest": "The first output is not the lowest conformer.",
+    "uncertainty-nonlinear": "The stated input uncertainties are too large for linear propagation.",
     "no-such-atom": "An isotope was asked for at an atom that is not there or is another element.",
     "no-force-constants": "The output cannot give the force constants that another isotope needs.",
     # --- formation ------------------------------------------------------------------------------------------------
