@@ -90,6 +90,7 @@ CODES: Final[dict[str, str]] = {
     "conformer-differs": "An output given as a conformer is of another composition, charge, multiplicity or isomer.",
     "conformer-merged": "Two outputs are one and the same conformer; it counts once.",
     "conformer-mirror": "Mirror images were given one by one, and optical isomers count them already.",
+    "conformers-and-torsion": "Conformers were given beside a torsion whose whole turn may hold them already.",
     "conformers-alike": "Two conformers have nearly the same geometry, but not the same energy.",
     "conformer-not-lowest": "The first output is not the lowest conformer.",
     "uncertainty-nonlinear": "The stated input uncertainties are too large for linear propagation.",

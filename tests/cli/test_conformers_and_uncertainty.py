@@ -194,4 +194,4 @@ def test_too_large_inputs_are_said(run) -> None:
 def test_wrong_uncertainties_are_usage_errors(run, samples: Path) -> None:
     done = run("table", samples / "CH3OH.out", "--uncertainty", "speed=1")
     assert done.code == 2
-    assert "'speed=1' is not KEY=VALUE with one of scale, low, cutoff, conformers" in done.err
+    assert "'speed=1' is not KEY=VALUE with one of scale, low, cutoff, barrier, conformers" in done.err

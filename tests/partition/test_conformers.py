@@ -302,6 +302,13 @@ def test_nearly_one_geometry_with_two_energies_is_a_warning() -> None:
     assert len(made.conformers) == 2
 
 
+def test_conformers_beside_a_torsion_are_a_warning() -> None:
+    trans = model_of("butane_trans")
+    turning = replace(trans, contributions=(*trans.contributions, ConstantFactor("torsion 1-2", 1.0)))
+    assert codes(mixture_model([turning, model_of("butane_gauche")])) == ["conformers-and-torsion"]
+    assert codes(mixture_model([turning])) == []
+
+
 def test_conformers_without_geometry_are_compared_by_constants_and_modes() -> None:
     def stated(constants: tuple[float, ...], energy: float) -> ThermoModel:
         known = Stated(rotational_constants_cm1=constants, symmetry_number=1, point_group="C1")

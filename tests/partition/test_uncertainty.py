@@ -72,7 +72,7 @@ mixtures = st.lists(
 @settings(max_examples=60, deadline=None)
 @given(mixtures, st.floats(100.0, 6000.0))
 def test_sensitivities_of_mixtures_are_derivatives(members, T: float) -> None:
-    inputs, h = stated_inputs(InputUncertainties(), None, len(members)), 1e-3
+    inputs, h = stated_inputs(InputUncertainties(), None, n_conformers=len(members)), 1e-3
     grid = np.array([T])
     for d in directions(members, inputs, 400.0):
         f = {k: total(shifted(members, d, k * h), grid) for k in (-2, -1, 1, 2)}
@@ -86,7 +86,7 @@ def test_sensitivities_of_mixtures_are_derivatives(members, T: float) -> None:
 def test_sensitivities_are_consistent_as_ln_q_is() -> None:
     # d/dT of dH is dCp, and T d/dT of dS is dCp: what is propagated stays a thermodynamic function.
     members = (conformer((90.0, 250.0, 1500.0)), conformer((70.0, 300.0, 1400.0), 3.0))
-    inputs = stated_inputs(InputUncertainties(), None, 2)
+    inputs = stated_inputs(InputUncertainties(), None, n_conformers=2)
     T, h = np.array([400.0]), 0.05
     for d in directions(members, inputs, 400.0):
         low, mid, high = (sensitivity(members, d, T + k * h) for k in (-1, 0, 1))
@@ -116,6 +116,30 @@ def test_contributions_without_closed_sensitivities_are_differentiated_numerical
     assert u.s_J_mol_K == pytest.approx(np.full(4, R * np.sqrt(0.03**2 + 2 * 0.1**2)), rel=1e-10)
     assert u.cp_J_mol_K == pytest.approx(np.zeros(4), abs=1e-10)
     assert u.findings == ()
+
+
+@dataclass(frozen=True, slots=True)
+class BarrierOnly:
+    """A torsion in its classical high-barrier limit, an oscillator with ν² in proportion to its barrier."""
+
+    barrier_cm1: float
+    name = "torsion"
+
+    def ln_q(self, T: np.ndarray) -> LnQ:
+        return HarmonicVibration((10.0 * np.sqrt(self.barrier_cm1),)).ln_q(T)
+
+    def with_barrier_factor(self, factor: float) -> BarrierOnly:
+        return BarrierOnly(self.barrier_cm1 * factor)
+
+
+def test_barriers_move_one_by_one() -> None:
+    hot, stated = np.array([6000.0]), InputUncertainties(scale=0.0, low=0.0, barrier=0.1)
+    made = Conformer("made.out", 0.0, 1, (Translation(30.0), BarrierOnly(30.0), BarrierOnly(60.0)))
+    u = propagated((made,), stated, None, hot)
+    assert [i.key for i in u.inputs] == ["scale", "low", "barrier"]
+    assert float(u.s_J_mol_K[0]) == pytest.approx(np.sqrt(2.0) * R * 0.1 / 2.0, rel=1e-4)  # S = −R/2 ln V each
+    assert u.findings == ()
+    assert stated_inputs(InputUncertainties(), None, torsions=True)[2].source.startswith("assumed")
 
 
 # --- Monte Carlo ---------------------------------------------------------------------------------------------------
@@ -159,7 +183,7 @@ def test_butane_with_its_energy_agrees_with_10000_draws() -> None:
     stated = InputUncertainties(scale=0.01, low=0.0, conformers_kJ_mol=0.3)
     u = propagated(made.conformers, stated, None, T)
     random = np.random.default_rng(7)
-    whole, gauche = directions(made.conformers, stated_inputs(stated, None, 2), 400.0)
+    whole, gauche = directions(made.conformers, stated_inputs(stated, None, n_conformers=2), 400.0)
     both = []
     for a, b in random.standard_normal((10_000, 2)):
         members = shifted(shifted(made.conformers, whole, 0.01 * a), gauche, 0.3 * b)
@@ -185,7 +209,7 @@ def test_the_direction_of_what_is_not_linear_is_that_of_the_draws() -> None:
     made = mixture_model([build_model(read_output(str(DATA / f"{n}.toml"))) for n in names])
     stated, T = InputUncertainties(scale=0.0, low=0.0, conformers_kJ_mol=1.0), np.array([200.0])
     u = propagated(made.conformers, stated, None, T)
-    (d,) = directions(made.conformers, stated_inputs(stated, None, 2), 400.0)
+    (d,) = directions(made.conformers, stated_inputs(stated, None, n_conformers=2), 400.0)
     draws = np.random.default_rng(3).standard_normal(2000)
     truth = np.std([columns(partial(total, shifted(made.conformers, d, k)), T) for k in draws], axis=0)
     assert as_rows(u)[0] < 0.9 * truth[0]
@@ -211,7 +235,7 @@ def test_degenerate_modes_move_together_and_others_alone() -> None:
 def test_factors_are_symmetric() -> None:
     # Too large by a factor is as likely as too small by it: S of a classical oscillator moves by as much either way.
     members = (conformer((30.0,)),)
-    (d,) = directions(members, stated_inputs(InputUncertainties(scale=0.0, low=0.3), None, 1), 400.0)
+    (d,) = directions(members, stated_inputs(InputUncertainties(scale=0.0, low=0.3), None, n_conformers=1), 400.0)
     up, down = (columns(lambda t, k=k: total(shifted(members, d, k * d.u), t), np.array([3000.0]))[2] for k in (1, -1))
     middle = columns(lambda t: total(members, t), np.array([3000.0]))[2]
     assert up - middle == pytest.approx(middle - down, rel=1e-4)
@@ -241,14 +265,17 @@ def test_defaults_and_their_sources() -> None:
     stand_in, said = default_scale(Level("B3LYP", "6-31G*"))
     assert stand_in == value
     assert "none is tabulated for this level" in said
-    assert all(item.source for item in stated_inputs(InputUncertainties(), None, 2))
-    assert [item.source for item in stated_inputs(InputUncertainties(0.01, 0.1), None, 1)] == ["given", "given"]
+    assert all(item.source for item in stated_inputs(InputUncertainties(), None, n_conformers=2))
+    assert [item.source for item in stated_inputs(InputUncertainties(0.01, 0.1), None, n_conformers=1)] == [
+        "given",
+        "given",
+    ]
 
 
 def test_the_text_of_the_option() -> None:
     assert parse_uncertainties("default") == InputUncertainties()
-    all_four = parse_uncertainties("scale=0.02, low=0.1,cutoff=300,conformers=2")
-    assert all_four == InputUncertainties(0.02, 0.1, 300.0, 2.0)
+    everything = parse_uncertainties("scale=0.02, low=0.1,cutoff=300,conformers=2,barrier=0.2")
+    assert everything == InputUncertainties(0.02, 0.1, 300.0, 2.0, 0.2)
 
 
 @pytest.mark.parametrize(

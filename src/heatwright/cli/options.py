@@ -100,8 +100,9 @@ _MODEL_OPTIONS = (
     click.option(
         "--uncertainty",
         metavar="default|LIST",
-        help='Standard uncertainties from those of the inputs: "scale=0.02,low=0.2,cutoff=400,conformers=1" '
-        "(relative, relative, 1/cm, kJ/mol); what is not listed takes its default.",
+        help='Standard uncertainties from those of the inputs: "scale=0.02,low=0.2,cutoff=400,barrier=0.1,'
+        'conformers=1" (relative; cutoff of low modes in 1/cm, conformers in kJ/mol); the others by '
+        "default.",
     ),
     click.option("--charge", type=int, metavar="Q", help="Instead of the output's."),
     click.option("--multiplicity", type=click.IntRange(min=1), metavar="M", help="Instead of the output's."),

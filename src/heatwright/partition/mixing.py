@@ -50,7 +50,7 @@ def mixture_model(models: Sequence[ThermoModel], *, trust_levels: bool = False) 
         contributions=(*lowest.contributions, *([ConformerMixture(members)] if len(members) > 1 else [])),
         conformers=members,
         named_after=first.molecule,
-        findings=(*lowest.findings, *levels, *_order(first, lowest), *said, *others),
+        findings=(*lowest.findings, *levels, *_order(first, lowest), *said, *_torsions(kept), *others),
     )
 
 
@@ -194,6 +194,16 @@ def _order(first: ThermoModel, lowest: ThermoModel) -> tuple[Finding, ...]:
         return ()
     words = f"the first output is not the lowest conformer; {_file(lowest)} lies {below:.3f} kJ/mol below it"
     return (note("conformer-not-lowest", f"{words} and gives energy, H(0), geometry and modes"),)
+
+
+def _torsions(kept: Sequence[ThermoModel]) -> tuple[Finding, ...]:
+    """A warning when a torsion's whole turn may hold what is given as conformers as well."""
+    turned = [m for m in kept if any(c.name.startswith("torsion") for c in m.contributions)]
+    if len(kept) < 2 or not turned:
+        return ()
+    words = "a torsion is treated over its whole turn, and further conformers are given"
+    action = "Leave out the conformers that this torsion turns into each other, which would count twice."
+    return (warn("conformers-and-torsion", words, where=_file(turned[0]), action=action),)
 
 
 def _own_findings(model: ThermoModel, lowest: ThermoModel) -> Iterable[Finding]:

@@ -1,18 +1,19 @@
 """Standard uncertainties of Cp°, H°−H°(298.15 K) and S° from those of their inputs, carried through ln q.
 
 Inputs are shifts δ with the mean 0 and a standard uncertainty each, independent of one another: ν → ν e^δ for
-wavenumbers (a positive quantity is as likely too large by a factor as too small by it), ε → ε + δ for the relative
-energy of a conformer.  The derivatives of ln q, u and w by δ are closed forms for harmonic oscillators and mixtures,
-so the law of propagation (JCGM 100:2008, section 5.1) gives columns that belong together; a comparison with the exact
-change at ±δ says where it does not hold.
+wavenumbers and V → V e^δ for barriers (a positive quantity is as likely too large by a factor as too small by it),
+ε → ε + δ for the relative energy of a conformer.  The derivatives of ln q, u and w by δ are closed forms for harmonic
+oscillators and mixtures, so the law of propagation (JCGM 100:2008, section 5.1) gives columns that belong together; a
+comparison with the exact change at ±δ says where it does not hold.
 """
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterable, Iterator, Sequence
 from dataclasses import dataclass, replace
 from functools import partial
-from typing import Any, Final
+from math import exp
+from typing import Any, Final, Protocol, runtime_checkable
 
 import numpy as np
 from numpy.typing import NDArray
@@ -36,14 +37,37 @@ _NEGLIGIBLE: Final = 0.02
 _COLUMNS: Final = ("Cp°", "H°−H°(298.15 K)", "S°")
 
 
+@runtime_checkable
+class HasBarrier(Protocol):
+    """A contribution with a torsional potential."""
+
+    def with_barrier_factor(self, factor: float) -> Contribution:
+        """The same with its potential multiplied by *factor*: of the same symmetry, so that nothing else changes."""
+        ...
+
+
+@dataclass(frozen=True, eq=False, slots=True)
+class Shift:
+    """What δ does to one conformer: the modes multiplied by e^δ, the torsion (counted from 0) whose barrier is, and
+    the energy that is added (K per δ)."""
+
+    modes: MaskArray
+    torsion: int = -1
+    energy_K: float = 0.0
+
+    @property
+    def is_nothing(self) -> bool:
+        """Whether the conformer stays as it is."""
+        return not self.modes.any() and self.torsion < 0 and self.energy_K == 0.0
+
+
 @dataclass(frozen=True, eq=False, slots=True)
 class Direction:
-    """One independent shift: for each conformer the modes it multiplies by e^δ, and the energy it adds (K per δ)."""
+    """One independent input with its standard uncertainty u, and what a shift of it does to each conformer."""
 
     what: str
     u: float
-    modes: tuple[MaskArray, ...]
-    energy_K: tuple[float, ...]
+    shifts: tuple[Shift, ...]
 
 
 @dataclass(frozen=True, eq=False, slots=True)
@@ -64,7 +88,8 @@ def propagated(
     members: Sequence[Conformer], stated: InputUncertainties, level: Level | None, T: FloatArray
 ) -> TableUncertainty:
     """The standard uncertainties at the temperatures *T* (n,), K, of a species with these conformers (or this one)."""
-    inputs = stated_inputs(stated, level, len(members))
+    torsions = any(isinstance(c, HasBarrier) for m in members for c in m.contributions)
+    inputs = stated_inputs(stated, level, n_conformers=len(members), torsions=torsions)
     found = directions(members, inputs, stated.cutoff_cm1)
     base = columns(partial(total, members), T)
     linear, plus, minus = np.zeros((3, max(len(found), 1), 3, T.size))
@@ -92,27 +117,36 @@ def directions(members: Sequence[Conformer], inputs: Sequence[StatedInput], cuto
     """The independent shifts behind the inputs.
 
     The scale factor moves all modes of all conformers.  Each low mode moves alone, degenerate ones together, the k-th
-    one of every conformer together too, as it is much the same motion.  Each conformer but the lowest has an energy.
+    one of every conformer together too, as it is much the same motion; so do the barriers.  Each conformer but the
+    lowest has an energy.
     """
-    wavenumbers = [np.array([w for c in m.contributions for w in modes_of(c)]) for m in members]
-    still = (0.0,) * len(members)
-    frozen = tuple(np.zeros(w.shape, dtype=bool) for w in wavenumbers)
+    waves = [np.array([w for c in m.contributions for w in modes_of(c)]) for m in members]
+    still = [np.zeros(w.shape, dtype=bool) for w in waves]
+    low = [low_modes(w, cutoff_cm1) for w in waves]
+    n_barriers = [sum(isinstance(c, HasBarrier) for c in m.contributions) for m in members]
+    K_per_kJ_mol = 1000.0 / GAS_CONSTANT_J_MOL_K
     found: list[Direction] = []
+
+    def add(item: StatedInput, what: str, shifts: Iterable[Shift]) -> None:
+        found.append(Direction(what, item.value, tuple(shifts)))
+
     for item in inputs:
-        if item.value == 0.0:
-            continue
         if item.key == "scale":
-            found.append(Direction(item.what, item.value, tuple(~mask for mask in frozen), still))
+            add(item, item.what, (Shift(~no) for no in still))
         elif item.key == "low":
-            groups = [low_modes(w, cutoff_cm1) for w in wavenumbers]
-            for k in range(max(map(len, groups))):
-                masks = tuple(g[k] if k < len(g) else no for g, no in zip(groups, frozen, strict=True))
-                found.append(Direction(f"low mode {k + 1}", item.value, masks, still))
+            for k in range(max(map(len, low))):
+                masks = (own[k] if k < len(own) else no for own, no in zip(low, still, strict=True))
+                add(item, f"low mode {k + 1}", (Shift(mask) for mask in masks))
+        elif item.key == "barrier":
+            for k in range(max(n_barriers)):
+                turned = (k if k < n else -1 for n in n_barriers)
+                add(item, f"barrier {k + 1}", (Shift(no, torsion=t) for no, t in zip(still, turned, strict=True)))
         else:
             for i in range(1, len(members)):
-                each = tuple(1000.0 / GAS_CONSTANT_J_MOL_K if j == i else 0.0 for j in range(len(members)))
-                found.append(Direction(f"energy of {members[i].file}", item.value, frozen, each))
-    return tuple(d for d in found if any(mask.any() for mask in d.modes) or any(d.energy_K))
+                energies = (K_per_kJ_mol if j == i else 0.0 for j in range(len(members)))
+                shifts = (Shift(no, energy_K=e) for no, e in zip(still, energies, strict=True))
+                add(item, f"energy of {members[i].file}", shifts)
+    return tuple(d for d in found if d.u > 0.0 and not all(shift.is_nothing for shift in d.shifts))
 
 
 def modes_of(contribution: Contribution) -> tuple[float, ...]:
@@ -140,10 +174,11 @@ def shifted(members: Sequence[Conformer], direction: Direction, delta: float) ->
     return tuple(
         replace(
             member,
-            relative_energy_kJ_mol=member.relative_energy_kJ_mol + delta * energy_K * GAS_CONSTANT_J_MOL_K / 1000.0,
-            contributions=tuple(c for c, _ in _with_factors(member.contributions, np.exp(delta * mask))),
+            relative_energy_kJ_mol=member.relative_energy_kJ_mol
+            + delta * shift.energy_K * GAS_CONSTANT_J_MOL_K / 1000.0,
+            contributions=tuple(_moved(*each, delta) for each in _own_parts(member.contributions, shift)),
         )
-        for member, mask, energy_K in zip(members, direction.modes, direction.energy_K, strict=True)
+        for member, shift in zip(members, direction.shifts, strict=True)
     )
 
 
@@ -156,8 +191,8 @@ def sensitivity(members: Sequence[Conformer], direction: Direction, T: FloatArra
     own = [conformer_ln_q(member, T) for member in members]
     whole, p = mixed(tuple(own))
     moves = [
-        _member_sensitivity(member.contributions, mask, energy_K, T)
-        for member, mask, energy_K in zip(members, direction.modes, direction.energy_K, strict=True)
+        _member_sensitivity(member.contributions, shift, T)
+        for member, shift in zip(members, direction.shifts, strict=True)
     ]
     u_each, w_each = np.stack([q.u for q in own]), np.stack([q.w for q in own])
     a, b, c = (np.stack([getattr(move, name) for move in moves]) for name in ("ln_q", "u", "w"))
@@ -168,48 +203,49 @@ def sensitivity(members: Sequence[Conformer], direction: Direction, T: FloatArra
     return LnQ(d_ln_q, du, dw)
 
 
-def _member_sensitivity(parts: tuple[Contribution, ...], mask: MaskArray, energy_K: float, T: FloatArray) -> LnQ:
-    e = energy_K / T
-    change = LnQ(-e, e, -2.0 * e)
-    start = 0
+def _own_parts(parts: tuple[Contribution, ...], shift: Shift) -> Iterator[tuple[Contribution, MaskArray, bool]]:
+    """The contributions of a conformer, each with those of its modes that are shifted and whether its barrier is."""
+    start = torsion = 0
     for part in parts:
-        own = mask[start : start + len(modes_of(part))]
-        start += own.size
-        if not own.any():
-            continue
-        if isinstance(part, HarmonicVibration):
+        n = len(modes_of(part))
+        has_barrier = isinstance(part, HasBarrier)
+        yield part, shift.modes[start : start + n], has_barrier and torsion == shift.torsion
+        start += n
+        torsion += has_barrier
+
+
+def _moved(part: Any, own: MaskArray, turned: bool, delta: float) -> Contribution:
+    """A contribution with its shifted modes and barrier multiplied by e^δ."""
+    if own.any():
+        part = replace(part, wavenumbers_cm1=tuple((np.asarray(part.wavenumbers_cm1) * np.exp(delta * own)).tolist()))
+    if turned:
+        part = part.with_barrier_factor(exp(delta))
+    moved: Contribution = part
+    return moved
+
+
+def _member_sensitivity(parts: tuple[Contribution, ...], shift: Shift, T: FloatArray) -> LnQ:
+    e = shift.energy_K / T
+    change = LnQ(-e, e, -2.0 * e)
+    for part, own, turned in _own_parts(parts, shift):
+        if isinstance(part, HarmonicVibration) and own.any():
             each = mode_sensitivities(np.asarray(part.wavenumbers_cm1)[own], T)
             change = change + LnQ(each.ln_q.sum(axis=-1), each.u.sum(axis=-1), each.w.sum(axis=-1))
-        else:
-            change = change + _by_differences(part, own, T)
+        elif own.any() or turned:
+            change = change + _by_differences(partial(_moved, part, own, turned), T)
     return change
 
 
-def _by_differences(part: Contribution, own: MaskArray, T: FloatArray) -> LnQ:
+def _by_differences(moved: Callable[[float], Contribution], T: FloatArray) -> LnQ:
     """The derivative of a contribution without a closed form for it, by central differences of fourth order."""
     h = 1.0e-3
-    values = {k: _scaled(part, np.exp(k * h * own)).ln_q(T) for k in (-2, -1, 1, 2)}
+    values = {k: moved(k * h).ln_q(T) for k in (-2, -1, 1, 2)}
 
     def derivative(name: str) -> FloatArray:
         f = {k: getattr(q, name) for k, q in values.items()}
         return np.asarray((f[-2] - 8.0 * f[-1] + 8.0 * f[1] - f[2]) / (12.0 * h))
 
     return LnQ(derivative("ln_q"), derivative("u"), derivative("w"))
-
-
-def _with_factors(parts: tuple[Contribution, ...], factors: FloatArray) -> list[tuple[Contribution, int]]:
-    """The contributions with their modes multiplied, each with the number of its modes."""
-    found, start = [], 0
-    for part in parts:
-        n = len(modes_of(part))
-        found.append((_scaled(part, factors[start : start + n]) if n else part, n))
-        start += n
-    return found
-
-
-def _scaled(part: Any, factors: FloatArray) -> Contribution:
-    scaled: Contribution = replace(part, wavenumbers_cm1=tuple((np.asarray(part.wavenumbers_cm1) * factors).tolist()))
-    return scaled
 
 
 def _spread(linear: FloatArray, plus: FloatArray, minus: FloatArray) -> FloatArray:
