@@ -10,6 +10,8 @@ from pathlib import Path
 
 import pytest
 
+from kept_outputs import kept
+
 DATA = Path(__file__).resolve().parents[1] / "data" / "conformers"
 TRANS, GAUCHE = DATA / "butane_trans.toml", DATA / "butane_gauche.toml"
 SCALED = ("--frequency-scale", "0.9614", "--zpe-scale", "0.9806")
@@ -118,6 +120,14 @@ def test_refused_conformers_leave_nothing(run, tmp_path: Path) -> None:
     missing = run("table", TRANS, "--conformer", tmp_path / "none.out")
     assert missing.code == 3
     assert "none.out" in missing.err
+
+
+def test_a_conformer_on_a_slope_makes_no_entry(run, samples: Path) -> None:
+    steep = kept("nwchem702_water_steep_freq.out")
+    done = run("entry", samples / "H2O.out", "--conformer", steep, *GIVEN)
+    assert (done.code, done.out) == (3, "")
+    assert f"{steep}: the largest gradient component" in done.err
+    assert "[not-stationary]" in done.err
 
 
 def test_levels_are_trusted_on_request_only(run, tmp_path: Path) -> None:

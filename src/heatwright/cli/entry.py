@@ -291,14 +291,9 @@ def _make(job: _Job, request: Request) -> Entry:
     from dataclasses import replace
 
     from heatwright.entry import make_entry
-    from heatwright.findings import Refused
-    from heatwright.reading.acceptance import unfit_for_entry
     from heatwright.writing.names import default_name
 
-    model = usable_species(job.files, request.reading, request.model, trust_levels=request.trust_levels)
-    unfit = unfit_for_entry(model.molecule, request.reading.accept)
-    if unfit:
-        raise Refused(unfit)
+    model = usable_species(job.files, request.reading, request.model, trust_levels=request.trust_levels, for_entry=True)
     formation = _formation(model, job.given, request)
     if job.name is not None:
         return make_entry(job.name, model, formation, request.fit)

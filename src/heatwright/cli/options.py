@@ -246,17 +246,28 @@ def usable_model(path: str, reading: Reading, options: ModelOptions) -> ThermoMo
 
 
 def usable_species(
-    files: tuple[tuple[str, str | None], ...], reading: Reading, options: ModelOptions, *, trust_levels: bool = False
+    files: tuple[tuple[str, str | None], ...],
+    reading: Reading,
+    options: ModelOptions,
+    *,
+    trust_levels: bool = False,
+    for_entry: bool = False,
 ) -> ThermoModel:
-    """The model of an output and of further conformers, each a file with that of its energy or None; raises Refused."""
+    """The model of an output and of further conformers, each a file with that of its energy or None; raises Refused.
+
+    for_entry : refuse what an entry must not be made of as well.
+    """
     from dataclasses import replace
 
     from heatwright.findings import Refused
+    from heatwright.reading.acceptance import unfit_for_entry
 
     models = []
     for path, energy in files:
         try:
             models.append(usable_model(path, replace(reading, energy=energy), options))
+            if for_entry and (unfit := unfit_for_entry(models[-1].molecule, reading.accept)):
+                raise Refused(unfit)
         except Refused as error:
             raise Refused(f.at(path) for f in error.findings) from error
     if len(models) == 1:
