@@ -22,6 +22,8 @@ if TYPE_CHECKING:
     from heatwright.formation.formation import Formation, formation_given, parse_enthalpy
     from heatwright.molecule import Level, Molecule
     from heatwright.partition.contribution import Contribution, LnQ
+    from heatwright.partition.inputs import InputUncertainties, parse_uncertainties
+    from heatwright.partition.mixing import mixture_model
     from heatwright.partition.model import ModelOptions, ThermoModel, ThermoTable, build_model
     from heatwright.polynomial.fit import fit_nasa7
     from heatwright.polynomial.nasa7 import Nasa7
@@ -43,6 +45,7 @@ _HOME = {
     "FitQuality": "polynomial.quality",
     "Formation": "formation.formation",
     "HeatwrightError": "errors",
+    "InputUncertainties": "partition.inputs",
     "Level": "molecule",
     "LnQ": "partition.contribution",
     "ModelOptions": "partition.model",
@@ -64,8 +67,10 @@ _HOME = {
     "formation_by_atomization": "formation.atomization",
     "formation_given": "formation.formation",
     "make_entry": "entry",
+    "mixture_model": "partition.mixing",
     "parse_enthalpy": "formation.formation",
     "parse_isotope": "structure.isotopes",
+    "parse_uncertainties": "partition.inputs",
     "projected_modes": "structure.modes",
     "published_factors": "scales",
     "read_output": "reading.outputs",
@@ -84,6 +89,7 @@ __all__ = [
     "FitQuality",
     "Formation",
     "HeatwrightError",
+    "InputUncertainties",
     "Level",
     "LnQ",
     "ModelOptions",
@@ -106,8 +112,10 @@ __all__ = [
     "formation_by_atomization",
     "formation_given",
     "make_entry",
+    "mixture_model",
     "parse_enthalpy",
     "parse_isotope",
+    "parse_uncertainties",
     "projected_modes",
     "published_factors",
     "read_output",

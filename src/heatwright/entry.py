@@ -85,16 +85,18 @@ def make_entry(name: str, model: ThermoModel, formation: Formation, options: Fit
         h_RT,
         model.s_R,
         fit.minimax_dCp_R,
-        classical_limit_R=model.classical_cp_R if len(model.levels) == 1 else None,
+        classical_limit_R=model.classical_cp_R if len(model.levels) == 1 and not model.conformers else None,
     )
+    table = model.tabulate(table_grid(options.t_low_K, options.t_high_K))
+    unsure = table.uncertainty.findings if table.uncertainty else ()
     return Entry(
         name=name,
         model=model,
         formation=formation,
         polynomial=fit.polynomial,
         quality=quality,
-        table=model.tabulate(table_grid(options.t_low_K, options.t_high_K)),
-        findings=(*model.molecule.findings, *model.findings, *formation.findings, *quality.findings()),
+        table=table,
+        findings=(*model.molecule.findings, *model.findings, *unsure, *formation.findings, *quality.findings()),
     )
 
 

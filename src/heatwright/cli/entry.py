@@ -12,11 +12,12 @@ from heatwright.cli.options import (
     fit_options,
     model_options,
     outputs_argument,
+    taken_conformers,
     taken_energies,
     taken_model_options,
     taken_reading,
     units_option,
-    usable_model,
+    usable_species,
     words_options,
 )
 from heatwright.cli.reporter import Reporter
@@ -121,10 +122,10 @@ def entry(ctx: click.Context, /, outputs: tuple[str, ...], quiet: bool, verbose:
 
 @dataclass(frozen=True, slots=True)
 class _Job:
-    """One output to make an entry of: where its energy is, the name and enthalpy of formation (with source) stated."""
+    """One output to make an entry of: it and its conformers, each with the file of its energy; name, ΔfH° (source)."""
 
     path: str
-    energy: str | None
+    files: tuple[tuple[str, str | None], ...]
     name: str | None
     given: tuple[GivenEnthalpy, str | None] | None
 
@@ -136,8 +137,13 @@ def _jobs(outputs: tuple[str, ...], options: dict[str, Any]) -> list[_Job]:
             f"--name was given {len(names)} times for {len(outputs)} outputs; give it once for each output"
         )
     given = _given(outputs, options["enthalpies"], options["sources"], options["atoms_folder"], options["route"])
-    energies = taken_energies(options, len(outputs))
-    return [_Job(path, energies[i], names[i] if names else None, given[i]) for i, path in enumerate(outputs)]
+    conformers = taken_conformers(options, len(outputs))
+    energies = taken_energies(options, len(outputs) + len(conformers))
+    further = tuple(zip(conformers, energies[len(outputs) :], strict=True))
+    return [
+        _Job(path, ((path, energies[i]), *further), names[i] if names else None, given[i])
+        for i, path in enumerate(outputs)
+    ]
 
 
 def _made(jobs: list[_Job], request: Request, style: _Style, reporter: Reporter) -> list[tuple[str, Entry]]:
@@ -285,18 +291,13 @@ def _make(job: _Job, request: Request) -> Entry:
     from dataclasses import replace
 
     from heatwright.entry import make_entry
-    from heatwright.findings import Refused
-    from heatwright.reading.acceptance import unfit_for_entry
     from heatwright.writing.names import default_name
 
-    model = usable_model(job.path, replace(request.reading, energy=job.energy), request.model)
-    unfit = unfit_for_entry(model.molecule, request.reading.accept)
-    if unfit:
-        raise Refused(unfit)
+    model = usable_species(job.files, request.reading, request.model, trust_levels=request.trust_levels, for_entry=True)
     formation = _formation(model, job.given, request)
     if job.name is not None:
         return make_entry(job.name, model, formation, request.fit)
-    name, said = default_name(model.molecule, model.composition)
+    name, said = default_name(model.named_after or model.molecule, model.composition)
     made = make_entry(name, model, formation, request.fit)
     return replace(made, findings=(*made.findings, *said))
 

@@ -89,6 +89,21 @@ _MODEL_OPTIONS = (
         metavar="FILE",
         help="Output of a single point at the same geometry that gives the energy; once for each output.",
     ),
+    click.option(
+        "--conformer",
+        "conformers",
+        multiple=True,
+        type=click.Path(),
+        metavar="FILE",
+        help="Output of another conformer of the one OUTPUT; the table is that of their mixture. Can be repeated.",
+    ),
+    click.option(
+        "--uncertainty",
+        metavar="default|LIST",
+        help='Standard uncertainties from those of the inputs: "scale=0.02,low=0.2,cutoff=400,barrier=0.1,'
+        'conformers=1" (relative; cutoff of low modes in 1/cm, conformers in kJ/mol); the others by '
+        "default.",
+    ),
     click.option("--charge", type=int, metavar="Q", help="Instead of the output's."),
     click.option("--multiplicity", type=click.IntRange(min=1), metavar="M", help="Instead of the output's."),
     click.option("--job", type=click.IntRange(min=1), metavar="N", help="One of several jobs in a file."),
@@ -146,12 +161,23 @@ def taken_reading(options: dict[str, Any]) -> Reading:
     )
 
 
+def taken_conformers(options: dict[str, Any], n_outputs: int) -> tuple[str, ...]:
+    """The files of further conformers out of a command's keyword arguments; raises UsageError with several outputs."""
+    conformers: tuple[str, ...] = options.pop("conformers")
+    if conformers and n_outputs != 1:
+        raise UsageError(f"--conformer belongs to one OUTPUT, and there are {n_outputs}; make one species at a time")
+    if conformers and options["symmetry_number"] is not None:
+        raise UsageError("--symmetry-number cannot be said for several conformers at once; each has its own")
+    return conformers
+
+
 def taken_energies(options: dict[str, Any], n_outputs: int) -> tuple[str | None, ...]:
     """The file of each output's energy out of a command's keyword arguments, None where that is the output itself."""
     energies: tuple[str, ...] = options.pop("energies")
     if energies and len(energies) != n_outputs:
         raise UsageError(
-            f"--energy was given {len(energies)} times for {n_outputs} outputs; give it once for each output"
+            f"--energy was given {len(energies)} times for {n_outputs} outputs; give it once for each output, "
+            "conformers included"
         )
     return energies or (None,) * n_outputs
 
@@ -160,9 +186,11 @@ def taken_model_options(options: dict[str, Any]) -> ModelOptions:
     """The model options out of a command's keyword arguments."""
     from heatwright.constants import ATMOSPHERE_PA, BAR_PA
     from heatwright.partition.electronic import parse_levels
+    from heatwright.partition.inputs import parse_uncertainties
     from heatwright.partition.model import ModelOptions
 
     electronic = options.pop("electronic")
+    uncertainty = options.pop("uncertainty")
     scale = options.pop("scale")
     if scale is not None and (options["frequency_scale"] is not None or options["zpe_scale"] is not None):
         raise UsageError("--scale published chooses both factors; leave out --frequency-scale and --zpe-scale")
@@ -177,6 +205,7 @@ def taken_model_options(options: dict[str, Any]) -> ModelOptions:
         symmetry_tolerance_A=options.pop("symmetry_tolerance"),
         electronic=electronic if electronic in ("table", "spin") else parse_levels(electronic),
         masses=options.pop("masses"),
+        uncertainty=None if uncertainty is None else parse_uncertainties(uncertainty),
     )
 
 
@@ -215,6 +244,38 @@ def usable_model(path: str, reading: Reading, options: ModelOptions) -> ThermoMo
     from heatwright.partition.model import build_model
 
     return build_model(usable_molecule(path, reading), options)
+
+
+def usable_species(
+    files: tuple[tuple[str, str | None], ...],
+    reading: Reading,
+    options: ModelOptions,
+    *,
+    trust_levels: bool = False,
+    for_entry: bool = False,
+) -> ThermoModel:
+    """The model of an output and of further conformers, each a file with that of its energy or None; raises Refused.
+
+    for_entry : refuse what an entry must not be made of as well.
+    """
+    from dataclasses import replace
+
+    from heatwright.findings import Refused
+    from heatwright.reading.acceptance import unfit_for_entry
+
+    models = []
+    for path, energy in files:
+        try:
+            models.append(usable_model(path, replace(reading, energy=energy), options))
+            if for_entry and (unfit := unfit_for_entry(models[-1].molecule, reading.accept)):
+                raise Refused(unfit)
+        except Refused as error:
+            raise Refused(f.at(path) for f in error.findings) from error
+    if len(models) == 1:
+        return models[0]
+    from heatwright.partition.mixing import mixture_model
+
+    return mixture_model(models, trust_levels=trust_levels)
 
 
 def temperatures(text: str) -> list[float]:

@@ -9,17 +9,19 @@ import click
 from heatwright.cli.options import (
     model_options,
     outputs_argument,
+    taken_conformers,
     taken_energies,
     taken_model_options,
     taken_reading,
     temperatures,
     units_option,
-    usable_model,
+    usable_species,
     words_options,
 )
 from heatwright.cli.reporter import Reporter
 
 if TYPE_CHECKING:
+    from heatwright.findings import Finding
     from heatwright.partition.model import ThermoModel, ThermoTable
 
     Tabulated = tuple[str, ThermoModel, ThermoTable]
@@ -59,30 +61,34 @@ def table(
     Example:
       heatwright table CH3OH.out --temperatures 298.15,500,1000 --frequency-scale 0.9614
     """
-    from dataclasses import replace
-
     from heatwright.entry import TABLE_TEMPERATURES_K
     from heatwright.findings import Refused
     from heatwright.partition.model import checked_temperatures
     from heatwright.writing.names import default_name
 
     reporter = Reporter(quiet=quiet, verbose=verbose)
-    energies = taken_energies(options, len(outputs))
+    conformers = taken_conformers(options, len(outputs))
+    energies = taken_energies(options, len(outputs) + len(conformers))
     reading, chosen = taken_reading(options), taken_model_options(options)
     grid = checked_temperatures(temperatures(temperatures_text) if temperatures_text else list(TABLE_TEMPERATURES_K))
     done: list[Tabulated] = []
-    for path, energy in zip(outputs, energies, strict=True):
+    further = tuple(zip(conformers, energies[len(outputs) :], strict=True))
+    for path, energy in zip(outputs, energies, strict=False):
         try:
-            model = usable_model(path, replace(reading, energy=energy), chosen)
+            model = usable_species(((path, energy), *further), reading, chosen)
         except Refused as error:
             reporter.fail(path, error.findings)
             continue
-        name, _ = default_name(model.molecule, model.composition)
+        name, _ = default_name(model.named_after or model.molecule, model.composition)
         done.append((name, model, model.tabulate(grid)))
-        reporter.findings(path, (*model.molecule.findings, *model.findings))
+        reporter.findings(path, _findings(*done[-1][1:]))
     click.echo(_text(done, "json" if as_json else format_name, units, reporter), nl=False)
     reporter.tally(len(done), "tabulated")
     ctx.exit(reporter.exit_code)
+
+
+def _findings(model: ThermoModel, values: ThermoTable) -> tuple[Finding, ...]:
+    return (*model.molecule.findings, *model.findings, *(values.uncertainty.findings if values.uncertainty else ()))
 
 
 def _text(done: list[Tabulated], format_name: str, units: str, reporter: Reporter) -> str:
@@ -94,10 +100,7 @@ def _text(done: list[Tabulated], format_name: str, units: str, reporter: Reporte
 
     if format_name == "text":
         return "\n".join(text_table(name, model, values, UNITS[units]) for name, model, values in done)
-    documents = [
-        species_document(name, model, values, (*model.molecule.findings, *model.findings))
-        for name, model, values in done
-    ]
+    documents = [species_document(name, model, values, _findings(model, values)) for name, model, values in done]
     if format_name == "json":
         failed = [failure_document(file, findings) for file, findings in reporter.failed]
         return render_format("json.j2", {"document": whole_document(documents, failed)})

@@ -16,13 +16,16 @@ from heatwright.errors import UsageError
 from heatwright.findings import Finding
 from heatwright.molecule import FloatArray, MassKind, Molecule
 from heatwright.partition.anharmonic import anharmonic_findings, oscillators
+from heatwright.partition.conformers import Conformer, ConformerMixture
 from heatwright.partition.contribution import ConstantFactor, Contribution, LnQ, total_ln_q
 from heatwright.partition.electronic import ElectronicLevels, Levels
+from heatwright.partition.inputs import InputUncertainties
 from heatwright.partition.levels import chosen_levels
 from heatwright.partition.rigid import rigid_body, symmetry_choice
 from heatwright.partition.rotation import ClassicalRotor
 from heatwright.partition.scaling import published_choice, scale_findings
 from heatwright.partition.translation import Translation
+from heatwright.partition.uncertainty import TableUncertainty, propagated
 from heatwright.partition.vibration import HarmonicVibration
 from heatwright.scales import ScaleChoice
 from heatwright.structure.inertia import Inertia
@@ -39,6 +42,7 @@ class ModelOptions:
     optical_isomers : override the geometry.   electronic : ``"table"``, ``"spin"`` or explicit levels.
     masses : isotopic or average atomic masses.   symmetry_tolerance_A : how far an atom may be from its image, Å.
     anharmonic : the output's anharmonic fundamentals and zero-point energy instead of the harmonic ones.
+    uncertainty : standard uncertainties of the inputs that a table propagates, None for a table without.
     """
 
     pressure_Pa: float = BAR_PA
@@ -51,6 +55,7 @@ class ModelOptions:
     masses: MassKind | None = None
     symmetry_tolerance_A: float = 0.05
     anharmonic: bool = False
+    uncertainty: InputUncertainties | None = None
 
     def __post_init__(self) -> None:
         for name in ("pressure_Pa", "frequency_scale", "zpe_scale", "symmetry_tolerance_A"):
@@ -82,6 +87,8 @@ class ThermoTable:
 
     T_K, cp_J_mol_K, h_minus_h298_kJ_mol, s_J_mol_K : (n,).   h298_minus_h0_kJ_mol : enthalpy increment from 0 K.
     shares : by the contribution's name; they add up to the totals.
+    populations : of the model's conformers, one array (n,) each, mirror images together; empty without conformers.
+    uncertainty : standard uncertainties of the columns, when inputs with uncertainties were stated.
     """
 
     T_K: FloatArray
@@ -90,6 +97,8 @@ class ThermoTable:
     s_J_mol_K: FloatArray
     h298_minus_h0_kJ_mol: float
     shares: Mapping[str, Share]
+    populations: tuple[FloatArray, ...] = ()
+    uncertainty: TableUncertainty | None = None
 
     @property
     def minus_g_minus_h298_over_T_J_mol_K(self) -> FloatArray:
@@ -103,6 +112,8 @@ class ThermoModel:
 
     zpe_kJ_mol : scaled zero-point energy.   levels : electronic levels in use, ``levels_source`` where they are from.
     findings : the choices that were made, for the user to read.
+    conformers : those of a mixture, lowest first, which is the one that everything else here describes; else empty.
+    named_after : the molecule that the species is called after, when that is not the lowest conformer.
     """
 
     molecule: Molecule
@@ -119,6 +130,8 @@ class ThermoModel:
     zpe_kJ_mol: float
     findings: tuple[Finding, ...] = field(default=())
     scale_choice: ScaleChoice | None = None
+    conformers: tuple[Conformer, ...] = ()
+    named_after: Molecule | None = None
 
     @property
     def frequency_scale(self) -> float:
@@ -185,7 +198,18 @@ class ThermoModel:
             s_J_mol_K=np.sum([s.s_J_mol_K for s in shares.values()], axis=0),
             h298_minus_h0_kJ_mol=self.h298_minus_h0_kJ_mol,
             shares=shares,
+            populations=self.populations(grid),
+            uncertainty=self._uncertainty(grid),
         )
+
+    def populations(self, T: ArrayLike) -> tuple[FloatArray, ...]:
+        """The fraction of each conformer at the temperatures, mirror images together; empty without conformers."""
+        return tuple(ConformerMixture(self.conformers).populations(checked_temperatures(T))) if self.conformers else ()
+
+    def _uncertainty(self, T: FloatArray) -> TableUncertainty | None:
+        stated = self.options.uncertainty
+        alone = (Conformer(self.molecule.source.file, 0.0, self.optical_isomers, self.contributions),)
+        return None if stated is None else propagated(self.conformers or alone, stated, self.molecule.level, T)
 
     @property
     def h298_minus_h0_kJ_mol(self) -> float:

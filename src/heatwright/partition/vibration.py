@@ -46,6 +46,25 @@ class HarmonicVibration:
         return LnQ(np.log1p(n).sum(axis=-1), u, heat_capacity.sum(axis=-1) - 2.0 * u)
 
 
+def mode_sensitivities(wavenumbers_cm1: Sequence[float] | FloatArray, T: FloatArray) -> LnQ:
+    """Derivatives of each harmonic oscillator's ln q, u and w by the logarithm of its wavenumber.
+
+    wavenumbers_cm1 : (m,), 1/cm.   Each array has the shape of *T* with a last axis (m,) more.
+    All three depend on x = c₂ν/T alone; with U = x n and C = U (U + x):  d ln q = −U,  dU = U − C,
+    dC = (U − C)(U + x) + U (U − C + x), each by d ln x.
+
+    >>> entropy = mode_sensitivities([300.0], np.array([298.15]))
+    >>> bool(np.isclose(entropy.s_R, -HarmonicVibration((300.0,)).ln_q(np.array([298.15])).cp_R))  # dS = −Cv
+    True
+    """
+    x = SECOND_RADIATION_CM_K * np.asarray(wavenumbers_cm1, dtype=float) / T[..., None]
+    u = x * (np.exp(-x) / -np.expm1(-x))
+    c = u * (u + x)
+    du = u - c
+    dc = du * (u + x) + u * (du + x)
+    return LnQ(-u, du, dc - 2.0 * du)
+
+
 def zero_point_energy_kJ_mol(wavenumbers_cm1: Sequence[float] | FloatArray) -> float:
     """Harmonic zero-point energy, half the sum of the wavenumbers (1/cm), in kJ/mol.
 

@@ -11,7 +11,7 @@ from heatwright.entry import Entry
 from heatwright.findings import SEVERITY_WORD, Finding
 from heatwright.formation.formation import Formation
 from heatwright.molecule import Molecule
-from heatwright.partition.model import ThermoModel
+from heatwright.partition.model import ThermoModel, ThermoTable
 from heatwright.writing.units import UNITS, Units
 
 WIDTH: Final = 76
@@ -48,6 +48,7 @@ def comment_lines(entry: Entry) -> tuple[str, ...]:
 
 _RECORDED_NOTES: Final = frozenset(
     {"user-value", "published-scale", "given-by-hand", "isotopes", "energy-from-file", "anharmonic"}
+    | {"conformer-merged", "conformer-not-lowest"}
 )
 
 
@@ -100,7 +101,37 @@ def _treatment(model: ThermoModel) -> tuple[str, ...]:
         f"{motion}; {model.mass_kind} masses",
         *(() if model.molecule.is_atom else (scale_text(model),)),
         levels_text(model),
+        *conformers_text(model),
     )
+
+
+def conformers_text(model: ThermoModel) -> tuple[str, ...]:
+    """The conformers of a mixture in words, with their populations at 298.15 K; nothing for a single one."""
+    if not model.conformers:
+        return ()
+    each = "; ".join(
+        f"{c.file} at {c.relative_energy_kJ_mol:.3f} kJ/mol"
+        f"{f', {c.degeneracy} mirror images' if c.degeneracy > 1 else ''}, population {float(p):.3f}"
+        for c, p in zip(model.conformers, model.populations(STANDARD_TEMPERATURE_K), strict=True)
+    )
+    return (f"mixture of conformers at equilibrium, populations at 298.15 K: {each}",)
+
+
+def uncertainty_text(table: ThermoTable) -> tuple[str, ...]:
+    """The inputs with uncertainties and their sources, in words; nothing for a table without."""
+    if table.uncertainty is None:
+        return ()
+    inputs = "; ".join(f"{item.text} ({item.source})" for item in table.uncertainty.inputs)
+    return (f"standard uncertainties from: {inputs}",)
+
+
+def _uncertainty_298(table: ThermoTable) -> tuple[str, ...]:
+    if table.uncertainty is None:
+        return ()
+    i = int(abs(table.T_K - STANDARD_TEMPERATURE_K).argmin())
+    cp, s = table.uncertainty.cp_J_mol_K[i], table.uncertainty.s_J_mol_K[i]
+    at_298 = f"standard uncertainties at 298.15 K: S {s:.2f}, Cp {cp:.2f} J/mol/K"
+    return (at_298, *uncertainty_text(table))
 
 
 def levels_text(model: ThermoModel) -> str:
@@ -138,6 +169,7 @@ def _thermochemistry(entry: Entry) -> tuple[str, ...]:
         f"S(298.15 K) = {s298:.3f}, Cp(298.15 K) = {cp298:.3f} J/mol/K; "
         f"H(298.15 K) - H(0) = {entry.table.h298_minus_h0_kJ_mol:.3f} kJ/mol",
         f"standard pressure {pressure_text(entry.model.options.pressure_Pa)}",
+        *_uncertainty_298(entry.table),
     )
 
 

@@ -12,6 +12,7 @@ from heatwright.findings import Finding
 from heatwright.formation.formation import Formation
 from heatwright.molecule import FloatArray, Molecule
 from heatwright.partition.model import ThermoModel, ThermoTable
+from heatwright.partition.uncertainty import TableUncertainty
 from heatwright.polynomial.nasa7 import Nasa7
 from heatwright.polynomial.quality import FitQuality
 from heatwright.writing.numbers import significant
@@ -57,6 +58,10 @@ def species_document(
         "H298_minus_H0_kJ_mol": significant(table.h298_minus_h0_kJ_mol),
         "table": _table(table),
     }
+    if model.conformers:
+        document["conformers"] = _conformers(model, table)
+    if table.uncertainty is not None:
+        document["uncertainty"] = _uncertainty(table.uncertainty)
     if entry is not None:
         document |= {"nasa7": _nasa7(entry.polynomial), "residuals": _residuals(entry.quality)}
     document["source"] = source_document(molecule)
@@ -131,6 +136,32 @@ def _table(table: ThermoTable) -> dict[str, Any]:
             }
             for name, share in table.shares.items()
         },
+    }
+
+
+def _conformers(model: ThermoModel, table: ThermoTable) -> list[dict[str, Any]]:
+    """The conformers, lowest first; populations at the table's temperatures, mirror images together."""
+    return [
+        {
+            "file": conformer.file,
+            "relative_energy_kJ_mol": significant(conformer.relative_energy_kJ_mol),
+            "degeneracy": conformer.degeneracy,
+            "populations": _numbers(populations.tolist()),
+        }
+        for conformer, populations in zip(model.conformers, table.populations, strict=True)
+    ]
+
+
+def _uncertainty(uncertainty: TableUncertainty) -> dict[str, Any]:
+    """Standard uncertainties at the table's temperatures and the inputs they are from."""
+    return {
+        "Cp_J_mol_K": _numbers(uncertainty.cp_J_mol_K.tolist()),
+        "H_minus_H298_kJ_mol": _numbers(uncertainty.h_minus_h298_kJ_mol.tolist()),
+        "S_J_mol_K": _numbers(uncertainty.s_J_mol_K.tolist()),
+        "inputs": [
+            {"what": item.what, "value": significant(item.value), "unit": item.unit, "source": item.source}
+            for item in uncertainty.inputs
+        ],
     }
 
 

@@ -144,6 +144,10 @@ def _unwritable(path: str, reason: str) -> Refused:
 
 
 def table_context(documents: Sequence[Mapping[str, Any]]) -> dict[str, Any]:
-    """What the table template sees: the species and the names of all their contributions, in order of appearance."""
+    """What the table template sees: the species and the names of all their contributions, in order of appearance.
+
+    uncertain : whether the species carry uncertainties (a run states them for all species or for none).
+    """
     names = dict.fromkeys(name for species in documents for name in species["table"]["contributions"])
-    return {"species": documents, "contribution_names": list(names)}
+    uncertain = any("uncertainty" in species for species in documents)
+    return {"species": documents, "contribution_names": list(names), "uncertain": uncertain}
