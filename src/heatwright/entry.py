@@ -85,7 +85,7 @@ def make_entry(name: str, model: ThermoModel, formation: Formation, options: Fit
         h_RT,
         model.s_R,
         fit.minimax_dCp_R,
-        classical_limit_R=model.classical_cp_R if len(model.levels) == 1 else None,
+        classical_limit_R=model.classical_limit_R,
     )
     return Entry(
         name=name,

@@ -4,13 +4,16 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import ClassVar
+from typing import ClassVar, Final
 
 import numpy as np
 
 from heatwright.constants import CM1_KJ_MOL, SECOND_RADIATION_CM_K
 from heatwright.molecule import FloatArray
 from heatwright.partition.contribution import LnQ
+
+_CHUNK: Final = 1 << 13
+"""Mode-temperatures done at once, so that the intermediate arrays stay inside a processor's cache."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -21,7 +24,7 @@ class HarmonicVibration:
 
     wavenumbers_cm1 : (m,) already scaled, 1/cm, all positive.
     With n = 1/(eˣ − 1) one mode has U/RT = x n, Cv/R = U/RT (U/RT + x) and ln q = ln(1 + n): a form without
-    cancellation from x = 10⁻⁷ to the underflow of e⁻ˣ.
+    cancellation from x = 10⁻⁷ to the overflow of eˣ, where n is 0.
 
     >>> co = HarmonicVibration((2143.237,)).ln_q(np.array([3000.0]))
     >>> round(float(co.s_R[0]) * 8.31446261815324, 4)
@@ -32,18 +35,40 @@ class HarmonicVibration:
     wavenumbers_cm1: tuple[float, ...]
 
     def __post_init__(self) -> None:
-        for i, wavenumber in enumerate(self.wavenumbers_cm1, start=1):
-            if not wavenumber > 0.0:
-                raise ValueError(f"mode {i} has the wavenumber {wavenumber} 1/cm; a vibration needs a positive one")
+        check_wavenumbers(self.wavenumbers_cm1)
 
     def ln_q(self, T: FloatArray) -> LnQ:
         """Sums over the modes of ln q, u and w."""
-        x = SECOND_RADIATION_CM_K * np.asarray(self.wavenumbers_cm1, dtype=float) / T[..., None]
-        n = np.exp(-x) / -np.expm1(-x)
-        energy = x * n
-        heat_capacity = energy * (energy + x)
-        u = energy.sum(axis=-1)
-        return LnQ(np.log1p(n).sum(axis=-1), u, heat_capacity.sum(axis=-1) - 2.0 * u)
+        return harmonic_sums(np.asarray(self.wavenumbers_cm1, dtype=float), T)
+
+
+def check_wavenumbers(wavenumbers_cm1: Sequence[float]) -> None:
+    """Raises ValueError, naming the mode, unless every wavenumber is positive."""
+    for i, wavenumber in enumerate(wavenumbers_cm1, start=1):
+        if not wavenumber > 0.0:
+            raise ValueError(f"mode {i} has the wavenumber {wavenumber} 1/cm; a vibration needs a positive one")
+
+
+def harmonic_sums(wavenumbers_cm1: FloatArray, T: FloatArray, weights: FloatArray | None = None) -> LnQ:
+    """Sums of ln q, u and w over harmonic oscillators, each times its weight (1 unless given).
+
+    wavenumbers_cm1, weights : (m,).   T : any shape, K.
+    """
+    theta = SECOND_RADIATION_CM_K * wavenumbers_cm1
+    flat = T.reshape(-1)
+    sums = np.empty((3, flat.size))
+    rows = max(1, _CHUNK // max(1, theta.size))
+    with np.errstate(over="ignore"):  # a frozen mode: 1/inf is the 0 that is meant
+        for i in range(0, flat.size, rows):
+            x = theta / flat[i : i + rows, None]
+            n = 1.0 / np.expm1(x)
+            energy = x * n
+            x += energy
+            x *= energy
+            for k, values in enumerate((np.log1p(n, out=n), energy, x)):
+                sums[k, i : i + rows] = values.sum(axis=-1) if weights is None else values @ weights
+    ln_q, u, heat_capacity = sums.reshape(3, *T.shape)
+    return LnQ(ln_q, u, heat_capacity - 2.0 * u)
 
 
 def zero_point_energy_kJ_mol(wavenumbers_cm1: Sequence[float] | FloatArray) -> float:

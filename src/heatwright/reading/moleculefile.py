@@ -3,13 +3,15 @@
 from __future__ import annotations
 
 import re
+from dataclasses import replace
 from typing import Any, Final
 
 import numpy as np
 
 from heatwright.elements import atomic_number, composition, element, formula
 from heatwright.findings import Finding, Refused, note, refuse
-from heatwright.molecule import FloatArray, IntArray, Kind, Level, MassKind, Molecule, Source, Stated
+from heatwright.molecule import DiatomicConstants, FloatArray, IntArray, Kind, Level, MassKind, Molecule, Source, Stated
+from heatwright.reading.diatomic import DIATOMIC_KEYS, diatomic_constants
 from heatwright.reading.levels import normalise_basis, normalise_method, split_dispersion
 from heatwright.reading.strict import Block, parsed
 
@@ -19,6 +21,7 @@ KEYS: Final[dict[str, tuple[str, ...]]] = {
     "rotation": ("constants_cm1", "linear", "source"),
     "symmetry": ("number", "point_group", "optical_isomers", "source"),
     "vibrations": ("wavenumbers_cm1", "source"),
+    "diatomic": DIATOMIC_KEYS,
     "electronic": ("levels_cm1", "source"),
     "energies": ("hartree", "in_use", "source"),
     "level": ("method", "basis", "functional", "spherical", "frozen_core", "core_potential", "dispersion", "solvent",
@@ -26,7 +29,7 @@ KEYS: Final[dict[str, tuple[str, ...]]] = {
 }  # fmt: skip
 """Every table of a molecule file and its keys."""
 
-_SOURCED: Final = ("geometry", "rotation", "vibrations", "electronic", "energies")
+_SOURCED: Final = ("geometry", "rotation", "vibrations", "diatomic", "electronic", "energies")
 """The tables with numbers in them, which have to say where they are from."""
 
 _DATA: Final = {
@@ -34,6 +37,7 @@ _DATA: Final = {
     "rotation": "rotational constants",
     "symmetry": "symmetry",
     "vibrations": "wavenumbers",
+    "diatomic": "diatomic constants",
     "electronic": "electronic levels",
     "energies": "energies",
     "level": "level of theory",
@@ -63,6 +67,11 @@ def molecule_from_toml(text: str, source: Source) -> Molecule:
     wavenumbers = _wavenumbers(blocks["vibrations"]) if "vibrations" in file else np.empty(0)
     energies, in_use = _energies(blocks["energies"]) if "energies" in file else ({}, "")
     head.needs("multiplicity")
+    multiplicity = head.whole("multiplicity", least=1)
+    stated = _stated(file, blocks, numbers.size, len(coordinates) > 0)
+    if "diatomic" in file:
+        stated = _with_diatomic(stated, diatomic_constants(file, blocks["diatomic"], numbers, multiplicity), numbers)
+        wavenumbers = _fundamental(stated)
     return Molecule(
         source=source,
         kind=_kind(numbers.size, wavenumbers.size, len(energies)),
@@ -75,11 +84,28 @@ def molecule_from_toml(text: str, source: Source) -> Molecule:
         energies_hartree=energies,
         energy_kind=in_use,
         charge=head.whole("charge") or 0,
-        multiplicity=head.whole("multiplicity", least=1),
+        multiplicity=multiplicity,
         level=_level(blocks["level"], numbers) if "level" in file else None,
         findings=tuple(_sources(blocks)),
-        stated=_stated(file, blocks, numbers.size, len(coordinates) > 0),
+        stated=stated,
     )
+
+
+def _with_diatomic(stated: Stated, constants: DiatomicConstants, numbers: IntArray) -> Stated:
+    """With the constants, B0 as the rotor and the symmetry number of the two atoms where none is given."""
+    alike = bool(numbers[0] == numbers[1])
+    return replace(
+        stated,
+        diatomic=constants,
+        rotational_constants_cm1=(constants.Be_cm1 - constants.alphae_cm1 / 2.0,),
+        symmetry_number=stated.symmetry_number or (2 if alike else 1),
+        point_group=stated.point_group or ("Dinfh" if alike else "Cinfv"),
+    )
+
+
+def _fundamental(stated: Stated) -> FloatArray:
+    c = stated.diatomic
+    return np.empty(0) if c is None else np.array([c.we_cm1 - 2.0 * c.wexe_cm1])
 
 
 def _sources(blocks: dict[str, Block]) -> list[Finding]:
@@ -122,7 +148,7 @@ def _atoms(file: Block, blocks: dict[str, Block]) -> tuple[IntArray, FloatArray]
         head.wrong("formula", "there is neither a formula nor a geometry", "one of them")
     if len(by_formula) == 1:
         return np.array(by_formula), np.zeros((1, 3))
-    if "rotation" not in file:
+    if "rotation" not in file and "diatomic" not in file:
         head.wrong("formula", "the molecule has neither a [geometry] nor a [rotation] table", "one of them")
     return np.array(by_formula), np.empty((0, 3))
 
