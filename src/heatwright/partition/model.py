@@ -314,7 +314,7 @@ def _without_effect(asked: ModelOptions, options: ModelOptions) -> tuple[Finding
     idle = [name for name in ("scale", *_FOR_OSCILLATORS) if getattr(asked, name) != getattr(options, name)]
     if not idle:
         return ()
-    words = f"{', '.join(idle)} has no effect on levels summed up from spectroscopic constants"
+    words = f"levels summed up from spectroscopic constants are used as they are, without {', '.join(idle)}"
     return (warn("level-sum", words),)
 
 

@@ -8,7 +8,7 @@ from typing import Literal
 import numpy as np
 
 from heatwright.constants import GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
-from heatwright.findings import Finding, Refused, note, refuse
+from heatwright.findings import Finding, Refused, note, refuse, warn
 from heatwright.molecule import DiatomicConstants, FloatArray, Molecule
 from heatwright.partition.contribution import Contribution
 from heatwright.partition.diatomic import level_sum, rotational_levels, vibration_rotation_levels
@@ -77,9 +77,14 @@ def motion(
     rest = (low_modes.kind, low_modes.text, shifts)
     if radical is not None:
         parts = (radical.contribution(), vibration)
-        return Motion(parts, "level sum", "doublet Pi levels", *rest, (radical.finding(), *said))
+        idle = () if rotation == "classical" else (_idle(rotation),)
+        return Motion(parts, "level sum", "doublet Pi levels", *rest, (radical.finding(), *idle, *said))
     rotor, words, finding = _rotor(molecule, moments, masses_u, symmetry_number, rotation)
     return Motion((rotor, vibration, electronic), rotation, words, *rest, (*finding, *said))
+
+
+def _idle(rotation: RotationKind) -> Finding:
+    return warn("level-sum", f"--rotation {rotation} has no effect: rotation is in the sum over doublet Π levels")
 
 
 def _rotor(
@@ -96,7 +101,7 @@ def _rotor(
         )
         return corrected, "rigid rotor with its first quantum correction", (note("rotation", words),)
     if moments.kind != "linear":
-        found = f"the levels of rotation were to be summed up, and the molecule is a {moments.kind}"
+        found = f"the levels of rotation were to be summed up, and the rotor is not linear ({moments.kind})"
         action = "Say --rotation corrected or classical."
         raise Refused([refuse("rotation", found, expected="a linear molecule", action=action)])
     B = classical.rotational_constants_cm1[0]

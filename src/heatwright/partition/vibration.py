@@ -12,8 +12,11 @@ from heatwright.constants import CM1_KJ_MOL, SECOND_RADIATION_CM_K
 from heatwright.molecule import FloatArray
 from heatwright.partition.contribution import LnQ
 
-_CHUNK: Final = 1 << 13
+_CHUNK: Final = 1 << 15
 """Mode-temperatures done at once, so that the intermediate arrays stay inside a processor's cache."""
+
+_FACTORS: Final = 32
+"""Modes whose q are multiplied before the logarithm is taken: no overflow as long as x is above 10⁻⁹."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -24,7 +27,7 @@ class HarmonicVibration:
 
     wavenumbers_cm1 : (m,) already scaled, 1/cm, all positive.
     With n = 1/(eˣ − 1) one mode has U/RT = x n, Cv/R = U/RT (U/RT + x) and ln q = ln(1 + n): a form without
-    cancellation from x = 10⁻⁷ to the overflow of eˣ, where n is 0.
+    cancellation from x = 10⁻⁷ to the overflow of eˣ, where n is 0 (ln q of a frozen mode is good to 10⁻¹⁶, absolutely).
 
     >>> co = HarmonicVibration((2143.237,)).ln_q(np.array([3000.0]))
     >>> round(float(co.s_R[0]) * 8.31446261815324, 4)
@@ -54,21 +57,31 @@ def harmonic_sums(wavenumbers_cm1: FloatArray, T: FloatArray, weights: FloatArra
 
     wavenumbers_cm1, weights : (m,).   T : any shape, K.
     """
-    theta = SECOND_RADIATION_CM_K * wavenumbers_cm1
-    flat = T.reshape(-1)
-    sums = np.empty((3, flat.size))
-    rows = max(1, _CHUNK // max(1, theta.size))
+    theta = SECOND_RADIATION_CM_K * wavenumbers_cm1[:, None]
+    inverse_T = 1.0 / T.reshape(-1)
+    sums = np.empty((3, inverse_T.size))
+    columns = max(1, _CHUNK // max(1, theta.size))
     with np.errstate(over="ignore"):  # a frozen mode: 1/inf is the 0 that is meant
-        for i in range(0, flat.size, rows):
-            x = theta / flat[i : i + rows, None]
-            n = 1.0 / np.expm1(x)
-            energy = x * n
-            x += energy
-            x *= energy
-            for k, values in enumerate((np.log1p(n, out=n), energy, x)):
-                sums[k, i : i + rows] = values.sum(axis=-1) if weights is None else values @ weights
+        for i in range(0, inverse_T.size, columns):
+            sums[:, i : i + columns] = _block(theta * inverse_T[i : i + columns], weights)
     ln_q, u, heat_capacity = sums.reshape(3, *T.shape)
     return LnQ(ln_q, u, heat_capacity - 2.0 * u)
+
+
+def _block(x: FloatArray, weights: FloatArray | None) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Sums over the modes (rows of x, which is overwritten) of ln q, U/RT and Cv/R; as few passes as will do."""
+    n = np.expm1(x)
+    np.reciprocal(n, out=n)
+    energy = x * n
+    x += energy
+    x *= energy
+    n += 1.0
+    if weights is not None:
+        return weights @ np.log(n), weights @ energy, weights @ x
+    ln_q = np.zeros(n.shape[1])
+    for i in range(0, len(n), _FACTORS):
+        ln_q += np.log(np.multiply.reduce(n[i : i + _FACTORS]))
+    return ln_q, np.add.reduce(energy), np.add.reduce(x)
 
 
 def zero_point_energy_kJ_mol(wavenumbers_cm1: Sequence[float] | FloatArray) -> float:
