@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from pathlib import Path
 
 import pytest
@@ -52,6 +53,14 @@ def test_two_different_atoms_have_no_symmetry(tmp_path: Path) -> None:
     model = build_model(read(tmp_path, text))
     assert (model.symmetry_number, model.point_group_text) == (1, "Cinfv")
     assert read(tmp_path, text).stated.diatomic.centrifugal_cm1 == 0.00215
+
+
+def test_the_table_in_the_readme(tmp_path: Path) -> None:
+    readme = (Path(__file__).resolve().parents[2] / "README.md").read_text(encoding="utf-8")
+    _, block = re.findall(r"^```toml\n(.*?)^```", readme, re.MULTILINE | re.DOTALL)
+    head = '[molecule]\nformula = "CO"\nmultiplicity = 1\nmasses = "average"\n'
+    model = build_model(read(tmp_path, head + block))
+    assert float(model.cp_R(3000.0)) * R == pytest.approx(37.217, abs=0.01)  # NIST-JANAF C-093
 
 
 def test_a_doublet(tmp_path: Path) -> None:
