@@ -59,12 +59,11 @@ def harmonic_sums(wavenumbers_cm1: FloatArray, T: FloatArray, weights: FloatArra
     """
     theta = SECOND_RADIATION_CM_K * wavenumbers_cm1[:, None]
     inverse_T = 1.0 / T.reshape(-1)
-    sums = np.empty((3, inverse_T.size))
     columns = max(1, _CHUNK // max(1, theta.size))
     with np.errstate(over="ignore"):  # a frozen mode: 1/inf is the 0 that is meant
-        for i in range(0, inverse_T.size, columns):
-            sums[:, i : i + columns] = _block(theta * inverse_T[i : i + columns], weights)
-    ln_q, u, heat_capacity = sums.reshape(3, *T.shape)
+        blocks = [_block(theta * inverse_T[i : i + columns], weights) for i in range(0, inverse_T.size, columns)]
+    sums = blocks[0] if len(blocks) == 1 else [np.concatenate(parts) for parts in zip(*blocks, strict=True)]
+    ln_q, u, heat_capacity = (values.reshape(T.shape) for values in sums)
     return LnQ(ln_q, u, heat_capacity - 2.0 * u)
 
 
@@ -78,8 +77,8 @@ def _block(x: FloatArray, weights: FloatArray | None) -> tuple[FloatArray, Float
     n += 1.0
     if weights is not None:
         return weights @ np.log(n), weights @ energy, weights @ x
-    ln_q = np.zeros(n.shape[1])
-    for i in range(0, len(n), _FACTORS):
+    ln_q = np.log(np.multiply.reduce(n[:_FACTORS]))
+    for i in range(_FACTORS, len(n), _FACTORS):
         ln_q += np.log(np.multiply.reduce(n[i : i + _FACTORS]))
     return ln_q, np.add.reduce(energy), np.add.reduce(x)
 
