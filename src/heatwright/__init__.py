@@ -20,8 +20,9 @@ if TYPE_CHECKING:
     from heatwright.findings import Finding, Refused
     from heatwright.formation.atomization import collect_atoms, formation_by_atomization
     from heatwright.formation.formation import Formation, formation_given, parse_enthalpy
-    from heatwright.molecule import Level, Molecule
+    from heatwright.molecule import DiatomicConstants, Level, Molecule
     from heatwright.partition.contribution import Contribution, LnQ
+    from heatwright.partition.lowmodes import LowModes
     from heatwright.partition.model import ModelOptions, ThermoModel, ThermoTable, build_model
     from heatwright.polynomial.fit import fit_nasa7
     from heatwright.polynomial.nasa7 import Nasa7
@@ -37,6 +38,7 @@ if TYPE_CHECKING:
 
 _HOME = {
     "Contribution": "partition.contribution",
+    "DiatomicConstants": "molecule",
     "Entry": "entry",
     "Finding": "findings",
     "FitOptions": "entry",
@@ -45,6 +47,7 @@ _HOME = {
     "HeatwrightError": "errors",
     "Level": "molecule",
     "LnQ": "partition.contribution",
+    "LowModes": "partition.lowmodes",
     "ModelOptions": "partition.model",
     "Molecule": "molecule",
     "Nasa7": "polynomial.nasa7",
@@ -78,6 +81,7 @@ _HOME = {
 
 __all__ = [
     "Contribution",
+    "DiatomicConstants",
     "Entry",
     "Finding",
     "FitOptions",
@@ -86,6 +90,7 @@ __all__ = [
     "HeatwrightError",
     "Level",
     "LnQ",
+    "LowModes",
     "ModelOptions",
     "Molecule",
     "Nasa7",

@@ -5,6 +5,8 @@ from __future__ import annotations
 import re
 from pathlib import Path
 
+import janaf
+import numpy as np
 import pytest
 
 from heatwright.constants import GAS_CONSTANT_J_MOL_K as R
@@ -107,3 +109,27 @@ def test_a_spin_orbit_constant_that_cannot_be(tmp_path: Path, A: str, more: str,
     text = HYDROGEN.replace('"H2"', '"OH"').replace("multiplicity = 1", "multiplicity = 2")
     with pytest.raises(Refused, match=words):
         read(tmp_path, f"{text}A_cm1 = {A}\n{more}")
+
+
+# NIST-JANAF D-005 and D-012 through the package janaf; constants of K. P. Huber, G. Herzberg (1979), from memory.
+# Above 400 K the one centrifugal term of so light a molecule is too strong.
+@pytest.mark.parametrize(
+    ("formula", "table", "constants", "sigma"),
+    [
+        ("HD", "D-005", (3813.15, 91.65, 45.655, 1.986), 1),
+        ("D2", "D-012", (3115.50, 61.82, 30.4436, 1.0786), 2),
+    ],
+)
+def test_deuterium(tmp_path: Path, formula: str, table: str, constants: tuple[float, ...], sigma: int) -> None:
+    text = HYDROGEN.replace('"H2"', f'"{formula}"').replace("D0_cm1 = 36118.0\n", "")
+    for old, new in zip((4401.213, 121.336, 60.853, 3.0622), constants, strict=True):
+        text = text.replace(str(old), str(new))
+    molecule = read(tmp_path, text)
+    model = build_model(molecule)
+    assert model.symmetry_number == sigma
+    assert not [f for f in molecule.findings if f.code == "non-default-isotope"]
+    frame = janaf.Table(table).df
+    frame = frame.filter((frame["T(K)"] >= 100.0) & (frame["T(K)"] <= 400.0))
+    T = frame["T(K)"].to_numpy().astype(float)
+    assert np.abs(model.s_R(T) * R - frame["S"].to_numpy().astype(float)).max() < 0.01
+    assert np.abs(model.cp_R(T) * R - frame["Cp"].to_numpy().astype(float)).max() < 0.01

@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import Final
 
-from heatwright.molecule import DiatomicConstants, IntArray
+from heatwright.molecule import DiatomicConstants, FloatArray, IntArray, Stated
 from heatwright.reading.strict import Block
 
 DIATOMIC_KEYS: Final = ("we_cm1", "wexe_cm1", "Be_cm1", "alphae_cm1", "D_cm1", "D0_cm1", "A_cm1", "source")
@@ -35,6 +36,18 @@ def diatomic_constants(file: Block, block: Block, numbers: IntArray, multiplicit
         block.wrong("A_cm1", f"A_cm1 {found}", "the spin-orbit constant of a doublet Π state and no other levels")
     return DiatomicConstants(
         we_cm1=we, wexe_cm1=wexe, Be_cm1=Be, alphae_cm1=alphae, D_cm1=D, D0_cm1=D0, A_cm1=A, source=block.word("source")
+    )
+
+
+def with_diatomic(stated: Stated, constants: DiatomicConstants, numbers: IntArray, masses_u: FloatArray) -> Stated:
+    """With the constants, B0 as the rotor and the symmetry number of the two atoms where none is given."""
+    alike = bool(numbers[0] == numbers[1] and abs(masses_u[0] - masses_u[1]) < 0.1)
+    return replace(
+        stated,
+        diatomic=constants,
+        rotational_constants_cm1=(constants.Be_cm1 - constants.alphae_cm1 / 2.0,),
+        symmetry_number=stated.symmetry_number or (2 if alike else 1),
+        point_group=stated.point_group or ("Dinfh" if alike else "Cinfv"),
     )
 
 
