@@ -60,7 +60,7 @@ def doublet_pi_rotation(A_cm1: float, B_cm1: float, D_cm1: float) -> Levels:
 
     >>> energies, weights = doublet_pi_rotation(-139.21, 18.5487, 0.00194)  # OH
     >>> (energies - energies.min())[:2].round(1).tolist(), weights[:2].tolist()  # J = 3/2 and 5/2
-    ([0.0, 83.7], [8.0, 12.0])
+    ([0.0, 83.9], [8.0, 12.0])
     """
     J = np.arange(_last_J(B_cm1, D_cm1) + 1, dtype=float) + 0.5
     Y = A_cm1 / B_cm1

@@ -67,7 +67,7 @@ class CorrectedRotor:
 
     >>> water = CorrectedRotor(ClassicalRotor((27.8806, 14.5216, 9.2777), 2))
     >>> round(water.temperature_K * 8.31446261815324, 1)  # J/mol
-    36.9
+    37.0
     """
 
     name: ClassVar[str] = "rotation"
