@@ -20,9 +20,10 @@ if TYPE_CHECKING:
     from heatwright.findings import Finding, Refused
     from heatwright.formation.atomization import collect_atoms, formation_by_atomization
     from heatwright.formation.formation import Formation, formation_given, parse_enthalpy
-    from heatwright.molecule import Level, Molecule
+    from heatwright.molecule import DiatomicConstants, Level, Molecule
     from heatwright.partition.contribution import Contribution, LnQ
     from heatwright.partition.inputs import InputUncertainties, parse_uncertainties
+    from heatwright.partition.lowmodes import LowModes
     from heatwright.partition.mixing import mixture_model
     from heatwright.partition.model import ModelOptions, ThermoModel, ThermoTable, build_model
     from heatwright.polynomial.fit import fit_nasa7
@@ -39,6 +40,7 @@ if TYPE_CHECKING:
 
 _HOME = {
     "Contribution": "partition.contribution",
+    "DiatomicConstants": "molecule",
     "Entry": "entry",
     "Finding": "findings",
     "FitOptions": "entry",
@@ -48,6 +50,7 @@ _HOME = {
     "InputUncertainties": "partition.inputs",
     "Level": "molecule",
     "LnQ": "partition.contribution",
+    "LowModes": "partition.lowmodes",
     "ModelOptions": "partition.model",
     "Molecule": "molecule",
     "Nasa7": "polynomial.nasa7",
@@ -83,6 +86,7 @@ _HOME = {
 
 __all__ = [
     "Contribution",
+    "DiatomicConstants",
     "Entry",
     "Finding",
     "FitOptions",
@@ -92,6 +96,7 @@ __all__ = [
     "InputUncertainties",
     "Level",
     "LnQ",
+    "LowModes",
     "ModelOptions",
     "Molecule",
     "Nasa7",

@@ -85,7 +85,7 @@ def make_entry(name: str, model: ThermoModel, formation: Formation, options: Fit
         h_RT,
         model.s_R,
         fit.minimax_dCp_R,
-        classical_limit_R=model.classical_cp_R if len(model.levels) == 1 and not model.conformers else None,
+        classical_limit_R=model.classical_limit_R,
     )
     table = model.tabulate(table_grid(options.t_low_K, options.t_high_K))
     unsure = table.uncertainty.findings if table.uncertainty else ()

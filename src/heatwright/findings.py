@@ -94,6 +94,9 @@ CODES: Final[dict[str, str]] = {
     "anharmonic-unused": "Anharmonic fundamentals are printed; the harmonic wavenumbers were used.",
     "anharmonic": "Anharmonic fundamentals and zero-point energy were used, as asked for.",
     "no-anharmonic": "Anharmonic values were asked for, and the output has none that can be used.",
+    "low-modes": "Low modes were not treated as harmonic oscillators; what that moves is said mode by mode.",
+    "rotation": "Rotation was corrected or summed up over its levels, or was to be and cannot be.",
+    "level-sum": "Degrees of freedom were summed up together over real levels, or were to be and cannot be.",
     "no-such-atom": "An isotope was asked for at an atom that is not there or is another element.",
     "no-force-constants": "The output cannot give the force constants that another isotope needs.",
     # --- formation ------------------------------------------------------------------------------------------------

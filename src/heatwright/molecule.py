@@ -87,12 +87,41 @@ class PrintedThermo:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class DiatomicConstants:
+    """Spectroscopic constants of a diatomic molecule, all in 1/cm, in the usual notation.
+
+    we, wexe : vibration.   Be, alphae : rotation.   D : centrifugal constant, 4Be³/we² (Kratzer) when not given.
+    D0 : dissociation energy from the lowest level, or None.   A : spin-orbit constant of a doublet Π state, or None.
+    """
+
+    we_cm1: float
+    wexe_cm1: float
+    Be_cm1: float
+    alphae_cm1: float
+    D_cm1: float | None = None
+    D0_cm1: float | None = None
+    A_cm1: float | None = None
+    source: str = ""
+
+    @property
+    def centrifugal_cm1(self) -> float:
+        """D, 1/cm."""
+        return 4.0 * self.Be_cm1**3 / self.we_cm1**2 if self.D_cm1 is None else self.D_cm1
+
+    @property
+    def zero_point_cm1(self) -> float:
+        """G(0) = we/2 − wexe/4, 1/cm."""
+        return self.we_cm1 / 2.0 - self.wexe_cm1 / 4.0
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class Stated:
     """What a molecule given by hand says in the place of what a geometry or a table would say; empty where it does not.
 
     name : of the species.   rotational_constants_cm1 : one for a linear molecule, three otherwise, 1/cm.
     symmetry_number, point_group, optical_isomers : of the rigid molecule.
     electronic_levels : (1/cm above the ground level, degeneracy) pairs; ``electronic_source`` is where they are from.
+    diatomic : constants whose levels are summed up instead of a rotor and an oscillator.
     """
 
     name: str = ""
@@ -102,6 +131,7 @@ class Stated:
     optical_isomers: int | None = None
     electronic_levels: tuple[tuple[float, int], ...] = ()
     electronic_source: str = ""
+    diatomic: DiatomicConstants | None = None
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)

@@ -2,8 +2,8 @@
 
     python tests/benchmarks/engine_speed.py
 
-Prints microseconds for each step of one species (methanol), medians of many runs, and the engine's ratio to a bare
-numpy.expm1 over the same array of modes and temperatures.
+Prints microseconds for each step of one species (methanol), medians of many runs, and the ratio of harmonic
+vibration to a bare numpy.expm1 over the same array of modes and temperatures.
 """
 
 from __future__ import annotations
@@ -23,6 +23,7 @@ from heatwright import (
     read_output,
     render_format,
 )
+from heatwright.partition.vibration import HarmonicVibration
 from heatwright.resources import sample_outputs
 
 
@@ -54,6 +55,19 @@ def main() -> None:
     }
     for name, (action, runs) in steps.items():
         print(f"{name:<28} {median_us(action, runs):10.1f} us")
+    for n_modes, n_T, runs in ((12, 120, 300), (54, 120, 200), (54, 2000, 30), (300, 5000, 10)):
+        compare_vibration(n_modes, n_T, runs)
+
+
+def compare_vibration(n_modes: int, n_T: int, runs: int) -> None:
+    """Harmonic ln q, u and w against a bare numpy.expm1 over the same array, one after the other, medians."""
+    T, nu = np.linspace(200.0, 6000.0, n_T), np.geomspace(50.0, 3500.0, n_modes)
+    modes, x = HarmonicVibration(tuple(nu)), 1.438777 * nu / T[:, None]
+    ours, bare = zip(
+        *((median_us(lambda: modes.ln_q(T), 3), median_us(lambda: np.expm1(x), 3)) for _ in range(runs)), strict=True
+    )
+    a, b = statistics.median(ours), statistics.median(bare)
+    print(f"vibration {n_modes:4} x {n_T:<5}         {a:10.1f} us   numpy.expm1 {b:8.1f} us   ratio {a / b:5.2f}")
 
 
 if __name__ == "__main__":

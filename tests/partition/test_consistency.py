@@ -9,9 +9,17 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from heatwright.constants import SECOND_RADIATION_CM_K
+from heatwright.molecule import DiatomicConstants
 from heatwright.partition.contribution import ConstantFactor, total_ln_q
+from heatwright.partition.diatomic import (
+    doublet_pi_levels,
+    level_sum,
+    rotational_levels,
+    vibration_rotation_levels,
+)
 from heatwright.partition.electronic import ElectronicLevels
-from heatwright.partition.rotation import ClassicalRotor
+from heatwright.partition.lowmodes import InterpolatedVibration, LowModes
+from heatwright.partition.rotation import ClassicalRotor, CorrectedRotor
 from heatwright.partition.translation import Translation
 from heatwright.partition.vibration import HarmonicVibration
 
@@ -41,7 +49,50 @@ def exact_rotor(constants: tuple[float, ...], sigma: int):
     return lambda T: mpmath.log(mpmath.sqrt(mpmath.pi * T**3 / (C2**3 * product)) / sigma)
 
 
+def exact_interpolation(wavenumbers: list[float], cutoff: float, moment: float):
+    h, k, c = (mpmath.mpf(text) for text in ("6.62607015e-34", "1.380649e-23", "29979245800"))
+
+    def ln_q(T):
+        total = mpmath.mpf(0)
+        for nu in map(mpmath.mpf, wavenumbers):
+            mu = h / (8 * mpmath.pi**2 * nu * c)
+            mu = mu * mpmath.mpf(moment) / (mu + mpmath.mpf(moment))
+            rotor = mpmath.log(mpmath.sqrt(8 * mpmath.pi**3 * mu * k * T / h**2))
+            w = 1 / (1 + (mpmath.mpf(cutoff) / nu) ** 4)
+            total += w * -mpmath.log(1 - mpmath.exp(-C2 * nu / T)) + (1 - w) * rotor
+        return total
+
+    return ln_q
+
+
+def exact_corrected(constants: tuple[float, ...], sigma: int):
+    classical = exact_rotor(constants, sigma)
+    if len(constants) == 1:
+        return lambda T: classical(T) + C2 * mpmath.mpf(constants[0]) / (3 * T)
+    a, b, c = map(mpmath.mpf, constants)
+    theta = C2 / 12 * (2 * a + 2 * b + 2 * c - b * c / a - a * c / b - a * b / c)
+    return lambda T: classical(T) + theta / T
+
+
+HYDROGEN = DiatomicConstants(we_cm1=4401.213, wexe_cm1=121.336, Be_cm1=60.853, alphae_cm1=3.0622, D0_cm1=36118.0)
+HYDROXYL = DiatomicConstants(
+    we_cm1=3737.761, wexe_cm1=84.8813, Be_cm1=18.9108, alphae_cm1=0.7242, D0_cm1=9000.0, A_cm1=-139.21
+)
+SUMS = [
+    level_sum("rotation", rotational_levels(59.3219, 0.0471, 0.25, 0.75)),
+    level_sum("vibration and rotation", vibration_rotation_levels(HYDROGEN, 0.25, 0.75)),
+    level_sum("vibration, rotation and electronic", doublet_pi_levels(HYDROXYL)),
+]
+
 CASES = [
+    *((s, exact_levels(list(zip(s.energies_cm1 - s.energies_cm1.min(), s.weights, strict=True)))) for s in SUMS),
+    (CorrectedRotor(ClassicalRotor((60.0,), 2)), exact_corrected((60.0,), 2)),
+    (CorrectedRotor(ClassicalRotor((27.9, 14.5, 9.3), 2)), exact_corrected((27.9, 14.5, 9.3), 2)),
+    (
+        InterpolatedVibration((12.0, 350.0, 1500.0, 3800.0), 120.0, 2.0e-44),
+        exact_interpolation([12.0, 350.0, 1500.0, 3800.0], 120.0, 2.0e-44),
+    ),
+    (LowModes("floor", 80.0).contribution((12.0, 350.0)), exact_vibration([80.0, 350.0])),
     (Translation(31.5, 101325.0), exact_translation(31.5, 101325.0)),
     (ClassicalRotor((1.9,), 2), exact_rotor((1.9,), 2)),
     (ClassicalRotor((27.9, 14.5, 9.3), 2), exact_rotor((27.9, 14.5, 9.3), 2)),
@@ -67,14 +118,37 @@ levels_of = st.lists(
     st.tuples(st.floats(1.0, 40000.0), st.integers(1, 12)), min_size=0, max_size=5, unique_by=lambda level: level[0]
 ).map(lambda excited: ((0.0, 2), *sorted(excited)))
 
+wavenumbers_of = st.lists(st.floats(1.0, 5000.0), min_size=0, max_size=60).map(tuple)
+
+
+def top(first: float, second: float, share: float) -> CorrectedRotor:
+    """A rotor that some distribution of masses can have: no moment of inertia above the sum of the two others."""
+    low, high = sorted((first, second))
+    third = high + share * low
+    return CorrectedRotor(ClassicalRotor((1.0 / low, 1.0 / high, 1.0 / third), 1))
+
+
 molecules = st.tuples(
     st.builds(Translation, st.floats(1.0, 1000.0), st.sampled_from([1.0e5, 101325.0])),
-    st.builds(
-        ClassicalRotor,
-        st.one_of(st.tuples(st.floats(0.001, 80.0)), st.tuples(*[st.floats(0.001, 80.0)] * 3)),
-        st.integers(1, 60),
+    st.one_of(
+        st.builds(
+            ClassicalRotor,
+            st.one_of(st.tuples(st.floats(0.001, 80.0)), st.tuples(*[st.floats(0.001, 80.0)] * 3)),
+            st.integers(1, 60),
+        ),
+        st.floats(0.001, 80.0).map(lambda B: CorrectedRotor(ClassicalRotor((B,), 1))),
+        st.builds(top, st.floats(0.05, 500.0), st.floats(0.05, 500.0), st.floats(0.0, 1.0)),
+        st.sampled_from(SUMS),
     ),
-    st.builds(HarmonicVibration, st.lists(st.floats(1.0, 5000.0), min_size=0, max_size=60).map(tuple)),
+    st.one_of(
+        st.builds(HarmonicVibration, wavenumbers_of),
+        st.builds(
+            lambda kind, cutoff, modes: LowModes(kind, cutoff).contribution(modes),
+            st.sampled_from(["floor", "interpolate"]),
+            st.floats(10.0, 400.0),
+            wavenumbers_of,
+        ),
+    ),
     st.builds(ElectronicLevels, levels_of),
     st.builds(ConstantFactor, st.just("optical isomers"), st.integers(1, 4)),
 )

@@ -340,4 +340,6 @@ def _describe(path: str, made: Entry, units_name: str, reporter: Reporter) -> No
                 f"  {line.value_kJ_mol * units.factor:14.3f} {units.enthalpy}  {line.what}"
                 f"{f' ({line.source})' if line.source else ''}"
             )
+    for shift in made.model.motion.shifts:
+        reporter.detail(f"  {shift.text}")
     reporter.findings(path, [f for f in made.findings if f not in refusals(made.findings)])

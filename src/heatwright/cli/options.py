@@ -13,6 +13,7 @@ from heatwright.errors import UsageError
 if TYPE_CHECKING:
     from heatwright.entry import FitOptions
     from heatwright.molecule import Molecule
+    from heatwright.partition.lowmodes import LowModes
     from heatwright.partition.model import ModelOptions, ThermoModel
     from heatwright.structure.isotopes import Isotope
 
@@ -56,6 +57,27 @@ _MODEL_OPTIONS = (
     click.option(
         "--anharmonic", is_flag=True, help="The output's anharmonic fundamentals and zero-point energy, unscaled."
     ),
+    click.option(
+        "--low-modes",
+        type=click.Choice(["harmonic", "floor", "interpolate"]),
+        default="harmonic",
+        show_default=True,
+        help="Low modes: as oscillators, raised to the cut-off, or towards free rotors below it.",
+    ),
+    click.option("--cutoff", type=float, metavar="CM1", help="Cut-off of --low-modes.  [default: 100]"),
+    click.option(
+        "--averaging-moment",
+        type=float,
+        metavar="KG_M2",
+        help="Of --low-modes interpolate, kg m².  [default: 1e-44]",
+    ),
+    click.option(
+        "--rotation",
+        type=click.Choice(["classical", "corrected", "sum"]),
+        default="classical",
+        show_default=True,
+        help="Rigid rotor, with its first quantum correction, or a sum over the levels of a linear molecule.",
+    ),
     click.option("--symmetry-number", type=click.IntRange(min=1), metavar="N", help="Instead of the geometry's."),
     click.option("--optical-isomers", type=click.IntRange(min=1), metavar="N", help="Instead of the geometry's."),
     click.option(
@@ -70,8 +92,9 @@ _MODEL_OPTIONS = (
         "--electronic",
         default="table",
         show_default=True,
-        metavar="table|spin|LEVELS",
-        help='Electronic levels: the built-in table, the spin alone, or such as "0:2,139.21:2" (1/cm : degeneracy).',
+        metavar="table|spin|levels|LEVELS",
+        help="Electronic levels: the built-in table; the spin alone; the table, with a sum over the rotational levels "
+        'of doublet Π radicals; or such as "0:2,139.21:2" (1/cm : degeneracy).',
     ),
     click.option("--masses", type=click.Choice(["isotopic", "average"]), help="Instead of the output's masses."),
     click.option(
@@ -195,6 +218,8 @@ def taken_model_options(options: dict[str, Any]) -> ModelOptions:
     if scale is not None and (options["frequency_scale"] is not None or options["zpe_scale"] is not None):
         raise UsageError("--scale published chooses both factors; leave out --frequency-scale and --zpe-scale")
     return ModelOptions(
+        low_modes=_low_modes(options),
+        rotation=options.pop("rotation"),
         scale=scale,
         anharmonic=options.pop("anharmonic"),
         pressure_Pa={"1bar": BAR_PA, "1atm": ATMOSPHERE_PA}[options.pop("pressure")],
@@ -203,10 +228,22 @@ def taken_model_options(options: dict[str, Any]) -> ModelOptions:
         symmetry_number=options.pop("symmetry_number"),
         optical_isomers=options.pop("optical_isomers"),
         symmetry_tolerance_A=options.pop("symmetry_tolerance"),
-        electronic=electronic if electronic in ("table", "spin") else parse_levels(electronic),
+        electronic=electronic if electronic in ("table", "spin", "levels") else parse_levels(electronic),
         masses=options.pop("masses"),
         uncertainty=None if uncertainty is None else parse_uncertainties(uncertainty),
     )
+
+
+def _low_modes(options: dict[str, Any]) -> LowModes:
+    from heatwright.partition.lowmodes import LowModes
+
+    kind, cutoff, moment = (options.pop(name) for name in ("low_modes", "cutoff", "averaging_moment"))
+    if cutoff is not None and kind == "harmonic":
+        raise UsageError("--cutoff is for --low-modes floor or interpolate")
+    if moment is not None and kind != "interpolate":
+        raise UsageError("--averaging-moment is for --low-modes interpolate")
+    given = {"cutoff_cm1": cutoff, "averaging_moment_kg_m2": moment}
+    return LowModes(kind, **{name: value for name, value in given.items() if value is not None})
 
 
 def usable_molecule(path: str, reading: Reading) -> Molecule:

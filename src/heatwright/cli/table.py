@@ -81,6 +81,8 @@ def table(
             continue
         name, _ = default_name(model.named_after or model.molecule, model.composition)
         done.append((name, model, model.tabulate(grid)))
+        for shift in model.motion.shifts:
+            reporter.detail(f"  {shift.text}")
         reporter.findings(path, _findings(*done[-1][1:]))
     click.echo(_text(done, "json" if as_json else format_name, units, reporter), nl=False)
     reporter.tally(len(done), "tabulated")

@@ -12,19 +12,19 @@ from heatwright.structure.inertia import Inertia
 
 
 def chosen_levels(
-    molecule: Molecule, moments: Inertia, electronic: Literal["table", "spin"] | Levels
+    molecule: Molecule, moments: Inertia, electronic: Literal["table", "spin", "levels"] | Levels
 ) -> tuple[Levels, str, tuple[Finding, ...]]:
     """The electronic levels, where they are from, and what has to be said about the choice."""
     if not isinstance(electronic, str):
         said = note("user-value", f"electronic levels {_levels_text(electronic)} were given")
         return electronic, "given", (said,)
-    if molecule.stated.electronic_levels and electronic == "table":
+    if molecule.stated.electronic_levels and electronic != "spin":
         return molecule.stated.electronic_levels, molecule.stated.electronic_source or "given by hand", ()
     multiplicity, charge = molecule.multiplicity, molecule.charge
     if multiplicity is None or charge is None:
         raise ValueError(f"{molecule.source.file}: charge and multiplicity must be known before levels can be chosen")
     hill = formula(composition(molecule.atomic_numbers))
-    row = tabulated_levels(hill, charge, multiplicity) if electronic == "table" else None
+    row = tabulated_levels(hill, charge, multiplicity) if electronic != "spin" else None
     if row is not None:
         return row.levels, f"{row.state}, {row.source}", ()
     levels: Levels = ((0.0, multiplicity),)
@@ -33,7 +33,7 @@ def chosen_levels(
     said = note(
         "spin-degeneracy",
         f"no electronic levels are tabulated for {hill}; its spin degeneracy {multiplicity} was taken"
-        if electronic == "table"
+        if electronic != "spin"
         else f"the spin degeneracy {multiplicity} was taken as asked for",
     )
     if moments.kind != "linear":

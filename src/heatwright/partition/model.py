@@ -5,31 +5,33 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
 from math import isfinite
-from typing import Literal
+from typing import Any, Final, Literal, get_args
 
 import numpy as np
 from numpy.typing import ArrayLike
 
-from heatwright.constants import BAR_PA, GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
+from heatwright.constants import BAR_PA, CM1_KJ_MOL, GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
 from heatwright.elements import composition, element
 from heatwright.errors import UsageError
-from heatwright.findings import Finding
+from heatwright.findings import Finding, warn
 from heatwright.molecule import FloatArray, MassKind, Molecule
 from heatwright.partition.anharmonic import anharmonic_findings, oscillators
 from heatwright.partition.conformers import Conformer, ConformerMixture
 from heatwright.partition.contribution import ConstantFactor, Contribution, LnQ, total_ln_q
-from heatwright.partition.electronic import ElectronicLevels, Levels
+from heatwright.partition.electronic import Levels
 from heatwright.partition.inputs import InputUncertainties
-from heatwright.partition.levels import chosen_levels
+from heatwright.partition.lowmodes import LowModes
+from heatwright.partition.motion import Motion, RotationKind, motion
+from heatwright.partition.radicals import ElectronicOption, electronic_choice
 from heatwright.partition.rigid import rigid_body, symmetry_choice
-from heatwright.partition.rotation import ClassicalRotor
 from heatwright.partition.scaling import published_choice, scale_findings
 from heatwright.partition.translation import Translation
 from heatwright.partition.uncertainty import TableUncertainty, propagated
-from heatwright.partition.vibration import HarmonicVibration
 from heatwright.scales import ScaleChoice
 from heatwright.structure.inertia import Inertia
 from heatwright.structure.symmetry import Symmetry
+
+_HARMONIC: Final = LowModes()
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -39,10 +41,12 @@ class ModelOptions:
     pressure_Pa : standard pressure.   frequency_scale, zpe_scale : factors on the wavenumbers for the thermal
     functions and for the zero-point energy.   scale : ``"published"`` takes both of them from the table of published
     factors (:func:`heatwright.scales.choose_published`) for the molecule's level of theory.   symmetry_number,
-    optical_isomers : override the geometry.   electronic : ``"table"``, ``"spin"`` or explicit levels.
+    optical_isomers : override the geometry.   electronic : ``"table"``, ``"spin"``, explicit levels, or ``"levels"``:
+    the table, with a sum over the rotational and electronic levels together for doublet Π radicals.
     masses : isotopic or average atomic masses.   symmetry_tolerance_A : how far an atom may be from its image, Å.
     anharmonic : the output's anharmonic fundamentals and zero-point energy instead of the harmonic ones.
     uncertainty : standard uncertainties of the inputs that a table propagates, None for a table without.
+    low_modes : treatment of low modes.   rotation : ``"classical"``, ``"corrected"`` or ``"sum"`` (linear molecules).
     """
 
     pressure_Pa: float = BAR_PA
@@ -51,11 +55,13 @@ class ModelOptions:
     scale: Literal["published"] | None = None
     symmetry_number: int | None = None
     optical_isomers: int | None = None
-    electronic: Literal["table", "spin"] | Levels = "table"
+    electronic: ElectronicOption = "table"
     masses: MassKind | None = None
     symmetry_tolerance_A: float = 0.05
     anharmonic: bool = False
     uncertainty: InputUncertainties | None = None
+    low_modes: LowModes = _HARMONIC
+    rotation: RotationKind = "classical"
 
     def __post_init__(self) -> None:
         for name in ("pressure_Pa", "frequency_scale", "zpe_scale", "symmetry_tolerance_A"):
@@ -66,6 +72,8 @@ class ModelOptions:
             value = getattr(self, name)
             if value is not None and value < 1:
                 raise UsageError(f"{name} must be at least 1, not {value}")
+        if self.rotation not in get_args(RotationKind):
+            raise UsageError(f"rotation is one of {', '.join(get_args(RotationKind))}, not {self.rotation!r}")
         if self.anharmonic and any(x is not None for x in (self.scale, self.frequency_scale, self.zpe_scale)):
             raise UsageError("scale factors are for harmonic wavenumbers; leave them out together with --anharmonic")
         if self.scale is not None and (self.frequency_scale is not None or self.zpe_scale is not None):
@@ -119,6 +127,7 @@ class ThermoModel:
     molecule: Molecule
     options: ModelOptions
     contributions: tuple[Contribution, ...]
+    motion: Motion
     inertia: Inertia
     symmetry: Symmetry
     symmetry_number: int
@@ -157,12 +166,22 @@ class ThermoModel:
 
     @property
     def vibration_text(self) -> str:
-        """What the oscillators are, in words."""
-        return "oscillators with anharmonic fundamentals" if self.options.anharmonic else "harmonic oscillators"
+        """What the oscillators are, in words; empty when there is none."""
+        if self.motion.low_modes == "level sum":
+            return ""
+        kind = "oscillators with anharmonic fundamentals" if self.options.anharmonic else "harmonic oscillators"
+        return f"{kind}, {self.motion.low_modes_text}" if self.motion.low_modes_text else kind
+
+    @property
+    def motion_text(self) -> str:
+        """Rotation and vibration in words."""
+        return ", ".join(text for text in (self.motion.rotation_text, self.vibration_text) if text)
 
     @property
     def zpe_text(self) -> str:
         """What the zero-point energy is, in words."""
+        if self.molecule.stated.diatomic is not None:
+            return "from spectroscopic constants"
         return "anharmonic" if self.options.anharmonic else f"harmonic, scaled by {self.zpe_scale:g}"
 
     @property
@@ -222,6 +241,11 @@ class ThermoModel:
         rotation = {"atom": 0.0, "linear": 1.0}.get(self.inertia.kind, 1.5)
         return 2.5 + rotation + self.molecule.wavenumbers_cm1.size
 
+    @property
+    def classical_limit_R(self) -> float | None:
+        """The same where it is a limit of this model, else None: with electronic levels or sums over levels."""
+        return self.classical_cp_R if len(self.levels) == 1 and self.motion.is_bounded else None
+
 
 def checked_temperatures(T: ArrayLike) -> FloatArray:
     """The temperatures as an array of floats; raises UsageError unless all are finite and positive."""
@@ -245,36 +269,53 @@ def build_model(molecule: Molecule, options: ModelOptions | None = None) -> Ther
     Raises ValueError when the molecule has an imaginary mode or neither modes nor a single atom: the reading room
     refuses those with a sentence before a model is asked for.
     """
-    options, choice = _scaled(molecule, options or ModelOptions())
+    asked = options or ModelOptions()
+    options, choice = _scaled(molecule, asked)
     if molecule.n_imaginary or not molecule.has_thermochemistry:
         raise ValueError(f"{molecule.source.file}: a thermodynamic model needs the real modes of a minimum, or an atom")
     masses, mass_kind = chosen_masses(molecule, options.masses)
     moments, found = rigid_body(molecule, masses, options.symmetry_tolerance_A)
-    levels, levels_source, electronic_findings = chosen_levels(molecule, moments, options.electronic)
+    electronic = electronic_choice(molecule, moments, options.electronic)
     wavenumbers, zpe_kJ_mol = oscillators(molecule, options.anharmonic)
+    if molecule.stated.diatomic is not None:
+        zpe_kJ_mol = molecule.stated.diatomic.zero_point_cm1 * CM1_KJ_MOL
     stated = molecule.stated
     sigma = options.symmetry_number or stated.symmetry_number or found.symmetry_number
     isomers = options.optical_isomers or stated.optical_isomers or found.optical_isomers
+    made = motion(
+        molecule,
+        moments=moments,
+        masses_u=masses,
+        symmetry_number=sigma,
+        wavenumbers_cm1=wavenumbers * (options.frequency_scale or 1.0),
+        low_modes=options.low_modes,
+        rotation=options.rotation,
+        levels=electronic.levels,
+        radical=electronic.radical,
+    )
     return ThermoModel(
         molecule=molecule,
         options=options,
-        contributions=_contributions(molecule, wavenumbers, options, masses, moments, sigma, isomers, levels),
+        contributions=_contributions(masses, options, made, isomers),
+        motion=made,
         inertia=moments,
         symmetry=found,
         symmetry_number=sigma,
         optical_isomers=isomers,
         masses_u=masses,
         mass_kind=mass_kind,
-        levels=levels,
-        levels_source=levels_source,
+        levels=electronic.levels,
+        levels_source=electronic.source,
         zpe_kJ_mol=zpe_kJ_mol * (options.zpe_scale or 1.0),
         findings=(
             *symmetry_choice(molecule, found, options.symmetry_number, options.optical_isomers),
-            *electronic_findings,
+            *electronic.findings,
+            *made.findings,
+            *(_without_effect(asked, options) if molecule.stated.diatomic is not None else ()),
             *anharmonic_findings(molecule, options.anharmonic),
             *(
                 ()
-                if options.anharmonic
+                if options.anharmonic or molecule.stated.diatomic is not None
                 else scale_findings(molecule, options.frequency_scale, options.zpe_scale, choice)
             ),
         ),
@@ -282,8 +323,29 @@ def build_model(molecule: Molecule, options: ModelOptions | None = None) -> Ther
     )
 
 
+_FOR_OSCILLATORS: Final[dict[str, Any]] = {
+    "frequency_scale": None,
+    "zpe_scale": None,
+    "anharmonic": False,
+    "low_modes": _HARMONIC,
+    "rotation": "classical",
+}
+"""Options of rotors and oscillators with their defaults; they have no effect on levels from spectroscopic constants."""
+
+
+def _without_effect(asked: ModelOptions, options: ModelOptions) -> tuple[Finding, ...]:
+    """That options for rotors and oscillators have no effect on a molecule given by its spectroscopic constants."""
+    idle = [name for name in ("scale", *_FOR_OSCILLATORS) if getattr(asked, name) != getattr(options, name)]
+    if not idle:
+        return ()
+    words = f"levels summed up from spectroscopic constants are used as they are, without {', '.join(idle)}"
+    return (warn("level-sum", words),)
+
+
 def _scaled(molecule: Molecule, options: ModelOptions) -> tuple[ModelOptions, ScaleChoice | None]:
     """The options with published factors put in where they were asked for, and the choice that was made."""
+    if molecule.stated.diatomic is not None:
+        return replace(options, scale=None, **_FOR_OSCILLATORS), None
     choice = published_choice(molecule) if options.scale == "published" else None
     if choice is None:
         return options, None
@@ -293,25 +355,10 @@ def _scaled(molecule: Molecule, options: ModelOptions) -> tuple[ModelOptions, Sc
     )
 
 
-def _contributions(
-    molecule: Molecule,
-    wavenumbers_cm1: FloatArray,
-    options: ModelOptions,
-    masses: FloatArray,
-    moments: Inertia,
-    sigma: int,
-    isomers: int,
-    levels: Levels,
-) -> tuple[Contribution, ...]:
-    parts: list[Contribution] = [Translation(float(masses.sum()), options.pressure_Pa)]
-    if not molecule.is_atom:
-        parts.append(ClassicalRotor(tuple(moments.rotational_constants_cm1), sigma))
-        scaled = wavenumbers_cm1 * (options.frequency_scale or 1.0)
-        parts.append(HarmonicVibration(tuple(scaled.tolist())))
-    parts.append(ElectronicLevels(levels))
-    if isomers > 1:
-        parts.append(ConstantFactor("optical isomers", isomers))
-    return tuple(parts)
+def _contributions(masses: FloatArray, options: ModelOptions, made: Motion, isomers: int) -> tuple[Contribution, ...]:
+    translation = Translation(float(masses.sum()), options.pressure_Pa)
+    chirality = (ConstantFactor("optical isomers", isomers),) if isomers > 1 else ()
+    return (translation, *made.contributions, *chirality)
 
 
 def chosen_masses(molecule: Molecule, kind: MassKind | None) -> tuple[FloatArray, MassKind]:

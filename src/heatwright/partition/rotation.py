@@ -1,4 +1,4 @@
-"""Rotation: the classical rigid rotor."""
+"""Rotation: the classical rigid rotor, with or without its first quantum correction."""
 
 from __future__ import annotations
 
@@ -52,3 +52,37 @@ class ClassicalRotor:
             constant += 0.5 * log(pi)
         u = np.full(T.shape, half_degrees)
         return LnQ(constant + half_degrees * np.log(T), u, -u)
+
+
+@dataclass(frozen=True, slots=True)
+class CorrectedRotor:
+    r"""The classical rotor with its first quantum correction as an exponent.
+
+    .. math:: q = q_{classical}\, e^{\vartheta/T}, \qquad \vartheta = \frac{c_2}{12}
+              \left(2A + 2B + 2C - \frac{BC}{A} - \frac{AC}{B} - \frac{AB}{C}\right), \quad
+              \vartheta = \frac{c_2 B}{3}\ \text{(linear)}
+
+    S and Cp stay those of the classical rotor; H(T) − H(0) is lower by Rϑ, which is what a real rotor has.
+    Source: K. F. Stripp, J. G. Kirkwood, J. Chem. Phys. 19, 1131 (1951) (from memory).
+
+    >>> water = CorrectedRotor(ClassicalRotor((27.8806, 14.5216, 9.2777), 2))
+    >>> round(water.temperature_K * 8.31446261815324, 1)  # J/mol
+    37.0
+    """
+
+    name: ClassVar[str] = "rotation"
+    rotor: ClassicalRotor
+
+    @property
+    def temperature_K(self) -> float:
+        """ϑ, K."""
+        constants = self.rotor.rotational_constants_cm1
+        if len(constants) == 1:
+            return SECOND_RADIATION_CM_K * constants[0] / 3.0
+        a, b, c = constants
+        return SECOND_RADIATION_CM_K / 12.0 * (2.0 * (a + b + c) - b * c / a - a * c / b - a * b / c)
+
+    def ln_q(self, T: FloatArray) -> LnQ:
+        """The classical ln q, u and w plus ϑ/T, −ϑ/T and 2ϑ/T."""
+        y = self.temperature_K / T
+        return self.rotor.ln_q(T) + LnQ(y, -y, 2.0 * y)

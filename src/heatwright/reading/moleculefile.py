@@ -10,8 +10,10 @@ import numpy as np
 from heatwright.elements import atomic_number, composition, element, formula
 from heatwright.findings import Finding, Refused, note, refuse
 from heatwright.molecule import FloatArray, IntArray, Kind, Level, MassKind, Molecule, Source, Stated
+from heatwright.reading.diatomic import DIATOMIC_KEYS, diatomic_constants, with_diatomic
 from heatwright.reading.levels import normalise_basis, normalise_method, split_dispersion
 from heatwright.reading.strict import Block, parsed
+from heatwright.structure.isotopes import parse_isotope
 
 KEYS: Final[dict[str, tuple[str, ...]]] = {
     "molecule": ("name", "formula", "charge", "multiplicity", "masses", "source"),
@@ -19,6 +21,7 @@ KEYS: Final[dict[str, tuple[str, ...]]] = {
     "rotation": ("constants_cm1", "linear", "source"),
     "symmetry": ("number", "point_group", "optical_isomers", "source"),
     "vibrations": ("wavenumbers_cm1", "source"),
+    "diatomic": DIATOMIC_KEYS,
     "electronic": ("levels_cm1", "source"),
     "energies": ("hartree", "in_use", "source"),
     "level": ("method", "basis", "functional", "spherical", "frozen_core", "core_potential", "dispersion", "solvent",
@@ -26,14 +29,17 @@ KEYS: Final[dict[str, tuple[str, ...]]] = {
 }  # fmt: skip
 """Every table of a molecule file and its keys."""
 
-_SOURCED: Final = ("geometry", "rotation", "vibrations", "electronic", "energies")
+_SOURCED: Final = ("geometry", "rotation", "vibrations", "diatomic", "electronic", "energies")
 """The tables with numbers in them, which have to say where they are from."""
+
+_FORMULA_PART: Final = re.compile(r"([A-Z][a-z]?)(\d*)")
 
 _DATA: Final = {
     "geometry": "geometry",
     "rotation": "rotational constants",
     "symmetry": "symmetry",
     "vibrations": "wavenumbers",
+    "diatomic": "diatomic constants",
     "electronic": "electronic levels",
     "energies": "energies",
     "level": "level of theory",
@@ -60,14 +66,21 @@ def molecule_from_toml(text: str, source: Source) -> Molecule:
     head = blocks["molecule"]
     numbers, coordinates = _atoms(file, blocks)
     masses_kind = _masses(head)
+    masses_u = _masses_u(file, blocks, numbers, masses_kind)
     wavenumbers = _wavenumbers(blocks["vibrations"]) if "vibrations" in file else np.empty(0)
     energies, in_use = _energies(blocks["energies"]) if "energies" in file else ({}, "")
     head.needs("multiplicity")
+    multiplicity = head.whole("multiplicity", least=1)
+    stated = _stated(file, blocks, numbers.size, len(coordinates) > 0)
+    if "diatomic" in file:
+        constants = diatomic_constants(file, blocks["diatomic"], numbers, multiplicity)
+        stated = with_diatomic(stated, constants, numbers, masses_u)
+        wavenumbers = np.array([constants.we_cm1 - 2.0 * constants.wexe_cm1])
     return Molecule(
         source=source,
         kind=_kind(numbers.size, wavenumbers.size, len(energies)),
         atomic_numbers=numbers,
-        masses_u=np.array([_mass(int(z), masses_kind) for z in numbers]),
+        masses_u=masses_u,
         mass_kind=masses_kind,
         masses_printed=False,
         coordinates_A=coordinates,
@@ -75,10 +88,10 @@ def molecule_from_toml(text: str, source: Source) -> Molecule:
         energies_hartree=energies,
         energy_kind=in_use,
         charge=head.whole("charge") or 0,
-        multiplicity=head.whole("multiplicity", least=1),
+        multiplicity=multiplicity,
         level=_level(blocks["level"], numbers) if "level" in file else None,
         findings=tuple(_sources(blocks)),
-        stated=_stated(file, blocks, numbers.size, len(coordinates) > 0),
+        stated=stated,
     )
 
 
@@ -106,6 +119,18 @@ def _mass(number: int, kind: MassKind) -> float:
     return element(number).average_weight_u if kind == "average" else element(number).common_mass_u
 
 
+def _masses_u(file: Block, blocks: dict[str, Block], numbers: IntArray, kind: MassKind) -> FloatArray:
+    """The masses, u; an atom written D is deuterium."""
+    if "geometry" in file:
+        symbols = [row[0] for row in blocks["geometry"].items("atoms")]
+    else:
+        found = _FORMULA_PART.findall(blocks["molecule"].word("formula"))
+        symbols = [symbol for symbol, count in found for _ in range(int(count or 1))]
+    deuterium = parse_isotope("H=D").mass_u
+    masses = [deuterium if s == "D" else _mass(int(z), kind) for s, z in zip(symbols, numbers, strict=True)]
+    return np.array(masses)
+
+
 def _atoms(file: Block, blocks: dict[str, Block]) -> tuple[IntArray, FloatArray]:
     """Atomic numbers and the coordinates that go with them: those of a geometry, of an atom, or none."""
     head = blocks["molecule"]
@@ -122,7 +147,7 @@ def _atoms(file: Block, blocks: dict[str, Block]) -> tuple[IntArray, FloatArray]
         head.wrong("formula", "there is neither a formula nor a geometry", "one of them")
     if len(by_formula) == 1:
         return np.array(by_formula), np.zeros((1, 3))
-    if "rotation" not in file:
+    if "rotation" not in file and "diatomic" not in file:
         head.wrong("formula", "the molecule has neither a [geometry] nor a [rotation] table", "one of them")
     return np.array(by_formula), np.empty((0, 3))
 
@@ -137,7 +162,7 @@ def _formula(head: Block) -> list[int]:
             "A charge has a key of its own, charge.",
         )
     numbers: list[int] = []
-    for sym, count in re.findall(r"([A-Z][a-z]?)(\d*)", text):
+    for sym, count in _FORMULA_PART.findall(text):
         if count and not 0 < int(count[:5]) < 1000:
             head.wrong("formula", f"the formula counts {count} atoms of {sym}", "between 1 and 999")
         numbers += [_number_of(head, "formula", sym)] * int(count or 1)
@@ -146,7 +171,11 @@ def _formula(head: Block) -> list[int]:
 
 def _number_of(block: Block, key: str, sym: object) -> int:
     try:
-        return atomic_number(str(sym)) if isinstance(sym, str) else int(element(_as_int(sym)).number)
+        return (
+            atomic_number("H" if sym == "D" else str(sym))
+            if isinstance(sym, str)
+            else int(element(_as_int(sym)).number)
+        )
     except KeyError:
         block.wrong(key, f"{sym!r} is no element's symbol", "a symbol such as Cl")
 

@@ -47,8 +47,19 @@ def comment_lines(entry: Entry) -> tuple[str, ...]:
 
 
 _RECORDED_NOTES: Final = frozenset(
-    {"user-value", "published-scale", "given-by-hand", "isotopes", "energy-from-file", "anharmonic"}
-    | {"conformer-merged", "conformer-not-lowest"}
+    {
+        "user-value",
+        "published-scale",
+        "given-by-hand",
+        "isotopes",
+        "energy-from-file",
+        "anharmonic",
+        "low-modes",
+        "rotation",
+        "level-sum",
+        "conformer-merged",
+        "conformer-not-lowest",
+    }
 )
 
 
@@ -93,10 +104,7 @@ def _treatment(model: ThermoModel) -> tuple[str, ...]:
         motion = "atom"
     else:
         isomers = f", {model.optical_isomers} optical isomers" if model.optical_isomers > 1 else ""
-        motion = (
-            f"rigid rotor, {model.vibration_text}; {model.point_group_text}, "
-            f"symmetry number {model.symmetry_number}{isomers}"
-        )
+        motion = f"{model.motion_text}; {model.point_group_text}, symmetry number {model.symmetry_number}{isomers}"
     return (
         f"{motion}; {model.mass_kind} masses",
         *(() if model.molecule.is_atom else (scale_text(model),)),
@@ -144,6 +152,8 @@ def levels_text(model: ThermoModel) -> str:
 
 def scale_text(model: ThermoModel) -> str:
     """The scale factors in words, with where they are from; that there are none in an anharmonic model."""
+    if model.molecule.stated.diatomic is not None:
+        return "levels and zero-point energy from spectroscopic constants: unscaled"
     if model.options.anharmonic:
         return "fundamentals and zero-point energy as printed: unscaled"
     words = f"scale factors {model.frequency_scale:g} (thermal functions) and {model.zpe_scale:g} (zero-point energy)"

@@ -52,7 +52,8 @@ def species_document(
         "energy_hartree": molecule.energy_hartree,
         "energy_kind": molecule.energy_kind or None,
         "masses": model.mass_kind,
-        "low_modes": "harmonic",
+        "rotation": model.motion.rotation,
+        "low_modes": model.motion.low_modes,
         "electronic_levels_cm-1": [[nu, g] for nu, g in model.levels],
         "torsions": [],
         "H298_minus_H0_kJ_mol": significant(table.h298_minus_h0_kJ_mol),
@@ -62,10 +63,28 @@ def species_document(
         document["conformers"] = _conformers(model, table)
     if table.uncertainty is not None:
         document["uncertainty"] = _uncertainty(table.uncertainty)
+    if model.motion.shifts:
+        document |= _low_modes(model)
     if entry is not None:
         document |= {"nasa7": _nasa7(entry.polynomial), "residuals": _residuals(entry.quality)}
     document["source"] = source_document(molecule)
     document["findings"] = [f.as_json() for f in findings]
+    return document
+
+
+def _low_modes(model: ThermoModel) -> dict[str, Any]:
+    chosen = model.options.low_modes
+    document: dict[str, Any] = {"low_modes_cutoff_cm-1": chosen.cutoff_cm1}
+    if chosen.kind == "interpolate":
+        document["averaging_moment_kg_m2"] = chosen.averaging_moment_kg_m2
+    document["low_modes_shifts"] = [
+        {
+            "wavenumber_cm-1": significant(s.wavenumber_cm1),
+            "dH298_minus_H0_kJ_mol": significant(s.dh_kJ_mol),
+            "dS298_J_mol_K": significant(s.ds_J_mol_K),
+        }
+        for s in model.motion.shifts
+    ]
     return document
 
 

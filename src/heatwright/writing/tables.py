@@ -34,8 +34,10 @@ def _heading(name: str, model: ThermoModel, table: ThermoTable, units: Units) ->
         n = molecule.wavenumbers_cm1.size
         isomers = f", {model.optical_isomers} optical isomers" if model.optical_isomers > 1 else ""
         yield f"{model.point_group_text}, symmetry number {model.symmetry_number}{isomers}; {constants} cm⁻¹"
+        if model.motion_text != "rigid rotor, harmonic oscillators":
+            yield model.motion_text
         modes = "anharmonic" if model.options.anharmonic else f"scale factor {model.frequency_scale:g}"
-        zpe = "anharmonic" if model.options.anharmonic else f"scale factor {model.zpe_scale:g}"
+        zpe = model.zpe_text.replace("harmonic, scaled by", "scale factor")
         yield (
             f"{n} mode{'s' if n != 1 else ''}, {modes}; zero-point energy "
             f"{model.zpe_kJ_mol * units.factor:.3f} {units.enthalpy}, {zpe}"
