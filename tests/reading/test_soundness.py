@@ -8,7 +8,7 @@ import pytest
 from heatwright.constants import HARTREE_CM1
 from heatwright.molecule import Molecule, PrintedThermo
 from heatwright.reading.soundness import expected_modes, is_linear, no_thermochemistry, soundness
-from molecules import molecule, water
+from molecules import molecule
 
 ENERGY = {"energies_hartree": {"SCF": -76.0}}
 WATER_A = [[0.0, 0.0, 0.117], [0.0, 0.757, -0.469], [0.0, -0.757, -0.469]]

@@ -243,8 +243,8 @@ class ThermoModel:
 
     @property
     def classical_limit_R(self) -> float | None:
-        """The same where it is a limit of this model, else None: with electronic levels or sums over levels."""
-        return self.classical_cp_R if len(self.levels) == 1 and self.motion.is_bounded else None
+        """The same where it is a limit of this model, else None: electronic levels, level sums, conformer mixtures."""
+        return self.classical_cp_R if len(self.levels) == 1 and self.motion.is_bounded and not self.conformers else None
 
 
 def checked_temperatures(T: ArrayLike) -> FloatArray:
