@@ -31,6 +31,7 @@ if TYPE_CHECKING:
     from heatwright.polynomial.quality import FitQuality, fit_quality
     from heatwright.reading.outputs import read_output
     from heatwright.reading.single_point import with_energy
+    from heatwright.reading.torsion_scans import read_torsion
     from heatwright.scales import PublishedFactor, ScaleChoice, choose_published, published_factors
     from heatwright.structure.isotopes import parse_isotope, with_isotopes
     from heatwright.structure.modes import projected_modes
@@ -77,6 +78,7 @@ _HOME = {
     "projected_modes": "structure.modes",
     "published_factors": "scales",
     "read_output": "reading.outputs",
+    "read_torsion": "reading.torsion_scans",
     "render_format": "writing.render",
     "symmetry": "structure.symmetry",
     "with_energy": "reading.single_point",
@@ -124,6 +126,7 @@ __all__ = [
     "projected_modes",
     "published_factors",
     "read_output",
+    "read_torsion",
     "render_format",
     "symmetry",
     "with_energy",

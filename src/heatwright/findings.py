@@ -69,6 +69,17 @@ CODES: Final[dict[str, str]] = {
     "program-scale": "The program multiplied the wavenumbers by a scale factor of its own.",
     # --- scans ----------------------------------------------------------------------------------------------------
     "rigid-scan": "The scan was done without relaxing the rest of the molecule; it is no torsional potential.",
+    "scan-unreadable": "A file or folder does not hold the scan of a torsion in a form that can be read.",
+    "scan-unfit": "The points of a scan are too few, not periodic, or do not have the symmetry of the top.",
+    "scan-of-another": "A scan belongs to another molecule, charge, multiplicity or level of theory.",
+    "scan-lower-minimum": "A scan finds a lower minimum than the geometry of the frequencies.",
+    # --- torsions -------------------------------------------------------------------------------------------------
+    "torsion": "A torsion was treated as a hindered rotor; its potential and what it changes are said.",
+    "torsion-impossible": "A torsion was asked for where nothing can turn, or more of them than there are low modes.",
+    "torsion-overlap": "The projected torsion is not what the low modes of the molecule do.",
+    "torsion-counted-twice": "A torsional potential holds configurations that are, or would be, counted otherwise too.",
+    "torsion-classical": "A heavy top was treated classically (Pitzer and Gwinn), without its levels.",
+    "torsion-check": "The sum over torsional levels and the form of Pitzer and Gwinn differ more than they should.",
     # --- choices made for the user --------------------------------------------------------------------------------
     "symmetry-ambiguous": "The geometry is close to a symmetry not accepted, or only just fits the accepted one.",
     "given-by-hand": "A part of the molecule was written down by hand; its source is said.",

@@ -26,9 +26,7 @@ def minima() -> list[Path]:
     files = sorted(Path(str(sample_outputs())).glob("*.out"))
     if SHARED is not None:
         with (SHARED / "computed" / "INDEX.csv").open() as stream:
-            files += [
-                SHARED / "computed" / row["file"] for row in csv.DictReader(stream) if row["check"] != "refuse"
-            ]
+            files += [SHARED / "computed" / row["file"] for row in csv.DictReader(stream) if row["check"] != "refuse"]
     return files
 
 

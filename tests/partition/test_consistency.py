@@ -20,6 +20,7 @@ from heatwright.partition.diatomic import (
 from heatwright.partition.electronic import ElectronicLevels
 from heatwright.partition.lowmodes import InterpolatedVibration, LowModes
 from heatwright.partition.rotation import ClassicalRotor, CorrectedRotor
+from heatwright.partition.torsion import cosine_potential, hindered_rotor
 from heatwright.partition.translation import Translation
 from heatwright.partition.vibration import HarmonicVibration
 
@@ -128,6 +129,8 @@ def top(first: float, second: float, share: float) -> CorrectedRotor:
     return CorrectedRotor(ClassicalRotor((1.0 / low, 1.0 / high, 1.0 / third), 1))
 
 
+ROTORS = [hindered_rotor(cosine_potential(n, V), F, n) for n, V, F in ((3, 1024.0, 10.7), (1, 300.0, 40.0))]
+
 molecules = st.tuples(
     st.builds(Translation, st.floats(1.0, 1000.0), st.sampled_from([1.0e5, 101325.0])),
     st.one_of(
@@ -151,6 +154,7 @@ molecules = st.tuples(
     ),
     st.builds(ElectronicLevels, levels_of),
     st.builds(ConstantFactor, st.just("optical isomers"), st.integers(1, 4)),
+    st.sampled_from(ROTORS),
 )
 
 

@@ -12,6 +12,7 @@ import click
 from heatwright import __version__
 from heatwright.cli.entry import entry
 from heatwright.cli.explain import explain
+from heatwright.cli.rotors import rotors
 from heatwright.cli.samples import samples
 from heatwright.cli.scales import scales
 from heatwright.cli.survey import survey
@@ -22,7 +23,7 @@ BUG = 70
 INTERRUPTED = 130
 
 SECTIONS = {
-    "One molecule": ("survey", "table", "entry"),
+    "One molecule": ("survey", "table", "entry", "rotors"),
     "Looking things up": ("scales", "explain", "samples"),
 }
 """How ``--help`` groups the commands."""
@@ -57,7 +58,7 @@ def cli() -> None:
     """
 
 
-for _command in (survey, table, entry, scales, explain, samples):
+for _command in (survey, table, entry, rotors, scales, explain, samples):
     cli.add_command(_command)
 
 

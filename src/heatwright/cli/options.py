@@ -78,6 +78,14 @@ _MODEL_OPTIONS = (
         show_default=True,
         help="Rigid rotor, with its first quantum correction, or a sum over the levels of a linear molecule.",
     ),
+    click.option(
+        "--torsion",
+        "torsions",
+        multiple=True,
+        metavar="DIR|FILE|TEXT",
+        help='A hindered rotor: folder of a scan, scan output, CSV, or "3-1-2-4 n=3 V=373 cm-1". Can be repeated.',
+    ),
+    click.option("--torsion-coupling", is_flag=True, help="Couple several torsions by their moments of inertia."),
     click.option("--symmetry-number", type=click.IntRange(min=1), metavar="N", help="Instead of the geometry's."),
     click.option("--optical-isomers", type=click.IntRange(min=1), metavar="N", help="Instead of the geometry's."),
     click.option(
@@ -156,7 +164,10 @@ def model_options(command: F) -> F:
 
 @dataclass(frozen=True, slots=True)
 class Reading:
-    """How an output is to be read: which job, values that replace its own, isotopes, and what is accepted."""
+    """How an output is to be read: which job, values that replace its own, isotopes, and what is accepted.
+
+    torsions : whether force constants are wanted, for torsions to be projected out of them.
+    """
 
     job: int | None
     charge: int | None
@@ -165,6 +176,7 @@ class Reading:
     accept: tuple[str, ...] = ()
     accept_imaginary_cm1: float = 0.0
     energy: str | None = None
+    torsions: bool = False
 
 
 def taken_reading(options: dict[str, Any]) -> Reading:
@@ -181,6 +193,7 @@ def taken_reading(options: dict[str, Any]) -> Reading:
         isotopes,
         accept=accept,
         accept_imaginary_cm1=imaginary,
+        torsions=bool(options["torsions"]),
     )
 
 
@@ -191,6 +204,8 @@ def taken_conformers(options: dict[str, Any], n_outputs: int) -> tuple[str, ...]
         raise UsageError(f"--conformer belongs to one OUTPUT, and there are {n_outputs}; make one species at a time")
     if conformers and options["symmetry_number"] is not None:
         raise UsageError("--symmetry-number cannot be said for several conformers at once; each has its own")
+    if options["torsions"] and n_outputs != 1:
+        raise UsageError(f"--torsion belongs to one OUTPUT, and there are {n_outputs}; make one species at a time")
     return conformers
 
 
@@ -211,6 +226,7 @@ def taken_model_options(options: dict[str, Any]) -> ModelOptions:
     from heatwright.partition.electronic import parse_levels
     from heatwright.partition.inputs import parse_uncertainties
     from heatwright.partition.model import ModelOptions
+    from heatwright.reading.torsion_scans import read_torsion
 
     electronic = options.pop("electronic")
     uncertainty = options.pop("uncertainty")
@@ -231,6 +247,8 @@ def taken_model_options(options: dict[str, Any]) -> ModelOptions:
         electronic=electronic if electronic in ("table", "spin", "levels") else parse_levels(electronic),
         masses=options.pop("masses"),
         uncertainty=None if uncertainty is None else parse_uncertainties(uncertainty),
+        torsions=tuple(read_torsion(text) for text in options.pop("torsions")),
+        torsion_coupling=options.pop("torsion_coupling"),
     )
 
 
@@ -261,7 +279,7 @@ def usable_molecule(path: str, reading: Reading) -> Molecule:
         multiplicity=reading.multiplicity,
         accept=reading.accept,
         accept_imaginary_cm1=reading.accept_imaginary_cm1,
-        with_hessian=bool(reading.isotopes),
+        with_hessian=bool(reading.isotopes) or reading.torsions,
     )
     if refusals(molecule.findings):
         raise Refused(molecule.findings)

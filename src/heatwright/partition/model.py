@@ -20,6 +20,8 @@ from heatwright.partition.conformers import Conformer, ConformerMixture
 from heatwright.partition.contribution import ConstantFactor, Contribution, LnQ, total_ln_q
 from heatwright.partition.electronic import Levels
 from heatwright.partition.inputs import InputUncertainties
+from heatwright.partition.internal_rotation import InternalRotation, TreatedTorsion, cost, internal_rotation
+from heatwright.partition.isomers import isomers_with_torsions
 from heatwright.partition.lowmodes import LowModes
 from heatwright.partition.motion import Motion, RotationKind, motion
 from heatwright.partition.radicals import ElectronicOption, electronic_choice
@@ -27,6 +29,8 @@ from heatwright.partition.rigid import rigid_body, symmetry_choice
 from heatwright.partition.scaling import published_choice, scale_findings
 from heatwright.partition.translation import Translation
 from heatwright.partition.uncertainty import TableUncertainty, propagated
+from heatwright.partition.vibration import zero_point_energy_kJ_mol
+from heatwright.reading.torsion_scans import Torsion
 from heatwright.scales import ScaleChoice
 from heatwright.structure.inertia import Inertia
 from heatwright.structure.symmetry import Symmetry
@@ -47,6 +51,8 @@ class ModelOptions:
     anharmonic : the output's anharmonic fundamentals and zero-point energy instead of the harmonic ones.
     uncertainty : standard uncertainties of the inputs that a table propagates, None for a table without.
     low_modes : treatment of low modes.   rotation : ``"classical"``, ``"corrected"`` or ``"sum"`` (linear molecules).
+    torsions : what :func:`heatwright.reading.torsion_scans.read_torsion` gave, each treated as a hindered rotor;
+    torsion_coupling : with the coupled determinant of their reduced moments.
     """
 
     pressure_Pa: float = BAR_PA
@@ -62,6 +68,8 @@ class ModelOptions:
     uncertainty: InputUncertainties | None = None
     low_modes: LowModes = _HARMONIC
     rotation: RotationKind = "classical"
+    torsions: tuple[Torsion, ...] = ()
+    torsion_coupling: bool = False
 
     def __post_init__(self) -> None:
         for name in ("pressure_Pa", "frequency_scale", "zpe_scale", "symmetry_tolerance_A"):
@@ -76,6 +84,8 @@ class ModelOptions:
             raise UsageError(f"rotation is one of {', '.join(get_args(RotationKind))}, not {self.rotation!r}")
         if self.anharmonic and any(x is not None for x in (self.scale, self.frequency_scale, self.zpe_scale)):
             raise UsageError("scale factors are for harmonic wavenumbers; leave them out together with --anharmonic")
+        if self.anharmonic and self.torsions:
+            raise UsageError("a torsion is projected out of harmonic modes; leave out --anharmonic")
         if self.scale is not None and (self.frequency_scale is not None or self.zpe_scale is not None):
             raise UsageError("published scale factors and stated ones (frequency_scale, zpe_scale) exclude each other")
 
@@ -141,6 +151,7 @@ class ThermoModel:
     scale_choice: ScaleChoice | None = None
     conformers: tuple[Conformer, ...] = ()
     named_after: Molecule | None = None
+    torsions: tuple[TreatedTorsion, ...] = ()
 
     @property
     def frequency_scale(self) -> float:
@@ -170,6 +181,8 @@ class ThermoModel:
         if self.motion.low_modes == "level sum":
             return ""
         kind = "oscillators with anharmonic fundamentals" if self.options.anharmonic else "harmonic oscillators"
+        if self.torsions:
+            kind += f" and {len(self.torsions)} hindered rotor{'s' if len(self.torsions) > 1 else ''}"
         return f"{kind}, {self.motion.low_modes_text}" if self.motion.low_modes_text else kind
 
     @property
@@ -182,7 +195,10 @@ class ThermoModel:
         """What the zero-point energy is, in words."""
         if self.molecule.stated.diatomic is not None:
             return "from spectroscopic constants"
-        return "anharmonic" if self.options.anharmonic else f"harmonic, scaled by {self.zpe_scale:g}"
+        if self.options.anharmonic:
+            return "anharmonic"
+        rotors = ", with the rotors' own" if self.torsions else ""
+        return f"harmonic, scaled by {self.zpe_scale:g}{rotors}"
 
     @property
     def composition(self) -> dict[str, int]:
@@ -281,7 +297,14 @@ def build_model(molecule: Molecule, options: ModelOptions | None = None) -> Ther
         zpe_kJ_mol = molecule.stated.diatomic.zero_point_cm1 * CM1_KJ_MOL
     stated = molecule.stated
     sigma = options.symmetry_number or stated.symmetry_number or found.symmetry_number
-    isomers = options.optical_isomers or stated.optical_isomers or found.optical_isomers
+    isomers_found = stated.optical_isomers or found.optical_isomers
+    rotors = _rotors(molecule, options)
+    isomers, rotor_findings = isomers_with_torsions(options.optical_isomers, isomers_found, rotors)
+    if rotors is not None:
+        wavenumbers, zpe_kJ_mol = rotors.wavenumbers_cm1, zero_point_energy_kJ_mol(rotors.wavenumbers_cm1)
+        counted = (options.optical_isomers or isomers_found, isomers)
+        said = cost(molecule, rotors, options.frequency_scale or 1.0, counted)
+        rotor_findings = (*rotors.findings, said, *rotor_findings)
     made = motion(
         molecule,
         moments=moments,
@@ -296,7 +319,7 @@ def build_model(molecule: Molecule, options: ModelOptions | None = None) -> Ther
     return ThermoModel(
         molecule=molecule,
         options=options,
-        contributions=_contributions(masses, options, made, isomers),
+        contributions=_contributions(masses, options, made, rotors, isomers),
         motion=made,
         inertia=moments,
         symmetry=found,
@@ -306,11 +329,12 @@ def build_model(molecule: Molecule, options: ModelOptions | None = None) -> Ther
         mass_kind=mass_kind,
         levels=electronic.levels,
         levels_source=electronic.source,
-        zpe_kJ_mol=zpe_kJ_mol * (options.zpe_scale or 1.0),
+        zpe_kJ_mol=zpe_kJ_mol * (options.zpe_scale or 1.0) + (rotors.ground_kJ_mol if rotors else 0.0),
         findings=(
             *symmetry_choice(molecule, found, options.symmetry_number, options.optical_isomers),
             *electronic.findings,
             *made.findings,
+            *rotor_findings,
             *(_without_effect(asked, options) if molecule.stated.diatomic is not None else ()),
             *anharmonic_findings(molecule, options.anharmonic),
             *(
@@ -320,6 +344,7 @@ def build_model(molecule: Molecule, options: ModelOptions | None = None) -> Ther
             ),
         ),
         scale_choice=choice,
+        torsions=rotors.torsions if rotors else (),
     )
 
 
@@ -342,6 +367,13 @@ def _without_effect(asked: ModelOptions, options: ModelOptions) -> tuple[Finding
     return (warn("level-sum", words),)
 
 
+def _rotors(molecule: Molecule, options: ModelOptions) -> InternalRotation | None:
+    """The torsions that were asked for, or None."""
+    if not options.torsions:
+        return None
+    return internal_rotation(molecule, options.torsions, coupled=options.torsion_coupling)
+
+
 def _scaled(molecule: Molecule, options: ModelOptions) -> tuple[ModelOptions, ScaleChoice | None]:
     """The options with published factors put in where they were asked for, and the choice that was made."""
     if molecule.stated.diatomic is not None:
@@ -355,10 +387,12 @@ def _scaled(molecule: Molecule, options: ModelOptions) -> tuple[ModelOptions, Sc
     )
 
 
-def _contributions(masses: FloatArray, options: ModelOptions, made: Motion, isomers: int) -> tuple[Contribution, ...]:
+def _contributions(
+    masses: FloatArray, options: ModelOptions, made: Motion, rotors: InternalRotation | None, isomers: int
+) -> tuple[Contribution, ...]:
     translation = Translation(float(masses.sum()), options.pressure_Pa)
     chirality = (ConstantFactor("optical isomers", isomers),) if isomers > 1 else ()
-    return (translation, *made.contributions, *chirality)
+    return (translation, *made.contributions, *(rotors.contributions if rotors else ()), *chirality)
 
 
 def chosen_masses(molecule: Molecule, kind: MassKind | None) -> tuple[FloatArray, MassKind]:

@@ -88,7 +88,7 @@ def with_isotopes(molecule: Molecule, wishes: Iterable[Isotope]) -> Molecule:
     )
     if molecule.is_atom:
         return changes.but(findings=(*left, _said(changed, "")))
-    hessian, source, deviation = _force_constants(molecule)
+    hessian, source, deviation = force_constants(molecule)
     wavenumbers, modes = projected_modes(hessian, masses, molecule.coordinates_A)
     if not (wavenumbers > 0.0).all():
         raise Refused([_no_minimum(float(wavenumbers[0]))])
@@ -130,8 +130,11 @@ def _no_minimum(wavenumber_cm1: float) -> Finding:
     return refuse("imaginary-modes", found, expected="a minimum", action="Look at the lowest modes of the output.")
 
 
-def _force_constants(molecule: Molecule) -> tuple[FloatArray, str, float]:
-    """Cartesian force constants, where they are from, and how far the modes behind them are from orthonormal."""
+def force_constants(molecule: Molecule, what: str = "another isotope") -> tuple[FloatArray, str, float]:
+    """Cartesian force constants, where they are from, and how far the modes behind them are from orthonormal.
+
+    Raises Refused (``no-force-constants``), saying that *what* needs them.
+    """
     H, x, modes = molecule.hessian_hartree_bohr2, molecule.coordinates_A, molecule.normal_modes
     if H is not None and (projected_modes(H, molecule.masses_u, x)[0] > 0.0).all():  # else wavenumbers were changed
         return H, "the printed Hessian", 0.0
@@ -148,9 +151,9 @@ def _force_constants(molecule: Molecule) -> tuple[FloatArray, str, float]:
         [
             refuse(
                 "no-force-constants",
-                f"another isotope needs the force constants, and the output cannot give them: {why}",
+                f"{what} needs the force constants, and the output cannot give them: {why}",
                 expected="a Hessian, or complete wavenumbers with their normal modes",
-                action="Run the frequency job with the isotope's mass.",
+                action="Give an output that has them; for an isotope, run the frequency job with its mass.",
             )
         ]
     )

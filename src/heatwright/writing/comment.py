@@ -59,6 +59,9 @@ _RECORDED_NOTES: Final = frozenset(
         "level-sum",
         "conformer-merged",
         "conformer-not-lowest",
+        "torsion",
+        "torsion-counted-twice",
+        "torsion-classical",
     }
 )
 
@@ -73,7 +76,21 @@ def _wrapped(text: str) -> list[str]:
 
 
 _ASCII: Final = str.maketrans(
-    {"°": "", "Δ": "d", "−": "-", "–": "-", "±": "+/-", "Π": "Pi", "Σ": "Sigma", "²": "^2", "³": "^3", "Å": "A"}
+    {
+        "°": "",
+        "Δ": "d",
+        "−": "-",
+        "–": "-",
+        "±": "+/-",
+        "Π": "Pi",
+        "Σ": "Sigma",
+        "²": "^2",
+        "³": "^3",
+        "⁻": "^-",
+        "¹": "1",
+        "φ": "phi",
+        "Å": "A",
+    }
 )
 
 

@@ -5,13 +5,17 @@ from __future__ import annotations
 from collections.abc import Iterable, Mapping, Sequence
 from typing import Any
 
+import numpy as np
+
 from heatwright.constants import BAR_PA
 from heatwright.elements import formula
 from heatwright.entry import Entry
 from heatwright.findings import Finding
 from heatwright.formation.formation import Formation
 from heatwright.molecule import FloatArray, Molecule
+from heatwright.partition.internal_rotation import TreatedTorsion
 from heatwright.partition.model import ThermoModel, ThermoTable
+from heatwright.partition.torsion import HinderedRotor
 from heatwright.partition.uncertainty import TableUncertainty
 from heatwright.polynomial.nasa7 import Nasa7
 from heatwright.polynomial.quality import FitQuality
@@ -55,7 +59,7 @@ def species_document(
         "rotation": model.motion.rotation,
         "low_modes": model.motion.low_modes,
         "electronic_levels_cm-1": [[nu, g] for nu, g in model.levels],
-        "torsions": [],
+        "torsions": [torsion_document(t) for t in model.torsions],
         "H298_minus_H0_kJ_mol": significant(table.h298_minus_h0_kJ_mol),
         "table": _table(table),
     }
@@ -86,6 +90,21 @@ def _low_modes(model: ThermoModel) -> dict[str, Any]:
         for s in model.motion.shifts
     ]
     return document
+
+
+def torsion_document(torsion: TreatedTorsion) -> dict[str, Any]:
+    """A treated torsion: atoms counted from 1, levels above the ground level up to a little above the barrier."""
+    levels = torsion.rotor.levels_cm1 if isinstance(torsion.rotor, HinderedRotor) else np.empty(0)
+    return {
+        "atoms": [a + 1 for a in torsion.bond.atoms],
+        "barrier_cm-1": significant(torsion.potential.barrier_cm1),
+        "F_cm-1": significant(torsion.F_cm1),
+        "symmetry": torsion.bond.symmetry,
+        "overlap": significant(torsion.overlap, 4),
+        "levels_cm-1": _numbers(levels[levels <= max(1.5 * torsion.potential.barrier_cm1, 500.0)]),
+        "zero_point_cm-1": significant(torsion.ground_cm1),
+        "source": torsion.source,
+    }
 
 
 def source_document(molecule: Molecule) -> dict[str, Any]:
