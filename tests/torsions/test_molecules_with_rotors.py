@@ -91,6 +91,15 @@ def test_mirror_images_are_counted_once() -> None:
 
 
 @needs_shared
+def test_a_given_potential_holds_the_mirror_image_of_gauche_butane() -> None:
+    # Three wells of a cosine lie at 65, 185 and 305 degrees; the last is the other gauche form (at 295 in truth).
+    methyls = ("5-1-2-3 n=3 V=1000 cm-1", "2-3-4-6 n=3 V=1000 cm-1")
+    made = model(computed("gauche_butane"), *methyls, "1-2-3-4 n=3 V=1200 cm-1")
+    assert made.optical_isomers == 1
+    assert model(computed("gauche_butane"), *methyls).optical_isomers == 2
+
+
+@needs_shared
 def test_gauche_and_trans_ethanol_with_one_potential() -> None:
     torsions = scan("CH3CH2OH_OH"), scan("CH3CH2OH_CH3")
     trans, gauche = (model(computed(n), *torsions) for n in ("CH3CH2OH", "CH3CH2OH_gauche"))

@@ -32,6 +32,8 @@ LOW_CM1 = 1000.0
 """A torsion has a wavenumber below this (common practice, no source); the highest here is N2H4's at some 400."""
 OVERLAP = 0.8
 CHECK_J_MOL_K = 0.5
+NEAR_DEG = 25.0
+"""A well this near to −φ is that of the mirror image: a given cosine has its wells where its fold puts them."""
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -245,9 +247,10 @@ def cost(molecule: Molecule, done: InternalRotation, scale: float, isomers: tupl
 
 
 def _holds_mirror_image(molecule: Molecule, torsions: tuple[TreatedTorsion, ...]) -> bool:
-    """Whether turning every torsion from φ to −φ gives the mirror image, and −φ is as low as φ."""
+    """Whether turning every torsion from φ to −φ gives the mirror image, and there is a well as low at −φ."""
     for t in torsions:
-        here, there = (float(t.potential(np.array(np.radians(a)))) for a in (t.angle_deg, -t.angle_deg))
-        if there - here > tolerated_cm1(t.potential.barrier_cm1):
+        here = float(t.potential(np.array(np.radians(t.angle_deg))))
+        there = t.potential(np.radians(-t.angle_deg + np.arange(-NEAR_DEG, NEAR_DEG + 1.0)))
+        if float(there.min()) - here > tolerated_cm1(t.potential.barrier_cm1):
             return False
     return is_mirrored(molecule.atomic_numbers, molecule.coordinates_A, [t.bond for t in torsions])
