@@ -22,7 +22,7 @@ from heatwright.partition.lowmodes import InterpolatedVibration, LowModes
 from heatwright.partition.rotation import ClassicalRotor, CorrectedRotor
 from heatwright.partition.torsion import cosine_potential, hindered_rotor
 from heatwright.partition.translation import Translation
-from heatwright.partition.vibration import HarmonicVibration
+from heatwright.partition.vibration import HarmonicVibration, harmonic_sums_of_many
 
 mpmath.mp.dps = 40
 C2 = mpmath.mpf(SECOND_RADIATION_CM_K)
@@ -204,3 +204,18 @@ def test_limits_of_the_oscillator() -> None:
 def test_a_mode_that_is_not_positive_is_refused(wavenumber: float) -> None:
     with pytest.raises(ValueError, match="mode 2"):
         HarmonicVibration((1000.0, wavenumber))
+
+
+@given(
+    st.lists(st.lists(st.floats(0.5, 5000.0), min_size=0, max_size=90), min_size=1, max_size=30),
+    st.lists(st.floats(50.0, 6000.0), min_size=1, max_size=700),
+)
+@settings(max_examples=60, deadline=None)
+def test_many_species_at_once_are_each_species_alone(species: list[list[float]], temperatures: list[float]) -> None:
+    T = np.array(temperatures)
+    together = harmonic_sums_of_many([np.array(w) for w in species], T)
+    assert len(together) == len(species)
+    for wavenumbers, got in zip(species, together, strict=True):
+        alone = HarmonicVibration(tuple(wavenumbers)).ln_q(T)
+        for name in ("ln_q", "u", "w"):
+            np.testing.assert_allclose(getattr(got, name), getattr(alone, name), rtol=1e-11, atol=1e-13)

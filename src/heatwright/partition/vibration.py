@@ -19,6 +19,10 @@ _FACTORS: Final = 32
 """Modes whose q are multiplied before the logarithm is taken: no overflow as long as x is above 10⁻⁹."""
 
 
+_FROZEN_CM1: Final = 1.0e7
+"""A wavenumber whose oscillator adds exactly nothing: eˣ overflows at every temperature below 20 000 K."""
+
+
 @dataclass(frozen=True, slots=True)
 class HarmonicVibration:
     r"""Independent harmonic oscillators.
@@ -65,6 +69,46 @@ def harmonic_sums(wavenumbers_cm1: FloatArray, T: FloatArray, weights: FloatArra
     sums = blocks[0] if len(blocks) == 1 else [np.concatenate(parts) for parts in zip(*blocks, strict=True)]
     ln_q, u, heat_capacity = (values.reshape(T.shape) for values in sums)
     return LnQ(ln_q, u, heat_capacity - 2.0 * u)
+
+
+def harmonic_sums_of_many(species: Sequence[FloatArray], T: FloatArray) -> tuple[LnQ, ...]:
+    """The sums of :func:`harmonic_sums` for many species on one temperature grid, as many at once as a cache holds.
+
+    species : the wavenumbers (m,) of each, 1/cm, all positive; none for an atom.   T : (n,), K.
+
+    >>> T = np.array([298.15, 1000.0])
+    >>> water, atom = harmonic_sums_of_many([np.array([1595.0, 3657.0, 3756.0]), np.array([])], T)
+    >>> bool(np.allclose(water.s_R, HarmonicVibration((1595.0, 3657.0, 3756.0)).ln_q(T).s_R)), float(atom.s_R[1])
+    (True, 0.0)
+    """
+    done: dict[int, LnQ] = {}
+    order = sorted(range(len(species)), key=lambda index: len(species[index]))  # like sizes together, little padding
+    while order:
+        rows = max(1, _CHUNK // max(1, T.size * len(species[order[-1]])))
+        group, order = order[-rows:], order[:-rows]
+        done.update(zip(group, _group([species[index] for index in group], T), strict=True))
+    return tuple(done[index] for index in range(len(species)))
+
+
+def _group(species: Sequence[FloatArray], T: FloatArray) -> list[LnQ]:
+    """Sums for a few species, filled up to the same number of modes with modes too high to be excited."""
+    nu = np.full((len(species), max(map(len, species))), _FROZEN_CM1)
+    for row, wavenumbers in zip(nu, species, strict=True):
+        row[: len(wavenumbers)] = wavenumbers
+    with np.errstate(over="ignore"):
+        x = (SECOND_RADIATION_CM_K * nu)[:, :, None] / T
+        n = np.expm1(x)
+    np.reciprocal(n, out=n)
+    energy = x * n
+    x += energy
+    x *= energy
+    n += 1.0
+    ln_q = np.zeros((len(species), T.size))
+    for i in range(0, nu.shape[1], _FACTORS):
+        ln_q += np.log(np.multiply.reduce(n[:, i : i + _FACTORS], axis=1))
+    u, w = np.add.reduce(energy, axis=1), np.add.reduce(x, axis=1)
+    w -= 2.0 * u
+    return [LnQ(*row) for row in zip(ln_q, u, w, strict=True)]
 
 
 def _block(x: FloatArray, weights: FloatArray | None) -> tuple[FloatArray, FloatArray, FloatArray]:
