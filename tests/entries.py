@@ -9,10 +9,10 @@ from pathlib import Path
 
 import numpy as np
 
+from heatwright import ModelOptions, build_model
 from heatwright.entry import Entry, FitOptions, make_entry
 from heatwright.formation.formation import formation_given, parse_enthalpy
 from heatwright.molecule import Molecule
-from heatwright.partition.model import ModelOptions, build_model
 from heatwright.writing.context import entries_context
 from heatwright.writing.formats import FORMATS
 from heatwright.writing.render import render_format

@@ -21,11 +21,13 @@ if TYPE_CHECKING:
     from heatwright.formation.atomization import collect_atoms, formation_by_atomization
     from heatwright.formation.formation import Formation, formation_given, parse_enthalpy
     from heatwright.molecule import DiatomicConstants, Level, Molecule
+    from heatwright.partition.choices import ModelOptions
     from heatwright.partition.contribution import Contribution, LnQ
     from heatwright.partition.inputs import InputUncertainties, parse_uncertainties
     from heatwright.partition.lowmodes import LowModes
     from heatwright.partition.mixing import mixture_model
-    from heatwright.partition.model import ModelOptions, ThermoModel, ThermoTable, build_model
+    from heatwright.partition.model import ThermoModel, build_model
+    from heatwright.partition.table import ThermoTable
     from heatwright.polynomial.fit import fit_nasa7
     from heatwright.polynomial.nasa7 import Nasa7
     from heatwright.polynomial.quality import FitQuality, fit_quality
@@ -52,7 +54,7 @@ _HOME = {
     "Level": "molecule",
     "LnQ": "partition.contribution",
     "LowModes": "partition.lowmodes",
-    "ModelOptions": "partition.model",
+    "ModelOptions": "partition.choices",
     "Molecule": "molecule",
     "Nasa7": "polynomial.nasa7",
     "PublishedFactor": "scales",
@@ -60,7 +62,7 @@ _HOME = {
     "ScaleChoice": "scales",
     "Symmetry": "structure.symmetry",
     "ThermoModel": "partition.model",
-    "ThermoTable": "partition.model",
+    "ThermoTable": "partition.table",
     "UsageError": "errors",
     "build_model": "partition.model",
     "choose_published": "scales",

@@ -11,7 +11,8 @@ from heatwright.constants import GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
 from heatwright.findings import Finding
 from heatwright.formation.formation import Formation
 from heatwright.molecule import FloatArray
-from heatwright.partition.model import ThermoModel, ThermoTable
+from heatwright.partition.model import ThermoModel
+from heatwright.partition.table import ThermoTable
 from heatwright.polynomial.fit import fit_nasa7
 from heatwright.polynomial.nasa7 import Nasa7
 from heatwright.polynomial.quality import FitQuality, fit_quality

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import pytest
 
+from heatwright import ModelOptions, build_model
 from heatwright.constants import HARTREE_KJ_MOL
 from heatwright.errors import UsageError
 from heatwright.findings import Refused
@@ -16,7 +17,6 @@ from heatwright.formation.formation import (
 )
 from heatwright.formation.references import atom_reference, elements_with_reference
 from heatwright.molecule import Molecule
-from heatwright.partition.model import ModelOptions, build_model
 from molecules import LEVEL, atom, molecule, water
 
 

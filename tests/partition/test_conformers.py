@@ -11,6 +11,7 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
+from heatwright import ModelOptions, ThermoModel, build_model
 from heatwright.constants import GAS_CONSTANT_J_MOL_K as R
 from heatwright.constants import HARTREE_KJ_MOL, SECOND_RADIATION_CM_K
 from heatwright.findings import Refused
@@ -18,7 +19,6 @@ from heatwright.molecule import Stated
 from heatwright.partition.conformers import Conformer, ConformerMixture, conformer_ln_q, mixed
 from heatwright.partition.contribution import ConstantFactor, total_ln_q
 from heatwright.partition.mixing import mixture_model
-from heatwright.partition.model import ModelOptions, ThermoModel, build_model
 from heatwright.partition.rotation import ClassicalRotor
 from heatwright.partition.translation import Translation
 from heatwright.partition.vibration import HarmonicVibration

@@ -8,11 +8,11 @@ import janaf
 import numpy as np
 import pytest
 
+from heatwright import ModelOptions, build_model
 from heatwright.constants import GAS_CONSTANT_J_MOL_K as R
 from heatwright.molecule import DiatomicConstants, Stated
 from heatwright.partition.diatomic import doublet_pi_levels, doublet_pi_rotation, vibration_rotation_levels
 from heatwright.partition.lowmodes import LowModes
-from heatwright.partition.model import ModelOptions, build_model
 from heatwright.partition.radicals import doublet_pi
 from molecules import molecule
 

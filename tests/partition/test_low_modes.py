@@ -5,10 +5,10 @@ from __future__ import annotations
 import numpy as np
 import pytest
 
+from heatwright import ModelOptions, build_model
 from heatwright.constants import GAS_CONSTANT_J_MOL_K as R
 from heatwright.errors import UsageError
 from heatwright.partition.lowmodes import InterpolatedVibration, LowModes, mode_shifts
-from heatwright.partition.model import ModelOptions, build_model
 from heatwright.partition.vibration import HarmonicVibration
 from molecules import water
 

@@ -5,12 +5,12 @@ from __future__ import annotations
 import numpy as np
 import pytest
 
+from heatwright import ModelOptions, build_model
 from heatwright.constants import GAS_CONSTANT_J_MOL_K as R
 from heatwright.errors import UsageError
 from heatwright.findings import Refused
 from heatwright.partition.diatomic import level_sum, rotational_levels
 from heatwright.partition.levelsum import LevelSum
-from heatwright.partition.model import ModelOptions, build_model
 from heatwright.partition.rotation import ClassicalRotor, CorrectedRotor
 from heatwright.partition.spins import spin_weights
 from molecules import atom, molecule, water

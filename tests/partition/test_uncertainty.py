@@ -11,6 +11,7 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
+from heatwright import ModelOptions, build_model
 from heatwright.constants import GAS_CONSTANT_J_MOL_K as R
 from heatwright.constants import SECOND_RADIATION_CM_K
 from heatwright.errors import UsageError
@@ -19,7 +20,6 @@ from heatwright.partition.conformers import Conformer
 from heatwright.partition.contribution import LnQ
 from heatwright.partition.inputs import InputUncertainties, default_scale, parse_uncertainties, stated_inputs
 from heatwright.partition.mixing import mixture_model
-from heatwright.partition.model import ModelOptions, build_model
 from heatwright.partition.rotation import ClassicalRotor
 from heatwright.partition.translation import Translation
 from heatwright.partition.uncertainty import (

@@ -20,9 +20,9 @@ import numpy as np
 import pytest
 import scipy.constants as codata
 
+from heatwright import ModelOptions, build_model
 from heatwright.findings import refusals
 from heatwright.molecule import Molecule, PrintedThermo
-from heatwright.partition.model import ModelOptions, build_model
 from heatwright.reading.outputs import read_output
 from outside import SHARED, needs_shared
 

@@ -9,9 +9,9 @@ import janaf
 import numpy as np
 import pytest
 
+from heatwright import build_model
 from heatwright.constants import GAS_CONSTANT_J_MOL_K as R
 from heatwright.findings import Refused, refusals
-from heatwright.partition.model import build_model
 from heatwright.reading.outputs import read_output
 
 HYDROGEN = """[molecule]

@@ -9,10 +9,10 @@ from __future__ import annotations
 import numpy as np
 import pytest
 
+from heatwright import build_model
 from heatwright.findings import Refused
 from heatwright.formation.atomization import collect_atoms, formation_by_atomization
 from heatwright.molecule import Molecule
-from heatwright.partition.model import build_model
 from heatwright.reading.outputs import read_output
 from heatwright.reading.single_point import with_energy
 from heatwright.structure.superposition import matched, superposed

@@ -8,10 +8,10 @@ from pathlib import Path
 import numpy as np
 import pytest
 
+from heatwright import ModelOptions, build_model
 from heatwright.errors import UsageError
 from heatwright.findings import Finding, Refused
 from heatwright.molecule import Molecule
-from heatwright.partition.model import ModelOptions, build_model
 from heatwright.reading.outputs import read_output
 from heatwright.structure.isotopes import parse_isotope, with_isotopes
 from kept_outputs import codes, kept, read_text, text_of

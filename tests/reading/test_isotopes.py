@@ -11,11 +11,11 @@ from functools import partial
 import numpy as np
 import pytest
 
+from heatwright import build_model
 from heatwright.elements import composition
 from heatwright.errors import UsageError
 from heatwright.findings import Refused
 from heatwright.molecule import Molecule
-from heatwright.partition.model import build_model
 from heatwright.reading.outputs import read_output
 from heatwright.structure.inertia import inertia
 from heatwright.structure.isotopes import parse_isotope, with_isotopes

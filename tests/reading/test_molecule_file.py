@@ -10,9 +10,9 @@ import janaf
 import numpy as np
 import pytest
 
+from heatwright import ModelOptions, build_model
 from heatwright.constants import GAS_CONSTANT_J_MOL_K as R
 from heatwright.findings import Refused, refusals
-from heatwright.partition.model import ModelOptions, build_model
 from heatwright.reading.moleculefile import KEYS
 from heatwright.reading.outputs import read_output
 from heatwright.reading.strict import line_of

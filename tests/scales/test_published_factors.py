@@ -5,10 +5,10 @@ from __future__ import annotations
 import numpy as np
 import pytest
 
+from heatwright import ModelOptions, build_model
 from heatwright.errors import UsageError
 from heatwright.findings import Refused
 from heatwright.molecule import Level
-from heatwright.partition.model import ModelOptions, build_model
 from heatwright.scales import (
     SOURCE_ORDER,
     all_factors,

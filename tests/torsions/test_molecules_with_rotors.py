@@ -8,12 +8,12 @@ from functools import lru_cache
 import numpy as np
 import pytest
 
+from heatwright import ModelOptions, ThermoModel, build_model
 from heatwright.cli.main import main
 from heatwright.constants import CM1_KJ_MOL, GAS_CONSTANT_J_MOL_K
 from heatwright.errors import UsageError
 from heatwright.findings import Refused
 from heatwright.molecule import Molecule
-from heatwright.partition.model import ModelOptions, ThermoModel, build_model
 from heatwright.reading.outputs import read_output
 from heatwright.reading.torsion_scans import read_torsion
 from heatwright.resources import sample_outputs

@@ -11,9 +11,9 @@ from hypothesis import assume, given
 from hypothesis import strategies as st
 
 from entries import cantera_reads, entry_of, heap, text_of
+from heatwright import ModelOptions
 from heatwright.entry import FitOptions
 from heatwright.findings import Refused
-from heatwright.partition.model import ModelOptions
 from heatwright.writing import numbers
 from heatwright.writing.comment import ascii_text
 from heatwright.writing.formats import FORMATS

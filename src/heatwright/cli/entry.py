@@ -27,7 +27,8 @@ if TYPE_CHECKING:
     from heatwright.entry import Entry, FitOptions
     from heatwright.formation.atomization import Atoms
     from heatwright.formation.formation import Formation, GivenEnthalpy
-    from heatwright.partition.model import ModelOptions, ThermoModel
+    from heatwright.partition.choices import ModelOptions
+    from heatwright.partition.model import ThermoModel
 
 
 @dataclass(frozen=True, slots=True)

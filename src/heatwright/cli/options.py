@@ -13,8 +13,9 @@ from heatwright.errors import UsageError
 if TYPE_CHECKING:
     from heatwright.entry import FitOptions
     from heatwright.molecule import Molecule
+    from heatwright.partition.choices import ModelOptions
     from heatwright.partition.lowmodes import LowModes
-    from heatwright.partition.model import ModelOptions, ThermoModel
+    from heatwright.partition.model import ThermoModel
     from heatwright.structure.isotopes import Isotope
 
 F = TypeVar("F", bound=Callable[..., Any])
@@ -223,9 +224,9 @@ def taken_energies(options: dict[str, Any], n_outputs: int) -> tuple[str | None,
 def taken_model_options(options: dict[str, Any]) -> ModelOptions:
     """The model options out of a command's keyword arguments."""
     from heatwright.constants import ATMOSPHERE_PA, BAR_PA
+    from heatwright.partition.choices import ModelOptions
     from heatwright.partition.electronic import parse_levels
     from heatwright.partition.inputs import parse_uncertainties
-    from heatwright.partition.model import ModelOptions
     from heatwright.reading.torsion_scans import read_torsion
 
     electronic = options.pop("electronic")

@@ -22,7 +22,8 @@ from heatwright.cli.reporter import Reporter
 
 if TYPE_CHECKING:
     from heatwright.findings import Finding
-    from heatwright.partition.model import ThermoModel, ThermoTable
+    from heatwright.partition.model import ThermoModel
+    from heatwright.partition.table import ThermoTable
 
     Tabulated = tuple[str, ThermoModel, ThermoTable]
 
@@ -63,7 +64,7 @@ def table(
     """
     from heatwright.entry import TABLE_TEMPERATURES_K
     from heatwright.findings import Refused
-    from heatwright.partition.model import checked_temperatures
+    from heatwright.partition.table import checked_temperatures
     from heatwright.writing.names import default_name
 
     reporter = Reporter(quiet=quiet, verbose=verbose)

@@ -2,126 +2,34 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
-from math import isfinite
-from typing import Any, Final, Literal, get_args
+from typing import Any, Final
 
 import numpy as np
 from numpy.typing import ArrayLike
 
-from heatwright.constants import BAR_PA, CM1_KJ_MOL, GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
+from heatwright.constants import CM1_KJ_MOL, GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
 from heatwright.elements import composition, element
-from heatwright.errors import UsageError
 from heatwright.findings import Finding, warn
 from heatwright.molecule import FloatArray, MassKind, Molecule
 from heatwright.partition.anharmonic import anharmonic_findings, oscillators
+from heatwright.partition.choices import HARMONIC, ModelOptions
 from heatwright.partition.conformers import Conformer, ConformerMixture
 from heatwright.partition.contribution import ConstantFactor, Contribution, LnQ, total_ln_q
 from heatwright.partition.electronic import Levels
-from heatwright.partition.inputs import InputUncertainties
 from heatwright.partition.internal_rotation import InternalRotation, TreatedTorsion, cost, internal_rotation
 from heatwright.partition.isomers import isomers_with_torsions
-from heatwright.partition.lowmodes import LowModes
-from heatwright.partition.motion import Motion, RotationKind, motion
-from heatwright.partition.radicals import ElectronicOption, electronic_choice
+from heatwright.partition.motion import Motion, motion
+from heatwright.partition.radicals import electronic_choice
 from heatwright.partition.rigid import rigid_body, symmetry_choice
 from heatwright.partition.scaling import published_choice, scale_findings
+from heatwright.partition.table import ThermoTable, checked_temperatures, share_of
 from heatwright.partition.translation import Translation
 from heatwright.partition.uncertainty import TableUncertainty, propagated
 from heatwright.partition.vibration import zero_point_energy_kJ_mol
-from heatwright.reading.torsion_scans import Torsion
 from heatwright.scales import ScaleChoice
 from heatwright.structure.inertia import Inertia
 from heatwright.structure.symmetry import Symmetry
-
-_HARMONIC: Final = LowModes()
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class ModelOptions:
-    """The choices behind a model; ``None`` means "as the output or the geometry says" (unscaled for scale factors).
-
-    pressure_Pa : standard pressure.   frequency_scale, zpe_scale : factors on the wavenumbers for the thermal
-    functions and for the zero-point energy.   scale : ``"published"`` takes both of them from the table of published
-    factors (:func:`heatwright.scales.choose_published`) for the molecule's level of theory.   symmetry_number,
-    optical_isomers : override the geometry.   electronic : ``"table"``, ``"spin"``, explicit levels, or ``"levels"``:
-    the table, with a sum over the rotational and electronic levels together for doublet Π radicals.
-    masses : isotopic or average atomic masses.   symmetry_tolerance_A : how far an atom may be from its image, Å.
-    anharmonic : the output's anharmonic fundamentals and zero-point energy instead of the harmonic ones.
-    uncertainty : standard uncertainties of the inputs that a table propagates, None for a table without.
-    low_modes : treatment of low modes.   rotation : ``"classical"``, ``"corrected"`` or ``"sum"`` (linear molecules).
-    torsions : what :func:`heatwright.reading.torsion_scans.read_torsion` gave, each treated as a hindered rotor;
-    torsion_coupling : with the coupled determinant of their reduced moments.
-    """
-
-    pressure_Pa: float = BAR_PA
-    frequency_scale: float | None = None
-    zpe_scale: float | None = None
-    scale: Literal["published"] | None = None
-    symmetry_number: int | None = None
-    optical_isomers: int | None = None
-    electronic: ElectronicOption = "table"
-    masses: MassKind | None = None
-    symmetry_tolerance_A: float = 0.05
-    anharmonic: bool = False
-    uncertainty: InputUncertainties | None = None
-    low_modes: LowModes = _HARMONIC
-    rotation: RotationKind = "classical"
-    torsions: tuple[Torsion, ...] = ()
-    torsion_coupling: bool = False
-
-    def __post_init__(self) -> None:
-        for name in ("pressure_Pa", "frequency_scale", "zpe_scale", "symmetry_tolerance_A"):
-            value = getattr(self, name)
-            if value is not None and not (isfinite(value) and value > 0.0):
-                raise UsageError(f"{name} must be a positive number, not {value}")
-        for name in ("symmetry_number", "optical_isomers"):
-            value = getattr(self, name)
-            if value is not None and value < 1:
-                raise UsageError(f"{name} must be at least 1, not {value}")
-        if self.rotation not in get_args(RotationKind):
-            raise UsageError(f"rotation is one of {', '.join(get_args(RotationKind))}, not {self.rotation!r}")
-        if self.anharmonic and any(x is not None for x in (self.scale, self.frequency_scale, self.zpe_scale)):
-            raise UsageError("scale factors are for harmonic wavenumbers; leave them out together with --anharmonic")
-        if self.anharmonic and self.torsions:
-            raise UsageError("a torsion is projected out of harmonic modes; leave out --anharmonic")
-        if self.scale is not None and (self.frequency_scale is not None or self.zpe_scale is not None):
-            raise UsageError("published scale factors and stated ones (frequency_scale, zpe_scale) exclude each other")
-
-
-@dataclass(frozen=True, eq=False, slots=True)
-class Share:
-    """What one contribution adds, each (n,): Cp (J/mol/K), H − H(298.15 K) (kJ/mol) and S (J/mol/K)."""
-
-    cp_J_mol_K: FloatArray
-    h_minus_h298_kJ_mol: FloatArray
-    s_J_mol_K: FloatArray
-
-
-@dataclass(frozen=True, eq=False, slots=True)
-class ThermoTable:
-    """Standard thermodynamic functions on a temperature grid, with the share of each contribution.
-
-    T_K, cp_J_mol_K, h_minus_h298_kJ_mol, s_J_mol_K : (n,).   h298_minus_h0_kJ_mol : enthalpy increment from 0 K.
-    shares : by the contribution's name; they add up to the totals.
-    populations : of the model's conformers, one array (n,) each, mirror images together; empty without conformers.
-    uncertainty : standard uncertainties of the columns, when inputs with uncertainties were stated.
-    """
-
-    T_K: FloatArray
-    cp_J_mol_K: FloatArray
-    h_minus_h298_kJ_mol: FloatArray
-    s_J_mol_K: FloatArray
-    h298_minus_h0_kJ_mol: float
-    shares: Mapping[str, Share]
-    populations: tuple[FloatArray, ...] = ()
-    uncertainty: TableUncertainty | None = None
-
-    @property
-    def minus_g_minus_h298_over_T_J_mol_K(self) -> FloatArray:
-        """−[G°(T) − H°(298.15 K)]/T = S° − [H° − H°(298.15 K)]/T, J/mol/K."""
-        return self.s_J_mol_K - 1000.0 * self.h_minus_h298_kJ_mol / self.T_K
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -225,7 +133,7 @@ class ThermoModel:
     def tabulate(self, T: ArrayLike) -> ThermoTable:
         """The table at the temperatures *T*, K."""
         grid = np.atleast_1d(checked_temperatures(T))
-        shares = {c.name: _share(c, grid) for c in self.contributions}
+        shares = {c.name: share_of(c, grid) for c in self.contributions}
         return ThermoTable(
             T_K=grid,
             cp_J_mol_K=np.sum([s.cp_J_mol_K for s in shares.values()], axis=0),
@@ -261,22 +169,6 @@ class ThermoModel:
     def classical_limit_R(self) -> float | None:
         """The same where it is a limit of this model, else None: electronic levels, level sums, conformer mixtures."""
         return self.classical_cp_R if len(self.levels) == 1 and self.motion.is_bounded and not self.conformers else None
-
-
-def checked_temperatures(T: ArrayLike) -> FloatArray:
-    """The temperatures as an array of floats; raises UsageError unless all are finite and positive."""
-    grid = np.asarray(T, dtype=float)
-    if grid.size == 0 or not np.all(np.isfinite(grid) & (grid > 0.0)):
-        raise UsageError(f"temperatures must be positive numbers in K, not {np.array2string(grid)}")
-    return grid
-
-
-def _share(contribution: Contribution, T: FloatArray) -> Share:
-    values = contribution.ln_q(T)
-    reference = contribution.ln_q(np.array([STANDARD_TEMPERATURE_K]))
-    h_R = values.h_RT * T - reference.h_RT[0] * STANDARD_TEMPERATURE_K
-    R = GAS_CONSTANT_J_MOL_K
-    return Share(values.cp_R * R, h_R * R / 1000.0, values.s_R * R)
 
 
 def build_model(molecule: Molecule, options: ModelOptions | None = None) -> ThermoModel:
@@ -352,7 +244,7 @@ _FOR_OSCILLATORS: Final[dict[str, Any]] = {
     "frequency_scale": None,
     "zpe_scale": None,
     "anharmonic": False,
-    "low_modes": _HARMONIC,
+    "low_modes": HARMONIC,
     "rotation": "classical",
 }
 """Options of rotors and oscillators with their defaults; they have no effect on levels from spectroscopic constants."""

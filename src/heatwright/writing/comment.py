@@ -11,7 +11,8 @@ from heatwright.entry import Entry
 from heatwright.findings import SEVERITY_WORD, Finding
 from heatwright.formation.formation import Formation
 from heatwright.molecule import Molecule
-from heatwright.partition.model import ThermoModel, ThermoTable
+from heatwright.partition.model import ThermoModel
+from heatwright.partition.table import ThermoTable
 from heatwright.writing.units import UNITS, Units
 
 WIDTH: Final = 76

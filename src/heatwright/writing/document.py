@@ -14,7 +14,8 @@ from heatwright.findings import Finding
 from heatwright.formation.formation import Formation
 from heatwright.molecule import FloatArray, Molecule
 from heatwright.partition.internal_rotation import TreatedTorsion
-from heatwright.partition.model import ThermoModel, ThermoTable
+from heatwright.partition.model import ThermoModel
+from heatwright.partition.table import ThermoTable
 from heatwright.partition.torsion import HinderedRotor
 from heatwright.partition.uncertainty import TableUncertainty
 from heatwright.polynomial.nasa7 import Nasa7

@@ -5,7 +5,8 @@ from __future__ import annotations
 from collections.abc import Iterable
 
 from heatwright.elements import formula
-from heatwright.partition.model import ThermoModel, ThermoTable
+from heatwright.partition.model import ThermoModel
+from heatwright.partition.table import ThermoTable
 from heatwright.partition.uncertainty import TableUncertainty
 from heatwright.writing.comment import levels_text, pressure_text
 from heatwright.writing.units import UNITS, Units
