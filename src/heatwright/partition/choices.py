@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from math import isfinite
-from typing import Final, Literal, get_args
+from typing import TYPE_CHECKING, Final, Literal, get_args
 
 from heatwright.constants import BAR_PA
 from heatwright.errors import UsageError
@@ -13,7 +13,9 @@ from heatwright.partition.inputs import InputUncertainties
 from heatwright.partition.lowmodes import LowModes
 from heatwright.partition.motion import RotationKind
 from heatwright.partition.radicals import ElectronicOption
-from heatwright.reading.torsion_scans import Torsion
+
+if TYPE_CHECKING:
+    from heatwright.reading.torsion_scans import Torsion
 
 HARMONIC: Final = LowModes()
 """Low modes as they come: the default."""

@@ -2,8 +2,12 @@
 
 from __future__ import annotations
 
+from typing import TYPE_CHECKING
+
 from heatwright.findings import Finding, note, warn
-from heatwright.partition.internal_rotation import InternalRotation
+
+if TYPE_CHECKING:
+    from heatwright.partition.internal_rotation import InternalRotation
 
 
 def isomers_with_torsions(

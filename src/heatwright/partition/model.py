@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, field, replace
-from typing import Any, Final
+from typing import TYPE_CHECKING, Any, Final
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -17,7 +17,6 @@ from heatwright.partition.choices import HARMONIC, ModelOptions
 from heatwright.partition.conformers import Conformer, ConformerMixture
 from heatwright.partition.contribution import ConstantFactor, Contribution, LnQ, total_ln_q
 from heatwright.partition.electronic import Levels
-from heatwright.partition.internal_rotation import InternalRotation, TreatedTorsion, cost, internal_rotation
 from heatwright.partition.isomers import isomers_with_torsions
 from heatwright.partition.motion import Motion, motion
 from heatwright.partition.radicals import electronic_choice
@@ -25,11 +24,14 @@ from heatwright.partition.rigid import rigid_body, symmetry_choice
 from heatwright.partition.scaling import published_choice, scale_findings
 from heatwright.partition.table import ThermoTable, checked_temperatures, share_of
 from heatwright.partition.translation import Translation
-from heatwright.partition.uncertainty import TableUncertainty, propagated
 from heatwright.partition.vibration import zero_point_energy_kJ_mol
 from heatwright.scales import ScaleChoice
 from heatwright.structure.inertia import Inertia
 from heatwright.structure.symmetry import Symmetry
+
+if TYPE_CHECKING:
+    from heatwright.partition.internal_rotation import InternalRotation, TreatedTorsion
+    from heatwright.partition.uncertainty import TableUncertainty
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -151,8 +153,12 @@ class ThermoModel:
 
     def _uncertainty(self, T: FloatArray) -> TableUncertainty | None:
         stated = self.options.uncertainty
+        if stated is None:
+            return None
+        from heatwright.partition.uncertainty import propagated
+
         alone = (Conformer(self.molecule.source.file, 0.0, self.optical_isomers, self.contributions),)
-        return None if stated is None else propagated(self.conformers or alone, stated, self.molecule.level, T)
+        return propagated(self.conformers or alone, stated, self.molecule.level, T)
 
     @property
     def h298_minus_h0_kJ_mol(self) -> float:
@@ -193,6 +199,8 @@ def build_model(molecule: Molecule, options: ModelOptions | None = None) -> Ther
     rotors = _rotors(molecule, options)
     isomers, rotor_findings = isomers_with_torsions(options.optical_isomers, isomers_found, rotors)
     if rotors is not None:
+        from heatwright.partition.internal_rotation import cost
+
         wavenumbers, zpe_kJ_mol = rotors.wavenumbers_cm1, zero_point_energy_kJ_mol(rotors.wavenumbers_cm1)
         counted = (options.optical_isomers or isomers_found, isomers)
         said = cost(molecule, rotors, options.frequency_scale or 1.0, counted)
@@ -263,6 +271,8 @@ def _rotors(molecule: Molecule, options: ModelOptions) -> InternalRotation | Non
     """The torsions that were asked for, or None."""
     if not options.torsions:
         return None
+    from heatwright.partition.internal_rotation import internal_rotation
+
     return internal_rotation(molecule, options.torsions, coupled=options.torsion_coupling)
 
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -12,7 +13,9 @@ from heatwright.constants import GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
 from heatwright.errors import UsageError
 from heatwright.molecule import FloatArray
 from heatwright.partition.contribution import Contribution
-from heatwright.partition.uncertainty import TableUncertainty
+
+if TYPE_CHECKING:
+    from heatwright.partition.uncertainty import TableUncertainty
 
 
 @dataclass(frozen=True, eq=False, slots=True)

@@ -8,8 +8,6 @@ from pathlib import PurePath
 from heatwright.findings import Finding, Refused, note, refuse
 from heatwright.molecule import Molecule, Source
 from heatwright.reading.files import StoredText
-from heatwright.reading.moleculefile import molecule_from_toml
-from heatwright.reading.qcschema import creator, molecule_from_qcschema, qcschema_document
 from heatwright.reading.soundness import soundness
 
 _PACKED = {".gz", ".bz2", ".xz"}
@@ -24,16 +22,30 @@ def given_molecule(
     """
     file = os.fspath(path)
     if _ending(file) == ".toml":
+        from heatwright.reading.moleculefile import molecule_from_toml
+
         molecule = molecule_from_toml(stored.text, Source(file, stored.sha256, "by hand", ""))
-    elif (document := qcschema_document(stored.text)) is not None:
-        molecule = molecule_from_qcschema(document, Source(file, stored.sha256, *creator(document)))
     else:
-        return None
+        from_schema = _of_qcschema(file, stored)
+        if from_schema is None:
+            return None
+        molecule = from_schema
     if job not in (None, 1):
         words = f"job {job} was asked for, and this file holds one molecule"
         raise Refused([refuse("several-jobs", words, action="Leave --job out.")])
     molecule, said = _as_the_user_says(molecule, charge, multiplicity)
     return molecule.but(findings=(*stored.findings, *molecule.findings, *said, *soundness(molecule)))
+
+
+def _of_qcschema(file: str, stored: StoredText) -> Molecule | None:
+    if not stored.text[:4096].lstrip().startswith("{"):
+        return None
+    from heatwright.reading.qcschema import creator, molecule_from_qcschema, qcschema_document
+
+    document = qcschema_document(stored.text)
+    if document is None:
+        return None
+    return molecule_from_qcschema(document, Source(file, stored.sha256, *creator(document)))
 
 
 def _ending(file: str) -> str:
