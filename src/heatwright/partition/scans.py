@@ -54,8 +54,8 @@ def wished(molecule: Molecule, wish: Torsion) -> WishedTorsion:
     if isinstance(wish, TorsionBarrier):
         bond = _bond(molecule, wish.atoms)
         return WishedTorsion(bond, _given(molecule, bond, wish), None, wish.source)
-    faults = [f for m in wish.molecules for f in _another(molecule, m)]
-    if faults:
+    faults = next((found for m in wish.molecules if (found := _another(molecule, m))), [])
+    if faults:  # the first point that does not belong says enough
         raise Refused(faults)
     bond, measured = _named_bond(molecule, wish)
     if wish.angles_deg is not None:
