@@ -60,7 +60,7 @@ def _totals(table: ThermoTable, units: Units) -> Iterable[str]:
     gibbs = table.minus_g_minus_h298_over_T_J_mol_K
     columns = [c * units.factor for c in (table.cp_J_mol_K, table.h_minus_h298_kJ_mol, table.s_J_mol_K, gibbs)]
     for T, cp, h, s, g in zip(table.T_K, *columns, strict=True):
-        yield f"{T:9.2f} {cp:10.3f} {h:12.3f} {s:10.3f} {g:17.3f}"
+        yield f"{T:9.2f} {cp:10.3f} {h:z12.3f} {s:10.3f} {g:17.3f}"
 
 
 def _totals_with_uncertainty(table: ThermoTable, u: TableUncertainty, units: Units) -> Iterable[str]:
@@ -71,7 +71,7 @@ def _totals_with_uncertainty(table: ThermoTable, u: TableUncertainty, units: Uni
     values = (table.cp_J_mol_K, u.cp_J_mol_K, table.h_minus_h298_kJ_mol, u.h_minus_h298_kJ_mol, table.s_J_mol_K)
     columns = [c * units.factor for c in (*values, u.s_J_mol_K, table.minus_g_minus_h298_over_T_J_mol_K)]
     for T, cp, u_cp, h, u_h, s, u_s, g in zip(table.T_K, *columns, strict=True):
-        yield f"{T:9.2f} {cp:10.3f} {u_cp:8.3f} {h:12.3f} {u_h:8.3f} {s:10.3f} {u_s:8.3f} {g:17.3f}"
+        yield f"{T:9.2f} {cp:10.3f} {u_cp:8.3f} {h:z12.3f} {u_h:8.3f} {s:10.3f} {u_s:8.3f} {g:17.3f}"
 
 
 def _conformers(model: ThermoModel, table: ThermoTable, units: Units) -> Iterable[str]:
