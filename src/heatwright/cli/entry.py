@@ -26,9 +26,8 @@ from heatwright.errors import UsageError
 if TYPE_CHECKING:
     from heatwright.entry import Entry, FitOptions
     from heatwright.formation.atomization import Atoms
-    from heatwright.formation.formation import Formation, GivenEnthalpy
+    from heatwright.formation.formation import GivenEnthalpy
     from heatwright.partition.choices import ModelOptions
-    from heatwright.partition.model import ThermoModel
 
 
 @dataclass(frozen=True, slots=True)
@@ -292,38 +291,18 @@ def _make(job: _Job, request: Request) -> Entry:
     from dataclasses import replace
 
     from heatwright.entry import make_entry
+    from heatwright.formation.routes import RouteRequest, formation_of
     from heatwright.writing.names import default_name
 
     model = usable_species(job.files, request.reading, request.model, trust_levels=request.trust_levels, for_entry=True)
-    formation = _formation(model, job.given, request)
+    formation = formation_of(
+        model, RouteRequest(given=job.given, atoms=request.atoms, trust_levels=request.trust_levels)
+    )
     if job.name is not None:
         return make_entry(job.name, model, formation, request.fit)
     name, said = default_name(model.named_after or model.molecule, model.composition)
     made = make_entry(name, model, formation, request.fit)
     return replace(made, findings=(*made.findings, *said))
-
-
-def _formation(model: ThermoModel, given: tuple[GivenEnthalpy, str | None] | None, request: Request) -> Formation:
-    from heatwright.findings import Refused, refuse
-    from heatwright.formation.atomization import formation_by_atomization
-    from heatwright.formation.formation import formation_given
-
-    if given is not None:
-        enthalpy, source = given
-        return formation_given(enthalpy, source, model.composition, model.h298_minus_h0_kJ_mol)
-    if request.atoms is None:
-        raise Refused(
-            [
-                refuse(
-                    "no-formation",
-                    "there is no enthalpy of formation for the entry's H",
-                    expected='--dHf298 "VALUE kJ/mol" --source TEXT, or --atoms DIR with outputs of the atoms '
-                    f"{', '.join(model.composition)} at the same level",
-                    action="`heatwright table` shows the functions that need none.",
-                )
-            ]
-        )
-    return formation_by_atomization(model, request.atoms, trust_levels=request.trust_levels)
 
 
 def _describe(path: str, made: Entry, units_name: str, reporter: Reporter) -> None:

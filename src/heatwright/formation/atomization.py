@@ -6,7 +6,7 @@ from collections.abc import Iterator, Mapping
 
 from heatwright.constants import HARTREE_KJ_MOL
 from heatwright.elements import ground_multiplicity, symbol
-from heatwright.findings import Finding, Refused, note, refusals, refuse, warn
+from heatwright.findings import Finding, Refused, note, refusals, refuse
 from heatwright.formation.formation import (
     Formation,
     LedgerLine,
@@ -14,9 +14,9 @@ from heatwright.formation.formation import (
     element_increment_kJ_mol,
 )
 from heatwright.formation.references import AtomReference, atom_reference, elements_with_reference
+from heatwright.formation.same_level import level_objections
 from heatwright.molecule import Molecule
 from heatwright.partition.model import ThermoModel
-from heatwright.reading.levels import level_differences, level_unknowns
 
 Atoms = Mapping[str, tuple[Molecule, ...]]
 """Atom outputs by element symbol; several levels of theory may lie side by side."""
@@ -188,41 +188,5 @@ def _objections(element: str, atom: Molecule, molecule: Molecule, trust_levels: 
     said.extend(f.at(where) for f in refusals(atom.findings))
     if atom.energy_hartree is None:
         said.append(refuse("no-energy", f"the {element} atom has no total energy", where=where))
-    said.extend(_level_objections(element, atom, molecule, trust_levels))
+    said.extend(level_objections(f"{element} atom", atom, molecule, trust=trust_levels))
     return tuple(said)
-
-
-def _level_objections(element: str, atom: Molecule, molecule: Molecule, trust: bool) -> tuple[Finding, ...]:
-    where = atom.source.file
-    level = molecule.level_of_energy
-    if atom.level is None or level is None:
-        differences: tuple[str, ...] = ("the level of theory is not printed",)
-        unknowns: tuple[str, ...] = ()
-    else:
-        differences = level_differences(level, atom.level)
-        unknowns = level_unknowns(level, atom.level)
-    kinds = {molecule.energy_kind, atom.energy_kind}
-    if len(kinds) == 2 and not _one_electron(atom):
-        differences = (*differences, f"energy {molecule.energy_kind} against {atom.energy_kind}")
-    said = []
-    if differences:
-        found = f"the {element} atom is not at the molecule's level of theory ({'; '.join(differences)})"
-        said.append(
-            warn("level-trusted", found, where=where)
-            if trust
-            else refuse(
-                "level-differs",
-                found,
-                where=where,
-                expected="the same level by the same program",
-                action="Recompute the atom, or say --trust-levels when you know that the energies belong together.",
-            )
-        )
-    elif unknowns:
-        said.append(warn("level-unknown", f"not comparable as printed: {'; '.join(unknowns)}", where=where))
-    return tuple(said)
-
-
-def _one_electron(atom: Molecule) -> bool:
-    """Whether there is no electron correlation to compute, so that a correlated and an SCF energy are the same."""
-    return int(atom.atomic_numbers[0]) - (atom.charge or 0) == 1
