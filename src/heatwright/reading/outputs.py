@@ -65,10 +65,9 @@ def read_output(
     source = Source(name, stored.sha256, program.name, "")
     user = (charge, multiplicity)
     molecule = _molecule(source, program, dialect, choice, user, stored.findings, with_hessian)
-    for number in choice.other_analyses:
-        other = _molecule(source, program, dialect, choose(dialect, text, number), user, (), False)
-        if bonded_differently(molecule, other):
-            molecule = molecule.but(findings=(isomers(number, choice.number), *molecule.findings))
+    other = next((o.number for o in choice.other_analyses if _is_isomer(molecule, program, dialect, o)), None)
+    if other is not None:
+        molecule = molecule.but(findings=(isomers(other, choice.number), *molecule.findings))
     return with_accepted(molecule, accept, accept_imaginary_cm1)
 
 
@@ -101,10 +100,18 @@ def _molecule(
     return molecule.but(findings=_once(findings))
 
 
+def _is_isomer(molecule: Molecule, program: Program, dialect: Dialect, other: Choice) -> bool:
+    """Whether another analysis is of a structure with other bonds, as far as it can be read."""
+    parsed = parse(program.parser, other.pieces, due=_due(dialect, other))
+    with np.errstate(all="ignore"):
+        found, _ = assemble(molecule.source, other.identity, parsed, _facts(dialect, other, parsed), (None, None))
+    return found is not None and bonded_differently(molecule, found)
+
+
 def _due(dialect: Dialect, choice: Choice) -> list[str]:
     """What cclib has to find in a job, as the dialect knows no better."""
     due = ["atomnos", "atomcoords"]
-    if any(anchor in choice.job for anchor in dialect.mode_anchors):
+    if not dialect.reads_modes and any(anchor in choice.job for anchor in dialect.mode_anchors):
         due += ["vibfreqs", "vibdisps"]
     if choice.identity.charge is None:
         due.append("charge")
@@ -195,7 +202,7 @@ def _whole_modes(molecule: Molecule, dialect: Dialect, choice: Choice, parsed: P
 
 
 def _cut(choice: Choice) -> bool:
-    return choice.job.end >= len(choice.job.whole.rstrip())
+    return choice.job.is_last
 
 
 def _endings(

@@ -54,8 +54,8 @@ _WANTED = frozenset(
 )
 """Attributes used here; the others (orbitals, populations) are dropped before cclib turns them into arrays."""
 _MOST_MISHAPS = 10
-_BLOCK = 1 << 18
-_LINE = re.compile(r"[^\n]*\n|[^\n]+")
+_LOOK_BACK = 10
+"""Lines behind the present one that cclib's parsers may ask for."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -120,10 +120,10 @@ def _parsed(parser: str, pieces: Sequence[Text], pattern: re.Pattern[str] | None
 def _values(
     parser: str, pieces: Sequence[Text], pattern: re.Pattern[str] | None, log: list[Mishap], ended: list[bool]
 ) -> dict[str, Any]:
-    guarded = _guarded(_parser_class(parser), pattern, log, ended)
+    guarded = _guarded(_parser_class(parser), log, ended)
     run: Any = None
     try:
-        run = guarded(_lines(pieces), loglevel=logging.CRITICAL + 1, logstream=io.StringIO())
+        run = guarded(_lines(pieces, pattern), loglevel=logging.CRITICAL + 1, logstream=io.StringIO())
         return {name: value for name, value in vars(run.parse()).items() if name in _WANTED}
     except Exception as error:
         _note(log, sum(piece.end - piece.start for piece in pieces), error)
@@ -133,45 +133,76 @@ def _values(
             run.logger.handlers.clear()
 
 
-def _lines(pieces: Sequence[Text]) -> Any:
-    """The pieces as the kind of input cclib reads from, without a copy of the text."""
+def _lines(pieces: Sequence[Text], pattern: re.Pattern[str] | None) -> Any:
+    """The pieces as the kind of input cclib reads from, without a copy of the text.
+
+    The first loop over it, which is cclib's main one, gets only the lines that hold the pattern; the others are never
+    cut out of the text.  A block takes its lines with ``next`` or a loop of its own, and gets each of them.
+    """
     from cclib.parser.logfilewrapper import FileWrapper
 
     class Lines(FileWrapper):
         def __init__(self) -> None:
-            super().__init__()
-            self.filenames = ["output"]
+            self.filenames, self.files = ["output"], []
             self.size = sum(piece.end - piece.start for piece in pieces)
-            self.rest = _line_by_line(pieces)
+            self.looped = False
+            self.reset()
+
+        def reset(self) -> None:
+            self.rest, self.before = iter(pieces), 0
+            self.whole, self.start, self.at, self.end = "", 0, 0, 0
+
+        def opened(self) -> bool:
+            """Whether there is more to read; goes on to the next piece when one is done."""
+            while self.at >= self.end:
+                piece = next(self.rest, None)
+                if piece is None:
+                    return False
+                self.before += self.end - self.start
+                self.whole, self.start, self.at, self.end = piece.whole, piece.start, piece.start, piece.end
+            return True
 
         def __next__(self) -> str:
-            line = next(self.rest)
-            self.last_lines.append(line)
-            self.pos += len(line)
-            return line
+            if self.at >= self.end and not self.opened():
+                raise StopIteration
+            first = self.at
+            self.at = self.whole.find("\n", first, self.end) + 1 or self.end
+            return self.whole[first : self.at]
+
+        def __iter__(self) -> Iterator[str]:
+            first_loop, self.looped = not self.looped, True
+            return self.shown() if first_loop else self
+
+        def shown(self) -> Iterator[str]:
+            while self.opened():
+                if pattern is not None:
+                    found = pattern.search(self.whole, self.at, self.end)
+                    if found is None:
+                        self.at = self.end
+                        continue
+                    self.at = self.whole.rfind("\n", self.at, found.start()) + 1 or self.at
+                yield next(self)
+
+        @property
+        def pos(self) -> int:
+            return self.before + self.at - self.start
+
+        @property
+        def last_lines(self) -> list[str]:
+            """The lines up to here, at most ten, padded with empty ones."""
+            first = self.at
+            for _ in range(_LOOK_BACK):
+                first = self.whole.rfind("\n", self.start, max(first - 1, self.start)) + 1 or self.start
+            lines = self.whole[first : self.at].splitlines(keepends=True)
+            return [*[""] * (_LOOK_BACK - len(lines)), *lines]
 
         def sort(self, order: list[str]) -> None:
             """There is one source."""
 
-        def reset(self) -> None:
-            self.rest, self.pos = _line_by_line(pieces), 0
-
         def finish(self) -> None:
-            self.rest, self.pos = iter(()), self.size
+            self.rest, self.at = iter(()), self.end
 
     return Lines()
-
-
-def _line_by_line(pieces: Sequence[Text]) -> Iterator[str]:
-    """Each line with its end; a block of lines is split at once, which is cheaper than line by line."""
-    for piece in pieces:
-        first = piece.start
-        while first < piece.end:
-            last = piece.end if piece.end - first <= _BLOCK else piece.whole.rfind("\n", first, first + _BLOCK) + 1
-            if last <= first:  # one line longer than a block
-                last = piece.whole.find("\n", first, piece.end) + 1 or piece.end
-            yield from _LINE.findall(piece.whole, first, last)
-            first = last
 
 
 def _parser_class(name: str) -> Any:
@@ -184,15 +215,13 @@ def _note(log: list[Mishap], spot: int, error: Exception) -> None:
         log.append(Mishap(spot, f"{type(error).__name__}: {error}".rstrip(": ")))
 
 
-def _guarded(base: Any, pattern: re.Pattern[str] | None, log: list[Mishap], ended: list[bool]) -> Any:
+def _guarded(base: Any, log: list[Mishap], ended: list[bool]) -> Any:
     from cclib.parser.logfileparser import StopParsing
 
-    show, extract = None if pattern is None else pattern.search, base.extract
+    extract = base.extract
 
     class Guarded(base):  # type: ignore[misc]
         def extract(self, inputfile: Any, line: str) -> None:
-            if show is not None and not show(line):
-                return
             try:
                 extract(self, inputfile, line)
             except StopIteration:

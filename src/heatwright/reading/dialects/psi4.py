@@ -46,6 +46,7 @@ class Psi4(Dialect):
         Failure("Psi4 encountered an error", "Psi4 stopped with an error"),
     )
     mode_anchors: ClassVar = (_ANALYSIS,)
+    reads_modes = True
     cumulative = True
 
     def repaired(self, text: str) -> str:
@@ -71,12 +72,12 @@ class Psi4(Dialect):
             atoms=_rows(job, spot)[0],
             charge=charge,
             multiplicity=multiplicity,
-            has_modes=_ANALYSIS in job or (job.end >= len(job.whole.rstrip()) and _asks_for_modes(job)),
+            has_modes=_ANALYSIS in job or (job.is_last and _asks_for_modes(job)),
             optimises="OPTKING" in job or "Final optimized geometry" in job,
         )
 
     def terminated(self, job: Text) -> bool:
-        return super().terminated(job) or job.end < len(job.whole.rstrip())
+        return super().terminated(job) or not job.is_last
 
     def read(self, job: Text, parsed: Parsed) -> Facts:
         freq = _ANALYSIS in job

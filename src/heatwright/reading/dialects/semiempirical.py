@@ -29,10 +29,11 @@ class MOPAC(Plain):
     endings: ClassVar = ("== MOPAC DONE ==",)
     job_starts: ClassVar = ("CALCULATION DONE:",)
     mode_anchors: ClassVar = ("NORMAL COORDINATE ANALYSIS", "DESCRIPTION OF VIBRATIONS")
+    reads_modes = True
     cumulative = True
 
     def terminated(self, job: Text) -> bool:
-        return super().terminated(job) or job.end < len(job.whole.rstrip())
+        return super().terminated(job) or not job.is_last
 
     def energies(self, job: Text, parsed: Parsed, has_modes: bool) -> tuple[dict[str, float], str]:
         return {}, ""
