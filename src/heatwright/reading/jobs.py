@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 
 from heatwright.elements import composition, formula
@@ -19,8 +19,8 @@ class Choice:
     """The job to read, the pieces of text it needs, its number and what has to be said about the choice.
 
     related : the job, and the last optimisation of the same molecule before it, whose constraints are the job's too.
-    other_analyses : the other jobs that hold modes of the same formula, when none was asked for; each with a text of its
-        own, so that reading all of them takes no longer than the file is long.
+    other_analyses : gives the other jobs that hold modes of the same formula, when none was asked for; each with a text of
+        its own, so that reading all of them takes no longer than the file is long.
     """
 
     job: Text
@@ -30,7 +30,7 @@ class Choice:
     n_jobs: int
     findings: tuple[Finding, ...]
     related: tuple[Text, ...] = ()
-    other_analyses: tuple[Choice, ...] = ()
+    other_analyses: Callable[[], Iterator[Choice]] = lambda: iter(())
 
 
 def choose(dialect: Dialect, whole: Text, wanted: int | None) -> Choice:
@@ -51,15 +51,16 @@ def choose(dialect: Dialect, whole: Text, wanted: int | None) -> Choice:
         with_modes = [i for i in group if identities[i].has_modes]
         index = with_modes[-1] if with_modes else _last_telling(group, identities)
     shared = _completed(Identity(), [identities[i] for i in group])
+    before = [identities[i] for i in reversed(group) if i < index]
     return Choice(
         jobs[index],
-        _completed(identities[index], [shared]),
+        _completed(identities[index], [*before, shared]),
         _pieces(dialect, jobs, [*(i for i in group if i < index and not identities[i].has_modes), index], 0 in group),
         index + 1,
         len(jobs),
         _remarks(identities, group, index, wanted),
         _related(jobs, identities, group, index),
-        tuple(_others(dialect, jobs, identities, group, index, shared)) if wanted is None else (),
+        lambda: iter(()) if wanted is not None else _others(dialect, jobs, identities, group, index, shared),
     )
 
 
@@ -68,7 +69,9 @@ def _others(
 ) -> Iterator[Choice]:
     """The other analyses of the group; of cumulative outputs with the head and the jobs since the analysis before."""
     since: list[int] = []
+    known = Identity()
     for i in group:
+        known = _completed(identities[i], [known])
         if not identities[i].has_modes:
             since.append(i)
             continue
@@ -77,7 +80,7 @@ def _others(
             before = "".join(str(piece) for piece in pieces[:-1])
             whole = Text.of(f"{before}{pieces[-1]}")
             parts = (whole.part(0, len(before)), whole.part(len(before)))
-            yield Choice(parts[1], _completed(identities[i], [shared]), parts, i + 1, len(jobs), ())
+            yield Choice(parts[1], _completed(known, [shared]), parts, i + 1, len(jobs), ())
         since = []
 
 

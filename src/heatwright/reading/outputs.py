@@ -65,7 +65,7 @@ def read_output(
     source = Source(name, stored.sha256, program.name, "")
     user = (charge, multiplicity)
     molecule = _molecule(source, program, dialect, choice, user, stored.findings, with_hessian)
-    other = next((o.number for o in choice.other_analyses if _is_isomer(molecule, program, dialect, o)), None)
+    other = next((o.number for o in choice.other_analyses() if _is_isomer(molecule, program, dialect, o)), None)
     if other is not None:
         molecule = molecule.but(findings=(isomers(other, choice.number), *molecule.findings))
     return with_accepted(molecule, accept, accept_imaginary_cm1)

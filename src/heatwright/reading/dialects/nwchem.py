@@ -45,6 +45,8 @@ _ENERGIES: Final = (
     ("QCISD total energy / hartree", "QCISD"),
     ("CISD total energy / hartree", "CISD"),
 )
+_TITLE_LINES: Final = 12
+"""Lines after the title of a table within which its rows start; a title may be repeated without any."""
 _MODULES: Final = re.compile(r"^ +NWChem (?:\S+ )*(?:Module|Optimization|Analysis|Calculation)\s*$", re.MULTILINE)
 
 
@@ -82,9 +84,8 @@ class NWChem(Dialect):
         return first.part(first.start, start if start >= 0 else first.end)
 
     def identity(self, job: Text) -> Identity:
-        whole = Text(job.whole, 0, job.end)
         return Identity(
-            atoms=_atoms(whole),
+            atoms=_atoms(job),
             charge=_charge(job),
             multiplicity=_multiplicity(job),
             has_modes=any(anchor in job for anchor in self.mode_anchors),
@@ -244,12 +245,12 @@ def _max_gradient(whole: Text, coordinates: FloatArray | None) -> float | None:
     """Largest gradient component of the last gradient that was computed at the geometry of the frequencies."""
     for spot in reversed(whole.spots("ENERGY GRADIENTS")):
         rows: list[list[float]] = []
-        for line in whole.part(spot).lines(spot):
+        for index, line in enumerate(whole.lines(spot)):
             fields = line.split()
             values = [number(f) for f in fields[2:]] if len(fields) == 8 and fields[0].isdigit() else []
             if len(values) == 6 and all(v is not None for v in values):
                 rows.append([v for v in values if v is not None])
-            elif rows or len(line) > 200:
+            elif rows or index > _TITLE_LINES or len(line) > 200:
                 break
         table = np.array(rows, dtype=float)
         if coordinates is None and table.size:

@@ -157,6 +157,8 @@ class Jaguar(Plain):
     def printed(self, job: Text) -> tuple[PrintedThermo, ...]:
         zpe = re.search(r"([\d.]+) kcal/mol", job.rest_of_last("The zero point energy (ZPE):"))
         zero = float(zpe.group(1)) * _KCAL if zpe else None
+        pressure = job.number_after("Thermochemical properties at ")
+        sigma = as_integer(job.number_after("rotational symmetry number:"))
         found = []
         for spot in job.spots("\n  T =  "):
             block = job.part(spot, spot + 1500)
@@ -164,12 +166,11 @@ class Jaguar(Plain):
             totals = numbers(total.group(1)) if total else []
             if len(totals) < 5:
                 continue
-            pressure = job.number_after("Thermochemical properties at ")
             found.append(
                 PrintedThermo(
                     temperature_K=next(iter(numbers(job.line(spot + 1).replace("K", " "))), None),
                     pressure_Pa=None if pressure is None else pressure * ATMOSPHERE_PA,
-                    symmetry_number=as_integer(job.number_after("rotational symmetry number:")),
+                    symmetry_number=sigma,
                     zpe_hartree=zero,
                     enthalpy_correction_hartree=None if zero is None else totals[3] * _KCAL + zero,
                     entropy_J_mol_K=totals[2] * CALORIE_J,
@@ -198,7 +199,8 @@ class Molcas(Plain):
         spots = job.spots("\n Temperature = ")
         zpe = re.search(r"([\d.]+) +(?:au|hartree)", job.rest_of_last("Zero-point vibrational energy"), re.IGNORECASE)
         blocks = [job.part(a, b) for a, b in zip(spots, [*spots, job.end][1:], strict=True)]
-        items = [_molcas(block, job) for block in blocks]
+        sigma = as_integer(job.number_after("Rotational Symmetry factor:"))
+        items = [_molcas(block, sigma) for block in blocks]
         zero = float(zpe.group(1)) if zpe else None
         if zero is None and blocks and items[0].temperature_K == 0.0:
             zero = items[0].enthalpy_correction_hartree
@@ -206,14 +208,14 @@ class Molcas(Plain):
         return tuple(sorted(found, key=lambda i: abs((i.temperature_K or 0.0) - 298.15)))
 
 
-def _molcas(block: Text, job: Text) -> PrintedThermo:
+def _molcas(block: Text, sigma: int | None) -> PrintedThermo:
     head = re.search(r"([\d.]+) Kelvin, Pressure = +([\d.]+) atm", block.line(block.start + 1))
     entropy = numbers(block.rest_of_first("\n TOTAL  "))
     enthalpy = re.search(r"(-?[\d.]+) au", block.rest_of_first("\n ENTHALPY  "))
     return PrintedThermo(
         temperature_K=float(head.group(1)) if head else None,
         pressure_Pa=float(head.group(2)) * ATMOSPHERE_PA if head else None,
-        symmetry_number=as_integer(job.number_after("Rotational Symmetry factor:")),
+        symmetry_number=sigma,
         enthalpy_correction_hartree=float(enthalpy.group(1)) if enthalpy else None,
         entropy_J_mol_K=entropy[-1] * CALORIE_J if entropy else None,
     )

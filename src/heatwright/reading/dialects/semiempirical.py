@@ -81,7 +81,8 @@ class MOPAC(Plain):
         found = []
         for spot in job.spots("  VIB.  "):
             temperature = number(job.line(spot).split()[0])
-            totals = numbers(job.line(job.find(" TOT. ", spot)))
+            block = job.part(spot, spot + 2000)
+            totals = numbers(block.line(block.find(" TOT. "))) if " TOT. " in block else []
             if temperature is not None and len(totals) == 4 and zero is not None:
                 heat = totals[1] / 1000.0 * _KCAL
                 number_of_rotations = int(sigma.group(1)) if sigma else None
