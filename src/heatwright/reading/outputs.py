@@ -111,13 +111,13 @@ def _is_isomer(molecule: Molecule, program: Program, dialect: Dialect, other: Ch
 def _due(dialect: Dialect, choice: Choice) -> list[str]:
     """What cclib has to find in a job, as the dialect knows no better."""
     due = ["atomnos", "atomcoords"]
-    if not dialect.reads_modes and any(anchor in choice.job for anchor in dialect.mode_anchors):
+    if any(anchor in choice.job for anchor in dialect.mode_anchors):
         due += ["vibfreqs", "vibdisps"]
     if choice.identity.charge is None:
         due.append("charge")
     if choice.identity.multiplicity is None:
         due.append("mult")
-    return due
+    return [name for name in due if name not in dialect.own]
 
 
 def _whole_lines(text: str, dialect: Dialect) -> str:

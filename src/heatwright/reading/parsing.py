@@ -174,6 +174,9 @@ def _lines(pieces: Sequence[Text], pattern: re.Pattern[str] | None) -> Any:
             return self.shown() if first_loop else self
 
         def shown(self) -> Iterator[str]:
+            """The first line, which in a checkpoint file is like no other, and those that hold the pattern."""
+            if self.opened():
+                yield next(self)
             while self.opened():
                 if pattern is not None:
                     found = pattern.search(self.whole, self.at, self.end)

@@ -133,8 +133,8 @@ class Dialect:
     """Anchors at which another job begins."""
     mode_anchors: ClassVar[tuple[str, ...]] = ()
     """Anchors that show that a job prints vibrational modes."""
-    reads_modes: ClassVar[bool] = False
-    """Whether wavenumbers and modes are read from the text by the dialect itself, so that cclib need not find them."""
+    own: ClassVar[frozenset[str]] = frozenset()
+    """Attributes of cclib's that the dialect reads from the text itself, so that cclib need not find them."""
     cumulative: ClassVar[bool] = False
     """Whether a job needs the text of the jobs before it (programs that print atoms and version only once)."""
 

@@ -187,6 +187,7 @@ class Molcas(Plain):
     endings: ClassVar = ("Happy landing!", "    Timing: Wall=")
     failures: ClassVar = (Failure("Non-zero return code", "Molcas stopped with an error"),)
     mode_anchors: ClassVar = ("Harmonic frequencies in cm-1", "Harmonic frequencies in")
+    own = frozenset({"mult"})
 
     def multiplicity(self, job: Text, parsed: Parsed) -> int | None:
         spin = job.number_after("Total spin, S   ")

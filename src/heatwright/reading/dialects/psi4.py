@@ -48,7 +48,7 @@ class Psi4(Dialect):
         Failure("Psi4 encountered an error", "Psi4 stopped with an error"),
     )
     mode_anchors: ClassVar = (_ANALYSIS,)
-    reads_modes = True
+    own = frozenset({"vibfreqs", "vibdisps"})
     cumulative = True
 
     def repaired(self, text: str) -> str:
