@@ -19,7 +19,7 @@ class Choice:
     """The job to read, the pieces of text it needs, its number and what has to be said about the choice.
 
     related : the job, and the last optimisation of the same molecule before it, whose constraints are the job's too.
-    other_analyses : gives the other jobs that hold modes of the same formula, when none was asked for; each with a text of
+    other_analyses : gives the other jobs with modes of the same formula, when no job was asked for; each with a text of
         its own, so that reading all of them takes no longer than the file is long.
     """
 
@@ -39,7 +39,7 @@ def choose(dialect: Dialect, whole: Text, wanted: int | None) -> Choice:
     Raises Refused when the file holds several molecules and no job was asked for, or has no job of that number.
     """
     jobs = dialect.jobs(whole)
-    identities = [dialect.identity(job) for job in jobs]
+    identities = dialect.identities(jobs)
     groups = _groups(identities)
     if wanted is not None:
         index = _asked_for(wanted, len(jobs))

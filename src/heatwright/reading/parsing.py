@@ -11,7 +11,7 @@ import io
 import logging
 import re
 import warnings
-from collections.abc import Collection, Iterator, Sequence
+from collections.abc import Collection, Sequence
 from contextlib import redirect_stderr, redirect_stdout
 from dataclasses import dataclass, field
 from typing import Any
@@ -19,43 +19,16 @@ from typing import Any
 import numpy as np
 
 from heatwright.reading.deferral import without_unused_packages
+from heatwright.reading.lines import Lines
 from heatwright.reading.skipping import shown_lines
 from heatwright.reading.text import Text
 
 _WANTED = frozenset(
-    [
-        "atomnos",
-        "atomcoords",
-        "atommasses",
-        "vibfreqs",
-        "vibdisps",
-        "grads",
-        "scfenergies",
-        "mpenergies",
-        "ccenergies",
-        "dispersionenergies",
-        "scanenergies",
-        "scannames",
-        "scanparm",
-        "optdone",
-        "optstatus",
-        "charge",
-        "mult",
-        "natom",
-        "metadata",
-        "zpve",
-        "enthalpy",
-        "entropy",
-        "temperature",
-        "pressure",
-        "coreelectrons",
-        "rotconsts",
-    ]
-)
-"""Attributes used here; the others (orbitals, populations) are dropped before cclib turns them into arrays."""
+    ["atomnos", "atomcoords", "atommasses", "natom", "charge", "mult", "vibfreqs", "vibdisps", "scfenergies",
+     "mpenergies", "ccenergies", "scanenergies", "scannames", "optstatus", "metadata"]
+)  # fmt: skip
+"""Attributes used here; the others (orbitals, gradients) are dropped before cclib turns them into arrays."""
 _MOST_MISHAPS = 10
-_LOOK_BACK = 10
-"""Lines behind the present one that cclib's parsers may ask for."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -123,7 +96,7 @@ def _values(
     guarded = _guarded(_parser_class(parser), log, ended)
     run: Any = None
     try:
-        run = guarded(_lines(pieces, pattern), loglevel=logging.CRITICAL + 1, logstream=io.StringIO())
+        run = guarded(_source(pieces, pattern), loglevel=logging.CRITICAL + 1, logstream=io.StringIO())
         return {name: value for name, value in vars(run.parse()).items() if name in _WANTED}
     except Exception as error:
         _note(log, sum(piece.end - piece.start for piece in pieces), error)
@@ -133,79 +106,11 @@ def _values(
             run.logger.handlers.clear()
 
 
-def _lines(pieces: Sequence[Text], pattern: re.Pattern[str] | None) -> Any:
-    """The pieces as the kind of input cclib reads from, without a copy of the text.
-
-    The first loop over it, which is cclib's main one, gets only the lines that hold the pattern; the others are never
-    cut out of the text.  A block takes its lines with ``next`` or a loop of its own, and gets each of them.
-    """
+def _source(pieces: Sequence[Text], pattern: re.Pattern[str] | None) -> Any:
+    """The pieces as the kind of input cclib reads from."""
     from cclib.parser.logfilewrapper import FileWrapper
 
-    class Lines(FileWrapper):
-        def __init__(self) -> None:
-            self.filenames, self.files = ["output"], []
-            self.size = sum(piece.end - piece.start for piece in pieces)
-            self.looped = False
-            self.reset()
-
-        def reset(self) -> None:
-            self.rest, self.before = iter(pieces), 0
-            self.whole, self.start, self.at, self.end = "", 0, 0, 0
-
-        def opened(self) -> bool:
-            """Whether there is more to read; goes on to the next piece when one is done."""
-            while self.at >= self.end:
-                piece = next(self.rest, None)
-                if piece is None:
-                    return False
-                self.before += self.end - self.start
-                self.whole, self.start, self.at, self.end = piece.whole, piece.start, piece.start, piece.end
-            return True
-
-        def __next__(self) -> str:
-            if self.at >= self.end and not self.opened():
-                raise StopIteration
-            first = self.at
-            self.at = self.whole.find("\n", first, self.end) + 1 or self.end
-            return self.whole[first : self.at]
-
-        def __iter__(self) -> Iterator[str]:
-            first_loop, self.looped = not self.looped, True
-            return self.shown() if first_loop else self
-
-        def shown(self) -> Iterator[str]:
-            """The first line, which in a checkpoint file is like no other, and those that hold the pattern."""
-            if self.opened():
-                yield next(self)
-            while self.opened():
-                if pattern is not None:
-                    found = pattern.search(self.whole, self.at, self.end)
-                    if found is None:
-                        self.at = self.end
-                        continue
-                    self.at = self.whole.rfind("\n", self.at, found.start()) + 1 or self.at
-                yield next(self)
-
-        @property
-        def pos(self) -> int:
-            return self.before + self.at - self.start
-
-        @property
-        def last_lines(self) -> list[str]:
-            """The lines up to here, at most ten, padded with empty ones."""
-            first = self.at
-            for _ in range(_LOOK_BACK):
-                first = self.whole.rfind("\n", self.start, max(first - 1, self.start)) + 1 or self.start
-            lines = self.whole[first : self.at].splitlines(keepends=True)
-            return [*[""] * (_LOOK_BACK - len(lines)), *lines]
-
-        def sort(self, order: list[str]) -> None:
-            """There is one source."""
-
-        def finish(self) -> None:
-            self.rest, self.at = iter(()), self.end
-
-    return Lines()
+    return type("Source", (Lines, FileWrapper), {})(pieces, pattern)
 
 
 def _parser_class(name: str) -> Any:
@@ -266,7 +171,7 @@ def _attribute_names() -> frozenset[str]:
 
 def _drop_ragged(parser: Any, log: list[Mishap]) -> None:
     """Remove what cannot become an array (a table cut short), so that the rest survives cclib's own conversion."""
-    for name in ("atomcoords", "grads", "vibdisps", "vibfreqs", "mpenergies", "scfenergies", "ccenergies", "atomnos"):
+    for name in ("atomcoords", "vibdisps", "vibfreqs", "mpenergies", "scfenergies", "ccenergies", "atomnos"):
         value = getattr(parser, name, None)
         if value is None:
             continue

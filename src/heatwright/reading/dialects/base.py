@@ -134,7 +134,7 @@ class Dialect:
     mode_anchors: ClassVar[tuple[str, ...]] = ()
     """Anchors that show that a job prints vibrational modes."""
     own: ClassVar[frozenset[str]] = frozenset()
-    """Attributes of cclib's that the dialect reads from the text itself, so that cclib need not find them."""
+    """Attributes that cclib need not find: the dialect reads them from the text, or the program never prints them."""
     cumulative: ClassVar[bool] = False
     """Whether a job needs the text of the jobs before it (programs that print atoms and version only once)."""
 
@@ -154,6 +154,10 @@ class Dialect:
     def identity(self, job: Text) -> Identity:
         """Which molecule a job is about; the plain dialect cannot tell."""
         return Identity(has_modes=any(anchor in job for anchor in self.mode_anchors))
+
+    def identities(self, jobs: Sequence[Text]) -> list[Identity]:
+        """The identity of each job of a file."""
+        return [self.identity(job) for job in jobs]
 
     def terminated(self, job: Text) -> bool:
         """Whether the program closed the job in the way it does when all went well."""

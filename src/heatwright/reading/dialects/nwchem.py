@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 import re
+from collections.abc import Sequence
+from dataclasses import replace
 from typing import ClassVar, Final
 
 import numpy as np
@@ -28,6 +30,7 @@ from heatwright.reading.text import Text, number, numbers
 
 _TASK = "NWChem Input Module"
 _ATOM_INFORMATION: Final = "---- Atom information ----"
+_TABLE: Final = "  No.       Tag          Charge"
 _BOHR_PER_ANGSTROM: Final = 1.889725989
 """The scale NWChem itself prints over its coordinates; used to turn its bohr back into the ångströms it was given."""
 _ENERGIES: Final = (
@@ -91,6 +94,14 @@ class NWChem(Dialect):
             has_modes=any(anchor in job for anchor in self.mode_anchors),
             optimises="NWChem Geometry Optimization" in job,
         )
+
+    def identities(self, jobs: Sequence[Text]) -> list[Identity]:
+        """A task that prints no atoms works on those of the task before."""
+        found: list[Identity] = []
+        for job in jobs:
+            own = self.identity(job)
+            found.append(own if _TABLE in job or not found else replace(own, atoms=found[-1].atoms))
+        return found
 
     def terminated(self, job: Text) -> bool:
         """The closing line stands once, after the last task; a task followed by another one has ended well too."""
@@ -157,7 +168,7 @@ def _multiplicity(job: Text) -> int | None:
 
 def _atoms(whole: Text) -> tuple[int, ...]:
     """Nuclear charges of the last table of atoms; ghost atoms have none."""
-    spot = whole.rfind("  No.       Tag          Charge")
+    spot = whole.rfind(_TABLE)
     found: list[int] = []
     if spot < 0:
         return ()
@@ -219,7 +230,7 @@ def _unread_masses(job: Text, masses: FloatArray | None) -> tuple[Finding, ...]:
 
 def _masses_by_tag(whole: Text, atoms: tuple[int, ...]) -> FloatArray | None:
     """Masses of the table of tags under the geometry, for jobs without a Hessian."""
-    table, spot = whole.rfind("  No.       Tag          Charge"), whole.rfind("Atomic Mass")
+    table, spot = whole.rfind(_TABLE), whole.rfind("Atomic Mass")
     if table < 0 or spot < table:
         return None
     rows = [line.split() for line in whole.part(table, spot).lines(table)]

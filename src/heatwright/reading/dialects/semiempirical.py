@@ -29,7 +29,7 @@ class MOPAC(Plain):
     endings: ClassVar = ("== MOPAC DONE ==",)
     job_starts: ClassVar = ("CALCULATION DONE:",)
     mode_anchors: ClassVar = ("NORMAL COORDINATE ANALYSIS", "DESCRIPTION OF VIBRATIONS")
-    own = frozenset({"vibfreqs", "vibdisps"})
+    own = frozenset({"atomnos", "atomcoords", "vibfreqs", "vibdisps"})
     cumulative = True
 
     def terminated(self, job: Text) -> bool:
@@ -111,7 +111,7 @@ class XTB(Plain):
     endings: ClassVar = ("* finished run on",)
     failures: ClassVar = (Failure("abnormal termination of xtb", "xtb stopped with an error"),)
     mode_anchors: ClassVar = ("vibrational frequencies",)
-    own = frozenset({"mult"})
+    own = frozenset({"mult", "vibdisps"})
 
     def multiplicity(self, job: Text, parsed: Parsed) -> int | None:
         call = job.rest_of_first("program call               :")
