@@ -2,9 +2,13 @@
 
 A parser compares each line with some hundred texts, which is nearly all of the time that reading takes.  Here a line
 is shown to it only when it holds one of the program's marks: those that open a block with an attribute used here, and
-those that set what such a block depends on.  Lines inside a block are read by the block itself, whatever they hold.
-When the attributes that a job promises are then missing, :mod:`heatwright.reading.parsing` parses all lines after all;
-a test compares both ways on every output at hand.
+those that set what such a block depends on.  All other lines are passed over by one search through the text; lines
+inside a block are read by the block itself, whatever they hold.  When the attributes that a job promises are then
+missing, :mod:`heatwright.reading.parsing` parses all lines after all; a test compares both ways on every output at
+hand.
+
+A mark is as long as it can be and does not begin with a blank, a digit or a dot, at which a search would stop all the
+time.
 """
 
 from __future__ import annotations
@@ -160,7 +164,6 @@ _MARKS: Final[dict[str, tuple[str, ...]]] = {
         "Multiplicity  ",
         "Atomic numbers",
         "Current cartesian coordinates",
-        "Total Energy",
         "SCF Energy",
         "Job Status",
         "Number of inde",
@@ -293,5 +296,5 @@ _MARKS: Final[dict[str, tuple[str, ...]]] = {
 
 def shown_lines(parser: str) -> re.Pattern[str] | None:
     """A pattern that the lines worth showing to a parser class contain; None when it is to see all of them."""
-    marks = _MARKS.get(parser)  # none starts with a blank, which would be looked at everywhere
+    marks = _MARKS.get(parser)
     return re.compile("|".join(re.escape(mark) for mark in marks)) if marks else None
