@@ -111,7 +111,9 @@ class NWChem(Dialect):
         energies = [Energy(spot, kind, value) for anchor, kind in _ENERGIES for spot, value in _values(job, anchor)]
         finite = "NWChem Finite-difference Hessian" in job
         has_modes = any(anchor in job for anchor in self.mode_anchors)
-        point, kind = chosen_point(energies, first=finite or has_modes)
+        heading = job.rfind("NWChem Nuclear Hessian and Frequency Analysis")
+        own = [e for e in energies if e.spot > heading] if has_modes else energies
+        point, kind = chosen_point(own or energies, first=finite)
         if kind == "SCS-MP2":  # printed beside every MP2 energy, never the task's own method
             kind = "MP2"
         atoms, coordinates, masses = _atom_information(job)
