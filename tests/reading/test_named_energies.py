@@ -6,8 +6,12 @@ from pathlib import Path
 
 import pytest
 
+from heatwright.constants import CCLIB_EV_PER_HARTREE
 from heatwright.molecule import Molecule
+from heatwright.reading.dialects import dialect_of
 from heatwright.reading.dialects.gaussian_archive import archived_energies
+from heatwright.reading.dialects.plain import Plain
+from heatwright.reading.parsing import Parsed, parse
 from heatwright.reading.text import Text
 from kept_outputs import codes, kept, read_output, read_text, text_of
 from outside import SHARED, needs_shared
@@ -88,3 +92,69 @@ def test_an_energy_of_no_known_method_is_not_used(tmp_path: Path) -> None:
     assert bare.level is not None
     assert (bare.energy_kind, bare.level.label, "no-energy" in codes(bare, "warn")) == ("SCF", "HF/STO-3G", True)
     assert codes(checkpoint(tmp_path, "RHF", None)) == {"no-normal-termination"}
+
+
+GAMESS_MP2 = """
+      SCHWARZ INEQUALITY TEST SKIPPED          0 INTEGRAL BLOCKS
+                     E(SCF)=       -76.0088477471
+                       E(2)=        -0.1403745370
+                     E(MP2)=       -76.1492222841
+ ..... DONE WITH MP2 ENERGY .....
+"""
+GAMESS_CC = """
+        MBPT(2) ENERGY:    -76.1492222841
+           CCSD    ENERGY:    -76.1600000000
+        CCSD[T] ENERGY:    -76.1610000000
+        CCSD(T) ENERGY:    -76.1620000000
+"""
+DALTON_CC = """
+ ,----------------------------------------------------.
+ Starting in Coupled Cluster Section (CC)
+ *SUMMARY OF COUPLED CLUSTER CALCULATION*
+            Total CCSD  energy:                  -75.0152363616
+            Total energy CCSD(T):                -75.0153120000
+ *END OF COUPLED CLUSTER CALCULATION*
+"""
+
+
+@pytest.mark.parametrize(
+    ("parser", "name", "text", "expected"),
+    [
+        ("GAMESS", "mpenergies", GAMESS_MP2, -76.1492222841),
+        ("GAMESS", "ccenergies", GAMESS_CC, -76.162),
+        ("DALTON", "ccenergies", DALTON_CC, -75.015312),
+    ],
+)
+def test_blocks_that_no_kept_output_has_are_shown(parser: str, name: str, text: str, expected: float) -> None:
+    """Blocks in the form that the comments of cclib's parsers show."""
+    pieces = [Text.of(f"head\n{text}tail\n")]
+    some, every = (parse(parser, pieces, skip=skip).array(name) for skip in (True, False))
+    assert every is not None
+    assert some is not None
+    assert some.tolist() == every.tolist()
+    assert every.ravel()[-1] == pytest.approx(expected * CCLIB_EV_PER_HARTREE, rel=1e-12)
+
+
+@pytest.mark.parametrize(
+    ("program", "line", "kind"),
+    [
+        ("GAMESS", "        CCSD(T) ENERGY:    -76.2", "CCSD(T)"),
+        ("GAMESS", "           CCSD    ENERGY:    -76.1", "CCSD"),
+        ("Molpro", " !CCSD(T) total energy   -76.2", "CCSD(T)"),
+        ("Molpro", " !CCSD total energy   -76.1", "CCSD"),
+        ("Turbomole", " *   Final CC2 energy                        :    -75.0 *", "CC2"),
+        ("DALTON", " Total energy CCSD(T):   -75.0", "CCSD(T)"),
+        ("Molcas", " Total energy (diff) :     -75.0", "CCSD"),
+        ("CFOUR", "       CALCLEVEL            ICLLVL         CCSD(T)     [ 22]    ***", "CCSD(T)"),
+        ("CFOUR", "       CALCLEVEL            ICLLVL         MBPT(2)     [  1]    ***", "MP2"),
+    ],
+)
+def test_a_coupled_cluster_energy_has_the_name_of_its_method(program: str, line: str, kind: str) -> None:
+    """cclib gives one list of coupled-cluster energies; which method's it is, the output says."""
+    text = Text.of(f"{line}\n  The final electronic energy is       -76.240000000000000 a.u.\n")
+    values = {"scfenergies": [-76.0 * CCLIB_EV_PER_HARTREE], "ccenergies": [-76.24 * CCLIB_EV_PER_HARTREE]}
+    dialect = dialect_of(program)
+    assert isinstance(dialect, Plain)
+    energies, used = dialect.energies(text, Parsed(values), False)
+    assert (used, sorted(energies)) == (kind, sorted(["SCF", kind]))
+    assert energies[kind] == pytest.approx(-76.24, abs=1e-12)

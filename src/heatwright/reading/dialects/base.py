@@ -33,6 +33,7 @@ METHOD_RANK: Final[dict[str, int]] = {
             "CEPA",
             "QCISD",
             "BD",
+            "CCD",
             "CC2",
             "CCSD",
             "CASPT2",
@@ -241,8 +242,11 @@ def or_plain(point: dict[str, float], kind: str, parsed: Parsed, first: bool) ->
     return (point, kind) if point else plain_energies(parsed, first)
 
 
-def plain_energies(parsed: Parsed, first: bool) -> tuple[dict[str, float], str]:
-    """Energies and the kind in use from cclib's attributes: the first geometry of a Hessian job, else the last."""
+def plain_energies(parsed: Parsed, first: bool, coupled: str = "CCSD(T)") -> tuple[dict[str, float], str]:
+    """Energies and the kind in use from cclib's attributes: the first geometry of a Hessian job, else the last.
+
+    coupled : which coupled-cluster energy the output holds, which cclib does not say.
+    """
     index = 0 if first else -1
     found: dict[str, float] = {}
     scf, mp, cc = (parsed.array(name) for name in ("scfenergies", "mpenergies", "ccenergies"))
@@ -252,7 +256,7 @@ def plain_energies(parsed: Parsed, first: bool) -> tuple[dict[str, float], str]:
         for order, value in enumerate(mp[index], start=2):
             found[f"MP{order}"] = float(value) / CCLIB_EV_PER_HARTREE
     if cc is not None and cc.size:
-        found["CCSD(T)"] = float(cc.flat[index]) / CCLIB_EV_PER_HARTREE
+        found[coupled] = float(cc.flat[index]) / CCLIB_EV_PER_HARTREE
     return found, highest(found)
 
 

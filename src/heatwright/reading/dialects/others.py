@@ -71,6 +71,15 @@ class ADF(Plain):
         yield warn("energy-not-total", words, action="It cannot enter an atomization or a reaction.")
 
 
+_CFOUR_KINDS: Final = {
+    "MBPT(2)": "MP2",
+    "MBPT(3)": "MP3",
+    "MBPT(4)": "MP4",
+    "SDQ-MBPT(4)": "MP4(SDQ)",
+    "M4SDQ": "MP4(SDQ)",
+}
+
+
 class CFOUR(Plain):
     """CFOUR: the pressure (1 bar) and the symmetry number of its table are not printed."""
 
@@ -81,11 +90,18 @@ class CFOUR(Plain):
     mode_anchors: ClassVar = ("Normal Coordinate Analysis", "IVIB           ANALYTIC", "IVIB           FINDIF")
 
     def energies(self, job: Text, parsed: Parsed, has_modes: bool) -> tuple[dict[str, float], str]:
-        """cclib takes whatever stands in an MP2 line; the level asked for decides."""
+        """cclib takes whatever stands in an MP2 or CC line; the level asked for and the closing line decide."""
         found, kind = super().energies(job, parsed, has_modes)
-        if re.match(r" *ICLLVL +(?:SCF|HF) ", job.rest_of_last("       CALCLEVEL")):
-            return {name: value for name, value in found.items() if name == "SCF"}, "SCF" if "SCF" in found else ""
-        return found, kind
+        asked = re.match(r" *ICLLVL +(\S+)", job.rest_of_last("       CALCLEVEL"))
+        if asked is None:
+            return found, kind
+        scf = {name: value for name, value in found.items() if name == "SCF"}
+        if asked.group(1) in ("SCF", "HF"):
+            return scf, "SCF" if scf else ""
+        kind = _CFOUR_KINDS.get(asked.group(1), asked.group(1))
+        first = has_modes and "IVIB           FINDIF" in job  # displaced geometries follow
+        final = job.number_after("The final electronic energy is", last=not first)
+        return ({**scf, kind: final}, kind) if final is not None else (scf, "")
 
     def masses(self, job: Text) -> FloatArray | None:
         return wrapped_numbers(job, "masses used (in AMU) in vibrational analysis:")
@@ -119,6 +135,7 @@ class DALTON(Plain):
     """DALTON: frequencies without thermochemistry."""
 
     name = "DALTON"
+    coupled_marks: ClassVar = (("Total energy CCSD(T)", "CCSD(T)"),)
     version_pattern = r"Release DALTON(\S+)"
     endings: ClassVar = ("Total wall time used in DALTON",)
     failures: ClassVar = (Failure("--- SEVERE ERROR, PROGRAM WILL BE ABORTED ---", "DALTON stopped with an error"),)
@@ -183,6 +200,7 @@ class Molcas(Plain):
     """OpenMolcas and Molcas: imaginary modes left out of its sums; several temperatures."""
 
     name = "Molcas"
+    coupled_marks: ClassVar = ()
     version_pattern = r"version +(\d\S*)"
     endings: ClassVar = ("Happy landing!", "    Timing: Wall=")
     failures: ClassVar = (Failure("Non-zero return code", "Molcas stopped with an error"),)
@@ -226,6 +244,7 @@ class Molpro(Plain):
     """Molpro: average masses; only the zero-point energy is printed."""
 
     name = "Molpro"
+    coupled_marks: ClassVar = (("!CCSD(T)", "CCSD(T)"), ("!CCSD", "CCSD"), ("!CCD", "CCD"))
     version_pattern = r"Version (\d\S*)"
     endings: ClassVar = ("Variable memory released",)
     failures: ClassVar = (Failure("GLOBAL ERROR fehler", "Molpro stopped with an error"),)
@@ -277,6 +296,7 @@ class Turbomole(Plain):
     """Turbomole's aoforce: neither energy nor charge nor multiplicity."""
 
     name = "Turbomole"
+    coupled_marks: ClassVar = (("Final CCSD energy", "CCSD"), ("Final CC2 energy", "CC2"))
     version_pattern = r"TURBOMOLE (?:rev\. )?V(\S+)"
     endings: ClassVar = ("all done  ****", "ended normally")
     failures: ClassVar = (Failure("ended abnormally", "Turbomole stopped with an error"),)
