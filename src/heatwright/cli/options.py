@@ -142,7 +142,7 @@ _MODEL_OPTIONS = (
     click.option(
         "--accept",
         multiple=True,
-        type=click.Choice(["solvent", "field", "constraints", "excited-state", "gradient"]),
+        type=click.Choice(["solvent", "field", "constraints", "excited-state", "gradient", "energy", "bonds"]),
         help="Use an output that is refused for this; recorded as a warning. Can be repeated.",
     ),
     click.option("--accept-gradient", is_flag=True, help="The same as --accept gradient."),

@@ -38,8 +38,9 @@ class Formation:
 
     dHf0_kJ_mol is None when the conversion to 0 K has no reference increment for an element.
     u95_kJ_mol : 95 % uncertainty, None where nothing defensible can be stated.
-    method : ``given`` or ``atomization``.   source : one phrase for the entry's comment.
-    ledger : the ingredients; for atomization they add up to ΔfH°(298.15 K).
+    method : ``given``, ``atomization``, ``reaction`` or ``network``.   source : one phrase for the entry's comment.
+    ledger : the ingredients; but for a given value they add up to ΔfH°(298.15 K).
+    alternatives : the same by other routes, where the best of several was asked for.
     """
 
     dHf298_kJ_mol: float
@@ -49,6 +50,7 @@ class Formation:
     source: str
     ledger: tuple[LedgerLine, ...] = ()
     findings: tuple[Finding, ...] = ()
+    alternatives: tuple[Formation, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
