@@ -33,6 +33,8 @@ CODES: Final[dict[str, str]] = {
     "several-jobs": "The file holds several jobs; which of them was read is said.",
     "not-a-number": "A value that is needed is NaN or infinite.",
     "molecule-file-wrong": "A molecule file holds an unknown key, a value of a wrong kind or a contradiction.",
+    "table-wrong": "A table written by the user lacks a column, or a row of it holds what cannot be used.",
+    "smiles-wrong": "A SMILES text cannot be read.",
     "qcschema-wrong": "A QCSchema result lacks a part that is needed, or a part has a wrong shape.",
     # --- what the job gives ---------------------------------------------------------------------------------------
     "no-frequencies": "There are no vibrational modes in the output, so there is no thermochemistry to compute.",
@@ -119,6 +121,7 @@ CODES: Final[dict[str, str]] = {
     "atom-twice": "Two outputs hold the same atom, and they disagree.",
     "no-uncertainty": "The route to the enthalpy of formation has an error that it cannot state.",
     "no-reference": "There is no reference enthalpy for an element.",
+    "reference-replaced": "A reference enthalpy of the user stands in the place of the built-in one.",
     # --- fitting and writing --------------------------------------------------------------------------------------
     "temperature-range": "The temperatures asked for cannot carry a two-range polynomial anchored at 298.15 K.",
     "cp-not-positive": "The fitted heat capacity is zero or negative somewhere in the range.",
