@@ -126,7 +126,7 @@ def _times(n: int, t: int, what: str) -> str:
 
 
 def _reaction_notes(reaction: Reaction, scales: ErrorScales) -> tuple[Finding, ...]:
-    fitted = "fitted to the references" if scales.fitted else "the defaults of the error model"
+    fitted = "error scales fitted to the references" if scales.fitted else "the default scales of the error model"
     text = f"{reaction.text} ({reaction.kind}); its uncertainty uses {fitted}"
     make = note if reaction.kind != "unbalanced" else warn
     return (make("reaction", text),)

@@ -17,7 +17,7 @@ from heatwright.molecule import Molecule
 from heatwright.partition.choices import ModelOptions
 from heatwright.partition.model import ThermoModel, build_model
 from heatwright.structure.bond_orders import Bonding, bonding
-from heatwright.structure.bonds import bonds, fingerprint
+from heatwright.structure.identity import Identity
 
 T = TypeVar("T")
 
@@ -45,6 +45,11 @@ class Reference:
     def file(self) -> str:
         """The output, as it was named."""
         return self.molecule.source.file
+
+    @property
+    def species(self) -> tuple[Identity, int]:
+        """What tells the species from others, whatever its conformer: identity and multiplicity."""
+        return self.row.identity, self.row.multiplicity
 
     @property
     def electronic_kJ_mol(self) -> float:
@@ -88,18 +93,6 @@ def species_name(molecule: Molecule) -> str:
     'CH3OH'
     """
     return molecule.stated.name or PurePath(molecule.source.file).name.split(".")[0]
-
-
-def same_species(a: Molecule, b: Molecule) -> bool:
-    """Whether two outputs are of one species: composition, charge, multiplicity and graph of bonds (so conformers and
-    mirror images are one species, isomers are not)."""
-    if a.charge != b.charge or a.multiplicity != b.multiplicity or a.n_atoms != b.n_atoms:
-        return False
-    return sorted(a.atomic_numbers) == sorted(b.atomic_numbers) and _graph(a) == _graph(b)
-
-
-def _graph(molecule: Molecule) -> tuple[str, ...]:
-    return fingerprint(molecule.atomic_numbers, bonds(molecule.atomic_numbers, molecule.coordinates_A))
 
 
 def reference_options(options: ModelOptions) -> ModelOptions:

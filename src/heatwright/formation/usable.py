@@ -20,11 +20,12 @@ from heatwright.formation.error_model import (
     fit_scales,
 )
 from heatwright.formation.network import LeftOut, leave_one_out
-from heatwright.formation.reference_set import Reference, ReferenceSet, same_species
+from heatwright.formation.reference_set import Reference, ReferenceSet
 from heatwright.formation.same_level import level_objections
 from heatwright.molecule import FloatArray, Molecule
 from heatwright.partition.model import ThermoModel
 from heatwright.reading.levels import level_differences
+from heatwright.structure.identity import identity_of
 
 PLAUSIBLE_ERROR_KJ_MOL: Final = (100.0, 25.0)
 """An energy is not believed when the enthalpy of formation it gives is further from the evaluated one than the first
@@ -105,7 +106,8 @@ def usable_references(
     errors = references.once(
         ("errors", key, accepted), lambda: _errors(chosen, references.atoms, trust_levels, accepted)
     )
-    own = [r for r in chosen if same_species(r.molecule, target.molecule)]
+    mine = (identity_of(target.molecule), target.molecule.multiplicity)
+    own = [r for r in chosen if r.species == mine]
     if own:
         names = " and ".join(r.file for r in own)
         said = (*said, note("own-reference", f"the species is itself among the references ({names}) and was left out"))
@@ -147,15 +149,10 @@ def _at_level(
 
 
 def _species(references: Iterable[Reference]) -> list[list[Reference]]:
-    groups: list[list[Reference]] = []
+    groups: dict[object, list[Reference]] = {}
     for reference in references:
-        for group in groups:
-            if group[0].row is reference.row or same_species(group[0].molecule, reference.molecule):
-                group.append(reference)
-                break
-        else:
-            groups.append([reference])
-    return groups
+        groups.setdefault(reference.species, []).append(reference)
+    return list(groups.values())
 
 
 def _objections(reference: Reference, target: Molecule, trust: bool) -> tuple[Finding, ...]:
