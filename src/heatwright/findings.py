@@ -119,6 +119,7 @@ CODES: Final[dict[str, str]] = {
     "atom-twice": "Two outputs hold the same atom, and they disagree.",
     "no-uncertainty": "The route to the enthalpy of formation has an error that it cannot state.",
     "no-reference": "There is no reference enthalpy for an element.",
+    "bonding-unclear": "The geometry does not say which bonds the molecule has, or no Lewis structure fits it.",
     # --- fitting and writing --------------------------------------------------------------------------------------
     "temperature-range": "The temperatures asked for cannot carry a two-range polynomial anchored at 298.15 K.",
     "cp-not-positive": "The fitted heat capacity is zero or negative somewhere in the range.",
