@@ -128,7 +128,7 @@ CODES: Final[dict[str, str]] = {
     "network-coverage": "The species has a bond that no reference has.",
     "network-check": "Each reference was predicted from all the others; how well that went is said.",
     "reaction": "The reaction that the enthalpy of formation comes from.",
-    "reaction-wrong": "A reaction names a species that is not there or ambiguous, or has the species on the wrong side.",
+    "reaction-wrong": "A reaction names a species that is not there or is ambiguous, or the species on both sides.",
     "reaction-unbalanced": "A reaction does not balance elements, bonds by type or unpaired electrons.",
     "no-reaction": "No balanced reaction of the species with the references was found.",
     "route": "Which routes to the enthalpy of formation could be gone, and what each of them gives.",

@@ -29,7 +29,7 @@ from heatwright.formation.reactions import find_reactions
 from heatwright.formation.reference_set import ReferenceSet, collect_references
 from heatwright.formation.species_references import reference_species
 from heatwright.formation.usable import usable_references
-from outside import outside
+from outside import SHARED
 
 
 def read_folder(folder: Path) -> list:
@@ -80,15 +80,23 @@ def main(folder: Path, zpe_scale: float) -> None:
     rea = [(r.dHf0_kJ_mol - t.dHf0_kJ_mol, r.u95_kJ_mol / 2.0) for t, _, _, _, r in rows if r is not None]
     print(f"{'species':14s} {'atomization':>11s} {'network':>8s} {'sd':>6s} {'z':>6s}  cov  reaction")
     for (t, _, _, n, r), a, e, s, c in zip(rows, off, net, z, inside, strict=True):
-        words = "-" if r is None else f"{r.dHf0_kJ_mol - t.dHf0_kJ_mol:6.1f} +/- {r.u95_kJ_mol / 2:4.1f}  {r.source.split(' at ')[0]}"
+        words = (
+            "-"
+            if r is None
+            else f"{r.dHf0_kJ_mol - t.dHf0_kJ_mol:6.1f} +/- {r.u95_kJ_mol / 2:4.1f}  {r.source.split(' at ')[0]}"
+        )
         print(f"{t.row.name:14s} {a:11.1f} {e:8.1f} {n.u95_kJ_mol / 2:6.1f} {s:6.2f}  {'yes' if c else '   '}  {words}")
-    print(f"{len(rows)} species; atomization: rms {rms(off):.1f}, mean {np.mean(off):+.1f}, largest {max(off, key=abs):.1f} kJ/mol")
+    worst = max(off, key=abs)
+    print(f"{len(rows)} species; atomization: rms {rms(off):.1f}, mean {np.mean(off):+.1f}, largest {worst:.1f} kJ/mol")
     yes = [e for e, c in zip(net, inside, strict=True) if c]
     no = [e for e, c in zip(net, inside, strict=True) if not c]
-    print(f"network, leave-one-out: {len(yes)} covered targets rms {rms(yes):.2f}, the other {len(no)} rms {rms(no):.2f} kJ/mol")
+    print(
+        f"network, leave-one-out: {len(yes)} covered targets rms {rms(yes):.2f}, {len(no)} others {rms(no):.2f} kJ/mol"
+    )
     print(f"  z-scores: rms {rms(z):.2f}, |z| < 2 for {100 * np.mean(np.abs(z) < 2):.0f} %")
     print(
-        f"reactions: {len(rea)} targets, rms {rms([e for e, _ in rea]):.2f} kJ/mol, largest {max((e for e, _ in rea), key=abs):.1f}, "
+        f"reactions: {len(rea)} targets, rms {rms([e for e, _ in rea]):.2f} kJ/mol, "
+        f"largest {max((e for e, _ in rea), key=abs):.1f}, "
         f"z-scores rms {rms([e / s for e, s in rea]):.2f}; slowest search {slowest:.2f} s"
     )
     errors = usable_references(build_model(read_folder(folder / "atoms")[0]), whole).errors
@@ -96,12 +104,20 @@ def main(folder: Path, zpe_scale: float) -> None:
     start = time.perf_counter()
     first = replace(errors, references=errors.references[:40], error_kJ_mol=errors.error_kJ_mol[:40])
     scales = first.scales
-    many = features([errors.references[i % len(errors.references)].bonding for i in range(1000)], errors.features.labels)
-    corrections(many, features([r.bonding for r in first.references], errors.features.labels), first.error_kJ_mol, first.uncertainty_kJ_mol, scales)
+    many = features(
+        [errors.references[i % len(errors.references)].bonding for i in range(1000)], errors.features.labels
+    )
+    corrections(
+        many,
+        features([r.bonding for r in first.references], errors.features.labels),
+        first.error_kJ_mol,
+        first.uncertainty_kJ_mol,
+        scales,
+    )
     print(f"network of 40 references, scales fitted, 1000 targets: {time.perf_counter() - start:.3f} s")
 
 
 if __name__ == "__main__":
     arguments = [a for a in sys.argv[1:] if not a.startswith("--")]
     factor = float(sys.argv[sys.argv.index("--zpe-scale") + 1]) if "--zpe-scale" in sys.argv else 0.9806
-    main(Path(arguments[0]) if arguments else outside("computed"), factor)
+    main(Path(arguments[0]) if arguments else SHARED / "computed", factor)

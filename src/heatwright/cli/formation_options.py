@@ -165,7 +165,7 @@ def read_references(
         wrong = refusals(molecule.findings) or (() if molecule.is_atom else refusals(no_thermochemistry(molecule)))
         if wrong:
             reporter.say(
-                str(warn(wrong[0].code, f"passed over as a reference: {wrong[0].text}").at(molecule.source.file))
+                str(warn(wrong[0].code, f"passed over as a reference: {wrong[0].found}").at(molecule.source.file))
             )
         else:
             usable.append(molecule)

@@ -22,9 +22,7 @@ if TYPE_CHECKING:
 @click.command(short_help="Balanced reactions of a species with the references at its level.")
 @click.argument("output", type=click.Path(), metavar="OUTPUT")
 @reference_options
-@click.option(
-    "--reaction", "written", metavar="TEXT", help='Judge this reaction instead, "CH3OCH3 + H2O -> 2 CH3OH".'
-)
+@click.option("--reaction", "written", metavar="TEXT", help='Judge this reaction instead, "CH3OCH3 + H2O -> 2 CH3OH".')
 @click.option("--count", type=click.IntRange(min=1, max=50), default=5, show_default=True, help="So many at most.")
 @click.option("--json", "as_json", is_flag=True, help="As JSON.")
 @units_option
@@ -84,11 +82,10 @@ def _proposals(output: str, options: dict[str, Any], reporter: Reporter) -> str:
     rows = [(reaction, formation_of_reaction(model, reaction, usable)) for reaction in found]
     if options["as_json"]:
         return _as_json(name, model, usable, rows)
-    if options["verbose_ledgers"]:
-        for reaction, formation in rows:
-            reporter.detail(reaction.text)
-            for line in formation.ledger:
-                reporter.detail(f"  {line.value_kJ_mol:14.3f} kJ/mol  {line.what} ({line.source})")
+    for reaction, formation in rows:
+        reporter.detail(reaction.text)
+        for line in formation.ledger:
+            reporter.detail(f"  {line.value_kJ_mol:14.3f} kJ/mol  {line.what} ({line.source})")
     return _as_text(name, mine, usable, rows, options["units"])
 
 
@@ -112,9 +109,7 @@ def _as_text(
     return "\n".join(lines)
 
 
-def _as_json(
-    name: str, model: ThermoModel, usable: UsableReferences, rows: list[tuple[Reaction, Formation]]
-) -> str:
+def _as_json(name: str, model: ThermoModel, usable: UsableReferences, rows: list[tuple[Reaction, Formation]]) -> str:
     import json
 
     from heatwright.writing.document import JSON_VERSION

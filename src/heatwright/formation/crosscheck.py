@@ -125,9 +125,7 @@ def _broken(parent: Reference, radical: Reference) -> str:
 def _reactions(species: Sequence[Reference], scales: ErrorScales, each: int) -> Iterator[Relation]:
     for target in species:
         others = [r for r in species if r is not target]
-        for reaction in find_reactions(
-            target.model, target.bonding, others, scales, name=target.row.name, count=each
-        ):
+        for reaction in find_reactions(target.model, target.bonding, others, scales, name=target.row.name, count=each):
             yield _relation("reaction", target, reaction.target_coefficient, reaction)
 
 
