@@ -22,6 +22,9 @@ Atoms = Mapping[str, tuple[Molecule, ...]]
 """Atom outputs by element symbol; several levels of theory may lie side by side."""
 
 
+_DOUBLET = "levels of the doublet Pi state (Hill and Van Vleck 1928)"
+
+
 def collect_atoms(molecules: tuple[Molecule, ...]) -> dict[str, tuple[Molecule, ...]]:
     """The neutral single atoms among the molecules, by element symbol."""
     found: dict[str, tuple[Molecule, ...]] = {}
@@ -35,7 +38,8 @@ def collect_atoms(molecules: tuple[Molecule, ...]) -> dict[str, tuple[Molecule, 
 def formation_by_atomization(model: ThermoModel, atoms: Atoms, *, trust_levels: bool = False) -> Formation:
     """ΔfH° from the atomization energy at 0 K.
 
-    ΔfH°(0) = Σ ΔfH°(atom, 0) − [Σ E(atom) − E − ZPE]; then ΔfH°(298.15) by the enthalpy increments.
+    ΔfH°(0) = Σ ΔfH°(atom, 0) − [Σ E(atom) − E − ZPE − ε₀]; then ΔfH°(298.15) by the enthalpy increments.  ε₀ is the
+    lowest level of a doublet Π state from its origin without spin-orbit coupling, 0 for everything else.
     Source: L. A. Curtiss, K. Raghavachari, P. C. Redfern, J. A. Pople, J. Chem. Phys. 106, 1063 (1997).
 
     trust_levels : combine energies although levels or programs differ; every difference is then a finding.
@@ -103,7 +107,8 @@ def _formation(model: ThermoModel, atoms: Mapping[str, Molecule], findings: tupl
     atom_sum = sum(n * references[element].dHf0_kJ_mol for element, n in counts.items())
     energy_sum = sum(n * _energy(atoms[element]) for element, n in counts.items())
     electronic = (energy_sum - _energy(model.molecule)) * HARTREE_KJ_MOL
-    dHf0 = atom_sum - (electronic - model.zpe_kJ_mol)
+    lowest = model.lowest_level_kJ_mol
+    dHf0 = atom_sum - (electronic - model.zpe_kJ_mol - lowest)
     increment = element_increment_kJ_mol(counts)
     assert increment is not None  # every element has a reference here
     level = model.molecule.level_of_energy.label if model.molecule.level_of_energy else "level of theory not printed"
@@ -114,6 +119,7 @@ def _formation(model: ThermoModel, atoms: Mapping[str, Molecule], findings: tupl
         ),
         LedgerLine("electronic atomization energy", -electronic, level),
         LedgerLine("zero-point energy", model.zpe_kJ_mol, model.zpe_text),
+        *([LedgerLine("lowest real level from its spin-orbit-free origin", lowest, _DOUBLET)] if lowest else []),
         LedgerLine("H(298.15 K) - H(0) of the species", model.h298_minus_h0_kJ_mol, "partition function"),
         *(
             LedgerLine(
