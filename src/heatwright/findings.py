@@ -136,6 +136,7 @@ CODES: Final[dict[str, str]] = {
     "energy-implausible": "An energy is off by more than a bond.",
     "no-reference": "There is no reference enthalpy for an element.",
     "reference-replaced": "A reference enthalpy of the user stands in the place of the built-in one.",
+    "bonding-unclear": "The geometry does not say which bonds the molecule has, or no Lewis structure fits it.",
     # --- fitting and writing --------------------------------------------------------------------------------------
     "temperature-range": "The temperatures asked for cannot carry a two-range polynomial anchored at 298.15 K.",
     "cp-not-positive": "The fitted heat capacity is zero or negative somewhere in the range.",
