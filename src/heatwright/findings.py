@@ -120,6 +120,7 @@ CODES: Final[dict[str, str]] = {
     "atom-missing": "There is no atom output for an element of the molecule.",
     "atom-twice": "Two outputs hold the same atom, and they disagree.",
     "no-uncertainty": "The route to the enthalpy of formation has an error that it cannot state.",
+    "no-output": "An entry has no output in the folder that it could be compared by.",
     "reference-unknown": "An output in the folder of references is none of the species with an evaluated enthalpy.",
     "reference-not-ground-state": "A reference output is not in the state that its evaluated enthalpy belongs to.",
     "own-reference": "The species is itself among the references and was left out of them.",

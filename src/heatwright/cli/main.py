@@ -10,6 +10,7 @@ from typing import NoReturn
 import click
 
 from heatwright import __version__
+from heatwright.cli.crosscheck import crosscheck
 from heatwright.cli.entry import entry
 from heatwright.cli.explain import explain
 from heatwright.cli.reactions import reactions
@@ -25,6 +26,7 @@ INTERRUPTED = 130
 
 SECTIONS = {
     "One molecule": ("survey", "table", "entry", "rotors"),
+    "A mechanism": ("crosscheck",),
     "Looking things up": ("scales", "references", "reactions", "explain", "samples"),
 }
 """How ``--help`` groups the commands."""
@@ -59,7 +61,7 @@ def cli() -> None:
     """
 
 
-for _command in (survey, table, entry, rotors, scales, reactions, explain, samples):
+for _command in (survey, table, entry, rotors, scales, reactions, crosscheck, explain, samples):
     cli.add_command(_command)
 
 

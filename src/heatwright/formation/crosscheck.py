@@ -14,6 +14,7 @@ from math import hypot
 from typing import Literal
 
 from heatwright.formation.balance import account, surplus
+from heatwright.formation.entry_set import EntryRow
 from heatwright.formation.error_model import ErrorScales
 from heatwright.formation.phrases import COVERAGE
 from heatwright.formation.reactions import Reaction, find_reactions, reaction_sd_kJ_mol
@@ -138,6 +139,15 @@ def _left_out(errors: ReferenceErrors | None) -> Iterator[Relation]:
         text = f"{reference.row.name} and all others"
         u95 = COVERAGE * float(sd)
         yield Relation("all others", text, (reference.name,), stated, stated + float(residual), u95)
+
+
+def two_routes(rows: Sequence[EntryRow]) -> Iterator[Relation]:
+    """Pairs of routes that were gone for one species and state their uncertainties, compared at 298.15 K."""
+    for row in rows:
+        stated = [(route, value, u95) for route, value, u95 in row.routes if u95 is not None]
+        for (route, value, u95), (other, other_value, other_u95) in combinations(stated, 2):
+            text = f"{row.name}: {route} and {other}"
+            yield Relation("two routes", text, (row.name,), value, other_value, hypot(u95, other_u95))
 
 
 def suspects(found: Sequence[Relation]) -> tuple[tuple[str, int, int], ...]:

@@ -46,7 +46,7 @@ def corrections(
         the latter.
     """
     k = shared_covariance(targets, references, scales)
-    weights: FloatArray = np.linalg.solve(covariance(references, uncertainty_kJ_mol, scales), k.T).T
+    weights: FloatArray = (np.linalg.inv(covariance(references, uncertainty_kJ_mol, scales)) @ k.T).T
     bonds = scales.bond_kJ_mol**2 * (targets.counts**2).sum(axis=1)
     prior = bonds + (scales.spin_kJ_mol * targets.unpaired) ** 2 + own_variance(targets, scales)
     sd: FloatArray = np.sqrt(prior - (weights * k).sum(axis=1))
