@@ -160,7 +160,10 @@ def read_references(
     table, said = merged_references(own)
     usable = usable_outputs(folder, "--references", reporter)
     reporter.findings(options["reference_table"] or "", said)
-    return collect_references(usable, atoms or collect_atoms(tuple(usable)), table, model)
+    references = collect_references(usable, atoms or collect_atoms(tuple(usable)), table, model)
+    for finding in references.findings:
+        reporter.detail(str(finding))
+    return references
 
 
 def usable_outputs(folder: str, option: str, reporter: Reporter) -> list[Molecule]:

@@ -26,10 +26,13 @@ def formation_by_network(
 ) -> Formation:
     """ΔfH° by atomization, less the error of the level that all references together let expect (see network).
 
+    An atom comes out as atomization gives it, which for an atom has no error to learn.
     Raises Refused when atoms are missing or fewer than FEWEST_REFERENCES references are left.
     """
-    usable = usable_references(model, references, trust_levels=trust_levels, accept=accept)
     plain = formation_by_atomization(model, references.atoms, trust_levels=trust_levels)
+    if model.molecule.is_atom:
+        return plain
+    usable = usable_references(model, references, trust_levels=trust_levels, accept=accept)
     errors = usable.errors
     if errors is None or len(errors.references) < FEWEST_REFERENCES:
         raise Refused([_too_few(usable)])

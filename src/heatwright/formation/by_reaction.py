@@ -10,7 +10,7 @@ from heatwright.formation.balance import account, surplus
 from heatwright.formation.equations import resolved
 from heatwright.formation.error_model import ErrorScales
 from heatwright.formation.formation import Formation, LedgerLine, dHf298_from_dHf0, element_increment_kJ_mol
-from heatwright.formation.phrases import COVERAGE, element_lines, level_label, sources
+from heatwright.formation.phrases import COVERAGE, LOWEST_LEVEL, element_lines, level_label, sources
 from heatwright.formation.reactions import Reaction, balanced_kind, find_reactions, reaction_sd_kJ_mol
 from heatwright.formation.reference_set import ReferenceSet, species_name
 from heatwright.formation.usable import UsableReferences, usable_references
@@ -97,7 +97,8 @@ def formation_of_reaction(model: ThermoModel, reaction: Reaction, usable: Usable
     ]
     electronic = energy * HARTREE_KJ_MOL - sum(n * r.electronic_kJ_mol for n, r in reaction.terms) / t
     zpe = model.zpe_kJ_mol - sum(n * r.model.zpe_kJ_mol for n, r in reaction.terms) / t
-    dHf0 = sum(line.value_kJ_mol for line in evaluated) + electronic + zpe
+    lowest = model.lowest_level_kJ_mol - sum(n * r.model.lowest_level_kJ_mol for n, r in reaction.terms) / t
+    dHf0 = sum(line.value_kJ_mol for line in evaluated) + electronic + zpe + lowest
     increment = element_increment_kJ_mol(model.composition)
     if increment is None:
         raise Refused([refuse("no-reference", "an element of the species has no reference increment to 298.15 K")])
@@ -106,6 +107,11 @@ def formation_of_reaction(model: ThermoModel, reaction: Reaction, usable: Usable
         *evaluated,
         LedgerLine(f"electronic energy, less that of the references{each}", electronic, level_label(model)),
         LedgerLine(f"zero-point energy, less that of the references{each}", zpe, model.zpe_text),
+        *(
+            [LedgerLine(f"lowest real level, less that of the references{each}", lowest, LOWEST_LEVEL)]
+            if lowest
+            else []
+        ),
         LedgerLine("H(298.15 K) - H(0) of the species", model.h298_minus_h0_kJ_mol, "partition function"),
         *element_lines(model),
     )

@@ -12,6 +12,7 @@ from heatwright.partition.model import ThermoModel
 
 COVERAGE: Final = 2.0
 """Standard deviations in a 95 % uncertainty."""
+LOWEST_LEVEL: Final = "levels of the doublet Pi state (Hill and Van Vleck 1928)"
 
 
 def sources(references: Sequence[Reference]) -> str:

@@ -15,6 +15,7 @@ from heatwright.formation.error_model import features, own_variance, shared_cova
 from heatwright.formation.formation import Formation, GivenEnthalpy, formation_given
 from heatwright.formation.phrases import COVERAGE
 from heatwright.formation.reference_set import ReferenceSet
+from heatwright.formation.references import atom_reference
 from heatwright.formation.usable import usable_references
 from heatwright.partition.model import ThermoModel
 from heatwright.structure.bond_orders import bonding
@@ -90,6 +91,9 @@ def _atomization(model: ThermoModel, request: RouteRequest) -> Formation:
     if atoms is None:
         raise Refused([_no_way(model)])
     made = formation_by_atomization(model, atoms, trust_levels=request.trust_levels)
+    if model.molecule.is_atom:
+        reference = atom_reference(next(iter(model.composition)))
+        return replace(made, u95_kJ_mol=reference.u95_kJ_mol if reference else None)
     return made if request.references is None else _with_expected_error(made, model, request, request.references)
 
 
@@ -157,11 +161,9 @@ def _best(model: ThermoModel, request: RouteRequest) -> Formation:
     """The route of smallest stated uncertainty, with the others beside it; raises Refused when none can be gone."""
     made: list[Formation] = []
     failed: list[tuple[str, Refused]] = []
-    for route, go in _BY_ROUTE.items():
-        if route == "given" and request.given is None:
-            continue
+    for route in _routes_for(model, request):
         try:
-            made.append(go(model, request))
+            made.append(_BY_ROUTE[route](model, request))
         except Refused as error:
             if any(f.code not in _PASSABLE for f in refusals(error.findings)):
                 raise  # something is wrong with what was handed in, and another route would only hide it
@@ -172,6 +174,12 @@ def _best(model: ThermoModel, request: RouteRequest) -> Formation:
     others = tuple(f for f in made if f is not best)
     said = (_side_by_side(best, others), *_impassable(failed), *_disagreements((best, *others)))
     return replace(best, alternatives=others, findings=(*best.findings, *said))
+
+
+def _routes_for(model: ThermoModel, request: RouteRequest) -> tuple[str, ...]:
+    """The routes worth trying; an atom by atomization is the reference value itself."""
+    given = ("given",) if request.given is not None else ()
+    return (*given, "atomization") if model.molecule.is_atom else (*given, "atomization", "reaction", "network")
 
 
 def _side_by_side(best: Formation, others: tuple[Formation, ...]) -> Finding:

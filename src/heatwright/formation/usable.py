@@ -130,7 +130,7 @@ def _at_level(
     target: ThermoModel, references: ReferenceSet, trust: bool
 ) -> tuple[tuple[Reference, ...], tuple[Finding, ...]]:
     """One output of each species at the level of the target; raises Refused for species at other levels only."""
-    said: list[Finding] = list(references.findings)
+    said: list[Finding] = []
     wrong: list[Finding] = []
     chosen: list[Reference] = []
     for group in _species(references.references):
@@ -141,7 +141,6 @@ def _at_level(
             continue
         best, found = min(fit, key=lambda pair: (pair[0].energy0_kJ_mol, pair[0].file))
         said.extend(found)
-        said.extend(_passed_over(best, [r for r, _ in fit if r is not best]))
         chosen.append(best)
     if wrong:
         raise Refused(wrong)
@@ -167,17 +166,6 @@ def _objections(reference: Reference, target: Molecule, trust: bool) -> tuple[Fi
     make = warn if trust else refuse
     code = "level-trusted" if trust else "level-differs"
     return (*found, make(code, words, where=reference.file, action="Recompute them at that level."))
-
-
-def _passed_over(best: Reference, others: list[Reference]) -> list[Finding]:
-    return [
-        note(
-            "conformer-passed-over",
-            f"{other.file} is {other.energy0_kJ_mol - best.energy0_kJ_mol:.2f} kJ/mol above {best.file}, which is the "
-            f"same species ({best.row.name}); the lower one is the reference",
-        )
-        for other in others
-    ]
 
 
 def _errors(
