@@ -160,7 +160,7 @@ def read_references(
     table, said = merged_references(own)
     usable = usable_outputs(folder, "--references", reporter)
     reporter.findings(options["reference_table"] or "", said)
-    references = collect_references(usable, atoms or collect_atoms(tuple(usable)), table, model)
+    references = collect_references(usable, collect_atoms(tuple(usable)) if atoms is None else atoms, table, model)
     for finding in references.findings:
         reporter.detail(str(finding))
     return references

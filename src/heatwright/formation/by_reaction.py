@@ -45,6 +45,7 @@ def formation_by_reaction(
 
 
 def no_reaction(usable: UsableReferences) -> Finding:
+    """That no balanced reaction was found among the references."""
     return refuse(
         "no-reaction",
         f"no reaction with the {len(usable.references)} references balances elements, bond types and unpaired "
@@ -87,6 +88,10 @@ def _unbalanced(text: str, left: dict[str, int]) -> Finding:
 
 
 def formation_of_reaction(model: ThermoModel, reaction: Reaction, usable: UsableReferences) -> Formation:
+    """ΔfH° of the model by one reaction with its references; raises Refused without an energy or an increment.
+
+    ΔfH°(0) = [Σ ν ΔfH°(reference, 0) − Σ ν E₀(reference)]/t + E₀ for t × species + reactants -> products.
+    """
     t = reaction.target_coefficient
     energy = model.molecule.energy_hartree
     if energy is None:

@@ -60,7 +60,7 @@ class Reference:
 
     @property
     def energy0_kJ_mol(self) -> float:
-        """Energy of the lowest level, kJ/mol: electronic and zero-point energy, and what sets a doublet Π state apart."""
+        """Energy of the lowest level: electronic and zero-point energy, and the offset of a doublet Π state, kJ/mol."""
         return self.electronic_kJ_mol + self.model.zpe_kJ_mol + self.model.lowest_level_kJ_mol
 
     @property
@@ -96,7 +96,7 @@ def species_name(molecule: Molecule) -> str:
 
 
 def reference_options(options: ModelOptions) -> ModelOptions:
-    """The choices for a target that hold for its references as well: how zero-point energies and lowest levels come about."""
+    """The choices for a target that hold for its references too: those that make the lowest level."""
     return ModelOptions(
         scale=options.scale,
         frequency_scale=options.frequency_scale,

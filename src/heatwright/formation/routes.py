@@ -87,7 +87,9 @@ def _given(model: ThermoModel, request: RouteRequest) -> Formation:
 
 
 def _atomization(model: ThermoModel, request: RouteRequest) -> Formation:
-    atoms = request.atoms or (request.references.atoms if request.references else None)
+    atoms = request.atoms
+    if atoms is None and request.references is not None:
+        atoms = request.references.atoms
     if atoms is None:
         raise Refused([_no_way(model)])
     made = formation_by_atomization(model, atoms, trust_levels=request.trust_levels)
