@@ -146,12 +146,10 @@ def read_references(
     options: dict[str, Any], atoms: Atoms | None, model: ModelOptions, reporter: Reporter
 ) -> ReferenceSet | None:
     """The reference species of --references with the atoms of --atoms, else those that lie beside them; or None."""
-    from heatwright.findings import refusals, warn
     from heatwright.formation.atomization import collect_atoms
     from heatwright.formation.reference_set import collect_references
     from heatwright.formation.species_references import merged_references
     from heatwright.formation.species_references import read_references as read_table
-    from heatwright.reading.soundness import no_thermochemistry
 
     folder = options["references_folder"]
     if folder is None:
@@ -160,17 +158,26 @@ def read_references(
         return None
     own = () if options["reference_table"] is None else read_table(options["reference_table"])
     table, said = merged_references(own)
+    usable = usable_outputs(folder, "--references", reporter)
+    reporter.findings(options["reference_table"] or "", said)
+    return collect_references(usable, atoms or collect_atoms(tuple(usable)), table, model)
+
+
+def usable_outputs(folder: str, option: str, reporter: Reporter) -> list[Molecule]:
+    """The outputs of minima and atoms in a folder; others are named in a warning."""
+    from heatwright.findings import refusals, warn
+    from heatwright.reading.soundness import no_thermochemistry
+
     usable = []
-    for molecule in _molecules(folder, "--references", reporter):
+    for molecule in _molecules(folder, option, reporter):
         wrong = refusals(molecule.findings) or (() if molecule.is_atom else refusals(no_thermochemistry(molecule)))
         if wrong:
             reporter.say(
-                str(warn(wrong[0].code, f"passed over as a reference: {wrong[0].text}").at(molecule.source.file))
+                str(warn(wrong[0].code, f"passed over as a reference: {wrong[0].found}").at(molecule.source.file))
             )
         else:
             usable.append(molecule)
-    reporter.findings(options["reference_table"] or "", said)
-    return collect_references(usable, atoms or collect_atoms(tuple(usable)), table, model)
+    return usable
 
 
 def _molecules(folder: str, option: str, reporter: Reporter) -> list[Molecule]:

@@ -37,14 +37,14 @@ def formation_by_reaction(
     if text is None:
         found = find_reactions(model, mine, usable.references, usable.scales, name=called, count=3)
         if not found:
-            raise Refused([_no_reaction(usable)])
+            raise Refused([no_reaction(usable)])
         reaction = found[0]
     else:
         reaction = written_reaction(model, mine, usable, text, name=called, accept=accept)
-    return _formation(model, reaction, usable)
+    return formation_of_reaction(model, reaction, usable)
 
 
-def _no_reaction(usable: UsableReferences) -> Finding:
+def no_reaction(usable: UsableReferences) -> Finding:
     return refuse(
         "no-reaction",
         f"no reaction with the {len(usable.references)} references balances elements, bond types and unpaired "
@@ -86,7 +86,7 @@ def _unbalanced(text: str, left: dict[str, int]) -> Finding:
     )
 
 
-def _formation(model: ThermoModel, reaction: Reaction, usable: UsableReferences) -> Formation:
+def formation_of_reaction(model: ThermoModel, reaction: Reaction, usable: UsableReferences) -> Formation:
     t = reaction.target_coefficient
     energy = model.molecule.energy_hartree
     if energy is None:

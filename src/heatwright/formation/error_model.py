@@ -106,7 +106,8 @@ def negative_log_posterior(
 ) -> float:
     """−ln p of the logarithms of the three scales, up to a constant: marginal likelihood and the prior about the
     defaults."""
-    scales = ErrorScales(*(float(x) for x in np.exp(log_scales)))
+    own, bond, spin = (float(x) for x in np.exp(log_scales))
+    scales = ErrorScales(own, bond, spin)
     lower = np.linalg.cholesky(covariance(a, uncertainty_kJ_mol, scales))
     whitened = np.linalg.solve(lower, errors_kJ_mol)
     prior = (log_scales - _defaults()) / _SPREAD

@@ -46,11 +46,11 @@ def corrections(
         the latter.
     """
     k = shared_covariance(targets, references, scales)
-    weights: FloatArray = np.linalg.solve(covariance(references, uncertainty_kJ_mol, scales), k.T).T
-    prior = np.einsum("ij,ij->i", targets.counts, targets.counts) * scales.bond_kJ_mol**2
-    prior += (targets.unpaired * scales.spin_kJ_mol) ** 2
-    variance = prior - np.einsum("ij,ij->i", weights, k) + own_variance(targets, scales)
-    return Corrections(weights @ errors_kJ_mol, np.sqrt(variance), weights)
+    weights: FloatArray = (np.linalg.inv(covariance(references, uncertainty_kJ_mol, scales)) @ k.T).T
+    bonds = scales.bond_kJ_mol**2 * (targets.counts**2).sum(axis=1)
+    prior = bonds + (scales.spin_kJ_mol * targets.unpaired) ** 2 + own_variance(targets, scales)
+    sd: FloatArray = np.sqrt(prior - (weights * k).sum(axis=1))
+    return Corrections(weights @ errors_kJ_mol, sd, weights)
 
 
 @dataclass(frozen=True, eq=False)

@@ -195,6 +195,12 @@ def _errors(
     return ReferenceErrors(references, error)
 
 
+def errors_at_one_level(references: ReferenceSet) -> tuple[ReferenceErrors | None, ErrorScales]:
+    """The errors of references that are all at one level, None without their atoms, and the scales of the error."""
+    errors = _errors(references.references, references.atoms, False, True)
+    return errors, DEFAULT_SCALES if errors is None else errors.scales
+
+
 def _is_implausible(reference: Reference, error_kJ_mol: float) -> bool:
     fixed, each = PLAUSIBLE_ERROR_KJ_MOL
     return abs(error_kJ_mol) > fixed + each * reference.molecule.n_atoms
