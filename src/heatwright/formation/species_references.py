@@ -15,6 +15,7 @@ from heatwright.formation.references import AtomReference, atom_references
 from heatwright.molecule import Molecule
 from heatwright.reading.tables import Row, read_table
 from heatwright.resources import data_rows
+from heatwright.structure.cis_trans import has_sides, stated_sides
 from heatwright.structure.identity import Identity, identity_of, identity_of_smiles
 
 
@@ -90,15 +91,20 @@ def read_references(path: str | os.PathLike[str]) -> tuple[SpeciesReference, ...
 
     Raises Refused (``table-wrong``, ``smiles-wrong``) with FILE:LINE.
     """
-    found: dict[tuple[Identity, int], tuple[SpeciesReference, Row]] = {}
+    found: dict[object, tuple[SpeciesReference, Row]] = {}
     for row in read_table(path, "table-wrong", REQUIRED, OPTIONAL):
         reference = _reference_of(row)
-        key = (reference.identity, reference.multiplicity)
+        key = _key(reference)
         if key in found:
             other = found[key][1].place.rpartition(":")[2]
             row.wrong(f"{reference.name} is the same species as that on line {other}", "each species once")
         found[key] = (reference, row)
     return tuple(reference for reference, _ in found.values())
+
+
+def _key(reference: SpeciesReference) -> object:
+    """Equal for two references of one species."""
+    return reference.identity, reference.multiplicity, stated_sides(reference.smiles)
 
 
 def _reference_of(row: Row) -> SpeciesReference:
@@ -187,10 +193,10 @@ def _check_enthalpies(row: Row, dHf0: float | None, dHf298: float | None, identi
 def merged_references(own: Iterable[SpeciesReference]) -> tuple[tuple[SpeciesReference, ...], tuple[Finding, ...]]:
     """The user's references and those built-in ones that he does not give himself; each replacement is a note."""
     mine = tuple(own)
-    keys = {(reference.identity, reference.multiplicity): reference for reference in mine}
+    keys = {_key(reference): reference for reference in mine}
     kept, said = [], []
     for built_in in reference_species():
-        other = keys.get((built_in.identity, built_in.multiplicity))
+        other = keys.get(_key(built_in))
         if other is None:
             kept.append(built_in)
         else:
@@ -243,10 +249,13 @@ def reference_for(molecule: Molecule, references: Iterable[SpeciesReference]) ->
     """The reference species that a molecule is, or None.
 
     The same are composition, charge, multiplicity and the graph of bonds, so that isomers are told apart and
-    conformers and mirror images are not; another isotope is another species.  The first that fits is taken.
+    conformers and mirror images are not; another isotope is another species.  Where the SMILES states the sides of a
+    double bond, they have to be those of the geometry.  The first that fits is taken, those with stated sides before
+    those without.
     """
     identity = identity_of(molecule)
     if identity is None:
         return None
-    fits = (r for r in references if r.multiplicity == molecule.multiplicity and r.identity == identity)
-    return next(fits, None)
+    fits = [r for r in references if r.multiplicity == molecule.multiplicity and r.identity == identity]
+    fits = [r for r in fits if has_sides(molecule, stated_sides(r.smiles))]
+    return next(iter(sorted(fits, key=lambda r: not stated_sides(r.smiles))), None)
