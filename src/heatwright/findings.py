@@ -7,7 +7,7 @@ registered in :data:`CODES`, the one table of everything heatwright can say abou
 from __future__ import annotations
 
 from collections.abc import Iterable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Final, Literal
 
 from heatwright.errors import HeatwrightError
@@ -150,6 +150,32 @@ CODES: Final[dict[str, str]] = {
     "target-exists": "The file to be written exists already.",
     "target-unwritable": "The file to be written cannot be written.",
     "template-failed": "The user's template could not be rendered.",
+    # --- existing entries: reading --------------------------------------------------------------------------------
+    "no-entries": "The file holds no thermo entry.",
+    "no-such-entry": "The file has no entry of a name, or several.",
+    "yaml-unreadable": "A part of a YAML file is not YAML, or a part of YAML that thermo files do not use.",
+    "yaml-entry-wrong": "A species of a YAML file lacks a part that is needed, or a part has a wrong shape.",
+    "record-lines": "A line of a fixed record is missing, out of order, or has not its digit in column 80.",
+    "record-columns": "Something stands in columns of a fixed record where it does not belong.",
+    "record-ascii": "A fixed record holds a character outside ASCII.",
+    "coefficient-wrong": "A coefficient cannot be read: blank, shifted, cut off or not a number.",
+    "exponent-form": "The exponent of a coefficient has three digits or no letter; some readers cut it or stop.",
+    "name-ambiguous": "Readers differ in the name they take from an entry.",
+    "name-case": "A mechanism and its thermo entry write a species in different case.",
+    "composition-wrong": "The elements or counts of an entry cannot be read, contradict each other, or are not there.",
+    "composition-form": "Elements are written in a form that other readers stop at or leave out.",
+    "fifth-element": "A fifth element stands in columns that many readers do not look at.",
+    "fractional-count": "The count of an element is not a whole number; many readers cut the fraction off.",
+    "temperature-default": "An end of the range is blank, and the file's default was taken.",
+    "common-temperature-blank": "The record has no common temperature, and the file's default was taken.",
+    "molar-mass-field": "The molar mass stands where the common temperature belongs.",
+    "temperature-order": "The temperatures of an entry are not ascending.",
+    "defaults-missing": "The THERMO section has no line of default temperatures.",
+    "range-missing": "One of the two ranges has no coefficients.",
+    "all-zero": "All coefficients of an entry are zero.",
+    "one-range": "One set of coefficients serves the whole range.",
+    "other-model": "A species has another thermo model, or none; it was passed over.",
+    "composition-mismatch": "Composition, name, molar mass or charge of an entry contradict each other.",
 }
 """Every code a finding may carry, and what it means."""
 
@@ -164,6 +190,7 @@ class Finding:
     where : file, line, atom or mode; empty when the file as a whole is meant and is named by the caller.
     expected : what was expected, or empty.
     action : what to do, a whole sentence, or empty.
+    excerpt : the line that is meant with carets below it, or empty; the terminal shows it under the sentence.
     """
 
     severity: Severity
@@ -172,6 +199,7 @@ class Finding:
     where: str = ""
     expected: str = ""
     action: str = ""
+    excerpt: str = ""
 
     def __post_init__(self) -> None:
         if self.code not in CODES:
@@ -186,7 +214,12 @@ class Finding:
         return f"{head}. {self.action}".rstrip() if self.action else f"{head}."
 
     def __str__(self) -> str:
-        return f"{SEVERITY_WORD[self.severity]}: {self.text} [{self.code}]"
+        sentence = f"{SEVERITY_WORD[self.severity]}: {self.text} [{self.code}]"
+        return "\n    | ".join([sentence, *self.excerpt.split("\n")]) if self.excerpt else sentence
+
+    def shown(self, excerpt: str) -> Finding:
+        """The same finding with the line that is meant."""
+        return replace(self, excerpt=excerpt)
 
     def at(self, file: str) -> Finding:
         """The same finding with its file: ``line 12`` becomes ``FILE:12``, other places follow the file's name."""
@@ -194,7 +227,7 @@ class Finding:
             return self
         line = self.where.removeprefix("line ")
         place = file if not self.where else f"{file}:{line}" if line != self.where else f"{file}: {self.where}"
-        return Finding(self.severity, self.code, self.found, place, self.expected, self.action)
+        return replace(self, where=place)
 
     def as_json(self) -> dict[str, str]:
         """Severity, code and text, as ``--json`` shows them."""
