@@ -176,6 +176,9 @@ CODES: Final[dict[str, str]] = {
     "one-range": "One set of coefficients serves the whole range.",
     "other-model": "A species has another thermo model, or none; it was passed over.",
     "composition-mismatch": "Composition, name, molar mass or charge of an entry contradict each other.",
+    # --- a mechanism as a build -----------------------------------------------------------------------------------
+    "lock-wrong": "A lock file is no TOML, or holds an unknown, missing or wrong value.",
+    "lock-newer": "A lock file was made by a newer version of heatwright.",
 }
 """Every code a finding may carry, and what it means."""
 
