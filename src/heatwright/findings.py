@@ -179,6 +179,21 @@ CODES: Final[dict[str, str]] = {
     # --- a mechanism as a build -----------------------------------------------------------------------------------
     "lock-wrong": "A lock file is no TOML, or holds an unknown, missing or wrong value.",
     "lock-newer": "A lock file was made by a newer version of heatwright.",
+    # --- what changed, and back into the mechanism ----------------------------------------------------------------
+    "no-release": "A folder holds no release, or the files of a release contradict each other.",
+    "pressure-differs": "Entries for different standard pressures were compared, or were to be put into one file.",
+    "pressure-unknown": "A file does not say for which standard pressure its entries are.",
+    "entry-twice": "A file has two entries of one name.",
+    "entry-edited": "An entry of a release is not the one that the lock file records.",
+    "enthalpy-scale": "Two files count enthalpies from different zeros for the elements; no reaction notices.",
+    "mechanism-wrong": "The phases, sections or equations of a mechanism cannot be read, or contradict each other.",
+    "mechanism-choice": "Which reactions of a mechanism were taken is said.",
+    "not-in-mechanism": "A species whose entry changed is in no reaction of the mechanism.",
+    "no-flame": "The flame temperature cannot be computed; why is said.",
+    "other-species": "Two entries of one name have different elements or counts.",
+    "entry-absent": "The file has no entry of a species that was to be replaced.",
+    "comment-kept": "Comment lines above a replaced entry were kept; they may speak of the old one.",
+    "not-declared": "A species was added to a file whose mechanism does not declare it.",
 }
 """Every code a finding may carry, and what it means."""
 
