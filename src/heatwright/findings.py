@@ -172,6 +172,7 @@ CODES: Final[dict[str, str]] = {
     "temperature-order": "The temperatures of an entry are not ascending.",
     "defaults-missing": "The THERMO section has no line of default temperatures.",
     "range-missing": "One of the two ranges has no coefficients.",
+    "ranges-swapped": "The coefficients of the low and of the high range have changed places.",
     "all-zero": "All coefficients of an entry are zero.",
     "one-range": "One set of coefficients serves the whole range.",
     "other-model": "A species has another thermo model, or none; it was passed over.",

@@ -14,7 +14,8 @@ from pathlib import Path
 from typing import Final, Literal
 
 from heatwright.findings import Finding, Refused, note, refuse, warn
-from heatwright.reading.entry_file import EntryFile, PassedOver, Span, ThermoEntry, decoded
+from heatwright.polynomial.plausibility import ranges_swapped
+from heatwright.reading.entry_file import EntryFile, PassedOver, Span, ThermoEntry, decoded, with_finding
 from heatwright.reading.record_file import lines_of, scan
 from heatwright.reading.yaml_species import scan_yaml
 
@@ -173,7 +174,7 @@ def _record_file(data: bytes, path: str) -> EntryFile:
         format="nasa7",
         newline=_newline(data),
         defaults_K=found.defaults_K,
-        entries=tuple(found.entries),
+        entries=tuple(map(_swapped, found.entries)),
         passed_over=tuple(found.passed_over),
         findings=(*found.findings, *_passed_over(found.passed_over), *_undeclared(found.declared, found.entries)),
     )
@@ -184,17 +185,32 @@ def _yaml_file(data: bytes, path: str) -> EntryFile:
     for raw in data.splitlines(keepends=True):
         offsets.append(offsets[-1] + len(raw))
     text = decoded(data).removeprefix("\ufeff").replace("\r\n", "\n").replace("\r", "\n")
-    found = scan_yaml(text, tuple(offsets))
+    found = scan_yaml(text, tuple(offsets), "utf-8" if _is_utf8(data) else "latin-1")
     return EntryFile(
         path=path,
         data=data,
         format="yaml",
         newline=_newline(data),
         defaults_K=None,
-        entries=tuple(found.entries),
+        entries=tuple(map(_swapped, found.entries)),
         passed_over=tuple(found.passed_over),
         findings=(*found.findings, *_passed_over(found.passed_over)),
     )
+
+
+def _swapped(entry: ThermoEntry) -> ThermoEntry:
+    """*entry*, refused when the coefficients of its two ranges have changed places."""
+    if entry.polynomial is None or entry.ranges != "both" or not ranges_swapped(entry.polynomial, entry.atoms):
+        return entry
+    said = refuse(
+        "ranges-swapped",
+        f"the two ranges of {entry.name} have changed places: as it stands Cp leaves every bound, swapped it does not",
+        where=f"line {entry.lines[0]}",
+        expected="the high range first in a fixed record, the low range first in YAML",
+        action="Exchange the two sets of seven coefficients; both meet at the common temperature either way, so that "
+        "other readers do not notice.",
+    )
+    return with_finding(entry, said)
 
 
 def _passed_over(species: list[PassedOver]) -> list[Finding]:

@@ -32,6 +32,8 @@ class ThermoEntry:
     stated_h298_K : H°(298.15)/R as printed after the coefficients of some fixed records, K.
     span : offsets of its bytes, whole lines; ``lines`` are their numbers from 1, both included.
     lead : offsets of the comment lines directly above it, empty when there are none.
+    temperature_spans : offsets of the stated temperatures, low to high (of a fixed record: the whole fields).
+    coefficient_spans : offsets of the seven coefficients of each range, low range first.
     findings : what was noticed; with a refusal among them there is no polynomial.
     """
 
@@ -45,6 +47,8 @@ class ThermoEntry:
     span: Span
     lines: tuple[int, int]
     lead: Span
+    temperature_spans: tuple[Span, ...] = ()
+    coefficient_spans: tuple[tuple[Span, ...], ...] = ()
     reference_pressure_Pa: float | None = None
     stated_h298_K: float | None = None
     findings: tuple[Finding, ...] = ()

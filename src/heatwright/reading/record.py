@@ -9,7 +9,7 @@ from heatwright.findings import Finding, note, refusals, refuse, warn
 from heatwright.polynomial.nasa7 import Coefficients, Nasa7
 from heatwright.reading.entry_file import Ranges, Span, ThermoEntry, split_common_K
 from heatwright.reading.record_head import Head, read_head, together
-from heatwright.reading.record_numbers import Field, fields_of, number
+from heatwright.reading.record_numbers import WIDTH, Field, fields_of, number
 from heatwright.reading.yaml_nodes import with_caret
 
 _HIGH: Final = tuple(f"a{i} of the high range" for i in range(1, 8))
@@ -25,6 +25,16 @@ class Line:
     text: str
     start: int
     end: int
+
+    def span(self, column: int, length: int) -> Span:
+        """Offsets of the bytes of *length* columns from *column* (counted from 1)."""
+        first, last = (len(self.text[:n].encode(self._encoding)) for n in (column - 1, column - 1 + length))
+        return self.start + first, self.start + last
+
+    @property
+    def _encoding(self) -> str:
+        """Latin-1 where every letter is one byte, else UTF-8; the same for ASCII."""
+        return "latin-1" if self.end - self.start - len(self.text) <= 2 else "utf-8"
 
 
 @dataclass(frozen=True, slots=True)
@@ -57,6 +67,8 @@ def read_record(record: Record, defaults_K: tuple[float, float, float] | None) -
         span=(record.first.start, record.fourth.end),
         lines=(record.first.number, record.fourth.number),
         lead=record.lead,
+        temperature_spans=tuple(record.first.span(*columns) for columns in ((46, 10), (66, 8), (56, 10))),
+        coefficient_spans=_spans(record),
         stated_h298_K=stated,
         findings=tuple(findings),
     )
@@ -112,6 +124,11 @@ def _fields(record: Record) -> list[tuple[Line, Field]]:
     second = [(record.second, f) for f in fields_of(record.second.text, _HIGH[:5])]
     third = [(record.third, f) for f in fields_of(record.third.text, (*_HIGH[5:], *_LOW[:3]))]
     return [*second, *third, *((record.fourth, f) for f in fields_of(record.fourth.text, _LOW[3:]))]
+
+
+def _spans(record: Record) -> tuple[tuple[Span, ...], ...]:
+    spans = [line.span(field.column, WIDTH) for line, field in _fields(record)]
+    return tuple(spans[7:]), tuple(spans[:7])
 
 
 def _check_between(record: Record, findings: list[Finding]) -> None:

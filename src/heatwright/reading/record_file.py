@@ -40,7 +40,8 @@ def lines_of(data: bytes) -> list[Line]:
     for i, raw in enumerate(data.splitlines(keepends=True), 1):
         bare = raw.rstrip(b"\r\n")
         text = bare.decode("latin-1") if latin else decoded(bare)
-        lines.append(Line(i, text.removeprefix("\ufeff") if i == 1 else text, start, start + len(raw)))
+        mark = 3 if i == 1 and text.startswith("\ufeff") else 0
+        lines.append(Line(i, text.removeprefix("\ufeff") if mark else text, start + mark, start + len(raw)))
         start += len(raw)
     return lines
 

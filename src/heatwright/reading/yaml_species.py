@@ -32,16 +32,17 @@ class YamlScan:
     findings: list[Finding] = field(default_factory=list)
 
 
-def scan_yaml(text: str, offsets: tuple[int, ...]) -> YamlScan:
+def scan_yaml(text: str, offsets: tuple[int, ...], encoding: str = "utf-8") -> YamlScan:
     """Every species of a Cantera YAML text with line ends ``\\n``; lists of reactions are not looked at.
 
     offsets : for each line of *text* the offset of its first byte in the file, and the file's length at the end.
+    encoding : how the file's letters are bytes.
 
     Raises Refused (``yaml-unreadable``) where the text cannot be read at all.
     """
     document = yaml_document(text, skip=lambda key: key == "reactions" or key.endswith("-reactions"))
     scan = YamlScan()
-    reader = _Species(Text.of(text), offsets, _phase_letters(document), scan)
+    reader = _Species(Text.of(text), offsets, encoding, _phase_letters(document), scan)
     for section, node in document.items.items():
         if isinstance(node, Sequence) and _is_species_section(section, node):
             for i, item in enumerate(node.items):
@@ -95,9 +96,12 @@ def _names_of_section(node: Node | None) -> Iterator[str]:
 class _Species:
     """Reads one species after the other into a scan."""
 
-    def __init__(self, source: Text, offsets: tuple[int, ...], letters: dict[str, str], scan: YamlScan) -> None:
+    def __init__(
+        self, source: Text, offsets: tuple[int, ...], encoding: str, letters: dict[str, str], scan: YamlScan
+    ) -> None:
         self.source = source
         self.offsets = offsets
+        self.encoding = encoding
         self.letters = letters
         self.scan = scan
 
@@ -148,6 +152,8 @@ class _Species:
             span=span,
             lines=lines,
             lead=lead,
+            temperature_spans=self._number_spans(thermo, "temperature-ranges"),
+            coefficient_spans=self._coefficient_spans(thermo),
             findings=tuple(findings),
         )
 
@@ -297,6 +303,24 @@ class _Species:
             above -= 1
         span = (self.offsets[first - 1], self.offsets[last])
         return span, (first, last), (self.offsets[above - 1], span[0])
+
+    def _bytes(self, node: Node) -> tuple[int, int]:
+        """Offsets of a value's bytes in the file."""
+        return self._byte(node.start), self._byte(node.end)
+
+    def _byte(self, offset: int) -> int:
+        line, column = self.source.place(offset)
+        before = self.source.line(line)[: column - 1]
+        return self.offsets[line - 1] + (len(before) if before.isascii() else len(before.encode(self.encoding)))
+
+    def _number_spans(self, thermo: Node, key: str) -> tuple[tuple[int, int], ...]:
+        node = thermo.items.get(key) if isinstance(thermo, Mapping) else None
+        return tuple(self._bytes(item) for item in node.items) if isinstance(node, Sequence) else ()
+
+    def _coefficient_spans(self, thermo: Node) -> tuple[tuple[tuple[int, int], ...], ...]:
+        data = thermo.items.get("data") if isinstance(thermo, Mapping) else None
+        rows = data.items if isinstance(data, Sequence) else ()
+        return tuple(tuple(self._bytes(item) for item in row.items) for row in rows if isinstance(row, Sequence))
 
     def _said(self, node: Node, found: str, expected: str, code: str = CODE) -> Finding:
         line, column = self.source.place(node.start)
