@@ -194,6 +194,7 @@ CODES: Final[dict[str, str]] = {
     "other-species": "Two entries of one name have different elements or counts.",
     "entry-absent": "The file has no entry of a species that was to be replaced.",
     "comment-kept": "Comment lines above a replaced entry were kept; they may speak of the old one.",
+    "splice-failed": "A file with new entries did not read back as it should, so it was not written.",
     "not-declared": "A species was added to a file whose mechanism does not declare it.",
 }
 """Every code a finding may carry, and what it means."""

@@ -10,6 +10,7 @@ from typing import NoReturn
 import click
 
 from heatwright import __version__
+from heatwright.cli.compare import compare
 from heatwright.cli.crosscheck import crosscheck
 from heatwright.cli.entry import entry
 from heatwright.cli.explain import explain
@@ -18,6 +19,7 @@ from heatwright.cli.references import references
 from heatwright.cli.rotors import rotors
 from heatwright.cli.samples import samples
 from heatwright.cli.scales import scales
+from heatwright.cli.splice import splice
 from heatwright.cli.survey import survey
 from heatwright.cli.table import table
 from heatwright.errors import HeatwrightError
@@ -27,7 +29,8 @@ INTERRUPTED = 130
 
 SECTIONS = {
     "One molecule": ("survey", "table", "entry", "rotors"),
-    "A mechanism": ("crosscheck",),
+    "A mechanism": ("crosscheck", "compare"),
+    "Existing entries": ("splice",),
     "Looking things up": ("scales", "references", "reactions", "explain", "samples"),
 }
 """How ``--help`` groups the commands."""
@@ -62,7 +65,9 @@ def cli() -> None:
     """
 
 
-for _command in (survey, table, entry, rotors, scales, references, reactions, crosscheck, explain, samples):
+for _command in (
+    survey, table, entry, rotors, crosscheck, compare, splice, scales, references, reactions, explain, samples,
+):  # fmt: skip
     cli.add_command(_command)
 
 

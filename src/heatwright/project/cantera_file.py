@@ -7,7 +7,7 @@ from collections.abc import Iterator
 from dataclasses import dataclass, field
 from importlib.util import find_spec
 from pathlib import Path
-from typing import Final, NoReturn
+from typing import Final
 
 from heatwright.findings import Refused, refuse
 from heatwright.reading.entries import MOST_BYTES
@@ -56,9 +56,9 @@ class CanteraFile:
         """``FILE:LINE`` of a node."""
         return f"{self.path}:{self.source.place(min(node.start, len(self.source.text)))[0]}"
 
-    def wrong(self, node: Node, found: str, expected: str = "", action: str = "") -> NoReturn:
-        """Raises Refused (``mechanism-wrong``) at a node."""
-        raise Refused([refuse(CODE, found, where=self.where(node), expected=expected, action=action)])
+    def refused(self, node: Node, found: str, expected: str = "", action: str = "") -> Refused:
+        """The refusal (``mechanism-wrong``) of a node."""
+        return Refused([refuse(CODE, found, where=self.where(node), expected=expected, action=action)])
 
     def listed(self, name: str, at: Node) -> tuple[CanteraFile, Sequence]:
         """The list that ``section`` or ``file.yaml/section`` names, and its file; refused at the node *at*."""
@@ -69,8 +69,9 @@ class CanteraFile:
             return file, node
         have = ", ".join(k for k, v in file.document.items.items() if isinstance(v, Sequence)) or "none"
         inside = f" in {path}" if path else ""
-        found = f"there is no section {section}{inside}" if node is None else f"the section {section}{inside} is no list"
-        self.wrong(at, found, f"one of its lists: {have}")
+        what = "there is no section {}" if node is None else "the section {} is no list"
+        found = what.format(section) + inside
+        raise self.refused(at, found, f"one of its lists: {have}")
 
     def _other(self, path: str, at: Node) -> CanteraFile:
         if path in self.others:
@@ -81,7 +82,7 @@ class CanteraFile:
                 self.others[path] = CanteraFile.load(candidate, self.others)
                 return self.others[path]
         action = "Put it beside the mechanism; Cantera's own files are found where Cantera is installed."
-        self.wrong(at, f"the file {path} is not to be found", action=action)
+        raise self.refused(at, f"the file {path} is not to be found", action=action)
 
     # --- phases ----------------------------------------------------------------------------------------------------
 
@@ -119,7 +120,7 @@ class CanteraFile:
             elif word(names) == "all":
                 yield from _names_in(self.listed(section, item)[1], only)
             else:
-                self.wrong(item, f"the species from {section} are {word(names)!r}", "all, or a list of names")
+                raise self.refused(item, f"the species from {section} are {word(names)!r}", "all, or a list of names")
 
     def _beside(self, node: Node | None) -> Iterator[str]:
         """The species of adjacent phases."""

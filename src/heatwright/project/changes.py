@@ -60,7 +60,8 @@ def parse_tolerance(text: str) -> Tolerance:
         key, _, value = (word.strip() for word in part.partition("="))
         number = _positive(value)
         if key not in names or number is None or names[key] in values:
-            raise UsageError(f"--tolerance {part.strip()!r}: expected {', '.join(f'{n}=NUMBER' for n in names)}, each once")
+            expected = ", ".join(f"{name}=NUMBER" for name in names)
+            raise UsageError(f"--tolerance {part.strip()!r}: expected {expected}, each at most once")
         values[names[key]] = number
     return replace(Tolerance(), **values)
 
@@ -159,7 +160,8 @@ def _common(
     kind = _kind(old, new, found, tolerance)
     reasons: tuple[str, ...] = ()
     if old.record is not None and new.record is not None:
-        reasons = recorded_reasons(old.record, new.record)
+        locks = [side.lock.references if side.lock else () for side in (old_set, new_set)]
+        reasons = recorded_reasons(old.record, new.record, (locks[0], locks[1]))
         if kind in MOVED:
             reasons += tool_reasons(old_set.lock, new_set.lock)
     if kind == "other species":
@@ -195,7 +197,7 @@ def _remarks(old: Thermo, new: Thermo, found: Difference) -> Iterable[str]:
     if found.ddHf298_kJ_mol is None and found.inside_K is not None:
         yield "one of the two has no values at 298.15 K"
     if tables and (a is not None or b is not None) and (old.record is None or new.record is None):
-        yield "one side is a polynomial, the other the table of the lock file, so the fit's own error is in the difference"
+        yield "one side is a polynomial, the other a lock file's table; the fit's own error is in the difference"
 
 
 def _formula(thermo: Thermo) -> str:

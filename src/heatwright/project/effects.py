@@ -76,7 +76,10 @@ def mechanism_effect(mechanism: Mechanism, comparison: Comparison) -> MechanismE
     )
 
 
-def _reaction_change(reaction: Reaction, species: tuple[str, ...], by_name: dict[str, Change], n: int) -> ReactionChange:
+def _reaction_change(
+    reaction: Reaction, species: tuple[str, ...], by_name: dict[str, Change], n: int
+) -> ReactionChange:
+    """*species* are those of the reaction that moved, *n* the number of temperatures."""
     net = reaction.equation.net
     remarks = [r for s in species for r in _cannot(s, by_name[s])]
     sums: list[float | None] = [None] * n

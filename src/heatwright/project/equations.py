@@ -1,8 +1,8 @@
 """Reaction equations as Cantera's YAML writes them: species with coefficients, direction, and who only collides.
 
-The rules are those that Cantera 3.2 shows when it reads such equations: words are separated by blanks, a number before a
-species is its coefficient, ``M`` and ``(+M)`` are colliders, and a species that stands once on each side of a reaction
-of three particles (``H + O2 + AR <=> HO2 + AR``) collides as well instead of reacting.
+The rules are those that Cantera 3.2 shows when it reads such equations: words are separated by blanks, a number before
+a species is its coefficient, ``M`` and ``(+M)`` are colliders, and a species that stands once on each side of a
+reaction of three particles (``H + O2 + AR <=> HO2 + AR``) collides as well instead of reacting.
 """
 
 from __future__ import annotations

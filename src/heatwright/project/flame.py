@@ -7,6 +7,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from importlib import import_module
 from importlib.util import find_spec
+from math import log
 from typing import Any, Final
 
 from heatwright.constants import ATMOSPHERE_PA, BAR_PA, STANDARD_TEMPERATURE_K
@@ -154,34 +155,38 @@ def _refused(found: str, where: str, action: str = "") -> Refused:
 
 
 def _with_entries(ct: Any, path: str, phase: str, side: ThermoSet) -> tuple[Any, list[Thermo]]:
-    """The gas with a side's entries in the place of its own, and those entries."""
+    """The gas, taken as ideal, with a side's entries in the place of its own, and those entries."""
     try:
-        own = ct.Solution(path, phase, transport_model=None).species()
-    except Exception as error:
+        gas = ct.ThermoPhase(path, phase)
+        own, pressure_Pa = gas.species(), gas.reference_pressure
+        entries = {one.name: _entry_for(one, side) for one in own}
+        species = [_species(ct, one, entries[one.name], pressure_Pa) for one in own]
+        return ct.ThermoPhase(thermo="ideal-gas", species=species), [e for e in entries.values() if e is not None]
+    except (ct.CanteraError, ValueError, TypeError) as error:
         raise _refused(f"Cantera cannot read the mechanism: {_sentence(error)}", path) from error
-    species, replaced = [], []
-    for one in own:
-        entry = side.species.get(one.name)
-        if entry is None or entry.polynomial is None:
-            species.append(one)
-            continue
-        atoms = {symbol: n for symbol, n in one.composition.items() if n}
-        if entry.composition and {k.upper(): float(n) for k, n in entry.composition.items()} != {
-            k.upper(): float(n) for k, n in atoms.items()
-        }:
-            found = f"{one.name} has other elements or counts than the mechanism's {one.name}"
-            raise Refused([refuse("other-species", found, where=entry.where)])
-        species.append(_species(ct, one, entry))
-        replaced.append(entry)
-    return ct.Solution(thermo="ideal-gas", species=species), replaced
 
 
-def _species(ct: Any, own: Any, entry: Thermo) -> Any:
+def _entry_for(own: Any, side: ThermoSet) -> Thermo | None:
+    """The side's entry of one of the mechanism's species; raises Refused when it is another species."""
+    entry = side.species.get(own.name)
+    if entry is None or entry.polynomial is None:
+        return None
+    theirs = {symbol.upper(): n for symbol, n in own.composition.items() if n}
+    if entry.composition and {symbol.upper(): float(n) for symbol, n in entry.composition.items()} != theirs:
+        found = f"{own.name} has other elements or counts than the mechanism's {own.name}"
+        raise Refused([refuse("other-species", found, where=entry.where)])
+    return entry
+
+
+def _species(ct: Any, own: Any, entry: Thermo | None, pressure_Pa: float) -> Any:
+    """The mechanism's species with an entry brought to its standard pressure, since one phase can have only one."""
+    if entry is None or entry.polynomial is None:
+        return own
     p = entry.polynomial
-    assert p is not None
-    pressure = own.thermo.reference_pressure if entry.pressure_Pa is None else entry.pressure_Pa
+    shift = 0.0 if entry.pressure_Pa is None else -log(pressure_Pa / entry.pressure_Pa)
+    coefficients = [p.t_common_K, *p.high[:6], p.high[6] + shift, *p.low[:6], p.low[6] + shift]
     made = ct.Species(own.name, own.composition, own.charge, own.size)
-    made.thermo = ct.NasaPoly2(p.t_low_K, p.t_high_K, pressure, [p.t_common_K, *p.high, *p.low])
+    made.thermo = ct.NasaPoly2(p.t_low_K, p.t_high_K, pressure_Pa, coefficients)
     return made
 
 

@@ -99,7 +99,7 @@ def _sections(file: CanteraFile, phase: Mapping) -> Iterator[tuple[tuple[Cantera
         asked = [("reactions", word(node), node)]
     for name, rule, at in asked:
         if rule not in _RULES:
-            file.wrong(at, f"the rule for {name} is {rule!r}", f"one of {', '.join(_RULES)}")
+            raise file.refused(at, f"the rule for {name} is {rule!r}", f"one of {', '.join(_RULES)}")
         if rule != "none":
             yield file.listed(name, at), rule
 
@@ -148,14 +148,14 @@ class _Collected:
 def _reaction(file: CanteraFile, node: Node, number: int) -> Reaction:
     equation = node.items.get("equation") if isinstance(node, Mapping) else None
     if not isinstance(node, Mapping) or not isinstance(equation, Scalar):
-        file.wrong(node, "a reaction has no equation", "`equation: A + B <=> C`")
+        raise file.refused(node, "a reaction has no equation", "`equation: A + B <=> C`")
     kind = word(node.items.get("type"))
     efficiencies = node.items.get("efficiencies")
     named = tuple(efficiencies.items) if isinstance(efficiencies, Mapping) else ()
     try:
         parsed = parse_equation(equation.text, kind, named)
     except ValueError as error:
-        file.wrong(equation, f"the equation {equation.text!r} cannot be read: {error}")
+        raise file.refused(equation, f"the equation {equation.text!r} cannot be read: {error}") from error
     return Reaction(
         number=number,
         text=" ".join(equation.text.split()),

@@ -1,4 +1,4 @@
-"""Why an entry differs from an earlier one: by the records of two lock files, or by what the numbers themselves show."""
+"""Why an entry differs from an earlier one: by the records of two lock files, or by what the numbers show."""
 
 from __future__ import annotations
 
@@ -7,19 +7,28 @@ from math import log
 from typing import Any, Final
 
 from heatwright.constants import GAS_CONSTANT_J_MOL_K
+from heatwright.elements import element
 from heatwright.project.differences import Difference
-from heatwright.project.lockfile import Lock, LockedFormation, LockedSpecies
+from heatwright.project.lockfile import Lock, LockedFormation, LockedReference, LockedSpecies
 from heatwright.project.thermo_set import Thermo
 
+_SHOWN: Final = 8
+_SYMBOLS: Final = frozenset(element(z).symbol for z in range(1, 104))
 _NUMERIC_J_MOL_K: Final = 0.005
 """Entropies and heat capacities that differ by less come from rounding in the text."""
 
 
-def recorded_reasons(old: LockedSpecies, new: LockedSpecies) -> tuple[str, ...]:
+def recorded_reasons(
+    old: LockedSpecies,
+    new: LockedSpecies,
+    references: tuple[tuple[LockedReference, ...], tuple[LockedReference, ...]] = ((), ()),
+) -> tuple[str, ...]:
     """What differs between two records of one species, in words that start with the kind of the reason.
 
-    The kinds: ``output``, ``reference``, ``options``, ``formation``, ``level``, ``range`` and ``composition changed``,
-    ``kept``.
+    The kinds: ``output changed`` (and the other roles of files, also ``added``, ``removed`` and ``moved``), ``level``,
+    ``program``, ``options``, ``formation``, ``reference`` and ``range changed``, a convention by its own name, ``kept``.
+
+    references : those of both lock files, by which a changed reference is named.
     """
     return (
         *_files(old, new),
@@ -27,7 +36,7 @@ def recorded_reasons(old: LockedSpecies, new: LockedSpecies) -> tuple[str, ...]:
         *_options(old.choices, new.choices),
         *_conventions(old, new),
         *_formation(old.formation, new.formation),
-        *_references(old, new),
+        *_references(old, new, *references),
         *_range(old, new),
         *_kept(new),
     )
@@ -100,9 +109,22 @@ def _formation(old: LockedFormation, new: LockedFormation) -> Iterator[str]:
         yield f"formation changed: given as {old.dHf298_kJ_mol:.3f} → {new.dHf298_kJ_mol:.3f} kJ/mol"
 
 
-def _references(old: LockedSpecies, new: LockedSpecies) -> Iterator[str]:
-    if old.references != new.references:
-        yield "reference changed: the outputs that enthalpies of formation rest on"
+def _references(
+    old: LockedSpecies, new: LockedSpecies, before: tuple[LockedReference, ...], after: tuple[LockedReference, ...]
+) -> Iterator[str]:
+    if old.references == new.references:
+        return
+    hashes = [{(r.path, r.species): r.sha256 for r in side} for side in (before, after)]
+    keys = sorted(hashes[0].keys() | hashes[1].keys())
+    # of atoms, only those that the species is made of
+    moved = [
+        path
+        for path, species in keys
+        if hashes[0].get((path, species)) != hashes[1].get((path, species))
+        and (species not in _SYMBOLS or species in new.composition)
+    ]
+    shown = ", ".join(moved[:_SHOWN]) + (", …" if len(moved) > _SHOWN else "")
+    yield f"reference changed: {shown or 'the outputs that its enthalpy of formation rests on'}"
 
 
 def _range(old: LockedSpecies, new: LockedSpecies) -> Iterator[str]:
@@ -126,10 +148,8 @@ def numeric_reasons(old: Thermo, new: Thermo, found: Difference) -> tuple[str, .
     """What the numbers show where no record says why: only the enthalpy, only the entropy, heat capacity, range."""
     reasons = [*_shape(found)]
     a, b = old.polynomial, new.polynomial
-    if a is not None and b is not None:
-        ends = [(p.t_low_K, p.t_common_K, p.t_high_K) for p in (a, b)]
-        if ends[0] != ends[1]:
-            reasons.append(f"range: {_ends(ends[0])} → {_ends(ends[1])} K")
+    if a is not None and b is not None and a.t_common_K != b.t_common_K:
+        reasons.append(f"common temperature: {a.t_common_K:g} → {b.t_common_K:g} K")
     if old.note and new.note and old.note != new.note:
         reasons.append(f"note: {old.note} → {new.note}")
     return tuple(reasons)

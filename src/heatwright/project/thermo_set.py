@@ -39,6 +39,7 @@ class Thermo:
     pressure_Pa: float | None
     where: str
     note: str = ""
+    phase: str = "G"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -139,6 +140,7 @@ def _thermo(file: EntryFile, entry: ThermoEntry, default_Pa: float | None) -> Th
         pressure_Pa=default_Pa if entry.reference_pressure_Pa is None else entry.reference_pressure_Pa,
         where=f"{file.path}:{entry.lines[0]}",
         note=entry.note,
+        phase=entry.phase or "G",
     )
 
 
@@ -180,7 +182,8 @@ def _release(path: str) -> ThermoSet:
     if not texts and not has_lock:
         expected = f"{YAML_NAME}, {DAT_NAME} or {LOCK_NAME} in it"
         action = "Give the folder that `heatwright build` writes, or a thermo file."
-        raise Refused([refuse("no-release", "the folder holds no release", where=path, expected=expected, action=action)])
+        found = "the folder holds no release"
+        raise Refused([refuse("no-release", found, where=path, expected=expected, action=action)])
     locked = _locked(read_lock(folder / LOCK_NAME), str(folder / LOCK_NAME)) if has_lock else None
     if not texts:
         return replace(locked, path=path) if locked else ThermoSet(path=path, kind="release", species={})
@@ -205,9 +208,7 @@ def _with_record(thermo: Thermo, locked: Thermo | None) -> Thermo:
     if locked is None:
         return thermo
     pressure = locked.pressure_Pa if thermo.pressure_Pa is None else thermo.pressure_Pa
-    return replace(
-        thermo, record=locked.record, cp_temperatures_K=locked.cp_temperatures_K, pressure_Pa=pressure
-    )
+    return replace(thermo, record=locked.record, cp_temperatures_K=locked.cp_temperatures_K, pressure_Pa=pressure)
 
 
 def _disagreeing(sets: list[ThermoSet]) -> list[Finding]:
