@@ -26,7 +26,7 @@ def recorded_reasons(
     """What differs between two records of one species, in words that start with the kind of the reason.
 
     The kinds: ``output changed`` (and the other roles of files, also ``added``, ``removed`` and ``moved``), ``level``,
-    ``program``, ``options``, ``formation``, ``reference`` and ``range changed``, a convention by its own name, ``kept``.
+    ``program``, ``options``, ``formation``, ``reference`` and ``range changed``, a convention by its name, ``kept``.
 
     references : those of both lock files, by which a changed reference is named.
     """
