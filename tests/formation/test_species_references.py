@@ -168,9 +168,10 @@ def from_ase(name: str, multiplicity: int = 1, **changes):
         ("trans-butane", 1, "n-C4H10"), ("isobutene", 1, "(CH3)2CCH2"), ("butadiene", 1, "CH2CHCHCH2"),
         ("C6H6", 1, "C6H6"), ("H2COH", 2, "CH2OH"), ("CH3O", 2, "CH3O"), ("CH2_s3B1d", 3, "CH2"), ("O2", 3, "O2"),
         ("CO", 1, "CO"), ("OCS", 1, "COS"), ("SO2", 1, "SO2"), ("BF3", 1, "BF3"), ("SiF4", 1, "SiF4"),
-        ("PH3", 1, "PH3"), ("CCl4", 1, "CCl4"), ("CF4", 1, "CF4"), ("NO2", 2, "NO2"), ("N2O", 1, "N2O"), 
-        ("O3", 1, "O3"), ("CH3SH", 1, "CH3SH"), ("CH3CN", 1, "CH3CN"), ("HCOOCH3", 1, "HCOOCH3"), ("CH3COOH", 1, "CH3COOH"),
-        ("CH3COCH3", 1, "CH3COCH3"), ("H2O2", 1, "H2O2"), ("Cl2", 1, "Cl2"), ("HOCl", 1, "HOCl"), ("CCH", 2, "C2H"),
+        ("PH3", 1, "PH3"), ("CCl4", 1, "CCl4"), ("CF4", 1, "CF4"), ("NO2", 2, "NO2"), ("N2O", 1, "N2O"),
+        ("O3", 1, "O3"), ("CH3SH", 1, "CH3SH"), ("CH3CN", 1, "CH3CN"), ("HCOOCH3", 1, "HCOOCH3"),
+        ("CH3COOH", 1, "CH3COOH"), ("CH3COCH3", 1, "CH3COCH3"),
+        ("H2O2", 1, "H2O2"), ("Cl2", 1, "Cl2"), ("HOCl", 1, "HOCl"), ("CCH", 2, "C2H"),
     ],
 )  # fmt: skip
 def test_species_by_geometry(geometry: str, multiplicity: int, name: str) -> None:
