@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Collection, Sequence
+from collections.abc import Sequence
 from typing import Final
 
 from heatwright.findings import Finding, Refused, note, refuse, warn
-from heatwright.formation.atomization import formation_by_atomization
+from heatwright.formation.choices import PLAIN, EnergyChoices, atomized
 from heatwright.formation.error_model import FEWEST_REFERENCES, features
-from heatwright.formation.formation import Formation, LedgerLine
+from heatwright.formation.formation import Formation, LedgerLine, with_electron
 from heatwright.formation.network import corrections
 from heatwright.formation.phrases import COVERAGE, level_label, sources
 from heatwright.formation.reference_set import Reference, ReferenceSet
@@ -21,15 +21,16 @@ _SHOWN: Final = 0.005
 """References that move the result by less than this, kJ/mol, stand in the ledger as one line."""
 
 
-def formation_by_network(
-    model: ThermoModel, references: ReferenceSet, *, trust_levels: bool = False, accept: Collection[str] = ()
-) -> Formation:
+def formation_by_network(model: ThermoModel, references: ReferenceSet, choices: EnergyChoices = PLAIN) -> Formation:
     """ΔfH° by atomization, less the error of the level that all references together let expect (see network).
 
+    An atom comes out as atomization gives it, which for an atom has no error to learn.
     Raises Refused when atoms are missing or fewer than FEWEST_REFERENCES references are left.
     """
-    usable = usable_references(model, references, trust_levels=trust_levels, accept=accept)
-    plain = formation_by_atomization(model, references.atoms, trust_levels=trust_levels)
+    plain = atomized(model, references.atoms, choices)
+    if model.molecule.is_atom:
+        return plain
+    usable = usable_references(model, references, choices)
     errors = usable.errors
     if errors is None or len(errors.references) < FEWEST_REFERENCES:
         raise Refused([_too_few(usable)])
@@ -45,7 +46,8 @@ def formation_by_network(
         dHf0_kJ_mol=plain.dHf0_kJ_mol - shift,
         u95_kJ_mol=COVERAGE * float(made.sd_kJ_mol[0]),
         method="network",
-        source=f"{len(errors.references)} reference species at {level_label(model)} ({sources(errors.references)})",
+        source=f"{len(errors.references)} reference species at {level_label(model)} ({sources(errors.references)})"
+        f"{with_electron('', model.molecule.charge or 0, choices.electron)}",
         ledger=(*plain.ledger, *_network_lines(errors.references, made.weights[0], shares)),
         findings=(
             *(f for f in plain.findings if f.code != "no-uncertainty"),

@@ -1,9 +1,9 @@
 """Every best Lewis structure of a graph of atoms at once, without writing them down one by one.
 
 The atoms are taken in an order that keeps the open ends of the graph few.  A partial structure matters for the rest
-only through the multiple bonds it has begun, its charge, its unpaired electrons and its cost; partial structures alike in
-these are counted together (the transfer matrix of the counting of Kekulé structures).  Forward and backward counts give
-for each bond how many of the best structures write it single, double or triple.
+only through the multiple bonds it has begun, its charge, its unpaired electrons and its cost; partial structures alike
+in these are counted together (the transfer matrix of the counting of Kekulé structures).  Forward and backward counts
+give for each bond how many of the best structures write it single, double or triple.
 """
 
 from __future__ import annotations
