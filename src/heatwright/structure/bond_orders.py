@@ -22,7 +22,7 @@ from heatwright.findings import Refused, refuse
 from heatwright.molecule import FloatArray, Molecule
 from heatwright.structure.bonds import bonds, covalent_radius_A, fragments
 from heatwright.structure.frame import Frame
-from heatwright.structure.lewis import Structures, TooWide, best_by_length, lewis_structures
+from heatwright.structure.lewis import Solution, Structures, TooWide, lewis_structures
 from heatwright.structure.valence import most_bonds, valence_electrons
 
 BoolArray = NDArray[np.bool_]
@@ -132,13 +132,13 @@ def _bonding(numbers: tuple[int, ...], coordinates: bytes, charge: int, unpaired
     lengths: FloatArray = np.linalg.norm(x[:, None] - x[None, :], axis=2)
     stretches = lengths / np.add.outer(*2 * [np.array([covalent_radius_A(z) for z in numbers])])
     pairs = _pairs(numbers, bonds(numbers, x), stretches)
-    _whole(numbers, pairs)
     _possible(numbers, pairs, lengths, stretches)
+    _whole(numbers, pairs)
     frame = Frame(numbers, pairs, charge, unpaired)
     special = _by_orbitals(frame)
     if special:
         return Bonding(numbers, (Bond(0, 1, special),), unpaired, charge, (charge / 2, charge / 2))
-    found = _localised(frame, _structures(frame), lengths, stretches)
+    found = _localised(_solution(frame), lengths, stretches)
     orders = [float(min(o)) if len(o) == 1 else DELOCALISED for o in found.orders]
     _not_too_long(numbers, pairs, orders, lengths, stretches)
     listed = tuple(Bond(i, j, order) for (i, j), order in zip(pairs, orders, strict=True))
@@ -199,7 +199,8 @@ def _possible(
     for i, j in pairs:
         near[i].append(j)
         near[j].append(i)
-    for i, z in enumerate(numbers):
+    for i in sorted(range(len(numbers)), key=lambda i: numbers[i] != 1):
+        z = numbers[i]
         if valence_electrons(z) is None:
             words = f"{symbol(z)} has no fixed valence, so its bonds have no order"
             raise _unclear(words, _name(numbers, i), "main-group elements")
@@ -239,7 +240,7 @@ def _by_orbitals(frame: Frame) -> float:
     return few if frame.unpaired in (0, 2) else 0.0
 
 
-def _structures(frame: Frame) -> Structures:
+def _solution(frame: Frame) -> Solution:
     electrons = sum(frame.atomic_numbers) - frame.charge
     state = f"charge {frame.charge:+d} and multiplicity {frame.unpaired + 1}"
     if (electrons - frame.unpaired) % 2:
@@ -257,13 +258,14 @@ def _structures(frame: Frame) -> Structures:
     return found
 
 
-def _localised(frame: Frame, found: Structures, lengths: FloatArray, stretches: FloatArray) -> Structures:
-    """The one structure whose double bonds are the short bonds, if lengths alternate more than resonance allows."""
+def _localised(solution: Solution, lengths: FloatArray, stretches: FloatArray) -> Structures:
+    """All the best structures, or the one whose double bonds are the short ones if lengths alternate too much."""
+    found, frame = solution.structures(), solution.frame
     varying = [b for b, orders in enumerate(found.orders) if len(orders) > 1]
     if not varying or any(found.orders[b] != {1, 2} for b in varying):
         return found
-    best = best_by_length(frame, [float(stretches[i, j]) for i, j in frame.bonds])
-    return best if best and _alternation_A(frame, best, varying, lengths) > ALTERNATION_A else found
+    best = solution.shortest([float(stretches[i, j]) for i, j in frame.bonds])
+    return best if _alternation_A(frame, best, varying, lengths) > ALTERNATION_A else found
 
 
 def _alternation_A(frame: Frame, one: Structures, varying: list[int], lengths: FloatArray) -> float:

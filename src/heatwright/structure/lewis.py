@@ -172,15 +172,72 @@ def _within(frame: Frame, steps: list[_Step], bounds: list[_Bound], most: int) -
 
 
 @dataclass(frozen=True)
-class _Best:
-    """Every move between partial structures of the best cost, and how many ways finish after each."""
+class Solution:
+    """All best structures of a frame at once: every move between partial structures, and how many ways finish it."""
 
+    frame: Frame
     steps: list[_Step]
     layers: list[list[_Move]]
     ways: list[dict[_Cell, int]]
 
+    def structures(self) -> Structures:
+        """All of them, counted."""
+        orders: list[set[int]] = [set() for _ in self.frame.bonds]
+        for b in set(range(len(orders))) - set(self.frame.open_bonds):
+            orders[b] = {1}
+        charges = [0] * len(self.steps)
+        forward: dict[_Cell, int] = {(_START, 0): 1}
+        for step, layer, finish in zip(self.steps, self.layers, self.ways, strict=True):
+            reached: dict[_Cell, int] = defaultdict(int)
+            for before, (above, q, _, _), after in layer:
+                n = forward.get(before, 0) * finish.get(after, 0)
+                if not n:
+                    continue
+                reached[after] += forward[before]
+                charges[step.atom] += q * n
+                for (b, _), e in zip(step.ahead, above, strict=True):
+                    orders[b].add(1 + e)
+            forward = reached
+        count = sum(forward.values())
+        return Structures(count, tuple(frozenset(o) for o in orders), tuple(q / count for q in charges))
 
-def _best(frame: Frame) -> _Best | None:
+    def shortest(self, stretches: Sequence[float]) -> Structures:
+        """That one of them whose multiple bonds are on the shortest bonds (lengths over sums of radii)."""
+        best: dict[_Cell, tuple[float, _Path]] = {(_START, 0): (0.0, ())}
+        for step, layer, finish in zip(self.steps, self.layers, self.ways, strict=True):
+            reached: dict[_Cell, tuple[float, _Path]] = {}
+            for before, choice, after in layer:
+                if before not in best or not finish.get(after, 0):
+                    continue
+                length, path = best[before]
+                total = length + sum(e * stretches[b] for (b, _), e in zip(step.ahead, choice[0], strict=True))
+                if after not in reached or total < reached[after][0]:
+                    reached[after] = (total, (*path, choice))
+            best = reached
+        return self._written(min(best.values())[1])
+
+    def _written(self, path: _Path) -> Structures:
+        """One structure from what each step's atom does in it."""
+        orders, charges = [1] * len(self.frame.bonds), [0.0] * len(self.steps)
+        for step, (above, q, _, _) in zip(self.steps, path, strict=True):
+            charges[step.atom] = float(q)
+            for (b, _), e in zip(step.ahead, above, strict=True):
+                orders[b] += e
+        return Structures(1, tuple(frozenset({o}) for o in orders), tuple(charges))
+
+
+def lewis_structures(frame: Frame) -> Solution | None:
+    """The best Lewis structures of a graph, or None when there is none of this charge and spin.
+
+    In order: the fewest vacant orbitals, the smallest formal charges, the fewest expanded shells; what is equal so far
+    and has its charges on elements nearly as electronegative counts as equal.
+
+    Raises TooWide when the graph is too large and too branched to be counted.
+
+    >>> ozone = lewis_structures(Frame((8, 8, 8), ((0, 1), (1, 2)), 0, 0)).structures()
+    >>> ozone.count, [sorted(o) for o in ozone.orders], ozone.charges
+    (2, [[1, 2], [1, 2]], (-0.5, 1.0, -0.5))
+    """
     steps = _steps(frame)
     bounds = _bounds(frame, steps)
     least = _least_cost(frame, steps, bounds)
@@ -193,70 +250,4 @@ def _best(frame: Frame) -> _Best | None:
         for before, _, after in layer:
             earlier[before] += ways[-1].get(after, 0)
         ways.append(earlier)
-    return _Best(steps, layers, ways[::-1])
-
-
-def lewis_structures(frame: Frame) -> Structures | None:
-    """The best Lewis structures of a graph, or None when there is none of this charge and spin.
-
-    In order: the fewest vacant orbitals, the smallest formal charges, the fewest expanded shells; what is equal so far
-    and has its charges on elements nearly as electronegative counts as equal.
-
-    Raises TooWide when the graph is too large and too branched to be counted.
-
-    >>> ozone = lewis_structures(Frame((8, 8, 8), ((0, 1), (1, 2)), 0, 0))
-    >>> ozone.count, [sorted(o) for o in ozone.orders], ozone.charges
-    (2, [[1, 2], [1, 2]], (-0.5, 1.0, -0.5))
-    """
-    best = _best(frame)
-    return None if best is None else _counted(frame, best)
-
-
-def _counted(frame: Frame, best: _Best) -> Structures:
-    orders: list[set[int]] = [set() for _ in frame.bonds]
-    for b in set(range(len(frame.bonds))) - set(frame.open_bonds):
-        orders[b] = {1}
-    charges = [0] * len(best.steps)
-    forward: dict[_Cell, int] = {(_START, 0): 1}
-    for step, layer, finish in zip(best.steps, best.layers, best.ways, strict=True):
-        reached: dict[_Cell, int] = defaultdict(int)
-        for before, (above, q, _, _), after in layer:
-            n = forward.get(before, 0) * finish.get(after, 0)
-            if not n:
-                continue
-            reached[after] += forward[before]
-            charges[step.atom] += q * n
-            for (b, _), e in zip(step.ahead, above, strict=True):
-                orders[b].add(1 + e)
-        forward = reached
-    count = sum(forward.values())
-    return Structures(count, tuple(frozenset(o) for o in orders), tuple(q / count for q in charges))
-
-
-def best_by_length(frame: Frame, stretches: Sequence[float]) -> Structures | None:
-    """That one of the best structures whose multiple bonds are on the shortest bonds (lengths over sums of radii)."""
-    found = _best(frame)
-    if found is None:
-        return None
-    best: dict[_Cell, tuple[float, _Path]] = {(_START, 0): (0.0, ())}
-    for step, layer, finish in zip(found.steps, found.layers, found.ways, strict=True):
-        reached: dict[_Cell, tuple[float, _Path]] = {}
-        for before, choice, after in layer:
-            if before not in best or not finish.get(after, 0):
-                continue
-            length, path = best[before]
-            total = length + sum(e * stretches[b] for (b, _), e in zip(step.ahead, choice[0], strict=True))
-            if after not in reached or total < reached[after][0]:
-                reached[after] = (total, (*path, choice))
-        best = reached
-    return _written(frame, found.steps, min(best.values())[1])
-
-
-def _written(frame: Frame, steps: list[_Step], path: _Path) -> Structures:
-    """One structure from what each step's atom does in it."""
-    orders, charges = [1] * len(frame.bonds), [0.0] * len(steps)
-    for step, (above, q, _, _) in zip(steps, path, strict=True):
-        charges[step.atom] = float(q)
-        for (b, _), e in zip(step.ahead, above, strict=True):
-            orders[b] += e
-    return Structures(1, tuple(frozenset({o}) for o in orders), tuple(charges))
+    return Solution(frame, steps, layers, ways[::-1])

@@ -42,9 +42,10 @@ class AtomState:
 class Setting:
     """What else the cost of an atom depends on.
 
-    no_surplus : the molecule carries no negative charge, so a carbanion in it that has a double bond or two
-        charges can only have come by a lone pair of its neighbour.  That is set behind a vacancy: CF₂, SiCl₂ and HCOH
-        are carbenes with single bonds, while CO and HNC keep their triple bonds.
+    no_surplus : the molecule carries no negative charge, so a negative atom of group 13 or 14 that has a double
+        bond or two charges can only have come by a lone pair of its neighbour.  That is set behind a vacancy: CF₂,
+        SiCl₂ and HCOH are carbenes with single bonds, while CO and HNC keep their triple bonds.  From germanium on,
+        with its inert pair, no triple bond is made so either: PbO has a double bond.
     bent : the atom has two neighbours, both in one ring of at most five atoms.  Two double bonds or a triple bond there
         are set behind a vacancy too: cyclopropenylidene is a carbene, not an allene.
     """
@@ -112,15 +113,18 @@ def states(z: int, degree: int, above: int = 0, setting: Setting = _PLAIN) -> tu
         for w in range(-_expansion(z, V), n + 1):
             q = V - 2 * n + B + u + 2 * w
             if n - B - u - w >= 0 and q in _CHARGES:
-                unusual = V == 4 and _unusual(q, above, setting)
-                found.append(AtomState(q, u, _cost(z, q, w) + (_COST_UNUSUAL if unusual else 0)))
+                unusual = _COST_UNUSUAL if _unusual(z, q, above, setting) else 0
+                found.append(AtomState(q, u, unusual + _cost(z, q, w)))
     return tuple(found)
 
 
-def _unusual(q: int, above: int, setting: Setting) -> bool:
-    """Whether an atom of group 14 is as :class:`Setting` says it should rather not be."""
-    donated_to = q < -1 or (q < 0 and above == 1)
-    return (setting.no_surplus and donated_to) or (setting.bent and above == 2)
+def _unusual(z: int, q: int, above: int, setting: Setting) -> bool:
+    """Whether an atom of group 13 or 14 is as :class:`Setting` says it should rather not be."""
+    V = valence_electrons(z)
+    if V not in (3, 4):
+        return False
+    donated_to = q < 0 and (above == 1 or (above > 1 and z > 18) or (V == 4 and q < -1))
+    return (setting.no_surplus and donated_to) or (V == 4 and setting.bent and above == 2)
 
 
 def _cost(z: int, q: int, w: int) -> int:
