@@ -111,6 +111,15 @@ class ThermoModel:
         return f"harmonic, scaled by {self.zpe_scale:g}{rotors}"
 
     @property
+    def lowest_level_kJ_mol(self) -> float:
+        """The level that is H(0), above the sum of electronic and zero-point energy, kJ/mol.
+
+        Not 0 only where levels of a doublet Π state are summed up: the electronic energy of a calculation without
+        spin-orbit coupling, and the rotation without its Λ, lie above (OH) or below (CH) the lowest real level.
+        """
+        return self.motion.lowest_cm1 * CM1_KJ_MOL
+
+    @property
     def composition(self) -> dict[str, int]:
         """Atoms by element symbol, Hill order; deuterium as ``D``."""
         return composition(self.molecule.atomic_numbers, self.masses_u)
