@@ -19,8 +19,9 @@ from heatwright.partition.diatomic import (
 )
 from heatwright.partition.electronic import ElectronicLevels
 from heatwright.partition.lowmodes import InterpolatedVibration, LowModes
+from heatwright.partition.potential import cosine_potential
 from heatwright.partition.rotation import ClassicalRotor, CorrectedRotor
-from heatwright.partition.torsion import cosine_potential, hindered_rotor
+from heatwright.partition.torsion import hindered_rotor
 from heatwright.partition.translation import Translation
 from heatwright.partition.vibration import HarmonicVibration, harmonic_sums_of_many
 
