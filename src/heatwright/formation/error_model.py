@@ -40,7 +40,7 @@ class ErrorScales:
     fitted: bool = False
 
 
-DEFAULT_SCALES: Final = ErrorScales(4.0, 10.0, 5.0)
+DEFAULT_SCALES: Final = ErrorScales(3.0, 14.0, 5.0)
 """What fits the errors of B3LYP/6-31G* for 47 small molecules and radicals (tests/benchmarks/formation.py), rounded."""
 _SPREAD: Final = 1.0
 """Standard deviation of the natural logarithm of each scale about its default before any reference is seen."""
