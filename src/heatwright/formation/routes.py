@@ -202,7 +202,7 @@ def _value(f: Formation) -> str:
 
 
 def _impassable(failed: list[tuple[str, Refused]]) -> list[Finding]:
-    return [note("route", f"route {route} could not be gone: {error.findings[0].text}") for route, error in failed]
+    return [note("route", f"route {route} could not be gone: {error.findings[0].found}") for route, error in failed]
 
 
 def _disagreements(made: tuple[Formation, ...]) -> list[Finding]:
