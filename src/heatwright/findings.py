@@ -135,7 +135,8 @@ CODES: Final[dict[str, str]] = {
     "route": "Which routes to the enthalpy of formation could be gone, and what each of them gives.",
     "routes-disagree": "Two routes to one enthalpy of formation differ by more than their joint uncertainty.",
     "energy-implausible": "An energy is off by more than a bond.",
-    "no-reference": "There is no reference enthalpy for an element.",
+    "no-reference": "There is no reference enthalpy for an element or species.",
+    "energy0-incomplete": "Stated 0 K energies do not cover a molecule and all its atoms at one level.",
     "reference-replaced": "A reference enthalpy of the user stands in the place of the built-in one.",
     "bonding-unclear": "The geometry does not say which bonds the molecule has, or no Lewis structure fits it.",
     # --- fitting and writing --------------------------------------------------------------------------------------

@@ -8,7 +8,9 @@ from typing import TYPE_CHECKING, Any
 import click
 
 from heatwright.cli.formation_options import (
+    energy_choices,
     given_enthalpies,
+    own_references,
     read_atoms,
     read_references,
     route_options,
@@ -34,6 +36,7 @@ if TYPE_CHECKING:
     from heatwright.entry import Entry, FitOptions
     from heatwright.findings import Finding
     from heatwright.formation.atomization import Atoms
+    from heatwright.formation.choices import EnergyChoices
     from heatwright.formation.formation import GivenEnthalpy
     from heatwright.formation.reference_set import ReferenceSet
     from heatwright.formation.routes import Route
@@ -50,8 +53,7 @@ class Request:
     atoms: Atoms | None
     references: ReferenceSet | None
     route: Route | None
-    trust_levels: bool
-    accept: tuple[str, ...]
+    choices: EnergyChoices
 
 
 @click.command(short_help="Outputs to thermo entries; residuals on standard error.")
@@ -215,13 +217,14 @@ class _Style:
 def _request(options: dict[str, Any], reporter: Reporter) -> Request:
     fit = fit_options(options["range_text"], options["common"])
     _check_range(fit)
-    accept = tuple(options["accept"])
+    own = own_references(options)
+    choices = energy_choices(options, own)
     reading, model = taken_reading(options), taken_model_options(options)
     atoms, references = None, None
     if options["route"] != "given":
         atoms = read_atoms(options, reporter)
-        references = read_references(options, atoms, model, reporter)
-    return Request(reading, model, fit, atoms, references, options["route"], options["trust_levels"], accept)
+        references = read_references(options, own, atoms, model, reporter)
+    return Request(reading, model, fit, atoms, references, options["route"], choices)
 
 
 def _check_range(fit: FitOptions) -> None:
@@ -239,7 +242,9 @@ def _make(job: _Job, request: Request) -> Entry:
     from heatwright.formation.routes import RouteRequest, formation_of
     from heatwright.writing.names import default_name
 
-    model = usable_species(job.files, request.reading, request.model, trust_levels=request.trust_levels, for_entry=True)
+    model = usable_species(
+        job.files, request.reading, request.model, trust_levels=request.choices.trust_levels, for_entry=True
+    )
     said: tuple[Finding, ...] = ()
     name = job.name
     if name is None:
@@ -251,8 +256,7 @@ def _make(job: _Job, request: Request) -> Entry:
         atoms=request.atoms,
         references=request.references,
         reaction=job.reaction,
-        trust_levels=request.trust_levels,
-        accept=request.accept,
+        choices=request.choices,
     )
     made = make_entry(name, model, formation_of(model, asked), request.fit)
     return replace(made, findings=(*made.findings, *said))
@@ -270,7 +274,7 @@ def _describe(path: str, made: Entry, units_name: str, reporter: Reporter) -> No
     if len(made.formation.ledger) > 1:
         for line in made.formation.ledger:
             reporter.detail(
-                f"  {line.value_kJ_mol * units.factor:14.3f} {units.enthalpy}  {line.what}"
+                f"  {round(line.value_kJ_mol * units.factor, 3) + 0.0:14.3f} {units.enthalpy}  {line.what}"
                 f"{f' ({line.source})' if line.source else ''}"
             )
     for shift in made.model.motion.shifts:

@@ -12,8 +12,10 @@ from heatwright.errors import UsageError
 
 if TYPE_CHECKING:
     from heatwright.formation.atomization import Atoms
+    from heatwright.formation.choices import EnergyChoices
     from heatwright.formation.formation import GivenEnthalpy
     from heatwright.formation.reference_set import ReferenceSet
+    from heatwright.formation.species_references import SpeciesReference
     from heatwright.molecule import Molecule
     from heatwright.partition.choices import ModelOptions
 
@@ -41,6 +43,26 @@ _REFERENCE_OPTIONS = (
         help="CSV of your own reference enthalpies; they come before the built-in ones (see `heatwright references`).",
     ),
     click.option("--trust-levels", is_flag=True, help="Combine energies of different levels or programs; recorded."),
+    click.option(
+        "--zero-kelvin",
+        type=click.Path(),
+        metavar="FILE",
+        help="CSV of final 0 K energies of a composite scheme (file, energy0_hartree, level, source).",
+    ),
+    click.option("--spin-orbit", is_flag=True, help="Take computed atoms down to their lowest spin-orbit levels."),
+    click.option(
+        "--corrections",
+        type=click.Path(),
+        metavar="FILE",
+        help="CSV of your corrections for atoms and bonds (kind, label, value, unit, source).",
+    ),
+    click.option(
+        "--electron",
+        type=click.Choice(["thermal", "stationary"]),
+        default="thermal",
+        show_default=True,
+        help="Convention for the electron of an ion at 298.15 K.",
+    ),
 )
 
 
@@ -142,25 +164,55 @@ def read_atoms(options: dict[str, Any], reporter: Reporter) -> Atoms | None:
     return collect_atoms(tuple(_molecules(folder, "--atoms", reporter)))
 
 
+def own_references(options: dict[str, Any]) -> tuple[SpeciesReference, ...]:
+    """The reference enthalpies of --reference-table."""
+    from heatwright.formation.species_references import read_references as read_table
+
+    return () if options["reference_table"] is None else read_table(options["reference_table"])
+
+
+def energy_choices(options: dict[str, Any], own: tuple[SpeciesReference, ...]) -> EnergyChoices:
+    """What the options decide about energies and reference values."""
+    from heatwright.formation.choices import EnergyChoices
+    from heatwright.formation.corrections import read_corrections
+    from heatwright.formation.references import atom_references
+    from heatwright.formation.species_references import own_atom_references
+    from heatwright.formation.zero_kelvin import read_zero_kelvin_energies
+
+    corrections, stated = options["corrections"], options["zero_kelvin"]
+    return EnergyChoices(
+        trust_levels=options["trust_levels"],
+        spin_orbit=options["spin_orbit"],
+        corrections=() if corrections is None else tuple(read_corrections(corrections)),
+        zero_kelvin=None if stated is None else read_zero_kelvin_energies(stated),
+        electron=options["electron"],
+        atom_values={**atom_references(), **own_atom_references(own)} if own else None,
+        accept=tuple(options["accept"]),
+    )
+
+
 def read_references(
-    options: dict[str, Any], atoms: Atoms | None, model: ModelOptions, reporter: Reporter
+    options: dict[str, Any],
+    own: tuple[SpeciesReference, ...],
+    atoms: Atoms | None,
+    model: ModelOptions,
+    reporter: Reporter,
 ) -> ReferenceSet | None:
     """The reference species of --references with the atoms of --atoms, else those that lie beside them; or None."""
     from heatwright.formation.atomization import collect_atoms
     from heatwright.formation.reference_set import collect_references
     from heatwright.formation.species_references import merged_references
-    from heatwright.formation.species_references import read_references as read_table
 
     folder = options["references_folder"]
     if folder is None:
-        if options["reference_table"] is not None:
-            raise UsageError("--reference-table goes with --references")
         return None
-    own = () if options["reference_table"] is None else read_table(options["reference_table"])
     table, said = merged_references(own)
     usable = usable_outputs(folder, "--references", reporter)
     reporter.findings(options["reference_table"] or "", said)
-    return collect_references(usable, atoms or collect_atoms(tuple(usable)), table, model)
+    references = collect_references(usable, collect_atoms(tuple(usable)) if atoms is None else atoms, table, model)
+    for finding in references.findings:
+        reporter.detail(str(finding))
+    return references
 
 
 def usable_outputs(folder: str, option: str, reporter: Reporter) -> list[Molecule]:

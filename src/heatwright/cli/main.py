@@ -14,6 +14,7 @@ from heatwright.cli.crosscheck import crosscheck
 from heatwright.cli.entry import entry
 from heatwright.cli.explain import explain
 from heatwright.cli.reactions import reactions
+from heatwright.cli.references import references
 from heatwright.cli.rotors import rotors
 from heatwright.cli.samples import samples
 from heatwright.cli.scales import scales
@@ -61,7 +62,7 @@ def cli() -> None:
     """
 
 
-for _command in (survey, table, entry, rotors, scales, reactions, crosscheck, explain, samples):
+for _command in (survey, table, entry, rotors, scales, references, reactions, crosscheck, explain, samples):
     cli.add_command(_command)
 
 

@@ -6,7 +6,13 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
-from heatwright.cli.formation_options import read_atoms, read_references, reference_options
+from heatwright.cli.formation_options import (
+    energy_choices,
+    own_references,
+    read_atoms,
+    read_references,
+    reference_options,
+)
 from heatwright.cli.options import reading_of_target, target_options, units_option, usable_molecule, words_options
 from heatwright.cli.reporter import Reporter
 from heatwright.errors import UsageError
@@ -63,29 +69,30 @@ def _proposals(output: str, options: dict[str, Any], reporter: Reporter) -> str:
     from heatwright.partition.model import build_model
     from heatwright.structure.bond_orders import bonding
 
-    accept = tuple(options["accept"])
+    own = own_references(options)
+    energies = energy_choices(options, own)
     reading, choices = reading_of_target(options)
     model = build_model(usable_molecule(output, reading), choices)
-    references = read_references(options, read_atoms(options, reporter), choices, reporter)
+    references = read_references(options, own, read_atoms(options, reporter), choices, reporter)
     assert references is not None  # --references is there
-    usable = usable_references(model, references, trust_levels=options["trust_levels"], accept=accept)
+    usable = usable_references(model, references, energies)
     mine, name = bonding(model.molecule), species_name(model.molecule)
     if options["written"] is not None:
         found: tuple[Reaction, ...] = (
-            written_reaction(model, mine, usable, options["written"], name=name, accept=accept),
+            written_reaction(model, mine, usable, options["written"], name=name, accept=energies.accept),
         )
     else:
         found = find_reactions(model, mine, usable.references, usable.scales, name=name, count=options["count"])
     if not found:
         raise Refused([no_reaction(usable)])
     reporter.findings(output, usable.findings)
-    rows = [(reaction, formation_of_reaction(model, reaction, usable)) for reaction in found]
+    rows = [(reaction, formation_of_reaction(model, reaction, usable, energies)) for reaction in found]
     if options["as_json"]:
         return _as_json(name, model, usable, rows)
     for reaction, formation in rows:
         reporter.detail(reaction.text)
         for line in formation.ledger:
-            reporter.detail(f"  {line.value_kJ_mol:14.3f} kJ/mol  {line.what} ({line.source})")
+            reporter.detail(f"  {round(line.value_kJ_mol, 3) + 0.0:14.3f} kJ/mol  {line.what} ({line.source})")
     return _as_text(name, mine, usable, rows, options["units"])
 
 

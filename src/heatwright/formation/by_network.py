@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Collection, Sequence
+from collections.abc import Sequence
 from typing import Final
 
 from heatwright.findings import Finding, Refused, note, refuse, warn
-from heatwright.formation.atomization import formation_by_atomization
-from heatwright.formation.error_model import FEWEST_REFERENCES, features
-from heatwright.formation.formation import Formation, LedgerLine
+from heatwright.formation.choices import PLAIN, EnergyChoices, atomized
+from heatwright.formation.error_model import DEFAULT_SCALES, FEWEST_REFERENCES, features
+from heatwright.formation.formation import Formation, LedgerLine, with_electron
 from heatwright.formation.network import corrections
 from heatwright.formation.phrases import COVERAGE, level_label, sources
 from heatwright.formation.reference_set import Reference, ReferenceSet
@@ -21,15 +21,16 @@ _SHOWN: Final = 0.005
 """References that move the result by less than this, kJ/mol, stand in the ledger as one line."""
 
 
-def formation_by_network(
-    model: ThermoModel, references: ReferenceSet, *, trust_levels: bool = False, accept: Collection[str] = ()
-) -> Formation:
+def formation_by_network(model: ThermoModel, references: ReferenceSet, choices: EnergyChoices = PLAIN) -> Formation:
     """ΔfH° by atomization, less the error of the level that all references together let expect (see network).
 
+    An atom comes out as atomization gives it, which for an atom has no error to learn.
     Raises Refused when atoms are missing or fewer than FEWEST_REFERENCES references are left.
     """
-    usable = usable_references(model, references, trust_levels=trust_levels, accept=accept)
-    plain = formation_by_atomization(model, references.atoms, trust_levels=trust_levels)
+    plain = atomized(model, references.atoms, choices)
+    if model.molecule.is_atom:
+        return plain
+    usable = usable_references(model, references, choices)
     errors = usable.errors
     if errors is None or len(errors.references) < FEWEST_REFERENCES:
         raise Refused([_too_few(usable)])
@@ -45,7 +46,8 @@ def formation_by_network(
         dHf0_kJ_mol=plain.dHf0_kJ_mol - shift,
         u95_kJ_mol=COVERAGE * float(made.sd_kJ_mol[0]),
         method="network",
-        source=f"{len(errors.references)} reference species at {level_label(model)} ({sources(errors.references)})",
+        source=f"{len(errors.references)} reference species at {level_label(model)} ({sources(errors.references)})"
+        f"{with_electron('', model.molecule.charge or 0, choices.electron)}",
         ledger=(*plain.ledger, *_network_lines(errors.references, made.weights[0], shares)),
         findings=(
             *(f for f in plain.findings if f.code != "no-uncertainty"),
@@ -92,6 +94,23 @@ def _network_lines(references: Sequence[Reference], weights: FloatArray, shares:
 
 
 def _coverage(mine: Bonding, references: Sequence[Reference]) -> tuple[Finding, ...]:
+    return (*_bonds_without_reference(mine, references), *_charge_without_reference(mine, references))
+
+
+def _charge_without_reference(mine: Bonding, references: Sequence[Reference]) -> tuple[Finding, ...]:
+    if not mine.charge or any(r.bonding.charge * mine.charge > 0 for r in references):
+        return ()
+    return (
+        warn(
+            "network-coverage",
+            f"no reference carries a charge like {mine.charge:+d}; what the level does wrong for it is a guess of "
+            f"{DEFAULT_SCALES.charge_kJ_mol:g} kJ/mol a charge",
+            action="Add ions to the reference table and to the references, or give a value.",
+        ),
+    )
+
+
+def _bonds_without_reference(mine: Bonding, references: Sequence[Reference]) -> tuple[Finding, ...]:
     seen = {label for r in references for label in r.bonding.types}
     missing = [label for label in mine.types if label not in seen]
     if not missing:

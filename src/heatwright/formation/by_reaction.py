@@ -2,18 +2,27 @@
 
 from __future__ import annotations
 
-from collections.abc import Collection
+from collections.abc import Callable, Collection, Iterator
+from math import fsum
 
 from heatwright.constants import HARTREE_KJ_MOL
 from heatwright.findings import Finding, Refused, note, refuse, warn
 from heatwright.formation.balance import account, surplus
+from heatwright.formation.choices import PLAIN, EnergyChoices
 from heatwright.formation.equations import resolved
 from heatwright.formation.error_model import ErrorScales
-from heatwright.formation.formation import Formation, LedgerLine, dHf298_from_dHf0, element_increment_kJ_mol
-from heatwright.formation.phrases import COVERAGE, element_lines, level_label, sources
+from heatwright.formation.formation import (
+    Formation,
+    LedgerLine,
+    electron_lines,
+    element_increment_kJ_mol,
+    with_electron,
+)
+from heatwright.formation.phrases import COVERAGE, LOWEST_LEVEL, element_lines, level_label, sources
 from heatwright.formation.reactions import Reaction, balanced_kind, find_reactions, reaction_sd_kJ_mol
-from heatwright.formation.reference_set import ReferenceSet, species_name
+from heatwright.formation.reference_set import Reference, ReferenceSet, species_name
 from heatwright.formation.usable import UsableReferences, usable_references
+from heatwright.formation.zero_kelvin import ZeroKelvinEnergies, ZeroKelvinEnergy
 from heatwright.partition.model import ThermoModel
 from heatwright.structure.bond_orders import Bonding, bonding
 
@@ -22,16 +31,15 @@ def formation_by_reaction(
     model: ThermoModel,
     references: ReferenceSet,
     text: str | None = None,
+    choices: EnergyChoices = PLAIN,
     *,
     name: str = "",
-    trust_levels: bool = False,
-    accept: Collection[str] = (),
 ) -> Formation:
     """ΔfH° by a balanced reaction with reference species: the one in *text*, else the best that is found.
 
     Raises Refused when the reaction is not balanced (naming by what and how much), or when none is found.
     """
-    usable = usable_references(model, references, trust_levels=trust_levels, accept=accept)
+    usable = usable_references(model, references, choices)
     mine = bonding(model.molecule)
     called = name or species_name(model.molecule)
     if text is None:
@@ -40,11 +48,12 @@ def formation_by_reaction(
             raise Refused([no_reaction(usable)])
         reaction = found[0]
     else:
-        reaction = written_reaction(model, mine, usable, text, name=called, accept=accept)
-    return formation_of_reaction(model, reaction, usable)
+        reaction = written_reaction(model, mine, usable, text, name=called, accept=choices.accept)
+    return formation_of_reaction(model, reaction, usable, choices)
 
 
 def no_reaction(usable: UsableReferences) -> Finding:
+    """That no balanced reaction was found among the references."""
     return refuse(
         "no-reaction",
         f"no reaction with the {len(usable.references)} references balances elements, bond types and unpaired "
@@ -86,39 +95,100 @@ def _unbalanced(text: str, left: dict[str, int]) -> Finding:
     )
 
 
-def formation_of_reaction(model: ThermoModel, reaction: Reaction, usable: UsableReferences) -> Formation:
-    t = reaction.target_coefficient
-    energy = model.molecule.energy_hartree
-    if energy is None:
-        raise Refused([refuse("no-energy", "the output has no total energy to set against the references")])
-    evaluated = [
-        LedgerLine(_times(n, t, f"enthalpy of formation of {r.row.name} at 0 K"), n / t * r.dHf0_kJ_mol, r.row.source)
-        for n, r in reaction.terms
-    ]
-    electronic = energy * HARTREE_KJ_MOL - sum(n * r.electronic_kJ_mol for n, r in reaction.terms) / t
-    zpe = model.zpe_kJ_mol - sum(n * r.model.zpe_kJ_mol for n, r in reaction.terms) / t
-    dHf0 = sum(line.value_kJ_mol for line in evaluated) + electronic + zpe
-    increment = element_increment_kJ_mol(model.composition)
-    if increment is None:
+def formation_of_reaction(
+    model: ThermoModel, reaction: Reaction, usable: UsableReferences, choices: EnergyChoices = PLAIN
+) -> Formation:
+    """ΔfH° of the model by one reaction with its references; raises Refused without an energy or an increment.
+
+    ΔfH°(0) = [Σ ν ΔfH°(reference, 0) − Σ ν E₀(reference)]/t + E₀ for t × species + reactants -> products.
+    """
+    t, charge = reaction.target_coefficient, model.molecule.charge or 0
+    if element_increment_kJ_mol(model.composition) is None:
         raise Refused([refuse("no-reference", "an element of the species has no reference increment to 298.15 K")])
-    each = "" if t == 1 else f", for each of {t}"
+    at_0 = (
+        *(
+            LedgerLine(
+                _times(n, t, f"enthalpy of formation of {r.row.name} at 0 K"), n / t * r.dHf0_kJ_mol, r.row.source
+            )
+            for n, r in reaction.terms
+        ),
+        *_energy_lines(model, reaction, choices),
+    )
     ledger = (
-        *evaluated,
-        LedgerLine(f"electronic energy, less that of the references{each}", electronic, level_label(model)),
-        LedgerLine(f"zero-point energy, less that of the references{each}", zpe, model.zpe_text),
+        *at_0,
         LedgerLine("H(298.15 K) - H(0) of the species", model.h298_minus_h0_kJ_mol, "partition function"),
         *element_lines(model),
+        *electron_lines(charge, choices.electron),
+    )
+    stated = _stated(model, reaction, choices.zero_kelvin)
+    source = (
+        f"{reaction.text} ({reaction.kind}) at {stated[0].level if stated else level_label(model)}; "
+        f"references {sources([r for _, r in reaction.terms])}"
     )
     return Formation(
-        dHf298_kJ_mol=dHf298_from_dHf0(dHf0, model.h298_minus_h0_kJ_mol, increment),
-        dHf0_kJ_mol=dHf0,
+        dHf298_kJ_mol=fsum(line.value_kJ_mol for line in ledger),
+        dHf0_kJ_mol=fsum(line.value_kJ_mol for line in at_0),
         u95_kJ_mol=COVERAGE * reaction.sd_kJ_mol,
         method="reaction",
-        source=f"{reaction.text} ({reaction.kind}) at {level_label(model)}; "
-        f"references {sources([r for _, r in reaction.terms])}",
+        source=with_electron(source, charge, choices.electron),
         ledger=ledger,
         findings=(*usable.findings, *_reaction_notes(reaction, usable.scales)),
     )
+
+
+def _energy_lines(model: ThermoModel, reaction: Reaction, choices: EnergyChoices) -> Iterator[LedgerLine]:
+    """The energy of the species at 0 K, less that of the references, in its parts or as it was stated."""
+    t = reaction.target_coefficient
+    less = "less that of the references" if t == 1 else f"less that of the references, for each of {t}"
+
+    def apart(own: float, value: Callable[[Reference], float]) -> float:
+        return own - sum(n * value(r) for n, r in reaction.terms) / t
+
+    stated = _stated(model, reaction, choices.zero_kelvin)
+    if stated is not None:
+        energies = {r: e for (_, r), e in zip(reaction.terms, stated[1:], strict=True)}
+        value = apart(stated[0].energy0_hartree, lambda r: energies[r].energy0_hartree) * HARTREE_KJ_MOL
+        words = "; ".join(dict.fromkeys(f"{e.level}, {e.source}" for e in stated))
+        yield LedgerLine(f"energy at 0 K as stated, {less}", value, words)
+    else:
+        if model.molecule.energy_hartree is None:
+            raise Refused([refuse("no-energy", "the output has no total energy to set against the references")])
+        electronic = apart(model.molecule.energy_hartree * HARTREE_KJ_MOL, lambda r: r.electronic_kJ_mol)
+        kind = f" ({model.molecule.energy_kind})" if model.molecule.energy_kind else ""
+        yield LedgerLine(f"electronic energy{kind}, {less}", electronic, level_label(model))
+        zpe = apart(model.zpe_kJ_mol, lambda r: r.model.zpe_kJ_mol)
+        yield LedgerLine(f"zero-point energy, {less}", zpe, model.zpe_text)
+    lowest = apart(model.lowest_level_kJ_mol, lambda r: r.model.lowest_level_kJ_mol)
+    if lowest:
+        yield LedgerLine(f"lowest real level, {less}", lowest, LOWEST_LEVEL)
+
+
+def _stated(
+    model: ThermoModel, reaction: Reaction, table: ZeroKelvinEnergies | None
+) -> tuple[ZeroKelvinEnergy, ...] | None:
+    """The 0 K energies stated for the species and the references, None where none is; raises Refused for some only."""
+    if table is None:
+        return None
+    molecules = [model.molecule, *(r.molecule for _, r in reaction.terms)]
+    found = {m.source.file: table.of(m) for m in molecules}
+    missing = [file for file, energy in found.items() if energy is None]
+    energies = [energy for energy in map(table.of, molecules) if energy is not None]
+    if not energies:
+        return None
+    if missing or len({energy.level for energy in energies}) > 1:
+        levels = ", ".join(sorted({energy.level for energy in energies}))
+        words = f"none for {', '.join(missing)}" if missing else f"at the levels {levels}"
+        raise Refused(
+            [
+                refuse(
+                    "energy0-incomplete",
+                    f"{table.path} states 0 K energies for some of the species in {reaction.text}, {words}",
+                    expected="a row of one level for each of them",
+                    action="Add the rows, or leave the table out for this species.",
+                )
+            ]
+        )
+    return tuple(energies)
 
 
 def _times(n: int, t: int, what: str) -> str:

@@ -12,13 +12,16 @@ from heatwright.partition.model import ThermoModel
 
 COVERAGE: Final = 2.0
 """Standard deviations in a 95 % uncertainty."""
+LOWEST_LEVEL: Final = "levels of the doublet Pi state (Hill and Van Vleck 1928)"
 
 
 def sources(references: Sequence[Reference]) -> str:
+    """The publications of the references' enthalpies, each once."""
     return "; ".join(sorted({r.row.source for r in references}))
 
 
 def level_label(model: ThermoModel) -> str:
+    """The level of theory of the model's energy, as chemists write it."""
     level = model.molecule.level_of_energy
     return level.label if level else "level of theory not printed"
 

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass, field, replace
 from pathlib import PurePath
 from typing import TypeVar
@@ -60,8 +60,8 @@ class Reference:
 
     @property
     def energy0_kJ_mol(self) -> float:
-        """Electronic and zero-point energy, kJ/mol."""
-        return self.electronic_kJ_mol + self.model.zpe_kJ_mol
+        """Energy of the lowest level: electronic and zero-point energy, and the offset of a doublet Π state, kJ/mol."""
+        return self.electronic_kJ_mol + self.model.zpe_kJ_mol + self.model.lowest_level_kJ_mol
 
     @property
     def aliases(self) -> frozenset[str]:
@@ -96,12 +96,13 @@ def species_name(molecule: Molecule) -> str:
 
 
 def reference_options(options: ModelOptions) -> ModelOptions:
-    """The choices for a target that hold for its references as well: how zero-point energies are scaled."""
+    """The choices for a target that hold for its references too: those that make the lowest level."""
     return ModelOptions(
         scale=options.scale,
         frequency_scale=options.frequency_scale,
         zpe_scale=options.zpe_scale,
         anharmonic=options.anharmonic,
+        electronic="levels" if options.electronic == "levels" else "table",
         pressure_Pa=options.pressure_Pa,
     )
 
@@ -132,7 +133,26 @@ def collect_references(
     wrong = [f for f in said if f.severity == "refuse"]
     if wrong:
         raise Refused(wrong)
-    return ReferenceSet(tuple(sorted(found, key=lambda r: (r.name, r.file))), atoms, tuple(said))
+    ordered = tuple(sorted(found, key=lambda r: (r.name, r.file)))
+    return ReferenceSet(ordered, atoms, (*said, *_conformers(ordered)))
+
+
+def _conformers(references: Sequence[Reference]) -> Iterator[Finding]:
+    """That a species is there more than once at one level; the lowest is the one its evaluated enthalpy belongs to."""
+    groups: dict[object, list[Reference]] = {}
+    for r in references:
+        groups.setdefault((r.species, r.molecule.level_text, r.molecule.energy_kind), []).append(r)
+    for group in groups.values():
+        lowest = min(group, key=lambda r: (r.energy0_kJ_mol, r.file))
+        for other in group:
+            if other is not lowest:
+                above = other.energy0_kJ_mol - lowest.energy0_kJ_mol
+                yield note(
+                    "conformer-passed-over",
+                    f"{above:.2f} kJ/mol above {lowest.file}, which is the same species ({lowest.row.name}); the lower "
+                    "one is the reference",
+                    where=other.file,
+                )
 
 
 def _reference(model: ThermoModel, row: SpeciesReference) -> Reference:

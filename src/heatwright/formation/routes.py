@@ -8,13 +8,15 @@ from math import hypot, inf
 from typing import Final, Literal, get_args
 
 from heatwright.findings import Finding, Refused, note, refusals, refuse, warn
-from heatwright.formation.atomization import Atoms, formation_by_atomization
+from heatwright.formation.atomization import Atoms
 from heatwright.formation.by_network import formation_by_network
 from heatwright.formation.by_reaction import formation_by_reaction
+from heatwright.formation.choices import PLAIN, EnergyChoices, atomized
 from heatwright.formation.error_model import features, own_variance, shared_covariance
-from heatwright.formation.formation import Formation, GivenEnthalpy, formation_given
+from heatwright.formation.formation import Electron, Formation, GivenEnthalpy, formation_given
 from heatwright.formation.phrases import COVERAGE
 from heatwright.formation.reference_set import ReferenceSet
+from heatwright.formation.references import atom_reference
 from heatwright.formation.usable import usable_references
 from heatwright.partition.model import ThermoModel
 from heatwright.structure.bond_orders import bonding
@@ -31,8 +33,8 @@ class RouteRequest:
     name : what the entry is called, by which a reaction may name it.
     given : the enthalpy the user states, with its source.   atoms : atom outputs.
     references : reference species (with atoms).   reaction : the user's reaction; one is looked for when None.
-    trust_levels : combine energies although levels or programs differ.
-    accept : ``energy`` (off by more than a bond) and ``bonds`` (a reaction without bond balance) are warnings then.
+    choices : about energies and reference values, for every route the same.
+    given_electron : the electron convention of an ion's given enthalpy, that of the choices unless said.
     """
 
     route: Route | None = None
@@ -41,8 +43,8 @@ class RouteRequest:
     atoms: Atoms | None = None
     references: ReferenceSet | None = None
     reaction: str | None = None
-    trust_levels: bool = False
-    accept: tuple[str, ...] = ()
+    choices: EnergyChoices = PLAIN
+    given_electron: Electron | None = None
 
     @property
     def chosen(self) -> Route | None:
@@ -82,14 +84,27 @@ def _given(model: ThermoModel, request: RouteRequest) -> Formation:
     if request.given is None:
         raise Refused([refuse("no-formation", "no enthalpy of formation is given", expected='--dHf298 "VALUE kJ/mol"')])
     enthalpy, source = request.given
-    return formation_given(enthalpy, source, model.composition, model.h298_minus_h0_kJ_mol)
+    return formation_given(
+        enthalpy,
+        source,
+        model.composition,
+        model.h298_minus_h0_kJ_mol,
+        charge=model.molecule.charge or 0,
+        electron=request.choices.electron,
+        stated_electron=request.given_electron,
+    )
 
 
 def _atomization(model: ThermoModel, request: RouteRequest) -> Formation:
-    atoms = request.atoms or (request.references.atoms if request.references else None)
+    atoms = request.atoms
+    if atoms is None and request.references is not None:
+        atoms = request.references.atoms
     if atoms is None:
         raise Refused([_no_way(model)])
-    made = formation_by_atomization(model, atoms, trust_levels=request.trust_levels)
+    made = atomized(model, atoms, request.choices)
+    if model.molecule.is_atom:
+        reference = atom_reference(next(iter(model.composition)))
+        return replace(made, u95_kJ_mol=reference.u95_kJ_mol if reference else None)
     return made if request.references is None else _with_expected_error(made, model, request, request.references)
 
 
@@ -98,7 +113,7 @@ def _with_expected_error(
 ) -> Formation:
     """Atomization with the uncertainty that the references at its level let expect, where there are enough of them."""
     try:
-        usable = usable_references(model, references, trust_levels=request.trust_levels, accept=request.accept)
+        usable = usable_references(model, references, request.choices)
         mine = features([bonding(model.molecule)])
     except Refused:
         return made
@@ -110,18 +125,12 @@ def _with_expected_error(
 
 
 def _reaction(model: ThermoModel, request: RouteRequest) -> Formation:
-    return formation_by_reaction(
-        model,
-        _references(request),
-        request.reaction,
-        name=request.name,
-        trust_levels=request.trust_levels,
-        accept=request.accept,
-    )
+    references = _references(request)
+    return formation_by_reaction(model, references, request.reaction, request.choices, name=request.name)
 
 
 def _network(model: ThermoModel, request: RouteRequest) -> Formation:
-    return formation_by_network(model, _references(request), trust_levels=request.trust_levels, accept=request.accept)
+    return formation_by_network(model, _references(request), request.choices)
 
 
 def _references(request: RouteRequest) -> ReferenceSet:
@@ -157,11 +166,9 @@ def _best(model: ThermoModel, request: RouteRequest) -> Formation:
     """The route of smallest stated uncertainty, with the others beside it; raises Refused when none can be gone."""
     made: list[Formation] = []
     failed: list[tuple[str, Refused]] = []
-    for route, go in _BY_ROUTE.items():
-        if route == "given" and request.given is None:
-            continue
+    for route in _routes_for(model, request):
         try:
-            made.append(go(model, request))
+            made.append(_BY_ROUTE[route](model, request))
         except Refused as error:
             if any(f.code not in _PASSABLE for f in refusals(error.findings)):
                 raise  # something is wrong with what was handed in, and another route would only hide it
@@ -174,6 +181,12 @@ def _best(model: ThermoModel, request: RouteRequest) -> Formation:
     return replace(best, alternatives=others, findings=(*best.findings, *said))
 
 
+def _routes_for(model: ThermoModel, request: RouteRequest) -> tuple[str, ...]:
+    """The routes worth trying; an atom by atomization is the reference value itself."""
+    given = ("given",) if request.given is not None else ()
+    return (*given, "atomization") if model.molecule.is_atom else (*given, "atomization", "reaction", "network")
+
+
 def _side_by_side(best: Formation, others: tuple[Formation, ...]) -> Finding:
     words = ", ".join(f"{f.method} {_value(f)}" for f in others) or "no other route could be gone"
     return note(
@@ -182,12 +195,14 @@ def _side_by_side(best: Formation, others: tuple[Formation, ...]) -> Finding:
 
 
 def _value(f: Formation) -> str:
-    spread = "without an uncertainty" if f.u95_kJ_mol is None else f"+/- {f.u95_kJ_mol:.2g}"
+    spread = (
+        "without an uncertainty" if f.u95_kJ_mol is None else f"+/- {f.u95_kJ_mol:.{0 if f.u95_kJ_mol >= 10 else 1}f}"
+    )
     return f"{f.dHf298_kJ_mol:.1f} {spread} kJ/mol"
 
 
 def _impassable(failed: list[tuple[str, Refused]]) -> list[Finding]:
-    return [note("route", f"route {route} could not be gone: {error.findings[0].text}") for route, error in failed]
+    return [note("route", f"route {route} could not be gone: {error.findings[0].found}") for route, error in failed]
 
 
 def _disagreements(made: tuple[Formation, ...]) -> list[Finding]:

@@ -8,12 +8,14 @@ from dataclasses import dataclass
 from functools import cache
 
 from heatwright.constants import GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
-from heatwright.elements import atomic_number, formula, parse_formula
+from heatwright.elements import atomic_number, formula, ground_multiplicity, parse_formula
 from heatwright.findings import Finding, Refused, note
 from heatwright.formation.formation import element_increment_kJ_mol
+from heatwright.formation.references import AtomReference, atom_references
 from heatwright.molecule import Molecule
 from heatwright.reading.tables import Row, read_table
 from heatwright.resources import data_rows
+from heatwright.structure.cis_trans import has_sides, stated_sides
 from heatwright.structure.identity import Identity, identity_of, identity_of_smiles
 
 
@@ -23,6 +25,7 @@ class SpeciesReference:
 
     name : as in a reaction, ``CH3OH``.   words : its name in words.   formula : Hill formula.
     dHf0_kJ_mol, dHf298_kJ_mol : at 0 K and 298.15 K; one of the two may be None.   own : whether it is the user's.
+    element_H298_H0_kJ_mol : of an atom only, H°(298.15) − H°(0) of its element in the reference state, where stated.
     """
 
     name: str
@@ -37,6 +40,7 @@ class SpeciesReference:
     cas: str = ""
     own: bool = False
     words: str = ""
+    element_H298_H0_kJ_mol: float | None = None
 
     @property
     def identity(self) -> Identity:
@@ -75,27 +79,32 @@ def reference_species() -> tuple[SpeciesReference, ...]:
 
 
 REQUIRED = ("name", "formula", "smiles", "multiplicity", "u95_kJ_mol", "source")
-OPTIONAL = ("charge", "dHf0_kJ_mol", "dHf298_kJ_mol", "cas", "words")
+OPTIONAL = ("charge", "dHf0_kJ_mol", "dHf298_kJ_mol", "cas", "words", "element_H298_H0_kJ_mol")
 """The columns of a user's table of references."""
 
 
 def read_references(path: str | os.PathLike[str]) -> tuple[SpeciesReference, ...]:
     """The reference species of a user's CSV file with the columns :data:`REQUIRED` and any of :data:`OPTIONAL`.
 
-    The enthalpy is given at 0 K, at 298.15 K, or both; for an ion the one at 0 K is needed, as that at 298.15 K
-    depends on the convention for the electron.
+    The enthalpy is given at 0 K, at 298.15 K, or both.  Of an ion the one at 0 K is needed, as that at 298.15 K depends
+    on the convention for the electron, and of an atom too, which may bring the increment of its element as well.
 
     Raises Refused (``table-wrong``, ``smiles-wrong``) with FILE:LINE.
     """
-    found: dict[tuple[Identity, int], tuple[SpeciesReference, Row]] = {}
+    found: dict[object, tuple[SpeciesReference, Row]] = {}
     for row in read_table(path, "table-wrong", REQUIRED, OPTIONAL):
         reference = _reference_of(row)
-        key = (reference.identity, reference.multiplicity)
+        key = _key(reference)
         if key in found:
             other = found[key][1].place.rpartition(":")[2]
             row.wrong(f"{reference.name} is the same species as that on line {other}", "each species once")
         found[key] = (reference, row)
     return tuple(reference for reference, _ in found.values())
+
+
+def _key(reference: SpeciesReference) -> object:
+    """Equal for two references of one species."""
+    return reference.identity, reference.multiplicity, stated_sides(reference.smiles)
 
 
 def _reference_of(row: Row) -> SpeciesReference:
@@ -124,7 +133,17 @@ def _reference_of(row: Row) -> SpeciesReference:
         cas=row.values.get("cas", ""),
         own=True,
         words=row.values.get("words", ""),
+        element_H298_H0_kJ_mol=_increment(row, identity),
     )
+
+
+def _increment(row: Row, identity: Identity) -> float | None:
+    value = row.number("element_H298_H0_kJ_mol")
+    if value is not None and len(identity.graph) > 1:
+        row.wrong("element_H298_H0_kJ_mol is given for a molecule", "it for atoms only")
+    if value is not None and value <= 0.0:
+        row.wrong(f"element_H298_H0_kJ_mol is {value:g}", "a positive number")
+    return value
 
 
 def _protons(symbol: str) -> int:
@@ -156,6 +175,8 @@ def _check_enthalpies(row: Row, dHf0: float | None, dHf298: float | None, identi
     if identity.charge and dHf0 is None:
         action = "At 298.15 K the value depends on the convention for the electron, at 0 K it does not."
         row.wrong("the species is an ion without dHf0_kJ_mol", "its enthalpy of formation at 0 K", action)
+    if len(identity.graph) == 1 and dHf0 is None:
+        row.wrong("the species is an atom without dHf0_kJ_mol", "its enthalpy of formation at 0 K")
     increment = element_increment_kJ_mol(dict(identity.composition))
     if dHf0 is None or dHf298 is None or increment is None or identity.charge:
         return
@@ -172,10 +193,10 @@ def _check_enthalpies(row: Row, dHf0: float | None, dHf298: float | None, identi
 def merged_references(own: Iterable[SpeciesReference]) -> tuple[tuple[SpeciesReference, ...], tuple[Finding, ...]]:
     """The user's references and those built-in ones that he does not give himself; each replacement is a note."""
     mine = tuple(own)
-    keys = {(reference.identity, reference.multiplicity): reference for reference in mine}
+    keys = {_key(reference): reference for reference in mine}
     kept, said = [], []
     for built_in in reference_species():
-        other = keys.get((built_in.identity, built_in.multiplicity))
+        other = keys.get(_key(built_in))
         if other is None:
             kept.append(built_in)
         else:
@@ -197,14 +218,44 @@ def _value(reference: SpeciesReference) -> str:
     return f"{reference.dHf298_kJ_mol:.3f} kJ/mol at 298.15 K"
 
 
+def own_atom_references(own: Iterable[SpeciesReference]) -> dict[str, AtomReference]:
+    """The values of the atoms for atomization: the built-in ones, with the user's atoms in their places.
+
+    An element without built-in increment counts when its atom brings one.
+    """
+    merged = atom_references()
+    for reference in own:
+        if len(reference.identity.graph) > 1 or reference.charge or reference.dHf0_kJ_mol is None:
+            continue
+        symbol = next(iter(reference.composition))
+        before = merged.get(symbol)
+        stated = reference.element_H298_H0_kJ_mol
+        increment = stated if stated is not None else before.element_H298_H0_kJ_mol if before else None
+        if reference.multiplicity != ground_multiplicity(_protons(symbol)) or increment is None or symbol == "D":
+            continue
+        merged[symbol] = AtomReference(
+            symbol=symbol,
+            reference_state=before.reference_state if before else "its reference state",
+            dHf0_kJ_mol=reference.dHf0_kJ_mol,
+            u95_kJ_mol=reference.u95_kJ_mol,
+            source=reference.source,
+            element_H298_H0_kJ_mol=increment,
+            increment_source=before.increment_source if before and stated is None else reference.source,
+        )
+    return merged
+
+
 def reference_for(molecule: Molecule, references: Iterable[SpeciesReference]) -> SpeciesReference | None:
     """The reference species that a molecule is, or None.
 
     The same are composition, charge, multiplicity and the graph of bonds, so that isomers are told apart and
-    conformers and mirror images are not; another isotope is another species.  The first that fits is taken.
+    conformers and mirror images are not; another isotope is another species.  Where the SMILES states the sides of a
+    double bond, they have to be those of the geometry.  The first that fits is taken, those with stated sides before
+    those without.
     """
     identity = identity_of(molecule)
     if identity is None:
         return None
-    fits = (r for r in references if r.multiplicity == molecule.multiplicity and r.identity == identity)
-    return next(fits, None)
+    fits = [r for r in references if r.multiplicity == molecule.multiplicity and r.identity == identity]
+    fits = [r for r in fits if has_sides(molecule, stated_sides(r.smiles))]
+    return next(iter(sorted(fits, key=lambda r: not stated_sides(r.smiles))), None)

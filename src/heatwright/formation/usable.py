@@ -3,14 +3,15 @@
 from __future__ import annotations
 
 from collections.abc import Collection, Iterable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cached_property
 from typing import Final
 
 import numpy as np
 
 from heatwright.findings import Finding, Refused, note, refusals, refuse, warn
-from heatwright.formation.atomization import Atoms, formation_by_atomization
+from heatwright.formation.atomization import Atoms
+from heatwright.formation.choices import PLAIN, EnergyChoices, atomized
 from heatwright.formation.error_model import (
     DEFAULT_SCALES,
     FEWEST_REFERENCES,
@@ -89,23 +90,18 @@ class UsableReferences:
 def usable_references(
     target: ThermoModel,
     references: ReferenceSet,
-    *,
-    trust_levels: bool = False,
-    accept: Collection[str] = (),
+    choices: EnergyChoices = PLAIN,
 ) -> UsableReferences:
     """The references that may be set against *target*.
 
-    A species that is there at another level only is refused, unless *trust_levels*.  Of several outputs of one species
-    the one of lowest energy at 0 K is taken, as the evaluated enthalpy belongs to it.  The target, its conformers and
-    its mirror images are left out.  A reference whose energy is off by more than a bond is refused, unless ``"energy"``
-    is in *accept*.
+    A species that is there at another level only is refused, unless levels are trusted.  Of several outputs of one
+    species the one of lowest energy at 0 K is taken, as the evaluated enthalpy belongs to it.  The target, its
+    conformers and its mirror images are left out.  A reference whose energy is off by more than a bond is refused,
+    unless such energies are accepted.
     """
-    key = (*_level_key(target.molecule), trust_levels)
-    chosen, said = references.once(("level", key), lambda: _at_level(target, references, trust_levels))
-    accepted = "energy" in accept
-    errors = references.once(
-        ("errors", key, accepted), lambda: _errors(chosen, references.atoms, trust_levels, accepted)
-    )
+    key = (*_level_key(target.molecule), choices.key)
+    chosen, said = references.once(("level", key), lambda: _at_level(target, references, choices.trust_levels))
+    errors = references.once(("errors", key), lambda: _errors(chosen, references.atoms, choices))
     mine = (identity_of(target.molecule), target.molecule.multiplicity)
     own = [r for r in chosen if r.species == mine]
     if own:
@@ -115,7 +111,7 @@ def usable_references(
     if errors is None:
         return UsableReferences(left, None, said)
     all_errors, excluded = errors, tuple(own)
-    kept = references.once(("without", key, accepted, excluded), lambda: all_errors.without(excluded))
+    kept = references.once(("without", key, excluded), lambda: all_errors.without(excluded))
     return UsableReferences(left, kept, said)
 
 
@@ -130,7 +126,7 @@ def _at_level(
     target: ThermoModel, references: ReferenceSet, trust: bool
 ) -> tuple[tuple[Reference, ...], tuple[Finding, ...]]:
     """One output of each species at the level of the target; raises Refused for species at other levels only."""
-    said: list[Finding] = list(references.findings)
+    said: list[Finding] = []
     wrong: list[Finding] = []
     chosen: list[Reference] = []
     for group in _species(references.references):
@@ -141,7 +137,6 @@ def _at_level(
             continue
         best, found = min(fit, key=lambda pair: (pair[0].energy0_kJ_mol, pair[0].file))
         said.extend(found)
-        said.extend(_passed_over(best, [r for r, _ in fit if r is not best]))
         chosen.append(best)
     if wrong:
         raise Refused(wrong)
@@ -169,35 +164,22 @@ def _objections(reference: Reference, target: Molecule, trust: bool) -> tuple[Fi
     return (*found, make(code, words, where=reference.file, action="Recompute them at that level."))
 
 
-def _passed_over(best: Reference, others: list[Reference]) -> list[Finding]:
-    return [
-        note(
-            "conformer-passed-over",
-            f"{other.file} is {other.energy0_kJ_mol - best.energy0_kJ_mol:.2f} kJ/mol above {best.file}, which is the "
-            f"same species ({best.row.name}); the lower one is the reference",
-        )
-        for other in others
-    ]
-
-
-def _errors(
-    references: tuple[Reference, ...], atoms: Atoms, trust: bool, accept_energy: bool
-) -> ReferenceErrors | None:
+def _errors(references: tuple[Reference, ...], atoms: Atoms, choices: EnergyChoices) -> ReferenceErrors | None:
     """Calculated minus evaluated enthalpies; None when an atom is missing that the references need."""
     needed = {element for r in references for element in r.model.composition}
     if not needed <= set(atoms):
         return None
-    calculated = [formation_by_atomization(r.model, atoms, trust_levels=trust).dHf0_kJ_mol for r in references]
+    calculated = [atomized(r.model, atoms, replace(choices, accept=("energy",))).dHf0_kJ_mol for r in references]
     error = np.array([c - r.dHf0_kJ_mol for c, r in zip(calculated, references, strict=True) if c is not None])
     found = [_implausible(r, float(e)) for r, e in zip(references, error, strict=True) if _is_implausible(r, float(e))]
-    if found and not accept_energy:
+    if found and "energy" not in choices.accept:
         raise Refused(found)
     return ReferenceErrors(references, error)
 
 
 def errors_at_one_level(references: ReferenceSet) -> tuple[ReferenceErrors | None, ErrorScales]:
     """The errors of references that are all at one level, None without their atoms, and the scales of the error."""
-    errors = _errors(references.references, references.atoms, False, True)
+    errors = _errors(references.references, references.atoms, EnergyChoices(accept=("energy",)))
     return errors, DEFAULT_SCALES if errors is None else errors.scales
 
 

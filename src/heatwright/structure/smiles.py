@@ -1,14 +1,14 @@
 """SMILES: the graph of a molecule (elements, hydrogens, bonds) from a line of text.
 
 What is read is OpenSMILES (C. A. James et al., OpenSMILES specification 1.0, 2016, after D. Weininger, J. Chem. Inf.
-Comput. Sci. 28, 31 (1988)): the organic subset, atoms in brackets, branches, ring closures, dots.  Marks of
-stereochemistry are read over, as the graph does not know them.
+Comput. Sci. 28, 31 (1988)): the organic subset, atoms in brackets, branches, ring closures, dots.  Of stereochemistry
+the sides of double bonds are read; chirality is read over, as mirror images are one species here.
 """
 
 from __future__ import annotations
 
 import re
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field
 from typing import Final, NoReturn
 
@@ -44,6 +44,8 @@ class SmilesGraph:
     isotopes : mass number of each atom, 0 where none is written.
     bonds : (first, second, order) with first < second, sorted; the order is 1, 2, 3, 4, or 1.5 for aromatic bonds.
     charge : the sum over the atoms.
+    sides : (a, i, j, b, cis) for each double bond i=j with marks at both ends: whether the neighbours a of i and b of j
+        are on one side of it.
     """
 
     text: str
@@ -51,6 +53,7 @@ class SmilesGraph:
     isotopes: tuple[int, ...]
     bonds: tuple[tuple[int, int, float], ...]
     charge: int
+    sides: tuple[tuple[int, int, int, int, bool], ...] = ()
 
     @property
     def composition(self) -> dict[str, int]:
@@ -97,7 +100,24 @@ def parse_smiles(text: str) -> SmilesGraph:
         isotopes=tuple(isotopes),
         bonds=tuple(sorted((i, j, order) for (i, j), order in bonds.items())),
         charge=sum(atom.charge for atom in atoms),
+        sides=tuple(_sides(reader.bonds)),
     )
+
+
+def _sides(bonds: Mapping[tuple[int, int], _Bond]) -> Iterator[tuple[int, int, int, int, bool]]:
+    """The sides that the marks state (``F/C=C/F`` is trans): one pair of marked neighbours for each double bond."""
+    above: dict[int, dict[int, bool]] = {}
+    """Of each atom its marked neighbours, and whether they are drawn above it."""
+    for pair, bond in bonds.items():
+        if bond.symbol in ("/", "\\"):
+            start, end = bond.start, pair[0] + pair[1] - bond.start
+            rises = bond.symbol == "/"
+            above.setdefault(start, {})[end] = rises
+            above.setdefault(end, {})[start] = not rises
+    for (i, j), bond in sorted(bonds.items()):
+        if bond.order == 2.0 and i in above and j in above:
+            (a, up), (b, also) = (next(iter(above[k].items())) for k in (i, j))
+            yield a, i, j, b, up == also
 
 
 @dataclass(frozen=True, slots=True)
@@ -114,11 +134,11 @@ class _Atom:
 
 @dataclass(frozen=True, slots=True)
 class _Bond:
-    """A bond: its symbol as written (empty when not), its order, and where it stands."""
+    """A bond: its symbol as written (empty when not), its order, and the atom after which the symbol stands."""
 
     symbol: str
     order: float
-    at: int
+    start: int
 
 
 @dataclass(slots=True)
@@ -232,7 +252,7 @@ class _Reader:
                 self.wrong(at, f"the ring closure {number} bonds an atom to itself")
             if symbol and self.pending and _ORDERS[symbol] != _ORDERS[self.pending]:
                 self.wrong(at, f"the ring closure {number} is opened as {symbol!r} and closed as {self.pending!r}")
-            self._connect(first, self.last, symbol or self.pending, at)
+            self._connect(*((first, self.last) if symbol else (self.last, first)), symbol or self.pending, at)
         self.pending = ""
 
     def _structure(self, kind: str, at: int) -> None:
@@ -261,7 +281,7 @@ class _Reader:
             self.wrong(at, "two atoms are bonded twice", "one bond, with its order")
         aromatic = self.atoms[i].aromatic and self.atoms[j].aromatic
         order = _ORDERS[symbol] if symbol else 1.5 if aromatic else 1.0
-        self.bonds[pair] = _Bond(symbol, order, at)
+        self.bonds[pair] = _Bond(symbol, order, i)
 
     def _whole(self) -> None:
         """What has to be closed at the end, and what aromatic atoms need."""
