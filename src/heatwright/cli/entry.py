@@ -17,7 +17,6 @@ from heatwright.cli.formation_options import (
     written_reactions,
 )
 from heatwright.cli.options import (
-    Reading,
     fit_options,
     model_options,
     outputs_argument,
@@ -26,11 +25,11 @@ from heatwright.cli.options import (
     taken_model_options,
     taken_reading,
     units_option,
-    usable_species,
     words_options,
 )
 from heatwright.cli.reporter import Reporter
 from heatwright.errors import UsageError
+from heatwright.reading.request import Reading
 
 if TYPE_CHECKING:
     from heatwright.entry import Entry, FitOptions
@@ -240,6 +239,7 @@ def _make(job: _Job, request: Request) -> Entry:
 
     from heatwright.entry import make_entry
     from heatwright.formation.routes import RouteRequest, formation_of
+    from heatwright.partition.species import usable_species
     from heatwright.writing.names import default_name
 
     model = usable_species(

@@ -3,20 +3,17 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any, Literal, TypeVar
 
 import click
 
 from heatwright.errors import UsageError
+from heatwright.reading.request import Reading
 
 if TYPE_CHECKING:
     from heatwright.entry import FitOptions
-    from heatwright.molecule import Molecule
     from heatwright.partition.choices import ModelOptions
     from heatwright.partition.lowmodes import LowModes
-    from heatwright.partition.model import ThermoModel
-    from heatwright.structure.isotopes import Isotope
 
 F = TypeVar("F", bound=Callable[..., Any])
 
@@ -190,23 +187,6 @@ def target_options(command: F) -> F:
     return command
 
 
-@dataclass(frozen=True, slots=True)
-class Reading:
-    """How an output is to be read: which job, values that replace its own, isotopes, and what is accepted.
-
-    torsions : whether force constants are wanted, for torsions to be projected out of them.
-    """
-
-    job: int | None
-    charge: int | None
-    multiplicity: int | None
-    isotopes: tuple[Isotope, ...] = ()
-    accept: tuple[str, ...] = ()
-    accept_imaginary_cm1: float = 0.0
-    energy: str | None = None
-    torsions: bool = False
-
-
 def taken_reading(options: dict[str, Any]) -> Reading:
     """The reading options out of a command's keyword arguments."""
     from heatwright.structure.isotopes import parse_isotope
@@ -307,75 +287,6 @@ def _low_modes(options: dict[str, Any]) -> LowModes:
         raise UsageError("--averaging-moment is for --low-modes interpolate")
     given = {"cutoff_cm1": cutoff, "averaging_moment_kg_m2": moment}
     return LowModes(kind, **{name: value for name, value in given.items() if value is not None})
-
-
-def usable_molecule(path: str, reading: Reading) -> Molecule:
-    """The molecule of an output that a model can be built on; raises Refused with every reason why not."""
-    from heatwright.findings import Refused, refusals
-    from heatwright.reading.outputs import read_output
-    from heatwright.reading.single_point import with_energy
-    from heatwright.reading.soundness import no_thermochemistry
-    from heatwright.structure.isotopes import with_isotopes
-
-    molecule = read_output(
-        path,
-        job=reading.job,
-        charge=reading.charge,
-        multiplicity=reading.multiplicity,
-        accept=reading.accept,
-        accept_imaginary_cm1=reading.accept_imaginary_cm1,
-        with_hessian=bool(reading.isotopes) or reading.torsions,
-    )
-    if refusals(molecule.findings):
-        raise Refused(molecule.findings)
-    missing = no_thermochemistry(molecule)
-    if missing:
-        raise Refused((*missing, *molecule.findings))
-    if reading.energy is not None:
-        other = read_output(
-            reading.energy, charge=reading.charge, multiplicity=reading.multiplicity, accept=reading.accept
-        )
-        molecule = with_energy(molecule, other)
-    return with_isotopes(molecule, reading.isotopes)
-
-
-def usable_model(path: str, reading: Reading, options: ModelOptions) -> ThermoModel:
-    """The model of an output; raises Refused."""
-    from heatwright.partition.model import build_model
-
-    return build_model(usable_molecule(path, reading), options)
-
-
-def usable_species(
-    files: tuple[tuple[str, str | None], ...],
-    reading: Reading,
-    options: ModelOptions,
-    *,
-    trust_levels: bool = False,
-    for_entry: bool = False,
-) -> ThermoModel:
-    """The model of an output and of further conformers, each a file with that of its energy or None; raises Refused.
-
-    for_entry : refuse what an entry must not be made of as well.
-    """
-    from dataclasses import replace
-
-    from heatwright.findings import Refused
-    from heatwright.reading.acceptance import unfit_for_entry
-
-    models = []
-    for path, energy in files:
-        try:
-            models.append(usable_model(path, replace(reading, energy=energy), options))
-            if for_entry and (unfit := unfit_for_entry(models[-1].molecule, reading.accept)):
-                raise Refused(unfit)
-        except Refused as error:
-            raise Refused(f.at(path) for f in error.findings) from error
-    if len(models) == 1:
-        return models[0]
-    from heatwright.partition.mixing import mixture_model
-
-    return mixture_model(models, trust_levels=trust_levels)
 
 
 def temperatures(text: str) -> list[float]:

@@ -7,7 +7,6 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
-from heatwright.cli.options import Reading, usable_molecule
 from heatwright.cli.reporter import Reporter
 
 if TYPE_CHECKING:
@@ -52,6 +51,8 @@ def rotors(
     from heatwright.errors import UsageError
     from heatwright.findings import Refused
     from heatwright.partition.rotor_survey import survey_rotors
+    from heatwright.partition.species import usable_molecule
+    from heatwright.reading.request import Reading
     from heatwright.reading.torsion_scans import read_torsion
 
     if not 0.0 < frequency_scale < float("inf"):
