@@ -155,6 +155,9 @@ CODES: Final[dict[str, str]] = {
     "target-exists": "The file to be written exists already.",
     "target-unwritable": "The file to be written cannot be written.",
     "template-failed": "The user's template could not be rendered.",
+    # --- a mechanism as a build -----------------------------------------------------------------------------------
+    "lock-wrong": "A lock file is no TOML, or holds an unknown, missing or wrong value.",
+    "lock-newer": "A lock file was made by a newer version of heatwright.",
 }
 """Every code a finding may carry, and what it means."""
 

@@ -7,6 +7,7 @@ than atomization and is not offered.
 
 from __future__ import annotations
 
+from collections import Counter
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from math import gcd, sqrt
@@ -66,6 +67,7 @@ def reaction_sd_kJ_mol(
     bonds = surplus([(n, b.types) for n, b, _ in rows])
     unpaired = sum(n * b.unpaired for n, b, _ in rows)
     shared = scales.bond_kJ_mol**2 * sum(x * x for x in bonds.values()) + (scales.spin_kJ_mol * unpaired) ** 2
+    shared += (scales.charge_kJ_mol * sum(n * b.charge for n, b, _ in rows)) ** 2
     own = sum(n * n * (scales.own_kJ_mol**2 * (sum(b.types.values()) + 0.5) + u * u) for n, b, u in rows)
     return sqrt(shared + own) / target_coefficient
 
@@ -85,6 +87,7 @@ def find_reactions(
     back when there are no more.
     """
     mine = account(target, bonding)
+    references = _balanceable(mine, references)
     theirs = [account(r.model, r.bonding) for r in references]
     weights = np.sqrt([_own_variance(r.bonding, scales) + (r.row.u95_kJ_mol / 2.0) ** 2 for r in references])
     found: dict[tuple[tuple[int, str], ...], Reaction] = {}
@@ -99,6 +102,23 @@ def find_reactions(
                 sd = reaction_sd_kJ_mol(bonding, coefficient, terms, scales)
                 found[key] = Reaction(name, coefficient, terms, balanced_kind(mine, theirs, coefficient, numbers), sd)
     return tuple(sorted(found.values(), key=lambda r: (round(r.sd_kJ_mol, 9), len(r.terms), r.text)))
+
+
+def _balanceable(mine: Account, references: Sequence[Reference]) -> list[Reference]:
+    """The references without those that nothing can balance: the only ones with an element or a bond, again and again
+    until none is left out."""
+    held = [(r, {name for part in (a.elements, a.bonds) for name in part}) for r, a in _accounts(references)]
+    while True:
+        counts = Counter(name for _, names in held for name in names)
+        counts.update({*mine.elements, *mine.bonds})
+        kept = [(r, names) for r, names in held if all(counts[name] > 1 for name in names)]
+        if len(kept) == len(held):
+            return [r for r, _ in kept]
+        held = kept
+
+
+def _accounts(references: Sequence[Reference]) -> list[tuple[Reference, Account]]:
+    return [(r, account(r.model, r.bonding)) for r in references]
 
 
 def _own_variance(bonding: Bonding, scales: ErrorScales) -> float:
