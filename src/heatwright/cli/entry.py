@@ -29,7 +29,6 @@ from heatwright.cli.options import (
 )
 from heatwright.cli.reporter import Reporter
 from heatwright.errors import UsageError
-from heatwright.reading.request import Reading
 
 if TYPE_CHECKING:
     from heatwright.entry import Entry, FitOptions
@@ -40,6 +39,7 @@ if TYPE_CHECKING:
     from heatwright.formation.reference_set import ReferenceSet
     from heatwright.formation.routes import Route
     from heatwright.partition.choices import ModelOptions
+    from heatwright.species import Reading
 
 
 @dataclass(frozen=True, slots=True)
@@ -239,7 +239,7 @@ def _make(job: _Job, request: Request) -> Entry:
 
     from heatwright.entry import make_entry
     from heatwright.formation.routes import RouteRequest, formation_of
-    from heatwright.partition.species import usable_species
+    from heatwright.species import usable_species
     from heatwright.writing.names import default_name
 
     model = usable_species(

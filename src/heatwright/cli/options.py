@@ -8,12 +8,12 @@ from typing import TYPE_CHECKING, Any, Literal, TypeVar
 import click
 
 from heatwright.errors import UsageError
-from heatwright.reading.request import Reading
 
 if TYPE_CHECKING:
     from heatwright.entry import FitOptions
     from heatwright.partition.choices import ModelOptions
-    from heatwright.partition.lowmodes import LowModes
+    from heatwright.project.manifest_types import ReadingChoice
+    from heatwright.species import Reading
 
 F = TypeVar("F", bound=Callable[..., Any])
 
@@ -189,35 +189,39 @@ def target_options(command: F) -> F:
 
 def taken_reading(options: dict[str, Any]) -> Reading:
     """The reading options out of a command's keyword arguments."""
-    from heatwright.structure.isotopes import parse_isotope
+    from heatwright.project.conversion import reading_options
 
-    isotopes = tuple(parse_isotope(text) for text in options.pop("isotopes"))
+    return reading_options(
+        _reading_choice(options, isotopes=options.pop("isotopes")), torsions=bool(options["torsions"])
+    )
+
+
+def _reading_choice(options: dict[str, Any], isotopes: tuple[str, ...] = ()) -> ReadingChoice:
+    from heatwright.project.manifest_types import ReadingChoice
+
     accept = (*options.pop("accept"), *(["gradient"] if options.pop("accept_gradient") else []))
-    imaginary = options.pop("accept_imaginary")
-    return Reading(
-        options.pop("job"),
-        options.pop("charge"),
-        options.pop("multiplicity"),
-        isotopes,
+    job, charge, multiplicity, imaginary = (
+        options.pop(name) for name in ("job", "charge", "multiplicity", "accept_imaginary")
+    )
+    return ReadingChoice(
+        job=job,
+        charge=charge,
+        multiplicity=multiplicity,
+        isotopes=isotopes,
         accept=accept,
         accept_imaginary_cm1=imaginary,
-        torsions=bool(options["torsions"]),
     )
 
 
 def reading_of_target(options: dict[str, Any]) -> tuple[Reading, ModelOptions]:
     """What target_options say: how to read the output, and the choices for its zero-point energy."""
+    from dataclasses import replace
+
     from heatwright.partition.choices import ModelOptions
+    from heatwright.project.conversion import reading_options
 
     energies = taken_energies(options, 1)
-    reading = Reading(
-        options["job"],
-        options["charge"],
-        options["multiplicity"],
-        accept=(*options["accept"], *(["gradient"] if options["accept_gradient"] else [])),
-        accept_imaginary_cm1=options["accept_imaginary"],
-        energy=energies[0],
-    )
+    reading = replace(reading_options(_reading_choice(options)), energy=energies[0])
     chosen = {name: options[name] for name in ("scale", "frequency_scale", "zpe_scale", "anharmonic")}
     return reading, ModelOptions(**chosen)
 
@@ -247,46 +251,25 @@ def taken_energies(options: dict[str, Any], n_outputs: int) -> tuple[str | None,
 
 def taken_model_options(options: dict[str, Any]) -> ModelOptions:
     """The model options out of a command's keyword arguments."""
-    from heatwright.constants import ATMOSPHERE_PA, BAR_PA
-    from heatwright.partition.choices import ModelOptions
-    from heatwright.partition.electronic import parse_levels
-    from heatwright.partition.inputs import parse_uncertainties
-    from heatwright.reading.torsion_scans import read_torsion
+    from heatwright.project.conversion import model_options as of_choice
+    from heatwright.project.manifest_types import ModelChoice, TorsionChoice
 
-    electronic = options.pop("electronic")
-    uncertainty = options.pop("uncertainty")
-    scale = options.pop("scale")
-    if scale is not None and (options["frequency_scale"] is not None or options["zpe_scale"] is not None):
-        raise UsageError("--scale published chooses both factors; leave out --frequency-scale and --zpe-scale")
-    return ModelOptions(
-        low_modes=_low_modes(options),
-        rotation=options.pop("rotation"),
-        scale=scale,
-        anharmonic=options.pop("anharmonic"),
-        pressure_Pa={"1bar": BAR_PA, "1atm": ATMOSPHERE_PA}[options.pop("pressure")],
-        frequency_scale=options.pop("frequency_scale"),
-        zpe_scale=options.pop("zpe_scale"),
-        symmetry_number=options.pop("symmetry_number"),
-        optical_isomers=options.pop("optical_isomers"),
-        symmetry_tolerance_A=options.pop("symmetry_tolerance"),
-        electronic=electronic if electronic in ("table", "spin", "levels") else parse_levels(electronic),
-        masses=options.pop("masses"),
-        uncertainty=None if uncertainty is None else parse_uncertainties(uncertainty),
-        torsions=tuple(read_torsion(text) for text in options.pop("torsions")),
-        torsion_coupling=options.pop("torsion_coupling"),
-    )
+    taken = {keyword: options.pop(name) for keyword, name in _MODEL_CHOICES.items()}
+    torsions = tuple(TorsionChoice(barrier=text) for text in options.pop("torsions"))
+    return of_choice(ModelChoice(torsions=torsions, **taken))
 
 
-def _low_modes(options: dict[str, Any]) -> LowModes:
-    from heatwright.partition.lowmodes import LowModes
-
-    kind, cutoff, moment = (options.pop(name) for name in ("low_modes", "cutoff", "averaging_moment"))
-    if cutoff is not None and kind == "harmonic":
-        raise UsageError("--cutoff is for --low-modes floor or interpolate")
-    if moment is not None and kind != "interpolate":
-        raise UsageError("--averaging-moment is for --low-modes interpolate")
-    given = {"cutoff_cm1": cutoff, "averaging_moment_kg_m2": moment}
-    return LowModes(kind, **{name: value for name, value in given.items() if value is not None})
+_SAME_WORDS = (
+    "pressure", "scale", "frequency_scale", "zpe_scale", "anharmonic", "low_modes", "rotation", "torsion_coupling",
+    "symmetry_number", "optical_isomers", "electronic", "masses", "uncertainty",
+)  # fmt: skip
+_MODEL_CHOICES = {
+    **dict(zip(_SAME_WORDS, _SAME_WORDS, strict=True)),
+    "cutoff_cm1": "cutoff",
+    "averaging_moment_kg_m2": "averaging_moment",
+    "symmetry_tolerance_A": "symmetry_tolerance",
+}
+"""The fields of a ModelChoice and the options that set them."""
 
 
 def temperatures(text: str) -> list[float]:

@@ -67,7 +67,7 @@ def _proposals(output: str, options: dict[str, Any], reporter: Reporter) -> str:
     from heatwright.formation.reference_set import species_name
     from heatwright.formation.usable import usable_references
     from heatwright.partition.model import build_model
-    from heatwright.partition.species import usable_molecule
+    from heatwright.species import usable_molecule
     from heatwright.structure.bond_orders import bonding
 
     own = own_references(options)

@@ -51,15 +51,14 @@ def rotors(
     from heatwright.errors import UsageError
     from heatwright.findings import Refused
     from heatwright.partition.rotor_survey import survey_rotors
-    from heatwright.partition.species import usable_molecule
-    from heatwright.reading.request import Reading
     from heatwright.reading.torsion_scans import read_torsion
+    from heatwright.species import Reading, usable_molecule
 
     if not 0.0 < frequency_scale < float("inf"):
         raise UsageError(f"--frequency-scale must be a positive number, not {frequency_scale}")
     reporter = Reporter(quiet=quiet)
     try:
-        molecule = usable_molecule(output, Reading(job, None, None, torsions=True))
+        molecule = usable_molecule(output, Reading(job, torsions=True))
         rows, findings = survey_rotors(molecule, tuple(map(read_torsion, torsions)), frequency_scale)
     except Refused as error:
         reporter.fail(output, error.findings)

@@ -63,8 +63,8 @@ def table(
     """
     from heatwright.entry import TABLE_TEMPERATURES_K
     from heatwright.findings import Refused
-    from heatwright.partition.species import usable_species
     from heatwright.partition.table import checked_temperatures
+    from heatwright.species import usable_species
     from heatwright.writing.names import default_name
 
     reporter = Reporter(quiet=quiet, verbose=verbose)

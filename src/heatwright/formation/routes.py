@@ -157,7 +157,7 @@ _BY_ROUTE: Final[dict[str, Callable[[ThermoModel, RouteRequest], Formation]]] = 
 
 
 _PASSABLE: Final = frozenset(
-    {"references-few", "no-reaction", "bonding-unclear", "atom-missing", "no-formation", "no-reference"}
+    {"references-few", "no-reaction", "bonding-unclear", "fragments", "no-geometry", "atom-missing", "no-reference"}
 )
 """What keeps a species from one route and not from another."""
 
