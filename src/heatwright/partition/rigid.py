@@ -4,8 +4,6 @@ from __future__ import annotations
 
 from collections.abc import Callable
 
-from collections.abc import Callable
-
 from heatwright.findings import Finding, note
 from heatwright.molecule import FloatArray, Molecule
 from heatwright.structure.inertia import Inertia, inertia, stated_rotor
