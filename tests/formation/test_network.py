@@ -112,7 +112,7 @@ def test_the_posterior_against_the_normal_density() -> None:
     error = np.random.default_rng(12).normal(0.0, 10.0, 9)
     values = []
     for logs in (np.log([3.0, 9.0, 5.0]), np.log([6.0, 4.0, 2.0])):
-        cov = covariance(f, np.full(9, 0.3), ErrorScales(*(float(x) for x in np.exp(logs))))
+        cov = covariance(f, np.full(9, 0.3), ErrorScales(*np.exp(logs).tolist()))
         expected = -multivariate_normal(np.zeros(9), cov).logpdf(error)
         defaults = np.log([DEFAULT_SCALES.own_kJ_mol, DEFAULT_SCALES.bond_kJ_mol, DEFAULT_SCALES.spin_kJ_mol])
         expected -= norm(defaults, 1.0).logpdf(logs).sum()
@@ -135,3 +135,8 @@ def test_a_bond_type_without_a_column_is_not_lost() -> None:
     assert made.labels == ("H-O",)
     assert made.counts.tolist() == [[2.0]]
     assert shared_covariance(made, made, SCALES).tolist() == [[4 * 81.0]]
+    ion = Features(made.counts, made.unpaired, made.labels, np.array([1.0]))
+    assert shared_covariance(ion, ion, SCALES)[0, 0] == 4 * 81.0 + SCALES.charge_kJ_mol**2
+    assert shared_covariance(ion, made, SCALES)[0, 0] == 4 * 81.0
+    alone = corrections(ion, made, np.array([4.0]), np.zeros(1), SCALES).sd_kJ_mol[0]
+    assert alone > corrections(made, made, np.array([4.0]), np.zeros(1), SCALES).sd_kJ_mol[0]
