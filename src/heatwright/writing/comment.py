@@ -179,6 +179,22 @@ def scale_text(model: ThermoModel) -> str:
     return f"{words}, {source}" if source else f"{words}: unscaled"
 
 
+def ledger_text(formation: Formation, units: Units = UNITS["kJ"]) -> list[str]:
+    """The ledger, a line each and their sum; four decimals, so that the sum can be checked by hand."""
+    if len(formation.ledger) < 2:
+        return []
+    lines = [
+        f"{_fixed(line.value_kJ_mol * units.factor)} {units.enthalpy}  {line.what}"
+        f"{f' ({line.source})' if line.source else ''}"
+        for line in formation.ledger
+    ]
+    return [*lines, f"{_fixed(formation.dHf298_kJ_mol * units.factor)} {units.enthalpy}  = dHf(298.15 K)"]
+
+
+def _fixed(value: float) -> str:
+    return f"{round(value, 4) + 0.0:14.4f}"
+
+
 def formation_text(formation: Formation, units: Units = UNITS["kJ"]) -> str:
     """The formation in words: value, uncertainty, route and source."""
     f, unit = units.factor, units.enthalpy
