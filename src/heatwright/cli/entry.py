@@ -274,9 +274,7 @@ def _describe(path: str, made: Entry, units_name: str, reporter: Reporter) -> No
     for text in ledger_text(made.formation, units):
         reporter.detail(f"  {text}")
     for other in made.formation.alternatives:
-        reporter.detail(f"  {formation_text(other, units)}")
-        for text in ledger_text(other, units):
-            reporter.detail(f"    {text}")
+        reporter.detail(f"  beside it: {formation_text(other, units)}")
     for shift in made.model.motion.shifts:
         reporter.detail(f"  {shift.text}")
     reporter.findings(path, [f for f in made.findings if f not in refusals(made.findings)])

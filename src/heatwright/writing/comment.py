@@ -180,15 +180,14 @@ def scale_text(model: ThermoModel) -> str:
 
 
 def ledger_text(formation: Formation, units: Units = UNITS["kJ"]) -> list[str]:
-    """The ledger, a line each and their sum; four decimals, so that the sum can be checked by hand."""
+    """The ledger, a line each with four decimals, so that the sum can be checked by hand; empty for a single line."""
     if len(formation.ledger) < 2:
         return []
-    lines = [
+    return [
         f"{_fixed(line.value_kJ_mol * units.factor)} {units.enthalpy}  {line.what}"
         f"{f' ({line.source})' if line.source else ''}"
         for line in formation.ledger
     ]
-    return [*lines, f"{_fixed(formation.dHf298_kJ_mol * units.factor)} {units.enthalpy}  = dHf(298.15 K)"]
 
 
 def _fixed(value: float) -> str:
