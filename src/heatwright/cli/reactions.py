@@ -13,7 +13,7 @@ from heatwright.cli.formation_options import (
     read_references,
     reference_options,
 )
-from heatwright.cli.options import reading_of_target, target_options, units_option, usable_molecule, words_options
+from heatwright.cli.options import reading_of_target, target_options, units_option, words_options
 from heatwright.cli.reporter import Reporter
 from heatwright.errors import UsageError
 
@@ -67,7 +67,9 @@ def _proposals(output: str, options: dict[str, Any], reporter: Reporter) -> str:
     from heatwright.formation.reference_set import species_name
     from heatwright.formation.usable import usable_references
     from heatwright.partition.model import build_model
+    from heatwright.species import usable_molecule
     from heatwright.structure.bond_orders import bonding
+    from heatwright.writing.comment import ledger_text
 
     own = own_references(options)
     energies = energy_choices(options, own)
@@ -91,8 +93,8 @@ def _proposals(output: str, options: dict[str, Any], reporter: Reporter) -> str:
         return _as_json(name, model, usable, rows)
     for reaction, formation in rows:
         reporter.detail(reaction.text)
-        for line in formation.ledger:
-            reporter.detail(f"  {line.value_kJ_mol:14.3f} kJ/mol  {line.what} ({line.source})")
+        for text in ledger_text(formation):
+            reporter.detail(f"  {text}")
     return _as_text(name, mine, usable, rows, options["units"])
 
 

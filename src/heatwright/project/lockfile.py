@@ -20,9 +20,7 @@ LOCK_VERSION: Final = 1
 """The format; it rises when a key changes its meaning or goes, so that an older heatwright does not misread it."""
 CP_TEMPERATURES_K: Final = (300.0, 400.0, 500.0, 600.0, 800.0, 1000.0, 1500.0)
 """Where Cp° is recorded, K."""
-_HEAD: Final = (
-    "# How each entry of this release was made.  `heatwright build` writes and reads it; it is not for editing."
-)
+_HEAD: Final = "# How each entry of this release was made.  `heatwright build` writes and reads it, not for editing."
 _DIGITS: Final = 9
 
 

@@ -91,11 +91,17 @@ class FitChoice:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class ReferenceFolders:
-    """Where the outputs of atoms and reference species of one level of theory are, and the user's own table."""
+    """Where the outputs of atoms and reference species of one level of theory are, and the user's own tables.
+
+    atoms, references : folders of outputs.   reference_table : CSV of reference enthalpies.
+    zero_kelvin : CSV of final 0 K energies of a composite scheme.   corrections : CSV for atoms and bonds.
+    """
 
     atoms: ProjectPath | None = None
     references: ProjectPath | None = None
     reference_table: ProjectPath | None = None
+    zero_kelvin: ProjectPath | None = None
+    corrections: ProjectPath | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -107,6 +113,8 @@ class FormationChoice:
     source: str | None = None
     reaction: str | None = None
     trust_levels: bool = False
+    spin_orbit: bool = False
+    electron: Literal["thermal", "stationary"] = "thermal"
     folders: ReferenceFolders = ReferenceFolders()
 
 
