@@ -68,9 +68,9 @@ def main(folder: Path, zpe_scale: float) -> None:
         usable = usable_references(target.model, whole)
         plain = formation_by_atomization(target.model, whole.atoms)
         network = formation_by_network(target.model, whole)
-        start = time.perf_counter()
+        start = time.process_time()
         found = find_reactions(target.model, target.bonding, usable.references, usable.scales, name=target.row.name)
-        slowest = max(slowest, time.perf_counter() - start)
+        slowest = max(slowest, time.process_time() - start)
         reaction = formation_of_reaction(target.model, found[0], usable) if found else None
         rows.append((target, usable, plain, network, reaction))
     off = [(p.dHf0_kJ_mol - t.dHf0_kJ_mol) for t, _, p, _, _ in rows]
@@ -97,7 +97,7 @@ def main(folder: Path, zpe_scale: float) -> None:
     print(
         f"reactions: {len(rea)} targets, rms {rms([e for e, _ in rea]):.2f} kJ/mol, "
         f"largest {max((e for e, _ in rea), key=abs):.1f}, "
-        f"z-scores rms {rms([e / s for e, s in rea]):.2f}; slowest search {slowest:.2f} s"
+        f"z-scores rms {rms([e / s for e, s in rea]):.2f}; slowest search {slowest:.2f} s of processor time"
     )
     errors = usable_references(build_model(read_folder(folder / "atoms")[0]), whole).errors
     print(f"  scales {errors.scales}")

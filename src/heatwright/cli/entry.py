@@ -274,7 +274,7 @@ def _describe(path: str, made: Entry, units_name: str, reporter: Reporter) -> No
     if len(made.formation.ledger) > 1:
         for line in made.formation.ledger:
             reporter.detail(
-                f"  {line.value_kJ_mol * units.factor:14.3f} {units.enthalpy}  {line.what}"
+                f"  {round(line.value_kJ_mol * units.factor, 3) + 0.0:14.3f} {units.enthalpy}  {line.what}"
                 f"{f' ({line.source})' if line.source else ''}"
             )
     for shift in made.model.motion.shifts:

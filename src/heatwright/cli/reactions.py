@@ -92,7 +92,7 @@ def _proposals(output: str, options: dict[str, Any], reporter: Reporter) -> str:
     for reaction, formation in rows:
         reporter.detail(reaction.text)
         for line in formation.ledger:
-            reporter.detail(f"  {line.value_kJ_mol:14.3f} kJ/mol  {line.what} ({line.source})")
+            reporter.detail(f"  {round(line.value_kJ_mol, 3) + 0.0:14.3f} kJ/mol  {line.what} ({line.source})")
     return _as_text(name, mine, usable, rows, options["units"])
 
 

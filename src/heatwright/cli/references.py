@@ -167,10 +167,10 @@ def _species_text(species: Sequence[SpeciesReference]) -> str:
         max(len(text) for text in texts) for texts in zip(*((s.name, s.formula) for s in species), strict=True)
     )
     name, formula = max(name, 7), max(formula, 7)
+    heads = f"{'dHf(0 K)':>10}  {'dHf(298)':>9}  {'u95':>6}"
     lines = [
         "Species, kJ/mol",
-        f"{'species':<{name}}  {'formula':<{formula}}  2S+1  {'dHf(0 K)':>10}  {'dHf(298)':>9}  {'u95':>6}  source, name, "
-        "SMILES",
+        f"{'species':<{name}}  {'formula':<{formula}}  2S+1  {heads}  source, name, SMILES",
     ]
     for s in species:
         values = f"{s.multiplicity:4d}  {_cell(s.dHf0_kJ_mol):>10}  {_cell(s.dHf298_kJ_mol):>9}  {s.u95_kJ_mol:6.3f}"

@@ -7,7 +7,7 @@ from typing import Final
 
 from heatwright.findings import Finding, Refused, note, refuse, warn
 from heatwright.formation.choices import PLAIN, EnergyChoices, atomized
-from heatwright.formation.error_model import FEWEST_REFERENCES, features
+from heatwright.formation.error_model import DEFAULT_SCALES, FEWEST_REFERENCES, features
 from heatwright.formation.formation import Formation, LedgerLine, with_electron
 from heatwright.formation.network import corrections
 from heatwright.formation.phrases import COVERAGE, level_label, sources
@@ -94,6 +94,23 @@ def _network_lines(references: Sequence[Reference], weights: FloatArray, shares:
 
 
 def _coverage(mine: Bonding, references: Sequence[Reference]) -> tuple[Finding, ...]:
+    return (*_bonds_without_reference(mine, references), *_charge_without_reference(mine, references))
+
+
+def _charge_without_reference(mine: Bonding, references: Sequence[Reference]) -> tuple[Finding, ...]:
+    if not mine.charge or any(r.bonding.charge * mine.charge > 0 for r in references):
+        return ()
+    return (
+        warn(
+            "network-coverage",
+            f"no reference carries a charge like {mine.charge:+d}; what the level does wrong for it is a guess of "
+            f"{DEFAULT_SCALES.charge_kJ_mol:g} kJ/mol a charge",
+            action="Add ions to the reference table and to the references, or give a value.",
+        ),
+    )
+
+
+def _bonds_without_reference(mine: Bonding, references: Sequence[Reference]) -> tuple[Finding, ...]:
     seen = {label for r in references for label in r.bonding.types}
     missing = [label for label in mine.types if label not in seen]
     if not missing:

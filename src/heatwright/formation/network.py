@@ -48,7 +48,8 @@ def corrections(
     k = shared_covariance(targets, references, scales)
     weights: FloatArray = (np.linalg.inv(covariance(references, uncertainty_kJ_mol, scales)) @ k.T).T
     bonds = scales.bond_kJ_mol**2 * (targets.counts**2).sum(axis=1)
-    prior = bonds + (scales.spin_kJ_mol * targets.unpaired) ** 2 + own_variance(targets, scales)
+    spins, charges = scales.spin_kJ_mol * targets.unpaired, scales.charge_kJ_mol * targets.charges
+    prior = bonds + spins**2 + charges**2 + own_variance(targets, scales)
     sd: FloatArray = np.sqrt(prior - (weights * k).sum(axis=1))
     return Corrections(weights @ errors_kJ_mol, sd, weights)
 

@@ -11,9 +11,10 @@ from heatwright.molecule import Molecule
 from heatwright.resources import data_rows
 from heatwright.structure.bond_orders import bonding
 
-BOUND_KJ_MOL: Final = (150.0, 25.0)
-"""By how much the two may differ: a fixed part and one for each atom, kJ/mol (our own bound; common practice, no
-source).  Mean bond enthalpies know no strain, resonance or spin, and a level of theory has its error for each bond."""
+BOUND_KJ_MOL: Final = (175.0, 25.0, 50.0)
+"""By how much the two may differ: a fixed part, one for each atom and one for each unpaired electron, kJ/mol (our own
+bound; common practice, no source).  Mean bond enthalpies know no strain, resonance or spin, and a level of theory has
+its error for each bond; an electron too few or too many, or another program's energy, is off by far more."""
 
 
 @cache
@@ -38,6 +39,12 @@ def bond_sum_kJ_mol(types: Mapping[str, int]) -> float | None:
     return sum(n * table[label] for label, n in types.items())
 
 
+def bound_kJ_mol(molecule: Molecule) -> float:
+    """The largest difference that is let pass for a molecule, kJ/mol."""
+    fixed, each_atom, each_electron = BOUND_KJ_MOL
+    return fixed + each_atom * molecule.n_atoms + each_electron * ((molecule.multiplicity or 1) - 1)
+
+
 def energy_findings(molecule: Molecule, atomization_kJ_mol: float, accept: Collection[str] = ()) -> tuple[Finding, ...]:
     """What is to be said of a calculated atomization energy (0 K): nothing, or that it is off by more than a bond.
 
@@ -45,9 +52,7 @@ def energy_findings(molecule: Molecule, atomization_kJ_mol: float, accept: Colle
     ``"energy"`` in *accept* makes a warning of it.
     """
     expected = None if molecule.is_atom or molecule.charge else _expected_kJ_mol(molecule)
-    fixed, each = BOUND_KJ_MOL
-    bound = fixed + each * molecule.n_atoms
-    if expected is None or abs(atomization_kJ_mol - expected) <= bound:
+    if expected is None or abs(atomization_kJ_mol - expected) <= bound_kJ_mol(molecule):
         return ()
     make = warn if "energy" in accept else refuse
     action = "Check the energies of the molecule and of its atoms: state, convergence, same job settings."
@@ -59,7 +64,7 @@ def energy_findings(molecule: Molecule, atomization_kJ_mol: float, accept: Colle
             f"the calculated atomization energy is {atomization_kJ_mol:.0f} kJ/mol, and the molecule's bonds are worth "
             f"about {expected:.0f}",
             where=molecule.source.file,
-            expected=f"a difference of at most {bound:.0f} kJ/mol",
+            expected=f"a difference of at most {bound_kJ_mol(molecule):.0f} kJ/mol",
             action=action,
         ),
     )

@@ -67,6 +67,7 @@ def reaction_sd_kJ_mol(
     bonds = surplus([(n, b.types) for n, b, _ in rows])
     unpaired = sum(n * b.unpaired for n, b, _ in rows)
     shared = scales.bond_kJ_mol**2 * sum(x * x for x in bonds.values()) + (scales.spin_kJ_mol * unpaired) ** 2
+    shared += (scales.charge_kJ_mol * sum(n * b.charge for n, b, _ in rows)) ** 2
     own = sum(n * n * (scales.own_kJ_mol**2 * (sum(b.types.values()) + 0.5) + u * u) for n, b, u in rows)
     return sqrt(shared + own) / target_coefficient
 

@@ -157,7 +157,7 @@ _BY_ROUTE: Final[dict[str, Callable[[ThermoModel, RouteRequest], Formation]]] = 
 
 
 _PASSABLE: Final = frozenset(
-    {"references-few", "no-reaction", "bonding-unclear", "atom-missing", "no-formation", "no-reference"}
+    {"references-few", "no-reaction", "bonding-unclear", "fragments", "no-geometry", "atom-missing", "no-reference"}
 )
 """What keeps a species from one route and not from another."""
 
@@ -195,12 +195,14 @@ def _side_by_side(best: Formation, others: tuple[Formation, ...]) -> Finding:
 
 
 def _value(f: Formation) -> str:
-    spread = "without an uncertainty" if f.u95_kJ_mol is None else f"+/- {f.u95_kJ_mol:.2g}"
+    spread = (
+        "without an uncertainty" if f.u95_kJ_mol is None else f"+/- {f.u95_kJ_mol:.{0 if f.u95_kJ_mol >= 10 else 1}f}"
+    )
     return f"{f.dHf298_kJ_mol:.1f} {spread} kJ/mol"
 
 
 def _impassable(failed: list[tuple[str, Refused]]) -> list[Finding]:
-    return [note("route", f"route {route} could not be gone: {error.findings[0].text}") for route, error in failed]
+    return [note("route", f"route {route} could not be gone: {error.findings[0].found}") for route, error in failed]
 
 
 def _disagreements(made: tuple[Formation, ...]) -> list[Finding]:

@@ -13,8 +13,10 @@ from heatwright.molecule import FloatArray, Molecule
 from heatwright.partition.contribution import ConstantFactor, Contribution, total_ln_q
 from heatwright.partition.fourier import FittedPotential, tolerated_cm1
 from heatwright.partition.pitzer_gwinn import PitzerGwinnRotor
+from heatwright.partition.plane_waves import basis_size
+from heatwright.partition.potential import Potential
 from heatwright.partition.scans import WishedTorsion, wished
-from heatwright.partition.torsion import MOST_WAVES, HinderedRotor, Potential, basis_size, hindered_rotor
+from heatwright.partition.torsion import MOST_WAVES, HinderedRotor, hindered_rotor
 from heatwright.partition.vibration import HarmonicVibration
 from heatwright.reading.torsion_scans import Torsion
 from heatwright.structure.isotopes import force_constants

@@ -90,15 +90,15 @@ def read_table(
 
 def _records(text: str, file: str, code: str) -> Iterator[tuple[int, list[str]]]:
     """(line, fields) of each row that says something; a row in quotes may go over several lines."""
-    reader = csv.reader(text.splitlines(), strict=True, skipinitialspace=True)
+    reader = csv.reader((f"{line}\n" for line in text.split("\n")), strict=True, skipinitialspace=True)
     line = 1
     try:
         for fields in reader:
             start, line = line, reader.line_num + 1
             if fields and not fields[0].lstrip().startswith("#") and any(field.strip() for field in fields):
-                yield start, [field.strip() for field in fields]
+                yield start, [field.strip().replace("\n", " ") for field in fields]
     except csv.Error as error:
-        where = f"{file}:{reader.line_num}"
+        where = f"{file}:{line}"
         raise Refused([refuse(code, f"the line is no CSV ({error})", where=where)]) from None
 
 

@@ -15,13 +15,17 @@ from functools import cached_property, lru_cache
 from typing import Final
 
 import numpy as np
+from numpy.typing import NDArray
 
 from heatwright.elements import symbol
 from heatwright.findings import Refused, refuse
 from heatwright.molecule import FloatArray, Molecule
 from heatwright.structure.bonds import bonds, covalent_radius_A, fragments
-from heatwright.structure.lewis import Frame, Structures, TooWide, best_by_length, lewis_structures
+from heatwright.structure.frame import Frame
+from heatwright.structure.lewis import Solution, Structures, TooWide, lewis_structures
 from heatwright.structure.valence import most_bonds, valence_electrons
+
+BoolArray = NDArray[np.bool_]
 
 DELOCALISED: Final = 1.5
 ORDER_SYMBOL: Final = {1.0: "-", DELOCALISED: ":", 2.0: "=", 3.0: "#"}
@@ -32,6 +36,10 @@ other, as the ends of a cage are; no multiple bond is that long either (common p
 ALTERNATION_A: Final = 0.1
 """Lengths of like bonds that differ by more than this are single and double; in aromatic molecules they differ by less
 than 0.06 Å, in cyclobutadiene by more than 0.2 Å (common practice, no source)."""
+HALF_BONDED: Final = 1.45
+"""A hydrogen nearer to a second atom than this times the sum of their radii is a bridge or half-way; hydrogen bonds are
+above 1.55, geminal atoms above 1.9 (common practice, no source)."""
+_ALKALI: Final = frozenset({3, 11, 19, 37, 55})
 _ACTION: Final = "Use a route that needs no bonds: atomization, or an enthalpy of formation that is given."
 
 
@@ -102,11 +110,18 @@ def bonding(molecule: Molecule) -> Bonding:
     if molecule.multiplicity is None:
         words = "bonds cannot be counted without the spin multiplicity"
         raise Refused([refuse("no-multiplicity", words, action="Give --multiplicity.")])
-    if not molecule.has_geometry and molecule.n_atoms > 1:
-        raise Refused([refuse("no-geometry", "bonds cannot be found without a geometry", action=_ACTION)])
     numbers = tuple(int(z) for z in molecule.atomic_numbers)
-    xyz = np.ascontiguousarray(molecule.coordinates_A, dtype=float)
-    return _bonding(numbers, xyz.tobytes(), molecule.charge, molecule.multiplicity - 1)
+    return _bonding(numbers, _coordinates(molecule).tobytes(), molecule.charge, molecule.multiplicity - 1)
+
+
+def _coordinates(molecule: Molecule) -> FloatArray:
+    """The geometry, (n, 3) in Å; two atoms without one are bonded all the same."""
+    if molecule.has_geometry:
+        return np.ascontiguousarray(molecule.coordinates_A, dtype=float)
+    if molecule.n_atoms > 2:
+        raise Refused([refuse("no-geometry", "bonds cannot be found without a geometry", action=_ACTION)])
+    along = np.cumsum([covalent_radius_A(int(z)) for z in molecule.atomic_numbers])
+    return np.outer(along, [0.0, 0.0, 1.0])
 
 
 @lru_cache(maxsize=512)
@@ -117,13 +132,13 @@ def _bonding(numbers: tuple[int, ...], coordinates: bytes, charge: int, unpaired
     lengths: FloatArray = np.linalg.norm(x[:, None] - x[None, :], axis=2)
     stretches = lengths / np.add.outer(*2 * [np.array([covalent_radius_A(z) for z in numbers])])
     pairs = _pairs(numbers, bonds(numbers, x), stretches)
+    _possible(numbers, pairs, lengths, stretches)
     _whole(numbers, pairs)
-    _possible(numbers, pairs, lengths)
     frame = Frame(numbers, pairs, charge, unpaired)
     special = _by_orbitals(frame)
     if special:
         return Bonding(numbers, (Bond(0, 1, special),), unpaired, charge, (charge / 2, charge / 2))
-    found = _localised(frame, _structures(frame), lengths, stretches)
+    found = _localised(_solution(frame), lengths, stretches)
     orders = [float(min(o)) if len(o) == 1 else DELOCALISED for o in found.orders]
     _not_too_long(numbers, pairs, orders, lengths, stretches)
     listed = tuple(Bond(i, j, order) for (i, j), order in zip(pairs, orders, strict=True))
@@ -145,17 +160,22 @@ def _unclear(found: str, where: str = "", expected: str = "") -> Refused:
 # --- the graph ----------------------------------------------------------------------------------------------------
 
 
-def _pairs(numbers: tuple[int, ...], bonded: np.ndarray, stretches: FloatArray) -> tuple[tuple[int, int], ...]:
+def _pairs(numbers: tuple[int, ...], bonded: BoolArray, stretches: FloatArray) -> tuple[tuple[int, int], ...]:
     """The bonds, without contacts across a common neighbour where an atom would have too many bonds otherwise."""
     bonded = bonded.copy()
     for i, z in enumerate(numbers):
-        while z != 1 and bonded[i].sum() > max(most_bonds(z), 1):
+        while valence_electrons(z) is not None and bonded[i].sum() > max(most_bonds(z), 1):
             contacts = [int(j) for j in np.flatnonzero(bonded[i]) if (bonded[i] & bonded[j]).any()]
             far = max(contacts, key=lambda j: stretches[i, j], default=i)
-            if stretches[i, far] < CONTACT or numbers[far] == 1:
+            if stretches[i, far] < CONTACT or not _may_be_contact(z, numbers[far]):
                 break
             bonded[i, far] = bonded[far, i] = False
     return tuple((int(i), int(j)) for i, j in np.argwhere(np.triu(bonded)))
+
+
+def _may_be_contact(z1: int, z2: int) -> bool:
+    """Hydrogen between two atoms is a bridge or on its way, unless one of them is a large metal atom as in CsOH."""
+    return 1 not in (z1, z2) or any((valence_electrons(z) or 0) == 2 or z in _ALKALI for z in (z1, z2))
 
 
 def _whole(numbers: tuple[int, ...], pairs: tuple[tuple[int, int], ...]) -> None:
@@ -171,18 +191,34 @@ def _whole(numbers: tuple[int, ...], pairs: tuple[tuple[int, int], ...]) -> None
         raise Refused([refuse("fragments", words, expected="one molecule", action=action)])
 
 
-def _possible(numbers: tuple[int, ...], pairs: tuple[tuple[int, int], ...], lengths: FloatArray) -> None:
-    """Refuse transition metals and atoms with more neighbours than they can bind."""
-    for i, z in enumerate(numbers):
+def _possible(
+    numbers: tuple[int, ...], pairs: tuple[tuple[int, int], ...], lengths: FloatArray, stretches: FloatArray
+) -> None:
+    """Refuse transition metals, atoms with more neighbours than they can bind, and hydrogen between two atoms."""
+    near: list[list[int]] = [[] for _ in numbers]
+    for i, j in pairs:
+        near[i].append(j)
+        near[j].append(i)
+    for i in sorted(range(len(numbers)), key=lambda i: numbers[i] != 1):
+        z = numbers[i]
         if valence_electrons(z) is None:
-            words = "a transition metal has no fixed valence, so its bonds have no order"
+            words = f"{symbol(z)} has no fixed valence, so its bonds have no order"
             raise _unclear(words, _name(numbers, i), "main-group elements")
-        near = [b if a == i else a for a, b in pairs if i in (a, b)]
-        if len(near) > most_bonds(z):
-            shown = ", ".join(f"{_name(numbers, j)} ({lengths[i, j]:.2f} Å)" for j in near)
-            words = f"the atom is near enough to be bonded to {len(near)} others: {shown}"
+        others = near[i] if z != 1 else near[i] + _half_bonded(numbers, near, stretches, i)
+        if len(others) > most_bonds(z):
+            shown = ", ".join(f"{_name(numbers, j)} ({lengths[i, j]:.2f} Å)" for j in others)
+            words = f"the atom is near enough to be bonded to {len(others)} others: {shown}"
             allowed = f"at most {most_bonds(z)} for {symbol(z)} (bridges, clusters and transition states have no Lewis "
             raise _unclear(words, _name(numbers, i), allowed + "structure)")
+
+
+def _half_bonded(numbers: tuple[int, ...], near: list[list[int]], stretches: FloatArray, i: int) -> list[int]:
+    """Non-metal atoms a hydrogen is as near to as it only is on its way to them or from them."""
+    return [
+        j
+        for j, z in enumerate(numbers)
+        if j != i and j not in near[i] and stretches[i, j] < HALF_BONDED and (z == 1 or (valence_electrons(z) or 0) > 3)
+    ]
 
 
 # --- the orders ---------------------------------------------------------------------------------------------------
@@ -204,7 +240,7 @@ def _by_orbitals(frame: Frame) -> float:
     return few if frame.unpaired in (0, 2) else 0.0
 
 
-def _structures(frame: Frame) -> Structures:
+def _solution(frame: Frame) -> Solution:
     electrons = sum(frame.atomic_numbers) - frame.charge
     state = f"charge {frame.charge:+d} and multiplicity {frame.unpaired + 1}"
     if (electrons - frame.unpaired) % 2:
@@ -213,26 +249,34 @@ def _structures(frame: Frame) -> Structures:
     try:
         found = lewis_structures(frame)
     except TooWide:
-        raise _unclear(f"the {len(frame.atomic_numbers)} atoms allow too many Lewis structures to be counted") from None
+        raise _unclear(
+            f"the {len(frame.atomic_numbers)} atoms allow too many Lewis structures to be searched"
+        ) from None
     if found is None:
         atoms = " ".join(_name(frame.atomic_numbers, i) for i, z in enumerate(frame.atomic_numbers) if z != 1)
         raise _unclear(f"no Lewis structure with {state} fits the bonds found between the atoms {atoms or 'H'}")
     return found
 
 
-def _localised(frame: Frame, found: Structures, lengths: FloatArray, stretches: FloatArray) -> Structures:
-    """The one structure whose double bonds are the short bonds, if lengths alternate more than resonance allows."""
+def _localised(solution: Solution, lengths: FloatArray, stretches: FloatArray) -> Structures:
+    """All the best structures, or the one whose double bonds are the short ones if lengths alternate too much."""
+    found, frame = solution.structures(), solution.frame
     varying = [b for b, orders in enumerate(found.orders) if len(orders) > 1]
     if not varying or any(found.orders[b] != {1, 2} for b in varying):
         return found
-    best = best_by_length(frame, [float(stretches[i, j]) for i, j in frame.bonds])
+    best = solution.shortest([float(stretches[i, j]) for i, j in frame.bonds])
+    return best if _alternation_A(frame, best, varying, lengths) > ALTERNATION_A else found
+
+
+def _alternation_A(frame: Frame, one: Structures, varying: list[int], lengths: FloatArray) -> float:
+    """How much longer the single bonds of a structure are than its double bonds, for the pair of elements for which it
+    is least, Å; 0 when no pair of elements has both."""
     kinds: dict[tuple[int, ...], dict[int, list[float]]] = {}
     for b in varying:
         i, j = frame.bonds[b]
         pair = tuple(sorted((frame.atomic_numbers[i], frame.atomic_numbers[j])))
-        kinds.setdefault(pair, {1: [], 2: []})[min(best.orders[b])].append(float(lengths[i, j]))
-    gaps = [np.mean(k[1]) - np.mean(k[2]) for k in kinds.values() if k[1] and k[2]]
-    return best if gaps and min(gaps) > ALTERNATION_A else found
+        kinds.setdefault(pair, {1: [], 2: []})[min(one.orders[b])].append(float(lengths[i, j]))
+    return min((float(np.mean(k[1]) - np.mean(k[2])) for k in kinds.values() if k[1] and k[2]), default=0.0)
 
 
 def _not_too_long(

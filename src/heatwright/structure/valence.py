@@ -1,4 +1,4 @@
-"""What an atom can do in a Lewis structure: bonds, unpaired electrons, vacant orbitals, formal charge, and its cost.
+"""What an atom can do in a Lewis structure: bonds, unpaired electrons, vacant orbitals, formal charge; and its cost.
 
 With V valence electrons, n orbitals of its own, the sum B of its bond orders, u unpaired electrons and w vacant
 orbitals an atom has n − B − u − w lone pairs, and its formal charge is q = V − 2n + B + u + 2w.  A negative w is an
@@ -23,6 +23,7 @@ COST_EXPANSION: Final = 100_000
 ELECTRONEGATIVITY_UNIT: Final = 100
 """Cost of one unit of Pauling's scale; it only orders structures that have the same cost otherwise."""
 HIGHEST_ORDER: Final = 3
+_COST_UNUSUAL: Final = COST_VACANCY + COST_CHARGE
 _NOBLE_GAS_CORES: Final = (86, 54, 36, 18, 10, 2, 0)
 _CHARGES: Final = range(-3, 2)
 _NEUTRAL_POINT: Final = 2.2  # for the noble gases without a value, which have one charge state in every structure
@@ -35,6 +36,25 @@ class AtomState:
     charge: int
     unpaired: int
     cost: int
+
+
+@dataclass(frozen=True, slots=True)
+class Setting:
+    """What else the cost of an atom depends on.
+
+    no_surplus : the molecule carries no negative charge, so a negative atom of group 13 or 14 that has a double
+        bond or two charges can only have come by a lone pair of its neighbour.  That is set behind a vacancy: CF₂,
+        SiCl₂ and HCOH are carbenes with single bonds, while CO and HNC keep their triple bonds.  From germanium on,
+        with its inert pair, no triple bond is made so either: PbO has a double bond.
+    bent : the atom has two neighbours, both in one ring of at most five atoms.  Two double bonds or a triple bond there
+        are set behind a vacancy too: cyclopropenylidene is a carbene, not an allene.
+    """
+
+    no_surplus: bool = True
+    bent: bool = False
+
+
+_PLAIN: Final = Setting()
 
 
 @cache
@@ -77,12 +97,10 @@ def _expansion(z: int, V: int) -> int:
 
 
 @cache
-def states(z: int, bond_sum: int, double_carbanion: bool = False) -> tuple[AtomState, ...]:
-    """Every way to complete an atom of element z whose bond orders add up to ``bond_sum``; empty when there is none.
+def states(z: int, degree: int, above: int = 0, setting: Setting = _PLAIN) -> tuple[AtomState, ...]:
+    """Every way to complete an atom of element z with ``degree`` bonds whose orders add up to degree + ``above``.
 
-    double_carbanion : the atom is of group 14 and has exactly one double bond, in a molecule without negative charge.
-        A negative charge on it can only have come with a lone pair of a neighbour, and is set behind a vacancy: CF₂,
-        SiCl₂ and HCOH are carbenes with single bonds, while CO and HNC keep their triple bonds.
+    Empty when there is none.
 
     >>> states(6, 4), [(s.charge, s.unpaired) for s in states(6, 3)]
     ((AtomState(charge=0, unpaired=0, cost=0),), [(-1, 0), (1, 0), (0, 1)])
@@ -90,14 +108,23 @@ def states(z: int, bond_sum: int, double_carbanion: bool = False) -> tuple[AtomS
     V = valence_electrons(z)
     if V is None:
         return ()
-    n, found = _orbitals(z, V), []
+    B, n, found = degree + above, _orbitals(z, V), []
     for u in range(4):
         for w in range(-_expansion(z, V), n + 1):
-            q = V - 2 * n + bond_sum + u + 2 * w
-            if n - bond_sum - u - w >= 0 and q in _CHARGES:
-                shifted = COST_VACANCY + COST_CHARGE if double_carbanion and q < 0 else 0
-                found.append(AtomState(q, u, shifted + _cost(z, q, w)))
+            q = V - 2 * n + B + u + 2 * w
+            if n - B - u - w >= 0 and q in _CHARGES:
+                unusual = _COST_UNUSUAL if _unusual(z, q, above, setting) else 0
+                found.append(AtomState(q, u, unusual + _cost(z, q, w)))
     return tuple(found)
+
+
+def _unusual(z: int, q: int, above: int, setting: Setting) -> bool:
+    """Whether an atom of group 13 or 14 is as :class:`Setting` says it should rather not be."""
+    V = valence_electrons(z)
+    if V not in (3, 4):
+        return False
+    donated_to = q < 0 and (above == 1 or (above > 1 and z > 18) or (V == 4 and q < -1))
+    return (setting.no_surplus and donated_to) or (V == 4 and setting.bent and above == 2)
 
 
 def _cost(z: int, q: int, w: int) -> int:
