@@ -4,8 +4,8 @@ Thresholds, each relative (Cp: to Cp; H/T: to Cp; S: to S + Cp), with their sour
 
 - Cantera 3.2.0 warns at load from 1 % in Cp, 0.1 % in H and 0.1 % in S (its behaviour, found by bisection).
 - A flow solver finds T from H by Newton's method to a relative tolerance of 1e-4 in T (OpenFOAM's default, from
-  memory); where H jumps by more than 1e-4 Cp T there are enthalpies without a temperature, or with two, and the iteration need
-  not end.  0.1 % in Cp and 0.01 % in S beside it are common practice, without a source.
+  memory); where H jumps by more than 1e-4 Cp T there are enthalpies without a temperature, or with two, and the
+  iteration need not end.  0.1 % in Cp and 0.01 % in S beside it are common practice, without a source.
 - Below 1e-5 in Cp/R, H/RT and S/R a jump is the rounding of the fields.
 - A kink: published fits are rarely smooth (median relative jump of T dCp/dT 3 % in TM-4513); one of half of Cp is seen
   by stiff integrators (common practice, without a source).

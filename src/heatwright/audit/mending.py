@@ -1,8 +1,8 @@
 """Mending an entry: the smooth two-range polynomial closest to what it said, with its own H° and S° at 298.15 K.
 
 Which entries: those whose ranges do not meet (a jump that :mod:`heatwright.audit.joint` warns of) and those of which
-one range is missing.  The heat capacity is fitted as a new entry's is: two quartics with continuous value and slope, with
-the smallest largest deviation from the old ones, each in its own range.  Nothing is extrapolated: where a range is
+one range is missing.  The heat capacity is fitted as a new entry's is: two quartics with continuous value and slope,
+with the smallest largest deviation from the old ones, each in its own range.  Nothing is extrapolated: where a range is
 missing, the new entry ends where the old one did.
 """
 
@@ -32,6 +32,7 @@ _POINTS: Final = 400
 class Mended:
     """An entry's old and new polynomial.
 
+    said : as the entry stands.   old : the same, with the common temperature at which its ranges meet.
     why : what was wrong, in words.
     dcp_R, dcp_at_K : the largest change of Cp/R within the ranges of the old one, and where.
     bound_R : proven lower bound of that change for any smooth two-range polynomial with this common temperature.
@@ -39,6 +40,7 @@ class Mended:
     """
 
     entry: ThermoEntry
+    said: Nasa7
     old: Nasa7
     new: Nasa7
     why: str
@@ -72,7 +74,7 @@ def mend_entry(facts: Facts, why: str) -> Mended | Finding:
     entry, old = facts.entry, facts.polynomial
     if entry.ranges != "both":
         # one quartic on both sides is as smooth as can be; only the text has to say it twice
-        return Mended(entry, old, old, why, 0.0, old.t_low_K, 0.0, _anchor_K(old))
+        return Mended(entry, old, old, old, why, 0.0, old.t_low_K, 0.0, _anchor_K(old))
     elsewhere = meeting_temperature_K(old) if is_broken(old) else None
     source = old if elsewhere is None else replace(old, t_common_K=elsewhere)
     if elsewhere is not None:
@@ -83,7 +85,9 @@ def mend_entry(facts: Facts, why: str) -> Mended | Finding:
     new, bound = _refit(source)
     T, cp_old, cp_new = _both(source, new)
     worst = int(np.abs(cp_new - cp_old).argmax())
-    return Mended(entry, source, new, why, float((cp_new - cp_old)[worst]), float(T[worst]), bound, _anchor_K(source))
+    return Mended(
+        entry, old, source, new, why, float((cp_new - cp_old)[worst]), float(T[worst]), bound, _anchor_K(source)
+    )
 
 
 def mended_note(mended: Mended) -> Finding:
@@ -95,7 +99,7 @@ def mended_note(mended: Mended) -> Finding:
 
 def shown_values(mended: Mended) -> list[tuple[float, str, float, float]]:
     """Rows of (T in K, quantity with unit, old, new) at :data:`SHOWN_K`."""
-    R, old, new = GAS_CONSTANT_J_MOL_K, mended.old, mended.new
+    R, old, new = GAS_CONSTANT_J_MOL_K, mended.said, mended.new
     rows = []
     for T in SHOWN_K:
         if T != STANDARD_TEMPERATURE_K and not new.t_low_K <= T <= new.t_high_K:

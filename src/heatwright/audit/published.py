@@ -16,7 +16,7 @@ from heatwright.audit.facts import Facts
 from heatwright.constants import ATMOSPHERE_PA, BAR_PA, CALORIE_J, GAS_CONSTANT_J_MOL_K
 from heatwright.elements import parse_formula
 from heatwright.findings import Finding
-from heatwright.formation.species_references import reference_species
+from heatwright.formation.species_references import SpeciesReference, reference_species
 from heatwright.resources import data_rows
 
 ATMOSPHERE_SHIFT: Final = GAS_CONSTANT_J_MOL_K * log(ATMOSPHERE_PA / BAR_PA)
@@ -165,6 +165,10 @@ def _enthalpy_unit(facts: Facts, standard: Standard) -> Iterator[Finding]:
             return
 
 
+def _same_species(reference: SpeciesReference, formula: str) -> bool:
+    return reference.dHf298_kJ_mol is not None and parse_formula(reference.formula) == parse_formula(formula)
+
+
 @cache
 def _standards() -> dict[str, Standard]:
     """By name and alias in lower case; enthalpies of the reference species where they are in both tables."""
@@ -172,7 +176,7 @@ def _standards() -> dict[str, Standard]:
     found: dict[str, Standard] = {}
     for row in data_rows("standard_values"):
         reference = references.get(row["name"].casefold())
-        newer = reference is not None and reference.dHf298_kJ_mol is not None and reference.formula == row["formula"]
+        newer = reference is not None and _same_species(reference, row["formula"])
         entry = Standard(
             row["name"],
             row["formula"],

@@ -34,11 +34,10 @@ def _edits(file: EntryFile, m: Mended) -> Iterator[Edit]:
         return
     if m.new is m.old:
         yield from _copied_row(file, m)
-        rows, spans = (), ()
-    for row, places in zip(rows, spans, strict=True):
-        for value, span in zip(row, places, strict=True):
-            if not _says(file, span, value):
-                yield span, _number(file, value)
+    else:
+        for row, places in zip(rows, spans, strict=True):
+            changed = zip(row, places, strict=True)
+            yield from ((span, _number(file, value)) for value, span in changed if not _says(file, span, value))
     temperatures = (m.new.t_low_K, m.new.t_common_K, m.new.t_high_K)
     for i, (value, span) in enumerate(zip(temperatures, m.entry.temperature_spans, strict=True)):
         # a blank common temperature that was taken from the head stays blank as long as it is the same
