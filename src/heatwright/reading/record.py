@@ -8,7 +8,8 @@ from typing import Final, cast
 from heatwright.findings import Finding, note, refusals, refuse, warn
 from heatwright.polynomial.nasa7 import Coefficients, Nasa7
 from heatwright.reading.entry_file import Ranges, Span, ThermoEntry, split_common_K
-from heatwright.reading.record_head import Head, read_head, together
+from heatwright.reading.record_head import read_head
+from heatwright.reading.record_line import Head, together
 from heatwright.reading.record_numbers import WIDTH, Field, fields_of, number
 from heatwright.reading.yaml_nodes import with_caret
 
