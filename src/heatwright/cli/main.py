@@ -10,10 +10,12 @@ from typing import NoReturn
 import click
 
 from heatwright import __version__
+from heatwright.cli.audit import audit
 from heatwright.cli.compare import compare
 from heatwright.cli.crosscheck import crosscheck
 from heatwright.cli.entry import entry
 from heatwright.cli.explain import explain
+from heatwright.cli.mend import mend
 from heatwright.cli.reactions import reactions
 from heatwright.cli.references import references
 from heatwright.cli.rotors import rotors
@@ -30,7 +32,7 @@ INTERRUPTED = 130
 SECTIONS = {
     "One molecule": ("survey", "table", "entry", "rotors"),
     "A mechanism": ("crosscheck", "compare"),
-    "Existing entries": ("splice",),
+    "Existing entries": ("audit", "mend", "splice"),
     "Looking things up": ("scales", "references", "reactions", "explain", "samples"),
 }
 """How ``--help`` groups the commands."""
@@ -66,8 +68,21 @@ def cli() -> None:
 
 
 for _command in (
-    survey, table, entry, rotors, crosscheck, compare, splice, scales, references, reactions, explain, samples,
-):  # fmt: skip
+    survey,
+    table,
+    entry,
+    rotors,
+    crosscheck,
+    compare,
+    audit,
+    mend,
+    splice,
+    scales,
+    references,
+    reactions,
+    explain,
+    samples,
+):
     cli.add_command(_command)
 
 

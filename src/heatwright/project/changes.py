@@ -265,7 +265,7 @@ def _pressures(old: ThermoSet, new: ThermoSet, common: list[str]) -> list[Findin
         return []
     found = "the file does not say for which standard pressure it is, and the other side does"
     action = "Entropies were compared as they stand; 1 bar and 1 atm differ by 0.109 J/mol/K."
-    return [note("pressure-unknown", found, where=silent[0].path, action=action)]
+    return [note("pressure-not-stated", found, where=silent[0].path, action=action)]
 
 
 def _zeros_of_elements(changes: list[Change], tolerance: Tolerance) -> list[Finding]:

@@ -112,7 +112,7 @@ def _check_pressure(chosen: list[Thermo], file: EntryFile, said_Pa: float | None
     which = "the file" if theirs is None else "the release"
     found = f"{which} does not say for which standard pressure its entries are; {mine or theirs:g} Pa was taken"
     action = "1 bar and 1 atm differ by 0.109 J/mol/K in every entropy."
-    return [note("pressure-unknown", found, where=file.path, action=action)]
+    return [note("pressure-not-stated", found, where=file.path, action=action)]
 
 
 def file_pressure_Pa(file: EntryFile, said_Pa: float | None = None) -> float | None:
@@ -149,7 +149,7 @@ def _unfit(thermo: Thermo, entries: tuple[ThermoEntry, ...], file: EntryFile) ->
     if len(entries) > 1:
         lines = ", ".join(str(e.lines[0]) for e in entries)
         found = f"{thermo.name} is there {len(entries)} times, in lines {lines}"
-        yield refuse("entry-twice", found, where=where, action="Take out all but one of them first.")
+        yield refuse("duplicate-entry", found, where=where, action="Take out all but one of them first.")
         return
     entry = entries[0]
     if entry.polynomial is None:
@@ -178,7 +178,7 @@ def _not_addable(thermo: Thermo, file: EntryFile, add: bool, asked: bool) -> Ite
         near = next((e.name for e in file.entries if e.name.upper() == thermo.name.upper()), "")
         also = f" It has {near}: names are case-sensitive." if near else ""
         action = f"Say --add to put it in.{also}"
-        yield refuse("entry-absent", f"the file has no entry of {thermo.name}", where=file.path, action=action)
+        yield refuse("no-such-entry", f"the file has no entry of {thermo.name}", where=file.path, action=action)
     elif add and file.format == "nasa7":
         yield from (f.at(thermo.where) for f in FORMATS["nasa7"].name_findings(thermo.name))
 

@@ -148,7 +148,7 @@ def _twice(file: EntryFile, entry: ThermoEntry, first: Thermo) -> Finding:
     same = first.polynomial == entry.polynomial
     found = f"{entry.name} is there a second time, {'with the same' if same else 'with other'} coefficients"
     action = f"The first one ({first.where}) was compared; readers differ in the one they take."
-    return warn("entry-twice", found, where=f"{file.path}:{entry.lines[0]}", action=action)
+    return warn("duplicate-entry", found, where=f"{file.path}:{entry.lines[0]}", action=action)
 
 
 # --- releases and lock files ---------------------------------------------------------------------------------------

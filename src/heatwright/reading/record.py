@@ -8,7 +8,8 @@ from typing import Final, cast
 from heatwright.findings import Finding, note, refusals, refuse, warn
 from heatwright.polynomial.nasa7 import Coefficients, Nasa7
 from heatwright.reading.entry_file import Ranges, Span, ThermoEntry, split_common_K
-from heatwright.reading.record_head import Head, read_head, together
+from heatwright.reading.record_head import read_head
+from heatwright.reading.record_line import Head, together
 from heatwright.reading.record_numbers import WIDTH, Field, fields_of, number
 from heatwright.reading.yaml_nodes import with_caret
 
@@ -204,15 +205,17 @@ def _one_of_two(entry: ThermoEntry, head: Head, given: Coefficients, missing: st
     whole = end == t_high and start == t_low
     make = note if whole else warn
     said = make(
-        "range-missing",
+        "one-range" if whole else "range-missing",
         f"the {missing} range has no coefficients, so the entry ends with {start:g} to {end:g} K"
         if not whole
         else f"the {missing} range has no coefficients and no temperatures; the other one is the whole entry",
         where=f"line {entry.lines[0]}",
-        action="Readers take the missing coefficients as zeros, or stop. `heatwright mend` makes two ranges of what "
+        action=""
+        if whole
+        else "Readers take the missing coefficients as zeros, or stop. `heatwright mend` makes two ranges of what "
         "is there.",
     )
-    ranges: Ranges = "low" if missing == "high" else "high"
+    ranges: Ranges = "one" if whole else "low" if missing == "high" else "high"
     polynomial = Nasa7(start, split_common_K(start, end), end, given, given)
     return replace(entry, polynomial=polynomial, ranges=ranges, findings=(*entry.findings, said))
 

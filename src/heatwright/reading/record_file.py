@@ -7,9 +7,10 @@ from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
 from typing import Final
 
-from heatwright.findings import Finding, note, refuse, warn
+from heatwright.findings import Finding, refuse, warn
 from heatwright.reading.entry_file import PassedOver, ThermoEntry, decoded
 from heatwright.reading.record import Line, Record, broken_record, read_record
+from heatwright.reading.record_faults import not_a_first, not_ascii, stray, wrong_line
 from heatwright.reading.yaml_nodes import with_caret
 
 _HEADER = re.compile(r"\s*THER(?:MO)?(?P<all>\s+ALL)?(?P<nine>\s+NASA9)?(?:\s+ALL)?\s*(?:!.*)?", re.IGNORECASE)
@@ -219,16 +220,16 @@ class _Walk:
         self.i += 1
         if _is_numeric(line):
             if not self.stray_said and not open_end:
-                self.result.findings.append(_stray(line))
+                self.result.findings.append(stray(line))
                 self.stray_said = True
             return
         following = self._next_content(self.i)
         if following is not None and _is_numeric(self.lines[following]):
             last = self._swallow(line)
             name = (line.text.split() or [""])[0]
-            self.result.entries.append(broken_record(line, last, lead, name, _not_a_first(line)))
+            self.result.entries.append(broken_record(line, last, lead, name, not_a_first(line)))
         elif not open_end:
-            self.result.findings.append(_not_a_first(line))
+            self.result.findings.append(not_a_first(line))
 
     def _record(self, first: Line, lead: tuple[int, int]) -> None:
         self.i += 1
@@ -239,7 +240,7 @@ class _Walk:
             line = None if at is None else self.lines[at]
             if line is None or at is None or _digit(line) != digit or not _belongs(line):
                 last = self._swallow(lines[-1] if lines else first)
-                found = _wrong_line(line, digit, first)
+                found = wrong_line(line, digit, first)
                 name = (first.text[:24].split() or [""])[0]
                 self.result.entries.append(broken_record(first, last, lead, name, found))
                 return
@@ -247,7 +248,7 @@ class _Walk:
             self.i = at + 1
         record = Record(first, further, lines[0], lines[1], lines[2], lead)
         entry = read_record(record, self.result.defaults_K)
-        said = _not_ascii(record)
+        said = not_ascii(record)
         if said is not None:
             entry = replace(entry, findings=(*entry.findings, said))
         self.result.entries.append(entry)
@@ -284,81 +285,4 @@ def _three(text: str) -> tuple[float, float, float] | None:
     parts = [text[i : i + 10].strip() for i in (0, 10, 20)]
     if not text[30:].strip() and all(re.fullmatch(r"\d+\.\d*", p) for p in parts):
         return float(parts[0]), float(parts[1]), float(parts[2])
-    return None
-
-
-# --- what is wrong with a line -------------------------------------------------------------------------------------
-
-
-def _not_a_first(line: Line) -> Finding:
-    """A finding that says why *line* is not the first line of a record."""
-    expected = "the first line of a record, with the digit 1 in column 80"
-    text = line.text.rstrip()
-    where = f"line {line.number}"
-    if "\t" in text:
-        column = text.index("\t") + 1
-        found, where = "a tab stands in the line, so its columns are not where they seem", f"{where}:{column}"
-        action = "Replace the tab by blanks up to the next field."
-    elif len(text) < 80:
-        column = max(len(text), 1)
-        last = f" (it ends with {text[-1]!r} in column {len(text)})" if text else ""
-        found = f"the line has {len(text)} columns{last}"
-        action = "A column is missing before it, or the digit is: give every field its width."
-        where = f"{where}:{column}"
-    else:
-        column = 80
-        found = f"column 80 holds {_digit(line)!r}"
-        action = "The fields before it may be shifted, or the digit is missing."
-        where = f"{where}:80"
-    said = refuse("record-lines", found, where=where, expected=expected, action=action)
-    return said.shown(with_caret(line.text, column))
-
-
-def _wrong_line(line: Line | None, digit: str, first: Line) -> Finding:
-    name = (first.text[:24].split() or [""])[0]
-    expected = f"line {digit} of the record of {name}, with {digit} in column 80"
-    if line is None:
-        found, where = f"the file ends inside the record of {name}", f"line {first.number}"
-        return refuse("record-lines", found, where=where, expected=expected, action="Fetch the entry again.")
-    got = _digit(line)
-    where = f"line {line.number}:80"
-    if "\t" in line.text:
-        found, action = "a tab stands in the line, so its columns are not where they seem", "Replace it by blanks."
-        where = f"line {line.number}:{line.text.index(chr(9)) + 1}"
-    elif got and got in "1234":
-        found = f"line {got} of a record stands here"
-        action = "Lines are missing or out of order; fetch the entry again."
-    else:
-        found = f"column 80 holds {got!r}" if got else f"the line has {len(line.text.rstrip())} columns"
-        action = "Columns are shifted, or the digit is missing."
-    column = min(80, max(len(line.text), 1))
-    said = refuse("record-lines", found, where=where, expected=expected, action=action)
-    return said.shown(with_caret(line.text, column))
-
-
-def _stray(line: Line) -> Finding:
-    said = refuse(
-        "record-lines",
-        "a line of coefficients stands outside any record",
-        where=f"line {line.number}",
-        expected="the first line of a record before it",
-        action="Its record's first line is missing or unreadable.",
-    )
-    return said.shown(with_caret(line.text, 1, 15))
-
-
-def _not_ascii(record: Record) -> Finding | None:
-    """A letter outside ASCII: one column here, several for readers that count bytes, none for those that drop it."""
-    for line in (record.first, record.second, record.third, record.fourth):
-        text = line.text[:80]
-        if not text.isascii():
-            column = next(i for i, c in enumerate(text, 1) if not c.isascii())
-            make = warn if line is record.first else note
-            said = make(
-                "record-ascii",
-                f"column {column} holds {text[column - 1]!r}, which is no ASCII character",
-                where=f"line {line.number}:{column}",
-                action="It was counted as one column; other readers shift everything after it. Replace it.",
-            )
-            return said.shown(with_caret(line.text, column))
     return None

@@ -6,6 +6,7 @@ import re
 from typing import Final
 
 from heatwright.reading.yaml_nodes import Mapping, Node, Scalar, Sequence, Text
+from heatwright.reading.yaml_text import folded
 
 UNREADABLE: Final = "yaml-unreadable"
 DEEPEST: Final = 60
@@ -56,26 +57,6 @@ def quoted(source: Text, at: int) -> Scalar:
     if source.text[at] == "'":
         return Scalar(folded(match[1].replace("''", "'")), True, at, match.end())
     return Scalar(_unescaped(source, match[1], at), True, at, match.end())
-
-
-def folded(text: str) -> str:
-    """Lines of one scalar as YAML joins them: a line end is a blank, an empty line a line end.
-
-    >>> folded("one\\n  two\\n\\n  three")
-    'one two\\nthree'
-    """
-    if "\n" not in text:
-        return text
-    first, *rest = text.split("\n")
-    lines = [first.rstrip(" \t"), *(line.strip(" \t") for line in rest[:-1]), rest[-1].lstrip(" \t")]
-    out, empty = lines[0], 0
-    for line in lines[1:-1]:
-        if not line:
-            empty += 1
-            continue
-        out += ("\n" * empty or " ") + line
-        empty = 0
-    return out + ("\n" * empty or " ") + lines[-1]
 
 
 def unreadable_start(source: Text, at: int) -> None:

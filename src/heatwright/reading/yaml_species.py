@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterator
 from dataclasses import dataclass, field
 from typing import Final
 
@@ -14,13 +13,13 @@ from heatwright.reading.compositions import element_symbol
 from heatwright.reading.entry_file import PassedOver, Ranges, ThermoEntry, split_common_K
 from heatwright.reading.record import all_zero
 from heatwright.reading.yaml_nodes import Mapping, Node, Scalar, Sequence, Text, with_caret
+from heatwright.reading.yaml_phases import phase_letters
 from heatwright.reading.yaml_subset import yaml_document
 
 CODE: Final = "yaml-entry-wrong"
 _NUMBER = re.compile(r"[-+]?(?:\d+\.?\d*|\.\d+)(?:[eE][-+]?\d+)?")
 _WITH_UNIT = re.compile(rf"({_NUMBER.pattern})\s*(\S*)")
 _PRESSURE_PA: Final = {"Pa": 1.0, "": 1.0, "kPa": 1.0e3, "MPa": 1.0e6, "bar": BAR_PA, "atm": ATMOSPHERE_PA}
-_GAS: Final = frozenset({"ideal-gas", "Redlich-Kwong", "Peng-Robinson", "plasma", "ideal-gas-VPSS"})
 
 
 @dataclass(slots=True)
@@ -42,7 +41,7 @@ def scan_yaml(text: str, offsets: tuple[int, ...], encoding: str = "utf-8") -> Y
     """
     document = yaml_document(text, skip=lambda key: key == "reactions" or key.endswith("-reactions"))
     scan = YamlScan()
-    reader = _Species(Text.of(text), offsets, encoding, _phase_letters(document), scan)
+    reader = _Species(Text.of(text), offsets, encoding, phase_letters(document), scan)
     for section, node in document.items.items():
         if isinstance(node, Sequence) and _is_species_section(section, node):
             for i, item in enumerate(node.items):
@@ -55,42 +54,6 @@ def _is_species_section(name: str, node: Sequence) -> bool:
         return False
     maps = [item for item in node.items if isinstance(item, Mapping)]
     return any("thermo" in m.items and isinstance(m.items["thermo"], Mapping) for m in maps)
-
-
-def _phase_letters(document: Mapping) -> dict[str, str]:
-    """The phase of each species that the file's own phases name: ``G`` for a gas, ``S`` for anything condensed."""
-    letters: dict[str, str] = {}
-    phases = document.items.get("phases")
-    for phase in phases.items if isinstance(phases, Sequence) else ():
-        if not isinstance(phase, Mapping):
-            continue
-        thermo = phase.items.get("thermo")
-        letter = "G" if isinstance(thermo, Scalar) and thermo.text in _GAS else "S"
-        for name in _names_in(phase.items.get("species"), document):
-            letters.setdefault(name, letter)
-    return letters
-
-
-def _names_in(node: Node | None, document: Mapping) -> Iterator[str]:
-    """Species that a phase lists: names, ``all``, or sections with names or ``all``."""
-    if isinstance(node, Scalar):
-        if node.text == "all":
-            yield from _names_of_section(document.items.get("species"))
-    elif isinstance(node, Sequence):
-        for item in node.items:
-            if isinstance(item, Scalar):
-                yield item.text
-            elif isinstance(item, Mapping):
-                for section, names in item.items.items():
-                    whole = isinstance(names, Scalar) and names.text == "all"
-                    yield from _names_of_section(document.items.get(section)) if whole else _names_in(names, document)
-
-
-def _names_of_section(node: Node | None) -> Iterator[str]:
-    for item in node.items if isinstance(node, Sequence) else ():
-        name = item.items.get("name") if isinstance(item, Mapping) else None
-        if isinstance(name, Scalar):
-            yield name.text
 
 
 class _Species:

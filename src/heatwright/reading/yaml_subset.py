@@ -10,8 +10,9 @@ from __future__ import annotations
 import re
 from collections.abc import Callable
 
-from heatwright.reading.yaml_flow import DEEPEST, UNREADABLE, flow_node, folded, quoted, unreadable_start
+from heatwright.reading.yaml_flow import DEEPEST, UNREADABLE, flow_node, quoted, unreadable_start
 from heatwright.reading.yaml_nodes import Mapping, Node, Scalar, Sequence, Text
+from heatwright.reading.yaml_text import block_text, folded
 
 _KEY = re.compile(r"(?:[^\s,\[\]{}#&*!|>'\"%@`\-?:]|[-?:](?=\S))(?:[^\n:#]|:(?=\S)|(?<=\S)#)*?(?=[ \t]*:(?:[ \t\n]|$))")
 _QUOTED_KEY = re.compile(r"(?:'(?:[^'\n]|'')*'|\"(?:[^\"\\\n]|\\.)*\")(?=[ \t]*:(?:[ \t\n]|$))")
@@ -293,34 +294,4 @@ class _Blocks:
             self.at = min(stop + 1, len(self.text))
             if stop == len(self.text):
                 break
-        return Scalar(_block_text(lines, self.text[start] == ">", chomp), True, start, end)
-
-
-def _block_text(lines: list[str], fold: bool, chomp: str) -> str:
-    """The text of a block scalar's lines; ``-`` drops, ``+`` keeps the line ends at its end."""
-    content = len(lines)
-    while content and not lines[content - 1]:
-        content -= 1
-    body = _folded_block(lines[:content]) if fold else "\n".join(lines[:content])
-    if chomp == "-" or (not content and chomp != "+"):
-        return body
-    return body + "\n" * (1 + len(lines) - content if chomp == "+" else 1)
-
-
-def _folded_block(lines: list[str]) -> str:
-    """Lines of a ``>`` scalar: line ends become blanks, but not around empty and more indented lines."""
-    out = ""
-    empty = 0
-    previous = ""
-    for i, line in enumerate(lines):
-        if not line:
-            empty += 1
-            continue
-        if i == empty and not out:
-            out = "\n" * empty + line
-        elif previous[:1] in (" ", "\t") or line[:1] in (" ", "\t"):
-            out += "\n" * (empty + 1) + line
-        else:
-            out += ("\n" * empty or " ") + line
-        empty, previous = 0, line
-    return out
+        return Scalar(block_text(lines, self.text[start] == ">", chomp), True, start, end)

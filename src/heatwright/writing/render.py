@@ -101,8 +101,8 @@ def check_target(path: str, force: bool) -> None:
 
 
 def write_text(path: str, text: str) -> None:
-    """Writes *text* to *path* (UTF-8, ``\\n``), whole or not at all.  Raises as :func:`write_bytes` does."""
-    write_bytes(path, text.encode())
+    """Writes *text* to *path* (UTF-8, ``\\n``) as :func:`write_bytes` does."""
+    write_bytes(path, text.encode("utf-8"))
 
 
 def write_bytes(path: str, data: bytes) -> None:
