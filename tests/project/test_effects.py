@@ -89,7 +89,7 @@ def test_exactly_the_reactions_it_is_in(name: str, old: ThermoSet, mechanism: Me
     assert sorted(r.reaction.number for r in effect.reactions) == expected
     assert expected
     # an inert partner stands on both sides of CH2(S) + AR <=> CH2 + AR, and Kc does not notice it
-    alike = [r for r in effect.reactions if r.remarks]
+    alike = [r for r in effect.reactions if any("both sides" in words for words in r.remarks)]
     assert all(set(r.dlnKc) == {0.0} for r in alike)
     assert len(alike) == sum(r.reactants.get(name) == r.products.get(name) for r in reactions if name in r.reactants)
 
