@@ -85,7 +85,9 @@ def _entry(
     findings = [*entry.findings, *composition_findings(entry), *together]
     if facts is None:
         return AuditedEntry(entry, None, tuple(findings))
-    findings += [*joint_findings(facts), *physics_findings(facts), *published_findings(facts)]
+    findings += [*joint_findings(facts), *physics_findings(facts)]
+    if not any(f.code == "unit-mistake" for f in findings):
+        findings += published_findings(facts)
     residual = None if against is None else compare_release(facts, against)
     comparisons = compare_published(facts) if published else ()
     if residual is not None:
