@@ -75,9 +75,19 @@ def fingerprint(atomic_numbers: Sequence[int] | NDArray[np.int64], bonded: NDArr
     >>> fingerprint([1, 6, 7], nitrile) == fingerprint([1, 6, 7], isonitrile)
     False
     """
-    labels = [symbol(int(z)) for z in atomic_numbers]
-    neighbours = [np.flatnonzero(row) for row in bonded]
+    return tuple(sorted(neighbourhoods([symbol(int(z)) for z in atomic_numbers], bonded)))
+
+
+def neighbourhoods(kinds: Sequence[str], bonded: NDArray[np.bool_]) -> list[str]:
+    """A text for each atom, equal for atoms with the same bonds to the same kinds of atoms, however far one goes.
+
+    >>> geometry = np.array([[0.0, 0, 0], [0, 0.76, 0.59], [0, -0.76, 0.59]])
+    >>> water = neighbourhoods(["O", "H", "H"], bonds([8, 1, 1], geometry))
+    >>> water[1] == water[2], water[0] == water[1]
+    (True, False)
+    """
+    labels, neighbours = list(kinds), [np.flatnonzero(row) for row in bonded]
     for _ in range(min(len(labels), 20)):
         wider = [f"{labels[i]}({','.join(sorted(labels[int(j)] for j in near))})" for i, near in enumerate(neighbours)]
         labels = [blake2b(text.encode(), digest_size=8).hexdigest() for text in wider]
-    return tuple(sorted(labels))
+    return labels
