@@ -19,7 +19,12 @@ if TYPE_CHECKING:
     from heatwright.errors import HeatwrightError, UsageError
     from heatwright.findings import Finding, Refused
     from heatwright.formation.atomization import collect_atoms, formation_by_atomization
+    from heatwright.formation.choices import EnergyChoices
     from heatwright.formation.formation import Formation, formation_given, parse_enthalpy
+    from heatwright.formation.reactions import find_reactions
+    from heatwright.formation.reference_set import ReferenceSet, collect_references
+    from heatwright.formation.routes import RouteRequest, formation_of
+    from heatwright.formation.species_references import reference_species
     from heatwright.molecule import DiatomicConstants, Level, Molecule
     from heatwright.partition.choices import ModelOptions
     from heatwright.partition.contribution import Contribution, LnQ
@@ -35,6 +40,7 @@ if TYPE_CHECKING:
     from heatwright.reading.single_point import with_energy
     from heatwright.reading.torsion_scans import read_torsion
     from heatwright.scales import PublishedFactor, ScaleChoice, choose_published, published_factors
+    from heatwright.structure.bond_orders import bonding
     from heatwright.structure.isotopes import parse_isotope, with_isotopes
     from heatwright.structure.modes import projected_modes
     from heatwright.structure.symmetry import Symmetry, symmetry
@@ -44,6 +50,7 @@ if TYPE_CHECKING:
 _HOME = {
     "Contribution": "partition.contribution",
     "DiatomicConstants": "molecule",
+    "EnergyChoices": "formation.choices",
     "Entry": "entry",
     "Finding": "findings",
     "FitOptions": "entry",
@@ -58,20 +65,26 @@ _HOME = {
     "Molecule": "molecule",
     "Nasa7": "polynomial.nasa7",
     "PublishedFactor": "scales",
+    "ReferenceSet": "formation.reference_set",
     "Refused": "findings",
+    "RouteRequest": "formation.routes",
     "ScaleChoice": "scales",
     "Symmetry": "structure.symmetry",
     "ThermoModel": "partition.model",
     "ThermoTable": "partition.table",
     "UsageError": "errors",
+    "bonding": "structure.bond_orders",
     "build_model": "partition.model",
     "choose_published": "scales",
     "collect_atoms": "formation.atomization",
+    "collect_references": "formation.reference_set",
     "entries_context": "writing.context",
+    "find_reactions": "formation.reactions",
     "fit_nasa7": "polynomial.fit",
     "fit_quality": "polynomial.quality",
     "formation_by_atomization": "formation.atomization",
     "formation_given": "formation.formation",
+    "formation_of": "formation.routes",
     "make_entry": "entry",
     "mixture_model": "partition.mixing",
     "parse_enthalpy": "formation.formation",
@@ -81,6 +94,7 @@ _HOME = {
     "published_factors": "scales",
     "read_output": "reading.outputs",
     "read_torsion": "reading.torsion_scans",
+    "reference_species": "formation.species_references",
     "render_format": "writing.render",
     "symmetry": "structure.symmetry",
     "with_energy": "reading.single_point",
@@ -91,6 +105,7 @@ _HOME = {
 __all__ = [
     "Contribution",
     "DiatomicConstants",
+    "EnergyChoices",
     "Entry",
     "Finding",
     "FitOptions",
@@ -105,21 +120,27 @@ __all__ = [
     "Molecule",
     "Nasa7",
     "PublishedFactor",
+    "ReferenceSet",
     "Refused",
+    "RouteRequest",
     "ScaleChoice",
     "Symmetry",
     "ThermoModel",
     "ThermoTable",
     "UsageError",
     "__version__",
+    "bonding",
     "build_model",
     "choose_published",
     "collect_atoms",
+    "collect_references",
     "entries_context",
+    "find_reactions",
     "fit_nasa7",
     "fit_quality",
     "formation_by_atomization",
     "formation_given",
+    "formation_of",
     "make_entry",
     "mixture_model",
     "parse_enthalpy",
@@ -129,6 +150,7 @@ __all__ = [
     "published_factors",
     "read_output",
     "read_torsion",
+    "reference_species",
     "render_format",
     "symmetry",
     "with_energy",

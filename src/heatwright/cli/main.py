@@ -10,8 +10,11 @@ from typing import NoReturn
 import click
 
 from heatwright import __version__
+from heatwright.cli.crosscheck import crosscheck
 from heatwright.cli.entry import entry
 from heatwright.cli.explain import explain
+from heatwright.cli.reactions import reactions
+from heatwright.cli.references import references
 from heatwright.cli.rotors import rotors
 from heatwright.cli.samples import samples
 from heatwright.cli.scales import scales
@@ -24,7 +27,8 @@ INTERRUPTED = 130
 
 SECTIONS = {
     "One molecule": ("survey", "table", "entry", "rotors"),
-    "Looking things up": ("scales", "explain", "samples"),
+    "A mechanism": ("crosscheck",),
+    "Looking things up": ("scales", "references", "reactions", "explain", "samples"),
 }
 """How ``--help`` groups the commands."""
 
@@ -58,7 +62,7 @@ def cli() -> None:
     """
 
 
-for _command in (survey, table, entry, rotors, scales, explain, samples):
+for _command in (survey, table, entry, rotors, scales, references, reactions, crosscheck, explain, samples):
     cli.add_command(_command)
 
 

@@ -40,7 +40,7 @@ units_option = click.option(
 )
 
 
-_MODEL_OPTIONS = (
+_STATE_OPTIONS = (
     click.option(
         "--pressure",
         type=click.Choice(["1bar", "1atm"]),
@@ -48,6 +48,8 @@ _MODEL_OPTIONS = (
         show_default=True,
         help="Standard pressure.",
     ),
+)
+_SCALING_OPTIONS = (
     click.option("--frequency-scale", type=float, metavar="X", help="Factor on the wavenumbers in Cp, H and S."),
     click.option("--zpe-scale", type=float, metavar="X", help="Factor on the zero-point energy."),
     click.option(
@@ -58,6 +60,8 @@ _MODEL_OPTIONS = (
     click.option(
         "--anharmonic", is_flag=True, help="The output's anharmonic fundamentals and zero-point energy, unscaled."
     ),
+)
+_TREATMENT_OPTIONS = (
     click.option(
         "--low-modes",
         type=click.Choice(["harmonic", "floor", "interpolate"]),
@@ -113,6 +117,8 @@ _MODEL_OPTIONS = (
         metavar="ATOM=ISOTOPE",
         help="Another isotope: 2=2H (second atom), H=D (every H), 1=13C; wavenumbers anew. Can be repeated.",
     ),
+)
+_ENERGY_OPTIONS = (
     click.option(
         "--energy",
         "energies",
@@ -121,6 +127,8 @@ _MODEL_OPTIONS = (
         metavar="FILE",
         help="Output of a single point at the same geometry that gives the energy; once for each output.",
     ),
+)
+_MIXTURE_OPTIONS = (
     click.option(
         "--conformer",
         "conformers",
@@ -136,13 +144,15 @@ _MODEL_OPTIONS = (
         'conformers=1" (relative; cutoff of low modes in 1/cm, conformers in kJ/mol); the others by '
         "default.",
     ),
+)
+_READING_OPTIONS = (
     click.option("--charge", type=int, metavar="Q", help="Instead of the output's."),
     click.option("--multiplicity", type=click.IntRange(min=1), metavar="M", help="Instead of the output's."),
     click.option("--job", type=click.IntRange(min=1), metavar="N", help="One of several jobs in a file."),
     click.option(
         "--accept",
         multiple=True,
-        type=click.Choice(["solvent", "field", "constraints", "excited-state", "gradient"]),
+        type=click.Choice(["solvent", "field", "constraints", "excited-state", "gradient", "energy", "bonds"]),
         help="Use an output that is refused for this; recorded as a warning. Can be repeated.",
     ),
     click.option("--accept-gradient", is_flag=True, help="The same as --accept gradient."),
@@ -156,9 +166,26 @@ _MODEL_OPTIONS = (
 )
 
 
+_MODEL_OPTIONS = (
+    *_STATE_OPTIONS,
+    *_SCALING_OPTIONS,
+    *_TREATMENT_OPTIONS,
+    *_ENERGY_OPTIONS,
+    *_MIXTURE_OPTIONS,
+    *_READING_OPTIONS,
+)
+
+
 def model_options(command: F) -> F:
     """The options that choose how a molecule becomes a model."""
     for option in reversed(_MODEL_OPTIONS):
+        command = option(command)
+    return command
+
+
+def target_options(command: F) -> F:
+    """The options that choose how an output becomes an energy at 0 K."""
+    for option in reversed((*_SCALING_OPTIONS, *_ENERGY_OPTIONS, *_READING_OPTIONS)):
         command = option(command)
     return command
 
@@ -196,6 +223,23 @@ def taken_reading(options: dict[str, Any]) -> Reading:
         accept_imaginary_cm1=imaginary,
         torsions=bool(options["torsions"]),
     )
+
+
+def reading_of_target(options: dict[str, Any]) -> tuple[Reading, ModelOptions]:
+    """What target_options say: how to read the output, and the choices for its zero-point energy."""
+    from heatwright.partition.choices import ModelOptions
+
+    energies = taken_energies(options, 1)
+    reading = Reading(
+        options["job"],
+        options["charge"],
+        options["multiplicity"],
+        accept=(*options["accept"], *(["gradient"] if options["accept_gradient"] else [])),
+        accept_imaginary_cm1=options["accept_imaginary"],
+        energy=energies[0],
+    )
+    chosen = {name: options[name] for name in ("scale", "frequency_scale", "zpe_scale", "anharmonic")}
+    return reading, ModelOptions(**chosen)
 
 
 def taken_conformers(options: dict[str, Any], n_outputs: int) -> tuple[str, ...]:

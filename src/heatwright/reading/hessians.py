@@ -203,9 +203,7 @@ def with_checked_hessian(
         if np.isfinite(off)
         else f"it has {wavenumbers.size} vibrations, and {molecule.wavenumbers_cm1.size} are printed"
     )
-    return molecule, (
-        note("hessian-unused", words, expected=f"agreement within {AGREEMENT_CM1:g} cm⁻¹"),
-    )
+    return molecule, (note("hessian-unused", words, expected=f"agreement within {AGREEMENT_CM1:g} cm⁻¹"),)
 
 
 def largest_difference(a: Iterable[float], b: Iterable[float]) -> float:

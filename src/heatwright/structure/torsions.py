@@ -16,7 +16,7 @@ from numpy.typing import NDArray
 
 from heatwright.constants import INERTIA_CM1_U_A2
 from heatwright.molecule import FloatArray, IntArray
-from heatwright.structure.bonds import bonds, covalent_radius_A, neighbourhoods
+from heatwright.structure.bonds import atom_labels, bonds, covalent_radius_A
 from heatwright.structure.modes import overall_motion
 from heatwright.structure.superposition import matched, superposed
 
@@ -131,8 +131,7 @@ def alike_bonds(
     >>> [b.bond for b in alike_bonds(z, m, ether, [rotatable_bond(z, m, ether, (3, 0, 1, 2))])]
     [(1, 2)]
     """
-    kinds = [f"{z} {m:.1f}" for z, m in zip(atomic_numbers, masses_u, strict=True)]
-    labels = neighbourhoods(kinds, bonds(atomic_numbers, coordinates_A))
+    labels = atom_labels(atomic_numbers, bonds(atomic_numbers, coordinates_A), [round(float(m)) for m in masses_u])
     taken = {bond.bond for bond in some}
     wanted = {frozenset(labels[a] for a in axis) for axis in taken}
     return [

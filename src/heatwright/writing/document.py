@@ -154,6 +154,7 @@ def _formation(formation: Formation) -> dict[str, Any]:
             {"what": line.what, "value_kJ_mol": significant(line.value_kJ_mol), "source": line.source}
             for line in formation.ledger
         ],
+        **({"other_routes": [_formation(other) for other in formation.alternatives]} if formation.alternatives else {}),
     }
 
 
