@@ -71,6 +71,7 @@ def hindered_rotor(
 
     Raises ValueError unless F is positive and the symmetry number divides the fold of the potential.
 
+    >>> from heatwright.partition.potential import cosine_potential
     >>> ethane = hindered_rotor(cosine_potential(3, 1024.0), 10.70, 3)
     >>> round(ethane.ground_cm1, 1)
     150.7
