@@ -30,7 +30,7 @@ class HinderedRotor:
 
     name : of the contribution.   levels_cm1 : (m,) above the ground level, 1/cm, ascending.
     symmetry_number : σ, the number of equivalent orientations in one turn.
-    ground_cm1 : E₀ − Vmin, the rotor's own zero-point energy, 1/cm.   K : basis size behind the levels.
+    ground_cm1 : E₀ − Vmin, the rotor's own zero-point energy, 1/cm.   K : of the highest plane waves ±K.
     potential, F_cm1 : what the levels are from.
     """
 
