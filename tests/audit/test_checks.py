@@ -326,3 +326,10 @@ def test_the_grid_sees_the_ends_of_both_ranges() -> None:
     assert facts.T_K[0] == p.t_low_K
     assert facts.T_K[-1] == p.t_high_K
     assert np.count_nonzero(p.t_common_K == facts.T_K) == 2
+
+
+def test_values_that_are_wrong_in_another_way_are_not_blamed_on_units() -> None:
+    atom: Coefficients = (2.5, 0.0, 0.0, 0.0, 0.0, -745.0, 4.4)
+    found = said(audited(("CH3Cl", Nasa7(200.0, 1000.0, 6000.0, atom, atom)), CH3Cl={"C": 1, "H": 3, "Cl": 1}))
+    assert "unit-mistake" not in found
+    assert {"cp-below-least", "entropy-implausible", "cp-implausible"} <= set(found)
