@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections import defaultdict
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from heatwright.audit.between import composition_findings, copies, doubles, pressure_findings
 from heatwright.audit.facts import Facts, facts_of
@@ -82,16 +82,25 @@ def _entry(
     against: EntryFile | None,
     published: bool,
 ) -> AuditedEntry:
-    findings = [*entry.findings, *composition_findings(entry), *together]
+    findings = [*(_named(f, entry) for f in entry.findings), *composition_findings(entry), *together]
     if facts is None:
         return AuditedEntry(entry, None, tuple(findings))
-    findings += [*joint_findings(facts), *physics_findings(facts), *published_findings(facts)]
+    findings += [*joint_findings(facts), *physics_findings(facts)]
+    if not any(f.code == "unit-mistake" for f in findings):
+        findings += published_findings(facts)
     residual = None if against is None else compare_release(facts, against)
     comparisons = compare_published(facts) if published else ()
     if residual is not None:
         findings += residual_findings(facts, residual)
     findings += difference_findings(facts, comparisons)
     return AuditedEntry(entry, facts, tuple(findings), residual, comparisons)
+
+
+def _named(finding: Finding, entry: ThermoEntry) -> Finding:
+    """A reader's finding with the species' name in front, where it does not say it."""
+    if not entry.name or entry.name in finding.found:
+        return finding
+    return replace(finding, found=f"{entry.name}: {finding.found}")
 
 
 def _comment(file: EntryFile, entry: ThermoEntry) -> str:

@@ -25,8 +25,10 @@ from heatwright.reading.compositions import molar_mass_u
 from heatwright.reading.entry_file import ThermoEntry
 
 KJ_PER_K: Final = GAS_CONSTANT_J_MOL_K / 1000.0
-_CONDENSED = re.compile(r"\((?:\d|[a-rt-z]|[a-z][\w,]+|L\w*|[IV]+)\)$")
+_CONDENSED = re.compile(r"\((?:\d|[a-rt-z]|[a-z][\w,]+|L\w*|[IV]+)\)(?:,.*)?$")
 _STATE_OR_SOLID = re.compile(r"\([sS]\)$")
+_LARGEST_STATE: Final = 6
+"""A name with (S) may be the singlet state of a gas with this many atoms at most."""
 _DECLARED = re.compile(r"dHf\(298\.15 K\) = (-?\d+\.?\d*)")
 _ORGANIC: Final = frozenset({"C", "H", "D", "N", "O", "E"})
 _MAKE = {"refuse": refuse, "warn": warn, "note": note}
@@ -129,5 +131,5 @@ def _is_gas(entry: ThermoEntry, s298_R: float, mass: float) -> bool:
         return True
     if _STATE_OR_SOLID.search(entry.name):
         # singlet methylene is called CH2(S), and so is what sits on a surface; only the gas has a gas's entropy
-        return s298_R > entropy_bounds_R(entry, mass)[0]
+        return entry.atoms <= _LARGEST_STATE and s298_R > entropy_bounds_R(entry, mass)[0]
     return _CONDENSED.search(entry.name) is None

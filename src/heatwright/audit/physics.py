@@ -26,6 +26,10 @@ FALL_LARGE: Final = 0.05
 """Falls of Cp with temperature, as fractions of Cp, that vibrations do not make."""
 QUANTUM_ROTATION_K: Final = 200.0
 """Below it light molecules have less than the classical Cp of rotation; H2 up to 400 K."""
+HOT_K: Final = 2000.0
+NEARLY_CLASSICAL: Final = 0.6
+"""A range that reaches 2000 K has at least this much of the classical limit at its end; asked only where a factor between
+units would explain what is impossible otherwise."""
 LEAST_CP298: Final = 0.2
 """Cp at 298.15 K as a fraction of the classical limit."""
 EARLIEST_USUAL_K: Final = 300.0
@@ -154,7 +158,8 @@ def _units(facts: Facts) -> Finding | None:
     highest, lowest = float(facts.cp_R.max()) / facts.limit_R, float(facts.cp_R.min()) / least_cp_R(facts.atoms)
     for factor, unit in _UNITS.items():
         shows = highest > 1.5 if factor > 1.0 else lowest < 0.8
-        if shows and _possible(facts, factor):
+        classical = facts.polynomial.t_high_K < HOT_K or highest / factor > NEARLY_CLASSICAL
+        if shows and classical and _possible(facts, factor):
             return facts.say(
                 "refuse",
                 "unit-mistake",

@@ -43,7 +43,8 @@ def audit(
     quiet: bool,
     verbose: bool,
 ) -> None:
-    """Check the entries of each FILE (fixed 80-column records, also inside a mechanism, or Cantera YAML).
+    """Check the entries of each FILE (fixed 80-column records, also inside a mechanism, or Cantera YAML; a folder is a
+    release).
 
     \b
     Examples:
@@ -66,11 +67,11 @@ def audit(
 
 def _one(path: str, release: EntryFile | None, published: bool, reporter: Reporter) -> Audit | None:
     from heatwright.audit.audit import audit_entries
+    from heatwright.audit.release import read_release
     from heatwright.findings import Refused
-    from heatwright.reading.entries import read_entries
 
     try:
-        return audit_entries(read_entries(path), against=release, published=published)
+        return audit_entries(read_release(path), against=release, published=published)
     except Refused as error:
         reporter.fail(path, error.findings)
         return None

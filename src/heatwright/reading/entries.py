@@ -22,8 +22,7 @@ from heatwright.reading.yaml_species import scan_yaml
 MOST_BYTES: Final = 200_000_000
 """The largest thermo file that is read; mechanisms with thousands of species have 10 MB."""
 _YAML = re.compile(rb"^(?:species|phases|units|description|generator|[\w.-]*species)\s*:", re.MULTILINE)
-_RECORD = re.compile(rb"^.{79}1", re.MULTILINE)
-_THERMO = re.compile(rb"^\s*THER(?:MO)?\b", re.MULTILINE | re.IGNORECASE)
+_THERMO = re.compile(rb"^[ \t]*THER(?:MO)?(?:[ \t]+(?:ALL|NASA9))*[ \t]*(?:!.*)?\r?$", re.MULTILINE | re.IGNORECASE)
 
 __all__ = ["EntryFile", "PassedOver", "ThermoEntry", "parse_entries", "read_entries", "replace_entries"]
 
@@ -155,9 +154,7 @@ def _format_of(data: bytes, path: str) -> Literal["nasa7", "yaml"]:
     """By the text; by the file's ending where the text says nothing."""
     if path.lower().endswith((".yaml", ".yml")):
         return "yaml"
-    if _RECORD.search(data) or _THERMO.search(data) or not _YAML.search(data):
-        return "nasa7"
-    return "yaml"
+    return "yaml" if _YAML.search(data) and not _THERMO.search(data) else "nasa7"
 
 
 def _newline(data: bytes) -> str:

@@ -36,20 +36,20 @@ def wrong_line(line: Line | None, digit: str, first: Line) -> Finding:
     name = (first.text[:24].split() or [""])[0]
     expected = f"line {digit} of the record of {name}, with {digit} in column 80"
     if line is None:
-        found, where = f"the file ends inside the record of {name}", f"line {first.number}"
+        found, where = f"the section ends inside the record of {name}", f"line {first.number}"
         return refuse("record-lines", found, where=where, expected=expected, action="Fetch the entry again.")
     got = line.text[79:80]
-    where = f"line {line.number}:80"
+    where, column = f"line {line.number}:80", 80
     if "\t" in line.text:
         found, action = "a tab stands in the line, so its columns are not where they seem", "Replace it by blanks."
-        where = f"line {line.number}:{line.text.index(chr(9)) + 1}"
+        column = line.text.index("\t") + 1
+        where = f"line {line.number}:{column}"
     elif got and got in "1234":
         found = f"line {got} of a record stands here"
         action = "Lines are missing or out of order; fetch the entry again."
     else:
         found = f"column 80 holds {got!r}" if got else f"the line has {len(line.text.rstrip())} columns"
         action = "Columns are shifted, or the digit is missing."
-    column = min(80, max(len(line.text), 1))
     said = refuse("record-lines", found, where=where, expected=expected, action=action)
     return said.shown(with_caret(line.text, column))
 

@@ -237,8 +237,8 @@ class _Walk:
         lines: list[Line] = []
         for digit in "234":
             at = self._next_content(self.i)
-            line = None if at is None else self.lines[at]
-            if line is None or at is None or _digit(line) != digit or not _belongs(line):
+            line = None if at is None or _ends(self.lines[at]) else self.lines[at]
+            if line is None or at is None or _digit(line) != digit:
                 last = self._swallow(lines[-1] if lines else first)
                 found = wrong_line(line, digit, first)
                 name = (first.text[:24].split() or [""])[0]
@@ -273,9 +273,9 @@ class _Walk:
         return last
 
 
-def _belongs(line: Line) -> bool:
-    """Whether a line with the right digit in column 80 is one of coefficients, however damaged."""
-    return _header(line) is None and not _END.match(line.text)
+def _ends(line: Line) -> bool:
+    """Whether a section ends, or another one starts, with this line."""
+    return _header(line) is not None or _END.match(line.text) is not None
 
 
 def _three(text: str) -> tuple[float, float, float] | None:
