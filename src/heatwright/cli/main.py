@@ -10,6 +10,7 @@ from typing import NoReturn
 import click
 
 from heatwright import __version__
+from heatwright.cli.build import build
 from heatwright.cli.crosscheck import crosscheck
 from heatwright.cli.entry import entry
 from heatwright.cli.explain import explain
@@ -27,7 +28,7 @@ INTERRUPTED = 130
 
 SECTIONS = {
     "One molecule": ("survey", "table", "entry", "rotors"),
-    "A mechanism": ("crosscheck",),
+    "A mechanism": ("build", "crosscheck"),
     "Looking things up": ("scales", "references", "reactions", "explain", "samples"),
 }
 """How ``--help`` groups the commands."""
@@ -62,7 +63,7 @@ def cli() -> None:
     """
 
 
-for _command in (survey, table, entry, rotors, scales, references, reactions, crosscheck, explain, samples):
+for _command in (survey, table, entry, rotors, scales, references, reactions, build, crosscheck, explain, samples):
     cli.add_command(_command)
 
 
