@@ -38,6 +38,11 @@ if TYPE_CHECKING:
     from heatwright.polynomial.fit import fit_nasa7
     from heatwright.polynomial.nasa7 import Nasa7
     from heatwright.polynomial.quality import FitQuality, fit_quality
+    from heatwright.project.changes import Change, Comparison, compare_sets
+    from heatwright.project.effects import mechanism_effect
+    from heatwright.project.mechanism import read_mechanism
+    from heatwright.project.splice import splice
+    from heatwright.project.thermo_set import read_thermo_set
     from heatwright.reading.entries import parse_entries, read_entries, replace_entries
     from heatwright.reading.entry_file import EntryFile, ThermoEntry
     from heatwright.reading.outputs import read_output
@@ -53,6 +58,8 @@ if TYPE_CHECKING:
 
 _HOME = {
     "Audit": "audit.audit",
+    "Change": "project.changes",
+    "Comparison": "project.changes",
     "Contribution": "partition.contribution",
     "DiatomicConstants": "molecule",
     "EnergyChoices": "formation.choices",
@@ -86,6 +93,7 @@ _HOME = {
     "choose_published": "scales",
     "collect_atoms": "formation.atomization",
     "collect_references": "formation.reference_set",
+    "compare_sets": "project.changes",
     "entries_context": "writing.context",
     "find_reactions": "formation.reactions",
     "fit_nasa7": "polynomial.fit",
@@ -94,6 +102,7 @@ _HOME = {
     "formation_given": "formation.formation",
     "formation_of": "formation.routes",
     "make_entry": "entry",
+    "mechanism_effect": "project.effects",
     "mend_entries": "audit.mend",
     "mixture_model": "partition.mixing",
     "parse_enthalpy": "formation.formation",
@@ -103,11 +112,14 @@ _HOME = {
     "projected_modes": "structure.modes",
     "published_factors": "scales",
     "read_entries": "reading.entries",
+    "read_mechanism": "project.mechanism",
     "read_output": "reading.outputs",
+    "read_thermo_set": "project.thermo_set",
     "read_torsion": "reading.torsion_scans",
     "reference_species": "formation.species_references",
     "render_format": "writing.render",
     "replace_entries": "reading.entries",
+    "splice": "project.splice",
     "symmetry": "structure.symmetry",
     "with_energy": "reading.single_point",
     "with_isotopes": "structure.isotopes",
@@ -116,6 +128,8 @@ _HOME = {
 
 __all__ = [
     "Audit",
+    "Change",
+    "Comparison",
     "Contribution",
     "DiatomicConstants",
     "EnergyChoices",
@@ -150,6 +164,7 @@ __all__ = [
     "choose_published",
     "collect_atoms",
     "collect_references",
+    "compare_sets",
     "entries_context",
     "find_reactions",
     "fit_nasa7",
@@ -158,6 +173,7 @@ __all__ = [
     "formation_given",
     "formation_of",
     "make_entry",
+    "mechanism_effect",
     "mend_entries",
     "mixture_model",
     "parse_enthalpy",
@@ -167,11 +183,14 @@ __all__ = [
     "projected_modes",
     "published_factors",
     "read_entries",
+    "read_mechanism",
     "read_output",
+    "read_thermo_set",
     "read_torsion",
     "reference_species",
     "render_format",
     "replace_entries",
+    "splice",
     "symmetry",
     "with_energy",
     "with_isotopes",

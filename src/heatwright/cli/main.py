@@ -11,6 +11,7 @@ import click
 
 from heatwright import __version__
 from heatwright.cli.audit import audit
+from heatwright.cli.build import build
 from heatwright.cli.compare import compare
 from heatwright.cli.crosscheck import crosscheck
 from heatwright.cli.entry import entry
@@ -31,7 +32,7 @@ INTERRUPTED = 130
 
 SECTIONS = {
     "One molecule": ("survey", "table", "entry", "rotors"),
-    "A mechanism": ("crosscheck", "compare"),
+    "A mechanism": ("build", "compare", "crosscheck"),
     "Existing entries": ("audit", "mend", "splice"),
     "Looking things up": ("scales", "references", "reactions", "explain", "samples"),
 }
@@ -72,8 +73,9 @@ for _command in (
     table,
     entry,
     rotors,
-    crosscheck,
+    build,
     compare,
+    crosscheck,
     audit,
     mend,
     splice,

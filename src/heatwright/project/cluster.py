@@ -4,40 +4,63 @@ from __future__ import annotations
 
 import os
 from collections.abc import Callable
-from typing import Any
+from concurrent.futures import Future
+from typing import Any, TypeVar
 
 from heatwright.findings import Refused, refuse
 from heatwright.project.executors import ATTEMPTS, Engine, unfit
 
+A = TypeVar("A")
+R = TypeVar("R")
+_ANSWER_S = 10
 
-def distributed(address: str) -> tuple[Engine, Callable[[], None]]:
-    """A running dask scheduler, by its address or by the scheduler file of its start; and what closes the connection.
 
-    Raises Refused (``scheduler-unfit``) when dask is not installed, when the scheduler cannot be reached, when it has
-    no workers, or when a worker has another heatwright than this one.
-    """
+class Distributed(Engine):
+    """A running scheduler, by its address or by the file that it wrote at its start (``--scheduler-file``)."""
+
+    def __init__(self, address: str) -> None:
+        """Connect and look at the workers.
+
+        Raises Refused (``scheduler-unfit``) when dask is not installed, when the scheduler cannot be reached, when it
+        has no workers, or when a worker has another heatwright than this one.
+        """
+        self.words = f"by the scheduler at {address}"
+        self._client = _client(address)
+        try:
+            self.window = 3 * _checked_workers(self._client, address)
+            # pure=False: else an earlier result for the same path would come back although the file has changed
+            self._executor = self._client.get_executor(pure=False, retries=ATTEMPTS)
+        except BaseException:
+            self._client.close()
+            raise
+
+    def submit(self, work: Callable[[A], R], task: A) -> Future[R]:
+        future: Future[R] = self._executor.submit(work, task)
+        return future
+
+    def has_workers(self) -> bool:
+        try:
+            return bool(self._client.nthreads())
+        except Exception:  # the scheduler itself is gone
+            return False
+
+    def close(self) -> None:
+        self._executor.shutdown(wait=False)
+        self._client.close()
+
+
+def _client(address: str) -> Any:
     try:
         from distributed import Client
     except ImportError:
         action = "Install it: pip install 'heatwright[cluster]'."
         raise unfit(address, "dask.distributed is not installed here", action) from None
+    named = {"scheduler_file": address} if os.path.isfile(address) else {"address": address}
     try:
-        client = Client(scheduler_file=address, timeout=10) if os.path.isfile(address) else Client(address, timeout=10)
+        return Client(timeout=_ANSWER_S, **named)
     except Exception as error:
         words = f"the scheduler does not answer ({type(error).__name__}: {error})"
-        raise unfit(address, words, "Give the address it printed, or the file of --scheduler-file.") from error
-    try:
-        threads = _checked_workers(client, address)
-        return _engine_of(client, threads, address), client.close
-    except BaseException:
-        client.close()
-        raise
-
-
-def _engine_of(client: Any, threads: int, address: str) -> Engine:
-    # pure=False: else the result of an earlier call with the same path would come back, although the file has changed
-    executor = client.get_executor(pure=False, retries=ATTEMPTS)
-    return Engine(executor, 3 * threads, f"by the scheduler at {address}", alive=lambda: len(client.nthreads()))
+        raise unfit(address, words, "Give the address that it printed, or the file of --scheduler-file.") from error
 
 
 def _checked_workers(client: Any, address: str) -> int:
@@ -48,7 +71,6 @@ def _checked_workers(client: Any, address: str) -> int:
     """
     from importlib.metadata import version
 
-    from heatwright import __version__
     from heatwright.project.fingerprint import reader_fingerprint
 
     answers = client.run(version, "heatwright", on_error="return")
@@ -57,12 +79,11 @@ def _checked_workers(client: Any, address: str) -> int:
     for worker, answer in answers.items():
         if isinstance(answer, BaseException):
             action = "Install the same heatwright in the environment of the workers."
-            raise unfit(address, f"the worker {worker} has no heatwright ({answer})", action)
-    prints = client.run(reader_fingerprint, on_error="return")
-    for worker, answer in prints.items():
+            raise unfit(address, f"the worker {worker} has no heatwright ({type(answer).__name__}: {answer})", action)
+    for worker, answer in client.run(reader_fingerprint, on_error="return").items():
         if answer != reader_fingerprint():
-            found = f"the worker {worker} has another heatwright ({answers[worker]}, {answer})"
-            expected = f"{__version__}, {reader_fingerprint()}"
-            action = "Install the same heatwright, and cclib, everywhere."
+            found = f"the worker {worker} has another heatwright or cclib (version {answers[worker]}, {answer})"
+            action = "Install the same heatwright and cclib everywhere."
+            expected = f"the reader {reader_fingerprint()} of this machine"
             raise Refused([refuse("scheduler-unfit", found, where=address, expected=expected, action=action)])
     return max(1, int(sum(client.nthreads().values())))

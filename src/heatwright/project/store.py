@@ -14,7 +14,7 @@ import sqlite3
 import time
 from collections.abc import Callable, Iterable, Mapping
 from contextlib import suppress
-from typing import Final, TypeVar
+from typing import Any, Final, TypeVar
 
 from heatwright.findings import Finding, warn
 
@@ -62,16 +62,21 @@ class Store:
         found = {key: value for key in wanted if (value := self._waiting.get(key, self._memory.get(key))) is not None}
         missing = [key for key in wanted if key not in found]
         for start in range(0, len(missing), _AT_ONCE):
-            some = missing[start : start + _AT_ONCE]
-            marks = ",".join("?" * len(some))
-            rows = self._guarded(
-                lambda c, some=some, marks=marks: c.execute(  # type: ignore[misc]
-                    f"SELECT key, value FROM kept WHERE key IN ({marks})",
-                    some,  # noqa: S608
-                ).fetchall()
-            )
-            found.update(rows or ())
+            found.update(self._rows("key, value", missing[start : start + _AT_ONCE]))
         return found
+
+    def has(self, keys: Iterable[str]) -> set[str]:
+        """Those of the keys that have a value."""
+        wanted = list(dict.fromkeys(keys))
+        found = {key for key in wanted if key in self._waiting or key in self._memory}
+        missing = [key for key in wanted if key not in found]
+        for start in range(0, len(missing), _AT_ONCE):
+            found.update(key for (key,) in self._rows("key", missing[start : start + _AT_ONCE]))
+        return found
+
+    def _rows(self, columns: str, keys: list[str]) -> list[Any]:
+        statement = f"SELECT {columns} FROM kept WHERE key IN ({','.join('?' * len(keys))})"
+        return self._guarded(lambda c: c.execute(statement, keys).fetchall()) or []
 
     def put(self, values: Mapping[str, bytes]) -> None:
         """Keep values; they are written soon, and at the latest when the store is closed."""
