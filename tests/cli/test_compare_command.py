@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import shutil
 from dataclasses import replace
 from pathlib import Path
 
@@ -44,8 +45,50 @@ def test_one_species_its_reason_and_its_reactions(run, releases: tuple[Path, Pat
     assert not any(line.startswith(name + " ") for line in lines for name in NAMES if name != "CH3OH")
 
 
+MANIFEST = """
+[mechanism]
+name = "pilot"
+pressure = "1atm"
+atoms = "sample_outputs/atoms"
+[species.CH3OH]
+output = "sample_outputs/CH3OH.out"
+[species.H2O]
+output = "sample_outputs/H2O.out"
+"""
+
+
+def test_two_builds_that_differ_in_one_species(run, samples: Path, tmp_path: Path, monkeypatch) -> None:
+    shutil.copytree(samples, tmp_path / "sample_outputs")
+    monkeypatch.chdir(tmp_path)
+    manifest, release, old = (tmp_path / name for name in ("heatwright.toml", "release", "old"))
+    manifest.write_text(MANIFEST, encoding="utf-8")
+    assert run("build").code == 0
+    shutil.copytree(release, old)
+    manifest.write_text(MANIFEST.replace('CH3OH.out"', 'CH3OH.out"\nfrequency-scale = 0.9614'), encoding="utf-8")
+    with (tmp_path / "sample_outputs" / "H2O.out").open("a", encoding="utf-8") as stream:
+        stream.write("\n")  # another file, the same numbers
+    assert run("build").code == 0
+    done = run("compare", old, release, "--mechanism", GRI, "--json")
+    changed, same = json.loads(done.out)["species"]
+    assert (changed["name"], changed["kind"]) == ("CH3OH", "changed")
+    assert changed["reasons"] == ["options changed: frequency-scale default → 0.9614"]
+    assert (same["name"], same["kind"], same["moved"]) == ("H2O", "identical", False)
+    assert same["reasons"] == ["output changed: sample_outputs/H2O.out"]
+    numbers = [r["number"] for r in json.loads(done.out)["mechanism"]["reactions"]]
+    reactions = ct.Solution(str(GRI)).reactions()
+    assert sorted(numbers) == [i for i, r in enumerate(reactions, 1) if "CH3OH" in {**r.reactants, **r.products}]
+    # the lock files alone say the same to what the polynomials leave
+    locked = json.loads(run("compare", old / "thermo.lock.toml", release / "thermo.lock.toml", "--json").out)
+    assert locked["species"][0]["dG_kJ_mol"][:3] == pytest.approx(changed["dG_kJ_mol"][:3], abs=0.02)
+    # and an entry changed by hand is noticed
+    text = (release / "thermo.dat").read_text(encoding="utf-8")
+    (release / "thermo.dat").write_text(text.replace("G   200.000", "G   250.000", 1), encoding="utf-8")
+    assert run("compare", old, release).err.count("[entry-edited]") == 2
+
+
 def test_json_holds_the_same(run, releases: tuple[Path, Path]) -> None:
-    done = run("compare", *releases, "--mechanism", GRI, "--mixture", "fuel=CH4", "--json", "--temperatures", "1000,2000")
+    options = ("--mixture", "fuel=CH4", "--json", "--temperatures", "1000,2000")
+    done = run("compare", *releases, "--mechanism", GRI, *options)
     document = json.loads(done.out)
     assert document["heatwright"] == 1
     assert document["temperatures_K"] == [1000.0, 2000.0]

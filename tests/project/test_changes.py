@@ -14,7 +14,7 @@ from heatwright.findings import Refused
 from heatwright.polynomial.nasa7 import Nasa7
 from heatwright.project.changes import Change, Comparison, Tolerance, compare_sets, parse_tolerance
 from heatwright.project.differences import difference
-from heatwright.project.lockfile import LockedFile, LockedFormation, LockedReference, lock_text
+from heatwright.project.lockfile import CP_TEMPERATURES_K, LockedFile, LockedFormation, LockedReference, lock_text
 from heatwright.project.reasons import recorded_reasons
 from heatwright.project.thermo_set import Thermo, ThermoSet, read_thermo_set
 from releases import GRI, R, dat_text, gri, lock, moved, record, write_release, yaml_text
@@ -121,7 +121,12 @@ def test_the_same_text_is_identical_and_rounding_is_unchanged(species: dict[str,
 
 @pytest.mark.parametrize(
     ("amounts", "key"),
-    [({"dH_kJ_mol": 0.3}, "H"), ({"dS_J_mol_K": 0.3}, "S"), ({"dCp_J_mol_K": 0.3}, "Cp"), ({"dCp_J_mol_K": -0.3}, "Cp")],
+    [
+        ({"dH_kJ_mol": 0.3}, "H"),
+        ({"dS_J_mol_K": 0.3}, "S"),
+        ({"dCp_J_mol_K": 0.3}, "Cp"),
+        ({"dCp_J_mol_K": -0.3}, "Cp"),
+    ],
 )
 def test_every_tolerance_holds_its_own_quantity(species: dict[str, Thermo], amounts: dict, key: str) -> None:
     new = side(with_moved(species, "CO2", **amounts))
@@ -213,12 +218,10 @@ def test_records_name_the_reasons(species: dict[str, Thermo], tmp_path: Path) ->
         formation=LockedFormation(route="given", source="ATcT 1.112", dHf298_kJ_mol=-198.9),
         references="34" * 32,
     )
-    references = tuple(LockedReference(f"atoms/{a}.out", "aa" * 32, a) for a in ("C", "N", "O"))
-    other = tuple(replace(r, sha256="bb" * 32) if r.species in ("C", "N") else r for r in references)
+    references = tuple(LockedReference(f"atoms/{a}.out", "aa" * 32, f"{a} atom") for a in ("C", "N", "O"))
+    other = tuple(replace(r, sha256="bb" * 32) if r.species in ("C atom", "N atom") else r for r in references)
     a = write_release(tmp_path / "old", species, old_records, references=references)
-    b = write_release(
-        tmp_path / "new", new, {**old_records, "CH3OH": changed}, references=other, tool="0.2.0"
-    )
+    b = write_release(tmp_path / "new", new, {**old_records, "CH3OH": changed}, references=other, tool="0.2.0")
     comparison = compare_sets(read_thermo_set(a), read_thermo_set(b))
     assert [c.name for c in comparison.changes if c.moved] == ["CH3OH"]
     assert comparison.changes[0].reasons == (
@@ -283,10 +286,10 @@ def test_interpolation_in_the_table_is_good_enough_for_a_real_change() -> None:
     """Two real polynomials whose Cp differ in shape: methanol of GRI-Mech 3.0 against one with ethane's Cp curve."""
     a, b = gri("CH3OH")["CH3OH"], gri("C2H6")["C2H6"]
     exact = difference(a, b)
-    table = difference(
-        replace(a, polynomial=None, record=record("a", a), cp_temperatures_K=(300.0, 400.0, 500.0, 600.0, 800.0, 1000.0, 1500.0)),
-        replace(b, polynomial=None, record=record("b", b), cp_temperatures_K=(300.0, 400.0, 500.0, 600.0, 800.0, 1000.0, 1500.0)),
-    )  # fmt: skip
+    tables = [
+        replace(one, polynomial=None, record=record("x", one), cp_temperatures_K=CP_TEMPERATURES_K) for one in (a, b)
+    ]
+    table = difference(*tables)
     # ΔCp goes from 8 to 50 J/mol/K here, far more than between two treatments of one molecule
     for x, y in zip(table.dG_kJ_mol[:3], exact.dG_kJ_mol[:3], strict=True):
         assert x == pytest.approx(y, abs=0.15)
@@ -370,7 +373,8 @@ def test_other_standard_pressures_are_taken_out_and_said(species: dict[str, Ther
     assert [f.code for f in silent.findings] == ["pressure-not-stated"]
     assert {c.kind for c in silent.changes} == {"changed"}
     (tmp_path / "c.dat").write_text(f"! standard pressure 1 atm\n{dat_text(at_1atm)}", encoding="utf-8")
-    assert [f.code for f in compare_sets(read_thermo_set(tmp_path / "a.yaml"), read_thermo_set(tmp_path / "c.dat")).findings] == ["pressure-differs"]  # fmt: skip
+    said = compare_sets(read_thermo_set(tmp_path / "a.yaml"), read_thermo_set(tmp_path / "c.dat"))
+    assert [f.code for f in said.findings] == ["pressure-differs"]
 
 
 def test_other_zeros_of_the_elements_are_recognised() -> None:

@@ -153,7 +153,9 @@ def test_kinds_of_reactions(tmp_path: Path) -> None:
     rows = {r.reaction.number: r for r in effect.reactions}
     assert sorted(rows) == [1, 2, 3, 4, 5, 6]  # in 7 and 8 it only collides
     moves = 1000.0 / (R * 500.0)
-    assert [rows[n].dlnKc[0] for n in sorted(rows)] == pytest.approx([moves, moves, moves, 0.0, -moves, moves], abs=1e-6)
+    assert [rows[n].dlnKc[0] for n in sorted(rows)] == pytest.approx(
+        [moves, moves, moves, 0.0, -moves, moves], abs=1e-6
+    )
     assert rows[1].reverse_factors[0] == pytest.approx(exp(-moves), rel=1e-6)
     assert rows[2].reverse_factors == rows[3].reverse_factors == (None,) * 4
     assert rows[2].remarks == ("irreversible: no rate follows from Kc",)
@@ -261,7 +263,10 @@ def test_why_there_is_no_flame(old: ThermoSet, mechanism: Mechanism, monkeypatch
 def test_a_flame_beyond_the_range_is_a_warning(old: ThermoSet, mechanism: Mechanism) -> None:
     p = old.species["H2O"].polynomial
     assert p is not None
-    short: dict[str, Thermo] = {**old.species, "H2O": replace(old.species["H2O"], polynomial=replace(p, t_high_K=2000.0))}
+    short: dict[str, Thermo] = {
+        **old.species,
+        "H2O": replace(old.species["H2O"], polynomial=replace(p, t_high_K=2000.0)),
+    }
     found = flame(mechanism, parse_mixture("fuel=CH4"), old, replace(old, species=short))
     assert isinstance(found, Flame)
     assert [f.severity for f in found.findings] == ["warn"]

@@ -108,7 +108,9 @@ def test_a_file_without_phases_gives_all_its_reactions(tmp_path: Path) -> None:
 
 
 def test_phases_that_name_no_reactions_are_said(tmp_path: Path) -> None:
-    path = written(tmp_path, "phases:\n- {name: gas, thermo: ideal-gas, species: [A, B]}\nreactions:\n- equation: A => B\n")
+    path = written(
+        tmp_path, "phases:\n- {name: gas, thermo: ideal-gas, species: [A, B]}\nreactions:\n- equation: A => B\n"
+    )
     mechanism = read_mechanism(path)
     assert [r.text for r in mechanism.reactions] == ["A => B"]
     assert [f.code for f in mechanism.findings] == ["mechanism-choice"]

@@ -133,7 +133,9 @@ def test_twice_is_once(species: dict[str, Thermo]) -> None:
 def test_adding_behind_a_last_line_without_an_end(species: dict[str, Thermo]) -> None:
     data = record_text("CH4", species["CH4"]).removesuffix("\n").encode()
     new = release(species, "OH")
-    assert put(new, data, add=True).data == data + b"\n" + record_text("OH", new.species["OH"]).encode().removesuffix(b"\n")
+    assert put(new, data, add=True).data == data + b"\n" + record_text("OH", new.species["OH"]).encode().removesuffix(
+        b"\n"
+    )
 
 
 # --- YAML ----------------------------------------------------------------------------------------------------------
@@ -174,7 +176,10 @@ def test_yaml_keeps_everything_around_the_thermo_data(species: dict[str, Thermo]
         result = done.data.decode(encoding)
         head, tail = text.index("      model"), text.index("  # here")
         assert result.startswith(text[:head])
-        assert f"]  # here{newline}    note: mine{newline}    transport: {{model: gas}}{newline}{newline}  - name: OH" in result
+        assert (
+            f"]  # here{newline}    note: mine{newline}    transport: {{model: gas}}{newline}{newline}  - name: OH"
+            in result
+        )
         assert result.endswith(f"}}{newline}extra: {{a: 1}}{newline}")
         assert text[tail : text.index("    thermo: {model")] in result
         assert result.count("\n") - text.count("\n") == -2  # the second range on one line, no note

@@ -7,13 +7,12 @@ from math import log
 from typing import Any, Final
 
 from heatwright.constants import GAS_CONSTANT_J_MOL_K
-from heatwright.elements import element
 from heatwright.project.differences import Difference
 from heatwright.project.lockfile import Lock, LockedFormation, LockedReference, LockedSpecies
 from heatwright.project.thermo_set import Thermo
 
 _SHOWN: Final = 8
-_SYMBOLS: Final = frozenset(element(z).symbol for z in range(1, 104))
+_SCALES: Final = frozenset({"scale", "frequency_scale", "zpe_scale"})
 _NUMERIC_J_MOL_K: Final = 0.005
 """Entropies and heat capacities that differ by less come from rounding in the text."""
 
@@ -89,15 +88,20 @@ def _options(old: Mapping[str, Any], new: Mapping[str, Any]) -> Iterator[str]:
 
 def _conventions(old: LockedSpecies, new: LockedSpecies) -> Iterator[str]:
     """What came of the options and the output, where no option of the same name says it already."""
-    said = {key for key in old.choices.keys() | new.choices.keys() if old.choices.get(key) != new.choices.get(key)}
+    both = old.choices.keys() | new.choices.keys()
+    said = {key.replace("-", "_") for key in both if old.choices.get(key) != new.choices.get(key)}
+    if said & _SCALES:
+        said.add("scale_source")
     for key in sorted(old.conventions.keys() | new.conventions.keys()):
         a, b = old.conventions.get(key), new.conventions.get(key)
-        if a != b and not said & {key, key.replace("-", "_"), key.replace("_", "-")}:
+        if a != b and key not in said:
             yield f"{key} changed: {_value(a)} → {_value(b)}"
 
 
 def _value(value: object) -> str:
-    return "default" if value is None else f"{value:g}" if isinstance(value, float) else str(value)
+    if value is None:
+        return "default"
+    return f"{value:g}" if isinstance(value, float) else str(value) or "none"
 
 
 def _formation(old: LockedFormation, new: LockedFormation) -> Iterator[str]:
@@ -116,15 +120,19 @@ def _references(
         return
     hashes = [{(r.path, r.species): r.sha256 for r in side} for side in (before, after)]
     keys = sorted(hashes[0].keys() | hashes[1].keys())
-    # of atoms, only those that the species is made of
     moved = [
         path
         for path, species in keys
-        if hashes[0].get((path, species)) != hashes[1].get((path, species))
-        and (species not in _SYMBOLS or species in new.composition)
+        if hashes[0].get((path, species)) != hashes[1].get((path, species)) and _concerns(species, new)
     ]
     shown = ", ".join(moved[:_SHOWN]) + (", …" if len(moved) > _SHOWN else "")
     yield f"reference changed: {shown or 'the outputs that its enthalpy of formation rests on'}"
+
+
+def _concerns(reference: str, of: LockedSpecies) -> bool:
+    """Whether a reference can have a part in a species; an atom only where the species is made of it."""
+    symbol, sign, _ = reference.rpartition(" atom")
+    return not sign or symbol in of.composition
 
 
 def _range(old: LockedSpecies, new: LockedSpecies) -> Iterator[str]:

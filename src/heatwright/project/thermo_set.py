@@ -7,17 +7,17 @@ import re
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field, replace
 from pathlib import Path
-from typing import Final, Literal
+from typing import Literal
 
 from heatwright.constants import ATMOSPHERE_PA, BAR_PA
 from heatwright.findings import Finding, Refused, refuse, warn
 from heatwright.polynomial.nasa7 import Nasa7
 from heatwright.project.lockfile import LOCK_NAME, Lock, LockedSpecies, read_lock
+from heatwright.project.release import DAT_NAME, YAML_NAME
+from heatwright.project.texts import blocks_by_species, text_hash
 from heatwright.reading.entries import read_entries
-from heatwright.reading.entry_file import EntryFile, ThermoEntry
+from heatwright.reading.entry_file import EntryFile, ThermoEntry, decoded
 
-DAT_NAME: Final = "thermo.dat"
-YAML_NAME: Final = "thermo.yaml"
 Kind = Literal["release", "lock", "nasa7", "yaml"]
 
 _PRESSURE_COMMENT = re.compile(rb"^\s*[!#].*?standard pressure (1 bar|1 atm|\d+(?:\.\d+)? Pa)\b", re.MULTILINE)
@@ -193,7 +193,7 @@ def _release(path: str) -> ThermoSet:
     chosen = sets[0]
     if locked is None or locked.lock is None:
         return replace(chosen, path=path, kind="release", findings=tuple(findings))
-    findings += _unrecorded(chosen, locked)
+    findings += [*_unrecorded(chosen, locked), *(f for file in texts for f in _edited(file, locked.lock))]
     return ThermoSet(
         path=path,
         kind="release",
@@ -230,6 +230,18 @@ def _unrecorded(chosen: ThermoSet, locked: ThermoSet) -> list[Finding]:
         return []
     found = f"{chosen.path} and {locked.path} do not hold the same species: {_shown(names)}"
     return [warn("entry-edited", found, action="Build the release again.")]
+
+
+def _edited(file: EntryFile, lock: Lock) -> list[Finding]:
+    """Entries whose text is not the one that was written with the lock file."""
+    name = Path(file.path).name
+    blocks = blocks_by_species(name, decoded(file.data))
+    recorded = {n: record.texts[name] for n, record in lock.species.items() if name in record.texts}
+    changed = [n for n, known in recorded.items() if n in blocks and text_hash(blocks[n]) != known]
+    if not changed:
+        return []
+    found = f"the text of {_shown(changed)} is not the one that {LOCK_NAME} records"
+    return [warn("entry-edited", found, where=file.path, action="`heatwright build` makes it anew.")]
 
 
 def _shown(names: Iterable[str]) -> str:
