@@ -123,9 +123,11 @@ class YamlPlaces:
 
 
 def provenance(thermo: Thermo) -> str:
-    """Where an entry comes from, in one line: level and route to the enthalpy from its record, else its note."""
+    """Where an entry comes from, in one line: its note, and level and route to the enthalpy from its record."""
     record = thermo.record
     if record is None:
         return thermo.note
     f = record.formation
-    return f"heatwright: {record.level or 'level not printed'}; dHf298 {f.route}{f': {f.source}' if f.source else ''}"
+    route = f"dHf298 {f.route}{f': {f.source}' if f.source else ''}"
+    made = f"heatwright: {record.level or 'level not printed'}; {route}"
+    return f"{thermo.note}; {made}" if thermo.note else made
