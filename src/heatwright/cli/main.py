@@ -18,6 +18,7 @@ from heatwright.cli.references import references
 from heatwright.cli.rotors import rotors
 from heatwright.cli.samples import samples
 from heatwright.cli.scales import scales
+from heatwright.cli.start import start
 from heatwright.cli.survey import survey
 from heatwright.cli.table import table
 from heatwright.errors import HeatwrightError
@@ -27,7 +28,7 @@ INTERRUPTED = 130
 
 SECTIONS = {
     "One molecule": ("survey", "table", "entry", "rotors"),
-    "A mechanism": ("crosscheck",),
+    "A mechanism": ("start", "crosscheck"),
     "Looking things up": ("scales", "references", "reactions", "explain", "samples"),
 }
 """How ``--help`` groups the commands."""
@@ -62,7 +63,7 @@ def cli() -> None:
     """
 
 
-for _command in (survey, table, entry, rotors, scales, references, reactions, crosscheck, explain, samples):
+for _command in (survey, table, entry, rotors, start, scales, references, reactions, crosscheck, explain, samples):
     cli.add_command(_command)
 
 
