@@ -23,7 +23,7 @@ from heatwright.partition.electronic import Levels
 from heatwright.partition.isomers import isomers_with_torsions
 from heatwright.partition.motion import Motion, motion
 from heatwright.partition.radicals import electronic_choice
-from heatwright.partition.rigid import rigid_body, symmetry_choice
+from heatwright.partition.rigid import RigidBody, rigid_body, symmetry_choice
 from heatwright.partition.scaling import published_choice, scale_findings
 from heatwright.partition.table import ThermoTable, checked_temperatures, share_of
 from heatwright.partition.translation import Translation
@@ -199,9 +199,12 @@ class ThermoModel:
         return self.classical_cp_R if len(self.levels) == 1 and self.motion.is_bounded and not self.conformers else None
 
 
-def build_model(molecule: Molecule, options: ModelOptions | None = None) -> ThermoModel:
+def build_model(
+    molecule: Molecule, options: ModelOptions | None = None, *, rigid: RigidBody = rigid_body
+) -> ThermoModel:
     """The rigid-rotor harmonic-oscillator model of a molecule that has passed the soundness checks.
 
+    rigid : the function that finds rotor and symmetry, for callers that remember what it found.
     Raises ValueError when the molecule has an imaginary mode or neither modes nor a single atom: the reading room
     refuses those with a sentence before a model is asked for.
     """
@@ -210,7 +213,7 @@ def build_model(molecule: Molecule, options: ModelOptions | None = None) -> Ther
     if molecule.n_imaginary or not molecule.has_thermochemistry:
         raise ValueError(f"{molecule.source.file}: a thermodynamic model needs the real modes of a minimum, or an atom")
     masses, mass_kind = chosen_masses(molecule, options.masses)
-    moments, found = rigid_body(molecule, masses, options.symmetry_tolerance_A)
+    moments, found = rigid(molecule, masses, options.symmetry_tolerance_A)
     electronic = electronic_choice(molecule, moments, options.electronic)
     wavenumbers, zpe_kJ_mol = oscillators(molecule, options.anharmonic)
     if molecule.stated.diatomic is not None:
