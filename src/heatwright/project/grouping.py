@@ -99,7 +99,7 @@ def species_key(found: Found) -> Hashable:
     """What the conformers of one species at one level share; a key of its own for what cannot be compared."""
     molecule = found.molecule
     identity = identity_of(molecule)
-    if identity is None or molecule.stated.name or molecule.is_atom:
+    if identity is None or molecule.is_atom:
         return found.path
     sides = shown_sides(molecule) if molecule.has_geometry else ()
     return identity, molecule.multiplicity, sides, level_label(molecule), molecule.energy_kind
@@ -184,8 +184,9 @@ def _at_one_level(groups: list[Group], unused: list[tuple[str, str]]) -> list[Gr
     """Of a species at several levels the one at the level that most species have; the others are not used."""
     count = Counter(level_label(group.main.molecule) for group in groups)
 
-    def rank(group: Group) -> tuple[int, str]:
-        return -count[level_label(group.main.molecule)], group.main.path
+    def rank(group: Group) -> tuple[bool, bool, int, str]:
+        m = group.main.molecule
+        return m.energy_hartree is None, m.level is None, -count[level_label(m)], group.main.path
 
     def same(group: Group) -> Hashable:
         key = species_key(group.main)
@@ -195,8 +196,9 @@ def _at_one_level(groups: list[Group], unused: list[tuple[str, str]]) -> list[Gr
     for group in sorted(groups, key=rank):
         other = kept.setdefault(same(group), group)
         if other is not group:
-            why = f"the same molecule as {other.main.path}, at {level_label(group.main.molecule)}"
-            unused += [(one.path, f"{why} and not {level_label(other.main.molecule)}") for one in group.outputs]
+            here, there = level_label(group.main.molecule), level_label(other.main.molecule)
+            at = f", at {here} and not {there}" if here != there else ""
+            unused += [(one.path, f"the same molecule as {other.main.path}{at}") for one in group.outputs]
     return list(kept.values())
 
 
@@ -291,10 +293,8 @@ def _attach_energies(groups: list[Group], loose: list[Found], unused: list[tuple
             unused.append((energy.path, _alone(energy, same, best)))
             continue
         group, one = same[index]
-        if (
-            not _levels_differ(one.molecule, energy.molecule)
-            and one.molecule.energy_kind == energy.molecule.energy_kind
-        ):
+        labels = {(level_label(m), m.energy_kind) for m in (one.molecule, energy.molecule)}
+        if len(labels) == 1:
             unused.append((energy.path, f"the energy that {one.path} has itself, at the same level"))
             continue
         group.energies.setdefault(one.path, []).append(energy)

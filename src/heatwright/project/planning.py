@@ -8,6 +8,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass, field
 from typing import Final, Literal
 
+from heatwright.elements import symbol
 from heatwright.findings import Refused, refusals
 from heatwright.formation.atomization import Atoms, collect_atoms
 from heatwright.formation.reference_set import ReferenceSet, collect_references
@@ -56,6 +57,7 @@ class Plan:
     """A whole first manifest.
 
     atoms : folder in [mechanism] with what it holds in words, empty for none.   levels : name -> folder of its atoms.
+    atom_files : symbol and path of every atom.   about_atoms : what a folder of atoms holds, in words.
     references : folder.   scaled : whether published factors are taken by default.   remarks : on [mechanism].
     """
 
@@ -175,7 +177,7 @@ def _choose_levels(plan: Plan, atoms: dict[str, Atoms]) -> None:
         molecule = _molecule(main, species.energies.get(main.path))
         serving[index] = [place for place in atoms if _covers(atoms[place], molecule)]
     count = Counter(place for places in serving.values() for place in places)
-    plan.atoms = max(atoms, key=lambda place: (count[place], [-ord(c) for c in place]), default="")
+    plan.atoms = max(count, key=lambda place: (count[place], [-ord(c) for c in place]), default="")
     for index, species in enumerate(plan.species):
         places = serving[index]
         if places and plan.atoms not in places:
@@ -294,7 +296,7 @@ def _describe_atoms(plan: Plan, inventory: Inventory) -> None:
         elements = sorted({level_label(f.molecule) for f in found})
         names = sorted({f.path.rpartition("/")[2] for f in found})
         plan.about_atoms[place] = f"{', '.join(names)} at {', '.join(elements)}"
-    plan.atom_files = tuple((f.path, level_label(f.molecule)) for f in inventory.atoms)
+    plan.atom_files = tuple((symbol(int(f.molecule.atomic_numbers[0])), f.path) for f in inventory.atoms)
     used = {plan.atoms, *plan.levels.values()}
     unused = [f for f in inventory.atoms if f.folder not in used]
     plan.unused += [(f.path, "an atom at a level that no species has") for f in unused]

@@ -113,6 +113,8 @@ def _mechanism(plan: Plan, at: _Paths, name: str) -> list[str]:
         lines.append(_line("route", "best", "of all routes that atoms and references allow"))
     elif plan.atoms:
         lines.append(_line("route", "atomization", "as there are atoms"))
+    elif plan.about_atoms:
+        lines.append("# No species has all its atoms at its level: every species needs its dHf298 with its source.")
     else:
         lines.append("# There are no outputs of atoms: every species needs its dHf298 with its source.")
     if plan.n_known:
@@ -169,14 +171,12 @@ def _about(one: Found) -> str:
 
 def _atoms_as_species(plan: Plan, at: _Paths) -> list[str]:
     """The atoms of [mechanism] as species, in comments: mechanisms with atoms as species are common."""
-    mine = [path for path, _ in plan.atom_files if os.path.dirname(path) in (plan.atoms, plan.atoms.strip("."))]
+    mine = {symbol: path for symbol, path in plan.atom_files if (os.path.dirname(path) or ".") == plan.atoms}
     if not mine:
         return []
-    from heatwright.writing.names import name_of_file
-
     lines = ["", "# Atoms as species, where the mechanism has them:"]
-    for path in mine:
-        lines += [f"# [species.{toml_key(name_of_file(path))}]", f"# output = {toml_value(at(path))}"]
+    for symbol, path in sorted(mine.items()):
+        lines += [f"# [species.{toml_key(symbol)}]", f"# output = {toml_value(at(path))}"]
     return lines
 
 
