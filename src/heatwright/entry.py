@@ -41,7 +41,10 @@ class FitOptions:
 
 @dataclass(frozen=True, eq=False, kw_only=True)
 class Entry:
-    """What a template writes: a named species with its polynomial, table, formation and the quality of the fit."""
+    """What a template writes: a named species with its polynomial, table, formation and the quality of the fit.
+
+    note : a short text of the user's in the entry itself, where the format has a place.   comments : lines of his.
+    """
 
     name: str
     model: ThermoModel
@@ -50,6 +53,8 @@ class Entry:
     quality: FitQuality
     table: ThermoTable
     phase: str = "G"
+    note: str = ""
+    comments: tuple[str, ...] = ()
     findings: tuple[Finding, ...] = ()
 
     @property
@@ -72,6 +77,8 @@ class EntryRequest:
     model: ThermoModel
     formation: Formation
     options: FitOptions = FitOptions()
+    note: str = ""
+    comments: tuple[str, ...] = ()
 
 
 def make_entry(name: str, model: ThermoModel, formation: Formation, options: FitOptions | None = None) -> Entry:
@@ -178,6 +185,8 @@ def _entry(request: EntryRequest, polynomial: Nasa7, quality: FitQuality, table:
         polynomial=polynomial,
         quality=quality,
         table=table,
+        note=request.note,
+        comments=request.comments,
         findings=(*model.molecule.findings, *model.findings, *unsure, *formation.findings, *quality.findings()),
     )
 

@@ -158,6 +158,13 @@ CODES: Final[dict[str, str]] = {
     # --- a mechanism as a build -----------------------------------------------------------------------------------
     "lock-wrong": "A lock file is no TOML, or holds an unknown, missing or wrong value.",
     "lock-newer": "A lock file was made by a newer version of heatwright.",
+    "store-set-aside": "The store of a build is damaged or of another version; it was renamed and is made anew.",
+    "store-off": "The store of a build cannot be read or written; the build goes on without it.",
+    "pressures-mixed": "The species of one mechanism have different standard pressures.",
+    "scheduler-unfit": "The scheduler that was to do the work cannot be used.",
+    "worker-lost": "The process that read a file died, each time it was tried.",
+    "file-changed": "A file changed while it was being read.",
+    "task-broke": "Reading a file or making an entry ended in an error that should not happen.",
 }
 """Every code a finding may carry, and what it means."""
 

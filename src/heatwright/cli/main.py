@@ -10,6 +10,7 @@ from typing import NoReturn
 import click
 
 from heatwright import __version__
+from heatwright.cli.build import build
 from heatwright.cli.crosscheck import crosscheck
 from heatwright.cli.entry import entry
 from heatwright.cli.explain import explain
@@ -28,7 +29,7 @@ INTERRUPTED = 130
 
 SECTIONS = {
     "One molecule": ("survey", "table", "entry", "rotors"),
-    "A mechanism": ("start", "crosscheck"),
+    "A mechanism": ("start", "build", "crosscheck"),
     "Looking things up": ("scales", "references", "reactions", "explain", "samples"),
 }
 """How ``--help`` groups the commands."""
@@ -63,7 +64,20 @@ def cli() -> None:
     """
 
 
-for _command in (survey, table, entry, rotors, start, scales, references, reactions, crosscheck, explain, samples):
+for _command in (
+    survey,
+    table,
+    entry,
+    rotors,
+    start,
+    build,
+    crosscheck,
+    scales,
+    references,
+    reactions,
+    explain,
+    samples,
+):
     cli.add_command(_command)
 
 

@@ -139,13 +139,18 @@ def lock_text(lock: Lock) -> str:
 
 def species_text(s: LockedSpecies) -> str:
     """The block of one species, without a blank line at its end."""
+    return "\n".join([f"[species.{toml_key(s.name)}]", *toml_lines(species_values(s))])
+
+
+def species_values(s: LockedSpecies) -> dict[str, Any]:
+    """What the block of one species holds, as plain values by key."""
     f = s.formation
-    formation = {"route": f.route, "source": f.source, "dHf298_kJ_mol": rounded(f.dHf298_kJ_mol)}
+    formation: dict[str, Any] = {"route": f.route, "source": f.source, "dHf298_kJ_mol": rounded(f.dHf298_kJ_mol)}
     for name in ("dHf0_kJ_mol", "u95_kJ_mol"):
         value = getattr(f, name)
         if value is not None:
             formation[name] = rounded(value)
-    values: dict[str, object] = {
+    values: dict[str, Any] = {
         "formula": s.formula,
         "composition": s.composition,
         "charge": s.charge,
@@ -166,9 +171,7 @@ def species_text(s: LockedSpecies) -> str:
         "key": s.key,
         "texts": dict(sorted(s.texts.items())),
     }
-    if s.kept:
-        values["kept"] = s.kept
-    return "\n".join([f"[species.{toml_key(s.name)}]", *toml_lines(values)])
+    return {**values, "kept": s.kept} if s.kept else values
 
 
 def read_lock(path: str | os.PathLike[str]) -> Lock:
@@ -216,6 +219,11 @@ def parse_lock(text: str, file: str = LOCK_NAME) -> Lock:
         references=tuple(_reference(head.inside("references", path, references)) for path in sorted(references)),
         species={name: _species(name, head.inside("species", name, species)) for name in sorted(species)},
     )
+
+
+def parse_lock_species(name: str, values: Mapping[str, Any]) -> LockedSpecies:
+    """One species from the values of its block.  Raises Refused (``lock-wrong``)."""
+    return _species(name, _Reader(LOCK_NAME, f"species.{name}", values))
 
 
 _REMAKE: Final = "Restore the file from version control, or delete the release folder and run `heatwright build`."
