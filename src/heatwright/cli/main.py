@@ -19,6 +19,7 @@ from heatwright.cli.references import references
 from heatwright.cli.rotors import rotors
 from heatwright.cli.samples import samples
 from heatwright.cli.scales import scales
+from heatwright.cli.start import start
 from heatwright.cli.survey import survey
 from heatwright.cli.table import table
 from heatwright.errors import HeatwrightError
@@ -28,7 +29,7 @@ INTERRUPTED = 130
 
 SECTIONS = {
     "One molecule": ("survey", "table", "entry", "rotors"),
-    "A mechanism": ("build", "crosscheck"),
+    "A mechanism": ("start", "build", "crosscheck"),
     "Looking things up": ("scales", "references", "reactions", "explain", "samples"),
 }
 """How ``--help`` groups the commands."""
@@ -63,7 +64,20 @@ def cli() -> None:
     """
 
 
-for _command in (survey, table, entry, rotors, scales, references, reactions, build, crosscheck, explain, samples):
+for _command in (
+    survey,
+    table,
+    entry,
+    rotors,
+    start,
+    build,
+    crosscheck,
+    scales,
+    references,
+    reactions,
+    explain,
+    samples,
+):
     cli.add_command(_command)
 
 
