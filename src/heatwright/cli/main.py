@@ -23,6 +23,7 @@ from heatwright.cli.rotors import rotors
 from heatwright.cli.samples import samples
 from heatwright.cli.scales import scales
 from heatwright.cli.splice import splice
+from heatwright.cli.start import start
 from heatwright.cli.survey import survey
 from heatwright.cli.table import table
 from heatwright.errors import HeatwrightError
@@ -32,7 +33,7 @@ INTERRUPTED = 130
 
 SECTIONS = {
     "One molecule": ("survey", "table", "entry", "rotors"),
-    "A mechanism": ("build", "compare", "crosscheck"),
+    "A mechanism": ("start", "build", "compare", "crosscheck"),
     "Existing entries": ("audit", "mend", "splice"),
     "Looking things up": ("scales", "references", "reactions", "explain", "samples"),
 }
@@ -73,6 +74,7 @@ for _command in (
     table,
     entry,
     rotors,
+    start,
     build,
     compare,
     crosscheck,

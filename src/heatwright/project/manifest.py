@@ -194,12 +194,12 @@ class _Loading:
         """One draft for each output that a glob finds and that no [species] table names itself."""
         from heatwright.writing.names import name_of_file
 
+        if where in self.broken:
+            return []
         if "glob" not in stated:
             self.faults.append(refuse(CODE, "[[outputs]] has no glob", where=where, expected='glob = "*.out"'))
             return []
         own = {name: given for name, given in stated.items() if name not in ("glob", "except")}
-        if where in self.broken:
-            return []
         left_out = _value(stated, "except", ())
         drafts: dict[str, Draft] = {}
         for pattern, place in stated["glob"].value:

@@ -32,8 +32,9 @@ class Here:
             found = f"the path {text!r} holds characters that are not printable"
             raise Refused([refuse("manifest-wrong", found, where=where, expected="a plain path")])
         joined = os.path.join(self.folder, text)
-        # with ".." a lexical shortcut would not go where the file system goes through a symbolic link
-        path = joined if ".." in text.replace(os.sep, "/").split("/") else os.path.normpath(joined)
+        path = os.path.normpath(joined)
+        if ".." in text.replace(os.sep, "/").split("/") and os.path.realpath(path) != os.path.realpath(joined):
+            path = joined  # through a symbolic link the file system's way back is another one
         if self.confine:
             self._confined(text, path, where)
         return ProjectPath(self._shown(text), path)
