@@ -23,7 +23,7 @@ def test_into_a_mechanism_and_back_in_comparison(run, release: Path, tmp_path: P
     target = tmp_path / "new.yaml"
     done = run("splice", release, GRI, "-o", target)
     assert (done.code, done.out) == (0, "")
-    assert "2 entries were replaced." in done.err
+    assert "2 entries replaced." in done.err
     assert "CH3OH" in done.err
     assert "+2.000" in done.err
     assert "2 changed, 51 identical." in run("compare", GRI, target).out
@@ -40,10 +40,10 @@ def test_into_a_file_of_records(run, release: Path, tmp_path: Path) -> None:
     assert path.read_bytes() == before
     done = run("splice", release, path, "-o", path, "--force", "--pressure", "1atm")
     assert done.code == 0
-    assert "1 are not in the file and were left out (--add puts them in): CH3OH." in done.err
+    assert "1 not in the file and left out (--add puts them in): CH3OH." in done.err
     assert path.read_bytes() != before
     again = run("splice", release, path, "-n")
-    assert "1 had these entries already: CH4." in again.err
+    assert "1 the same already: CH4." in again.err
 
 
 def test_a_dry_run_writes_nothing(run, release: Path, tmp_path: Path) -> None:
@@ -53,7 +53,7 @@ def test_a_dry_run_writes_nothing(run, release: Path, tmp_path: Path) -> None:
     assert document["written"] is None
     assert sorted((r["name"], r["kind"]) for r in document["replaced"]) == [("CH3OH", "changed"), ("CH4", "changed")]
     assert not (tmp_path / "new.yaml").exists()
-    assert "2 entries would be replaced." in done.err
+    assert "2 entries to be replaced." in done.err
 
 
 def test_nothing_is_written_when_anything_is_refused(run, release: Path, tmp_path: Path) -> None:

@@ -19,6 +19,7 @@ if TYPE_CHECKING:
     from heatwright.project.thermo_set import ThermoSet
 
 CHECK_SAYS_NO = 1
+_VERDICTS = {"other species": "with other elements or counts"}
 
 
 @click.command(short_help="What changed between two releases or thermo files, and whether it matters.")
@@ -134,11 +135,12 @@ def _moved(
     for kind in MOVED:
         names = [c.name for c in comparison.of_kind(kind)]
         if names:
-            yield f"{len(names)} species {kind}: {listed(names)}"
+            yield f"{len(names)} species {_VERDICTS.get(kind, kind)}: {listed(names)}"
     if any(f.code == "pressure-differs" for f in comparison.findings):
         yield "the standard pressures differ"
     if effect is not None and (beyond := effect.beyond(factor)):
-        yield f"the reverse rates of {len(beyond)} reactions move by more than a factor of {factor:g}"
+        which = f"the reverse rates of {len(beyond)} reactions move" if len(beyond) > 1 else "one reverse rate moves"
+        yield f"{which} by more than a factor of {factor:g}"
     if isinstance(burnt, Flame) and abs(burnt.new_K - burnt.old_K) > comparison.tolerance.flame_K:
         yield f"the flame moves by {burnt.new_K - burnt.old_K:+.2f} K"
 

@@ -79,11 +79,11 @@ def splice(
         write_bytes(target, done.data)
     if as_json:
         click.echo(_json_text(done, file, None if dry_run else target))
-    _say(reporter, done, units, "would be" if dry_run else "was")
+    _say(reporter, done, units, "to be " if dry_run else "")
     ctx.exit(reporter.exit_code)
 
 
-def _say(reporter: Reporter, done: Splice, units: str, was: str) -> None:
+def _say(reporter: Reporter, done: Splice, units: str, to_be: str) -> None:
     from heatwright.cli.compare_text import change_lines, listed
     from heatwright.project.differences import COMPARED_K
     from heatwright.writing.units import UNITS
@@ -91,12 +91,12 @@ def _say(reporter: Reporter, done: Splice, units: str, was: str) -> None:
     if done.replaced:
         for line in change_lines(done.replaced, COMPARED_K, UNITS[units]):
             reporter.say(line)
-    were = {"was": "were", "would be": "would be"}[was]
-    reporter.say(f"{len(done.replaced)} entries {were} replaced.")
+    n = len(done.replaced)
+    reporter.say(f"{n} {'entry' if n == 1 else 'entries'} {to_be}replaced.")
     for names, words in (
-        (done.same, "had these entries already"),
-        (done.added, f"{were} added"),
-        (done.left_out, "are not in the file and were left out (--add puts them in)"),
+        (done.same, "the same already"),
+        (done.added, f"{to_be}added"),
+        (done.left_out, "not in the file and left out (--add puts them in)"),
     ):
         if names:
             reporter.say(f"{len(names)} {words}: {listed(names)}.")
