@@ -36,6 +36,8 @@ if TYPE_CHECKING:
     from heatwright.polynomial.fit import fit_nasa7
     from heatwright.polynomial.nasa7 import Nasa7
     from heatwright.polynomial.quality import FitQuality, fit_quality
+    from heatwright.project.manifest import load_manifest
+    from heatwright.project.manifest_types import Manifest, SpeciesRequest
     from heatwright.reading.outputs import read_output
     from heatwright.reading.single_point import with_energy
     from heatwright.reading.torsion_scans import read_torsion
@@ -61,6 +63,7 @@ _HOME = {
     "Level": "molecule",
     "LnQ": "partition.contribution",
     "LowModes": "partition.lowmodes",
+    "Manifest": "project.manifest_types",
     "ModelOptions": "partition.choices",
     "Molecule": "molecule",
     "Nasa7": "polynomial.nasa7",
@@ -69,6 +72,7 @@ _HOME = {
     "Refused": "findings",
     "RouteRequest": "formation.routes",
     "ScaleChoice": "scales",
+    "SpeciesRequest": "project.manifest_types",
     "Symmetry": "structure.symmetry",
     "ThermoModel": "partition.model",
     "ThermoTable": "partition.table",
@@ -85,6 +89,7 @@ _HOME = {
     "formation_by_atomization": "formation.atomization",
     "formation_given": "formation.formation",
     "formation_of": "formation.routes",
+    "load_manifest": "project.manifest",
     "make_entry": "entry",
     "mixture_model": "partition.mixing",
     "parse_enthalpy": "formation.formation",
@@ -117,6 +122,7 @@ __all__ = [
     "LnQ",
     "LowModes",
     "ModelOptions",
+    "Manifest",
     "Molecule",
     "Nasa7",
     "PublishedFactor",
@@ -124,6 +130,7 @@ __all__ = [
     "Refused",
     "RouteRequest",
     "ScaleChoice",
+    "SpeciesRequest",
     "Symmetry",
     "ThermoModel",
     "ThermoTable",
@@ -141,6 +148,7 @@ __all__ = [
     "formation_by_atomization",
     "formation_given",
     "formation_of",
+    "load_manifest",
     "make_entry",
     "mixture_model",
     "parse_enthalpy",
