@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import os
+import sys
 import time
 from collections.abc import Sequence
 from shutil import get_terminal_size
@@ -162,7 +163,7 @@ class _Bar:
 
     def __init__(self, root: str, quiet: bool) -> None:
         self._root = root
-        self._stream = click.get_text_stream("stderr")
+        self._stream = sys.stderr
         self._hidden = quiet or not self._stream.isatty()
         self._began = 0.0
         self._open = False

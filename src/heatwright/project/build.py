@@ -6,6 +6,8 @@ half a second, so that a build that is interrupted, in whatever way, goes on fro
 
 from __future__ import annotations
 
+import hashlib
+import json
 from collections.abc import Iterator, Sequence
 from contextlib import chdir
 from dataclasses import dataclass, replace
@@ -16,13 +18,21 @@ from heatwright.findings import Finding, Refused, refusals
 from heatwright.project.executors import Engine
 from heatwright.project.fingerprint import tool_fingerprint
 from heatwright.project.library import Library
-from heatwright.project.lockfile import LOCK_NAME, Lock, LockedReference, lock_text, parse_lock
+from heatwright.project.lockfile import (
+    LOCK_NAME,
+    Lock,
+    LockedReference,
+    document_text,
+    lock_document,
+    lock_of,
+    lock_values,
+)
 from heatwright.project.making import Maker, broken, entries_of, tasks_of
-from heatwright.project.manifest_types import Manifest, ReferenceFolders, canonical_hash
+from heatwright.project.manifest_types import Manifest, ReferenceFolders
 from heatwright.project.plan import Decision, Plan, check_pressure, entry_key, make_plan
 from heatwright.project.record import Record, packed, records, unpacked
 from heatwright.project.release import check_folder, locked, read_release, recover, switch
-from heatwright.project.shelf import Shelf, references_hash
+from heatwright.project.shelf import Shelf
 from heatwright.project.store import Store
 from heatwright.project.texts import FILES, whole_texts, with_remark
 from heatwright.project.watch import Watch
@@ -92,13 +102,27 @@ class _Build:
         self._before = read_release(release.path, (LOCK_NAME, *FILES))
         lock = None
         if LOCK_NAME in self._before:
-            lock = parse_lock(_text(self._before[LOCK_NAME]), f"{release.shown}/{LOCK_NAME}")
+            lock = self._lock(_text(self._before[LOCK_NAME]), f"{release.shown}/{LOCK_NAME}")
         known = {r.path: r for r in lock.references} if lock is not None else {}
         for folders in dict.fromkeys(request.formation.folders for request in self._manifest.species):
             self._shelves[folders] = shelf = Shelf(folders, self._library, known)
             shelf.label_all(self._watch.reading)
         texts = {file: _text(self._before[file]) for file in FILES if file in self._before}
         return make_plan(self._manifest, self._library, self._shelves, lock, texts)
+
+    def _lock(self, text: str, file: str) -> Lock:
+        """The lock file with this text; its values are remembered, as TOML is slow to take apart."""
+        key = _lock_key(text)
+        data = self._library.store.get([key]).get(key)
+        if data is not None:
+            try:
+                return lock_of(json.loads(data), file)
+            except (ValueError, Refused):
+                self._library.store.drop(key)
+        values = lock_values(text, file)
+        lock = lock_of(values, file)
+        self._library.store.put({key: json.dumps(values, ensure_ascii=False).encode()})
+        return lock
 
     def run(self) -> Outcome:
         """Plan, make, write."""
@@ -134,9 +158,7 @@ class _Build:
     def _result_key(self, decision: Decision) -> str:
         """Everything that an entry can depend on; more than it does, as its elements are not known beforehand."""
         shelf = self._shelves[decision.request.formation.folders]
-        parts = [[file.role, file.path, file.sha256] for file in decision.files]
-        rests_on = references_hash(shelf.everything())
-        return f"result:{canonical_hash([decision.request, parts, rests_on, tool_fingerprint()])}"
+        return f"result:{entry_key(decision, shelf.everything())}"
 
     def _made(self, decisions: Sequence[Decision]) -> Iterator[Record]:
         maker = Maker(self._library, self._shelves, self._watch.said)
@@ -151,7 +173,7 @@ class _Build:
                     self._fail(decision, fault)
                 elif not isinstance(entry, Refused):
                     rests_on = self._rests_on(decision, entry.composition)
-                    good.append((decision, entry, entry_key(decision.request, decision.files, rests_on), rests_on))
+                    good.append((decision, entry, entry_key(decision, rests_on), rests_on))
             for (decision, *_), record in zip(good, records(good), strict=True):
                 if isinstance(record, Refused):
                     self._fail(decision, record)
@@ -212,10 +234,13 @@ class _Build:
             species=species,
             references=tuple(sorted({r for record in together for r in record.rests_on})),
         )
-        files = {name: text.encode() for name, text in {**texts, LOCK_NAME: lock_text(lock)}.items()}
+        document = lock_document(lock)
+        whole = {**texts, LOCK_NAME: document_text(document)}
+        files = {name: text.encode() for name, text in whole.items()}
         if files == self._before:
             return False
         switch(release.path, files)
+        self._library.store.put({_lock_key(whole[LOCK_NAME]): json.dumps(document, ensure_ascii=False).encode()})
         return True
 
     def _together(self, plan: Plan, fresh: dict[str, Record]) -> list[Record]:
@@ -229,6 +254,10 @@ class _Build:
                 rests_on = self._rests_on(decision, dict(old.composition))
                 found.append(Record(old, plan.blocks[decision.name], rests_on))
         return found
+
+
+def _lock_key(text: str) -> str:
+    return f"lock:{hashlib.sha256(text.encode()).hexdigest()}"
 
 
 def _text(data: bytes) -> str:

@@ -18,6 +18,9 @@ _MARK: Final = b"HW1"
 _DTYPES: Final = ("float64", "int64", "bool", "int32", "int16", "int8", "uint8")
 
 
+_SCALARS: Final = frozenset({str, int, float, bool, type(None)})
+
+
 class Unreadable(ValueError):
     """The bytes were not written by :func:`encoded`, or are damaged."""
 
@@ -97,19 +100,20 @@ def _array(value: np.ndarray[Any, Any], arrays: list[bytes]) -> dict[str, Any]:
 
 
 def _value(plain: Any, body: bytes, start: int) -> Any:
-    if isinstance(plain, list):
-        return tuple([_value(item, body, start) for item in plain])
-    if isinstance(plain, dict):
-        ((mark, inside),) = plain.items()
-        return _MARKED[mark](inside, body, start)
-    return plain
+    kind = type(plain)
+    if kind in _SCALARS:
+        return plain
+    if kind is list:
+        return tuple([item if type(item) in _SCALARS else _value(item, body, start) for item in plain])
+    ((mark, inside),) = plain.items()
+    return _MARKED[mark](inside, body, start)
 
 
 def _object(inside: list[Any], body: bytes, start: int) -> Any:
     kind, names = _types()[inside[0]]
     if len(names) != len(inside) - 1:
         raise Unreadable(f"{inside[0]} has {len(inside) - 1} fields")
-    return kind(**{name: _value(item, body, start) for name, item in zip(names, inside[1:], strict=True)})
+    return kind(**dict(zip(names, _value(inside[1:], body, start), strict=True)))
 
 
 def _mapping(inside: dict[str, Any], body: bytes, start: int) -> dict[str, Any]:

@@ -11,13 +11,14 @@ import os
 import signal
 from collections import deque
 from collections.abc import Callable, Iterable, Iterator
-from concurrent.futures import CancelledError, Executor, Future, ProcessPoolExecutor
 from dataclasses import dataclass
-from multiprocessing import get_context
 from queue import Empty, SimpleQueue
-from typing import Final, Generic, TypeVar
+from typing import TYPE_CHECKING, Final, Generic, TypeVar
 
 from heatwright.findings import Refused, refuse
+
+if TYPE_CHECKING:
+    from concurrent.futures import Executor, Future, ProcessPoolExecutor
 
 A = TypeVar("A")
 R = TypeVar("R")
@@ -39,6 +40,8 @@ class Engine:
 
     def submit(self, work: Callable[[A], R], task: A) -> Future[R]:
         """The future of one task."""
+        from concurrent.futures import Future
+
         future: Future[R] = Future()
         try:
             future.set_result(work(task))
@@ -98,6 +101,9 @@ class LocalProcesses(Engine):
 
 
 def _pool(count: int) -> ProcessPoolExecutor:
+    from concurrent.futures import ProcessPoolExecutor
+    from multiprocessing import get_context
+
     for name in ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS"):
         os.environ.setdefault(name, "1")  # each worker is one core's work; linear algebra must not add threads
     context = get_context("forkserver")
@@ -155,12 +161,12 @@ class _Runner(Generic[A, R]):
             if future not in self._running:
                 continue  # of a pool that broke
             task, deaths = self._running.pop(future)
-            failure: BaseException | None = CancelledError() if future.cancelled() else future.exception()
-            if failure is None:
+            failure = "CancelledError" if future.cancelled() else type(future.exception()).__name__
+            if failure == "NoneType":
                 return task, future.result()
             self._mend()
             if deaths >= ATTEMPTS:
-                return task, Lost(f"what was at work on it died, {deaths + 1} times ({type(failure).__name__})")
+                return task, Lost(f"what was at work on it died, {deaths + 1} times ({failure})")
             self._again.append((task, deaths + 1))
 
     def stop(self) -> None:

@@ -8,9 +8,10 @@ from __future__ import annotations
 
 import hashlib
 from functools import cache
-from importlib.metadata import PackageNotFoundError, version
 from importlib.resources import files
 from importlib.resources.abc import Traversable
+from importlib.util import find_spec
+from pathlib import Path
 from typing import Final
 
 from heatwright.resources import templates
@@ -32,11 +33,17 @@ _TEXTS: Final = ("nasa7.j2", "yaml.j2")
 @cache
 def reader_fingerprint() -> str:
     """What identifies the reader of outputs: its sources, the tables, and the version of cclib."""
-    try:
-        cclib = version("cclib")
-    except PackageNotFoundError:
-        cclib = "not installed"
-    return _hash(_FOR_READING, cclib)
+    return _hash(_FOR_READING, _cclib_version())
+
+
+def _cclib_version() -> str:
+    """What cclib's own sources say of its version: importing it, or reading its metadata, would cost more."""
+    spec = find_spec("cclib")
+    if spec is None or spec.origin is None:
+        return "not installed"
+    sources = [Path(spec.origin).with_name(name) for name in ("__init__.py", "_version.py")]
+    lines = [line for p in sources if p.is_file() for line in p.read_text(encoding="utf-8").splitlines()]
+    return "\n".join(line for line in lines if "version" in line)
 
 
 @cache

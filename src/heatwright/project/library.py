@@ -38,7 +38,8 @@ class Library:
 
     def hashes(self, paths: Iterable[str]) -> dict[str, str]:
         """SHA-256 by absolute path, empty where there is nothing to be read; from the store where no time changed."""
-        fresh = [path for path in dict.fromkeys(paths) if path not in self._hashes]
+        wanted = list(dict.fromkeys(paths))
+        fresh = [path for path in wanted if path not in self._hashes]
         known = self.store.get(f"hash:{path}" for path in fresh)
         learnt: dict[str, bytes] = {}
         for path in fresh:
@@ -49,7 +50,7 @@ class Library:
                 learnt[f"hash:{path}"] = json.dumps([*before, self._hashes[path]]).encode()
         if learnt:
             self.store.put(learnt)
-        return {path: self._hashes[path] for path in dict.fromkeys(paths)}
+        return {path: self._hashes[path] for path in wanted}
 
     def sha256(self, path: str) -> str:
         """SHA-256 of one file."""

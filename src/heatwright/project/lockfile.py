@@ -121,7 +121,12 @@ def rounded(value: float) -> float:
 
 def lock_text(lock: Lock) -> str:
     """The text of a lock file: one block for the head, one for the references, one for each species."""
-    head = {
+    return document_text(lock_document(lock))
+
+
+def lock_document(lock: Lock) -> dict[str, Any]:
+    """What a lock file holds, as plain values: what :func:`lock_values` gives for its text."""
+    document: dict[str, Any] = {
         "heatwright-lock": LOCK_VERSION,
         "mechanism": lock.mechanism,
         "tool": lock.tool,
@@ -129,17 +134,21 @@ def lock_text(lock: Lock) -> str:
         "standard_pressure_Pa": lock.standard_pressure_Pa,
         "Cp_temperatures_K": list(lock.cp_temperatures_K),
     }
-    blocks = ["\n".join([_HEAD, *toml_lines(head)])]
     if lock.references:
-        rows = {r.path: {"species": r.species, "sha256": r.sha256} for r in sorted(lock.references)}
-        blocks.append("\n".join(["[references]", *toml_lines(rows)]))
-    blocks += [species_text(lock.species[name]) for name in sorted(lock.species)]
+        rows = sorted(lock.references)
+        document["references"] = {r.path: {"species": r.species, "sha256": r.sha256} for r in rows}
+    return {**document, "species": {name: species_values(lock.species[name]) for name in sorted(lock.species)}}
+
+
+def document_text(document: Mapping[str, Any]) -> str:
+    """The text of a lock file that holds these values."""
+    head = {key: value for key, value in document.items() if key not in ("references", "species")}
+    blocks = ["\n".join([_HEAD, *toml_lines(head)])]
+    if document.get("references"):
+        blocks.append("\n".join(["[references]", *toml_lines(document["references"])]))
+    for name, values in document["species"].items():
+        blocks.append("\n".join([f"[species.{toml_key(name)}]", *toml_lines(values)]))
     return "\n\n".join(blocks) + "\n"
-
-
-def species_text(s: LockedSpecies) -> str:
-    """The block of one species, without a blank line at its end."""
-    return "\n".join([f"[species.{toml_key(s.name)}]", *toml_lines(species_values(s))])
 
 
 def species_values(s: LockedSpecies) -> dict[str, Any]:
@@ -152,7 +161,7 @@ def species_values(s: LockedSpecies) -> dict[str, Any]:
             formation[name] = rounded(value)
     values: dict[str, Any] = {
         "formula": s.formula,
-        "composition": s.composition,
+        "composition": dict(s.composition),
         "charge": s.charge,
         "multiplicity": s.multiplicity,
         "files": [{"role": file.role, "path": file.path, "sha256": file.sha256} for file in s.files],
@@ -160,13 +169,13 @@ def species_values(s: LockedSpecies) -> dict[str, Any]:
         "level": s.level,
         "program": s.program,
         "choices": dict(sorted(s.choices.items())),
-        "conventions": s.conventions,
+        "conventions": dict(s.conventions),
         "formation": formation,
         "S298_J_mol_K": rounded(s.S298_J_mol_K),
         "H298_minus_H0_kJ_mol": rounded(s.H298_minus_H0_kJ_mol),
         "Cp_J_mol_K": [rounded(cp) for cp in s.Cp_J_mol_K],
         "temperatures_K": list(s.temperatures_K),
-        "residuals": s.residuals,
+        "residuals": dict(s.residuals),
         "findings": list(s.findings),
         "key": s.key,
         "texts": dict(sorted(s.texts.items())),
@@ -192,13 +201,22 @@ def read_lock(path: str | os.PathLike[str]) -> Lock:
 
 def parse_lock(text: str, file: str = LOCK_NAME) -> Lock:
     """The lock file with this text; *file* names it in messages.  Raises as :func:`read_lock` does."""
+    return lock_of(lock_values(text, file), file)
+
+
+def lock_values(text: str, file: str = LOCK_NAME) -> dict[str, Any]:
+    """The values in the text of a lock file, unlooked at.  Raises Refused (``lock-wrong``) when it is no TOML."""
     try:
-        values = tomllib.loads(text)
+        return tomllib.loads(text)
     except (ValueError, RecursionError) as error:
         line = re.search(r"at line (\d+)", str(error))
         words = re.sub(r" \(at .*\)$", "", str(error))
         where = f"{file}:{line[1]}" if line else file
         raise Refused([refuse("lock-wrong", f"this is no TOML ({words})", where=where, action=_REMAKE)]) from error
+
+
+def lock_of(values: Mapping[str, Any], file: str = LOCK_NAME) -> Lock:
+    """The lock file with these values.  Raises Refused (``lock-newer``, ``lock-wrong``)."""
     head = _Reader(file, "", values)
     version = head.whole("heatwright-lock")
     if version > LOCK_VERSION:

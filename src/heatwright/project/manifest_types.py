@@ -8,7 +8,8 @@ from __future__ import annotations
 import hashlib
 import json
 from dataclasses import dataclass, fields, is_dataclass
-from typing import Any, Literal
+from functools import cache, lru_cache
+from typing import Literal
 
 
 @dataclass(frozen=True, slots=True, order=True)
@@ -183,7 +184,18 @@ def canonical(value: object) -> str:
     >>> canonical(OutputFiles(ProjectPath("a.out", "/home/me/a.out")))
     '{"energy":null,"output":"a.out"}'
     """
-    return json.dumps(_plain(value), ensure_ascii=False, sort_keys=True, separators=(",", ":"), allow_nan=False)
+    if isinstance(value, _SHARED):
+        return _canonical_once(value)
+    if isinstance(value, ProjectPath):
+        return _json(value.shown)
+    if is_dataclass(value) and not isinstance(value, type):
+        names = _field_names(type(value))
+        return f"{{{','.join(f'{_json(name)}:{canonical(getattr(value, name))}' for name in names)}}}"
+    if isinstance(value, tuple | list):
+        return f"[{','.join(map(canonical, value))}]"
+    if value is None or isinstance(value, bool | int | float | str):
+        return _json(value)
+    raise TypeError(f"{type(value).__name__} has no canonical text")
 
 
 def canonical_hash(value: object) -> str:
@@ -191,15 +203,21 @@ def canonical_hash(value: object) -> str:
     return hashlib.sha256(canonical(value).encode()).hexdigest()
 
 
-def _plain(value: object) -> Any:
-    if isinstance(value, ProjectPath):
-        return value.shown
-    if is_dataclass(value) and not isinstance(value, type):
-        return {f.name: _plain(getattr(value, f.name)) for f in fields(value) if f.name != "where"}
-    if isinstance(value, tuple | list):
-        return [_plain(item) for item in value]
-    if isinstance(value, dict):
-        return {str(key): _plain(item) for key, item in value.items()}
-    if value is None or isinstance(value, bool | int | float | str):
-        return value
-    raise TypeError(f"{type(value).__name__} has no canonical text")
+_SHARED = (ReadingChoice, ModelChoice, FitChoice, FormationChoice, ReferenceFolders)
+"""Parts that many species have in common, so that their text is worth remembering."""
+
+
+@lru_cache(maxsize=1024)
+def _canonical_once(value: object) -> str:
+    kind: type = type(value)
+    pairs = (f"{_json(name)}:{canonical(getattr(value, name))}" for name in _field_names(kind))
+    return f"{{{','.join(pairs)}}}"
+
+
+@cache
+def _field_names(kind: type) -> tuple[str, ...]:
+    return tuple(sorted(f.name for f in fields(kind) if f.name != "where"))
+
+
+def _json(value: object) -> str:
+    return json.dumps(value, ensure_ascii=False, allow_nan=False)

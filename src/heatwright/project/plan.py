@@ -2,9 +2,11 @@
 
 from __future__ import annotations
 
+import hashlib
 from collections import Counter
 from collections.abc import Iterable, Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
+from functools import lru_cache
 from typing import TYPE_CHECKING, Any, Final, Literal
 
 from heatwright import __version__
@@ -13,12 +15,16 @@ from heatwright.project.fingerprint import tool_fingerprint
 from heatwright.project.keys import KEYS
 from heatwright.project.lockfile import Lock, LockedFile, LockedReference, LockedSpecies
 from heatwright.project.manifest_types import (
+    FitChoice,
+    FormationChoice,
     Manifest,
+    ModelChoice,
     ProjectPath,
+    ReadingChoice,
     ReferenceFolders,
     SpeciesRequest,
     TorsionChoice,
-    canonical_hash,
+    canonical,
 )
 from heatwright.project.shelf import references_hash
 from heatwright.project.texts import FILES, Texts, blocks_by_species, text_hash
@@ -52,12 +58,14 @@ class Decision:
     """What is to be done about one species: nothing when there are no reasons.
 
     files : what it is made from, as a lock file says it.   choices : the options that are not the default.
+    identity : a text that is the same only when options and contents of files are.
     """
 
     request: SpeciesRequest
     files: tuple[LockedFile, ...]
     choices: Mapping[str, Any]
-    reasons: tuple[Reason, ...]
+    identity: str
+    reasons: tuple[Reason, ...] = ()
 
     @property
     def name(self) -> str:
@@ -135,14 +143,15 @@ def make_plan(
     library.hashes(path.path for request in manifest.species for path in used_paths(request))
     decisions = []
     for request in manifest.species:
-        files, choices = locked_files(request, library), choices_of(request)
+        files = locked_files(request, library)
+        identity = f"{canonical(request)} {[(file.role, file.path, file.sha256) for file in files]}"
+        decision = Decision(request, files, choices_of(request), identity)
         old = lock.species.get(request.name) if lock is not None else None
-        if lock is None or old is None:
-            reasons: tuple[Reason, ...] = (Reason("new"),)
-        else:
+        reasons: tuple[Reason, ...] = (Reason("new"),)
+        if lock is not None and old is not None:
             rests_on = shelves[request.formation.folders].relevant(request.formation, old.composition)
-            reasons = _reasons(request, files, choices, rests_on, old, lock, blocks.get(request.name, {}))
-        decisions.append(Decision(request, files, choices, reasons))
+            reasons = _reasons(decision, rests_on, old, lock, blocks.get(request.name, {}))
+        decisions.append(replace(decision, reasons=reasons))
     names = {request.name for request in manifest.species}
     removed = tuple(name for name in lock.species if name not in names) if lock is not None else ()
     renamed = lock is not None and lock.mechanism != manifest.mechanism.name
@@ -174,14 +183,15 @@ def locked_files(request: SpeciesRequest, library: Library) -> tuple[LockedFile,
     return tuple(LockedFile(role, path.shown, library.sha256(path.path)) for role, path in found)
 
 
-def entry_key(request: SpeciesRequest, files: Iterable[LockedFile], rests_on: Iterable[LockedReference]) -> str:
+def entry_key(decision: Decision, rests_on: Iterable[LockedReference]) -> str:
     """One hash of everything that decides about an entry: options, contents of files, references, and heatwright."""
-    parts = [[file.role, file.path, file.sha256] for file in files]
-    return canonical_hash([request, parts, references_hash(tuple(rests_on)), tool_fingerprint()])
+    words = f"{decision.identity} {references_hash(tuple(rests_on))} {tool_fingerprint()}"
+    return hashlib.sha256(words.encode()).hexdigest()
 
 
 _FIELDS: Final = tuple((key.name, key.field) for key in KEYS if key.field)
 _PLAIN: Final = SpeciesRequest(name="", files=())
+_OWN: Final = ("note", "comments")
 
 
 def choices_of(request: SpeciesRequest) -> dict[str, Any]:
@@ -190,6 +200,16 @@ def choices_of(request: SpeciesRequest) -> dict[str, Any]:
     >>> choices_of(_PLAIN)
     {}
     """
+    shared = _shared_choices(request.reading, request.model, request.fit, request.formation)
+    return {**shared, **{name: _plain(value) for name in _OWN if (value := getattr(request, name))}}
+
+
+@lru_cache(maxsize=1024)
+def _shared_choices(
+    reading: ReadingChoice, model: ModelChoice, fit: FitChoice, formation: FormationChoice
+) -> dict[str, Any]:
+    """The same of the parts that species have in common."""
+    request = SpeciesRequest(name="", files=(), reading=reading, model=model, fit=fit, formation=formation)
     pairs = ((name, _option(request, field), _option(_PLAIN, field)) for name, field in _FIELDS)
     return {name: _plain(value) for name, value, default in pairs if value != default}
 
@@ -215,20 +235,18 @@ def _plain(value: Any) -> Any:
 
 
 def _reasons(
-    request: SpeciesRequest,
-    files: tuple[LockedFile, ...],
-    choices: Mapping[str, Any],
+    decision: Decision,
     rests_on: tuple[LockedReference, ...],
     old: LockedSpecies,
     lock: Lock,
     block: Texts,
 ) -> tuple[Reason, ...]:
     missing = _missing(old, block)
-    if entry_key(request, files, rests_on) == old.key:
+    if entry_key(decision, rests_on) == old.key:
         return missing
     found = (
-        *_output_reasons(files, old),
-        *_option_reasons(choices, old),
+        *_output_reasons(decision.files, old),
+        *_option_reasons(decision.choices, old),
         *_reference_reasons(rests_on, old, lock),
         *_tool_reasons(lock),
     )

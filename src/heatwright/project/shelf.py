@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import os
 from collections.abc import Callable, Collection, Iterable, Mapping, Sequence
+from functools import lru_cache
 from typing import TYPE_CHECKING, Final
 
 from heatwright.findings import Finding, Refused, refusals, refuse, warn
@@ -61,6 +62,7 @@ class Shelf:
         self._files: dict[ProjectPath, tuple[ProjectPath, ...]] = {}
         self._atoms: Atoms | None = None
         self._everything: tuple[LockedReference, ...] | None = None
+        self._of_elements: dict[frozenset[str], tuple[LockedReference, ...]] = {}
 
     def files(self, folder: ProjectPath | None) -> tuple[ProjectPath, ...]:
         """The files of a folder that may be outputs, sorted by name; none when it is not there."""
@@ -212,6 +214,7 @@ def _unusable(molecule: Molecule) -> tuple[Finding, ...]:
     return refusals(molecule.findings) or (() if molecule.is_atom else refusals(no_thermochemistry(molecule)))
 
 
-def references_hash(rows: Sequence[LockedReference]) -> str:
+@lru_cache(maxsize=4096)
+def references_hash(rows: tuple[LockedReference, ...]) -> str:
     """One hash of what a species rests on; empty when that is nothing."""
     return canonical_hash([[r.path, r.sha256, r.species] for r in rows]) if rows else ""
