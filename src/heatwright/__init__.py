@@ -43,6 +43,8 @@ if TYPE_CHECKING:
     from heatwright.project.mechanism import read_mechanism
     from heatwright.project.splice import splice
     from heatwright.project.thermo_set import read_thermo_set
+    from heatwright.project.manifest import load_manifest
+    from heatwright.project.manifest_types import Manifest, SpeciesRequest
     from heatwright.reading.entries import parse_entries, read_entries, replace_entries
     from heatwright.reading.entry_file import EntryFile, ThermoEntry
     from heatwright.reading.outputs import read_output
@@ -74,6 +76,7 @@ _HOME = {
     "Level": "molecule",
     "LnQ": "partition.contribution",
     "LowModes": "partition.lowmodes",
+    "Manifest": "project.manifest_types",
     "ModelOptions": "partition.choices",
     "Molecule": "molecule",
     "Nasa7": "polynomial.nasa7",
@@ -82,6 +85,7 @@ _HOME = {
     "Refused": "findings",
     "RouteRequest": "formation.routes",
     "ScaleChoice": "scales",
+    "SpeciesRequest": "project.manifest_types",
     "Symmetry": "structure.symmetry",
     "ThermoEntry": "reading.entry_file",
     "ThermoModel": "partition.model",
@@ -101,6 +105,7 @@ _HOME = {
     "formation_by_atomization": "formation.atomization",
     "formation_given": "formation.formation",
     "formation_of": "formation.routes",
+    "load_manifest": "project.manifest",
     "make_entry": "entry",
     "mechanism_effect": "project.effects",
     "mend_entries": "audit.mend",
@@ -144,6 +149,7 @@ __all__ = [
     "Level",
     "LnQ",
     "LowModes",
+    "Manifest",
     "ModelOptions",
     "Molecule",
     "Nasa7",
@@ -152,6 +158,7 @@ __all__ = [
     "Refused",
     "RouteRequest",
     "ScaleChoice",
+    "SpeciesRequest",
     "Symmetry",
     "ThermoEntry",
     "ThermoModel",
@@ -172,6 +179,7 @@ __all__ = [
     "formation_by_atomization",
     "formation_given",
     "formation_of",
+    "load_manifest",
     "make_entry",
     "mechanism_effect",
     "mend_entries",

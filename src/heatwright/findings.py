@@ -156,6 +156,16 @@ CODES: Final[dict[str, str]] = {
     "target-exists": "The file to be written exists already.",
     "target-unwritable": "The file to be written cannot be written.",
     "template-failed": "The user's template could not be rendered.",
+    # --- a mechanism as a build -----------------------------------------------------------------------------------
+    "lock-wrong": "A lock file is no TOML, or holds an unknown, missing or wrong value.",
+    "lock-newer": "A lock file was made by a newer version of heatwright.",
+    "store-set-aside": "The store of a build is damaged or of another version; it was renamed and is made anew.",
+    "store-off": "The store of a build cannot be read or written; the build goes on without it.",
+    "pressures-mixed": "The species of one mechanism have different standard pressures.",
+    "scheduler-unfit": "The scheduler that was to do the work cannot be used.",
+    "worker-lost": "The process that read a file died, each time it was tried.",
+    "file-changed": "A file changed while it was being read.",
+    "task-broke": "Reading a file or making an entry ended in an error that should not happen.",
     # --- existing entries: reading --------------------------------------------------------------------------------
     "no-entries": "The file holds no thermo entry.",
     "no-such-entry": "The file has no entry of a name, or several.",
@@ -208,16 +218,6 @@ CODES: Final[dict[str, str]] = {
     "mended": "An entry was refitted; what changed is said.",
     "not-mendable": "An entry is faulty, and mending cannot put it right.",
     "not-in-release": "Entries have no partner in the release they are compared with.",
-    # --- a mechanism as a build -----------------------------------------------------------------------------------
-    "lock-wrong": "A lock file is no TOML, or holds an unknown, missing or wrong value.",
-    "lock-newer": "A lock file was made by a newer version of heatwright.",
-    "store-set-aside": "The store of a build is damaged or of another version; it was renamed and is made anew.",
-    "store-off": "The store of a build cannot be read or written; the build goes on without it.",
-    "pressures-mixed": "The species of one mechanism have different standard pressures.",
-    "scheduler-unfit": "The scheduler that was to do the work cannot be used.",
-    "worker-lost": "The process that read a file died, each time it was tried.",
-    "file-changed": "A file changed while it was being read.",
-    "task-broke": "Reading a file or making an entry ended in an error that should not happen.",
     # --- what changed, and back into the mechanism ----------------------------------------------------------------
     "no-release": "A folder holds no release, or the files of a release contradict each other.",
     "pressure-differs": "Entries for different standard pressures were compared, or were to be put into one file.",
