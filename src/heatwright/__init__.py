@@ -40,11 +40,11 @@ if TYPE_CHECKING:
     from heatwright.polynomial.quality import FitQuality, fit_quality
     from heatwright.project.changes import Change, Comparison, compare_sets
     from heatwright.project.effects import mechanism_effect
+    from heatwright.project.manifest import load_manifest
+    from heatwright.project.manifest_types import Manifest, SpeciesRequest
     from heatwright.project.mechanism import read_mechanism
     from heatwright.project.splice import splice
     from heatwright.project.thermo_set import read_thermo_set
-    from heatwright.project.manifest import load_manifest
-    from heatwright.project.manifest_types import Manifest, SpeciesRequest
     from heatwright.reading.entries import parse_entries, read_entries, replace_entries
     from heatwright.reading.entry_file import EntryFile, ThermoEntry
     from heatwright.reading.outputs import read_output
