@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections import Counter
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
@@ -90,6 +91,10 @@ def composition(numbers: Iterable[int], masses_u: Iterable[float] | None = None)
         counts = Counter(symbol(z) for z in numbers)
     else:
         counts = Counter("D" if is_deuterium(z, m) else symbol(z) for z, m in zip(numbers, masses_u, strict=True))
+    return _in_hill_order(counts)
+
+
+def _in_hill_order(counts: Mapping[str, int]) -> dict[str, int]:
     rank = {"C": (0, ""), "H": (1, ""), "D": (2, "")} if "C" in counts else {"D": (9, "HD")}
     order = sorted(counts, key=lambda s: rank.get(s, (9, s)))
     return {s: counts[s] for s in order}
@@ -110,6 +115,22 @@ def formula(atoms: Mapping[str, int], charge: int = 0) -> str:
     if abs(charge) == 1:
         return text + ("+" if charge > 0 else "-")
     return f"{text}{charge:+d}" if charge else text
+
+
+def parse_formula(text: str) -> dict[str, int]:
+    """The composition that a formula states, in Hill order; element symbols and counts in any order, repeats added up.
+
+    Raises ValueError for anything else; charges and parentheses are not read.
+
+    >>> parse_formula("CH3OH"), parse_formula("D2O")
+    ({'C': 1, 'H': 4, 'O': 1}, {'D': 2, 'O': 1})
+    """
+    counts: Counter[str] = Counter()
+    rest = re.sub(r"([A-Z][a-z]?)(\d{0,4})", lambda part: counts.update({part[1]: int(part[2] or 1)}) or "", text)
+    unknown = [sym for sym, count in counts.items() if count < 1 or (sym != "D" and sym not in _numbers())]
+    if rest or unknown or not counts:
+        raise ValueError(f"{text!r} is no formula")
+    return _in_hill_order(counts)
 
 
 @cache

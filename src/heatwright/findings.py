@@ -7,7 +7,7 @@ registered in :data:`CODES`, the one table of everything heatwright can say abou
 from __future__ import annotations
 
 from collections.abc import Iterable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Final, Literal
 
 from heatwright.errors import HeatwrightError
@@ -33,6 +33,13 @@ CODES: Final[dict[str, str]] = {
     "several-jobs": "The file holds several jobs; which of them was read is said.",
     "not-a-number": "A value that is needed is NaN or infinite.",
     "molecule-file-wrong": "A molecule file holds an unknown key, a value of a wrong kind or a contradiction.",
+    "manifest-wrong": "A manifest holds an unknown key, a value of a wrong kind or a contradiction.",
+    "glob-empty": "A glob in a manifest finds no file.",
+    "include-cycle": "Manifests include each other in a circle.",
+    "file-twice": "One file is used for two species, or twice for one.",
+    "outside-project": "A path leads out of the project, which is confined to its folder.",
+    "table-wrong": "A table written by the user lacks a column, or a row of it holds what cannot be used.",
+    "smiles-wrong": "A SMILES text cannot be read.",
     "qcschema-wrong": "A QCSchema result lacks a part that is needed, or a part has a wrong shape.",
     # --- what the job gives ---------------------------------------------------------------------------------------
     "no-frequencies": "There are no vibrational modes in the output, so there is no thermochemistry to compute.",
@@ -77,6 +84,7 @@ CODES: Final[dict[str, str]] = {
     "torsion": "A torsion was treated as a hindered rotor; its potential and what it changes are said.",
     "torsion-impossible": "A torsion was asked for where nothing can turn, or more of them than there are low modes.",
     "torsion-overlap": "The projected torsion is not what the low modes of the molecule do.",
+    "torsion-equivalent": "A torsion was treated, and another one that is equivalent to it was not.",
     "torsion-counted-twice": "A torsional potential holds configurations that are, or would be, counted otherwise too.",
     "torsion-classical": "A heavy top was treated classically (Pitzer and Gwinn), without its levels.",
     "torsion-check": "The sum over torsional levels and the form of Pitzer and Gwinn differ more than they should.",
@@ -118,7 +126,25 @@ CODES: Final[dict[str, str]] = {
     "atom-missing": "There is no atom output for an element of the molecule.",
     "atom-twice": "Two outputs hold the same atom, and they disagree.",
     "no-uncertainty": "The route to the enthalpy of formation has an error that it cannot state.",
-    "no-reference": "There is no reference enthalpy for an element.",
+    "no-output": "An entry has no output in the folder that it could be compared by.",
+    "reference-unknown": "An output in the folder of references is none of the species with an evaluated enthalpy.",
+    "reference-not-ground-state": "A reference output is not in the state that its evaluated enthalpy belongs to.",
+    "own-reference": "The species is itself among the references and was left out of them.",
+    "conformer-passed-over": "A reference species is there as several conformers; the lowest one is the reference.",
+    "references-few": "There are too few reference species for the route.",
+    "network-coverage": "The species has a bond that no reference has.",
+    "network-check": "Each reference was predicted from all the others; how well that went is said.",
+    "reaction": "The reaction that the enthalpy of formation comes from.",
+    "reaction-wrong": "A reaction names a species that is not there or is ambiguous, or the species on both sides.",
+    "reaction-unbalanced": "A reaction does not balance elements, bonds by type or unpaired electrons.",
+    "no-reaction": "No balanced reaction of the species with the references was found.",
+    "route": "Which routes to the enthalpy of formation could be gone, and what each of them gives.",
+    "routes-disagree": "Two routes to one enthalpy of formation differ by more than their joint uncertainty.",
+    "energy-implausible": "An energy is off by more than a bond.",
+    "no-reference": "There is no reference enthalpy for an element or species.",
+    "energy0-incomplete": "Stated 0 K energies do not cover a molecule and all its atoms at one level.",
+    "reference-replaced": "A reference enthalpy of the user stands in the place of the built-in one.",
+    "bonding-unclear": "The geometry does not say which bonds the molecule has, or no Lewis structure fits it.",
     # --- fitting and writing --------------------------------------------------------------------------------------
     "temperature-range": "The temperatures asked for cannot carry a two-range polynomial anchored at 298.15 K.",
     "cp-not-positive": "The fitted heat capacity is zero or negative somewhere in the range.",
@@ -130,6 +156,81 @@ CODES: Final[dict[str, str]] = {
     "target-exists": "The file to be written exists already.",
     "target-unwritable": "The file to be written cannot be written.",
     "template-failed": "The user's template could not be rendered.",
+    # --- a mechanism as a build -----------------------------------------------------------------------------------
+    "lock-wrong": "A lock file is no TOML, or holds an unknown, missing or wrong value.",
+    "lock-newer": "A lock file was made by a newer version of heatwright.",
+    "store-set-aside": "The store of a build is damaged or of another version; it was renamed and is made anew.",
+    "store-off": "The store of a build cannot be read or written; the build goes on without it.",
+    "pressures-mixed": "The species of one mechanism have different standard pressures.",
+    "scheduler-unfit": "The scheduler that was to do the work cannot be used.",
+    "worker-lost": "The process that read a file died, each time it was tried.",
+    "file-changed": "A file changed while it was being read.",
+    "task-broke": "Reading a file or making an entry ended in an error that should not happen.",
+    # --- existing entries: reading --------------------------------------------------------------------------------
+    "no-entries": "The file holds no thermo entry.",
+    "no-such-entry": "The file has no entry of a name, or several.",
+    "yaml-unreadable": "A part of a YAML file is not YAML, or a part of YAML that thermo files do not use.",
+    "yaml-entry-wrong": "A species of a YAML file lacks a part that is needed, or a part has a wrong shape.",
+    "record-lines": "A line of a fixed record is missing, out of order, or has not its digit in column 80.",
+    "record-columns": "Something stands in columns of a fixed record where it does not belong.",
+    "record-ascii": "A fixed record holds a character outside ASCII.",
+    "coefficient-wrong": "A coefficient cannot be read: blank, shifted, cut off or not a number.",
+    "exponent-form": "The exponent of a coefficient has three digits or no letter; some readers cut it or stop.",
+    "name-ambiguous": "Readers differ in the name they take from an entry.",
+    "name-case": "A mechanism and its thermo entry write a species in different case.",
+    "composition-wrong": "The elements or counts of an entry cannot be read, contradict each other, or are not there.",
+    "composition-form": "Elements are written in a form that other readers stop at or leave out.",
+    "fifth-element": "A fifth element stands in columns that many readers do not look at.",
+    "fractional-count": "The count of an element is not a whole number; many readers cut the fraction off.",
+    "temperature-default": "An end of the range is blank, and the file's default was taken.",
+    "common-temperature-blank": "The record has no common temperature, and the file's default was taken.",
+    "molar-mass-field": "The molar mass stands where the common temperature belongs.",
+    "temperature-order": "The temperatures of an entry are not ascending.",
+    "defaults-missing": "The THERMO section has no line of default temperatures.",
+    "range-missing": "One of the two ranges has no coefficients.",
+    "ranges-swapped": "The coefficients of the low and of the high range have changed places.",
+    "all-zero": "All coefficients of an entry are zero.",
+    "one-range": "One set of coefficients serves the whole range.",
+    "other-model": "A species has another thermo model, or none; it was passed over.",
+    # --- existing entries: auditing -------------------------------------------------------------------------------
+    "composition-mismatch": "Composition, name, molar mass or charge of an entry contradict each other.",
+    "jump-cp": "The heat capacity jumps at the common temperature.",
+    "jump-h": "The enthalpy jumps at the common temperature.",
+    "jump-s": "The entropy jumps at the common temperature.",
+    "jump-slope": "The heat capacity has a kink at the common temperature.",
+    "meets-elsewhere": "The two ranges meet at another temperature than the common one.",
+    "range-start": "The range starts above 298.15 K.",
+    "range-end": "The range ends below the temperatures of flames.",
+    "cp-below-least": "The heat capacity is below that of translation and rotation.",
+    "cp-falls": "The heat capacity falls with temperature by more than vibrations can do.",
+    "entropy-implausible": "The entropy at 298.15 K is out of what mass and number of atoms allow.",
+    "cp-implausible": "The heat capacity at 298.15 K is out of what the number of atoms allows.",
+    "enthalpy-implausible": "The enthalpy of formation binds the atoms more or less than any molecule's.",
+    "element-enthalpy": "An element in its reference state has an enthalpy of formation.",
+    "stated-enthalpy": "The enthalpy printed after the coefficients is not theirs.",
+    "unit-mistake": "Values are right but for a factor between units.",
+    "one-atmosphere": "The entropy looks like one at 1 atm.",
+    "pressure-not-stated": "Entries state no standard pressure, or different ones.",
+    "duplicate-entry": "A species is there twice, or in different case.",
+    "same-coefficients": "Two species have the same coefficients.",
+    "differs-from-published": "A value differs from a published one by more than the usual accuracy.",
+    "differs-from-release": "An entry differs from the computed one by more than the usual accuracy.",
+    "mended": "An entry was refitted; what changed is said.",
+    "not-mendable": "An entry is faulty, and mending cannot put it right.",
+    "not-in-release": "Entries have no partner in the release they are compared with.",
+    # --- what changed, and back into the mechanism ----------------------------------------------------------------
+    "no-release": "A folder holds no release, or the files of a release contradict each other.",
+    "pressure-differs": "Entries for different standard pressures were compared, or were to be put into one file.",
+    "entry-edited": "An entry of a release is not the one that the lock file records.",
+    "enthalpy-scale": "Two files count enthalpies from different zeros for the elements; no reaction notices.",
+    "mechanism-wrong": "The phases, sections or equations of a mechanism cannot be read, or contradict each other.",
+    "mechanism-choice": "Which reactions of a mechanism were taken is said.",
+    "not-in-mechanism": "A species whose entry changed is in no reaction of the mechanism.",
+    "no-flame": "The flame temperature cannot be computed; why is said.",
+    "other-species": "Two entries of one name have different elements or counts.",
+    "comment-kept": "Comment lines above a replaced entry were kept; they may speak of the old one.",
+    "splice-failed": "A file with new entries did not read back as it should, so it was not written.",
+    "not-declared": "A species was added to a file whose mechanism does not declare it.",
 }
 """Every code a finding may carry, and what it means."""
 
@@ -144,6 +245,7 @@ class Finding:
     where : file, line, atom or mode; empty when the file as a whole is meant and is named by the caller.
     expected : what was expected, or empty.
     action : what to do, a whole sentence, or empty.
+    excerpt : the line that is meant with carets below it, or empty; the terminal shows it under the sentence.
     """
 
     severity: Severity
@@ -152,6 +254,7 @@ class Finding:
     where: str = ""
     expected: str = ""
     action: str = ""
+    excerpt: str = ""
 
     def __post_init__(self) -> None:
         if self.code not in CODES:
@@ -166,7 +269,12 @@ class Finding:
         return f"{head}. {self.action}".rstrip() if self.action else f"{head}."
 
     def __str__(self) -> str:
-        return f"{SEVERITY_WORD[self.severity]}: {self.text} [{self.code}]"
+        sentence = f"{SEVERITY_WORD[self.severity]}: {self.text} [{self.code}]"
+        return "\n    | ".join([sentence, *self.excerpt.split("\n")]) if self.excerpt else sentence
+
+    def shown(self, excerpt: str) -> Finding:
+        """The same finding with the line that is meant."""
+        return replace(self, excerpt=excerpt)
 
     def at(self, file: str) -> Finding:
         """The same finding with its file: ``line 12`` becomes ``FILE:12``, other places follow the file's name."""
@@ -174,7 +282,7 @@ class Finding:
             return self
         line = self.where.removeprefix("line ")
         place = file if not self.where else f"{file}:{line}" if line != self.where else f"{file}: {self.where}"
-        return Finding(self.severity, self.code, self.found, place, self.expected, self.action)
+        return replace(self, where=place)
 
     def as_json(self) -> dict[str, str]:
         """Severity, code and text, as ``--json`` shows them."""

@@ -45,6 +45,18 @@ def data_rows(name: str) -> tuple[dict[str, str], ...]:
     return tuple(csv.DictReader(lines))
 
 
+@cache
+def data_sources(name: str) -> dict[str, str]:
+    """The publication behind each short name of a source, from the lines ``# NAME: PUBLICATION`` of ``data/NAME.csv``.
+
+    >>> data_sources("species_formation")["JANAF 1998"][:14]
+    'M. W. Chase Jr'
+    """
+    comments = [line[2:] for line in data_text(f"{name}.csv").splitlines() if line.startswith("# ")]
+    parts = (line.partition(": ") for line in comments)
+    return {label: text for label, colon, text in parts if colon and len(label) < 30}
+
+
 def sample_files() -> dict[str, bytes]:
     """The content of each sample file by its path below the folder of samples, sorted."""
     return dict(sorted(_walk(sample_outputs(), "")))

@@ -5,7 +5,7 @@ from __future__ import annotations
 import pytest
 
 from heatwright import ModelOptions, build_model
-from heatwright.constants import HARTREE_KJ_MOL
+from heatwright.constants import CM1_KJ_MOL, HARTREE_KJ_MOL
 from heatwright.errors import UsageError
 from heatwright.findings import Refused
 from heatwright.formation.atomization import collect_atoms, formation_by_atomization
@@ -74,6 +74,21 @@ def test_the_scaled_zero_point_energy_is_the_one_used() -> None:
     unscaled, scaled = (build_model(molecule, ModelOptions(zpe_scale=x)) for x in (None, 0.9806))
     a, b = (formation_by_atomization(model, atoms_of(*ATOMS.values())) for model in (unscaled, scaled))
     assert a.dHf0_kJ_mol - b.dHf0_kJ_mol == pytest.approx(unscaled.zpe_kJ_mol * (1 - 0.9806), rel=1e-9)
+
+
+def test_the_lowest_level_of_a_doublet_pi_radical_is_a_line_of_the_ledger() -> None:
+    # OH: −38.2 cm⁻¹ from the spin-free origin, B. Ruscic et al., J. Phys. Chem. A 106, 2727 (2002), from memory.
+    geometry = [[0.0, 0.0, 0.0], [0.0, 0.0, 0.97]]
+    oh = molecule("O H", geometry, [3568.0], multiplicity=2, energies_hartree={"SCF": -75.7})
+    plain, summed = (
+        formation_by_atomization(build_model(oh, ModelOptions(electronic=kind)), atoms_of(*ATOMS.values()))
+        for kind in ("table", "levels")
+    )
+    (line,) = [entry for entry in summed.ledger if "lowest real level" in entry.what]
+    assert line.value_kJ_mol == pytest.approx(-38.2 * CM1_KJ_MOL, abs=0.001)
+    assert not [entry for entry in plain.ledger if "lowest real level" in entry.what]
+    assert summed.dHf0_kJ_mol - plain.dHf0_kJ_mol == pytest.approx(line.value_kJ_mol, abs=1e-9)
+    assert sum(entry.value_kJ_mol for entry in summed.ledger) == pytest.approx(summed.dHf298_kJ_mol, abs=1e-9)
 
 
 def refusal(molecule: Molecule, *atoms: Molecule, **options) -> list[str]:

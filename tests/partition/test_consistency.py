@@ -19,8 +19,9 @@ from heatwright.partition.diatomic import (
 )
 from heatwright.partition.electronic import ElectronicLevels
 from heatwright.partition.lowmodes import InterpolatedVibration, LowModes
+from heatwright.partition.potential import cosine_potential
 from heatwright.partition.rotation import ClassicalRotor, CorrectedRotor
-from heatwright.partition.torsion import cosine_potential, hindered_rotor
+from heatwright.partition.torsion import hindered_rotor
 from heatwright.partition.translation import Translation
 from heatwright.partition.vibration import HarmonicVibration, harmonic_sums_of_many
 
@@ -219,3 +220,18 @@ def test_many_species_at_once_are_each_species_alone(species: list[list[float]],
         alone = HarmonicVibration(tuple(wavenumbers)).ln_q(T)
         for name in ("ln_q", "u", "w"):
             np.testing.assert_allclose(getattr(got, name), getattr(alone, name), rtol=1e-11, atol=1e-13)
+
+
+def test_temperatures_in_chunks_are_each_temperature_alone() -> None:
+    # 20 modes at 5001 temperatures are more than one chunk, alone and among other species.
+    T, modes = np.linspace(100.0, 6000.0, 5001), np.geomspace(30.0, 3500.0, 20)
+    whole = HarmonicVibration(tuple(modes.tolist())).ln_q(T)
+    beside = harmonic_sums_of_many([modes[:3], modes, modes], T)[1]
+    for i in (0, 1637, 1638, 3276, 5000):
+        one = HarmonicVibration(tuple(modes.tolist())).ln_q(T[i])
+        for name in ("ln_q", "u", "w"):
+            assert getattr(whole, name)[i] == pytest.approx(float(getattr(one, name)), rel=1e-13)
+            assert getattr(beside, name)[i] == pytest.approx(float(getattr(one, name)), rel=1e-13)
+    assert whole.ln_q.shape == T.shape
+    assert HarmonicVibration((500.0,)).ln_q(T.reshape(3, -1)).u.shape == (3, 1667)
+    assert harmonic_sums_of_many([modes], T[:0])[0].ln_q.shape == (0,)

@@ -9,6 +9,7 @@ import numpy as np
 import pytest
 
 from heatwright import ModelOptions, build_model
+from heatwright.constants import CM1_KJ_MOL
 from heatwright.constants import GAS_CONSTANT_J_MOL_K as R
 from heatwright.molecule import DiatomicConstants, Stated
 from heatwright.partition.diatomic import doublet_pi_levels, doublet_pi_rotation, vibration_rotation_levels
@@ -96,6 +97,31 @@ def test_radicals(symbols: str, r_A: float, nu: float, masses: list[float], h: f
     assert float(model.cp_R(298.15)) * R == pytest.approx(cp, abs=0.07 if "Cl" in symbols else 0.01)
     assert [c.name for c in model.contributions] == ["translation", "rotation and electronic", "vibration"]
     assert "level-sum" in {f.code for f in model.findings}
+
+
+# OH: the lowest real level lies 38.2 cm⁻¹ below the origin, not A/2 = 69.6: B. Ruscic et al., J. Phys. Chem. A 106,
+# 2727 (2002), from memory.  CH and NO: ²Π½ has its J = ½ level at B − A/2 exactly.
+@pytest.mark.parametrize(
+    ("symbols", "r_A", "nu", "masses", "lowest_cm1"),
+    [
+        ("O H", 0.96966, 3568.0, [15.999, 1.008], -38.2),
+        ("C H", 1.1199, 2732.46, [12.011, 1.008], 14.19 - 27.95 / 2.0),
+        ("N O", 1.15077, 1876.05, [14.007, 15.999], 1.6961 - 123.13 / 2.0),
+    ],
+)
+def test_where_the_lowest_level_is(symbols: str, r_A: float, nu: float, masses: list[float], lowest_cm1: float) -> None:
+    summed = build_model(radical(symbols, r_A, nu, masses), ModelOptions(electronic="levels"))
+    assert summed.lowest_level_kJ_mol == pytest.approx(lowest_cm1 * CM1_KJ_MOL, abs=0.1 * CM1_KJ_MOL)
+    assert build_model(radical(symbols, r_A, nu, masses)).lowest_level_kJ_mol == 0.0
+
+
+def test_the_lowest_level_of_a_radical_from_its_constants() -> None:
+    oh = DiatomicConstants(
+        we_cm1=3737.761, wexe_cm1=84.8813, Be_cm1=18.9108, alphae_cm1=0.7242, A_cm1=-139.21, source="H & H 1979"
+    )
+    model = build_model(diatomic("O H", oh, [15.999, 1.008], multiplicity=2))
+    assert model.lowest_level_kJ_mol == pytest.approx(-38.2 * CM1_KJ_MOL, abs=0.001)
+    assert build_model(diatomic("C O", CO, [12.011, 15.999])).lowest_level_kJ_mol == 0.0
 
 
 def test_mercapto() -> None:

@@ -2,11 +2,6 @@
 
 from __future__ import annotations
 
-import os
-import subprocess
-import sys
-from pathlib import Path
-
 import mpmath
 import numpy as np
 import pytest
@@ -18,17 +13,13 @@ from heatwright.elements import element
 from heatwright.errors import UsageError
 from heatwright.partition.contribution import total_ln_q
 from heatwright.partition.pitzer_gwinn import PitzerGwinnRotor
+from heatwright.partition.plane_waves import basis_size, torsional_levels
+from heatwright.partition.potential import Potential, cosine_potential
 from heatwright.partition.rotation import ClassicalRotor
-from heatwright.partition.torsion import (
-    Potential,
-    basis_size,
-    cosine_potential,
-    hindered_rotor,
-    level_sum,
-    torsional_levels,
-)
+from heatwright.partition.torsion import hindered_rotor, level_sum
 from heatwright.partition.translation import Translation
 from heatwright.partition.vibration import HarmonicVibration
+from heatwright.structure.torsions import RotatableBond, reduced_moments, rotational_constant_cm1
 from spectroscopy import pairs, rows
 
 R = GAS_CONSTANT_J_MOL_K
@@ -51,9 +42,40 @@ ROTORS = {"H2O2": (PEROXIDE, 40.28, 1), "CH3OH": (METHANOL, 27.63, 3), "C2H6": (
 def test_published_levels(name: str, observed: dict[int, float]) -> None:
     potential, F, _ = ROTORS[name]
     levels = hindered_rotor(potential, F).levels_cm1
+    # H2O2's third level is 374.05 with these constants, 3 too high to the decimal: the next test says why.
     for i, value in observed.items():
         got = round(float(levels[i]), 1 if value < 100.0 else 0)  # published in whole 1/cm
         assert got == pytest.approx(value, **({"abs": 3.0} if value < 400.0 else {"rel": 0.012}))
+
+
+def test_why_the_third_level_of_the_peroxide_is_high() -> None:
+    # The constants from memory give 374.05, three above the published 371, which is why whole 1/cm are compared above.
+    # The potential is right: it has the published barriers (trans 386, cis 2460 1/cm) and dihedral angle (111.5°).
+    # F = 40.28 is too large for a constant: with the geometry of the time (O-O 1.475, O-H 0.950 Å, angle 94.8°;
+    # R. L. Redington, W. B. Olson, P. C. Cross, J. Chem. Phys. 36, 1311 (1962), from memory) F(φ) falls from 40.2 (cis)
+    # to 39.7 (trans), and with that F(φ), in k k' F_{k-k'} + V_{k-k'}, every level is within 1.5 1/cm.
+    barriers = [float(PEROXIDE(np.array([x]))[0]) - PEROXIDE.minimum[1] for x in (np.pi, 0.0)]
+    assert barriers == pytest.approx([386.0, 2460.0], abs=3.0)
+    assert np.degrees(PEROXIDE.minima[0][0]) == pytest.approx(111.5, abs=0.1)
+    phi = np.arange(64) * 2.0 * np.pi / 64
+    F = np.array([_peroxide_F_cm1(x) for x in phi])
+    assert (F[0], F[32]) == pytest.approx((40.2, 39.7), abs=0.05)
+    k = np.arange(-25, 26)
+    waves = [np.fft.fft(values).real / 64 for values in (F, PEROXIDE(phi))]
+    apart = np.subtract.outer(k, k)
+    levels = np.linalg.eigvalsh(np.multiply.outer(k, k) * waves[0][apart] + waves[1][apart])
+    assert (levels - levels[0])[1:6] == pytest.approx([11.4, 254.0, 371.0, 569.0, 776.0], abs=1.5)
+    constant = torsional_levels(PEROXIDE, 40.28, 60)
+    assert constant[3] - constant[0] == pytest.approx(374.05, abs=0.01)
+
+
+def _peroxide_F_cm1(phi: float) -> float:
+    """F of H2O2 with the dihedral angle *phi*."""
+    s, c = 0.950 * np.sin(np.radians(94.8)), 0.950 * np.cos(np.radians(94.8))
+    x = np.array([[s, 0.0, c], [0.0, 0.0, 0.0], [0.0, 0.0, 1.475], [s * np.cos(phi), s * np.sin(phi), 1.475 - c]])
+    bond = RotatableBond((0, 1, 2, 3), (3,), (0,), 1, 1)
+    masses = np.array([element(z).common_mass_u for z in (1, 8, 8, 1)])
+    return rotational_constant_cm1(float(reduced_moments(masses, x, [bond])[0, 0]))
 
 
 @pytest.mark.parametrize("name", ROTORS)
@@ -167,32 +189,6 @@ def test_pitzer_and_gwinn_agree(name: str, of_s: float, of_cp: float) -> None:
     exact, check = (r.ln_q(T) for r in (hindered_rotor(potential, F, sigma), PitzerGwinnRotor(potential, F, sigma)))
     np.testing.assert_allclose(check.s_R * R, exact.s_R * R, atol=of_s)
     np.testing.assert_allclose(check.cp_R * R, exact.cp_R * R, atol=of_cp)
-
-
-def test_time_of_a_rotor() -> None:
-    # 5 ms each, on one thread: with more, small matrices wait for whatever else the machine does.
-    code = """
-import sys, time
-sys.path[:0] = sys.argv[1:]
-import test_torsion as t
-for potential, F, sigma in t.ROTORS.values():
-    taken = []
-    for _ in range(20):
-        start = time.perf_counter()
-        t.hindered_rotor(t.Potential(potential.constant_cm1, potential.cosine_cm1, potential.sine_cm1), F, sigma)
-        taken.append(time.perf_counter() - start)
-    print(min(taken))
-"""
-    one = {"OPENBLAS_NUM_THREADS": "1", "OMP_NUM_THREADS": "1", "MKL_NUM_THREADS": "1"}
-    path = os.pathsep.join([str(Path(__file__).parents[1]), *filter(None, sys.path)])
-    done = subprocess.run(
-        [sys.executable, "-c", code, str(Path(__file__).parent)],
-        env={**os.environ, **one, "PYTHONPATH": path},
-        capture_output=True,
-        text=True,
-    )
-    assert done.returncode == 0, done.stderr
-    assert max(map(float, done.stdout.split())) < 0.005
 
 
 def exact_rotor(levels: list[float], sigma: int):

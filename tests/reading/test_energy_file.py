@@ -107,7 +107,7 @@ def test_an_atom_takes_another_energy_too() -> None:
 
 
 def test_the_two_levels_of_atoms_made_by_hand() -> None:
-    made = with_energy(water(), water(energies_hartree={"SCF": -76.0}, level=LEVEL))
+    made = with_energy(water(), water(energies_hartree={"SCF": -76.34}, level=LEVEL))
     atoms = collect_atoms((atom("H", 2, -0.5), atom("O", 3, -75.0)))
     assert formation_by_atomization(build_model(made), atoms).method == "atomization"
 

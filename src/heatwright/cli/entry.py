@@ -7,8 +7,16 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
+from heatwright.cli.formation_options import (
+    energy_choices,
+    given_enthalpies,
+    own_references,
+    read_atoms,
+    read_references,
+    route_options,
+    written_reactions,
+)
 from heatwright.cli.options import (
-    Reading,
     fit_options,
     model_options,
     outputs_argument,
@@ -17,7 +25,6 @@ from heatwright.cli.options import (
     taken_model_options,
     taken_reading,
     units_option,
-    usable_species,
     words_options,
 )
 from heatwright.cli.reporter import Reporter
@@ -25,9 +32,14 @@ from heatwright.errors import UsageError
 
 if TYPE_CHECKING:
     from heatwright.entry import Entry, FitOptions
+    from heatwright.findings import Finding
     from heatwright.formation.atomization import Atoms
+    from heatwright.formation.choices import EnergyChoices
     from heatwright.formation.formation import GivenEnthalpy
+    from heatwright.formation.reference_set import ReferenceSet
+    from heatwright.formation.routes import Route
     from heatwright.partition.choices import ModelOptions
+    from heatwright.species import Reading
 
 
 @dataclass(frozen=True, slots=True)
@@ -38,29 +50,15 @@ class Request:
     model: ModelOptions
     fit: FitOptions
     atoms: Atoms | None
-    trust_levels: bool
+    references: ReferenceSet | None
+    route: Route | None
+    choices: EnergyChoices
 
 
 @click.command(short_help="Outputs to thermo entries; residuals on standard error.")
 @outputs_argument
 @click.option("--name", "names", multiple=True, metavar="NAME", help="Species name; once for each output.")
-@click.option(
-    "--dHf298",
-    "enthalpies",
-    multiple=True,
-    metavar="TEXT",
-    help='ΔfH°(298.15 K) with its unit, "-200.7 kJ/mol" or "-200.7 +/- 0.2 kJ/mol"; once for each output.',
-)
-@click.option("--source", "sources", multiple=True, metavar="TEXT", help="Where --dHf298 is from.")
-@click.option(
-    "--atoms",
-    "atoms_folder",
-    type=click.Path(),
-    metavar="DIR",
-    help="Folder of atom outputs at the same level: ΔfH° by atomization.",
-)
-@click.option("--route", type=click.Choice(["given", "atomization"]), help="Which way to ΔfH°, when both are there.")
-@click.option("--trust-levels", is_flag=True, help="Combine energies of different levels or programs; recorded.")
+@route_options
 @click.option(
     "--format",
     "format_name",
@@ -122,12 +120,13 @@ def entry(ctx: click.Context, /, outputs: tuple[str, ...], quiet: bool, verbose:
 
 @dataclass(frozen=True, slots=True)
 class _Job:
-    """One output to make an entry of: it and its conformers, each with the file of its energy; name, ΔfH° (source)."""
+    """One output to make an entry of: it and its conformers, each with the file of its energy; what was said of it."""
 
     path: str
     files: tuple[tuple[str, str | None], ...]
     name: str | None
     given: tuple[GivenEnthalpy, str | None] | None
+    reaction: str | None
 
 
 def _jobs(outputs: tuple[str, ...], options: dict[str, Any]) -> list[_Job]:
@@ -136,12 +135,12 @@ def _jobs(outputs: tuple[str, ...], options: dict[str, Any]) -> list[_Job]:
         raise UsageError(
             f"--name was given {len(names)} times for {len(outputs)} outputs; give it once for each output"
         )
-    given = _given(outputs, options["enthalpies"], options["sources"], options["atoms_folder"], options["route"])
+    given, reactions = given_enthalpies(outputs, options), written_reactions(outputs, options)
     conformers = taken_conformers(options, len(outputs))
     energies = taken_energies(options, len(outputs) + len(conformers))
     further = tuple(zip(conformers, energies[len(outputs) :], strict=True))
     return [
-        _Job(path, ((path, energies[i]), *further), names[i] if names else None, given[i])
+        _Job(path, ((path, energies[i]), *further), names[i] if names else None, given[i], reactions[i])
         for i, path in enumerate(outputs)
     ]
 
@@ -214,41 +213,17 @@ class _Style:
         return render_format(FORMATS[self.format_name].template, context)
 
 
-def _given(
-    outputs: tuple[str, ...],
-    enthalpies: tuple[str, ...],
-    sources: tuple[str, ...],
-    atoms_folder: str | None,
-    route: str | None,
-) -> list[tuple[GivenEnthalpy, str | None] | None]:
-    """The enthalpy of formation stated for each output with its source, or None for each when atomization is meant."""
-    from heatwright.formation.formation import parse_enthalpy
-
-    if route == "atomization" or (route is None and not enthalpies):
-        if route is not None and atoms_folder is None:
-            raise UsageError("--route atomization needs the atoms' outputs: name their folder by --atoms")
-        return [None] * len(outputs)
-    if route is None and atoms_folder is not None:
-        raise UsageError(
-            "--dHf298 and --atoms are two ways to one value; choose by --route given or --route atomization"
-        )
-    if len(enthalpies) != len(outputs):
-        raise UsageError(
-            f"--dHf298 was given {len(enthalpies)} times for {len(outputs)} outputs; give it once for each output"
-        )
-    if len(sources) not in (0, 1, len(outputs)):
-        raise UsageError(f"--source was given {len(sources)} times for {len(outputs)} outputs")
-    each = sources * len(outputs) if len(sources) == 1 else sources or (None,) * len(outputs)
-    return [(parse_enthalpy(text), source) for text, source in zip(enthalpies, each, strict=True)]
-
-
 def _request(options: dict[str, Any], reporter: Reporter) -> Request:
     fit = fit_options(options["range_text"], options["common"])
     _check_range(fit)
+    own = own_references(options)
+    choices = energy_choices(options, own)
     reading, model = taken_reading(options), taken_model_options(options)
-    folder = None if options["route"] == "given" else options["atoms_folder"]
-    atoms = None if folder is None else _read_atoms(folder, reporter)
-    return Request(reading, model, fit, atoms, options["trust_levels"])
+    atoms, references = None, None
+    if options["route"] != "given":
+        atoms = read_atoms(options, reporter)
+        references = read_references(options, own, atoms, model, reporter)
+    return Request(reading, model, fit, atoms, references, options["route"], choices)
 
 
 def _check_range(fit: FitOptions) -> None:
@@ -258,68 +233,48 @@ def _check_range(fit: FitOptions) -> None:
     check_temperatures(fit.t_low_K, fit.t_common_K, fit.t_high_K)
 
 
-def _read_atoms(folder: str, reporter: Reporter) -> Atoms:
-    """The atom outputs in a folder; files that are something else are passed over (``-v`` names them)."""
-    from pathlib import Path
-
-    from heatwright.findings import Refused, refuse
-    from heatwright.formation.atomization import collect_atoms
-    from heatwright.reading.outputs import read_output
-
-    if not Path(folder).is_dir():
-        raise Refused(
-            [
-                refuse(
-                    "file-missing",
-                    "there is no such folder",
-                    where=folder,
-                    action="Name the folder of the atoms' outputs by --atoms.",
-                )
-            ]
-        )
-    molecules = []
-    for file in sorted(p for p in Path(folder).iterdir() if p.is_file() and not p.name.startswith(".")):
-        try:
-            molecules.append(read_output(str(file)))
-        except Refused as error:
-            reporter.detail(f"passed over: {error.findings[0].at(str(file)).text}")
-    return collect_atoms(tuple(molecules))
-
-
 def _make(job: _Job, request: Request) -> Entry:
     """The entry of one output; raises Refused."""
     from dataclasses import replace
 
     from heatwright.entry import make_entry
     from heatwright.formation.routes import RouteRequest, formation_of
+    from heatwright.species import usable_species
     from heatwright.writing.names import default_name
 
-    model = usable_species(job.files, request.reading, request.model, trust_levels=request.trust_levels, for_entry=True)
-    formation = formation_of(
-        model, RouteRequest(given=job.given, atoms=request.atoms, trust_levels=request.trust_levels)
+    model = usable_species(
+        job.files, request.reading, request.model, trust_levels=request.choices.trust_levels, for_entry=True
     )
-    if job.name is not None:
-        return make_entry(job.name, model, formation, request.fit)
-    name, said = default_name(model.named_after or model.molecule, model.composition)
-    made = make_entry(name, model, formation, request.fit)
+    said: tuple[Finding, ...] = ()
+    name = job.name
+    if name is None:
+        name, said = default_name(model.named_after or model.molecule, model.composition)
+    asked = RouteRequest(
+        route=request.route,
+        name=name,
+        given=job.given,
+        atoms=request.atoms,
+        references=request.references,
+        reaction=job.reaction,
+        choices=request.choices,
+    )
+    made = make_entry(name, model, formation_of(model, asked), request.fit)
     return replace(made, findings=(*made.findings, *said))
 
 
 def _describe(path: str, made: Entry, units_name: str, reporter: Reporter) -> None:
     """The words about one finished entry."""
     from heatwright.findings import refusals
-    from heatwright.writing.comment import formation_text, residual_text
+    from heatwright.writing.comment import formation_text, ledger_text, residual_text
     from heatwright.writing.units import UNITS
 
     p, units = made.polynomial, UNITS[units_name]
     reporter.say(f"{made.name} from {path}: {formation_text(made.formation, units)}")
     reporter.say(f"  fitted {p.t_low_K:g}-{p.t_common_K:g}-{p.t_high_K:g} K; {residual_text(made)}")
-    if len(made.formation.ledger) > 1:
-        for line in made.formation.ledger:
-            reporter.detail(
-                f"  {line.value_kJ_mol * units.factor:14.3f} {units.enthalpy}  {line.what}"
-                f"{f' ({line.source})' if line.source else ''}"
-            )
+    for text in ledger_text(made.formation, units):
+        reporter.detail(f"  {text}")
+    for other in made.formation.alternatives:
+        reporter.detail(f"  beside it: {formation_text(other, units)}")
     for shift in made.model.motion.shifts:
         reporter.detail(f"  {shift.text}")
     reporter.findings(path, [f for f in made.findings if f not in refusals(made.findings)])

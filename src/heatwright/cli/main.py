@@ -10,11 +10,20 @@ from typing import NoReturn
 import click
 
 from heatwright import __version__
+from heatwright.cli.audit import audit
+from heatwright.cli.build import build
+from heatwright.cli.compare import compare
+from heatwright.cli.crosscheck import crosscheck
 from heatwright.cli.entry import entry
 from heatwright.cli.explain import explain
+from heatwright.cli.mend import mend
+from heatwright.cli.reactions import reactions
+from heatwright.cli.references import references
 from heatwright.cli.rotors import rotors
 from heatwright.cli.samples import samples
 from heatwright.cli.scales import scales
+from heatwright.cli.splice import splice
+from heatwright.cli.start import start
 from heatwright.cli.survey import survey
 from heatwright.cli.table import table
 from heatwright.errors import HeatwrightError
@@ -24,7 +33,9 @@ INTERRUPTED = 130
 
 SECTIONS = {
     "One molecule": ("survey", "table", "entry", "rotors"),
-    "Looking things up": ("scales", "explain", "samples"),
+    "A mechanism": ("start", "build", "compare", "crosscheck"),
+    "Existing entries": ("audit", "mend", "splice"),
+    "Looking things up": ("scales", "references", "reactions", "explain", "samples"),
 }
 """How ``--help`` groups the commands."""
 
@@ -58,7 +69,24 @@ def cli() -> None:
     """
 
 
-for _command in (survey, table, entry, rotors, scales, explain, samples):
+for _command in (
+    survey,
+    table,
+    entry,
+    rotors,
+    start,
+    build,
+    compare,
+    crosscheck,
+    audit,
+    mend,
+    splice,
+    scales,
+    references,
+    reactions,
+    explain,
+    samples,
+):
     cli.add_command(_command)
 
 

@@ -14,7 +14,7 @@ import numpy as np
 
 from heatwright.findings import Finding, Refused, refuse
 from heatwright.molecule import FloatArray
-from heatwright.partition.torsion import Potential
+from heatwright.partition.potential import Potential
 
 MOST_HARMONICS: Final = 5
 """Harmonics of the top's period that are fitted at most: with five of them 12 points leave less than 1 cm⁻¹."""

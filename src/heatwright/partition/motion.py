@@ -31,6 +31,7 @@ class Motion:
     rotation : ``classical``, ``corrected``, ``sum``, ``level sum`` (with other degrees of freedom) or ``none``.
     low_modes : ``harmonic``, ``floor``, ``interpolate``, or ``level sum`` when no oscillator is left.
     shifts : what the treatment of low modes changes, mode by mode.
+    lowest_cm1 : the level that is H(0), from where the electronic and the zero-point energy put it, 1/cm.
     """
 
     contributions: tuple[Contribution, ...]
@@ -40,6 +41,7 @@ class Motion:
     low_modes_text: str = ""
     shifts: tuple[ModeShift, ...] = ()
     findings: tuple[Finding, ...] = ()
+    lowest_cm1: float = 0.0
 
     @property
     def is_bounded(self) -> bool:
@@ -68,7 +70,9 @@ def motion(
         return Motion((electronic,), "none", "", "harmonic")
     if radical is not None and radical.whole:
         text = "vibration-rotation levels of a doublet Pi state"
-        return Motion((radical.contribution(),), "level sum", text, "level sum", findings=(radical.finding(),))
+        whole = (radical.contribution(),)
+        words = (radical.finding(),)
+        return Motion(whole, "level sum", text, "level sum", findings=words, lowest_cm1=radical.lowest_cm1)
     if molecule.stated.diatomic is not None:
         return _diatomic(molecule, molecule.stated.diatomic, masses_u, symmetry_number, electronic)
     shifts = mode_shifts(wavenumbers_cm1.tolist(), low_modes)
@@ -76,11 +80,12 @@ def motion(
     vibration = low_modes.contribution(wavenumbers_cm1.tolist())
     rest = (low_modes.kind, low_modes.text, shifts)
     if radical is not None:
-        parts = (radical.contribution(), vibration)
+        both = (radical.contribution(), vibration)
         idle = () if rotation == "classical" else (_idle(rotation),)
-        return Motion(parts, "level sum", "doublet Pi levels", *rest, (radical.finding(), *idle, *said))
-    rotor, words, finding = _rotor(molecule, moments, masses_u, symmetry_number, rotation)
-    return Motion((rotor, vibration, electronic), rotation, words, *rest, (*finding, *said))
+        found = (radical.finding(), *idle, *said)
+        return Motion(both, "level sum", "doublet Pi levels", *rest, found, radical.lowest_cm1)
+    rotor, how, finding = _rotor(molecule, moments, masses_u, symmetry_number, rotation)
+    return Motion((rotor, vibration, electronic), rotation, how, *rest, (*finding, *said))
 
 
 def _idle(rotation: RotationKind) -> Finding:

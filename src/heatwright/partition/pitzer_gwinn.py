@@ -17,7 +17,7 @@ import numpy as np
 from heatwright.constants import SECOND_RADIATION_CM_K
 from heatwright.molecule import FloatArray
 from heatwright.partition.contribution import LnQ
-from heatwright.partition.torsion import Potential
+from heatwright.partition.potential import Potential
 from heatwright.partition.vibration import HarmonicVibration
 
 _POINTS: Final = 720

@@ -46,6 +46,14 @@ class DoubletPi:
     def _B0_cm1(self) -> float:
         return self.constants.Be_cm1 - self.constants.alphae_cm1 / 2.0
 
+    @property
+    def lowest_cm1(self) -> float:
+        """The lowest real level, 1/cm from the origin without spin-orbit coupling of the lowest vibrational state.
+
+        That of OH is known as −38.2 1/cm (B. Ruscic et al., J. Phys. Chem. A 106, 2727 (2002), from memory).
+        """
+        return float(self._rotation()[0].min())
+
     def _rotation(self) -> Levels:
         return doublet_pi_rotation(self.spin_orbit_cm1, self._B0_cm1, self.constants.centrifugal_cm1)
 
@@ -57,7 +65,6 @@ class DoubletPi:
 
     def finding(self) -> Finding:
         """What was summed, and where the lowest level is."""
-        lowest = float(self._rotation()[0].min())
         c = self.constants
         what = "vibration, rotation and electronic states" if self.whole else "rotation and electronic states"
         more = " (excited states rotate as the ground state)" if self.excited else ""
@@ -65,8 +72,8 @@ class DoubletPi:
             "level-sum",
             f"{what} are one sum over the levels of the doublet Π state (Hill and Van Vleck 1928){more}: A = "
             f"{self.spin_orbit_cm1:g}, B0 = {self._B0_cm1:g}, D = {c.centrifugal_cm1:.3g} 1/cm, {c.source}; H(0) is "
-            f"the lowest real level, {lowest:+.2f} 1/cm from the origin without spin-orbit coupling, to which the "
-            "electronic and zero-point energy belong",
+            f"the lowest real level, {self.lowest_cm1:+.2f} 1/cm from the origin without spin-orbit coupling, to which "
+            "the electronic and zero-point energy belong; atomization adds that step",
         )
 
 

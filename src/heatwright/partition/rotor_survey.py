@@ -12,7 +12,7 @@ from heatwright.molecule import FloatArray, Molecule
 from heatwright.partition.contribution import Contribution
 from heatwright.partition.internal_rotation import TreatedTorsion, internal_rotation
 from heatwright.partition.pitzer_gwinn import PitzerGwinnRotor
-from heatwright.partition.torsion import cosine_potential
+from heatwright.partition.potential import cosine_potential
 from heatwright.partition.vibration import HarmonicVibration
 from heatwright.reading.torsion_scans import Torsion
 from heatwright.structure.isotopes import force_constants

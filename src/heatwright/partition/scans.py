@@ -11,7 +11,7 @@ from heatwright.elements import composition, formula
 from heatwright.findings import Finding, Refused, refuse, warn
 from heatwright.molecule import FloatArray, Molecule
 from heatwright.partition.fourier import FittedPotential, fitted_potential
-from heatwright.partition.torsion import Potential, cosine_potential
+from heatwright.partition.potential import Potential, cosine_potential
 from heatwright.reading.levels import level_differences
 from heatwright.reading.torsion_scans import Torsion, TorsionBarrier, TorsionScan
 from heatwright.structure.bonds import bonds

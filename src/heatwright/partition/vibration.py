@@ -13,14 +13,10 @@ from heatwright.molecule import FloatArray
 from heatwright.partition.contribution import LnQ
 
 _CHUNK: Final = 1 << 15
-"""Mode-temperatures done at once, so that the intermediate arrays stay inside a processor's cache."""
+"""Mode-temperatures done at once: the three arrays of a block, 800 kB, then stay inside a processor's cache."""
 
 _FACTORS: Final = 32
 """Modes whose q are multiplied before the logarithm is taken: no overflow as long as x is above 10⁻⁹."""
-
-
-_FROZEN_CM1: Final = 1.0e7
-"""A wavenumber whose oscillator adds exactly nothing: eˣ overflows at every temperature below 20 000 K."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -62,13 +58,22 @@ def harmonic_sums(wavenumbers_cm1: FloatArray, T: FloatArray, weights: FloatArra
     wavenumbers_cm1, weights : (m,).   T : any shape, K.
     """
     theta = SECOND_RADIATION_CM_K * wavenumbers_cm1[:, None]
-    inverse_T = 1.0 / T.reshape(-1)
+    inverse_T = (1.0 / T).reshape(1, -1)
     columns = max(1, _CHUNK // max(1, theta.size))
     with np.errstate(over="ignore"):  # a frozen mode: 1/inf is the 0 that is meant
-        blocks = [_block(theta * inverse_T[i : i + columns], weights) for i in range(0, inverse_T.size, columns)]
-    sums = blocks[0] if len(blocks) == 1 else [np.concatenate(parts) for parts in zip(*blocks, strict=True)]
-    ln_q, u, heat_capacity = (values.reshape(T.shape) for values in sums)
-    return LnQ(ln_q, u, heat_capacity - 2.0 * u)
+        if T.size <= columns:
+            sums = _sums(np.dot(theta, inverse_T), None, None, weights)
+            return LnQ(*sums) if T.ndim == 1 else LnQ(*(values.reshape(T.shape) for values in sums))
+        return LnQ(*_in_chunks(theta, inverse_T, columns, weights).reshape(3, *T.shape))
+
+
+def _in_chunks(theta: FloatArray, inverse_T: FloatArray, columns: int, weights: FloatArray | None) -> FloatArray:
+    sums, room = np.empty((3, inverse_T.size)), np.empty((3, theta.size * columns))
+    for i in range(0, inverse_T.size, columns):
+        part = inverse_T[:, i : i + columns]
+        x, n, energy = room[:, : theta.size * part.size].reshape(3, theta.size, part.size)
+        sums[:, i : i + columns] = _sums(np.dot(theta, part, out=x), n, energy, weights)
+    return sums
 
 
 def harmonic_sums_of_many(species: Sequence[FloatArray], T: FloatArray) -> tuple[LnQ, ...]:
@@ -81,50 +86,64 @@ def harmonic_sums_of_many(species: Sequence[FloatArray], T: FloatArray) -> tuple
     >>> bool(np.allclose(water.s_R, HarmonicVibration((1595.0, 3657.0, 3756.0)).ln_q(T).s_R)), float(atom.s_R[1])
     (True, 0.0)
     """
-    done: dict[int, LnQ] = {}
-    order = sorted(range(len(species)), key=lambda index: len(species[index]))  # like sizes together, little padding
-    while order:
-        rows = max(1, _CHUNK // max(1, T.size * len(species[order[-1]])))
-        group, order = order[-rows:], order[:-rows]
-        done.update(zip(group, _group([species[index] for index in group], T), strict=True))
-    return tuple(done[index] for index in range(len(species)))
+    sizes = [len(wavenumbers) for wavenumbers in species]
+    order = sorted(range(len(species)), key=sizes.__getitem__)
+    sums = np.empty((3, len(species), T.size))
+    done = sizes.count(0)
+    sums[:, :done] = 0.0
+    while done < len(species):
+        alike = sizes.count(sizes[order[done]])
+        theta = SECOND_RADIATION_CM_K * np.concatenate([species[index] for index in order[done : done + alike]])
+        _sums_of_alike(theta.reshape(alike, -1), T, sums[:, done : done + alike])
+        done += alike
+    rows = dict(zip(order, map(LnQ, *sums), strict=True))
+    return tuple(rows[index] for index in range(len(species)))
 
 
-def _group(species: Sequence[FloatArray], T: FloatArray) -> list[LnQ]:
-    """Sums for a few species, filled up to the same number of modes with modes too high to be excited."""
-    nu = np.full((len(species), max(map(len, species))), _FROZEN_CM1)
-    for row, wavenumbers in zip(nu, species, strict=True):
-        row[: len(wavenumbers)] = wavenumbers
+def _sums_of_alike(theta: FloatArray, T: FloatArray, sums: FloatArray) -> None:
+    """Sums for species of equally many modes, theta (species, m) in K, into *sums* (3, species, n)."""
+    n_species, m = theta.shape
+    inverse_T, rows = 1.0 / T[None, :], min(_CHUNK // max(1, T.size * m), n_species)
     with np.errstate(over="ignore"):
-        x = (SECOND_RADIATION_CM_K * nu)[:, :, None] / T
-        n = np.expm1(x)
-    np.reciprocal(n, out=n)
-    energy = x * n
-    x += energy
-    x *= energy
-    n += 1.0
-    ln_q = np.zeros((len(species), T.size))
-    for i in range(0, nu.shape[1], _FACTORS):
-        ln_q += np.log(np.multiply.reduce(n[:, i : i + _FACTORS], axis=1))
-    u, w = np.add.reduce(energy, axis=1), np.add.reduce(x, axis=1)
-    w -= 2.0 * u
-    return [LnQ(*row) for row in zip(ln_q, u, w, strict=True)]
+        if rows == 0:  # one species alone is more than a cache holds
+            for i, one in enumerate(theta):
+                sums[:, i] = _in_chunks(one[:, None], inverse_T, max(1, _CHUNK // m), None)
+            return
+        room = np.empty((3, m * rows * T.size))
+        for i in range(0, n_species, rows):
+            part = theta[i : i + rows]
+            x, n, energy = room[:, : part.size * T.size].reshape(3, m, len(part) * T.size)
+            np.dot(part.T.reshape(-1, 1), inverse_T, out=x.reshape(part.size, T.size))
+            _sums(x, n, energy, None, tuple(sums[:, i : i + rows].reshape(3, x.shape[1])))
 
 
-def _block(x: FloatArray, weights: FloatArray | None) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Sums over the modes (rows of x, which is overwritten) of ln q, U/RT and Cv/R; as few passes as will do."""
-    n = np.expm1(x)
+def _sums(
+    x: FloatArray,
+    n: FloatArray | None,
+    energy: FloatArray | None,
+    weights: FloatArray | None,
+    into: tuple[FloatArray | None, ...] = (None, None, None),
+) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Sums over the modes of ln q, u and w, in as few passes as will do.
+
+    x : c₂ν/T, (m, n), a matrix product of one term each, which rounds like a product and is faster than broadcasting;
+    it is overwritten.   n, energy : like x, to work in, and into : for the results; new arrays where None.
+    """
+    n = np.expm1(x, out=n)
     np.reciprocal(n, out=n)
-    energy = x * n
+    energy = np.multiply(x, n, out=energy)
     x += energy
     x *= energy
     n += 1.0
     if weights is not None:
-        return weights @ np.log(n), weights @ energy, weights @ x
-    ln_q = np.log(np.multiply.reduce(n[:_FACTORS]))
+        u = weights @ energy
+        return weights @ np.log(n), u, weights @ x - 2.0 * u
+    ln_q = np.log(np.multiply.reduce(n[:_FACTORS]), out=into[0])
     for i in range(_FACTORS, len(n), _FACTORS):
         ln_q += np.log(np.multiply.reduce(n[i : i + _FACTORS]))
-    return ln_q, np.add.reduce(energy), np.add.reduce(x)
+    u, w = np.add.reduce(energy, out=into[1]), np.add.reduce(x, out=into[2])
+    w -= 2.0 * u
+    return ln_q, u, w
 
 
 def mode_sensitivities(wavenumbers_cm1: Sequence[float] | FloatArray, T: FloatArray) -> LnQ:

@@ -18,6 +18,8 @@ ACCEPTABLE: Final = {
     "constraints": "constraints",
     "excited-state": "excited-state",
     "gradient": "not-stationary",
+    "energy": "energy-implausible",
+    "bonds": "reaction-unbalanced",
 }
 """The words of ``--accept`` and the code of the finding that each of them accepts."""
 LARGEST_IMAGINARY_CM1: Final = 50.0

@@ -64,8 +64,12 @@ def fragments(bonded: NDArray[np.bool_]) -> tuple[tuple[int, ...], ...]:
     return tuple(found)
 
 
-def fingerprint(atomic_numbers: Sequence[int] | NDArray[np.int64], bonded: NDArray[np.bool_]) -> tuple[str, ...]:
+def fingerprint(
+    atomic_numbers: Sequence[int] | NDArray[np.int64], bonded: NDArray[np.bool_], isotopes: Sequence[int] = ()
+) -> tuple[str, ...]:
     """A text for each atom, sorted, equal for equal graphs whatever the order of the atoms.
+
+    isotopes : mass number of each atom that is to count as another element, 0 for the others; none when empty.
 
     Neighbourhoods are refined as often as there are atoms (Weisfeiler and Leman 1968, from memory); graphs that this
     cannot tell apart are no matter here, as the fingerprint only ever serves to say that two structures differ.
@@ -75,9 +79,18 @@ def fingerprint(atomic_numbers: Sequence[int] | NDArray[np.int64], bonded: NDArr
     >>> fingerprint([1, 6, 7], nitrile) == fingerprint([1, 6, 7], isonitrile)
     False
     """
+    return tuple(sorted(atom_labels(atomic_numbers, bonded, isotopes)))
+
+
+def atom_labels(
+    atomic_numbers: Sequence[int] | NDArray[np.int64], bonded: NDArray[np.bool_], isotopes: Sequence[int] = ()
+) -> list[str]:
+    """The texts of :func:`fingerprint` in the order of the atoms: alike for atoms that the graph cannot tell apart."""
     labels = [symbol(int(z)) for z in atomic_numbers]
+    if isotopes:
+        labels = [f"{a or ''}{label}" for a, label in zip(isotopes, labels, strict=True)]
     neighbours = [np.flatnonzero(row) for row in bonded]
     for _ in range(min(len(labels), 20)):
         wider = [f"{labels[i]}({','.join(sorted(labels[int(j)] for j in near))})" for i, near in enumerate(neighbours)]
         labels = [blake2b(text.encode(), digest_size=8).hexdigest() for text in wider]
-    return tuple(sorted(labels))
+    return labels

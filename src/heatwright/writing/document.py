@@ -71,7 +71,7 @@ def species_document(
     if model.motion.shifts:
         document |= _low_modes(model)
     if entry is not None:
-        document |= {"nasa7": _nasa7(entry.polynomial), "residuals": _residuals(entry.quality)}
+        document |= {"nasa7": nasa7_document(entry.polynomial), "residuals": residuals_document(entry.quality)}
     document["source"] = source_document(molecule)
     document["findings"] = [f.as_json() for f in findings]
     return document
@@ -154,6 +154,7 @@ def _formation(formation: Formation) -> dict[str, Any]:
             {"what": line.what, "value_kJ_mol": significant(line.value_kJ_mol), "source": line.source}
             for line in formation.ledger
         ],
+        **({"other_routes": [_formation(other) for other in formation.alternatives]} if formation.alternatives else {}),
     }
 
 
@@ -204,7 +205,8 @@ def _uncertainty(uncertainty: TableUncertainty) -> dict[str, Any]:
     }
 
 
-def _nasa7(polynomial: Nasa7) -> dict[str, Any]:
+def nasa7_document(polynomial: Nasa7) -> dict[str, Any]:
+    """A polynomial: temperatures (low, common, high) and coefficients as they are printed."""
     return {
         "T_K": [polynomial.t_low_K, polynomial.t_common_K, polynomial.t_high_K],
         "low": list(polynomial.low),
@@ -212,7 +214,8 @@ def _nasa7(polynomial: Nasa7) -> dict[str, Any]:
     }
 
 
-def _residuals(quality: FitQuality) -> dict[str, Any]:
+def residuals_document(quality: FitQuality) -> dict[str, float]:
+    """The largest residuals and the proven lower bound, dimensionless."""
     return {
         "max_dCp_R": significant(quality.dcp_R.largest, 4),
         "max_dH_RT": significant(quality.dh_RT.largest, 4),
