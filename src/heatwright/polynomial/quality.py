@@ -7,6 +7,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from itertools import pairwise
 from typing import Final
 
 import numpy as np
@@ -180,7 +181,7 @@ def residual_curve(
     """
     edges = (polynomial.t_low_K, polynomial.t_common_K, polynomial.t_high_K)
     phase = (1.0 - np.cos(np.linspace(0.0, np.pi, CURVE_POINTS))) / 2.0  # Chebyshev-Lobatto: dense at the ends
-    spread = [low * (high / low) ** phase for low, high in zip(edges, edges[1:], strict=False)]
+    spread = [low * (high / low) ** phase for low, high in pairwise(edges)]
     inside = np.concatenate([*spread, np.asarray(also_K, dtype=float)])
     T = np.unique(np.clip(np.append(inside.round(2), edges), edges[0], edges[2]))
     return ResidualCurve(T, polynomial.cp_R(T) - cp_R(T), polynomial.h_RT(T) - h_RT(T), polynomial.s_R(T) - s_R(T))

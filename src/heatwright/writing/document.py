@@ -66,7 +66,7 @@ def species_document(
         "low_modes": model.motion.low_modes,
         "electronic_levels_cm-1": [[nu, g] for nu, g in model.levels],
         "torsions": [torsion_document(t) for t in model.torsions],
-        "classical_limit_R": model.classical_limit_R,
+        "classical_limit_R": _classical_limit(model),
         "H298_minus_H0_kJ_mol": significant(table.h298_minus_h0_kJ_mol),
         "table": _table(table),
     }
@@ -109,6 +109,11 @@ def geometry_document(molecule: Molecule) -> dict[str, Any] | None:
     }
 
 
+def _classical_limit(model: ThermoModel) -> float | None:
+    """What Cp°/R tends to, where every motion is a rigid rotor or an oscillator to the end."""
+    return None if model.torsions or model.options.low_modes.kind == "interpolate" else model.classical_limit_R
+
+
 def _low_modes(model: ThermoModel) -> dict[str, Any]:
     chosen = model.options.low_modes
     document: dict[str, Any] = {"low_modes_cutoff_cm-1": chosen.cutoff_cm1}
@@ -138,6 +143,7 @@ def torsion_document(torsion: TreatedTorsion) -> dict[str, Any]:
         "potential": _potential(torsion),
         "levels_cm-1": _numbers(levels[levels <= max(1.5 * torsion.potential.barrier_cm1, 500.0)]),
         "zero_point_cm-1": significant(torsion.ground_cm1),
+        "ground_cm-1": significant(torsion.rotor.ground_cm1),
         "source": torsion.source,
     }
 

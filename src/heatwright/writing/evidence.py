@@ -109,7 +109,7 @@ def route_text(formation: Formation) -> str:
         "given": f"ΔfH° given ({formation.source})",
         "atomization": "ΔfH° by atomization",
         "reaction": "ΔfH° by a balanced reaction",
-        "network": f"ΔfH° by {formation.source.split(' (')[0]}",
+        "network": f"ΔfH° by a network of {formation.source.split(' (')[0]}",
     }
     return f"{how.get(formation.method, f'ΔfH° by {formation.method}')}, {uncertainty_text(formation.u95_kJ_mol)}"
 
@@ -120,9 +120,14 @@ def uncertainty_text(u95_kJ_mol: float | None) -> str:
     >>> uncertainty_text(0.2), uncertainty_text(None)
     ('±0.20 kJ/mol', 'uncertainty not known')
     """
-    return "uncertainty not known" if u95_kJ_mol is None else f"±{u95_kJ_mol:.{0 if u95_kJ_mol >= 10 else 1 if u95_kJ_mol >= 0.95 else 2}f} kJ/mol"
+    if u95_kJ_mol is None:
+        return "uncertainty not known"
+    return f"±{u95_kJ_mol:.{0 if u95_kJ_mol >= 10.0 else 1 if u95_kJ_mol >= 0.95 else 2}f} kJ/mol"
 
 
 def fit_text(polynomial: Nasa7, largest_dcp_R: float) -> str:
     """The largest residual of Cp°/R and the range it belongs to."""
-    return f"polynomial within {largest_dcp_R:.2g} R in Cp°, {polynomial.t_low_K:g}–{polynomial.t_high_K:g} K"
+    where = f"{polynomial.t_low_K:g}–{polynomial.t_high_K:g} K"
+    if largest_dcp_R < 5e-6:
+        return f"polynomial exact in Cp°, {where}"
+    return f"polynomial within {largest_dcp_R:.2g} R in Cp°, {where}"
