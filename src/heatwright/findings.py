@@ -79,6 +79,7 @@ CODES: Final[dict[str, str]] = {
     "torsion": "A torsion was treated as a hindered rotor; its potential and what it changes are said.",
     "torsion-impossible": "A torsion was asked for where nothing can turn, or more of them than there are low modes.",
     "torsion-overlap": "The projected torsion is not what the low modes of the molecule do.",
+    "torsion-equivalent": "A torsion was treated, and another one that is equivalent to it was not.",
     "torsion-counted-twice": "A torsional potential holds configurations that are, or would be, counted otherwise too.",
     "torsion-classical": "A heavy top was treated classically (Pitzer and Gwinn), without its levels.",
     "torsion-check": "The sum over torsional levels and the form of Pitzer and Gwinn differ more than they should.",

@@ -414,7 +414,10 @@ def test_everything_at_once_adds_up() -> None:
     formation = atomized(methanol(), spin_orbit=True, corrections=corrections)
     assert adds_up(formation)
     assert all(line.source for line in formation.ledger)
-    assert formation.ledger[3].what == "electronic atomization energy (SCF)"
+    assert formation.source.endswith(
+        "ATcT 1.112; spin-orbit lowering of the atoms; corrections from x; corrections from y"
+    )
+    assert formation.ledger[3].what == "electronic atomization energy, SCF"
 
 
 def test_atoms_of_the_user_are_used() -> None:

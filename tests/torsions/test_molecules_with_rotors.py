@@ -17,6 +17,8 @@ from heatwright.molecule import Molecule
 from heatwright.reading.outputs import read_output
 from heatwright.reading.torsion_scans import read_torsion
 from heatwright.resources import sample_outputs
+from heatwright.structure.modes import SQUARE_CM2
+from heatwright.structure.torsions import alike_bonds, rotatable_bond, torsion_vectors
 from outside import SHARED, needs_shared
 
 R = GAS_CONSTANT_J_MOL_K
@@ -155,6 +157,54 @@ def test_two_tops_and_their_coupling() -> None:
     np.testing.assert_allclose(coupled.cp_R([300.0, 2000.0]), plain.cp_R([300.0, 2000.0]), rtol=1e-12)
     assert len({c.name for c in plain.contributions}) == len(plain.contributions)
     assert all(t.overlap > 0.97 for t in plain.torsions)
+
+
+def test_one_of_two_equivalent_tops_is_not_a_wrong_mode() -> None:
+    # The modes of dimethyl ether are the sum and the difference of its tops' torsions, 0.6 of one top each.
+    ether, one, other = sample("CH3OCH3"), "4-1-2-3 n=3 V=900 cm-1", "7-3-2-1 n=3 V=900 cm-1"
+    alone = model(ether, one)
+    assert "torsion-overlap" not in codes(alone)
+    assert alone.torsions[0].overlap > 0.97
+    (said,) = [f for f in alone.findings if f.code == "torsion-equivalent"]
+    assert said.severity == "warn"
+    assert "torsion 1-2-3-7, equivalent to one that is treated, was not given and stays an oscillator" in said.text
+    assert "torsion-equivalent" not in codes(model(ether, one, other))
+    assert "torsion-equivalent" not in codes(model(sample("CH3OH"), BARRIER))
+    masses = ether.masses_u.copy()
+    masses[6:] = 2.0141  # CH3OCD3 has no equivalent tops
+    bond = rotatable_bond(ether.atomic_numbers, masses, ether.coordinates_A, (3, 0, 1, 2))
+    assert alike_bonds(ether.atomic_numbers, masses, ether.coordinates_A, [bond]) == []
+
+
+@needs_shared
+def test_equivalent_tops_of_a_larger_molecule() -> None:
+    made = model(computed("isobutane"), "4-3-1-2 n=3 V=1100 cm-1")
+    (said,) = [f for f in made.findings if f.code == "torsion-equivalent"]
+    assert said.text.count("-") > 6
+    assert "were not given and stay oscillators" in said.text
+    assert "torsion-overlap" not in codes(made)
+
+
+def test_a_torsion_mixed_with_another_motion_is_seen() -> None:
+    # Force constants in which the torsion of methanol is half of each of two modes, 200 and 600 1/cm.
+    m = read_output(METHANOL, with_hessian=True)
+    assert m.hessian_hartree_bohr2 is not None
+    bond = rotatable_bond(m.atomic_numbers, m.masses_u, m.coordinates_A, (2, 0, 1, 3))
+    weights = np.repeat(np.sqrt(m.masses_u), 3)
+    torsion = torsion_vectors(m.masses_u, m.coordinates_A, [bond])
+    torsion /= np.linalg.norm(torsion)
+    K = m.hessian_hartree_bohr2 / np.outer(weights, weights)
+    stretch = np.linalg.eigh(K)[1][:, -1:]
+    stretch -= torsion * (torsion.T @ stretch)
+    stretch /= np.linalg.norm(stretch)
+    rest = np.eye(len(K)) - torsion @ torsion.T - stretch @ stretch.T
+    K = rest @ K @ rest
+    for nu, mixed in ((200.0, torsion + stretch), (600.0, torsion - stretch)):
+        K += nu**2 / SQUARE_CM2 * mixed @ mixed.T / 2.0
+    waves = np.sqrt(np.abs(np.linalg.eigvalsh(K)[6:]) * SQUARE_CM2)
+    made = model(m.but(hessian_hartree_bohr2=K * np.outer(weights, weights), wavenumbers_cm1=waves), BARRIER)
+    assert made.torsions[0].overlap == pytest.approx(0.5, abs=0.01)
+    assert "torsion-overlap" in codes(made)
 
 
 def test_what_cannot_be_together() -> None:

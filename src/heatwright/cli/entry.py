@@ -265,18 +265,16 @@ def _make(job: _Job, request: Request) -> Entry:
 def _describe(path: str, made: Entry, units_name: str, reporter: Reporter) -> None:
     """The words about one finished entry."""
     from heatwright.findings import refusals
-    from heatwright.writing.comment import formation_text, residual_text
+    from heatwright.writing.comment import formation_text, ledger_text, residual_text
     from heatwright.writing.units import UNITS
 
     p, units = made.polynomial, UNITS[units_name]
     reporter.say(f"{made.name} from {path}: {formation_text(made.formation, units)}")
     reporter.say(f"  fitted {p.t_low_K:g}-{p.t_common_K:g}-{p.t_high_K:g} K; {residual_text(made)}")
-    if len(made.formation.ledger) > 1:
-        for line in made.formation.ledger:
-            reporter.detail(
-                f"  {round(line.value_kJ_mol * units.factor, 3) + 0.0:14.3f} {units.enthalpy}  {line.what}"
-                f"{f' ({line.source})' if line.source else ''}"
-            )
+    for text in ledger_text(made.formation, units):
+        reporter.detail(f"  {text}")
+    for other in made.formation.alternatives:
+        reporter.detail(f"  beside it: {formation_text(other, units)}")
     for shift in made.model.motion.shifts:
         reporter.detail(f"  {shift.text}")
     reporter.findings(path, [f for f in made.findings if f not in refusals(made.findings)])

@@ -68,6 +68,7 @@ def _proposals(output: str, options: dict[str, Any], reporter: Reporter) -> str:
     from heatwright.formation.usable import usable_references
     from heatwright.partition.model import build_model
     from heatwright.structure.bond_orders import bonding
+    from heatwright.writing.comment import ledger_text
 
     own = own_references(options)
     energies = energy_choices(options, own)
@@ -91,8 +92,8 @@ def _proposals(output: str, options: dict[str, Any], reporter: Reporter) -> str:
         return _as_json(name, model, usable, rows)
     for reaction, formation in rows:
         reporter.detail(reaction.text)
-        for line in formation.ledger:
-            reporter.detail(f"  {round(line.value_kJ_mol, 3) + 0.0:14.3f} kJ/mol  {line.what} ({line.source})")
+        for text in ledger_text(formation):
+            reporter.detail(f"  {text}")
     return _as_text(name, mine, usable, rows, options["units"])
 
 

@@ -63,16 +63,15 @@ def formation_by_atomization(
     if refusals(said):
         raise Refused(said)
     counted = {element: (n, known[element]) for element, n in model.composition.items()}
-    at_0 = (
-        *_atom_lines(counted),
-        *_energy_lines(model, chosen),
+    added = (
         *(_spin_orbit_lines(model) if spin_orbit else ()),
         *correction_lines(corrections, model.composition, model.molecule),
     )
+    at_0 = (*_atom_lines(counted), *_energy_lines(model, chosen), *added)
     charge = model.molecule.charge or 0
     ledger = (*at_0, *_thermal_lines(model, counted), *electron_lines(charge, electron))
     sources = "; ".join(dict.fromkeys(reference.source for _, reference in counted.values()))
-    source = f"atoms at {_level(model, chosen)}, their enthalpies of formation at 0 K from {sources}"
+    source = f"atoms at {_level(model, chosen)}, their enthalpies of formation at 0 K from {sources}{_added(added)}"
     certain = model.molecule.is_atom and not charge  # an atom against itself has no bond to break
     return Formation(
         dHf298_kJ_mol=fsum(line.value_kJ_mol for line in ledger),
@@ -83,6 +82,14 @@ def formation_by_atomization(
         ledger=ledger,
         findings=said if certain else (*said, _level_error(model, chosen)),
     )
+
+
+def _added(lines: Collection[LedgerLine]) -> str:
+    """What was added beside energies and reference values, for the source."""
+    spin_orbit = any(line.source == SPIN_ORBIT_SOURCE for line in lines)
+    corrections = dict.fromkeys(line.source for line in lines if line.source != SPIN_ORBIT_SOURCE)
+    parts = ["; spin-orbit lowering of the atoms"] if spin_orbit else []
+    return "".join([*parts, *(f"; corrections from {source}" for source in corrections)])
 
 
 def _level_error(model: ThermoModel, chosen: ChosenAtoms) -> Finding:
@@ -128,7 +135,7 @@ def _energy_lines(model: ThermoModel, chosen: ChosenAtoms) -> Iterator[LedgerLin
         sources = "; ".join(dict.fromkeys(energy.source for energy in stated if energy is not None))
         yield LedgerLine("atomization energy at 0 K, as stated", -apart, f"{level}, {sources}")
     else:
-        kind = f" ({model.molecule.energy_kind})" if model.molecule.energy_kind else ""
+        kind = f", {model.molecule.energy_kind}" if model.molecule.energy_kind else ""
         yield LedgerLine(f"electronic atomization energy{kind}", -apart, level)
         yield LedgerLine("zero-point energy", model.zpe_kJ_mol, model.zpe_text)
     if model.lowest_level_kJ_mol:

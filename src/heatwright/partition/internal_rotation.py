@@ -23,6 +23,7 @@ from heatwright.structure.isotopes import force_constants
 from heatwright.structure.torsion_modes import without_torsions
 from heatwright.structure.torsions import (
     RotatableBond,
+    alike_bonds,
     dihedral_deg,
     is_mirrored,
     reduced_moments,
@@ -127,7 +128,9 @@ def internal_rotation(molecule: Molecule, wishes: Sequence[Torsion], *, coupled:
     _check_together(molecule, tops)
     bonds, masses, x = [t.bond for t in tops], molecule.masses_u, molecule.coordinates_A
     hessian, _, _ = force_constants(molecule, "projecting out a torsion")
-    left, overlaps = without_torsions(hessian, masses, x, torsion_vectors(masses, x, bonds))
+    alike = alike_bonds(molecule.atomic_numbers, masses, x, bonds)
+    vectors = (torsion_vectors(masses, x, tops) for tops in (bonds, alike))
+    left, overlaps = without_torsions(hessian, masses, x, *vectors)
     if not (left > 0.0).all():
         found = f"without the torsions the lowest mode is {left[0]:.2f} cm⁻¹"
         raise Refused([refuse("imaginary-modes", found, expected="a minimum", action="Look at the lowest modes.")])
@@ -143,7 +146,10 @@ def internal_rotation(molecule: Molecule, wishes: Sequence[Torsion], *, coupled:
         wavenumbers_cm1=left,
         coupling=coupling,
         holds_mirror_image=_holds_mirror_image(molecule, treated),
-        findings=tuple(f for t, top in zip(treated, tops, strict=True) for f in (*top.findings, *_findings(t))),
+        findings=(
+            *(f for t, top in zip(treated, tops, strict=True) for f in (*top.findings, *_findings(t))),
+            *_untreated(alike),
+        ),
     )
 
 
@@ -221,6 +227,20 @@ def _findings(t: TreatedTorsion) -> tuple[Finding, ...]:
         )
         said.append(warn("scan-lower-minimum", words, action="Run the frequencies at the lower minimum."))
     return tuple(said)
+
+
+def _untreated(alike: list[RotatableBond]) -> tuple[Finding, ...]:
+    """That torsions equivalent to treated ones were not given."""
+    if not alike:
+        return ()
+    many = len(alike) > 1
+    labels = ", ".join(bond.label for bond in alike)
+    words = (
+        f"{'torsions' if many else 'torsion'} {labels}, equivalent to one that is treated, "
+        f"{'were' if many else 'was'} not given and {'stay oscillators' if many else 'stays an oscillator'}"
+    )
+    action = f'Give {"them" if many else "it"} as well, --torsion "{alike[0].label} …"; a scan of one serves the other.'
+    return (warn("torsion-equivalent", words, action=action),)
 
 
 def entropy_J_mol_K(parts: Sequence[Contribution], T_K: float = STANDARD_TEMPERATURE_K) -> float:

@@ -3,16 +3,21 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cached_property
 from typing import Final
 
 import numpy as np
 
 from heatwright.constants import SECOND_RADIATION_CM_K
 from heatwright.molecule import FloatArray
+from heatwright.partition.condensing import condensed
 from heatwright.partition.contribution import LnQ
 
 HIGHEST_CM1: Final = 3.2e5
 """Levels above this are left out, 1/cm: at 10000 K their Boltzmann factor is below 10⁻²⁰."""
+
+MANY: Final = 2000
+"""From so many levels on, they are condensed, which changes no sum by more than rounding does."""
 
 _CHUNK: Final = 1 << 17
 """Level-temperatures done at once; the block then stays inside a processor's cache."""
@@ -42,13 +47,21 @@ class LevelSum:
         if not (np.isfinite(e).all() and np.isfinite(g).all() and (g > 0.0).all()):
             raise ValueError("level energies must be finite and their weights positive")
 
+    @cached_property
+    def _terms(self) -> tuple[FloatArray, FloatArray]:
+        """Energies from the lowest level (1/cm) and weights of what is summed."""
+        if self.energies_cm1.size < MANY:
+            return self.energies_cm1 - self.energies_cm1.min(), self.weights
+        return condensed(self.energies_cm1, self.weights)
+
     def ln_q(self, T: FloatArray) -> LnQ:
         """ln q with mean and variance of x = c₂Ẽ/T as derivatives.
 
         The variance is ⟨x²⟩ − ⟨x⟩²: energies counted from the lowest level leave no more than a digit to cancellation.
         """
-        theta = SECOND_RADIATION_CM_K * (self.energies_cm1 - self.energies_cm1.min())
-        moments = np.stack([self.weights, self.weights * theta, self.weights * theta**2], axis=1)
+        energies, weights = self._terms
+        theta = SECOND_RADIATION_CM_K * energies
+        moments = np.stack([weights, weights * theta, weights * theta**2], axis=1)
         flat = T.reshape(-1)
         sums = np.empty((flat.size, 3))
         rows = max(1, _CHUNK // theta.size)

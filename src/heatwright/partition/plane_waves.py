@@ -32,6 +32,7 @@ def basis_size(potential: Potential, F_cm1: float, t_max_K: float = T_MAX_K) -> 
 def torsional_levels(potential: Potential, F_cm1: float, K: int) -> FloatArray:
     """Levels (2K+1,) in 1/cm on the scale of the potential, ascending, from plane waves up to |k| = *K*.
 
+    >>> from heatwright.partition.potential import cosine_potential
     >>> levels = torsional_levels(cosine_potential(3, 373.55), 27.63, 60)  # methanol; Lees and Baker (1968)
     >>> (levels[[1, 3, 5]] - levels[0]).round(1).tolist()
     [9.1, 209.2, 295.5]

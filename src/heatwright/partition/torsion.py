@@ -30,7 +30,7 @@ class HinderedRotor:
 
     name : of the contribution.   levels_cm1 : (m,) above the ground level, 1/cm, ascending.
     symmetry_number : σ, the number of equivalent orientations in one turn.
-    ground_cm1 : E₀ − Vmin, the rotor's own zero-point energy, 1/cm.   K : basis size behind the levels.
+    ground_cm1 : E₀ − Vmin, the rotor's own zero-point energy, 1/cm.   K : of the highest plane waves ±K.
     potential, F_cm1 : what the levels are from.
     """
 
@@ -71,6 +71,7 @@ def hindered_rotor(
 
     Raises ValueError unless F is positive and the symmetry number divides the fold of the potential.
 
+    >>> from heatwright.partition.potential import cosine_potential
     >>> ethane = hindered_rotor(cosine_potential(3, 1024.0), 10.70, 3)
     >>> round(ethane.ground_cm1, 1)
     150.7

@@ -93,8 +93,8 @@ def harmonic_sums_of_many(species: Sequence[FloatArray], T: FloatArray) -> tuple
     sums[:, :done] = 0.0
     while done < len(species):
         alike = sizes.count(sizes[order[done]])
-        theta = SECOND_RADIATION_CM_K * np.array([species[index] for index in order[done : done + alike]])
-        _sums_of_alike(theta, T, sums[:, done : done + alike])
+        theta = SECOND_RADIATION_CM_K * np.concatenate([species[index] for index in order[done : done + alike]])
+        _sums_of_alike(theta.reshape(alike, -1), T, sums[:, done : done + alike])
         done += alike
     rows = dict(zip(order, map(LnQ, *sums), strict=True))
     return tuple(rows[index] for index in range(len(species)))

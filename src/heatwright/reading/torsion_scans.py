@@ -134,6 +134,8 @@ def _folder(path: Path, atoms: Atoms4 | None) -> TorsionScan:
         molecules.append(molecule)
     if not molecules:
         raise _unreadable(str(path), "the folder holds no outputs", "one output for each angle of a torsion")
+    if len(molecules) == 1 and molecules[0].kind == "relaxed scan":
+        return _single(Path(molecules[0].source.file), atoms)
     return _of_molecules(str(path), atoms, tuple(molecules))
 
 
@@ -187,7 +189,15 @@ def _single(path: Path, atoms: Atoms4 | None) -> TorsionScan:
     """The relaxed points of a scan that is one output."""
     from heatwright.reading.scan_points import relaxed_points
 
-    molecule = read_output(str(path), accept=("constraints", "gradient"))
+    try:
+        molecule = read_output(str(path), accept=("constraints", "gradient"))
+    except Refused:
+        if re.match(r"\s*\d+\s*\n\s*energy:.*\bxtb:", read_text(path).text[:1000]):
+            words = "the file holds the points of an xTB scan, but not their charge and level of theory"
+            raise _unreadable(
+                str(path), words, action="Give the output of the run, which must lie beside it."
+            ) from None
+        raise
     wrong: tuple[Finding, ...] = refusals(molecule.findings)
     if wrong:
         raise Refused([f.at(str(path)) for f in wrong])

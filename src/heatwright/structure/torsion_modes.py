@@ -13,20 +13,26 @@ from heatwright.structure.modes import SQUARE_CM2, overall_motion
 
 
 def without_torsions(
-    hessian_hartree_bohr2: FloatArray, masses_u: FloatArray, coordinates_A: FloatArray, vectors: FloatArray
+    hessian_hartree_bohr2: FloatArray,
+    masses_u: FloatArray,
+    coordinates_A: FloatArray,
+    vectors: FloatArray,
+    alike: FloatArray,
 ) -> tuple[FloatArray, FloatArray]:
     """Wavenumbers of what is left, and how much of each torsion its molecule's best modes are.
 
     vectors : (3n, t) mass-weighted torsional displacements without overall motion, of any length.
+    alike : (3n, s) those of equivalent torsions that are not taken out; the modes mix them with the others.
     Returns wavenumbers (m − t,), ascending, imaginary ones negative, and overlaps (t,): the squared length of each
-    normalised torsion in the span of the t full modes that lie in the torsions most.
+    normalised torsion in the span of the t + s full modes that lie in all these torsions most.
     """
     weights = np.repeat(1.0 / np.sqrt(masses_u), 3)
     K = (hessian_hartree_bohr2 + hessian_hartree_bohr2.T) / 2.0 * np.outer(weights, weights)
     motion = overall_motion(masses_u, coordinates_A)
     torsions = np.linalg.qr(vectors)[0]
     modes = _eigen(K, motion)[1]
-    best = np.argsort(((modes.T @ torsions) ** 2).sum(axis=1))[-torsions.shape[1] :]
+    mixed = np.linalg.qr(np.hstack([vectors, alike]))[0]
+    best = np.argsort(((modes.T @ mixed) ** 2).sum(axis=1))[-mixed.shape[1] :]
     unit = vectors / np.linalg.norm(vectors, axis=0)
     overlaps = ((modes[:, best].T @ unit) ** 2).sum(axis=0)
     eigenvalues = _eigen(K, np.hstack([motion, torsions]))[0]

@@ -16,7 +16,7 @@ from numpy.typing import NDArray
 
 from heatwright.constants import INERTIA_CM1_U_A2
 from heatwright.molecule import FloatArray, IntArray
-from heatwright.structure.bonds import bonds, covalent_radius_A
+from heatwright.structure.bonds import atom_labels, bonds, covalent_radius_A
 from heatwright.structure.modes import overall_motion
 from heatwright.structure.superposition import matched, superposed
 
@@ -118,6 +118,27 @@ def rotatable_bonds(atomic_numbers: IntArray, masses_u: FloatArray, coordinates_
             atoms = (ends[0][0], j, k, ends[1][0])
             found.append(rotatable_bond(atomic_numbers, masses_u, coordinates_A, atoms))
     return found
+
+
+def alike_bonds(
+    atomic_numbers: IntArray, masses_u: FloatArray, coordinates_A: FloatArray, some: list[RotatableBond]
+) -> list[RotatableBond]:
+    """Rotatable bonds besides *some* that cannot be told from one of them by bonds and isotopes, as equivalent tops.
+
+    >>> ether = np.array([[0, 1.17, -0.2], [0, 0, 0.59], [0, -1.17, -0.2], [0, 2.02, 0.49], [0.89, 1.22, -0.84],
+    ...     [-0.89, 1.22, -0.84], [0, -2.02, 0.49], [0.89, -1.22, -0.84], [-0.89, -1.22, -0.84]])
+    >>> z, m = np.array([6, 8, 6, 1, 1, 1, 1, 1, 1]), np.array([12.0, 16, 12, 1, 1, 1, 1, 1, 1])
+    >>> [b.bond for b in alike_bonds(z, m, ether, [rotatable_bond(z, m, ether, (3, 0, 1, 2))])]
+    [(1, 2)]
+    """
+    labels = atom_labels(atomic_numbers, bonds(atomic_numbers, coordinates_A), [round(float(m)) for m in masses_u])
+    taken = {bond.bond for bond in some}
+    wanted = {frozenset(labels[a] for a in axis) for axis in taken}
+    return [
+        bond
+        for bond in rotatable_bonds(atomic_numbers, masses_u, coordinates_A)
+        if bond.bond not in taken and frozenset(labels[a] for a in bond.bond) in wanted
+    ]
 
 
 def rotatable_bond(

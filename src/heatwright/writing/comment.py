@@ -181,6 +181,21 @@ def scale_text(model: ThermoModel) -> str:
     return f"{words}, {source}" if source else f"{words}: unscaled"
 
 
+def ledger_text(formation: Formation, units: Units = UNITS["kJ"]) -> list[str]:
+    """The ledger, a line each with four decimals, so that the sum can be checked by hand; empty for a single line."""
+    if len(formation.ledger) < 2:
+        return []
+    return [
+        f"{_fixed(line.value_kJ_mol * units.factor)} {units.enthalpy}  {line.what}"
+        f"{f' ({line.source})' if line.source else ''}"
+        for line in formation.ledger
+    ]
+
+
+def _fixed(value: float) -> str:
+    return f"{round(value, 4) + 0.0:14.4f}"
+
+
 def formation_text(formation: Formation, units: Units = UNITS["kJ"]) -> str:
     """The formation in words: value, uncertainty, route and source."""
     f, unit = units.factor, units.enthalpy
