@@ -10,9 +10,11 @@ from typing import NoReturn
 import click
 
 from heatwright import __version__
+from heatwright.cli.audit import audit
 from heatwright.cli.crosscheck import crosscheck
 from heatwright.cli.entry import entry
 from heatwright.cli.explain import explain
+from heatwright.cli.mend import mend
 from heatwright.cli.reactions import reactions
 from heatwright.cli.references import references
 from heatwright.cli.rotors import rotors
@@ -28,6 +30,7 @@ INTERRUPTED = 130
 SECTIONS = {
     "One molecule": ("survey", "table", "entry", "rotors"),
     "A mechanism": ("crosscheck",),
+    "Existing entries": ("audit", "mend"),
     "Looking things up": ("scales", "references", "reactions", "explain", "samples"),
 }
 """How ``--help`` groups the commands."""
@@ -62,7 +65,20 @@ def cli() -> None:
     """
 
 
-for _command in (survey, table, entry, rotors, scales, references, reactions, crosscheck, explain, samples):
+for _command in (
+    survey,
+    table,
+    entry,
+    rotors,
+    scales,
+    references,
+    reactions,
+    crosscheck,
+    audit,
+    mend,
+    explain,
+    samples,
+):
     cli.add_command(_command)
 
 
