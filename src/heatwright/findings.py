@@ -151,6 +151,7 @@ CODES: Final[dict[str, str]] = {
     "target-exists": "The file to be written exists already.",
     "target-unwritable": "The file to be written cannot be written.",
     "template-failed": "The user's template could not be rendered.",
+    "document-wrong": "A JSON document of entries lacks a key, or a value of it is not what it should be.",
     # --- existing entries: reading --------------------------------------------------------------------------------
     "no-entries": "The file holds no thermo entry.",
     "no-such-entry": "The file has no entry of a name, or several.",

@@ -17,6 +17,7 @@ from heatwright.cli.explain import explain
 from heatwright.cli.mend import mend
 from heatwright.cli.reactions import reactions
 from heatwright.cli.references import references
+from heatwright.cli.report import report
 from heatwright.cli.rotors import rotors
 from heatwright.cli.samples import samples
 from heatwright.cli.scales import scales
@@ -29,7 +30,7 @@ INTERRUPTED = 130
 
 SECTIONS = {
     "One molecule": ("survey", "table", "entry", "rotors"),
-    "A mechanism": ("crosscheck",),
+    "A mechanism": ("crosscheck", "report"),
     "Existing entries": ("audit", "mend"),
     "Looking things up": ("scales", "references", "reactions", "explain", "samples"),
 }
@@ -70,6 +71,7 @@ for _command in (
     table,
     entry,
     rotors,
+    report,
     scales,
     references,
     reactions,

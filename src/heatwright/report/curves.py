@@ -8,13 +8,15 @@ from typing import Final
 import numpy as np
 
 from heatwright.constants import GAS_CONSTANT_J_MOL_K
-from heatwright.polynomial.nasa7 import Nasa7
-from heatwright.report.drawing import Dots, Drawing, Figure, Mark, Point, Words, area, line, segments
+from heatwright.polynomial.nasa7 import Nasa7, cp_of
+from heatwright.report.drawing import Dots, Drawing, Figure, Mark, Path, Point, Words, area, line, segments
 from heatwright.report.layout import (
+    TELLING_K,
     Frame,
     Room,
     Scale,
     along,
+    curve,
     frame,
     nice_ticks,
     padded,
@@ -25,8 +27,8 @@ from heatwright.report.species import Residuals, Species
 
 WIDTH: Final = 420.0
 LEFT: Final = 46.0
-RIGHT: Final = 408.0
-_SAMPLES: Final = 90
+RIGHT: Final = 402.0
+_SAMPLES: Final = 50
 
 
 def temperature_scale(low_K: float, high_K: float, right: float = RIGHT) -> Scale:
@@ -36,25 +38,24 @@ def temperature_scale(low_K: float, high_K: float, right: float = RIGHT) -> Scal
 
 def heat_capacity(species: Species) -> Figure | None:
     """Cp°/R of the polynomial with the points of the table; None when there is neither."""
-    p, table = species.polynomial, species.table
+    p = species.polynomial
     T_table, cp_table = _table_points(species)
     ends = (p.t_low_K, p.t_high_K) if p else (T_table[0], T_table[-1]) if len(T_table) > 1 else None
     if ends is None:
         return None
     x = temperature_scale(*ends)
-    T = _grid(p) if p else np.array(T_table)
-    cp = p.cp_R(T) if p else np.array(cp_table)
-    everything = [*cp.tolist(), *cp_table]
+    halves = _halves(p) if p else [list(zip(T_table, cp_table, strict=True))]
+    everything = [*(cp for half in halves for _, cp in half), *cp_table]
     least, most = padded(min(everything), max(everything), 0.1, 0.5)
     limit = species.classical_limit_R
     if limit is not None and limit < most + 0.35 * (most - least):
         most = max(most, limit + 0.08 * (most - least))
     y = Scale(least, most, 238.0, 26.0)
     plot = frame(x, y, temperature_ticks(*ends), nice_ticks(least, most), x_name="T / K", y_name="Cp°/R")
-    curve = [(x(t), y(c)) for t, c in zip(T.tolist(), cp.tolist(), strict=True)]
-    dots = [(x(t), y(c)) for t, c in zip(T_table, cp_table, strict=True)]
-    marks = [*plot.marks, *_cp_marks(species, plot, curve, dots, limit)]
-    rows = _cp_rows(p, T_table, cp_table)
+    curves = [curve(x, y, *zip(*half, strict=True)) for half in halves]
+    dots = curve(x, y, T_table, cp_table)
+    marks = [*plot.marks, *_cp_marks(species, plot, curves, dots, limit)]
+    columns, rows = _function_rows(species)
     return Figure(
         key="cp",
         heading="Heat capacity",
@@ -63,8 +64,7 @@ def heat_capacity(species: Species) -> Figure | None:
         caption=_cp_caption(species),
         source=species.source,
         drawing=Drawing(WIDTH, 274.0, tuple(marks)),
-        columns=("T / K", *(("table, Cp°/R",) if table else ()), *(("polynomial, Cp°/R",) if p else ()),
-                 *(("difference",) if table and p else ())),
+        columns=columns,
         rows=rows,
     )  # fmt: skip
 
@@ -82,15 +82,20 @@ def _table_points(species: Species) -> tuple[list[float], list[float]]:
     return [T for T, _ in inside], [cp for _, cp in inside]
 
 
-def _grid(p: Nasa7) -> np.ndarray[tuple[int], np.dtype[np.float64]]:
-    """Temperatures along the curve, both ends and the joint among them."""
-    return np.unique(np.append(np.geomspace(p.t_low_K, p.t_high_K, _SAMPLES), (p.t_low_K, p.t_common_K, p.t_high_K)))
+def _halves(p: Nasa7) -> list[list[tuple[float, float]]]:
+    """(T, Cp/R) along each of the two ranges, both to the common temperature, so that a jump there is seen."""
+    joint = np.geomspace(p.t_low_K, p.t_common_K, _SAMPLES), np.geomspace(p.t_common_K, p.t_high_K, _SAMPLES)
+    each = zip(joint, (p.low, p.high), strict=True)
+    return [list(zip(T.tolist(), cp_of(a, T).tolist(), strict=True)) for T, a in each]
 
 
-def _cp_marks(species: Species, plot: Frame, curve: list[Point], dots: list[Point], limit: float | None) -> list[Mark]:
+def _cp_marks(
+    species: Species, plot: Frame, curves: list[list[Point]], dots: list[Point], limit: float | None
+) -> list[Mark]:
     p, (left, top, right, bottom) = species.polynomial, plot.box
     room = Room((left + 3.0, top - 4.0, right, bottom - 3.0))
-    room.curve(curve)
+    for half in curves:
+        room.curve(half)
     room.points += dots
     marks: list[Mark] = []
     if limit is not None and plot.y.low < limit < plot.y.high:
@@ -101,10 +106,10 @@ def _cp_marks(species: Species, plot: Frame, curve: list[Point], dots: list[Poin
         join = plot.x(p.t_common_K)
         marks.append(segments([((join, bottom), (join, top))], "hair"))
         room.curve([(join, bottom), (join, top)])
-        marks.append(line(curve, "polynomial"))
+        marks.append(Path(tuple(map(tuple, curves)), "polynomial"))
     marks += [Dots(tuple(dots), "ring"), Dots(tuple(dots), "hole")] if dots else []
     named = (
-        ("polynomial", "of-polynomial", along(curve, False, 0.72)) if p else None,
+        ("polynomial", "of-polynomial", along([q for half in curves for q in half], False, 0.72)) if p else None,
         ("table", "of-table", along(dots, True, 0.4)) if dots else None,
         (f"classical limit {limit:g}", "quiet", [((left + 6.0, plot.y(limit) - 5.0), "start"),
          ((left + 6.0, plot.y(limit) + 13.0), "start")]) if limit and plot.y.low < limit < plot.y.high else None,
@@ -149,17 +154,30 @@ def _cp_caption(species: Species) -> str:
     return f"{'; '.join(what)}."
 
 
-def _cp_rows(p: Nasa7 | None, T: Sequence[float], cp: Sequence[float]) -> tuple[tuple[str, ...], ...]:
-    if p is None:
-        return tuple((f"{t:g}", f"{c:.4f}") for t, c in zip(T, cp, strict=True))
-    if not T:
-        grid = [p.t_low_K, *nice_ticks(p.t_low_K, p.t_high_K, 24), p.t_common_K, p.t_high_K]
-        return tuple((f"{t:g}", f"{p.cp_R(t):.4f}") for t in sorted(set(grid)))
-    fitted = [p.cp_R(t) for t in T]
-    return tuple(
-        (f"{t:g}", f"{c:.4f}", f"{f:.4f}", f"{f - c:+.4f}".replace("-", "−"))
-        for t, c, f in zip(T, cp, fitted, strict=True)
-    )
+def _function_rows(species: Species) -> tuple[tuple[str, ...], tuple[tuple[str, ...], ...]]:
+    """Columns and rows of the functions at the temperatures of the table, else those of the polynomial."""
+    p, table, R = species.polynomial, species.table, GAS_CONSTANT_J_MOL_K
+    named: list[tuple[str, Sequence[float]]] = []
+    if table is not None:
+        T = table.T_K
+        named = [("Cp°, table", table.cp_J_mol_K)]
+        inside = p is not None and p.t_low_K <= T[0] and T[-1] <= p.t_high_K
+        named += [("Cp°, polynomial", (R * p.cp_R(np.array(T))).tolist())] if p is not None and inside else []
+        named += [("S°", table.s_J_mol_K), ("H°−H°(298.15), kJ/mol", table.h_minus_h298_kJ_mol)]
+    elif p is not None:
+        T = polynomial_temperatures(p)
+        t = np.array(T)
+        named = [("Cp°", (R * p.cp_R(t)).tolist()), ("S°", (R * p.s_R(t)).tolist())]
+        named.append(("H°, kJ/mol", (R * p.h_R(t) / 1000.0).tolist()))
+    named = [(name, values) for name, values in named if values]
+    cells = ([f"{v:z.3f}".replace("-", "−") for v in values] for _, values in named)
+    return ("T / K", *(name for name, _ in named)), tuple(zip((f"{x:g}" for x in T), *cells, strict=True))
+
+
+def polynomial_temperatures(p: Nasa7) -> tuple[float, ...]:
+    """Round temperatures along the range of a polynomial, 298.15 K, both ends and the joint among them."""
+    ends = (p.t_low_K, p.t_common_K, p.t_high_K)
+    return tuple(sorted({T for T in TELLING_K if p.t_low_K <= T <= p.t_high_K} | set(ends)))
 
 
 def residual_strips(species: Species) -> Figure | None:
@@ -189,11 +207,18 @@ def residual_strips(species: Species) -> Figure | None:
         "common temperature.",
         source=species.source,
         drawing=Drawing(WIDTH, 304.0, tuple(marks)),
-        columns=("T / K", "ΔCp°/R", "ΔH°/RT", "ΔS°/R"),
-        rows=tuple(
-            (f"{T:g}", *(f"{v:+.2e}".replace("-", "−") for v in row))
-            for T, *row in zip(r.T_K, r.dcp_R, r.dh_RT, r.ds_R, strict=True)
-        ),
+        columns=("T / K", "1000 ΔCp°/R", "1000 ΔH°/RT", "1000 ΔS°/R"),
+        rows=_residual_rows(r),
+    )
+
+
+def _residual_rows(r: Residuals) -> tuple[tuple[str, ...], ...]:
+    """Every fourth temperature, and those of the largest residuals."""
+    largest = {_where(r, values) for values in (r.dcp_R, r.dh_RT, r.ds_R)}
+    return tuple(
+        (f"{T:g}", *(f"{1000.0 * v:z.2f}".replace("-", "−") for v in row))
+        for i, (T, *row) in enumerate(zip(r.T_K, r.dcp_R, r.dh_RT, r.ds_R, strict=True))
+        if i % 4 == 0 or T in largest or i == len(r.T_K) - 1
     )
 
 
@@ -227,7 +252,7 @@ def _strip(
         marks.append(segments([((left, e), (right, e)) for e in edge], "bound"))
         header += f" · best possible {bound:.3g} (band)"
     marks.append(segments([((left, y(0.0)), (right, y(0.0)))], "zero"))
-    marks.append(line([(x(t), y(v)) for t, v in zip(T, values, strict=True)], "polynomial"))
+    marks.append(line(curve(x, y, T, values), "polynomial"))
     marks.append(Words((left, top - 7.0), name, "name"))
     marks.append(Words((right, top - 7.0), header, "quiet", "end"))
     return marks

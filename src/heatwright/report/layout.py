@@ -32,8 +32,21 @@ class Scale:
         >>> Scale(100.0, 10000.0, 0.0, 300.0, log=True)(1000.0)
         150.0
         """
-        low, high, v = (log10(x) if self.log else x for x in (self.low, self.high, value))
-        return self.start + (self.end - self.start) * (v - low) / (high - low)
+        return self.places((value,))[0]
+
+    def places(self, values: Sequence[float]) -> list[float]:
+        """The places of several values."""
+        start, low, high = self.start, self.low, self.high
+        if self.log:
+            low, per_unit = log10(low), (self.end - start) / (log10(high) - log10(low))
+            return [start + per_unit * (log10(v) - low) for v in values]
+        per_unit = (self.end - start) / (high - low)
+        return [start + per_unit * (v - low) for v in values]
+
+
+def curve(x: Scale, y: Scale, across: Sequence[float], up: Sequence[float]) -> list[Point]:
+    """The points of a curve."""
+    return list(zip(x.places(across), y.places(up), strict=True))
 
 
 def nice_ticks(low: float, high: float, about: int = 5) -> list[float]:
@@ -72,6 +85,20 @@ def temperature_ticks(low: float, high: float) -> list[float]:
     powers = range(floor(log10(low)), ceil(log10(high)) + 1)
     ticks = [m * 10.0**p for p in powers for m in (1.0, 2.0, 5.0) if low * 0.999 <= m * 10.0**p <= high * 1.001]
     return ticks if len(ticks) >= 3 else nice_ticks(low, high, 4)
+
+
+TELLING_K = (200.0, 298.15, 400.0, 500.0, 800.0, 1000.0, 1500.0, 2000.0, 3000.0, 4000.0, 5000.0, 6000.0)
+"""Temperatures that a short table shows, K."""
+
+
+def telling_rows(T: Sequence[float]) -> list[int]:
+    """Which rows of a table to show where all would be many: those at :data:`TELLING_K`, and both ends.
+
+    >>> telling_rows([200.0, 250.0, 298.15, 300.0, 400.0, 450.0])
+    [0, 2, 4, 5]
+    """
+    last = len(T) - 1
+    return [i for i, t in enumerate(T) if i in (0, last) or any(abs(t - usual) < 0.005 for usual in TELLING_K)]
 
 
 def padded(low: float, high: float, share: float = 0.08, least: float = 1e-9) -> tuple[float, float]:

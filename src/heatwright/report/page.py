@@ -18,7 +18,7 @@ from heatwright.report.drawing import Ball, Drawing, Figure
 from heatwright.report.figures import figures_of
 from heatwright.report.palette import figure_css, variables
 from heatwright.report.species import Route, Species
-from heatwright.report.svg import inline_svg, marks_svg
+from heatwright.report.svg import inline_svg
 from heatwright.resources import templates
 from heatwright.writing.comment import CAUTION
 
@@ -50,7 +50,7 @@ def page_html(page: Page) -> str:
         _shown(i, s, anchor, order)
         for i, (s, anchor, order) in enumerate(zip(page.species, anchors, orders, strict=True))
     ]
-    return _template().render(
+    text: str = _template().render(
         policy=POLICY,
         light=Markup(variables(False)),
         dark=Markup(variables(True)),
@@ -65,6 +65,7 @@ def page_html(page: Page) -> str:
         caution=" ".join(CAUTION),
         version=__version__,
     )
+    return text
 
 
 @cache
@@ -116,6 +117,7 @@ def formula_markup(formula: str) -> Markup:
     return Markup(body + (f"<sup>{escape(charge)}</sup>" if charge else ""))
 
 
+_SPECIAL: Final = re.compile("[&<>\"']")
 _ORDERS: Final = (
     ("g", "as given"),
     ("n", "name"),
@@ -160,6 +162,7 @@ def _orders(species: Sequence[Species]) -> list[str]:
 def _shown(i: int, s: Species, anchor: str, order: str) -> dict[str, Any]:
     """What the template needs of one species."""
     drawn = figures_of(s)
+    pictured = bool(drawn) and drawn[0].key == "structure"
     return {
         "anchor": anchor,
         "order": Markup(order),
@@ -176,10 +179,9 @@ def _shown(i: int, s: Species, anchor: str, order: str) -> dict[str, Any]:
         "h0": s.routes[0].dHf0_kJ_mol if s.routes else None,
         "warnings": sum(f.severity != "note" for f in s.findings),
         "notes": sum(f.severity == "note" for f in s.findings),
-        "picture": f"g{i}" if s.geometry else "",
-        "picture_box": _ball_box(drawn[0].drawing) if s.geometry else "",
-        "figures": [_figure(f, f"f{i}{f.key}") for f in drawn],
-        "functions": _functions(s),
+        "picture": f"g{i}" if pictured else "",
+        "picture_box": _ball_box(drawn[0].drawing) if pictured else "",
+        "figures": [_figure(f, i) for f in drawn],
         "polynomial": s.polynomial,
         "coefficients": _coefficients(s.polynomial),
         "routes": [_route(r) for r in s.routes],
@@ -207,17 +209,13 @@ def _state(s: Species) -> str:
     return ", ".join(words)
 
 
-def _figure(f: Figure, prefix: str) -> dict[str, Any]:
-    svg = inline_svg(f, prefix)
-    if f.key == "structure":  # the index shows the same picture small
-        drawn = marks_svg(f.drawing.marks)
-        svg = svg.replace(drawn, f'<g id="g{prefix[1:].removesuffix("structure")}">{drawn}</g>')
+def _figure(f: Figure, i: int) -> dict[str, Any]:
     return {
         "key": f.key,
         "title": f.title,
         "heading": f.heading,
         "caption": f.caption,
-        "svg": Markup(svg),
+        "svg": Markup(inline_svg(f, f"f{i}{f.key}", f"g{i}" if f.key == "structure" else "")),
         "columns": f.columns,
         "body": _body(f.rows),
     }
@@ -225,16 +223,12 @@ def _figure(f: Figure, prefix: str) -> dict[str, Any]:
 
 def _body(rows: Iterable[Sequence[str]]) -> Markup:
     """Rows of a table; HTML lets row and cell ends be left out, which halves the page."""
-    return Markup("\n".join("<tr><td>" + "<td>".join(str(escape(c)) for c in row) for row in rows))
+    return Markup("\n".join("<tr><td>" + "<td>".join(_escaped(row)) for row in rows))
 
 
-def _functions(s: Species) -> Markup | None:
-    """The table of the functions, or of the polynomial's where there is no table."""
-    t = s.table
-    if t is None or not t.s_J_mol_K or not t.h_minus_h298_kJ_mol:
-        return None
-    columns = zip(t.T_K, t.cp_J_mol_K, t.h_minus_h298_kJ_mol, t.s_J_mol_K, strict=True)
-    return _body((f"{T:g}", *(shown_number(v, 3) for v in (cp, h, S, S - 1000.0 * h / T))) for T, cp, h, S in columns)
+def _escaped(row: Sequence[str]) -> Sequence[str]:
+    """Texts for HTML; most are numbers and stay as they are."""
+    return [str(escape(c)) for c in row] if _SPECIAL.search("".join(row)) else row
 
 
 def _route(r: Route) -> dict[str, Any]:
@@ -253,4 +247,4 @@ def _coefficients(p: Nasa7 | None) -> Markup | None:
     if p is None:
         return None
     pairs = enumerate(zip(p.low, p.high, strict=True), start=1)
-    return _body((f"a{i}", *(f"{a:.8E}".replace("-", "−") for a in pair)) for i, pair in pairs)
+    return _body((f"a{i}", *(f"{a:.8E}" for a in pair)) for i, pair in pairs)

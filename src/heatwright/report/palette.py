@@ -68,10 +68,10 @@ LOOKS: Final[dict[str, Look]] = {
     "bonds": Look(stroke="muted", width=2.2),
     "half": Look(stroke="muted", width=2.0, dash="3 2.4"),
     "turn": Look(stroke="ember", width=4.6),
-    "tick": Look(fill="muted", size=11.0),
+    "tick": Look(fill="muted", size=11.5),
     "name": Look(fill="ink", size=12.0),
-    "label": Look(fill="ink", size=11.5),
-    "quiet": Look(fill="muted", size=11.0),
+    "label": Look(fill="ink", size=12.0),
+    "quiet": Look(fill="muted", size=11.5),
     "of-polynomial": Look(fill="ember", size=12.0, bold=True),
     "of-table": Look(fill="steel", size=12.0, bold=True),
     "letter": Look(fill="letter", size=13.0, bold=True),
@@ -79,7 +79,7 @@ LOOKS: Final[dict[str, Look]] = {
     **{f"line{i}": Look(stroke=c, width=1.8, dash=d) for i, (c, d) in enumerate(zip(SERIES, DASHES, strict=True))},
     **{f"area{i}": Look(fill=c, opacity=0.2) for i, c in enumerate(SERIES)},
     **{f"edge{i}": Look(stroke=c, width=1.2, dash=d) for i, (c, d) in enumerate(zip(SERIES, DASHES, strict=True))},
-    **{f"of{i}": Look(fill=c, size=11.5) for i, c in enumerate(SERIES)},
+    **{f"of{i}": Look(fill=c, size=12.0) for i, c in enumerate(SERIES)},
     **{f"ball-{e}": Look(stroke="letter", width=1.0, fill=e) for e in ("H", "C", "N", "O", "F", "S", "P", "other")},
 }
 """What each role of a mark looks like."""

@@ -11,7 +11,7 @@ from heatwright.constants import CM1_KJ_MOL, SECOND_RADIATION_CM_K, STANDARD_TEM
 from heatwright.partition.potential import Potential
 from heatwright.report.curves import LEFT, WIDTH
 from heatwright.report.drawing import Dots, Drawing, Figure, Mark, Point, Words, line, segments
-from heatwright.report.layout import Frame, Room, Scale, frame, nice_ticks
+from heatwright.report.layout import Frame, Room, Scale, curve, frame, nice_ticks
 from heatwright.report.species import Species, Torsion
 
 _RIGHT: Final = 404.0
@@ -30,10 +30,10 @@ def torsional_potential(species: Species, index: int) -> Figure:
     top = 1.14 * max(t.barrier_cm1, 1.15 * kT, *t.scan_cm1, 1.0)
     x, y = Scale(-180.0, 180.0, LEFT + 4.0, _RIGHT), Scale(0.0, top, 238.0, 26.0)
     plot = frame(x, y, list(range(-180, 181, 60)), nice_ticks(0.0, top), x_name="dihedral angle / °", y_name="V / cm⁻¹")
-    curve = [(x(a), y(v)) for a, v in zip(phi.tolist(), V.tolist(), strict=True)]
+    well = curve(x, y, phi.tolist(), V.tolist())
     ground = t.ground_cm1
     levels = [ground + e for e in t.levels_cm1 if ground + e < top][:_MOST_LEVELS]
-    marks = [*plot.marks, *_marks(t, plot, curve, levels, kT, lowest, V)]
+    marks = [*plot.marks, *_marks(t, plot, well, levels, kT, lowest, V)]
     name = "-".join(str(a) for a in t.atoms)
     return Figure(
         key=f"torsion-{index + 1}",

@@ -7,7 +7,7 @@ from typing import Final
 
 from heatwright.report.curves import LEFT, WIDTH, temperature_scale
 from heatwright.report.drawing import Drawing, Figure, Mark, Point, Words, area, line
-from heatwright.report.layout import Scale, frame, nice_ticks, padded, spread, temperature_ticks
+from heatwright.report.layout import Scale, curve, frame, nice_ticks, padded, spread, telling_rows, temperature_ticks
 from heatwright.report.palette import series
 from heatwright.report.species import Species
 
@@ -37,8 +37,7 @@ def stacked_shares(species: Species, quantity: str) -> Figure | None:
     marks: list[Mark] = list(plot.marks)
     wanted = []
     for i, (lower, upper) in enumerate(layers):
-        top = [(x(T), y(v)) for T, v in zip(table.T_K, upper, strict=True)]
-        foot = [(x(T), y(v)) for T, v in zip(table.T_K, lower, strict=True)]
+        top, foot = curve(x, y, table.T_K, upper), curve(x, y, table.T_K, lower)
         marks += [area([*top, *reversed(foot)], f"area{series(i)}"), line(top, f"edge{series(i)}")]
         wanted.append((top[-1][1] + foot[-1][1]) / 2.0)
     marks += named_at_right([n for n, _ in shown], wanted, plot.box[1:4:2])
@@ -55,14 +54,14 @@ def stacked_shares(species: Species, quantity: str) -> Figure | None:
         drawing=Drawing(WIDTH, 274.0, tuple(marks)),
         columns=("T / K", *(n for n, _ in shares), "sum"),
         rows=tuple(
-            (f"{T:g}", *(_decimals(v) for v in column), _decimals(t))
-            for T, t, *column in zip(table.T_K, total, *(values for _, values in shares), strict=True)
+            (f"{table.T_K[i]:g}", *(_decimals(values[i]) for _, values in shares), _decimals(total[i]))
+            for i in telling_rows(table.T_K)
         ),
     )
 
 
 def _decimals(value: float) -> str:
-    return f"{value + 0.0:z.3f}".replace("-", "−")
+    return f"{value:z.2f}".replace("-", "−")
 
 
 def _layers(columns: Sequence[Sequence[float]]) -> list[tuple[list[float], list[float]]]:
@@ -113,7 +112,7 @@ def populations(species: Species) -> Figure | None:
     marks: list[Mark] = list(plot.marks)
     names = [f"{i}, {c.relative_energy_kJ_mol:.2f} kJ/mol" for i, c in enumerate(conformers, start=1)]
     for i, c in enumerate(conformers):
-        marks.append(line([(x(T), y(p)) for T, p in zip(table.T_K, c.populations, strict=True)], f"line{series(i)}"))
+        marks.append(line(curve(x, y, table.T_K, c.populations), f"line{series(i)}"))
     marks += named_at_right(names, [y(c.populations[-1]) for c in conformers], plot.box[1:4:2])
     each = "; ".join(
         f"{i}: {c.file}, {c.relative_energy_kJ_mol:.2f} kJ/mol above the lowest"
@@ -132,8 +131,7 @@ def populations(species: Species) -> Figure | None:
         drawing=Drawing(WIDTH, 274.0, tuple(marks)),
         columns=("T / K", *(str(i) for i in range(1, len(conformers) + 1))),
         rows=tuple(
-            (f"{T:g}", *(f"{p:.5f}" for p in row))
-            for T, *row in zip(table.T_K, *(c.populations for c in conformers), strict=True)
+            (f"{table.T_K[i]:g}", *(f"{c.populations[i]:.4f}" for c in conformers)) for i in telling_rows(table.T_K)
         ),
     )
 

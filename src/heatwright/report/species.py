@@ -273,17 +273,20 @@ def _geometry(v: Values) -> Geometry | None:
     if not v.has("geometry"):
         return None
     g = v.inside("geometry")
-    elements, n = g.texts("elements"), len(g.texts("elements"))
-    rows = [g.row("coordinates_A", i, 3) for i in range(g.length("coordinates_A"))]
-    if not n or len(rows) != n:
-        g.wrong(f"there are {n} elements and {len(rows)} coordinates", "one of each for every atom")
-    bonds = []
-    for i in range(g.length("bonds")):
-        a, b, order = g.row("bonds", i, 3, last_may_be_none=True)
-        if a is None or b is None or not (1 <= a <= n and 1 <= b <= n) or a == b:
-            g.wrong(f"bonds[{i}] does not join two of the {n} atoms", "two atoms, counted from 1, and an order")
-        bonds.append((int(a) - 1, int(b) - 1, order))
-    return Geometry(elements, tuple((x or 0.0, y or 0.0, z or 0.0) for x, y, z in rows), tuple(bonds))
+    elements, atoms = g.texts("elements"), g.rows("coordinates_A", 3)
+    if not elements or len(atoms) != len(elements):
+        g.wrong(f"there are {len(elements)} elements and {len(atoms)} coordinates", "one of each for every atom")
+    bonds = tuple(_bond(g, i, row, len(elements)) for i, row in enumerate(g.raw_rows("bonds", 3)))
+    return Geometry(elements, tuple((x, y, z) for x, y, z in atoms), bonds)
+
+
+def _bond(g: Values, i: int, row: list[Any], n: int) -> tuple[int, int, float | None]:
+    first, second, order = row
+    inside = all(isinstance(a, int) and 1 <= a <= n for a in (first, second))
+    known = order is None or (isinstance(order, int | float) and not isinstance(order, bool) and 0.0 < order <= 6.0)
+    if not inside or first == second or not known:
+        g.wrong(f"bonds[{i}] is {row}", f"two of the {n} atoms, counted from 1, and an order or null")
+    return first - 1, second - 1, None if order is None else float(order)
 
 
 def _torsion(t: Values) -> Torsion:
@@ -345,7 +348,7 @@ def _facts(v: Values) -> tuple[tuple[str, str], ...]:
     facts.append(("symmetry", ", ".join(part for part in symmetry if part)))
     constants = v.numbers("rotational_constants_cm-1", ())
     facts.append(("rotational constants", f"{', '.join(f'{b:.5g}' for b in constants)} cm⁻¹" if constants else ""))
-    levels = [v.row("electronic_levels_cm-1", i, 2) for i in range(v.length("electronic_levels_cm-1"))]
+    levels = v.rows("electronic_levels_cm-1", 2)
     facts.append(("electronic levels", ", ".join(f"{nu:g} cm⁻¹ × {g:g}" for nu, g in levels)))
     for key, words, form in (
         ("zpe_kJ_mol", "zero-point energy", "{:.2f} kJ/mol"),

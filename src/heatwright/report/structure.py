@@ -20,6 +20,8 @@ _MOST_PER_A: Final = 64.0
 _VIEWS: Final = 240
 _NEAR_A: Final = 0.75
 """Two atoms are meant to be at least so far apart in the picture."""
+MOST_ATOMS: Final = 200
+"""More atoms than these are no picture any more, and no structure of a gas."""
 FORESHORTENED: Final = 0.35
 """Weight of the mean square depth of bonds against that of crowded atoms."""
 _RADIUS_A: Final = {"H": 0.25, "D": 0.25, "T": 0.25}
@@ -28,7 +30,7 @@ _RADIUS_A: Final = {"H": 0.25, "D": 0.25, "T": 0.25}
 def structure(species: Species) -> Figure | None:
     """The geometry projected; None when there is none."""
     g = species.geometry
-    if g is None:
+    if g is None or len(g.elements) > MOST_ATOMS:
         return None
     seen = _turned(g)
     turning = {frozenset((t.atoms[1] - 1, t.atoms[2] - 1)) for t in species.torsions}
@@ -71,7 +73,7 @@ def _directions() -> FloatArray:
     z = 1.0 - (i + 0.5) / _VIEWS
     angle = np.pi * (1.0 + 5.0**0.5) * i
     r = np.sqrt(1.0 - z * z)
-    points: FloatArray = np.stack([r * np.cos(angle), r * np.sin(angle), z], axis=1)
+    points: FloatArray = np.array([r * np.cos(angle), r * np.sin(angle), z]).T
     return points
 
 
@@ -81,7 +83,7 @@ def _turned(g: Geometry) -> FloatArray:
     Best is where atoms come least near to each other in the picture and bonds are least foreshortened.  The choice is
     made among fixed directions and rounded, so that a last digit of the coordinates does not turn the picture.
     """
-    x = np.array(g.coordinates_A)
+    x: FloatArray = np.array(g.coordinates_A)
     x = x - x.mean(axis=0)
     if len(x) == 1:
         return x

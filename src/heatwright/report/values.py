@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from math import isfinite
+from math import isfinite, nan
 from typing import Any, NoReturn
 
 from heatwright.findings import Refused, refuse
@@ -60,9 +60,13 @@ class Values:
         return self._number(key, self._values.get(key))
 
     def _number(self, key: str, value: Any) -> float:
-        if isinstance(value, bool) or not isinstance(value, int | float) or not isfinite(value):
+        try:
+            number = float(value) if isinstance(value, int | float) and not isinstance(value, bool) else nan
+        except OverflowError:
+            number = nan
+        if not isfinite(number):
             self.wrong(f"{key} is {_kind(value)}", "a finite number")
-        return float(value)
+        return number
 
     def number_or_none(self, key: str) -> float | None:
         """A finite number, or None where there is none."""
@@ -95,7 +99,11 @@ class Values:
             return default
         if not self.has(key):
             self.wrong(f"{key} is missing", "a list of numbers")
-        values = tuple(self._number(f"{key}[{i}]", x) for i, x in enumerate(self._list(key)))
+        found = self._list(key)
+        if all(type(x) is float for x in found) and isfinite(sum(found)):
+            values = tuple(found)
+        else:
+            values = tuple(self._number(f"{key}[{i}]", x) for i, x in enumerate(found))
         if length is not None and len(values) != length:
             self.wrong(f"{key} has {len(values)} numbers", str(length))
         return values
@@ -107,13 +115,17 @@ class Values:
             self.wrong(f"{key} is not a list of texts")
         return tuple(values)
 
-    def row(self, key: str, i: int, length: int, *, last_may_be_none: bool = False) -> list[float | None]:
-        """The *i*-th of a list of lists of numbers."""
-        item = self._list(key)[i]
-        if not isinstance(item, list | tuple) or len(item) != length:
-            self.wrong(f"{key}[{i}] is not a list of {length} numbers")
-        free = length - 1 if last_may_be_none else length
-        return [None if k >= free and x is None else self._number(f"{key}[{i}]", x) for k, x in enumerate(item)]
+    def rows(self, key: str, length: int) -> list[list[float]]:
+        """A list of lists of numbers, each of this length; empty where there is none."""
+        return [[self._number(f"{key}[{i}]", x) for x in item] for i, item in enumerate(self.raw_rows(key, length))]
+
+    def raw_rows(self, key: str, length: int) -> list[list[Any]]:
+        """The same with whatever the lists hold."""
+        items = self._list(key)
+        for i, item in enumerate(items):
+            if not isinstance(item, list | tuple) or len(item) != length:
+                self.wrong(f"{key}[{i}] is not a list of {length}")
+        return [list(item) for item in items]
 
     def inside(self, key: str) -> Values:
         """The object under a key; an empty one where there is none."""
@@ -125,6 +137,12 @@ class Values:
         if not self.has(key):
             self.wrong(f"{key} is missing", "an object")
         return self.inside(key)
+
+    def items(self, key: str) -> list[Any]:
+        """The items of a list as they are; the list must be there."""
+        if not self.has(key):
+            self.wrong(f"{key} is missing", "a list")
+        return self._list(key)
 
     def tables(self, key: str) -> list[Values]:
         """The objects of a list; none where there is no list."""
