@@ -187,7 +187,7 @@ def residual_strips(species: Species) -> Figure | None:
         return None
     x = temperature_scale(p.t_low_K, p.t_high_K)
     ticks = temperature_ticks(p.t_low_K, p.t_high_K)
-    strips = (("ΔCp°/R", r.dcp_R, r.bound_dcp_R), ("ΔH°/RT", r.dh_RT, None), ("ΔS°/R", r.ds_R, None))
+    strips = (("1000 ΔCp°/R", r.dcp_R, r.bound_dcp_R), ("1000 ΔH°/RT", r.dh_RT, None), ("1000 ΔS°/R", r.ds_R, None))
     marks: list[Mark] = []
     for i, (name, values, bound) in enumerate(strips):
         bottom = 84.0 + 92.0 * i
@@ -237,9 +237,9 @@ def _strip(
     *,
     last: bool,
 ) -> list[Mark]:
-    """One strip: its name and largest value above it, the band, the zero line and the curve."""
+    """One strip, in thousandths: its name and largest value above it, the band, the zero line and the curve."""
     worst = max(map(abs, values))
-    reach = 1.18 * max(worst, bound or 0.0, 1e-9)
+    reach = 1180.0 * max(worst, bound or 0.0, 1e-5)
     y = Scale(-reach, reach, *ends)
     step = round_below(0.9 * reach)
     plot = frame(x, y, ticks, (-step, 0.0, step), x_name="T / K" if last else "")
@@ -247,12 +247,12 @@ def _strip(
     left, right, top = x.start, x.end, ends[1]
     header = f"largest {worst:.3g}"
     if bound is not None:
-        edge = [y(-bound), y(bound)]
+        edge = [y(-1000.0 * bound), y(1000.0 * bound)]
         marks.append(area([(left, edge[0]), (right, edge[0]), (right, edge[1]), (left, edge[1])], "band"))
         marks.append(segments([((left, e), (right, e)) for e in edge], "bound"))
         header += f" · best possible {bound:.3g} (band)"
     marks.append(segments([((left, y(0.0)), (right, y(0.0)))], "zero"))
-    marks.append(line(curve(x, y, T, values), "polynomial"))
+    marks.append(line(curve(x, y, T, [1000.0 * v for v in values]), "polynomial"))
     marks.append(Words((left, top - 7.0), name, "name"))
     marks.append(Words((right, top - 7.0), header, "quiet", "end"))
     return marks
