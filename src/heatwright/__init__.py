@@ -38,6 +38,8 @@ if TYPE_CHECKING:
     from heatwright.polynomial.fit import fit_nasa7
     from heatwright.polynomial.nasa7 import Nasa7
     from heatwright.polynomial.quality import FitQuality, fit_quality
+    from heatwright.project.manifest import load_manifest
+    from heatwright.project.manifest_types import Manifest, SpeciesRequest
     from heatwright.reading.entries import parse_entries, read_entries, replace_entries
     from heatwright.reading.entry_file import EntryFile, ThermoEntry
     from heatwright.reading.outputs import read_output
@@ -67,6 +69,7 @@ _HOME = {
     "Level": "molecule",
     "LnQ": "partition.contribution",
     "LowModes": "partition.lowmodes",
+    "Manifest": "project.manifest_types",
     "ModelOptions": "partition.choices",
     "Molecule": "molecule",
     "Nasa7": "polynomial.nasa7",
@@ -75,6 +78,7 @@ _HOME = {
     "Refused": "findings",
     "RouteRequest": "formation.routes",
     "ScaleChoice": "scales",
+    "SpeciesRequest": "project.manifest_types",
     "Symmetry": "structure.symmetry",
     "ThermoEntry": "reading.entry_file",
     "ThermoModel": "partition.model",
@@ -93,6 +97,7 @@ _HOME = {
     "formation_by_atomization": "formation.atomization",
     "formation_given": "formation.formation",
     "formation_of": "formation.routes",
+    "load_manifest": "project.manifest",
     "make_entry": "entry",
     "mend_entries": "audit.mend",
     "mixture_model": "partition.mixing",
@@ -130,6 +135,7 @@ __all__ = [
     "Level",
     "LnQ",
     "LowModes",
+    "Manifest",
     "ModelOptions",
     "Molecule",
     "Nasa7",
@@ -138,6 +144,7 @@ __all__ = [
     "Refused",
     "RouteRequest",
     "ScaleChoice",
+    "SpeciesRequest",
     "Symmetry",
     "ThermoEntry",
     "ThermoModel",
@@ -157,6 +164,7 @@ __all__ = [
     "formation_by_atomization",
     "formation_given",
     "formation_of",
+    "load_manifest",
     "make_entry",
     "mend_entries",
     "mixture_model",

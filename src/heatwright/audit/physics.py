@@ -28,8 +28,8 @@ QUANTUM_ROTATION_K: Final = 200.0
 """Below it light molecules have less than the classical Cp of rotation; H2 up to 400 K."""
 HOT_K: Final = 2000.0
 NEARLY_CLASSICAL: Final = 0.6
-"""A range that reaches 2000 K has at least this much of the classical limit at its end; asked only where a factor between
-units would explain what is impossible otherwise."""
+"""A range that reaches 2000 K has at least this much of the classical limit at its end; asked only where a factor
+between units would explain what is impossible otherwise."""
 LEAST_CP298: Final = 0.2
 """Cp at 298.15 K as a fraction of the classical limit."""
 EARLIEST_USUAL_K: Final = 300.0

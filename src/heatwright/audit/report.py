@@ -77,7 +77,10 @@ def published_table(comparisons: list[Comparison]) -> Iterator[str]:
         return
     width = max(7, *(len(c.name) for c in comparisons))
     yield ""
-    yield f"{'species':{width}}  {'':11}{'entry':>11}{'published':>11}{'difference':>12}  source"
+    yield (
+        f"{'species':{width}}  {'':11}{'entry':>11}{'published':>11}{'difference':>12}  "
+        "unit, source (*: beyond the usual accuracy)"
+    )
     for c in comparisons:
         mark = "" if c.agrees else "  *"
         yield (

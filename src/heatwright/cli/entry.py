@@ -17,7 +17,6 @@ from heatwright.cli.formation_options import (
     written_reactions,
 )
 from heatwright.cli.options import (
-    Reading,
     fit_options,
     model_options,
     outputs_argument,
@@ -27,7 +26,6 @@ from heatwright.cli.options import (
     taken_model_options,
     taken_reading,
     units_option,
-    usable_species,
     words_options,
 )
 from heatwright.cli.reporter import Reporter
@@ -42,6 +40,7 @@ if TYPE_CHECKING:
     from heatwright.formation.reference_set import ReferenceSet
     from heatwright.formation.routes import Route
     from heatwright.partition.choices import ModelOptions
+    from heatwright.species import Reading
 
 
 @dataclass(frozen=True, slots=True)
@@ -229,6 +228,7 @@ def made_entry(job: Job, request: Request) -> Entry:
 
     from heatwright.entry import make_entry
     from heatwright.formation.routes import RouteRequest, formation_of
+    from heatwright.species import usable_species
     from heatwright.writing.names import default_name
 
     model = usable_species(

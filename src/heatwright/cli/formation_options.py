@@ -173,22 +173,20 @@ def own_references(options: dict[str, Any]) -> tuple[SpeciesReference, ...]:
 
 def energy_choices(options: dict[str, Any], own: tuple[SpeciesReference, ...]) -> EnergyChoices:
     """What the options decide about energies and reference values."""
-    from heatwright.formation.choices import EnergyChoices
-    from heatwright.formation.corrections import read_corrections
-    from heatwright.formation.references import atom_references
-    from heatwright.formation.species_references import own_atom_references
-    from heatwright.formation.zero_kelvin import read_zero_kelvin_energies
+    from heatwright.project.conversion import energy_choices as of_choice
+    from heatwright.project.manifest_types import FormationChoice, ProjectPath, ReferenceFolders
 
-    corrections, stated = options["corrections"], options["zero_kelvin"]
-    return EnergyChoices(
+    corrections, stated = (
+        None if options[name] is None else ProjectPath(options[name], options[name])
+        for name in ("corrections", "zero_kelvin")
+    )
+    choice = FormationChoice(
         trust_levels=options["trust_levels"],
         spin_orbit=options["spin_orbit"],
-        corrections=() if corrections is None else tuple(read_corrections(corrections)),
-        zero_kelvin=None if stated is None else read_zero_kelvin_energies(stated),
         electron=options["electron"],
-        atom_values={**atom_references(), **own_atom_references(own)} if own else None,
-        accept=tuple(options["accept"]),
+        folders=ReferenceFolders(corrections=corrections, zero_kelvin=stated),
     )
+    return of_choice(choice, own, tuple(options["accept"]))
 
 
 def read_references(

@@ -11,6 +11,7 @@ import click
 
 from heatwright import __version__
 from heatwright.cli.audit import audit
+from heatwright.cli.build import build
 from heatwright.cli.crosscheck import crosscheck
 from heatwright.cli.entry import entry
 from heatwright.cli.explain import explain
@@ -21,6 +22,7 @@ from heatwright.cli.report import report
 from heatwright.cli.rotors import rotors
 from heatwright.cli.samples import samples
 from heatwright.cli.scales import scales
+from heatwright.cli.start import start
 from heatwright.cli.survey import survey
 from heatwright.cli.table import table
 from heatwright.errors import HeatwrightError
@@ -30,7 +32,7 @@ INTERRUPTED = 130
 
 SECTIONS = {
     "One molecule": ("survey", "table", "entry", "rotors"),
-    "A mechanism": ("crosscheck", "report"),
+    "A mechanism": ("start", "build", "crosscheck", "report"),
     "Existing entries": ("audit", "mend"),
     "Looking things up": ("scales", "references", "reactions", "explain", "samples"),
 }
@@ -71,13 +73,15 @@ for _command in (
     table,
     entry,
     rotors,
+    start,
+    build,
+    crosscheck,
     report,
+    audit,
+    mend,
     scales,
     references,
     reactions,
-    crosscheck,
-    audit,
-    mend,
     explain,
     samples,
 ):

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any, Literal, TypeVar
 
 import click
@@ -12,11 +11,9 @@ from heatwright.errors import UsageError
 
 if TYPE_CHECKING:
     from heatwright.entry import FitOptions
-    from heatwright.molecule import Molecule
     from heatwright.partition.choices import ModelOptions
-    from heatwright.partition.lowmodes import LowModes
-    from heatwright.partition.model import ThermoModel
-    from heatwright.structure.isotopes import Isotope
+    from heatwright.project.manifest_types import ReadingChoice
+    from heatwright.species import Reading
 
 F = TypeVar("F", bound=Callable[..., Any])
 
@@ -216,54 +213,41 @@ def target_options(command: F) -> F:
     return command
 
 
-@dataclass(frozen=True, slots=True)
-class Reading:
-    """How an output is to be read: which job, values that replace its own, isotopes, and what is accepted.
-
-    torsions : whether force constants are wanted, for torsions to be projected out of them.
-    """
-
-    job: int | None
-    charge: int | None
-    multiplicity: int | None
-    isotopes: tuple[Isotope, ...] = ()
-    accept: tuple[str, ...] = ()
-    accept_imaginary_cm1: float = 0.0
-    energy: str | None = None
-    torsions: bool = False
-
-
 def taken_reading(options: dict[str, Any]) -> Reading:
     """The reading options out of a command's keyword arguments."""
-    from heatwright.structure.isotopes import parse_isotope
+    from heatwright.project.conversion import reading_options
 
-    isotopes = tuple(parse_isotope(text) for text in options.pop("isotopes"))
+    return reading_options(
+        _reading_choice(options, isotopes=options.pop("isotopes")), torsions=bool(options["torsions"])
+    )
+
+
+def _reading_choice(options: dict[str, Any], isotopes: tuple[str, ...] = ()) -> ReadingChoice:
+    from heatwright.project.manifest_types import ReadingChoice
+
     accept = (*options.pop("accept"), *(["gradient"] if options.pop("accept_gradient") else []))
-    imaginary = options.pop("accept_imaginary")
-    return Reading(
-        options.pop("job"),
-        options.pop("charge"),
-        options.pop("multiplicity"),
-        isotopes,
+    job, charge, multiplicity, imaginary = (
+        options.pop(name) for name in ("job", "charge", "multiplicity", "accept_imaginary")
+    )
+    return ReadingChoice(
+        job=job,
+        charge=charge,
+        multiplicity=multiplicity,
+        isotopes=isotopes,
         accept=accept,
         accept_imaginary_cm1=imaginary,
-        torsions=bool(options["torsions"]),
     )
 
 
 def reading_of_target(options: dict[str, Any]) -> tuple[Reading, ModelOptions]:
     """What target_options say: how to read the output, and the choices for its zero-point energy."""
+    from dataclasses import replace
+
     from heatwright.partition.choices import ModelOptions
+    from heatwright.project.conversion import reading_options
 
     energies = taken_energies(options, 1)
-    reading = Reading(
-        options["job"],
-        options["charge"],
-        options["multiplicity"],
-        accept=(*options["accept"], *(["gradient"] if options["accept_gradient"] else [])),
-        accept_imaginary_cm1=options["accept_imaginary"],
-        energy=energies[0],
-    )
+    reading = replace(reading_options(_reading_choice(options)), energy=energies[0])
     chosen = {name: options[name] for name in ("scale", "frequency_scale", "zpe_scale", "anharmonic")}
     return reading, ModelOptions(**chosen)
 
@@ -293,115 +277,25 @@ def taken_energies(options: dict[str, Any], n_outputs: int) -> tuple[str | None,
 
 def taken_model_options(options: dict[str, Any]) -> ModelOptions:
     """The model options out of a command's keyword arguments."""
-    from heatwright.constants import ATMOSPHERE_PA, BAR_PA
-    from heatwright.partition.choices import ModelOptions
-    from heatwright.partition.electronic import parse_levels
-    from heatwright.partition.inputs import parse_uncertainties
-    from heatwright.reading.torsion_scans import read_torsion
+    from heatwright.project.conversion import model_options as of_choice
+    from heatwright.project.manifest_types import ModelChoice, TorsionChoice
 
-    electronic = options.pop("electronic")
-    uncertainty = options.pop("uncertainty")
-    scale = options.pop("scale")
-    if scale is not None and (options["frequency_scale"] is not None or options["zpe_scale"] is not None):
-        raise UsageError("--scale published chooses both factors; leave out --frequency-scale and --zpe-scale")
-    return ModelOptions(
-        low_modes=_low_modes(options),
-        rotation=options.pop("rotation"),
-        scale=scale,
-        anharmonic=options.pop("anharmonic"),
-        pressure_Pa={"1bar": BAR_PA, "1atm": ATMOSPHERE_PA}[options.pop("pressure")],
-        frequency_scale=options.pop("frequency_scale"),
-        zpe_scale=options.pop("zpe_scale"),
-        symmetry_number=options.pop("symmetry_number"),
-        optical_isomers=options.pop("optical_isomers"),
-        symmetry_tolerance_A=options.pop("symmetry_tolerance"),
-        electronic=electronic if electronic in ("table", "spin", "levels") else parse_levels(electronic),
-        masses=options.pop("masses"),
-        uncertainty=None if uncertainty is None else parse_uncertainties(uncertainty),
-        torsions=tuple(read_torsion(text) for text in options.pop("torsions")),
-        torsion_coupling=options.pop("torsion_coupling"),
-    )
+    taken = {keyword: options.pop(name) for keyword, name in _MODEL_CHOICES.items()}
+    torsions = tuple(TorsionChoice(barrier=text) for text in options.pop("torsions"))
+    return of_choice(ModelChoice(torsions=torsions, **taken))
 
 
-def _low_modes(options: dict[str, Any]) -> LowModes:
-    from heatwright.partition.lowmodes import LowModes
-
-    kind, cutoff, moment = (options.pop(name) for name in ("low_modes", "cutoff", "averaging_moment"))
-    if cutoff is not None and kind == "harmonic":
-        raise UsageError("--cutoff is for --low-modes floor or interpolate")
-    if moment is not None and kind != "interpolate":
-        raise UsageError("--averaging-moment is for --low-modes interpolate")
-    given = {"cutoff_cm1": cutoff, "averaging_moment_kg_m2": moment}
-    return LowModes(kind, **{name: value for name, value in given.items() if value is not None})
-
-
-def usable_molecule(path: str, reading: Reading) -> Molecule:
-    """The molecule of an output that a model can be built on; raises Refused with every reason why not."""
-    from heatwright.findings import Refused, refusals
-    from heatwright.reading.outputs import read_output
-    from heatwright.reading.single_point import with_energy
-    from heatwright.reading.soundness import no_thermochemistry
-    from heatwright.structure.isotopes import with_isotopes
-
-    molecule = read_output(
-        path,
-        job=reading.job,
-        charge=reading.charge,
-        multiplicity=reading.multiplicity,
-        accept=reading.accept,
-        accept_imaginary_cm1=reading.accept_imaginary_cm1,
-        with_hessian=bool(reading.isotopes) or reading.torsions,
-    )
-    if refusals(molecule.findings):
-        raise Refused(molecule.findings)
-    missing = no_thermochemistry(molecule)
-    if missing:
-        raise Refused((*missing, *molecule.findings))
-    if reading.energy is not None:
-        other = read_output(
-            reading.energy, charge=reading.charge, multiplicity=reading.multiplicity, accept=reading.accept
-        )
-        molecule = with_energy(molecule, other)
-    return with_isotopes(molecule, reading.isotopes)
-
-
-def usable_model(path: str, reading: Reading, options: ModelOptions) -> ThermoModel:
-    """The model of an output; raises Refused."""
-    from heatwright.partition.model import build_model
-
-    return build_model(usable_molecule(path, reading), options)
-
-
-def usable_species(
-    files: tuple[tuple[str, str | None], ...],
-    reading: Reading,
-    options: ModelOptions,
-    *,
-    trust_levels: bool = False,
-    for_entry: bool = False,
-) -> ThermoModel:
-    """The model of an output and of further conformers, each a file with that of its energy or None; raises Refused.
-
-    for_entry : refuse what an entry must not be made of as well.
-    """
-    from dataclasses import replace
-
-    from heatwright.findings import Refused
-    from heatwright.reading.acceptance import unfit_for_entry
-
-    models = []
-    for path, energy in files:
-        try:
-            models.append(usable_model(path, replace(reading, energy=energy), options))
-            if for_entry and (unfit := unfit_for_entry(models[-1].molecule, reading.accept)):
-                raise Refused(unfit)
-        except Refused as error:
-            raise Refused(f.at(path) for f in error.findings) from error
-    if len(models) == 1:
-        return models[0]
-    from heatwright.partition.mixing import mixture_model
-
-    return mixture_model(models, trust_levels=trust_levels)
+_SAME_WORDS = (
+    "pressure", "scale", "frequency_scale", "zpe_scale", "anharmonic", "low_modes", "rotation", "torsion_coupling",
+    "symmetry_number", "optical_isomers", "electronic", "masses", "uncertainty",
+)  # fmt: skip
+_MODEL_CHOICES = {
+    **dict(zip(_SAME_WORDS, _SAME_WORDS, strict=True)),
+    "cutoff_cm1": "cutoff",
+    "averaging_moment_kg_m2": "averaging_moment",
+    "symmetry_tolerance_A": "symmetry_tolerance",
+}
+"""The fields of a ModelChoice and the options that set them."""
 
 
 def temperatures(text: str) -> list[float]:

@@ -13,7 +13,7 @@ from heatwright.cli.formation_options import (
     read_references,
     reference_options,
 )
-from heatwright.cli.options import reading_of_target, target_options, units_option, usable_molecule, words_options
+from heatwright.cli.options import reading_of_target, target_options, units_option, words_options
 from heatwright.cli.reporter import Reporter
 from heatwright.errors import UsageError
 
@@ -67,6 +67,7 @@ def _proposals(output: str, options: dict[str, Any], reporter: Reporter) -> str:
     from heatwright.formation.reference_set import species_name
     from heatwright.formation.usable import usable_references
     from heatwright.partition.model import build_model
+    from heatwright.species import usable_molecule
     from heatwright.structure.bond_orders import bonding
     from heatwright.writing.comment import ledger_text
 

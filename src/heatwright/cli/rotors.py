@@ -7,7 +7,6 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
-from heatwright.cli.options import Reading, usable_molecule
 from heatwright.cli.reporter import Reporter
 
 if TYPE_CHECKING:
@@ -53,12 +52,13 @@ def rotors(
     from heatwright.findings import Refused
     from heatwright.partition.rotor_survey import survey_rotors
     from heatwright.reading.torsion_scans import read_torsion
+    from heatwright.species import Reading, usable_molecule
 
     if not 0.0 < frequency_scale < float("inf"):
         raise UsageError(f"--frequency-scale must be a positive number, not {frequency_scale}")
     reporter = Reporter(quiet=quiet)
     try:
-        molecule = usable_molecule(output, Reading(job, None, None, torsions=True))
+        molecule = usable_molecule(output, Reading(job, torsions=True))
         rows, findings = survey_rotors(molecule, tuple(map(read_torsion, torsions)), frequency_scale)
     except Refused as error:
         reporter.fail(output, error.findings)

@@ -15,7 +15,6 @@ from heatwright.cli.options import (
     taken_reading,
     temperatures,
     units_option,
-    usable_species,
     words_options,
 )
 from heatwright.cli.reporter import Reporter
@@ -65,6 +64,7 @@ def table(
     from heatwright.entry import TABLE_TEMPERATURES_K
     from heatwright.findings import Refused
     from heatwright.partition.table import checked_temperatures
+    from heatwright.species import usable_species
     from heatwright.writing.names import default_name
 
     reporter = Reporter(quiet=quiet, verbose=verbose)

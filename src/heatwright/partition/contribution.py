@@ -34,6 +34,9 @@ class LnQ:
     def __add__(self, other: LnQ) -> LnQ:
         return LnQ(self.ln_q + other.ln_q, self.u + other.u, self.w + other.w)
 
+    def __getitem__(self, where: slice) -> LnQ:
+        return LnQ(self.ln_q[where], self.u[where], self.w[where])
+
     @property
     def h_RT(self) -> FloatArray:
         """(H − H₀)/RT, dimensionless."""

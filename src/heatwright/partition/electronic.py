@@ -36,6 +36,8 @@ class ElectronicLevels:
 
     def ln_q(self, T: FloatArray) -> LnQ:
         """ln q with the mean and the (centred) variance of the reduced level energies as derivatives."""
+        if len(self.levels) == 1:
+            return LnQ(np.full(T.shape, np.log(float(self.levels[0][1]))), np.zeros(T.shape), np.zeros(T.shape))
         nu, g = (np.array(column, dtype=float) for column in zip(*self.levels, strict=True))
         x = SECOND_RADIATION_CM_K * nu / T[..., None]
         weight = g * np.exp(-x)

@@ -2,7 +2,10 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
+from functools import cached_property, reduce
+from operator import add
 from typing import TYPE_CHECKING, Any, Final
 
 import numpy as np
@@ -20,7 +23,7 @@ from heatwright.partition.electronic import Levels
 from heatwright.partition.isomers import isomers_with_torsions
 from heatwright.partition.motion import Motion, motion
 from heatwright.partition.radicals import electronic_choice
-from heatwright.partition.rigid import rigid_body, symmetry_choice
+from heatwright.partition.rigid import RigidBody, rigid_body, symmetry_choice
 from heatwright.partition.scaling import published_choice, scale_findings
 from heatwright.partition.table import ThermoTable, checked_temperatures, share_of
 from heatwright.partition.translation import Translation
@@ -119,7 +122,7 @@ class ThermoModel:
         """
         return self.motion.lowest_cm1 * CM1_KJ_MOL
 
-    @property
+    @cached_property
     def composition(self) -> dict[str, int]:
         """Atoms by element symbol, Hill order; deuterium as ``D``."""
         return composition(self.molecule.atomic_numbers, self.masses_u)
@@ -141,17 +144,27 @@ class ThermoModel:
         """S°/R, dimensionless."""
         return self.ln_q(T).s_R
 
+    def parts(self, T: FloatArray) -> tuple[LnQ, ...]:
+        """ln q and its derivatives of each contribution, in their order, at *T*, K; what all functions are made of."""
+        return tuple(contribution.ln_q(T) for contribution in self.contributions)
+
     def tabulate(self, T: ArrayLike) -> ThermoTable:
         """The table at the temperatures *T*, K."""
         grid = np.atleast_1d(checked_temperatures(T))
-        shares = {c.name: share_of(c, grid) for c in self.contributions}
+        parts = self.parts(np.concatenate([[STANDARD_TEMPERATURE_K], grid]))
+        return self.table_from([p[:1] for p in parts], [p[1:] for p in parts], grid)
+
+    def table_from(self, at_298: Sequence[LnQ], parts: Sequence[LnQ], grid: FloatArray) -> ThermoTable:
+        """The table from the values of the contributions (:meth:`parts`) at 298.15 K and at the grid, K."""
+        whole = share_of(reduce(add, parts), reduce(add, at_298), grid)
+        names = [contribution.name for contribution in self.contributions]
         return ThermoTable(
             T_K=grid,
-            cp_J_mol_K=np.sum([s.cp_J_mol_K for s in shares.values()], axis=0),
-            h_minus_h298_kJ_mol=np.sum([s.h_minus_h298_kJ_mol for s in shares.values()], axis=0),
-            s_J_mol_K=np.sum([s.s_J_mol_K for s in shares.values()], axis=0),
+            cp_J_mol_K=whole.cp_J_mol_K,
+            h_minus_h298_kJ_mol=whole.h_minus_h298_kJ_mol,
+            s_J_mol_K=whole.s_J_mol_K,
             h298_minus_h0_kJ_mol=self.h298_minus_h0_kJ_mol,
-            shares=shares,
+            parts=dict(zip(names, zip(at_298, parts, strict=True), strict=True)),
             populations=self.populations(grid),
             uncertainty=self._uncertainty(grid),
         )
@@ -169,7 +182,7 @@ class ThermoModel:
         alone = (Conformer(self.molecule.source.file, 0.0, self.optical_isomers, self.contributions),)
         return propagated(self.conformers or alone, stated, self.molecule.level, T)
 
-    @property
+    @cached_property
     def h298_minus_h0_kJ_mol(self) -> float:
         """H°(298.15 K) − H°(0 K), kJ/mol."""
         return float(self.h_minus_h0_R(STANDARD_TEMPERATURE_K)) * GAS_CONSTANT_J_MOL_K / 1000.0
@@ -186,9 +199,12 @@ class ThermoModel:
         return self.classical_cp_R if len(self.levels) == 1 and self.motion.is_bounded and not self.conformers else None
 
 
-def build_model(molecule: Molecule, options: ModelOptions | None = None) -> ThermoModel:
+def build_model(
+    molecule: Molecule, options: ModelOptions | None = None, *, rigid: RigidBody = rigid_body
+) -> ThermoModel:
     """The rigid-rotor harmonic-oscillator model of a molecule that has passed the soundness checks.
 
+    rigid : the function that finds rotor and symmetry, for callers that remember what it found.
     Raises ValueError when the molecule has an imaginary mode or neither modes nor a single atom: the reading room
     refuses those with a sentence before a model is asked for.
     """
@@ -197,7 +213,7 @@ def build_model(molecule: Molecule, options: ModelOptions | None = None) -> Ther
     if molecule.n_imaginary or not molecule.has_thermochemistry:
         raise ValueError(f"{molecule.source.file}: a thermodynamic model needs the real modes of a minimum, or an atom")
     masses, mass_kind = chosen_masses(molecule, options.masses)
-    moments, found = rigid_body(molecule, masses, options.symmetry_tolerance_A)
+    moments, found = rigid(molecule, masses, options.symmetry_tolerance_A)
     electronic = electronic_choice(molecule, moments, options.electronic)
     wavenumbers, zpe_kJ_mol = oscillators(molecule, options.anharmonic)
     if molecule.stated.diatomic is not None:

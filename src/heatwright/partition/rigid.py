@@ -2,10 +2,14 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
+
 from heatwright.findings import Finding, note
 from heatwright.molecule import FloatArray, Molecule
 from heatwright.structure.inertia import Inertia, inertia, stated_rotor
 from heatwright.structure.symmetry import Symmetry, stated_symmetry, symmetry, symmetry_findings
+
+RigidBody = Callable[[Molecule, FloatArray, float], tuple[Inertia, Symmetry]]
 
 
 def rigid_body(molecule: Molecule, masses_u: FloatArray, tolerance_A: float) -> tuple[Inertia, Symmetry]:

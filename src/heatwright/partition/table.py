@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from functools import cached_property
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -12,7 +13,7 @@ from numpy.typing import ArrayLike
 from heatwright.constants import GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
 from heatwright.errors import UsageError
 from heatwright.molecule import FloatArray
-from heatwright.partition.contribution import Contribution
+from heatwright.partition.contribution import LnQ
 
 if TYPE_CHECKING:
     from heatwright.partition.uncertainty import TableUncertainty
@@ -27,12 +28,12 @@ class Share:
     s_J_mol_K: FloatArray
 
 
-@dataclass(frozen=True, eq=False, slots=True)
+@dataclass(frozen=True, eq=False)
 class ThermoTable:
     """Standard thermodynamic functions on a temperature grid, with the share of each contribution.
 
     T_K, cp_J_mol_K, h_minus_h298_kJ_mol, s_J_mol_K : (n,).   h298_minus_h0_kJ_mol : enthalpy increment from 0 K.
-    shares : by the contribution's name; they add up to the totals.
+    parts : of each contribution, by its name, ln q and its derivatives at 298.15 K (one element) and on the grid.
     populations : of the model's conformers, one array (n,) each, mirror images together; empty without conformers.
     uncertainty : standard uncertainties of the columns, when inputs with uncertainties were stated.
     """
@@ -42,9 +43,14 @@ class ThermoTable:
     h_minus_h298_kJ_mol: FloatArray
     s_J_mol_K: FloatArray
     h298_minus_h0_kJ_mol: float
-    shares: Mapping[str, Share]
+    parts: Mapping[str, tuple[LnQ, LnQ]]
     populations: tuple[FloatArray, ...] = ()
     uncertainty: TableUncertainty | None = None
+
+    @cached_property
+    def shares(self) -> Mapping[str, Share]:
+        """The share of each contribution by its name; they add up to the totals."""
+        return {name: share_of(values, at_298, self.T_K) for name, (at_298, values) in self.parts.items()}
 
     @property
     def minus_g_minus_h298_over_T_J_mol_K(self) -> FloatArray:
@@ -60,10 +66,8 @@ def checked_temperatures(T: ArrayLike) -> FloatArray:
     return grid
 
 
-def share_of(contribution: Contribution, T: FloatArray) -> Share:
-    """What one contribution adds at the temperatures *T*, K."""
-    values = contribution.ln_q(T)
-    reference = contribution.ln_q(np.array([STANDARD_TEMPERATURE_K]))
-    h_R = values.h_RT * T - reference.h_RT[0] * STANDARD_TEMPERATURE_K
+def share_of(values: LnQ, at_298: LnQ, T: FloatArray) -> Share:
+    """What one contribution adds at the temperatures *T*, K, from its values there and at 298.15 K (one element)."""
+    h_R = values.h_RT * T - at_298.h_RT[0] * STANDARD_TEMPERATURE_K
     R = GAS_CONSTANT_J_MOL_K
     return Share(values.cp_R * R, h_R * R / 1000.0, values.s_R * R)

@@ -7,8 +7,8 @@ values at 298.15 K are exact, both functions are continuous, and no weights betw
 
 from __future__ import annotations
 
-from collections.abc import Callable
-from dataclasses import dataclass
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, field
 from typing import Literal
 
 import numpy as np
@@ -22,7 +22,7 @@ from heatwright.polynomial.common_temperature import (
     best_common_temperature,
     common_limits,
 )
-from heatwright.polynomial.minimax import Minimax, design, minimax
+from heatwright.polynomial.minimax import Minimax, design, minimax, minimax_of_many
 from heatwright.polynomial.nasa7 import Coefficients, Nasa7, cp_of, h_of, round_coefficient, s_of
 
 HeatCapacity = Callable[[FloatArray], FloatArray]
@@ -37,7 +37,6 @@ class Fit:
     """A fitted polynomial and how close it is to the best possible one.
 
     polynomial : with the coefficients that the text fields hold (nine significant digits).
-    unrounded : the same before rounding.
     minimax_dCp_R : proven lower bound of max |ΔCp|/R over the range, for any two quartics joined with continuous value
         and slope at this common temperature.
     max_dCp_R : largest |ΔCp|/R of ``unrounded`` at the fitted temperatures.
@@ -45,10 +44,16 @@ class Fit:
     """
 
     polynomial: Nasa7
-    unrounded: Nasa7
     minimax_dCp_R: float
     max_dCp_R: float
     iterations: int
+    _exact: tuple[tuple[float, ...], float, float] = field(repr=False)
+
+    @property
+    def unrounded(self) -> Nasa7:
+        """The polynomial before rounding."""
+        p = self.polynomial
+        return anchored(np.array(self._exact[0]), (p.t_low_K, p.t_common_K, p.t_high_K), *self._exact[1:])
 
 
 def fit_nasa7(
@@ -85,10 +90,41 @@ def fit_nasa7(
         t_common, best = _best_over_common(function, t_low_K, t_high_K)
     else:
         t_common, best = t_common_K, _fit_at(function, t_low_K, t_common_K, t_high_K)
-    temperatures = (float(t_low_K), float(t_common), float(t_high_K))
-    unrounded = anchored(best.coefficients, temperatures, h298_R_K, s298_R)
-    rounded = anchored(best.coefficients, temperatures, h298_R_K, s298_R, rounding=round_coefficient)
-    return Fit(rounded, unrounded, best.lower_bound, best.error, best.iterations)
+    return _fit(best, (float(t_low_K), float(t_common), float(t_high_K)), h298_R_K, s298_R)
+
+
+def fit_many(
+    cp_R: FloatArray, h298_R_K: Sequence[float], s298_R: Sequence[float], temperatures_K: tuple[float, float, float]
+) -> list[Fit | Refused]:
+    """Many heat capacities fitted at once at one set of temperatures (low, common, high), as one by one.
+
+    cp_R : (p, 2n), each row at the nodes of :func:`heatwright.polynomial.minimax.design` for these temperatures.
+    What :func:`fit_nasa7` would raise for one of them takes its place.
+    """
+    check_temperatures(*temperatures_K)
+    d = design(*temperatures_K)
+    sound = np.flatnonzero(np.isfinite(cp_R).all(axis=1))
+    found = dict(zip(sound.tolist(), minimax_of_many(d, cp_R[sound]) if sound.size else (), strict=True))
+    fits: list[Fit | Refused] = []
+    for i, (h298, s298) in enumerate(zip(h298_R_K, s298_R, strict=True)):
+        try:
+            _check_anchors(h298, s298)
+            fits.append(_fit(found[i], temperatures_K, h298, s298) if i in found else _not_finite(d.nodes_K, cp_R[i]))
+        except Refused as error:
+            fits.append(error)
+    return fits
+
+
+def common_temperature(cp_R: HeatCapacity, t_low_K: float, t_high_K: float) -> float:
+    """The common temperature that ``"auto"`` stands for, K.  Raises as :func:`fit_nasa7` does."""
+    check_temperatures(t_low_K, "auto", t_high_K)
+    return _best_over_common(_checked(cp_R), t_low_K, t_high_K)[0]
+
+
+def _fit(best: Minimax, temperatures_K: tuple[float, float, float], h298_R_K: float, s298_R: float) -> Fit:
+    rounded = anchored(best.coefficients, temperatures_K, h298_R_K, s298_R, rounding=round_coefficient)
+    exact = (tuple(best.coefficients.tolist()), h298_R_K, s298_R)
+    return Fit(rounded, best.lower_bound, best.error, best.iterations, exact)
 
 
 def anchored(
@@ -105,7 +141,7 @@ def anchored(
     does not reach the anchors or the joint: a₆ and a₇ of the low range, then c₁ from the continuity of Cp, then a₆ and
     a₇ of the high range.
     """
-    T0, Tm = np.array(STANDARD_TEMPERATURE_K), np.array(temperatures_K[1])
+    T0, Tm = STANDARD_TEMPERATURE_K, temperatures_K[1]
     b = [rounding(float(x)) for x in cp_coefficients[:5]]
     c = [rounding(float(x)) for x in cp_coefficients[5:]]
     start = _set(b)
@@ -155,11 +191,15 @@ def _checked(cp_R: HeatCapacity) -> HeatCapacity:
         if cp.shape != T.shape:
             raise ValueError(f"Cp/R was asked for at {T.shape} temperatures and came back with shape {cp.shape}")
         if not np.isfinite(cp).all():
-            where = float(T[~np.isfinite(cp)][0])
-            raise Refused([refuse("not-a-number", f"Cp/R at {where:g} K is not finite", expected="a finite number")])
+            raise _not_finite(T, cp)
         return cp
 
     return checked
+
+
+def _not_finite(T: FloatArray, cp: FloatArray) -> Refused:
+    where = float(T[~np.isfinite(cp)][0])
+    return Refused([refuse("not-a-number", f"Cp/R at {where:g} K is not finite", expected="a finite number")])
 
 
 def _fit_at(cp_R: HeatCapacity, t_low_K: float, t_common_K: float, t_high_K: float) -> Minimax:

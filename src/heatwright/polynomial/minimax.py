@@ -16,7 +16,7 @@ from typing import Final
 
 import numpy as np
 
-from heatwright.molecule import FloatArray
+from heatwright.molecule import FloatArray, IntArray
 
 NODES_PER_RANGE: Final = 50
 MAX_ITERATIONS: Final = 100
@@ -35,13 +35,14 @@ class Design:
     """All pairs of quartics with continuous value and slope, seen at the nodes of one set of temperatures.
 
     nodes_K : (2n,) nodes, n in each range, both with the common temperature.
-    Q : (2n, 8) orthonormal columns: values at the nodes.
+    Q : (2n, 8) orthonormal columns: values at the nodes.   products : (2n, 64) of all pairs of its columns.
     to_coefficients : (10, 8), from the coordinates in Q to b₁…b₅ (below) and c₁…c₅ (above), in powers of T in K.
     """
 
     nodes_K: FloatArray
     Q: FloatArray
     to_coefficients: FloatArray
+    products: FloatArray
 
 
 @dataclass(frozen=True, eq=False)
@@ -81,7 +82,8 @@ def design(t_low_K: float, t_common_K: float, t_high_K: float, n: int = NODES_PE
     Z = np.linalg.qr(joined.T, mode="complete")[0][:, 2:]
     Q, R = np.linalg.qr(powers @ Z)
     per_kelvin = np.r_[1.0 / t_common_K**k, 1.0 / t_high_K**k]
-    return Design(np.r_[low, high], Q, per_kelvin[:, None] * np.linalg.solve(R.T, Z.T).T)
+    products = (Q[:, :, None] * Q[:, None, :]).reshape(2 * n, -1)
+    return Design(np.r_[low, high], Q, per_kelvin[:, None] * np.linalg.solve(R.T, Z.T).T, products)
 
 
 def minimax(design: Design, cp_R: FloatArray) -> Minimax:
@@ -91,36 +93,54 @@ def minimax(design: Design, cp_R: FloatArray) -> Minimax:
     Σ wᵢrᵢ² = Σ λᵢrᵢ = Σ λᵢrᵢ(y) ≤ max|r(y)| Σ wᵢ|rᵢ|.  Hence max|r(y)| ≥ Σ wr² / Σ w|r|, which is at least the
     weighted rms of the residuals; the largest one over the iterations is kept.
     """
+    return minimax_of_many(design, cp_R[None, :])[0]
+
+
+def minimax_of_many(design: Design, cp_R: FloatArray) -> list[Minimax]:
+    """Each row of *cp_R* (p, 2n) fitted as :func:`minimax` does, all at once.
+
+    A row's result does not depend, to the last bit, on the rows it is fitted with: every sum runs over one row alone.
+    """
     # A constant is taken off first so that a constant heat capacity gives exact zeros.
-    constant = float(cp_R[cp_R.size // 2])
-    f = cp_R - constant
-    noise = NOISE * float(np.abs(cp_R).max())
-    y, error, bound, iterations = _lawson(design.Q, f, noise)
-    coefficients = design.to_coefficients @ y
-    coefficients[[0, 5]] += constant
-    return Minimax(coefficients, error, bound, iterations)
+    constant = cp_R[:, cp_R.shape[1] // 2]
+    y, error, bound, iterations = _lawson(design, cp_R - constant[:, None], NOISE * np.abs(cp_R).max(axis=1))
+    found = []
+    for i, solution in enumerate(y):
+        coefficients = design.to_coefficients @ solution
+        coefficients[[0, 5]] += constant[i]
+        found.append(Minimax(coefficients, float(error[i]), float(bound[i]), int(iterations[i])))
+    return found
 
 
-def _lawson(Q: FloatArray, f: FloatArray, noise: float) -> tuple[FloatArray, float, float, int]:
-    n, m = Q.shape
-    best: FloatArray = np.zeros(m)
-    error, bound = float(np.abs(f).max()), 0.0
-    if error <= noise:
-        return best, error, 0.0, 0
-    w: FloatArray = np.full(n, 1.0 / n)
+def _lawson(design: Design, f: FloatArray, noise: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray, IntArray]:
+    """Coordinates (p, 8), errors, lower bounds and iterations (p,) of the problems in the rows of *f* (p, 2n)."""
+    best: FloatArray = np.zeros((len(f), design.Q.shape[1]))
+    error, bound = np.abs(f).max(axis=1), np.zeros(len(f))
+    iterations = np.zeros(len(f), dtype=np.int64)
+    rows = np.flatnonzero(error > noise)  # the problems still at work
+    f, w = f[rows], np.full((rows.size, f.shape[1]), 1.0 / f.shape[1])
     for iteration in range(1, MAX_ITERATIONS + 1):
-        wQ = w[:, None] * Q
-        y = np.asarray(np.linalg.solve(Q.T @ wQ, wQ.T @ f), dtype=np.float64)
-        r: FloatArray = np.abs(Q @ y - f)
-        largest = float(r.max())
-        if largest < error:
-            best, error = y, largest
-        wr = w * r
-        bound = max(bound, float(wr @ r) / max(float(wr.sum()), _SMALLEST))
-        if error <= max(STOP_RATIO * bound, noise) or iteration == MAX_ITERATIONS:
+        if not rows.size:
             break
-        w = _heavier(w, wr, np.array(largest))
-    return best, error, min(bound, error), iteration
+        y = _weighted(design, w, f)
+        r: FloatArray = np.abs((y[:, None, :] @ design.Q.T)[:, 0] - f)
+        largest: FloatArray = r.max(axis=1)
+        better = largest < error[rows]
+        best[rows[better]], error[rows[better]] = y[better], largest[better]
+        wr = w * r
+        now = (wr * r).sum(axis=1) / np.maximum(wr.sum(axis=1), _SMALLEST)
+        bound[rows], iterations[rows] = np.maximum(bound[rows], now), iteration
+        on = error[rows] > np.maximum(STOP_RATIO * bound[rows], noise[rows])
+        rows, f, w = rows[on], f[on], _heavier(w[on], wr[on], largest[on, None])
+    return best, error, np.minimum(bound, error), iterations
+
+
+def _weighted(design: Design, w: FloatArray, f: FloatArray) -> FloatArray:
+    """The weighted least-squares solutions (p, 8) for weights and values (p, 2n)."""
+    n = design.Q.shape[1]
+    normal = (w[:, None, :] @ design.products).reshape(-1, n, n)
+    right = (w * f)[:, None, :] @ design.Q
+    return np.asarray(np.linalg.solve(normal, right.transpose(0, 2, 1))[:, :, 0], dtype=np.float64)
 
 
 def _heavier(w: FloatArray, wr: FloatArray, largest: FloatArray) -> FloatArray:

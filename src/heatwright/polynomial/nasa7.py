@@ -11,9 +11,10 @@ H is on the scale where H(298.15 K) is the enthalpy of formation at 298.15 K.
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
-from typing import Final, overload
+from math import isfinite
+from typing import Final, TypeVar, overload
 
 import numpy as np
 
@@ -22,6 +23,7 @@ from heatwright.findings import Refused, refuse
 from heatwright.molecule import FloatArray
 
 Coefficients = tuple[float, float, float, float, float, float, float]
+N = TypeVar("N", float, FloatArray)
 
 TEXT_DIGITS: Final = 9
 """Significant digits of a coefficient in a field of 15 characters, ``-1.23456789E-05``."""
@@ -42,7 +44,7 @@ def round_coefficient(value: float, digits: int = TEXT_DIGITS) -> float:
     >>> round_coefficient(-3.2e-120)
     0.0
     """
-    if not np.isfinite(value):
+    if not isfinite(value):
         raise Refused([refuse("not-a-number", f"a polynomial coefficient is {value}", expected="a finite number")])
     rounded = float(f"{value:.{digits - 1}E}")
     if abs(rounded) < 1.0e-99:
@@ -61,22 +63,26 @@ def round_coefficient(value: float, digits: int = TEXT_DIGITS) -> float:
     return rounded
 
 
-def cp_of(a: Coefficients, T: FloatArray) -> FloatArray:
+def cp_of(a: Sequence[float], T: N) -> N:
     """Cp/R of one set of coefficients at T (K)."""
     return a[0] + T * (a[1] + T * (a[2] + T * (a[3] + T * a[4])))
 
 
-def h_of(a: Coefficients, T: FloatArray) -> FloatArray:
+def h_of(a: Sequence[float], T: N) -> N:
     """H/R (K) of one set of coefficients at T (K)."""
     return a[5] + T * (a[0] + T * (a[1] / 2 + T * (a[2] / 3 + T * (a[3] / 4 + T * (a[4] / 5)))))
 
 
-def s_of(a: Coefficients, T: FloatArray) -> FloatArray:
+def s_of(a: Sequence[float], T: N) -> N:
     """S/R of one set of coefficients at T (K)."""
-    return a[6] + a[0] * np.log(T) + T * (a[1] + T * (a[2] / 2 + T * (a[3] / 3 + T * (a[4] / 4))))
+    return a[6] + a[0] * _ln(T) + T * (a[1] + T * (a[2] / 2 + T * (a[3] / 3 + T * (a[4] / 4))))
 
 
-def slope_of(a: Coefficients, T: FloatArray) -> FloatArray:
+def _ln(T: N) -> N:
+    return float(np.log(T)) if isinstance(T, float) else np.log(T)
+
+
+def slope_of(a: Sequence[float], T: N) -> N:
     """d(Cp/R)/dT (1/K) of one set of coefficients at T (K)."""
     return a[1] + T * (2 * a[2] + T * (3 * a[3] + T * (4 * a[4])))
 

@@ -7,8 +7,9 @@ from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from functools import lru_cache
 from itertools import pairwise
-from typing import Final
+from typing import Any, Final
 
 import numpy as np
 
@@ -137,18 +138,50 @@ def fit_quality(
     (0.01, 0.0, 2.0, 'fit-not-closest')
     """
     T = quality_grid(polynomial)
-    cp = polynomial.cp_R(T)
-    lowest, highest = int(np.argmin(cp)), int(np.argmax(cp))
-    return FitQuality(
-        dcp_R=_largest(T, cp - _values(cp_R, T)),
-        dh_RT=_largest(T, polynomial.h_RT(T) - _values(h_RT, T)),
-        ds_R=_largest(T, polynomial.s_R(T) - _values(s_R, T)),
-        jumps=jumps_at_common(polynomial),
-        least_cp=Deviation(float(cp[lowest]), float(T[lowest])),
-        greatest_cp=Deviation(float(cp[highest]), float(T[highest])),
-        minimax_dCp_R=lower_bound,
-        classical_limit_R=classical_limit_R,
+    values = (_values(cp_R, T)[None], _values(h_RT, T)[None], _values(s_R, T)[None])
+    return fit_qualities([polynomial], *values, [lower_bound], [classical_limit_R])[0]
+
+
+def fit_qualities(
+    polynomials: Sequence[Nasa7],
+    cp_R: FloatArray,
+    h_RT: FloatArray,
+    s_R: FloatArray,
+    lower_bounds: Sequence[float],
+    classical_limits_R: Sequence[float | None],
+) -> list[FitQuality]:
+    """:func:`fit_quality` of many polynomials on the same temperatures at once, with the same results.
+
+    cp_R, h_RT, s_R : (p, n), each row at :func:`quality_grid` of the polynomials.
+    """
+    if not polynomials:
+        return []
+    T = quality_grid(polynomials[0])
+    middle = int(np.searchsorted(T, polynomials[0].t_common_K, side="right"))
+    low = np.array([p.low for p in polynomials]).T[:, :, None]
+    high = np.array([p.high for p in polynomials]).T[:, :, None]
+
+    def on_grid(of: Callable[[Any, FloatArray], FloatArray]) -> FloatArray:
+        return np.concatenate([of(low, T[:middle]), of(high, T[middle:])], axis=1)
+
+    cp = on_grid(cp_of)
+    deviations = zip(
+        _largest(T, cp - cp_R), _largest(T, on_grid(h_of) / T - h_RT), _largest(T, on_grid(s_of) - s_R), strict=True
     )
+    lowest, highest = np.argmin(cp, axis=1), np.argmax(cp, axis=1)
+    return [
+        FitQuality(
+            dcp_R=dcp,
+            dh_RT=dh,
+            ds_R=ds,
+            jumps=jumps_at_common(polynomial),
+            least_cp=Deviation(float(cp[i, lowest[i]]), float(T[lowest[i]])),
+            greatest_cp=Deviation(float(cp[i, highest[i]]), float(T[highest[i]])),
+            minimax_dCp_R=lower_bounds[i],
+            classical_limit_R=classical_limits_R[i],
+        )
+        for i, (polynomial, (dcp, dh, ds)) in enumerate(zip(polynomials, deviations, strict=True))
+    ]
 
 
 @dataclass(frozen=True, eq=False, slots=True)
@@ -192,16 +225,23 @@ def quality_grid(polynomial: Nasa7) -> FloatArray:
 
     The common temperature is there twice, as itself for the low range and as the next number above for the high one.
     """
-    t_low, t_common, t_high = polynomial.t_low_K, polynomial.t_common_K, polynomial.t_high_K
-    above = float(np.nextafter(t_common, np.inf))
-    return np.concatenate([_spread(t_low, t_common), _spread(above, t_high)])
+    return judged_temperatures(polynomial.t_low_K, polynomial.t_common_K, polynomial.t_high_K)
+
+
+@lru_cache(maxsize=64)
+def judged_temperatures(t_low_K: float, t_common_K: float, t_high_K: float) -> FloatArray:
+    """The grid of :func:`quality_grid` for these temperatures, K."""
+    above = float(np.nextafter(t_common_K, np.inf))
+    grid = np.concatenate([_spread(t_low_K, t_common_K), _spread(above, t_high_K)])
+    grid.flags.writeable = False  # it is shared
+    return grid
 
 
 def jumps_at_common(polynomial: Nasa7) -> Jumps:
     """Discontinuities of *polynomial* at its common temperature."""
-    low, high, T = polynomial.low, polynomial.high, np.array(polynomial.t_common_K)
-    cp, h, s, slope = (float(of(high, T) - of(low, T)) for of in (cp_of, h_of, s_of, slope_of))
-    return Jumps(cp, h, s, slope)
+    low, high, T = polynomial.low, polynomial.high, float(polynomial.t_common_K)
+    cp, h, s = cp_of(high, T) - cp_of(low, T), h_of(high, T) - h_of(low, T), s_of(high, T) - s_of(low, T)
+    return Jumps(cp, h, s, slope_of(high, T) - slope_of(low, T))
 
 
 def _spread(start: float, end: float) -> FloatArray:
@@ -221,7 +261,8 @@ def _values(reference: Reference, T: FloatArray) -> FloatArray:
     return values
 
 
-def _largest(T: FloatArray, difference: FloatArray) -> Deviation:
+def _largest(T: FloatArray, difference: FloatArray) -> list[Deviation]:
+    """Of each row the largest magnitude and where it is."""
     size = np.abs(difference)
-    worst = int(np.argmax(size))
-    return Deviation(float(size[worst]), float(T[worst]))
+    worst = np.argmax(size, axis=1)
+    return [Deviation(float(row[k]), float(T[k])) for row, k in zip(size, worst, strict=True)]

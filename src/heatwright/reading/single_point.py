@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from math import inf
 from typing import Final
 
 import numpy as np
@@ -42,6 +43,12 @@ def with_energy(molecule: Molecule, other: Molecule) -> Molecule:
         energy_level=other.level,
         findings=(*(f for f in molecule.findings if f.code != "no-energy"), _said(molecule, other, fit), *warnings),
     )
+
+
+def geometry_distance_A(molecule: Molecule, other: Molecule) -> float:
+    """How far (RMSD, Å) another output's geometry is from a molecule's, atoms in any order; inf where none is there."""
+    fit = _fit(molecule, other)
+    return inf if fit is None else fit.rmsd_A
 
 
 def _another_molecule(molecule: Molecule, other: Molecule) -> list[Finding]:

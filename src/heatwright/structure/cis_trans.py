@@ -9,8 +9,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from heatwright.molecule import FloatArray, Molecule
-from heatwright.structure.bonds import atom_labels, bonds
+from heatwright.structure.bonds import atom_labels, bonds, covalent_radius_A
 from heatwright.structure.smiles import parse_smiles
+from heatwright.structure.torsions import MULTIPLE_BOND, side
 
 Side = tuple[tuple[str, str], bool]
 """The labels of the two atoms of a double bond, sorted, and whether their higher-ranking neighbours are cis.
@@ -55,6 +56,24 @@ def has_sides(molecule: Molecule, sides: tuple[Side, ...]) -> bool:
             x = molecule.coordinates_A
             found[_key(i, j, labels), _are_cis(x[first], x[i], x[j], x[second])] += 1
     return found == Counter(sides)
+
+
+def shown_sides(molecule: Molecule) -> tuple[Side, ...]:
+    """The sides at every bond of a geometry that nothing turns about as it is too short, sorted; rings left out.
+
+    Two geometries of one graph that differ in them are E and Z isomers and no conformers.
+    """
+    z, x = molecule.atomic_numbers, molecule.coordinates_A
+    bonded = bonds(z, x)
+    labels = atom_labels(z, bonded)
+    found: list[Side] = []
+    for i, j in np.argwhere(np.triu(bonded)).tolist():
+        radii = covalent_radius_A(int(z[i])) + covalent_radius_A(int(z[j]))
+        first, second = _higher(i, j, bonded, labels), _higher(j, i, bonded, labels)
+        short = float(np.linalg.norm(x[i] - x[j])) < MULTIPLE_BOND * radii
+        if short and first is not None and second is not None and side(bonded, j, i) is not None:
+            found.append((_key(i, j, labels), _are_cis(x[first], x[i], x[j], x[second])))
+    return tuple(sorted(found))
 
 
 def _key(i: int, j: int, labels: list[str]) -> tuple[str, str]:

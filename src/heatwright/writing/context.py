@@ -8,7 +8,7 @@ from typing import Any
 from heatwright.entry import Entry
 from heatwright.findings import Finding
 from heatwright.writing.comment import CAUTION, comment_lines
-from heatwright.writing.document import failure_document, species_document, whole_document
+from heatwright.writing.document import failure_document, nasa7_document, species_document, whole_document
 from heatwright.writing.render import table_context
 
 
@@ -16,7 +16,7 @@ def entries_context(entries: Sequence[Entry], failed: Iterable[tuple[str, Iterab
     """The variables of an entry template.
 
     species : the species objects of the JSON document, each with ``charged_composition`` (with ``E`` for the electrons
-    of an ion), ``phase``, ``standard_pressure_Pa`` and ``comment`` (lines of ASCII text) besides.
+    of an ion), ``phase``, ``standard_pressure_Pa``, ``note`` and ``comment`` (lines of ASCII text) besides.
     document : the whole JSON document.   defaults : low, common and high temperature for a file's head.
     elements : all element symbols.   contribution_names : for the table.   caution : two lines for the file's head.
     """
@@ -36,10 +36,20 @@ def entries_context(entries: Sequence[Entry], failed: Iterable[tuple[str, Iterab
     }
 
 
+def records_context(entries: Sequence[Entry], defaults_K: Sequence[float], elements: Sequence[str]) -> dict[str, Any]:
+    """What the templates of records need, and no more: the formats ``nasa7`` and ``yaml`` without the JSON document.
+
+    defaults_K, elements : for the file's head, as :func:`entries_context` finds them for all entries of a file.
+    """
+    records = [{"name": e.name, "nasa7": nasa7_document(e.polynomial), **_record(e)} for e in entries]
+    return {"species": records, "defaults": list(defaults_K), "elements": list(elements), "caution": CAUTION}
+
+
 def _record(entry: Entry) -> dict[str, Any]:
     return {
         "charged_composition": entry.charged_composition,
         "phase": entry.phase,
         "standard_pressure_Pa": entry.model.options.pressure_Pa,
+        "note": entry.note,
         "comment": list(comment_lines(entry)),
     }

@@ -78,8 +78,8 @@ def species_document(
         document |= _low_modes(model)
     if entry is not None:
         document |= {
-            "nasa7": _nasa7(entry.polynomial),
-            "residuals": _residuals(entry.quality),
+            "nasa7": nasa7_document(entry.polynomial),
+            "residuals": residuals_document(entry.quality),
             "residual_curve": _residual_curve(entry.residuals),
         }
     document["source"] = source_document(molecule)
@@ -258,7 +258,8 @@ def _uncertainty(uncertainty: TableUncertainty) -> dict[str, Any]:
     }
 
 
-def _nasa7(polynomial: Nasa7) -> dict[str, Any]:
+def nasa7_document(polynomial: Nasa7) -> dict[str, Any]:
+    """A polynomial: temperatures (low, common, high) and coefficients as they are printed."""
     return {
         "T_K": [polynomial.t_low_K, polynomial.t_common_K, polynomial.t_high_K],
         "low": list(polynomial.low),
@@ -266,7 +267,8 @@ def _nasa7(polynomial: Nasa7) -> dict[str, Any]:
     }
 
 
-def _residuals(quality: FitQuality) -> dict[str, Any]:
+def residuals_document(quality: FitQuality) -> dict[str, float]:
+    """The largest residuals and the proven lower bound, dimensionless."""
     return {
         "max_dCp_R": significant(quality.dcp_R.largest, 4),
         "max_dH_RT": significant(quality.dh_RT.largest, 4),

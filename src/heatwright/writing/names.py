@@ -19,6 +19,18 @@ OUTPUT_ENDINGS: Final = frozenset(
 """File endings that are not part of a species' name."""
 
 
+def name_of_file(path: str) -> str:
+    """The name of an output without its folder and its endings.
+
+    >>> name_of_file("runs/CH3OH.log.gz")
+    'CH3OH'
+    """
+    name = PurePath(path).name
+    while PurePath(name).suffix.lower() in OUTPUT_ENDINGS:
+        name = PurePath(name).stem
+    return name
+
+
 def default_name(molecule: Molecule, composition: Mapping[str, int]) -> tuple[str, tuple[Finding, ...]]:
     """The name when none is given: that of the file where it can stand in a thermo record, else the formula.
 
@@ -26,9 +38,7 @@ def default_name(molecule: Molecule, composition: Mapping[str, int]) -> tuple[st
 
     Files are usually called after their species, and isomers have no other distinction.
     """
-    name = molecule.stated.name or PurePath(molecule.source.file).name
-    while not molecule.stated.name and PurePath(name).suffix.lower() in OUTPUT_ENDINGS:
-        name = PurePath(name).stem
+    name = molecule.stated.name or name_of_file(molecule.source.file)
     exchanged = any(f.code == "isotopes" for f in molecule.findings)
     if fits_record_name(name) and not exchanged:
         return name, ()

@@ -1,0 +1,290 @@
+"""The build: everything that is stale is made, everything else stays, and the release is switched as a whole.
+
+Only this, the driver, writes: workers send back bytes.  What was read and what was finished is in the store within
+half a second, so that a build that is interrupted, in whatever way, goes on from there.
+"""
+
+from __future__ import annotations
+
+import hashlib
+import json
+from collections.abc import Iterator, Sequence
+from contextlib import chdir
+from dataclasses import dataclass, replace
+from typing import TYPE_CHECKING, Final
+
+from heatwright import __version__
+from heatwright.findings import Finding, Refused, refusals
+from heatwright.project.executors import Engine
+from heatwright.project.fingerprint import tool_fingerprint
+from heatwright.project.library import Library
+from heatwright.project.lockfile import (
+    LOCK_NAME,
+    Lock,
+    LockedReference,
+    document_text,
+    lock_document,
+    lock_of,
+    lock_values,
+)
+from heatwright.project.making import Maker, broken, entries_of, tasks_of
+from heatwright.project.manifest_types import Manifest, ReferenceFolders
+from heatwright.project.plan import Decision, Plan, check_pressure, entry_key, make_plan
+from heatwright.project.record import Record, packed, records, unpacked
+from heatwright.project.release import check_folder, locked, read_release, recover, switch
+from heatwright.project.shelf import Shelf
+from heatwright.project.store import Store
+from heatwright.project.texts import FILES, whole_texts, with_remark
+from heatwright.project.watch import Watch
+
+if TYPE_CHECKING:
+    from heatwright.entry import Entry, EntryRequest
+
+_BATCH: Final = 128
+"""Species made at a time: enough for the fit, few enough for the memory."""
+_KEPT: Final = "kept from an earlier release"
+
+
+@dataclass(frozen=True, slots=True)
+class Outcome:
+    """What became of a build.
+
+    failed, kept : names of species.   written : whether there is another release now than before.
+    """
+
+    plan: Plan
+    made: tuple[str, ...] = ()
+    failed: tuple[str, ...] = ()
+    kept: tuple[str, ...] = ()
+    written: bool = False
+
+
+def build(manifest: Manifest, watch: Watch, *, engine: Engine | None = None, keep_previous: bool = False) -> Outcome:
+    """Make what is stale and write the release.
+
+    engine : where outputs are read, in this process unless said.   keep_previous : a species that cannot be made keeps
+    its earlier entry, with a remark.
+    Raises Refused when nothing can be done at all: ``pressures-mixed``, ``lock-wrong``, ``lock-newer``,
+    ``target-unwritable``, ``scheduler-unfit``.  A species that cannot be made is among those failed.
+    """
+    release = manifest.mechanism.release.path
+    check_pressure(manifest.species)
+    check_folder(release, manifest.root)
+    with chdir(manifest.root), locked(release, watch.waiting):
+        recover(release)
+        with Store(manifest.mechanism.store.path, watch.said) as store:
+            return _Build(manifest, watch, Library(store, engine or Engine()), keep_previous).run()
+
+
+def dry_run(manifest: Manifest, watch: Watch) -> Plan:
+    """What :func:`build` would do; nothing is written.  Raises Refused as it does."""
+    check_pressure(manifest.species)
+    check_folder(manifest.mechanism.release.path, manifest.root)
+    with chdir(manifest.root), Store(manifest.mechanism.store.path, watch.said, read_only=True) as store:
+        return _Build(manifest, watch, Library(store, Engine()), False).plan()
+
+
+class _Build:
+    """One build, from the plan to the release."""
+
+    def __init__(self, manifest: Manifest, watch: Watch, library: Library, keep_previous: bool) -> None:
+        self._manifest = manifest
+        self._watch = watch
+        self._library = library
+        self._keep_previous = keep_previous
+        self._before: dict[str, bytes] = {}
+        self._shelves: dict[ReferenceFolders, Shelf] = {}
+        self._failed: dict[str, tuple[Finding, ...]] = {}
+
+    def plan(self) -> Plan:
+        """The decisions for all species."""
+        release = self._manifest.mechanism.release
+        self._before = read_release(release.path, (LOCK_NAME, *FILES))
+        lock = None
+        if LOCK_NAME in self._before:
+            lock = self._lock(_text(self._before[LOCK_NAME]), f"{release.shown}/{LOCK_NAME}")
+        known = {r.path: r for r in lock.references} if lock is not None else {}
+        for folders in dict.fromkeys(request.formation.folders for request in self._manifest.species):
+            self._shelves[folders] = shelf = Shelf(folders, self._library, known)
+            shelf.label_all(self._watch.reading)
+        texts = {file: _text(self._before[file]) for file in FILES if file in self._before}
+        return make_plan(self._manifest, self._library, self._shelves, lock, texts)
+
+    def _lock(self, text: str, file: str) -> Lock:
+        """The lock file with this text; its values are remembered, as TOML is slow to take apart."""
+        key = _lock_key(text)
+        data = self._library.store.get([key]).get(key)
+        if data is not None:
+            try:
+                return lock_of(json.loads(data), file)
+            except (ValueError, Refused):
+                self._library.store.drop(key)
+        values = lock_values(text, file)
+        lock = lock_of(values, file)
+        self._library.store.put({key: json.dumps(values, ensure_ascii=False).encode()})
+        return lock
+
+    def run(self) -> Outcome:
+        """Plan, make, write."""
+        plan = self.plan()
+        self._watch.planned(plan)
+        if plan.is_done:
+            return Outcome(plan)
+        fresh = self._finished(plan.stale)
+        missing = [decision for decision in plan.stale if decision.name not in fresh]
+        self._library.read((task for decision in missing for task in tasks_of(decision.request)), self._watch.reading)
+        for record in self._made(missing):
+            fresh[record.locked.name] = record
+        self._library.store.flush()
+        kept = self._kept(plan)
+        written = self._write(plan, {**fresh, **kept})
+        return Outcome(plan, tuple(fresh), tuple(self._failed), tuple(kept), written)
+
+    # --- making ---------------------------------------------------------------------------------------------------
+
+    def _finished(self, decisions: Sequence[Decision]) -> dict[str, Record]:
+        """What an earlier build finished and did not come to release."""
+        keys = {self._result_key(decision): decision for decision in decisions}
+        found = {}
+        for key, data in self._library.store.get(keys).items():
+            record, decision = unpacked(data), keys[key]
+            if record is None:
+                self._library.store.drop(key)
+                continue
+            found[decision.name] = record
+            self._watch.made(decision, record)
+        return found
+
+    def _result_key(self, decision: Decision) -> str:
+        """Everything that an entry can depend on; more than it does, as its elements are not known beforehand."""
+        shelf = self._shelves[decision.request.formation.folders]
+        return f"result:{entry_key(decision, shelf.everything())}"
+
+    def _made(self, decisions: Sequence[Decision]) -> Iterator[Record]:
+        maker = Maker(self._library, self._shelves, self._watch.said)
+        for start in range(0, len(decisions), _BATCH):
+            batch = decisions[start : start + _BATCH]
+            ready = [(decision, made) for decision in batch if (made := self._ingredients(maker, decision))]
+            entries = entries_of([request for _, request in ready])
+            good = []
+            for (decision, _), entry in zip(ready, entries, strict=True):
+                fault = entry if isinstance(entry, Refused) else _unfit(entry)
+                if isinstance(fault, Refused):
+                    self._fail(decision, fault)
+                elif not isinstance(entry, Refused):
+                    rests_on = self._rests_on(decision, entry.composition)
+                    good.append((decision, entry, entry_key(decision, rests_on), rests_on))
+            for (decision, *_), record in zip(good, records(good), strict=True):
+                if isinstance(record, Refused):
+                    self._fail(decision, record)
+                    continue
+                self._library.store.put({self._result_key(decision): packed(record)})
+                self._watch.made(decision, record)
+                yield record
+
+    def _ingredients(self, maker: Maker, decision: Decision) -> EntryRequest | None:
+        try:
+            return maker.ingredients(decision.request)
+        except Refused as error:
+            self._fail(decision, error)
+        except Exception as error:
+            self._fail(decision, broken(error))
+        return None
+
+    def _rests_on(self, decision: Decision, composition: dict[str, int]) -> tuple[LockedReference, ...]:
+        return self._shelves[decision.request.formation.folders].relevant(decision.request.formation, composition)
+
+    def _fail(self, decision: Decision, error: Refused) -> None:
+        self._failed[decision.name] = error.findings
+        self._watch.failed(decision, error.findings)
+
+    def _kept(self, plan: Plan) -> dict[str, Record]:
+        """The earlier entries of species that failed, each with a remark, where they are wanted and there."""
+        found = {}
+        for decision in plan.stale:
+            old = plan.lock.species.get(decision.name) if plan.lock is not None else None
+            block = plan.blocks.get(decision.name, {})
+            if not self._keep_previous or decision.name not in self._failed or old is None or set(block) != set(FILES):
+                continue
+            if plan.lock is None or plan.lock.standard_pressure_Pa != _pressure_Pa(self._manifest):
+                continue
+            why = refusals(self._failed[decision.name]) or self._failed[decision.name]
+            texts = {f: with_remark(f, block[f], f"{_KEPT}: {why[0].text}", _KEPT) for f in FILES}
+            found[decision.name] = _with_texts(Record(replace(old, kept=why[0].code), texts))
+            self._watch.kept(decision)
+        return found
+
+    # --- the release ----------------------------------------------------------------------------------------------
+
+    def _write(self, plan: Plan, fresh: dict[str, Record]) -> bool:
+        """Compose the files and switch the release; whether it is another one than before."""
+        release = self._manifest.mechanism.release
+        together = self._together(plan, fresh)
+        if not together:
+            return False
+        species = {record.locked.name: record.locked for record in together}
+        elements = dict.fromkeys(symbol for record in together for symbol in _charged(record))
+        ends = [record.locked.temperatures_K for record in together]
+        texts = whole_texts([record.texts for record in together], ends, list(elements))
+        lock = Lock(
+            mechanism=self._manifest.mechanism.name,
+            tool=__version__,
+            fingerprint=tool_fingerprint(),
+            standard_pressure_Pa=_pressure_Pa(self._manifest),
+            species=species,
+            references=tuple(sorted({r for record in together for r in record.rests_on})),
+        )
+        document = lock_document(lock)
+        whole = {**texts, LOCK_NAME: document_text(document)}
+        files = {name: text.encode() for name, text in whole.items()}
+        if files == self._before:
+            return False
+        switch(release.path, files)
+        self._library.store.put({_lock_key(whole[LOCK_NAME]): json.dumps(document, ensure_ascii=False).encode()})
+        return True
+
+    def _together(self, plan: Plan, fresh: dict[str, Record]) -> list[Record]:
+        """The records of the new release in the order of its species: made now, kept, or as they were."""
+        found = []
+        for decision in plan.decisions:
+            if decision.name in fresh:
+                found.append(fresh[decision.name])
+            elif not decision.reasons and plan.lock is not None:
+                old = plan.lock.species[decision.name]
+                rests_on = self._rests_on(decision, dict(old.composition))
+                found.append(Record(old, plan.blocks[decision.name], rests_on))
+        return found
+
+
+def _lock_key(text: str) -> str:
+    return f"lock:{hashlib.sha256(text.encode()).hexdigest()}"
+
+
+def _text(data: bytes) -> str:
+    return data.decode("utf-8", "replace").replace("\r\n", "\n")
+
+
+def _pressure_Pa(manifest: Manifest) -> float:
+    from heatwright.constants import ATMOSPHERE_PA, BAR_PA
+
+    pressures = {request.model.pressure for request in manifest.species}
+    return ATMOSPHERE_PA if pressures == {"1atm"} else BAR_PA
+
+
+def _charged(record: Record) -> list[str]:
+    """The element symbols of a species, with ``E`` for an ion."""
+    return [*record.locked.composition, *(["E"] if record.locked.charge else [])]
+
+
+def _unfit(entry: Entry) -> Refused | None:
+    """Why an entry must not be written: its name, or a heat capacity that is not positive."""
+    from heatwright.writing.formats import FORMATS
+
+    faults = (*FORMATS["nasa7"].name_findings(entry.name), *refusals(entry.findings))
+    return Refused(faults) if faults else None
+
+
+def _with_texts(record: Record) -> Record:
+    from heatwright.project.texts import text_hash
+
+    return replace(record, locked=replace(record.locked, texts={f: text_hash(record.texts[f]) for f in FILES}))

@@ -1,0 +1,133 @@
+"""Molecules and what is found about them as bytes: JSON beside the raw numbers of arrays, compressed, with a checksum.
+
+Only the types in :func:`_types` can come out of such bytes, whatever they hold: nothing in them is ever executed.
+"""
+
+from __future__ import annotations
+
+import json
+import zlib
+from collections.abc import Callable, Mapping
+from dataclasses import fields
+from functools import cache
+from typing import Any, Final
+
+import numpy as np
+
+_MARK: Final = b"HW1"
+_DTYPES: Final = ("float64", "int64", "bool", "int32", "int16", "int8", "uint8")
+
+
+_SCALARS: Final = frozenset({str, int, float, bool, type(None)})
+
+
+class Unreadable(ValueError):
+    """The bytes were not written by :func:`encoded`, or are damaged."""
+
+
+@cache
+def _types() -> dict[str, tuple[type, tuple[str, ...]]]:
+    """The dataclasses that may be encoded, by name, with the names of their fields."""
+    from heatwright.findings import Finding
+    from heatwright.molecule import DiatomicConstants, Level, Molecule, PrintedThermo, Source, Stated
+    from heatwright.reading.torsion_scans import TorsionBarrier, TorsionScan
+    from heatwright.structure.inertia import Inertia
+    from heatwright.structure.operations import Operations
+    from heatwright.structure.symmetry import Symmetry
+
+    known = (Finding, DiatomicConstants, Level, Molecule, PrintedThermo, Source, Stated, TorsionBarrier, TorsionScan)
+    return {c.__name__: (c, tuple(f.name for f in fields(c))) for c in (*known, Inertia, Operations, Symmetry)}
+
+
+def encoded(value: object) -> bytes:
+    """*value* as bytes; the same value gives the same bytes.
+
+    Raises TypeError for a type that is not known.
+
+    >>> decoded(encoded((1.5, None, "a", {"b": np.array([1.0, 2.0])})))
+    (1.5, None, 'a', {'b': array([1., 2.])})
+    """
+    arrays: list[bytes] = []
+    text = json.dumps(_plain(value, arrays), ensure_ascii=False, separators=(",", ":")).encode()
+    body = len(text).to_bytes(8, "little") + text + b"".join(arrays)
+    return _MARK + zlib.crc32(body).to_bytes(4, "little") + zlib.compress(body, 1)
+
+
+def decoded(data: bytes) -> Any:
+    """What :func:`encoded` was given; arrays are read-only.  Raises Unreadable when the bytes are damaged."""
+    try:
+        if not data.startswith(_MARK):
+            raise Unreadable("the bytes are not of this format")
+        body = zlib.decompress(data[7:])
+        if zlib.crc32(body) != int.from_bytes(data[3:7], "little"):
+            raise Unreadable("the checksum is wrong")
+        size = int.from_bytes(body[:8], "little")
+        return _value(json.loads(body[8 : 8 + size]), body, 8 + size)
+    except Unreadable:
+        raise
+    except Exception as error:  # whatever damaged bytes provoke
+        raise Unreadable(f"{type(error).__name__}: {error}") from error
+
+
+def _plain(value: Any, arrays: list[bytes]) -> Any:
+    """*value* with lists for tuples, and one-key objects for what JSON has no word for."""
+    if value is None or isinstance(value, bool | str):
+        return value
+    if isinstance(value, int | np.integer):
+        return int(value)
+    if isinstance(value, float):
+        return float(value)
+    if isinstance(value, tuple):
+        return [_plain(item, arrays) for item in value]
+    if isinstance(value, np.ndarray):
+        return _array(value, arrays)
+    if isinstance(value, Mapping):
+        return {"%": {str(key): _plain(item, arrays) for key, item in value.items()}}
+    name = type(value).__name__
+    kind = _types().get(name)
+    if kind is None or kind[0] is not type(value):
+        raise TypeError(f"{name} has no place in the store")
+    return {"@": [name, *(_plain(getattr(value, field), arrays) for field in kind[1])]}
+
+
+def _array(value: np.ndarray[Any, Any], arrays: list[bytes]) -> dict[str, Any]:
+    if value.dtype.name not in _DTYPES:
+        raise TypeError(f"arrays of {value.dtype} have no place in the store")
+    data = np.ascontiguousarray(value).tobytes()
+    start = sum(map(len, arrays))
+    arrays.append(data)
+    return {"#": [value.dtype.name, list(value.shape), start]}
+
+
+def _value(plain: Any, body: bytes, start: int) -> Any:
+    kind = type(plain)
+    if kind in _SCALARS:
+        return plain
+    if kind is list:
+        return tuple([item if type(item) in _SCALARS else _value(item, body, start) for item in plain])
+    ((mark, inside),) = plain.items()
+    return _MARKED[mark](inside, body, start)
+
+
+def _object(inside: list[Any], body: bytes, start: int) -> Any:
+    kind, names = _types()[inside[0]]
+    if len(names) != len(inside) - 1:
+        raise Unreadable(f"{inside[0]} has {len(inside) - 1} fields")
+    return kind(**dict(zip(names, _value(inside[1:], body, start), strict=True)))
+
+
+def _mapping(inside: dict[str, Any], body: bytes, start: int) -> dict[str, Any]:
+    return {key: _value(item, body, start) for key, item in inside.items()}
+
+
+def _numbers(inside: list[Any], body: bytes, start: int) -> np.ndarray[Any, Any]:
+    name, shape, offset = inside
+    if name not in _DTYPES:
+        raise Unreadable(f"an array of {name}")
+    count = 1
+    for n in shape:
+        count *= n
+    return np.frombuffer(body, dtype=name, count=count, offset=start + offset).reshape(shape)
+
+
+_MARKED: Final[dict[str, Callable[..., Any]]] = {"@": _object, "%": _mapping, "#": _numbers}

@@ -1,0 +1,184 @@
+"""The library of a build: what is known of every file, from the store or from workers that read it."""
+
+from __future__ import annotations
+
+import json
+import os
+import stat
+import time
+from collections.abc import Callable, Iterable
+from typing import TYPE_CHECKING, Any, Final
+
+from heatwright.findings import Finding, Refused, refuse
+from heatwright.project.executors import Engine, Lost, run
+from heatwright.project.store import Store
+from heatwright.project.tasks import NAME, ReadResult, ReadTask, content_hash, do_task, read_key, renamed
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, Molecule
+    from heatwright.reading.torsion_scans import TorsionScan
+    from heatwright.structure.inertia import Inertia
+    from heatwright.structure.symmetry import Symmetry
+
+_SETTLED_NS: Final = 2_000_000_000
+"""A file changed less than this before it was hashed could change again without its times telling."""
+
+Progress = Callable[[int, int, str], None]
+"""Called with the number of files read, that of all to be read, and the path of the one just read."""
+
+
+class Library:
+    """Hashes, molecules, scans and rigid bodies by file; the driver's own, not for workers."""
+
+    def __init__(self, store: Store, engine: Engine) -> None:
+        self.store = store
+        self._engine = engine
+        self._hashes: dict[str, str] = {}
+        self._failed: dict[str, Finding] = {}
+
+    def hashes(self, paths: Iterable[str]) -> dict[str, str]:
+        """SHA-256 by absolute path, empty where there is nothing to be read; from the store where no time changed."""
+        wanted = list(dict.fromkeys(paths))
+        fresh = [path for path in wanted if path not in self._hashes]
+        known = self.store.get(f"hash:{path}" for path in fresh)
+        learnt: dict[str, bytes] = {}
+        for path in fresh:
+            before = _times(path)
+            kept = _kept_hash(known.get(f"hash:{path}"), before)
+            self._hashes[path] = kept or content_hash(path)
+            if not kept and before is not None and before == _times(path) and time.time_ns() - before[1] > _SETTLED_NS:
+                learnt[f"hash:{path}"] = json.dumps([*before, self._hashes[path]]).encode()
+        if learnt:
+            self.store.put(learnt)
+        return {path: self._hashes[path] for path in wanted}
+
+    def sha256(self, path: str) -> str:
+        """SHA-256 of one file."""
+        return self.hashes([path])[path]
+
+    def key(self, task: ReadTask) -> str:
+        """The store's key of what a task gives now."""
+        return read_key(task, self.sha256(task.path))
+
+    def read(self, tasks: Iterable[ReadTask], progress: Progress) -> None:
+        """Have everything in the store that the tasks give and that is not there yet."""
+        wanted = {self.key(task): task for task in tasks if self.sha256(task.path)}
+        known = self.store.has(wanted)
+        missing = [task for key, task in wanted.items() if key not in known]
+        if not missing:
+            return
+        progress(0, len(missing), "")
+        for count, (task, result) in enumerate(run(self._engine, do_task, missing), start=1):
+            self._take(task, result)
+            progress(count, len(missing), task.path)
+        self.store.flush()
+
+    def _take(self, task: ReadTask, result: ReadResult | Lost) -> None:
+        key = self.key(task)
+        if isinstance(result, Lost):
+            action = "Look at the file and at the memory of the machine, and build again."
+            self._failed[key] = refuse("worker-lost", f"it could not be read: {result.words}", action=action)
+        elif result.sha256 != self.sha256(task.path):
+            action = "Build again when it is at rest."
+            self._failed[key] = refuse("file-changed", "the file changed while it was being read", action=action)
+        elif result.broken:
+            words = f"reading it ended in an error that should not happen ({result.broken})"
+            self._failed[key] = refuse("task-broke", words, action="Please report it with the file.")
+        else:
+            mark = b"R" if result.failure else b"M"
+            self.store.put({key: mark + (result.failure or result.value), **dict(result.bodies)})
+
+    def molecule(self, task: ReadTask, shown: str) -> Molecule:
+        """The molecule of an output that is called *shown*; raises Refused."""
+        from dataclasses import replace
+
+        molecule: Molecule = self._value(task, shown)
+        changes: dict[str, Any] = {"source": replace(molecule.source, file=shown)}
+        if any(NAME in f.found or NAME in f.where or NAME in f.action for f in molecule.findings):
+            changes["findings"] = renamed(molecule.findings, NAME, shown)
+        return molecule.but(**changes)
+
+    def scan(self, task: ReadTask, shown: str) -> TorsionScan:
+        """The scan of a task whose file or folder is called *shown*; raises Refused."""
+        from dataclasses import replace
+
+        scan: TorsionScan = self._value(task, shown)
+        molecules = tuple(
+            m.but(source=replace(m.source, file=m.source.file.replace(NAME, shown))) for m in scan.molecules
+        )
+        return replace(scan, source=shown, molecules=molecules)
+
+    def _value(self, task: ReadTask, shown: str) -> Any:
+        from heatwright.project.coding import Unreadable, decoded
+
+        if not self.sha256(task.path):
+            raise Refused(self._unreadable(task, shown))
+        key = self.key(task)
+        for _ in range(2):
+            if key in self._failed:
+                raise Refused([self._failed[key].at(shown)])
+            data = self.store.get([key]).get(key)
+            try:
+                if data is not None:
+                    value = decoded(data[1:])
+                    break
+            except Unreadable:
+                self.store.drop(key)
+            self._take(task, do_task(task))
+        else:
+            words = "what was read of it could not be kept"
+            raise Refused([refuse("task-broke", words, where=shown, action="Build again.")])
+        if data[:1] == b"R":
+            raise Refused(renamed(value, NAME, shown))
+        return value
+
+    def _unreadable(self, task: ReadTask, shown: str) -> tuple[Finding, ...]:
+        """Why there is nothing to read, in the reader's own words; such failures are not kept."""
+        from heatwright.project.coding import decoded
+
+        result = do_task(task)
+        if result.failure:
+            return renamed(decoded(result.failure), NAME, shown)
+        return (
+            refuse("file-missing", "the file cannot be read", where=shown, action="Give the path of an output file."),
+        )
+
+    def body(self, molecule: Molecule, masses_u: FloatArray, tolerance_A: float) -> tuple[Inertia, Symmetry]:
+        """Rotor and symmetry as :func:`heatwright.partition.rigid.rigid_body` finds them, remembered."""
+        from heatwright.partition.rigid import rigid_body
+        from heatwright.project.coding import Unreadable, decoded, encoded
+        from heatwright.project.tasks import body_key
+
+        key = body_key(molecule, masses_u, tolerance_A)
+        data = self.store.get([key]).get(key)
+        if data is not None:
+            try:
+                found: tuple[Inertia, Symmetry] = decoded(data)
+                return found
+            except Unreadable:
+                self.store.drop(key)
+        found = rigid_body(molecule, masses_u, tolerance_A)
+        self.store.put({key: encoded(found)})
+        return found
+
+
+def _times(path: str) -> tuple[int, int, int, int] | None:
+    """Size, times and number of a plain file; None for anything else (a folder's content has no time of its own)."""
+    try:
+        found = os.stat(path)
+    except OSError:
+        return None
+    if not stat.S_ISREG(found.st_mode):
+        return None
+    return found.st_size, max(found.st_mtime_ns, found.st_ctime_ns), found.st_mtime_ns, found.st_ino
+
+
+def _kept_hash(data: bytes | None, times: tuple[int, int, int, int] | None) -> str:
+    """The hash that was kept for a file with these times, else an empty text."""
+    if data is None or times is None:
+        return ""
+    try:
+        *kept, sha256 = json.loads(data)
+    except ValueError:
+        return ""
+    return str(sha256) if tuple(kept) == times else ""
