@@ -16,6 +16,7 @@ from heatwright.cli.crosscheck import crosscheck
 from heatwright.cli.entry import entry
 from heatwright.cli.explain import explain
 from heatwright.cli.mend import mend
+from heatwright.cli.plot import plot
 from heatwright.cli.reactions import reactions
 from heatwright.cli.references import references
 from heatwright.cli.report import report
@@ -32,7 +33,7 @@ INTERRUPTED = 130
 
 SECTIONS = {
     "One molecule": ("survey", "table", "entry", "rotors"),
-    "A mechanism": ("start", "build", "crosscheck", "report"),
+    "A mechanism": ("start", "build", "crosscheck", "report", "plot"),
     "Existing entries": ("audit", "mend"),
     "Looking things up": ("scales", "references", "reactions", "explain", "samples"),
 }
@@ -77,6 +78,7 @@ for _command in (
     build,
     crosscheck,
     report,
+    plot,
     audit,
     mend,
     scales,

@@ -97,7 +97,7 @@ def _made(outputs: tuple[str, ...], options: dict[str, Any], reporter: Reporter)
         return {}
     from heatwright.findings import Refused
     from heatwright.report.documents import Shown
-    from heatwright.report.species import species_of
+    from heatwright.report.taking import species_of
     from heatwright.writing.document import species_document
 
     jobs = entry_jobs(outputs, options)

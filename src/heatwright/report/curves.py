@@ -245,14 +245,33 @@ def _strip(
     plot = frame(x, y, ticks, (-step, 0.0, step), x_name="T / K" if last else "")
     marks = list(plot.marks)
     left, right, top = x.start, x.end, ends[1]
-    header = f"largest {worst:.3g}"
+    header = f"largest {1000.0 * worst:.3g}"
     if bound is not None:
         edge = [y(-1000.0 * bound), y(1000.0 * bound)]
         marks.append(area([(left, edge[0]), (right, edge[0]), (right, edge[1]), (left, edge[1])], "band"))
         marks.append(segments([((left, e), (right, e)) for e in edge], "bound"))
-        header += f" · best possible {bound:.3g} (band)"
+        header += f" · best possible {1000.0 * bound:.3g} (band)"
     marks.append(segments([((left, y(0.0)), (right, y(0.0)))], "zero"))
-    marks.append(line(curve(x, y, T, [1000.0 * v for v in values]), "polynomial"))
+    marks.append(line(curve(x, y, *_between(T, [1000.0 * v for v in values])), "polynomial"))
     marks.append(Words((left, top - 7.0), name, "name"))
     marks.append(Words((right, top - 7.0), header, "quiet", "end"))
     return marks
+
+
+def _between(T: Sequence[float], values: Sequence[float]) -> tuple[list[float], list[float]]:
+    """A smooth curve with one more point in each interval, by the cubic through the four around it (in ln T)."""
+    if len(T) < 4:
+        return list(T), list(values)
+    x = np.log(np.array(T))
+    first = np.clip(np.arange(len(T) - 1) - 1, 0, len(T) - 4)
+    nodes, heights = (np.array(v)[first[:, None] + np.arange(4)] for v in (x, values))
+    middle = (x[1:] + x[:-1]) / 2.0
+    between = np.zeros(len(middle))
+    for k in range(4):
+        others = [m for m in range(4) if m != k]
+        weight = np.prod([(middle - nodes[:, m]) / (nodes[:, k] - nodes[:, m]) for m in others], axis=0)
+        between += weight * heights[:, k]
+    every = np.empty(2 * len(T) - 1), np.empty(2 * len(T) - 1)
+    every[0][::2], every[0][1::2] = T, np.exp(middle)
+    every[1][::2], every[1][1::2] = values, between
+    return every[0].tolist(), every[1].tolist()

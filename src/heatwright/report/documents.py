@@ -8,7 +8,8 @@ from typing import Any
 
 from heatwright.findings import Refused, refuse
 from heatwright.reading.files import read_text
-from heatwright.report.species import Species, species_of
+from heatwright.report.species import Species
+from heatwright.report.taking import species_of
 from heatwright.report.values import Values
 from heatwright.writing.document import JSON_VERSION
 

@@ -113,7 +113,7 @@ def figure_css() -> str:
         f".fig{{font-family:{SANS};font-variant-numeric:tabular-nums}}",
         ".fig .m{text-anchor:middle}.fig .e{text-anchor:end}",
         *(
-            f"{_element(role, look)}.{role}{{{_css(look, 'round' if role in _ROUND else '')}}}"
+            f"{_element(role, look)}.{role}{{{_css(look, 'round' if is_round(role) else '')}}}"
             for role, look in LOOKS.items()
         ),
     ]
@@ -122,6 +122,11 @@ def figure_css() -> str:
 
 _ROUND: Final = ("ring", "hole", "dot", "bond", "bonds", "turn")
 """Strokes with round ends: dots are strokes without length."""
+
+
+def is_round(role: str) -> bool:
+    """Whether the strokes of a role have round ends."""
+    return role in _ROUND
 
 
 def _element(role: str, look: Look) -> str:

@@ -12,7 +12,7 @@ from heatwright.findings import Finding
 from heatwright.polynomial.nasa7 import Nasa7
 from heatwright.reading.entry_file import EntryFile, ThermoEntry, decoded
 from heatwright.report.documents import Failed, Shown
-from heatwright.report.species import species_of
+from heatwright.report.taking import species_of
 from heatwright.writing.evidence import evidence_of_record
 
 
