@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from typing import Final
 
 import numpy as np
@@ -97,7 +97,7 @@ def _cp_marks(
     for half in curves:
         room.curve(half)
     room.points += dots
-    marks: list[Mark] = []
+    marks: list[Mark] = list(_unsure(species, plot))
     if limit is not None and plot.y.low < limit < plot.y.high:
         at = plot.y(limit)
         marks.append(segments([((left, at), (right, at))], "limit"))
@@ -119,6 +119,21 @@ def _cp_marks(
         words = room.place(*what) if what else None
         marks += [words] if words else []
     return marks
+
+
+def _unsure(species: Species, plot: Frame) -> Iterator[Mark]:
+    """The band of two standard uncertainties about the table, where there are any."""
+    table = species.table
+    if table is None or not table.u_cp_J_mol_K:
+        return
+    R = GAS_CONSTANT_J_MOL_K
+    inside = [i for i, T in enumerate(table.T_K) if plot.x.low <= T <= plot.x.high]
+    T = [table.T_K[i] for i in inside]
+    edges = [
+        curve(plot.x, plot.y, T, [(table.cp_J_mol_K[i] + sign * table.u_cp_J_mol_K[i]) / R for i in inside])
+        for sign in (2.0, -2.0)
+    ]
+    yield area([*edges[0], *reversed(edges[1])], "band")
 
 
 def _beside(x: float, plot: Frame) -> list[tuple[Point, str]]:
@@ -146,7 +161,8 @@ def _cp_caption(species: Species) -> str:
     p = species.polynomial
     what = [f"Heat capacity Cp°/R of {species.name}"]
     if species.table:
-        what.append("circles: table from the partition function")
+        unsure = ", shaded: two standard uncertainties" if species.table.u_cp_J_mol_K else ""
+        what.append(f"circles: table from the partition function{unsure}")
     if p is not None:
         what.append(f"line: two-range polynomial, {p.t_low_K:g}–{p.t_common_K:g}–{p.t_high_K:g} K")
     if species.classical_limit_R is not None:
@@ -160,7 +176,7 @@ def _function_rows(species: Species) -> tuple[tuple[str, ...], tuple[tuple[str, 
     named: list[tuple[str, Sequence[float]]] = []
     if table is not None:
         T = table.T_K
-        named = [("Cp°, table", table.cp_J_mol_K)]
+        named = [("Cp°, table", table.cp_J_mol_K), ("± standard uncertainty", table.u_cp_J_mol_K)]
         inside = p is not None and p.t_low_K <= T[0] and T[-1] <= p.t_high_K
         named += [("Cp°, polynomial", (R * p.cp_R(np.array(T))).tolist())] if p is not None and inside else []
         named += [("S°", table.s_J_mol_K), ("H°−H°(298.15), kJ/mol", table.h_minus_h298_kJ_mol)]

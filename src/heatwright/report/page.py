@@ -44,7 +44,7 @@ class Page:
 
 def page_html(page: Page) -> str:
     """The page as text."""
-    anchors = anchors_of([s.name for s in page.species])
+    anchors = [f"s-{anchor}" for anchor in anchors_of([s.name for s in page.species])]
     orders = _orders(page.species)
     shown = [
         _shown(i, s, anchor, order)
@@ -97,12 +97,15 @@ def anchors_of(names: Sequence[str]) -> list[str]:
     >>> anchors_of(["CH3OH", "CH2(S)", "CH2-S-"])
     ['CH3OH', 'CH2-S-', 'CH2-S--2']
     """
-    taken: dict[str, int] = {}
+    taken: set[str] = set()
     out = []
     for name in names:
         plain = re.sub(r"[^A-Za-z0-9_-]", "-", name) or "species"
-        taken[plain] = taken.get(plain, 0) + 1
-        out.append(plain if taken[plain] == 1 else f"{plain}-{taken[plain]}")
+        n = 1
+        while (anchor := plain if n == 1 else f"{plain}-{n}") in taken:
+            n += 1
+        taken.add(anchor)
+        out.append(anchor)
     return out
 
 
@@ -112,7 +115,7 @@ def formula_markup(formula: str) -> Markup:
     >>> formula_markup("CH4O"), formula_markup("H3O+")
     (Markup('CH<sub>4</sub>O'), Markup('H<sub>3</sub>O<sup>+</sup>'))
     """
-    plain, charge = re.fullmatch(r"(.*?)([+-]\d*|\d*[+-])?", formula, re.DOTALL).groups()  # type: ignore[union-attr]
+    plain, charge = re.fullmatch(r"(.*?)([+-]\d*)?", formula, re.DOTALL).groups()  # type: ignore[union-attr]
     body = re.sub(r"(\d+)", r"<sub>\1</sub>", str(escape(plain)))
     return Markup(body + (f"<sup>{escape(charge)}</sup>" if charge else ""))
 
