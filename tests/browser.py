@@ -8,6 +8,7 @@ import os
 import select
 import shutil
 import subprocess
+import sys
 import tempfile
 import time
 from collections.abc import Callable
@@ -21,6 +22,14 @@ needs_chromium = pytest.mark.skipif(
     CHROMIUM is None, reason="Chromium is not installed (Debian: apt-get install chromium)"
 )
 PATIENCE_S = 60.0
+_ON_3_AND_4 = """
+import fcntl, os, sys
+read, write = (fcntl.fcntl(int(fd), fcntl.F_DUPFD, 10) for fd in sys.argv[1:3])
+os.dup2(read, 3)
+os.dup2(write, 4)
+os.execv(sys.argv[3], sys.argv[3:])
+"""
+"""Chromium listens at descriptor 3 and answers at 4."""
 
 
 class Browser:
@@ -28,16 +37,16 @@ class Browser:
 
     def __init__(self) -> None:
         assert CHROMIUM is not None
-        self._profile = tempfile.TemporaryDirectory(prefix="chromium-", ignore_cleanup_errors=True)
+        self._profile = tempfile.mkdtemp(prefix="chromium-")
         to_browser, self._write = os.pipe()
         self._read, from_browser = os.pipe()
         command = [
             CHROMIUM, "--headless=new", "--no-sandbox", "--disable-gpu", "--disable-dev-shm-usage", "--hide-scrollbars",
             "--remote-debugging-pipe", "--no-first-run", "--disable-background-networking", "--disable-extensions",
-            f"--user-data-dir={self._profile.name}", "about:blank",
+            f"--user-data-dir={self._profile}", "about:blank",
         ]  # fmt: skip
         self._process = subprocess.Popen(
-            ["sh", "-c", f'exec "$@" 3<&{to_browser} 4>&{from_browser}', "sh", *command],
+            [sys.executable, "-c", _ON_3_AND_4, str(to_browser), str(from_browser), *command],
             pass_fds=(to_browser, from_browser),
             stdout=subprocess.DEVNULL,
             stderr=subprocess.DEVNULL,
@@ -59,7 +68,7 @@ class Browser:
         self._process.wait(20)
         os.close(self._write)
         os.close(self._read)
-        self._profile.cleanup()
+        shutil.rmtree(self._profile, ignore_errors=True)
 
     def open(self, page: Path, *, width: int = 1280, height: int = 900, dark: bool = False, media: str = "") -> float:
         """Shows a file; the seconds until it was loaded and drawn."""
@@ -157,7 +166,8 @@ LOOK = r"""
       const [a, b] = [words[i][1], words[j][1]];
       const across = Math.min(a.x + a.width, b.x + b.width) - Math.max(a.x, b.x);
       const down = Math.min(a.y + a.height, b.y + b.height) - Math.max(a.y, b.y);
-      if (across > 0.5 && down > 2.5) out.faults.push(name(svg) + ': "' + words[i][0] + '" and "' + words[j][0] + '" overlap');
+      const both = '"' + words[i][0] + '" and "' + words[j][0] + '" overlap';
+      if (across > 0.5 && down > 2.5) out.faults.push(name(svg) + ': ' + both);
     }
     const shown = svg.getBoundingClientRect();
     for (const t of svg.querySelectorAll('text:not(.small-letter)'))

@@ -45,12 +45,17 @@ if TYPE_CHECKING:
     from heatwright.reading.outputs import read_output
     from heatwright.reading.single_point import with_energy
     from heatwright.reading.torsion_scans import read_torsion
+    from heatwright.report.documents import shown_documents
+    from heatwright.report.figures import figures_of
+    from heatwright.report.page import Page, page_html
+    from heatwright.report.svg import standalone_svg
     from heatwright.scales import PublishedFactor, ScaleChoice, choose_published, published_factors
     from heatwright.structure.bond_orders import bonding
     from heatwright.structure.isotopes import parse_isotope, with_isotopes
     from heatwright.structure.modes import projected_modes
     from heatwright.structure.symmetry import Symmetry, symmetry
     from heatwright.writing.context import entries_context
+    from heatwright.writing.evidence import evidence
     from heatwright.writing.render import render_format
 
 _HOME = {
@@ -73,6 +78,7 @@ _HOME = {
     "ModelOptions": "partition.choices",
     "Molecule": "molecule",
     "Nasa7": "polynomial.nasa7",
+    "Page": "report.page",
     "PublishedFactor": "scales",
     "ReferenceSet": "formation.reference_set",
     "Refused": "findings",
@@ -91,6 +97,8 @@ _HOME = {
     "collect_atoms": "formation.atomization",
     "collect_references": "formation.reference_set",
     "entries_context": "writing.context",
+    "evidence": "writing.evidence",
+    "figures_of": "report.figures",
     "find_reactions": "formation.reactions",
     "fit_nasa7": "polynomial.fit",
     "fit_quality": "polynomial.quality",
@@ -101,6 +109,7 @@ _HOME = {
     "make_entry": "entry",
     "mend_entries": "audit.mend",
     "mixture_model": "partition.mixing",
+    "page_html": "report.page",
     "parse_enthalpy": "formation.formation",
     "parse_entries": "reading.entries",
     "parse_isotope": "structure.isotopes",
@@ -113,6 +122,8 @@ _HOME = {
     "reference_species": "formation.species_references",
     "render_format": "writing.render",
     "replace_entries": "reading.entries",
+    "shown_documents": "report.documents",
+    "standalone_svg": "report.svg",
     "symmetry": "structure.symmetry",
     "with_energy": "reading.single_point",
     "with_isotopes": "structure.isotopes",
@@ -139,6 +150,7 @@ __all__ = [
     "ModelOptions",
     "Molecule",
     "Nasa7",
+    "Page",
     "PublishedFactor",
     "ReferenceSet",
     "Refused",
@@ -158,6 +170,8 @@ __all__ = [
     "collect_atoms",
     "collect_references",
     "entries_context",
+    "evidence",
+    "figures_of",
     "find_reactions",
     "fit_nasa7",
     "fit_quality",
@@ -168,6 +182,7 @@ __all__ = [
     "make_entry",
     "mend_entries",
     "mixture_model",
+    "page_html",
     "parse_enthalpy",
     "parse_entries",
     "parse_isotope",
@@ -180,6 +195,8 @@ __all__ = [
     "reference_species",
     "render_format",
     "replace_entries",
+    "shown_documents",
+    "standalone_svg",
     "symmetry",
     "with_energy",
     "with_isotopes",

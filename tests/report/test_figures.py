@@ -64,7 +64,7 @@ def test_heat_capacity(name: str) -> None:
     x, y = temperatures(shown()[name], RIGHT), y_scale(figure, 238.0, 26.0)
     (dots,) = role(figure, "ring")
     T, cp = places(dots.points, x, y).T
-    assert T == pytest.approx(entry.table.T_K, rel=1e-9)
+    assert pytest.approx(entry.table.T_K, rel=1e-9) == T
     assert cp == pytest.approx(entry.table.cp_J_mol_K / R, abs=2e-3)
     (curve,) = role(figure, "polynomial")
     for points, a in zip(curve.lines, (entry.polynomial.low, entry.polynomial.high), strict=True):

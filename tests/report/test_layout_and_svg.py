@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+from itertools import pairwise
 from math import hypot
 from xml.etree import ElementTree
 
@@ -24,7 +25,7 @@ def test_spread_keeps_order_and_distance(wanted: list[float], gap: float) -> Non
     placed = spread(wanted, gap, low, high)
     order = sorted(range(len(wanted)), key=lambda i: (wanted[i], i))
     ordered = [placed[i] for i in order]
-    assert all(b - a >= gap - 1e-6 for a, b in zip(ordered, ordered[1:], strict=False))
+    assert all(b - a >= gap - 1e-6 for a, b in pairwise(ordered))
     apart = np.diff(sorted(wanted))
     if len(wanted) == 1 or apart.min() >= gap:
         assert placed == pytest.approx(wanted)
@@ -103,7 +104,7 @@ def test_rounding_does_not_add_up(points: list[tuple[float, float]]) -> None:
     assert hypot(back[-1][0] - points[-1][0], back[-1][1] - points[-1][1]) <= 0.0708
 
 
-def figure(text: str = "a < b & \"c\"") -> Figure:
+def figure(text: str = 'a < b & "c"') -> Figure:
     marks = (
         line([(0.0, 0.0), (10.0, 5.0)], "axis"),
         area([(0.0, 0.0), (10.0, 5.0), (10.0, 9.0)], "band"),
@@ -124,7 +125,10 @@ def test_both_texts_are_well_formed_whatever_the_words() -> None:
         assert [e.tag for e in root.iter("script")] == []
         assert root.find("title").text == hostile
         assert root.find(".//text").text == hostile
-        assert root.attrib["aria-labelledby"].split() == [root.find("title").attrib["id"], root.find("desc").attrib["id"]]
+        assert root.attrib["aria-labelledby"].split() == [
+            root.find("title").attrib["id"],
+            root.find("desc").attrib["id"],
+        ]
 
 
 def test_the_file_stands_alone_and_knows_both_schemes() -> None:

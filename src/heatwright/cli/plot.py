@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
-from heatwright.cli.reporter import Reporter
+from heatwright.cli.reporter import SOME_FAILED, Reporter
 from heatwright.cli.showing import inputs_argument, showing_options, shown_inputs
 
 if TYPE_CHECKING:
@@ -74,7 +74,7 @@ def plot(
         _write(place, named, format_name, force)
         reporter.say(f"{len(named)} figure{'s' if len(named) > 1 else ''} and {CAPTIONS} written to {folder}.")
     reporter.tally(len(shown.species), "plotted")
-    ctx.exit(reporter.exit_code or (1 if shown.species and not named else 0))
+    ctx.exit(reporter.exit_code or (SOME_FAILED if shown.species and not named else 0))
 
 
 def _folder(folder: str) -> Path:
