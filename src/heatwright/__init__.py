@@ -38,8 +38,13 @@ if TYPE_CHECKING:
     from heatwright.polynomial.fit import fit_nasa7
     from heatwright.polynomial.nasa7 import Nasa7
     from heatwright.polynomial.quality import FitQuality, fit_quality
+    from heatwright.project.changes import Change, Comparison, compare_sets
+    from heatwright.project.effects import mechanism_effect
     from heatwright.project.manifest import load_manifest
     from heatwright.project.manifest_types import Manifest, SpeciesRequest
+    from heatwright.project.mechanism import read_mechanism
+    from heatwright.project.splice import splice
+    from heatwright.project.thermo_set import read_thermo_set
     from heatwright.reading.entries import parse_entries, read_entries, replace_entries
     from heatwright.reading.entry_file import EntryFile, ThermoEntry
     from heatwright.reading.outputs import read_output
@@ -60,6 +65,8 @@ if TYPE_CHECKING:
 
 _HOME = {
     "Audit": "audit.audit",
+    "Change": "project.changes",
+    "Comparison": "project.changes",
     "Contribution": "partition.contribution",
     "DiatomicConstants": "molecule",
     "EnergyChoices": "formation.choices",
@@ -96,6 +103,7 @@ _HOME = {
     "choose_published": "scales",
     "collect_atoms": "formation.atomization",
     "collect_references": "formation.reference_set",
+    "compare_sets": "project.changes",
     "entries_context": "writing.context",
     "evidence": "writing.evidence",
     "figures_of": "report.figures",
@@ -107,6 +115,7 @@ _HOME = {
     "formation_of": "formation.routes",
     "load_manifest": "project.manifest",
     "make_entry": "entry",
+    "mechanism_effect": "project.effects",
     "mend_entries": "audit.mend",
     "mixture_model": "partition.mixing",
     "page_html": "report.page",
@@ -117,12 +126,15 @@ _HOME = {
     "projected_modes": "structure.modes",
     "published_factors": "scales",
     "read_entries": "reading.entries",
+    "read_mechanism": "project.mechanism",
     "read_output": "reading.outputs",
+    "read_thermo_set": "project.thermo_set",
     "read_torsion": "reading.torsion_scans",
     "reference_species": "formation.species_references",
     "render_format": "writing.render",
     "replace_entries": "reading.entries",
     "shown_documents": "report.documents",
+    "splice": "project.splice",
     "standalone_svg": "report.svg",
     "symmetry": "structure.symmetry",
     "with_energy": "reading.single_point",
@@ -132,6 +144,8 @@ _HOME = {
 
 __all__ = [
     "Audit",
+    "Change",
+    "Comparison",
     "Contribution",
     "DiatomicConstants",
     "EnergyChoices",
@@ -169,6 +183,7 @@ __all__ = [
     "choose_published",
     "collect_atoms",
     "collect_references",
+    "compare_sets",
     "entries_context",
     "evidence",
     "figures_of",
@@ -180,6 +195,7 @@ __all__ = [
     "formation_of",
     "load_manifest",
     "make_entry",
+    "mechanism_effect",
     "mend_entries",
     "mixture_model",
     "page_html",
@@ -190,12 +206,15 @@ __all__ = [
     "projected_modes",
     "published_factors",
     "read_entries",
+    "read_mechanism",
     "read_output",
+    "read_thermo_set",
     "read_torsion",
     "reference_species",
     "render_format",
     "replace_entries",
     "shown_documents",
+    "splice",
     "standalone_svg",
     "symmetry",
     "with_energy",

@@ -220,6 +220,19 @@ CODES: Final[dict[str, str]] = {
     "mended": "An entry was refitted; what changed is said.",
     "not-mendable": "An entry is faulty, and mending cannot put it right.",
     "not-in-release": "Entries have no partner in the release they are compared with.",
+    # --- what changed, and back into the mechanism ----------------------------------------------------------------
+    "no-release": "A folder holds no release, or the files of a release contradict each other.",
+    "pressure-differs": "Entries for different standard pressures were compared, or were to be put into one file.",
+    "entry-edited": "An entry of a release is not the one that the lock file records.",
+    "enthalpy-scale": "Two files count enthalpies from different zeros for the elements; no reaction notices.",
+    "mechanism-wrong": "The phases, sections or equations of a mechanism cannot be read, or contradict each other.",
+    "mechanism-choice": "Which reactions of a mechanism were taken is said.",
+    "not-in-mechanism": "A species whose entry changed is in no reaction of the mechanism.",
+    "no-flame": "The flame temperature cannot be computed; why is said.",
+    "other-species": "Two entries of one name have different elements or counts.",
+    "comment-kept": "Comment lines above a replaced entry were kept; they may speak of the old one.",
+    "splice-failed": "A file with new entries did not read back as it should, so it was not written.",
+    "not-declared": "A species was added to a file whose mechanism does not declare it.",
 }
 """Every code a finding may carry, and what it means."""
 

@@ -12,6 +12,7 @@ import click
 from heatwright import __version__
 from heatwright.cli.audit import audit
 from heatwright.cli.build import build
+from heatwright.cli.compare import compare
 from heatwright.cli.crosscheck import crosscheck
 from heatwright.cli.entry import entry
 from heatwright.cli.explain import explain
@@ -23,6 +24,7 @@ from heatwright.cli.report import report
 from heatwright.cli.rotors import rotors
 from heatwright.cli.samples import samples
 from heatwright.cli.scales import scales
+from heatwright.cli.splice import splice
 from heatwright.cli.start import start
 from heatwright.cli.survey import survey
 from heatwright.cli.table import table
@@ -33,8 +35,8 @@ INTERRUPTED = 130
 
 SECTIONS = {
     "One molecule": ("survey", "table", "entry", "rotors"),
-    "A mechanism": ("start", "build", "crosscheck", "report", "plot"),
-    "Existing entries": ("audit", "mend"),
+    "A mechanism": ("start", "build", "compare", "crosscheck", "report", "plot"),
+    "Existing entries": ("audit", "mend", "splice"),
     "Looking things up": ("scales", "references", "reactions", "explain", "samples"),
 }
 """How ``--help`` groups the commands."""
@@ -76,11 +78,13 @@ for _command in (
     rotors,
     start,
     build,
+    compare,
     crosscheck,
     report,
     plot,
     audit,
     mend,
+    splice,
     scales,
     references,
     reactions,
