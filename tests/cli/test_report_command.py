@@ -3,12 +3,16 @@
 from __future__ import annotations
 
 import json
+import shutil
 import subprocess
 import sys
 from pathlib import Path
 from xml.etree import ElementTree
 
 import pytest
+
+from heatwright.cli.main import main
+from heatwright.resources import sample_outputs
 
 GIVEN = ("--dHf298", "-200.7 kJ/mol", "--source", "ATcT 1.112")
 
@@ -64,7 +68,7 @@ def test_a_thermo_file_is_shown_with_its_audit(run, samples: Path, tmp_path: Pat
     assert "<h1>therm.dat</h1>" in done.out
     assert done.out.count("<figure>") == 1
     # what stood in the comment above the entry is shown as its evidence
-    assert "harmonic oscillators unscaled (lowest 346 cm^-1)" in done.out
+    assert "harmonic oscillators unscaled (lowest 346 cm⁻¹); ΔfH° given" in done.out
 
 
 def test_an_entry_that_cannot_be_read_is_named(run, samples: Path, tmp_path: Path) -> None:
@@ -182,3 +186,88 @@ def test_plot_needs_a_folder_that_can_be(run, samples: Path, tmp_path: Path) -> 
     done = run("plot", samples / "H2O.out", "--dHf298", "-241.8 kJ/mol", "-o", file / "inside")
     assert done.code == 3
     assert "target-unwritable" in done.err
+
+
+@pytest.fixture(scope="module")
+def project(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """The pilot burner with two releases: as it is shipped, and with other scale factors."""
+    folder = tmp_path_factory.mktemp("pilot") / "burner"
+    shutil.copytree(str(sample_outputs()), folder)
+    manifest = folder / "heatwright.toml"
+    for name in ("release.old", "release"):
+        with pytest.raises(SystemExit) as stopped:
+            main(["build", str(manifest), "-q"])
+        assert stopped.value.code == 0
+        if name != "release":
+            shutil.copytree(folder / "release", folder / name)
+            text = manifest.read_text(encoding="utf-8")
+            changed = text.replace('scale = "published"', "frequency-scale = 0.95\nzpe-scale = 0.97")
+            assert changed != text
+            manifest.write_text(changed, encoding="utf-8")
+    return folder
+
+
+def test_a_release_is_shown_with_what_its_lock_knows(run, project: Path) -> None:
+    done = run("report", project / "release")
+    assert done.code == 0
+    assert done.out.count("<article") == 12
+    assert "scaled by 0.95 (lowest" in done.out  # the evidence, from the comment of the entry
+    assert "<dt>sha256<dd>" in done.out
+    assert "Scott" not in done.out
+    assert "ATcT 1.112" in done.out
+
+
+def test_a_manifest_is_shown_with_everything(run, project: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.chdir(project)
+    before = sorted(str(p) for p in project.rglob("*"))
+    done = run("report")
+    assert done.code == 0
+    assert done.out.count("<article") == 12
+    assert done.out.count("Polynomial less table") > 12
+    assert run("report", ".", "--title", "heatwright.toml").out == done.out
+    assert sorted(str(p) for p in project.rglob("*")) == before  # nothing was written beside the store
+
+
+@pytest.mark.parametrize("new", ["release", "heatwright.toml"])
+def test_changes_against_an_older_release(run, project: Path, new: str) -> None:
+    done = run("report", project / new, "--compare", project / "release.old")
+    assert done.code == 0
+    section = done.out[done.out.index('id="changes"') :].split("</section>")[0]
+    assert "12 changed" in section
+    assert section.count("<tr><td>") >= 24  # the rows, and the numbers of the figure
+    assert "<title" in section
+    if new == "release":
+        assert "frequency-scale default" in section
+
+
+def test_no_change_says_so(run, project: Path) -> None:
+    done = run("report", project / "release", "--compare", project / "release")
+    section = done.out[done.out.index('id="changes"') :].split("</section>")[0]
+    assert "12 identical" in section
+    assert "<figure" not in section
+
+
+def test_a_missing_older_side_is_refused_before_anything_is_done(run, project: Path, tmp_path: Path) -> None:
+    done = run("report", project / "release", "--compare", tmp_path / "none", "-o", tmp_path / "x.html")
+    assert done.code == 3
+    assert "file-missing" in done.err
+    assert not (tmp_path / "x.html").exists()
+
+
+def test_nothing_named_and_no_manifest(run, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.chdir(tmp_path)
+    done = run("report")
+    assert done.code == 2
+    assert "no heatwright.toml here" in done.err
+    assert run("plot", "-o", tmp_path / "f").code == 2
+
+
+def test_an_entry_that_the_lock_does_not_know(run, project: Path, tmp_path: Path) -> None:
+    folder = tmp_path / "release"
+    shutil.copytree(project / "release", folder)
+    for name in ("thermo.yaml", "thermo.dat"):
+        file = folder / name
+        file.write_text(file.read_text(encoding="utf-8").replace("CH3OCH3", "CH3OCH3x"), encoding="utf-8")
+    done = run("report", folder)
+    assert done.code == 0
+    assert "thermo.lock.toml does not know CH3OCH3x" in done.out

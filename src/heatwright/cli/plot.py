@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Any
 import click
 
 from heatwright.cli.reporter import SOME_FAILED, Reporter
-from heatwright.cli.showing import inputs_argument, showing_options, shown_inputs
+from heatwright.cli.showing import given_inputs, inputs_argument, showing_options, shown_inputs
 
 if TYPE_CHECKING:
     from pathlib import Path
@@ -61,7 +61,7 @@ def plot(
     if format_name != "svg":
         check_matplotlib()
     place = _folder(folder)
-    shown = shown_inputs(ctx, inputs, options, reporter)
+    shown = shown_inputs(ctx, given_inputs(inputs), options, reporter)
     named = [
         (f"{name}-{f.key}.{format_name}", f)
         for name, figures in _figures(shown.species)

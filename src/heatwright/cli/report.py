@@ -7,9 +7,10 @@ from typing import TYPE_CHECKING, Any
 import click
 
 from heatwright.cli.reporter import Reporter
-from heatwright.cli.showing import inputs_argument, showing_options, shown_inputs
+from heatwright.cli.showing import given_inputs, inputs_argument, kind_of_input, showing_options, shown_inputs
 
 if TYPE_CHECKING:
+    from heatwright.project.thermo_set import ThermoSet
     from heatwright.report.species import Species
 
 
@@ -18,6 +19,13 @@ if TYPE_CHECKING:
 @click.option("-o", "--output", "target", type=click.Path(), metavar="FILE", help="Write here, whole or not at all.")
 @click.option("--force", is_flag=True, help="Replace FILE when it exists.")
 @click.option("--title", metavar="TEXT", help="Of the page.  [default: from the inputs' names]")
+@click.option(
+    "--compare",
+    "old",
+    type=click.Path(),
+    metavar="OLD",
+    help="Show what changed against a release, lock or thermo file.",
+)
 @showing_options
 @click.pass_context
 def report(
@@ -27,12 +35,14 @@ def report(
     target: str | None,
     force: bool,
     title: str | None,
+    old: str | None,
     quiet: bool,
     verbose: bool,
     **options: Any,
 ) -> None:
-    """Show each INPUT on one HTML page: outputs (made into entries first, with the options of `entry`), JSON documents
-    (`entry --format json`), thermo files (80-column records, Cantera YAML) and release folders.
+    """Show each INPUT on one HTML page: outputs (made into entries first, with the options of `entry`), a manifest
+    (heatwright.toml, also when no INPUT is named), JSON documents (`entry --format json`), thermo files (80-column
+    records, Cantera YAML) and release folders.
 
     An index of the species; of each its structure, heat capacity with the points of the table, residuals with the best
     that any polynomial can do, contributions, torsions with levels, conformers, the ledger of ΔfH°, provenance and
@@ -41,6 +51,7 @@ def report(
     \b
     Examples:
       heatwright report sample_outputs/*.out --atoms sample_outputs/atoms --scale published -o report.html
+      heatwright report heatwright.toml --compare release.old -o report.html
       heatwright report therm.dat -o therm.html
     """
     from heatwright.report.page import Page, page_html
@@ -49,6 +60,8 @@ def report(
     reporter = Reporter(quiet=quiet, verbose=verbose)
     if target is not None:
         check_target(target, force)
+    inputs = given_inputs(inputs)
+    before = None if old is None else _before(old)
     shown = shown_inputs(ctx, inputs, options, reporter)
     if shown.species:
         page = Page(
@@ -56,6 +69,7 @@ def report(
             subtitle=_subtitle(shown.species),
             species=shown.species,
             failed=shown.failed,
+            changes=None if before is None else _changes(before, inputs, shown.species),
         )
         text = page_html(page)
         if target is None:
@@ -65,6 +79,23 @@ def report(
             reporter.say(f"{len(shown.species)} species shown in {target}.")
     reporter.tally(len(shown.species), "shown")
     ctx.exit(reporter.exit_code)
+
+
+def _before(old: str) -> ThermoSet:
+    """The older side of a comparison; raises Refused."""
+    from heatwright.project.thermo_set import read_thermo_set
+
+    return read_thermo_set(old)
+
+
+def _changes(before: ThermoSet, inputs: tuple[str, ...], species: tuple[Species, ...]) -> dict[str, Any]:
+    """What changed: by the files themselves where the one input is a release or thermo file, else by what is shown."""
+    from heatwright.project.thermo_set import read_thermo_set
+    from heatwright.report.changes import changes_of, set_of
+
+    if len(inputs) == 1 and kind_of_input(inputs[0]) in ("release", "entries"):
+        return changes_of(before, read_thermo_set(inputs[0]))
+    return changes_of(before, set_of(species, inputs[0] if len(inputs) == 1 else "this report"))
 
 
 def _title(inputs: tuple[str, ...]) -> str:

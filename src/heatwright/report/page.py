@@ -14,6 +14,7 @@ from markupsafe import Markup, escape
 from heatwright import __version__
 from heatwright.findings import SEVERITY_WORD
 from heatwright.polynomial.nasa7 import Nasa7
+from heatwright.report.changes import values_of
 from heatwright.report.drawing import Ball, Drawing, Figure
 from heatwright.report.figures import figures_of
 from heatwright.report.palette import figure_css, variables
@@ -61,7 +62,7 @@ def page_html(page: Page) -> str:
         orders=_ORDERS,
         warned=sum(s["warnings"] > 0 for s in shown),
         failed=page.failed,
-        changes=page.changes,
+        changes=None if page.changes is None else _changes(page.changes),
         caution=" ".join(CAUTION),
         version=__version__,
     )
@@ -210,6 +211,12 @@ def _state(s: Species) -> str:
     if s.multiplicity and s.multiplicity > 1:
         words.append({2: "doublet", 3: "triplet", 4: "quartet"}.get(s.multiplicity, f"multiplicity {s.multiplicity}"))
     return ", ".join(words)
+
+
+def _changes(changes: Mapping[str, Any]) -> dict[str, Any]:
+    figure = changes["figure"]
+    rows = [{**row, "values": values_of(row)} for row in changes["rows"]]
+    return {**changes, "rows": rows, "figure": None if figure is None else _figure(figure, 0)}
 
 
 def _figure(f: Figure, i: int) -> dict[str, Any]:

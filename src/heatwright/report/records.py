@@ -3,12 +3,11 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterator
 from typing import Any
 
-from heatwright.audit.audit import AuditedEntry, audit_entries
+from heatwright.audit.audit import Audit, AuditedEntry, audit_entries
 from heatwright.constants import BAR_PA
-from heatwright.findings import Finding
+from heatwright.findings import refusals
 from heatwright.polynomial.nasa7 import Nasa7
 from heatwright.reading.entry_file import EntryFile, ThermoEntry, decoded
 from heatwright.report.documents import Failed, Shown
@@ -21,16 +20,15 @@ def shown_entries(file: EntryFile) -> Shown:
     audit = audit_entries(file)
     usable = [a for a in audit.entries if a.entry.polynomial is not None]
     species = tuple(species_of(entry_document(file, a), f"{file.path}: {a.entry.name}") for a in usable)
-    return Shown(species, tuple(_failed(file, audit.entries, audit.findings)))
+    return Shown(species, failed_entries(file, audit))
 
 
-def _failed(file: EntryFile, entries: tuple[AuditedEntry, ...], findings: tuple[Finding, ...]) -> Iterator[Failed]:
-    for a in entries:
-        if a.entry.polynomial is None:
-            yield f"{file.path}: {a.entry.name}", tuple(f.text for f in a.findings if f.severity == "refuse")
-    said = tuple(f.text for f in findings if f.severity != "note" or f.code == "other-model")
-    if said:
-        yield file.path, said
+def failed_entries(file: EntryFile, audit: Audit) -> tuple[Failed, ...]:
+    """Entries without a polynomial with the reason, and what has to be said about the file as a whole."""
+    unread = [a for a in audit.entries if a.entry.polynomial is None]
+    failed = [(f"{file.path}: {a.entry.name}", tuple(f.text for f in refusals(a.findings))) for a in unread]
+    said = tuple(f.text for f in audit.findings if f.severity != "note" or f.code == "other-model")
+    return (*failed, *([(file.path, said)] if said else []))
 
 
 def entry_document(file: EntryFile, audited: AuditedEntry) -> dict[str, Any]:
@@ -66,6 +64,8 @@ def record_formula(composition: dict[str, float]) -> str:
     return f"{atoms}{sign * (charge != 0)}{abs(charge) if abs(charge) > 1 else ''}"
 
 
+_SIGNS = (("cm^-1", "cm⁻¹"), ("dfH by", "ΔfH° by"), ("dfH given", "ΔfH° given"), ("+/-", "±"), ("in Cp,", "in Cp°,"))
+"""What the comment of a record has in ASCII."""
 _COMMENT = re.compile(r"^\s*[!#] ?")
 
 
@@ -80,4 +80,7 @@ def _stated_evidence(file: EntryFile, entry: ThermoEntry) -> str:
             words.append(text.strip())
         elif words:
             break
-    return " ".join(words)
+    text = " ".join(words)
+    for plain, sign in _SIGNS:
+        text = text.replace(plain, sign)
+    return text

@@ -36,6 +36,8 @@ class Table:
 
     def at_298(self, column: Numbers) -> float | None:
         """The value of a column at 298.15 K, None where the table does not have it."""
+        if not column:
+            return None
         return next((v for T, v in zip(self.T_K, column, strict=True) if abs(T - STANDARD_TEMPERATURE_K) < 0.005), None)
 
 
