@@ -155,8 +155,9 @@ LOOK = r"""
       if (!inside(box)) out.faults.push(name(svg) + ': ' + shape.getAttribute('class') + ' leaves the frame');
       const seen = style.fill !== 'none' || (style.stroke !== 'none' && parseFloat(style.strokeWidth) > 0);
       if (!seen) out.faults.push(name(svg) + ': ' + shape.getAttribute('class') + ' cannot be seen');
-      if (seen && !/grid|axis|hair|zero/.test(shape.getAttribute('class')) &&
-          (box.width > 2 || box.height > 2)) visible += 1;
+      const role = shape.getAttribute('class');
+      const large = box.width > 2 || box.height > 2 || /^(dot|ring)$/.test(role);
+      if (seen && large && !/grid|axis|hair|zero/.test(role)) visible += 1;
     }
     if (!visible) out.faults.push(name(svg) + ': nothing to see');
     const words = [...svg.querySelectorAll('text')].map(t => [t.textContent, t.getBBox()]);

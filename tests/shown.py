@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+from dataclasses import replace
 from functools import cache
 from pathlib import Path
 from typing import Any
@@ -21,9 +22,11 @@ from heatwright import (
     read_torsion,
     reference_species,
 )
+from heatwright.constants import GAS_CONSTANT_J_MOL_K
 from heatwright.entry import Entry, make_entry
 from heatwright.formation.atomization import collect_atoms
 from heatwright.formation.formation import parse_enthalpy
+from heatwright.report.changes import changes_of, set_of
 from heatwright.report.species import Species
 from heatwright.report.taking import species_of
 from heatwright.resources import sample_outputs
@@ -73,6 +76,18 @@ def document_of(entry: Entry) -> dict[str, Any]:
 def shown() -> dict[str, Species]:
     """The same as species to be shown."""
     return {name: species_of(document_of(e), name) for name, e in entries().items()}
+
+
+def moved(kJ_mol: float) -> dict[str, Any]:
+    """What the page shows of a comparison with an older side whose species were all lower by their place times this."""
+    old = []
+    for i, s in enumerate(shown().values(), start=1):
+        step = i * kJ_mol * 1000.0 / GAS_CONSTANT_J_MOL_K
+        p = s.polynomial
+        assert p is not None
+        low, high = ((*a[:5], a[5] - step, a[6]) for a in (p.low, p.high))
+        old.append(replace(s, polynomial=replace(p, low=low, high=high)))
+    return changes_of(set_of(old, "old"), set_of(list(shown().values()), "new"))
 
 
 def many(n: int) -> dict[str, Any]:

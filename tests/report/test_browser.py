@@ -14,7 +14,7 @@ from heatwright.report.documents import shown_documents
 from heatwright.report.figures import figures_of
 from heatwright.report.page import Page, page_html
 from heatwright.report.svg import standalone_svg
-from shown import many, shown
+from shown import many, moved, shown
 
 pytestmark = needs_chromium
 WIDTHS = {"phone": 390, "desktop": 1280}
@@ -31,7 +31,8 @@ def browser() -> Iterator[Browser]:
 def page(tmp_path_factory: pytest.TempPathFactory) -> Path:
     file = tmp_path_factory.mktemp("page") / "report.html"
     failed = (("bad.out", ("The file is empty.",)),)
-    file.write_text(page_html(Page(title="Test", species=tuple(shown().values()), failed=failed)), encoding="utf-8")
+    made = Page(title="Test", species=tuple(shown().values()), failed=failed, changes=moved(0.5))
+    file.write_text(page_html(made), encoding="utf-8")
     return file
 
 
@@ -51,7 +52,7 @@ def heard(browser: Browser, page: Path) -> list[str]:
 def test_every_plot_is_drawn_and_words_do_not_overlap(browser: Browser, page: Path, width: str, dark: bool) -> None:
     browser.open(page, width=WIDTHS[width], dark=dark)
     seen = browser.ask(LOOK)
-    assert seen["figures"] == sum(len(figures_of(s)) for s in shown().values())
+    assert seen["figures"] == 1 + sum(len(figures_of(s)) for s in shown().values())
     assert seen["faults"] == []
     assert seen["wide"] <= 0  # nothing is wider than the window
     assert seen["cut"] == []

@@ -17,7 +17,7 @@ from heatwright.report.routes import formation_routes
 from heatwright.report.shares import STACK_RIGHT, populations, stacked_shares
 from heatwright.report.species import Geometry, Species
 from heatwright.report.structure import structure
-from shown import entries, places, shown
+from shown import entries, moved, places, shown
 
 R = GAS_CONSTANT_J_MOL_K
 
@@ -242,3 +242,21 @@ def test_scan_points_are_shown() -> None:
     figure = torsional_potential(replace(species, torsions=(scan,)), 0)
     (dots,) = [m for m in figure.drawing.marks if isinstance(m, Dots) and m.role == "ring"]
     assert dots.points[0] == pytest.approx(dots.points[2])
+
+
+def test_shifts_are_in_the_order_of_their_size() -> None:
+    changes = moved(0.5)
+    figure = changes["figure"]
+    assert changes["tally"] == f"{len(shown())} changed"
+    names = [m.text for m in role(figure, "label")]
+    assert names == list(shown())[::-1]  # the last one moved most
+    said = [float(m.text.replace("−", "-")) for m in role(figure, "quiet") if m.text[0] in "+−"]
+    assert said == pytest.approx([0.5 * i for i in range(len(shown()), 0, -1)], abs=0.006)
+    assert all(row[1] == row[-1] for row in figure.rows)  # a shift of H alone is the same at every temperature
+    assert f"{list(shown())[-1]} moved most" in figure.description
+
+
+def test_nothing_moved_has_no_figure() -> None:
+    changes = moved(0.0)
+    assert changes["figure"] is None
+    assert changes["rows"] == []
