@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from functools import lru_cache, reduce
+from functools import cached_property, lru_cache, reduce
 from operator import add
 from typing import Final, Literal
 
@@ -20,7 +20,13 @@ from heatwright.partition.table import ThermoTable
 from heatwright.polynomial.fit import Fit, check_temperatures, common_temperature, fit_many
 from heatwright.polynomial.minimax import design
 from heatwright.polynomial.nasa7 import Nasa7
-from heatwright.polynomial.quality import FitQuality, fit_qualities, judged_temperatures
+from heatwright.polynomial.quality import (
+    FitQuality,
+    ResidualCurve,
+    fit_qualities,
+    judged_temperatures,
+    residual_curve,
+)
 
 TABLE_TEMPERATURES_K = (
     100.0, 150.0, 200.0, 250.0, 298.15, 300.0, 350.0, 400.0, 500.0, 600.0, 700.0, 800.0, 900.0, 1000.0, 1100.0, 1200.0,
@@ -67,6 +73,19 @@ class Entry:
         """The composition with the electrons of an ion as the element ``E`` (one less for each positive charge)."""
         charge = self.model.molecule.charge or 0
         return {**self.composition, "E": -charge} if charge else self.composition
+
+    @cached_property
+    def residuals(self) -> ResidualCurve:
+        """What the polynomial differs by from the model, with the temperatures of the largest deviations among them."""
+        model, q = self.model, self.quality
+        at_298 = float(model.h_minus_h0_R(STANDARD_TEMPERATURE_K))
+        offset = self.formation.dHf298_kJ_mol * 1000.0 / GAS_CONSTANT_J_MOL_K - at_298
+
+        def h_RT(T: FloatArray) -> FloatArray:
+            return (offset + model.h_minus_h0_R(T)) / T
+
+        worst = (q.dcp_R.at_K, q.dh_RT.at_K, q.ds_R.at_K)
+        return residual_curve(self.polynomial, model.cp_R, h_RT, model.s_R, worst)
 
 
 @dataclass(frozen=True, eq=False)

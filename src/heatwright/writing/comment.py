@@ -13,6 +13,7 @@ from heatwright.formation.formation import Formation
 from heatwright.molecule import Molecule
 from heatwright.partition.model import ThermoModel
 from heatwright.partition.table import ThermoTable
+from heatwright.writing.evidence import evidence
 from heatwright.writing.units import UNITS, Units
 
 WIDTH: Final = 76
@@ -39,6 +40,7 @@ def comment_lines(entry: Entry) -> tuple[str, ...]:
     """The block as ASCII lines without a comment mark."""
     paragraphs = (
         *_identity(entry.name, entry.model),
+        f"evidence: {evidence(entry)}",
         *_treatment(entry.model),
         *_thermochemistry(entry),
         *_fit(entry),
