@@ -134,12 +134,20 @@ class _Grids:
     shown: slice
 
 
+def evaluation_grid(options: FitOptions) -> FloatArray | None:
+    """All temperatures at which an entry needs its model, 298.15 K first; None when they have to be looked for."""
+    if options.t_common_K == "auto":
+        return None
+    return _grids((float(options.t_low_K), float(options.t_common_K), float(options.t_high_K))).T_K
+
+
 @lru_cache(maxsize=64)
 def _grids(temperatures_K: tuple[float, float, float]) -> _Grids:
     fitted, judged = design(*temperatures_K).nodes_K, judged_temperatures(*temperatures_K)
     shown = table_grid(temperatures_K[0], temperatures_K[2])
     ends = np.cumsum([1, fitted.size, judged.size, shown.size])
     T = np.concatenate([[STANDARD_TEMPERATURE_K], fitted, judged, shown])
+    T.flags.writeable = False  # it is shared
     return _Grids(T, slice(1, ends[1]), slice(ends[1], ends[2]), slice(ends[2], ends[3]))
 
 

@@ -37,6 +37,11 @@ if TYPE_CHECKING:
     from heatwright.partition.uncertainty import TableUncertainty
 
 
+_AHEAD: Final = "_ahead"
+_NEAR_298: Final = np.array([STANDARD_TEMPERATURE_K, 300.0])
+"""298.15 K not alone: sums over a single temperature are added up in another order."""
+
+
 @dataclass(frozen=True, eq=False, kw_only=True)
 class ThermoModel:
     """A molecule's contributions and conventions; it knows how to tabulate, nothing else.
@@ -146,7 +151,18 @@ class ThermoModel:
 
     def parts(self, T: FloatArray) -> tuple[LnQ, ...]:
         """ln q and its derivatives of each contribution, in their order, at *T*, K; what all functions are made of."""
-        return tuple(contribution.ln_q(T) for contribution in self.contributions)
+        ahead = self.__dict__.get(_AHEAD)
+        if ahead is not None and ahead[0] is T:
+            known: tuple[LnQ, ...] = ahead[1]
+            return known
+        return tuple([contribution.ln_q(T) for contribution in self.contributions])
+
+    def evaluate_ahead(self, T: FloatArray) -> None:
+        """Evaluate at *T*, K, the first of which is 298.15: asked for this very array, :meth:`parts` has it then.
+
+        Nothing else changes: a value does not depend, to the last bit, on the other temperatures it is asked for with.
+        """
+        self.__dict__[_AHEAD] = (T, self.parts(T))
 
     def tabulate(self, T: ArrayLike) -> ThermoTable:
         """The table at the temperatures *T*, K."""
@@ -185,7 +201,10 @@ class ThermoModel:
     @cached_property
     def h298_minus_h0_kJ_mol(self) -> float:
         """H°(298.15 K) − H°(0 K), kJ/mol."""
-        return float(self.h_minus_h0_R(STANDARD_TEMPERATURE_K)) * GAS_CONSTANT_J_MOL_K / 1000.0
+        ahead = self.__dict__.get(_AHEAD)
+        parts = self.parts(_NEAR_298) if ahead is None else ahead[1]
+        u = float(reduce(add, [part.u[0] for part in parts]))
+        return u * STANDARD_TEMPERATURE_K * GAS_CONSTANT_J_MOL_K / 1000.0
 
     @property
     def classical_cp_R(self) -> float:

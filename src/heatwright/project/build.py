@@ -116,7 +116,7 @@ class _Build:
         data = self._library.store.get([key]).get(key)
         if data is not None:
             try:
-                return lock_of(json.loads(data), file)
+                return lock_of(json.loads(data), file, trusted=True)
             except (ValueError, Refused):
                 self._library.store.drop(key)
         values = lock_values(text, file)
@@ -164,6 +164,7 @@ class _Build:
         maker = Maker(self._library, self._shelves, self._watch.said)
         for start in range(0, len(decisions), _BATCH):
             batch = decisions[start : start + _BATCH]
+            self._library.fetch(task for decision in batch for task in tasks_of(decision.request))
             ready = [(decision, made) for decision in batch if (made := self._ingredients(maker, decision))]
             entries = entries_of([request for _, request in ready])
             good = []

@@ -74,11 +74,17 @@ class Maker:
 
     def ingredients(self, request: SpeciesRequest) -> EntryRequest:
         """The model and the enthalpy of formation of one species, ready to be fitted.  Raises Refused."""
-        from heatwright.entry import EntryRequest
+        from heatwright.entry import EntryRequest, evaluation_grid
+        from heatwright.polynomial.fit import check_temperatures
         from heatwright.project.conversion import fit_options
 
+        options = fit_options(request.fit)
+        check_temperatures(options.t_low_K, options.t_common_K, options.t_high_K)
         try:
             model = self._model(request)
+            grid = evaluation_grid(options)
+            if grid is not None:
+                model.evaluate_ahead(grid)
             formation = self._formation(request, model)
         except UsageError as error:
             raise Refused([refuse("manifest-wrong", str(error), where=request.where)]) from error
@@ -87,7 +93,7 @@ class Maker:
             comments = (f"reason for the symmetry: {request.model.symmetry_reason}", *comments)
         if request.note:
             comments = (*comments, f"note: {request.note}")
-        return EntryRequest(request.name, model, formation, fit_options(request.fit), request.note, comments)
+        return EntryRequest(request.name, model, formation, options, request.note, comments)
 
     def _model(self, request: SpeciesRequest) -> ThermoModel:
         from heatwright.project.conversion import species_reading
@@ -118,7 +124,7 @@ class Maker:
         from heatwright.project.conversion import model_options
         from heatwright.reading.torsion_scans import read_torsion
 
-        plain = replace(choice, torsions=())
+        plain = replace(choice, torsions=()) if choice.torsions else choice
         if plain not in self._options:
             self._options[plain] = model_options(plain)
         if not choice.torsions:
