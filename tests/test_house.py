@@ -20,8 +20,8 @@ TOP = {"README.md", "DEVELOPERS.md", "pyproject.toml", "src", "tests", "sample_o
 
 # A room may import from itself and from rooms before it.
 ORDER = [
-    "constants", "errors", "findings", "resources", "explanations", "elements", "molecule", "structure", "reading",
-    "scales", "partition", "species", "formation", "polynomial", "entry", "writing", "project", "cli",
+    "constants", "errors", "findings", "resources", "explanations", "elements", "molecule", "polynomial", "structure",
+    "reading", "scales", "partition", "species", "formation", "entry", "writing", "audit", "project", "cli",
 ]  # fmt: skip
 
 

@@ -15,6 +15,8 @@ from typing import TYPE_CHECKING, Any
 __version__ = "0.1.0"
 
 if TYPE_CHECKING:
+    from heatwright.audit.audit import Audit, audit_entries
+    from heatwright.audit.mend import mend_entries
     from heatwright.entry import Entry, FitOptions, make_entry
     from heatwright.errors import HeatwrightError, UsageError
     from heatwright.findings import Finding, Refused
@@ -36,6 +38,10 @@ if TYPE_CHECKING:
     from heatwright.polynomial.fit import fit_nasa7
     from heatwright.polynomial.nasa7 import Nasa7
     from heatwright.polynomial.quality import FitQuality, fit_quality
+    from heatwright.project.manifest import load_manifest
+    from heatwright.project.manifest_types import Manifest, SpeciesRequest
+    from heatwright.reading.entries import parse_entries, read_entries, replace_entries
+    from heatwright.reading.entry_file import EntryFile, ThermoEntry
     from heatwright.reading.outputs import read_output
     from heatwright.reading.single_point import with_energy
     from heatwright.reading.torsion_scans import read_torsion
@@ -48,10 +54,12 @@ if TYPE_CHECKING:
     from heatwright.writing.render import render_format
 
 _HOME = {
+    "Audit": "audit.audit",
     "Contribution": "partition.contribution",
     "DiatomicConstants": "molecule",
     "EnergyChoices": "formation.choices",
     "Entry": "entry",
+    "EntryFile": "reading.entry_file",
     "Finding": "findings",
     "FitOptions": "entry",
     "FitQuality": "polynomial.quality",
@@ -61,6 +69,7 @@ _HOME = {
     "Level": "molecule",
     "LnQ": "partition.contribution",
     "LowModes": "partition.lowmodes",
+    "Manifest": "project.manifest_types",
     "ModelOptions": "partition.choices",
     "Molecule": "molecule",
     "Nasa7": "polynomial.nasa7",
@@ -69,10 +78,13 @@ _HOME = {
     "Refused": "findings",
     "RouteRequest": "formation.routes",
     "ScaleChoice": "scales",
+    "SpeciesRequest": "project.manifest_types",
     "Symmetry": "structure.symmetry",
+    "ThermoEntry": "reading.entry_file",
     "ThermoModel": "partition.model",
     "ThermoTable": "partition.table",
     "UsageError": "errors",
+    "audit_entries": "audit.audit",
     "bonding": "structure.bond_orders",
     "build_model": "partition.model",
     "choose_published": "scales",
@@ -85,17 +97,22 @@ _HOME = {
     "formation_by_atomization": "formation.atomization",
     "formation_given": "formation.formation",
     "formation_of": "formation.routes",
+    "load_manifest": "project.manifest",
     "make_entry": "entry",
+    "mend_entries": "audit.mend",
     "mixture_model": "partition.mixing",
     "parse_enthalpy": "formation.formation",
+    "parse_entries": "reading.entries",
     "parse_isotope": "structure.isotopes",
     "parse_uncertainties": "partition.inputs",
     "projected_modes": "structure.modes",
     "published_factors": "scales",
+    "read_entries": "reading.entries",
     "read_output": "reading.outputs",
     "read_torsion": "reading.torsion_scans",
     "reference_species": "formation.species_references",
     "render_format": "writing.render",
+    "replace_entries": "reading.entries",
     "symmetry": "structure.symmetry",
     "with_energy": "reading.single_point",
     "with_isotopes": "structure.isotopes",
@@ -103,10 +120,12 @@ _HOME = {
 """Where each public name lives; it is imported when first asked for, so that a command starts quickly."""
 
 __all__ = [
+    "Audit",
     "Contribution",
     "DiatomicConstants",
     "EnergyChoices",
     "Entry",
+    "EntryFile",
     "Finding",
     "FitOptions",
     "FitQuality",
@@ -116,6 +135,7 @@ __all__ = [
     "Level",
     "LnQ",
     "LowModes",
+    "Manifest",
     "ModelOptions",
     "Molecule",
     "Nasa7",
@@ -124,11 +144,14 @@ __all__ = [
     "Refused",
     "RouteRequest",
     "ScaleChoice",
+    "SpeciesRequest",
     "Symmetry",
+    "ThermoEntry",
     "ThermoModel",
     "ThermoTable",
     "UsageError",
     "__version__",
+    "audit_entries",
     "bonding",
     "build_model",
     "choose_published",
@@ -141,17 +164,22 @@ __all__ = [
     "formation_by_atomization",
     "formation_given",
     "formation_of",
+    "load_manifest",
     "make_entry",
+    "mend_entries",
     "mixture_model",
     "parse_enthalpy",
+    "parse_entries",
     "parse_isotope",
     "parse_uncertainties",
     "projected_modes",
     "published_factors",
+    "read_entries",
     "read_output",
     "read_torsion",
     "reference_species",
     "render_format",
+    "replace_entries",
     "symmetry",
     "with_energy",
     "with_isotopes",

@@ -7,7 +7,7 @@ registered in :data:`CODES`, the one table of everything heatwright can say abou
 from __future__ import annotations
 
 from collections.abc import Iterable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Final, Literal
 
 from heatwright.errors import HeatwrightError
@@ -166,6 +166,58 @@ CODES: Final[dict[str, str]] = {
     "worker-lost": "The process that read a file died, each time it was tried.",
     "file-changed": "A file changed while it was being read.",
     "task-broke": "Reading a file or making an entry ended in an error that should not happen.",
+    # --- existing entries: reading --------------------------------------------------------------------------------
+    "no-entries": "The file holds no thermo entry.",
+    "no-such-entry": "The file has no entry of a name, or several.",
+    "yaml-unreadable": "A part of a YAML file is not YAML, or a part of YAML that thermo files do not use.",
+    "yaml-entry-wrong": "A species of a YAML file lacks a part that is needed, or a part has a wrong shape.",
+    "record-lines": "A line of a fixed record is missing, out of order, or has not its digit in column 80.",
+    "record-columns": "Something stands in columns of a fixed record where it does not belong.",
+    "record-ascii": "A fixed record holds a character outside ASCII.",
+    "coefficient-wrong": "A coefficient cannot be read: blank, shifted, cut off or not a number.",
+    "exponent-form": "The exponent of a coefficient has three digits or no letter; some readers cut it or stop.",
+    "name-ambiguous": "Readers differ in the name they take from an entry.",
+    "name-case": "A mechanism and its thermo entry write a species in different case.",
+    "composition-wrong": "The elements or counts of an entry cannot be read, contradict each other, or are not there.",
+    "composition-form": "Elements are written in a form that other readers stop at or leave out.",
+    "fifth-element": "A fifth element stands in columns that many readers do not look at.",
+    "fractional-count": "The count of an element is not a whole number; many readers cut the fraction off.",
+    "temperature-default": "An end of the range is blank, and the file's default was taken.",
+    "common-temperature-blank": "The record has no common temperature, and the file's default was taken.",
+    "molar-mass-field": "The molar mass stands where the common temperature belongs.",
+    "temperature-order": "The temperatures of an entry are not ascending.",
+    "defaults-missing": "The THERMO section has no line of default temperatures.",
+    "range-missing": "One of the two ranges has no coefficients.",
+    "ranges-swapped": "The coefficients of the low and of the high range have changed places.",
+    "all-zero": "All coefficients of an entry are zero.",
+    "one-range": "One set of coefficients serves the whole range.",
+    "other-model": "A species has another thermo model, or none; it was passed over.",
+    # --- existing entries: auditing -------------------------------------------------------------------------------
+    "composition-mismatch": "Composition, name, molar mass or charge of an entry contradict each other.",
+    "jump-cp": "The heat capacity jumps at the common temperature.",
+    "jump-h": "The enthalpy jumps at the common temperature.",
+    "jump-s": "The entropy jumps at the common temperature.",
+    "jump-slope": "The heat capacity has a kink at the common temperature.",
+    "meets-elsewhere": "The two ranges meet at another temperature than the common one.",
+    "range-start": "The range starts above 298.15 K.",
+    "range-end": "The range ends below the temperatures of flames.",
+    "cp-below-least": "The heat capacity is below that of translation and rotation.",
+    "cp-falls": "The heat capacity falls with temperature by more than vibrations can do.",
+    "entropy-implausible": "The entropy at 298.15 K is out of what mass and number of atoms allow.",
+    "cp-implausible": "The heat capacity at 298.15 K is out of what the number of atoms allows.",
+    "enthalpy-implausible": "The enthalpy of formation binds the atoms more or less than any molecule's.",
+    "element-enthalpy": "An element in its reference state has an enthalpy of formation.",
+    "stated-enthalpy": "The enthalpy printed after the coefficients is not theirs.",
+    "unit-mistake": "Values are right but for a factor between units.",
+    "one-atmosphere": "The entropy looks like one at 1 atm.",
+    "pressure-not-stated": "Entries state no standard pressure, or different ones.",
+    "duplicate-entry": "A species is there twice, or in different case.",
+    "same-coefficients": "Two species have the same coefficients.",
+    "differs-from-published": "A value differs from a published one by more than the usual accuracy.",
+    "differs-from-release": "An entry differs from the computed one by more than the usual accuracy.",
+    "mended": "An entry was refitted; what changed is said.",
+    "not-mendable": "An entry is faulty, and mending cannot put it right.",
+    "not-in-release": "Entries have no partner in the release they are compared with.",
 }
 """Every code a finding may carry, and what it means."""
 
@@ -180,6 +232,7 @@ class Finding:
     where : file, line, atom or mode; empty when the file as a whole is meant and is named by the caller.
     expected : what was expected, or empty.
     action : what to do, a whole sentence, or empty.
+    excerpt : the line that is meant with carets below it, or empty; the terminal shows it under the sentence.
     """
 
     severity: Severity
@@ -188,6 +241,7 @@ class Finding:
     where: str = ""
     expected: str = ""
     action: str = ""
+    excerpt: str = ""
 
     def __post_init__(self) -> None:
         if self.code not in CODES:
@@ -202,7 +256,12 @@ class Finding:
         return f"{head}. {self.action}".rstrip() if self.action else f"{head}."
 
     def __str__(self) -> str:
-        return f"{SEVERITY_WORD[self.severity]}: {self.text} [{self.code}]"
+        sentence = f"{SEVERITY_WORD[self.severity]}: {self.text} [{self.code}]"
+        return "\n    | ".join([sentence, *self.excerpt.split("\n")]) if self.excerpt else sentence
+
+    def shown(self, excerpt: str) -> Finding:
+        """The same finding with the line that is meant."""
+        return replace(self, excerpt=excerpt)
 
     def at(self, file: str) -> Finding:
         """The same finding with its file: ``line 12`` becomes ``FILE:12``, other places follow the file's name."""
@@ -210,7 +269,7 @@ class Finding:
             return self
         line = self.where.removeprefix("line ")
         place = file if not self.where else f"{file}:{line}" if line != self.where else f"{file}: {self.where}"
-        return Finding(self.severity, self.code, self.found, place, self.expected, self.action)
+        return replace(self, where=place)
 
     def as_json(self) -> dict[str, str]:
         """Severity, code and text, as ``--json`` shows them."""

@@ -254,6 +254,12 @@ def test_a_scan_that_cannot_be_used_is_said_and_left_out(copies: Copy, scan: dic
     all_made(manifest)
 
 
+def test_points_of_a_scan_beside_other_outputs_need_a_folder(copies: Copy, scan: dict[str, Path | str]) -> None:
+    files = {f"me/{name.rpartition('/')[2]}": text for name, text in scan.items()}
+    _, text = started(copies({"me/CH3OH.out": sample("CH3OH"), **files, **atoms("C", "H", "O")}))
+    assert "#   me/p000.toml to p345.toml (24 files): the points of a scan, it seems; torsions needs them in a" in text
+
+
 def test_a_scan_of_no_species_here(copies: Copy, scan: dict[str, Path | str]) -> None:
     _, text = started(copies({"CO.out": sample("CO"), **scan, **atoms("C", "O")}))
     assert "#   scans/OH: a scan of CH4O, of which there is no frequency job" in text

@@ -59,7 +59,7 @@ def test_two_different_atoms_have_no_symmetry(tmp_path: Path) -> None:
 
 def test_the_table_in_the_readme(tmp_path: Path) -> None:
     readme = (Path(__file__).resolve().parents[2] / "README.md").read_text(encoding="utf-8")
-    _, block = re.findall(r"^```toml\n(.*?)^```", readme, re.MULTILINE | re.DOTALL)
+    _, block, *_ = re.findall(r"^```toml\n(.*?)^```", readme, re.MULTILINE | re.DOTALL)
     head = '[molecule]\nformula = "CO"\nmultiplicity = 1\nmasses = "average"\n'
     model = build_model(read(tmp_path, head + block))
     assert float(model.cp_R(3000.0)) * R == pytest.approx(37.217, abs=0.01)  # NIST-JANAF C-093

@@ -278,7 +278,7 @@ def test_every_table_takes_a_source() -> None:
 
 def test_the_file_in_the_readme(tmp_path: Path) -> None:
     readme = (Path(__file__).resolve().parents[2] / "README.md").read_text(encoding="utf-8")
-    block, _ = re.findall(r"^```toml\n(.*?)^```", readme, re.MULTILINE | re.DOTALL)
+    block, *_ = re.findall(r"^```toml\n(.*?)^```", readme, re.MULTILINE | re.DOTALL)
     molecule = read(tmp_path, block)
     assert refusals(molecule.findings) == ()
     assert float(build_model(molecule).s_R(298.15)) * R == pytest.approx(213.79, abs=0.02)  # NIST-JANAF 213.795

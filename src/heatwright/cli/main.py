@@ -10,10 +10,12 @@ from typing import NoReturn
 import click
 
 from heatwright import __version__
+from heatwright.cli.audit import audit
 from heatwright.cli.build import build
 from heatwright.cli.crosscheck import crosscheck
 from heatwright.cli.entry import entry
 from heatwright.cli.explain import explain
+from heatwright.cli.mend import mend
 from heatwright.cli.reactions import reactions
 from heatwright.cli.references import references
 from heatwright.cli.rotors import rotors
@@ -30,6 +32,7 @@ INTERRUPTED = 130
 SECTIONS = {
     "One molecule": ("survey", "table", "entry", "rotors"),
     "A mechanism": ("start", "build", "crosscheck"),
+    "Existing entries": ("audit", "mend"),
     "Looking things up": ("scales", "references", "reactions", "explain", "samples"),
 }
 """How ``--help`` groups the commands."""
@@ -72,6 +75,8 @@ for _command in (
     start,
     build,
     crosscheck,
+    audit,
+    mend,
     scales,
     references,
     reactions,

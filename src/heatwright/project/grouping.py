@@ -211,11 +211,29 @@ def _scans(inventory: Inventory, unused: list[tuple[str, str]]) -> tuple[list[Sc
         if folder not in with_minima and is_scan(members):
             scans.append(Scan(folder, tuple(members)))
             continue
-        usable = [one for one in members if one not in inventory.points]
-        loose += usable
-        unused += [(one.path, "a point of a scan, it seems, without a folder of its own") for one in members
-                   if one not in usable]  # fmt: skip
+        for alike in _by(members, _scan_key):
+            if is_scan(alike):
+                unused.append(
+                    (_from_to(alike), "the points of a scan, it seems; torsions needs them in a folder alone")
+                )
+            else:
+                loose += [one for one in alike if one not in inventory.points]
+                unused += [(one.path, _POINT) for one in alike if one in inventory.points]
     return scans, loose
+
+
+_POINT: Final = "an optimisation with constraints or one that did not end at a stationary point"
+
+
+def _scan_key(one: Found) -> Hashable:
+    m = one.molecule
+    return tuple(m.atomic_numbers.tolist()), m.charge, m.multiplicity, level_label(m), m.energy_kind
+
+
+def _from_to(found: list[Found]) -> str:
+    """Several files in one folder as a phrase."""
+    paths = sorted(one.path for one in found)
+    return f"{paths[0]} to {paths[-1].rpartition('/')[2]} ({len(paths)} files)"
 
 
 def is_scan(members: list[Found]) -> bool:

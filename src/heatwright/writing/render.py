@@ -102,18 +102,21 @@ def check_target(path: str, force: bool) -> None:
 
 
 def write_text(path: str, text: str) -> None:
-    """Writes *text* to *path* (UTF-8, ``\\n``), whole or not at all: a temporary file beside it is renamed.
+    """Writes *text* to *path* (UTF-8, ``\\n``) as :func:`write_bytes` does."""
+    write_bytes(path, text.encode("utf-8"))
+
+
+def write_bytes(path: str, data: bytes) -> None:
+    """Writes *data* to *path*, whole or not at all: a temporary file beside it is renamed.
 
     Raises Refused when that fails; whatever was at *path* before is then still there.
     """
     target = Path(path)
     temporary = None
     try:
-        with tempfile.NamedTemporaryFile(
-            "w", encoding="utf-8", newline="\n", dir=target.parent, prefix=f".{target.name}.", delete=False
-        ) as stream:
+        with tempfile.NamedTemporaryFile(dir=target.parent, prefix=f".{target.name}.", delete=False) as stream:
             temporary = stream.name
-            stream.write(text)
+            stream.write(data)
             stream.flush()
             os.fsync(stream.fileno())
         os.chmod(temporary, 0o666 & ~_umask())
