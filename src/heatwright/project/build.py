@@ -262,7 +262,8 @@ def _lock_key(text: str) -> str:
 
 
 def _text(data: bytes) -> str:
-    return data.decode("utf-8", "replace").replace("\r\n", "\n")
+    plain = data.replace(b"\r\n", b"\n") if b"\r" in data else data  # version control may have changed line ends
+    return plain.decode("utf-8", "replace")
 
 
 def _pressure_Pa(manifest: Manifest) -> float:

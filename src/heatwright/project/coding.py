@@ -16,7 +16,7 @@ import numpy as np
 
 NAME: Final = "\0"
 """Stands for the name of a file in what is kept of it; whoever uses it puts in how the file is to be called."""
-_NAME_IN_JSON: Final = b"\\u0000"
+_NAME_IN_JSON: Final = "\\u0000"
 _MARK: Final = b"HW1"
 _DTYPES: Final = ("float64", "int64", "bool", "int32", "int16", "int8", "uint8")
 
@@ -85,9 +85,9 @@ def decoded(data: bytes, name: str | None = None) -> Any:
         if zlib.crc32(body) != int.from_bytes(data[3:7], "little"):
             raise Unreadable("the checksum is wrong")
         size = int.from_bytes(body[:8], "little")
-        text = body[8 : 8 + size]
+        text = body[8 : 8 + size].decode()
         if name is not None:
-            text = text.replace(_NAME_IN_JSON, json.dumps(name)[1:-1].encode())
+            text = text.replace(_NAME_IN_JSON, json.dumps(name)[1:-1])
         return _value(json.loads(text), body, 8 + size)
     except Unreadable:
         raise
@@ -134,18 +134,21 @@ def _array(value: np.ndarray[Any, Any], arrays: list[bytes]) -> dict[str, Any]:
 
 
 def _value(plain: Any, body: bytes, start: int) -> Any:
-    kind = type(plain)
-    if kind in _SCALARS:
-        return plain
-    if kind is list:
+    """The value of a list or an object; scalars are left as they are by whoever calls."""
+    if type(plain) is list:
         return tuple([item if type(item) in _SCALARS else _value(item, body, start) for item in plain])
+    if type(plain) in _SCALARS:
+        return plain
     ((mark, inside),) = plain.items()
     return _MARKED[mark](inside, body, start)
 
 
 def _object(inside: list[Any], body: bytes, start: int) -> Any:
     name, given = inside
-    return _types()[name].type(**{f: v if type(v) in _SCALARS else _value(v, body, start) for f, v in given.items()})
+    for field, value in given.items():
+        if type(value) not in _SCALARS:
+            given[field] = _value(value, body, start)
+    return _types()[name].type(**given)
 
 
 def _mapping(inside: dict[str, Any], body: bytes, start: int) -> dict[str, Any]:

@@ -13,7 +13,7 @@ from typing import TYPE_CHECKING, Any, Final
 from heatwright.findings import Finding, Refused, refuse
 from heatwright.project.executors import Engine, Lost, run
 from heatwright.project.store import Store
-from heatwright.project.tasks import ReadResult, ReadTask, content_hash, do_task, read_key
+from heatwright.project.tasks import ReadResult, ReadTask, body_of, body_values, content_hash, do_task, read_key
 
 if TYPE_CHECKING:
     from heatwright.molecule import FloatArray, Molecule
@@ -100,8 +100,8 @@ class Library:
         """The molecule of an output that is called *shown*; raises Refused."""
         molecule: Molecule
         molecule, bodies = self._value(task, shown)
-        for masses, tolerance, *body in bodies:
-            self._bodies[_body_key(molecule, masses, tolerance)] = tuple(body)
+        for masses, tolerance, body in bodies:
+            self._bodies[_body_key(molecule, masses, tolerance)] = body
         return molecule
 
     def scan(self, task: ReadTask, shown: str) -> TorsionScan:
@@ -155,10 +155,11 @@ class Library:
         key = _body_key(molecule, masses_u, tolerance_A)
         if key not in self._bodies:
             kept = f"body:{hashlib.sha256(f'{reader_fingerprint()} {key!r}'.encode()).hexdigest()}"
-            self._bodies[key] = self._kept_value(kept) or rigid_body(molecule, masses_u, tolerance_A)
-            self.store.put({kept: encoded(self._bodies[key])})
-        found: tuple[Inertia, Symmetry] = self._bodies[key]
-        return found
+            known = self._kept_value(kept)
+            self._bodies[key] = known or body_values(*rigid_body(molecule, masses_u, tolerance_A))
+            if known is None:
+                self.store.put({kept: encoded(self._bodies[key])})
+        return body_of(self._bodies[key])
 
     def _kept_value(self, key: str) -> Any:
         """What the store holds under a key, None when that is nothing or damaged."""

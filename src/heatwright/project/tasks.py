@@ -12,7 +12,7 @@ from collections.abc import Iterable
 from dataclasses import dataclass, replace
 from pathlib import Path
 from threading import Lock
-from typing import TYPE_CHECKING, Final
+from typing import TYPE_CHECKING, Any, Final
 
 from heatwright.project.coding import NAME, encoded
 
@@ -51,7 +51,8 @@ class ReadTask:
 class ReadResult:
     """What came of a task: the hash of what was read, and the encoded value or the encoded findings.
 
-    The value is a scan, or a molecule with what was asked of its bodies: (masses, tolerance, rotor, symmetry) each.
+    The value is a scan, or a molecule with what was asked of its bodies: masses, tolerance, and the body as
+    :func:`body_values` has it.
     broken : what went wrong that should not have.
     """
 
@@ -121,7 +122,7 @@ def renamed(findings: Iterable[Finding], old: str, new: str) -> tuple[Finding, .
     )
 
 
-def _bodies(molecule: Molecule, task: ReadTask) -> Iterable[tuple[FloatArray, float, Inertia, Symmetry]]:
+def _bodies(molecule: Molecule, task: ReadTask) -> Iterable[tuple[FloatArray, float, tuple[Any, ...]]]:
     """Rotor and symmetry of a molecule that can be used; others have none."""
     from heatwright.findings import refusals
     from heatwright.partition.model import chosen_masses
@@ -132,9 +133,28 @@ def _bodies(molecule: Molecule, task: ReadTask) -> Iterable[tuple[FloatArray, fl
     for kind, tolerance in task.bodies:
         masses, _ = chosen_masses(molecule, kind)
         try:
-            yield masses, tolerance, *rigid_body(molecule, masses, tolerance)
+            yield masses, tolerance, body_values(*rigid_body(molecule, masses, tolerance))
         except ValueError:
             continue  # it will be said when the model is built
+
+
+def body_values(rotor: Inertia, symmetry: Symmetry) -> tuple[Any, ...]:
+    """Rotor and symmetry as plain values, without the operations, which nothing asks for any more."""
+    s = symmetry
+    deviations = (s.tolerance_A, s.largest_accepted_deviation_A, s.smallest_rejected_deviation_A)
+    arrays = (rotor.centre_of_mass_A, rotor.principal_moments_u_A2, rotor.axes, rotor.rotational_constants_cm1)
+    found = (s.point_group, s.symmetry_number, s.chiral, *deviations, s.if_tighter, s.if_looser)
+    return (*arrays, rotor.kind), found
+
+
+def body_of(values: tuple[Any, ...]) -> tuple[Inertia, Symmetry]:
+    """Rotor and symmetry from :func:`body_values`."""
+    from heatwright.structure.inertia import Inertia
+    from heatwright.structure.symmetry import Symmetry, stated_symmetry
+
+    rotor, (*found, tighter, looser) = values
+    operations = stated_symmetry("", 1).operations
+    return Inertia(*rotor), Symmetry(*(*found, operations, tighter, looser))
 
 
 def read_key(task: ReadTask, sha256: str) -> str:
