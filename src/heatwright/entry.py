@@ -14,7 +14,6 @@ from heatwright.constants import GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
 from heatwright.findings import Finding, Refused
 from heatwright.formation.formation import Formation
 from heatwright.molecule import FloatArray
-from heatwright.partition.contribution import LnQ
 from heatwright.partition.model import ThermoModel
 from heatwright.partition.table import ThermoTable
 from heatwright.polynomial.fit import Fit, check_temperatures, common_temperature, fit_many
@@ -175,12 +174,9 @@ def _made_together(
     )
     made: dict[int, Entry | Refused] = {i: fit for i, fit in enumerate(fits) if isinstance(fit, Refused)}
     for i, fit, quality in zip(good, found, qualities, strict=True):
-        made[i] = _entry(requests[i], fit.polynomial, quality, _table(requests[i].model, parts[i], grids))
+        table = requests[i].model.table_from(parts[i], totals[i], grids.shown, grids.T_K[grids.shown])
+        made[i] = _entry(requests[i], fit.polynomial, quality, table)
     return [made[i] for i in range(len(requests))]
-
-
-def _table(model: ThermoModel, parts: Sequence[LnQ], grids: _Grids) -> ThermoTable:
-    return model.table_from([p[:1] for p in parts], [p[grids.shown] for p in parts], grids.T_K[grids.shown])
 
 
 def _entry(request: EntryRequest, polynomial: Nasa7, quality: FitQuality, table: ThermoTable) -> Entry:

@@ -168,19 +168,22 @@ class ThermoModel:
         """The table at the temperatures *T*, K."""
         grid = np.atleast_1d(checked_temperatures(T))
         parts = self.parts(np.concatenate([[STANDARD_TEMPERATURE_K], grid]))
-        return self.table_from([p[:1] for p in parts], [p[1:] for p in parts], grid)
+        return self.table_from(parts, reduce(add, parts), slice(1, None), grid)
 
-    def table_from(self, at_298: Sequence[LnQ], parts: Sequence[LnQ], grid: FloatArray) -> ThermoTable:
-        """The table from the values of the contributions (:meth:`parts`) at 298.15 K and at the grid, K."""
-        whole = share_of(reduce(add, parts), reduce(add, at_298), grid)
-        names = [contribution.name for contribution in self.contributions]
+    def table_from(self, parts: Sequence[LnQ], total: LnQ, shown: slice, grid: FloatArray) -> ThermoTable:
+        """The table from the values of the contributions (:meth:`parts`) and their sum.
+
+        They are at temperatures of which the first is 298.15 K; those at *shown* are the grid, K.
+        """
+        whole = share_of(total[shown], total[:1], grid)
+        each = zip(self.contributions, parts, strict=True)
         return ThermoTable(
             T_K=grid,
             cp_J_mol_K=whole.cp_J_mol_K,
             h_minus_h298_kJ_mol=whole.h_minus_h298_kJ_mol,
             s_J_mol_K=whole.s_J_mol_K,
             h298_minus_h0_kJ_mol=self.h298_minus_h0_kJ_mol,
-            parts=dict(zip(names, zip(at_298, parts, strict=True), strict=True)),
+            parts={contribution.name: (part[:1], part[shown]) for contribution, part in each},
             populations=self.populations(grid),
             uncertainty=self._uncertainty(grid),
         )

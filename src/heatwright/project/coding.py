@@ -1,4 +1,4 @@
-"""Molecules and what is found about them as bytes: JSON beside the raw numbers of arrays, compressed, with a checksum.
+"""Molecules and what is found about them as bytes: JSON beside the raw numbers of arrays, with a checksum; large ones are compressed.
 
 Only the types in :func:`_types` can come out of such bytes, whatever they hold: nothing in them is ever executed.
 """
@@ -17,7 +17,9 @@ import numpy as np
 NAME: Final = "\0"
 """Stands for the name of a file in what is kept of it; whoever uses it puts in how the file is to be called."""
 _NAME_IN_JSON: Final = "\\u0000"
-_MARK: Final = b"HW1"
+_PLAIN: Final = b"HW1"
+_PACKED: Final = b"HZ1"
+_WORTH_PACKING: Final = 1 << 14
 _DTYPES: Final = ("float64", "int64", "bool", "int32", "int16", "int8", "uint8")
 
 
@@ -67,7 +69,8 @@ def encoded(value: object) -> bytes:
     arrays: list[bytes] = []
     text = json.dumps(_plain(value, arrays), ensure_ascii=False, separators=(",", ":")).encode()
     body = len(text).to_bytes(8, "little") + text + b"".join(arrays)
-    return _MARK + zlib.crc32(body).to_bytes(4, "little") + zlib.compress(body, 1)
+    mark, stored = (_PLAIN, body) if len(body) < _WORTH_PACKING else (_PACKED, zlib.compress(body, 1))
+    return mark + zlib.crc32(body).to_bytes(4, "little") + stored
 
 
 def decoded(data: bytes, name: str | None = None) -> Any:
@@ -79,9 +82,9 @@ def decoded(data: bytes, name: str | None = None) -> Any:
     ('error in a.out', 1)
     """
     try:
-        if not data.startswith(_MARK):
+        if data[:3] not in (_PLAIN, _PACKED):
             raise Unreadable("the bytes are not of this format")
-        body = zlib.decompress(data[7:])
+        body = data[7:] if data[:3] == _PLAIN else zlib.decompress(data[7:])
         if zlib.crc32(body) != int.from_bytes(data[3:7], "little"):
             raise Unreadable("the checksum is wrong")
         size = int.from_bytes(body[:8], "little")

@@ -5,6 +5,7 @@ from __future__ import annotations
 import json
 import re
 from collections.abc import Mapping, Sequence
+from functools import lru_cache
 from math import isfinite
 from typing import Any
 
@@ -46,6 +47,7 @@ def fixed(value: float, width: int, decimals: int) -> str:
     return text
 
 
+@lru_cache(maxsize=4096)
 def coefficient(value: float) -> str:
     """One polynomial coefficient in 15 columns, nine significant digits, two-digit exponent.
 
