@@ -1,4 +1,4 @@
-"""Molecules and what is found about them as bytes: JSON beside the raw numbers of arrays, with a checksum; large ones are compressed.
+"""Molecules and what is found about them as bytes: JSON beside the raw numbers of arrays, with a checksum.
 
 Only the types in :func:`_types` can come out of such bytes, whatever they hold: nothing in them is ever executed.
 """
