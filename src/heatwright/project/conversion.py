@@ -20,6 +20,7 @@ if TYPE_CHECKING:
     from heatwright.partition.lowmodes import LowModes
     from heatwright.partition.radicals import ElectronicOption
     from heatwright.project.manifest_types import FitChoice, FormationChoice, ModelChoice, ReadingChoice, SpeciesRequest
+    from heatwright.reading.torsion_scans import Torsion
 
 
 _NAMED_LEVELS: Final[dict[str, Literal["table", "spin", "levels"]]] = {
@@ -34,7 +35,6 @@ def model_options(choice: ModelChoice) -> ModelOptions:
     from heatwright.constants import ATMOSPHERE_PA, BAR_PA
     from heatwright.partition.choices import ModelOptions
     from heatwright.partition.inputs import parse_uncertainties
-    from heatwright.reading.torsion_scans import read_torsion
 
     if choice.scale is not None and (choice.frequency_scale is not None or choice.zpe_scale is not None):
         raise UsageError("--scale published chooses both factors; leave out --frequency-scale and --zpe-scale")
@@ -52,9 +52,17 @@ def model_options(choice: ModelChoice) -> ModelOptions:
         electronic=_electronic(choice.electronic),
         masses=choice.masses,
         uncertainty=None if choice.uncertainty is None else parse_uncertainties(choice.uncertainty),
-        torsions=tuple(read_torsion(torsion.text) for torsion in choice.torsions),
+        torsions=_torsions(choice),
         torsion_coupling=choice.torsion_coupling,
     )
+
+
+def _torsions(choice: ModelChoice) -> tuple[Torsion, ...]:
+    if not choice.torsions:
+        return ()
+    from heatwright.reading.torsion_scans import read_torsion
+
+    return tuple(read_torsion(torsion.text) for torsion in choice.torsions)
 
 
 def _electronic(words: str) -> ElectronicOption:

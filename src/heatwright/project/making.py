@@ -141,13 +141,14 @@ class Maker:
 
     def _model_options(self, choice: ModelChoice) -> ModelOptions:
         from heatwright.project.conversion import model_options
-        from heatwright.reading.torsion_scans import read_torsion
 
         plain = replace(choice, torsions=()) if choice.torsions else choice
         if plain not in self._options:
             self._options[plain] = model_options(plain)
         if not choice.torsions:
             return self._options[plain]
+        from heatwright.reading.torsion_scans import read_torsion
+
         torsions = tuple(
             read_torsion(t.barrier)
             if t.scan is None
