@@ -182,11 +182,11 @@ class Maker:
         return shelf.reference_set(own, self._model_options(request.model), self._say)
 
     def _own_references(self, choice: FormationChoice) -> Any:
-        from heatwright.formation.species_references import read_references
-
         table = choice.folders.reference_table
         if table is None:
             return ()
+        from heatwright.formation.species_references import read_references
+
         if table not in self._own:
             self._own[table] = read_references(_here(table).path)
         return self._own[table]
