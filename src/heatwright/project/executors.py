@@ -9,6 +9,7 @@ from __future__ import annotations
 
 import os
 import signal
+import sys
 from collections import deque
 from collections.abc import Callable, Iterable, Iterator
 from contextlib import contextmanager
@@ -90,7 +91,7 @@ class LocalProcesses(Engine):
         if self._pool is not None:
             return self._pool.submit(work, task)
         self._pool = _pool(self._count)
-        with _interrupts_blocked():
+        with _interrupts_blocked(), _same_modules():
             return self._pool.submit(work, task)
 
     def mend(self) -> bool:
@@ -115,7 +116,23 @@ def _pool(count: int) -> ProcessPoolExecutor:
         os.environ.setdefault(name, "1")  # each worker is one core's work; linear algebra must not add threads
     context = get_context("forkserver")
     context.set_forkserver_preload(list(_PRELOADED))
-    return ProcessPoolExecutor(count, mp_context=context)
+    return ProcessPoolExecutor(count, mp_context=context, initializer=_end_with_the_driver)
+
+
+def _end_with_the_driver() -> None:
+    """In a worker: watch the driver, and end when it does, however that comes about."""
+    from multiprocessing import parent_process
+    from multiprocessing.connection import wait
+    from threading import Thread
+
+    driver = parent_process()
+    assert driver is not None  # this is a worker
+
+    def watch() -> None:
+        wait([driver.sentinel])
+        os._exit(1)
+
+    Thread(target=watch, daemon=True).start()
 
 
 @contextmanager
@@ -126,6 +143,20 @@ def _interrupts_blocked() -> Iterator[None]:
         yield
     finally:
         signal.pthread_sigmask(signal.SIG_SETMASK, before)
+
+
+@contextmanager
+def _same_modules() -> Iterator[None]:
+    """What is started inside imports from where this process does, also when PYTHONPATH is a relative path."""
+    before = os.environ.get("PYTHONPATH")
+    os.environ["PYTHONPATH"] = os.pathsep.join(os.path.abspath(path) for path in sys.path if path)
+    try:
+        yield
+    finally:
+        if before is None:
+            del os.environ["PYTHONPATH"]
+        else:
+            os.environ["PYTHONPATH"] = before
 
 
 def unfit(where: str, found: str, action: str) -> Refused:
