@@ -21,7 +21,7 @@ TOP = {"README.md", "DEVELOPERS.md", "pyproject.toml", "src", "tests", "sample_o
 # A room may import from itself and from rooms before it.
 ORDER = [
     "constants", "errors", "findings", "resources", "explanations", "elements", "molecule", "polynomial", "structure",
-    "reading", "scales", "partition", "species", "formation", "entry", "writing", "audit", "project", "cli",
+    "reading", "scales", "partition", "species", "formation", "entry", "writing", "audit", "project", "report", "cli",
 ]  # fmt: skip
 
 

@@ -50,12 +50,17 @@ if TYPE_CHECKING:
     from heatwright.reading.outputs import read_output
     from heatwright.reading.single_point import with_energy
     from heatwright.reading.torsion_scans import read_torsion
+    from heatwright.report.documents import shown_documents
+    from heatwright.report.figures import figures_of
+    from heatwright.report.page import Page, page_html
+    from heatwright.report.svg import standalone_svg
     from heatwright.scales import PublishedFactor, ScaleChoice, choose_published, published_factors
     from heatwright.structure.bond_orders import bonding
     from heatwright.structure.isotopes import parse_isotope, with_isotopes
     from heatwright.structure.modes import projected_modes
     from heatwright.structure.symmetry import Symmetry, symmetry
     from heatwright.writing.context import entries_context
+    from heatwright.writing.evidence import evidence
     from heatwright.writing.render import render_format
 
 _HOME = {
@@ -80,6 +85,7 @@ _HOME = {
     "ModelOptions": "partition.choices",
     "Molecule": "molecule",
     "Nasa7": "polynomial.nasa7",
+    "Page": "report.page",
     "PublishedFactor": "scales",
     "ReferenceSet": "formation.reference_set",
     "Refused": "findings",
@@ -99,6 +105,8 @@ _HOME = {
     "collect_references": "formation.reference_set",
     "compare_sets": "project.changes",
     "entries_context": "writing.context",
+    "evidence": "writing.evidence",
+    "figures_of": "report.figures",
     "find_reactions": "formation.reactions",
     "fit_nasa7": "polynomial.fit",
     "fit_quality": "polynomial.quality",
@@ -110,6 +118,7 @@ _HOME = {
     "mechanism_effect": "project.effects",
     "mend_entries": "audit.mend",
     "mixture_model": "partition.mixing",
+    "page_html": "report.page",
     "parse_enthalpy": "formation.formation",
     "parse_entries": "reading.entries",
     "parse_isotope": "structure.isotopes",
@@ -124,7 +133,9 @@ _HOME = {
     "reference_species": "formation.species_references",
     "render_format": "writing.render",
     "replace_entries": "reading.entries",
+    "shown_documents": "report.documents",
     "splice": "project.splice",
+    "standalone_svg": "report.svg",
     "symmetry": "structure.symmetry",
     "with_energy": "reading.single_point",
     "with_isotopes": "structure.isotopes",
@@ -153,6 +164,7 @@ __all__ = [
     "ModelOptions",
     "Molecule",
     "Nasa7",
+    "Page",
     "PublishedFactor",
     "ReferenceSet",
     "Refused",
@@ -173,6 +185,8 @@ __all__ = [
     "collect_references",
     "compare_sets",
     "entries_context",
+    "evidence",
+    "figures_of",
     "find_reactions",
     "fit_nasa7",
     "fit_quality",
@@ -184,6 +198,7 @@ __all__ = [
     "mechanism_effect",
     "mend_entries",
     "mixture_model",
+    "page_html",
     "parse_enthalpy",
     "parse_entries",
     "parse_isotope",
@@ -198,7 +213,9 @@ __all__ = [
     "reference_species",
     "render_format",
     "replace_entries",
+    "shown_documents",
     "splice",
+    "standalone_svg",
     "symmetry",
     "with_energy",
     "with_isotopes",

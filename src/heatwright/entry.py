@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from functools import lru_cache, reduce
+from functools import cached_property, lru_cache, reduce
 from operator import add
 from typing import Final, Literal
 
@@ -14,13 +14,18 @@ from heatwright.constants import GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
 from heatwright.findings import Finding, Refused
 from heatwright.formation.formation import Formation
 from heatwright.molecule import FloatArray
-from heatwright.partition.contribution import LnQ
 from heatwright.partition.model import ThermoModel
 from heatwright.partition.table import ThermoTable
 from heatwright.polynomial.fit import Fit, check_temperatures, common_temperature, fit_many
 from heatwright.polynomial.minimax import design
 from heatwright.polynomial.nasa7 import Nasa7
-from heatwright.polynomial.quality import FitQuality, fit_qualities, judged_temperatures
+from heatwright.polynomial.quality import (
+    FitQuality,
+    ResidualCurve,
+    fit_qualities,
+    judged_temperatures,
+    residual_curve,
+)
 
 TABLE_TEMPERATURES_K = (
     100.0, 150.0, 200.0, 250.0, 298.15, 300.0, 350.0, 400.0, 500.0, 600.0, 700.0, 800.0, 900.0, 1000.0, 1100.0, 1200.0,
@@ -67,6 +72,19 @@ class Entry:
         """The composition with the electrons of an ion as the element ``E`` (one less for each positive charge)."""
         charge = self.model.molecule.charge or 0
         return {**self.composition, "E": -charge} if charge else self.composition
+
+    @cached_property
+    def residuals(self) -> ResidualCurve:
+        """What the polynomial differs by from the model, with the temperatures of the largest deviations among them."""
+        model, q = self.model, self.quality
+        at_298 = float(model.h_minus_h0_R(STANDARD_TEMPERATURE_K))
+        offset = self.formation.dHf298_kJ_mol * 1000.0 / GAS_CONSTANT_J_MOL_K - at_298
+
+        def h_RT(T: FloatArray) -> FloatArray:
+            return (offset + model.h_minus_h0_R(T)) / T
+
+        worst = (q.dcp_R.at_K, q.dh_RT.at_K, q.ds_R.at_K)
+        return residual_curve(self.polynomial, model.cp_R, h_RT, model.s_R, worst)
 
 
 @dataclass(frozen=True, eq=False)
@@ -134,12 +152,20 @@ class _Grids:
     shown: slice
 
 
+def evaluation_grid(options: FitOptions) -> FloatArray | None:
+    """All temperatures at which an entry needs its model, 298.15 K first; None when they have to be looked for."""
+    if options.t_common_K == "auto":
+        return None
+    return _grids((float(options.t_low_K), float(options.t_common_K), float(options.t_high_K))).T_K
+
+
 @lru_cache(maxsize=64)
 def _grids(temperatures_K: tuple[float, float, float]) -> _Grids:
     fitted, judged = design(*temperatures_K).nodes_K, judged_temperatures(*temperatures_K)
     shown = table_grid(temperatures_K[0], temperatures_K[2])
     ends = np.cumsum([1, fitted.size, judged.size, shown.size])
     T = np.concatenate([[STANDARD_TEMPERATURE_K], fitted, judged, shown])
+    T.flags.writeable = False  # it is shared
     return _Grids(T, slice(1, ends[1]), slice(ends[1], ends[2]), slice(ends[2], ends[3]))
 
 
@@ -167,12 +193,9 @@ def _made_together(
     )
     made: dict[int, Entry | Refused] = {i: fit for i, fit in enumerate(fits) if isinstance(fit, Refused)}
     for i, fit, quality in zip(good, found, qualities, strict=True):
-        made[i] = _entry(requests[i], fit.polynomial, quality, _table(requests[i].model, parts[i], grids))
+        table = requests[i].model.table_from(parts[i], totals[i], grids.shown, grids.T_K[grids.shown])
+        made[i] = _entry(requests[i], fit.polynomial, quality, table)
     return [made[i] for i in range(len(requests))]
-
-
-def _table(model: ThermoModel, parts: Sequence[LnQ], grids: _Grids) -> ThermoTable:
-    return model.table_from([p[:1] for p in parts], [p[grids.shown] for p in parts], grids.T_K[grids.shown])
 
 
 def _entry(request: EntryRequest, polynomial: Nasa7, quality: FitQuality, table: ThermoTable) -> Entry:

@@ -156,6 +156,8 @@ CODES: Final[dict[str, str]] = {
     "target-exists": "The file to be written exists already.",
     "target-unwritable": "The file to be written cannot be written.",
     "template-failed": "The user's template could not be rendered.",
+    "no-matplotlib": "Figures as PNG or PDF need matplotlib, which is not installed.",
+    "document-wrong": "A JSON document of entries lacks a key, or a value of it is not what it should be.",
     # --- a mechanism as a build -----------------------------------------------------------------------------------
     "lock-wrong": "A lock file is no TOML, or holds an unknown, missing or wrong value.",
     "lock-newer": "A lock file was made by a newer version of heatwright.",

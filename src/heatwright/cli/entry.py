@@ -20,6 +20,7 @@ from heatwright.cli.options import (
     fit_options,
     model_options,
     outputs_argument,
+    range_options,
     taken_conformers,
     taken_energies,
     taken_model_options,
@@ -71,21 +72,7 @@ class Request:
 @click.option("--template", type=click.Path(), metavar="FILE", help="Your own jinja2 template instead of a format.")
 @click.option("-o", "--output", "target", type=click.Path(), metavar="FILE", help="Write here, whole or not at all.")
 @click.option("--force", is_flag=True, help="Replace FILE when it exists.")
-@click.option(
-    "--range",
-    "range_text",
-    default="200,6000",
-    show_default=True,
-    metavar="LOW,HIGH",
-    help="Range of the polynomial, K.",
-)
-@click.option(
-    "--common",
-    default="1000",
-    show_default=True,
-    metavar="T|auto",
-    help="Where its two halves meet, K; auto looks for the best.",
-)
+@range_options
 @units_option
 @model_options
 @words_options
@@ -105,10 +92,10 @@ def entry(ctx: click.Context, /, outputs: tuple[str, ...], quiet: bool, verbose:
 
     reporter = Reporter(quiet=quiet, verbose=verbose)
     style = _Style("json" if options["as_json"] else options["format_name"], options["template"])
-    jobs = _jobs(outputs, options)
+    jobs = entry_jobs(outputs, options)
     if options["target"] is not None:
         check_target(options["target"], options["force"])
-    request = _request(options, reporter)
+    request = entry_request(options, reporter)
     entries = _without_twins(_made(jobs, request, style, reporter), reporter)
     for path, made in entries:
         _describe(path, made, options["units"], reporter)
@@ -119,7 +106,7 @@ def entry(ctx: click.Context, /, outputs: tuple[str, ...], quiet: bool, verbose:
 
 
 @dataclass(frozen=True, slots=True)
-class _Job:
+class Job:
     """One output to make an entry of: it and its conformers, each with the file of its energy; what was said of it."""
 
     path: str
@@ -129,7 +116,8 @@ class _Job:
     reaction: str | None
 
 
-def _jobs(outputs: tuple[str, ...], options: dict[str, Any]) -> list[_Job]:
+def entry_jobs(outputs: tuple[str, ...], options: dict[str, Any]) -> list[Job]:
+    """What to make of each output; raises UsageError where options and outputs do not go together."""
     names = options["names"]
     if names and len(names) != len(outputs):
         raise UsageError(
@@ -140,19 +128,19 @@ def _jobs(outputs: tuple[str, ...], options: dict[str, Any]) -> list[_Job]:
     energies = taken_energies(options, len(outputs) + len(conformers))
     further = tuple(zip(conformers, energies[len(outputs) :], strict=True))
     return [
-        _Job(path, ((path, energies[i]), *further), names[i] if names else None, given[i], reactions[i])
+        Job(path, ((path, energies[i]), *further), names[i] if names else None, given[i], reactions[i])
         for i, path in enumerate(outputs)
     ]
 
 
-def _made(jobs: list[_Job], request: Request, style: _Style, reporter: Reporter) -> list[tuple[str, Entry]]:
+def _made(jobs: list[Job], request: Request, style: _Style, reporter: Reporter) -> list[tuple[str, Entry]]:
     """The entries that could be made and written; the others are reported as failed."""
     from heatwright.findings import Refused
 
     entries = []
     for job in jobs:
         try:
-            made = _make(job, request)
+            made = made_entry(job, request)
             style.check_name(made.name)
             style.render([made], reporter)  # a value that does not fit its field fails here, alone
         except Refused as error:
@@ -213,7 +201,8 @@ class _Style:
         return render_format(FORMATS[self.format_name].template, context)
 
 
-def _request(options: dict[str, Any], reporter: Reporter) -> Request:
+def entry_request(options: dict[str, Any], reporter: Reporter) -> Request:
+    """The choices that hold for all outputs, with the atoms and references they name."""
     fit = fit_options(options["range_text"], options["common"])
     _check_range(fit)
     own = own_references(options)
@@ -233,7 +222,7 @@ def _check_range(fit: FitOptions) -> None:
     check_temperatures(fit.t_low_K, fit.t_common_K, fit.t_high_K)
 
 
-def _make(job: _Job, request: Request) -> Entry:
+def made_entry(job: Job, request: Request) -> Entry:
     """The entry of one output; raises Refused."""
     from dataclasses import replace
 

@@ -17,8 +17,10 @@ from heatwright.cli.crosscheck import crosscheck
 from heatwright.cli.entry import entry
 from heatwright.cli.explain import explain
 from heatwright.cli.mend import mend
+from heatwright.cli.plot import plot
 from heatwright.cli.reactions import reactions
 from heatwright.cli.references import references
+from heatwright.cli.report import report
 from heatwright.cli.rotors import rotors
 from heatwright.cli.samples import samples
 from heatwright.cli.scales import scales
@@ -33,7 +35,7 @@ INTERRUPTED = 130
 
 SECTIONS = {
     "One molecule": ("survey", "table", "entry", "rotors"),
-    "A mechanism": ("start", "build", "compare", "crosscheck"),
+    "A mechanism": ("start", "build", "compare", "crosscheck", "report", "plot"),
     "Existing entries": ("audit", "mend", "splice"),
     "Looking things up": ("scales", "references", "reactions", "explain", "samples"),
 }
@@ -78,6 +80,8 @@ for _command in (
     build,
     compare,
     crosscheck,
+    report,
+    plot,
     audit,
     mend,
     splice,

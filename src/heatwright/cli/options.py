@@ -173,6 +173,32 @@ _MODEL_OPTIONS = (
 )
 
 
+_RANGE_OPTIONS = (
+    click.option(
+        "--range",
+        "range_text",
+        default="200,6000",
+        show_default=True,
+        metavar="LOW,HIGH",
+        help="Range of the polynomial, K.",
+    ),
+    click.option(
+        "--common",
+        default="1000",
+        show_default=True,
+        metavar="T|auto",
+        help="Where its two halves meet, K; auto looks for the best.",
+    ),
+)
+
+
+def range_options(command: F) -> F:
+    """The options that choose the temperatures of a polynomial."""
+    for option in reversed(_RANGE_OPTIONS):
+        command = option(command)
+    return command
+
+
 def model_options(command: F) -> F:
     """The options that choose how a molecule becomes a model."""
     for option in reversed(_MODEL_OPTIONS):

@@ -30,12 +30,17 @@ an even potential."""
 
 @dataclass(frozen=True)
 class FittedPotential:
-    """The potential of a scan, its number of harmonics and points, and the root-mean-square residual in 1/cm."""
+    """The potential of a scan, its number of harmonics, its points, and the root-mean-square residual in 1/cm.
+
+    angles_deg, energies_cm1 : of the points as they were fitted, the lowest at 0.
+    """
 
     potential: Potential
     harmonics: int
     n_points: int
     rms_cm1: float
+    angles_deg: tuple[float, ...] = ()
+    energies_cm1: tuple[float, ...] = ()
 
 
 def tolerated_cm1(barrier_cm1: float) -> float:
@@ -95,7 +100,7 @@ def fitted_potential(
         words = f"between the points the fitted curve runs from {lowest:.0f} to {highest:.0f} cm⁻¹"
         fault = _unfit(words, f"0 to {E.max():.0f} cm⁻¹ as at the points", "Add points where the scan has gaps.")
         raise Refused([_at(fault, where)])
-    return FittedPotential(potential, harmonics, len(E), rms)
+    return FittedPotential(potential, harmonics, len(E), rms, tuple(angles_deg.tolist()), tuple(E.tolist()))
 
 
 def _at(fault: Finding, where: str) -> Finding:

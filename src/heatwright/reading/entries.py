@@ -22,6 +22,7 @@ from heatwright.reading.yaml_species import scan_yaml
 MOST_BYTES: Final = 200_000_000
 """The largest thermo file that is read; mechanisms with thousands of species have 10 MB."""
 _YAML = re.compile(rb"^(?:species|phases|units|description|generator|[\w.-]*species)\s*:", re.MULTILINE)
+_TWO_LINES = re.compile(rb"^.{79}1(?:&[^\n]*\n[^\n]*)?\r?\n.{79}2\s*$", re.MULTILINE)
 _THERMO = re.compile(rb"^[ \t]*THER(?:MO)?(?:[ \t]+(?:ALL|NASA9))*[ \t]*(?:!.*)?\r?$", re.MULTILINE | re.IGNORECASE)
 
 __all__ = ["EntryFile", "PassedOver", "ThermoEntry", "parse_entries", "read_entries", "replace_entries"]
@@ -155,6 +156,12 @@ def _format_of(data: bytes, path: str) -> Literal["nasa7", "yaml"]:
     if path.lower().endswith((".yaml", ".yml")):
         return "yaml"
     return "yaml" if _YAML.search(data) and not _THERMO.search(data) else "nasa7"
+
+
+def looks_like_entries(text: str) -> bool:
+    """Whether a text may be a thermo file: records numbered 1 and 2 in column 80, a THERMO line, or Cantera YAML."""
+    data = text.encode("utf-8", errors="replace")
+    return any(found.search(data) for found in (_TWO_LINES, _THERMO, _YAML))
 
 
 def _newline(data: bytes) -> str:

@@ -13,6 +13,7 @@ from heatwright.formation.formation import Formation
 from heatwright.molecule import Molecule
 from heatwright.partition.model import ThermoModel
 from heatwright.partition.table import ThermoTable
+from heatwright.writing.evidence import evidence
 from heatwright.writing.units import UNITS, Units
 
 WIDTH: Final = 76
@@ -39,6 +40,7 @@ def comment_lines(entry: Entry) -> tuple[str, ...]:
     """The block as ASCII lines without a comment mark."""
     paragraphs = (
         *_identity(entry.name, entry.model),
+        f"evidence: {evidence(entry)}",
         *_treatment(entry.model),
         *_thermochemistry(entry),
         *_fit(entry),
@@ -112,6 +114,8 @@ _ASCII: Final = str.maketrans(
 
 def ascii_text(text: str) -> str:
     """*text* in printable ASCII on one line; what has no usual spelling there is written as its code point."""
+    if text.isascii():
+        return " ".join(text.split())
     one_line = " ".join(text.translate(_ASCII).split())
     return one_line.encode("ascii", "backslashreplace").decode("ascii")
 

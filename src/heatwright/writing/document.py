@@ -8,9 +8,9 @@ from typing import Any
 import numpy as np
 
 from heatwright.constants import BAR_PA
-from heatwright.elements import formula
+from heatwright.elements import formula, symbol
 from heatwright.entry import Entry
-from heatwright.findings import Finding
+from heatwright.findings import Finding, Refused
 from heatwright.formation.formation import Formation
 from heatwright.molecule import FloatArray, Molecule
 from heatwright.partition.internal_rotation import TreatedTorsion
@@ -19,7 +19,10 @@ from heatwright.partition.table import ThermoTable
 from heatwright.partition.torsion import HinderedRotor
 from heatwright.partition.uncertainty import TableUncertainty
 from heatwright.polynomial.nasa7 import Nasa7
-from heatwright.polynomial.quality import FitQuality
+from heatwright.polynomial.quality import FitQuality, ResidualCurve
+from heatwright.structure.bond_orders import bonding
+from heatwright.structure.bonds import bonds
+from heatwright.writing.evidence import evidence, evidence_without_entry
 from heatwright.writing.numbers import significant
 
 JSON_VERSION = 1
@@ -37,9 +40,11 @@ def species_document(
         "composition": model.composition,
         "charge": molecule.charge,
         "multiplicity": molecule.multiplicity,
+        "evidence": evidence_without_entry(model) if entry is None else evidence(entry),
         "point_group": model.symmetry.point_group or None,
         "symmetry_number": model.symmetry_number,
         "optical_isomers": model.optical_isomers,
+        "geometry": geometry_document(molecule),
         "rotational_constants_cm-1": _numbers(model.inertia.rotational_constants_cm1),
         "wavenumbers_cm-1": _numbers(molecule.wavenumbers_cm1),
         "frequency_scale": model.frequency_scale,
@@ -61,6 +66,7 @@ def species_document(
         "low_modes": model.motion.low_modes,
         "electronic_levels_cm-1": [[nu, g] for nu, g in model.levels],
         "torsions": [torsion_document(t) for t in model.torsions],
+        "classical_limit_R": _classical_limit(model),
         "H298_minus_H0_kJ_mol": significant(table.h298_minus_h0_kJ_mol),
         "table": _table(table),
     }
@@ -71,10 +77,41 @@ def species_document(
     if model.motion.shifts:
         document |= _low_modes(model)
     if entry is not None:
-        document |= {"nasa7": nasa7_document(entry.polynomial), "residuals": residuals_document(entry.quality)}
+        document |= {
+            "nasa7": nasa7_document(entry.polynomial),
+            "residuals": residuals_document(entry.quality),
+            "residual_curve": _residual_curve(entry.residuals),
+        }
     document["source"] = source_document(molecule)
     document["findings"] = [f.as_json() for f in findings]
     return document
+
+
+def geometry_document(molecule: Molecule) -> dict[str, Any] | None:
+    """Elements, coordinates and bonds (atoms counted from 1) to draw a molecule by; None without a geometry.
+
+    The order of each bond is None, and there are no bond types, where no Lewis structure can be told.
+    """
+    if not molecule.has_geometry:
+        return None
+    document: dict[str, Any] = {
+        "elements": [symbol(int(z)) for z in molecule.atomic_numbers],
+        "coordinates_A": [[round(float(c), 5) + 0.0 for c in atom] for atom in molecule.coordinates_A],
+    }
+    try:
+        found = bonding(molecule)
+    except Refused:
+        near = np.argwhere(np.triu(bonds(molecule.atomic_numbers, molecule.coordinates_A)))
+        return document | {"bonds": [[int(i) + 1, int(j) + 1, None] for i, j in near], "bond_types": None}
+    return document | {
+        "bonds": [[b.first + 1, b.second + 1, b.order] for b in found.bonds],
+        "bond_types": dict(found.types),
+    }
+
+
+def _classical_limit(model: ThermoModel) -> float | None:
+    """What Cp°/R tends to, where every motion is a rigid rotor or an oscillator to the end."""
+    return None if model.torsions or model.options.low_modes.kind == "interpolate" else model.classical_limit_R
 
 
 def _low_modes(model: ThermoModel) -> dict[str, Any]:
@@ -102,10 +139,26 @@ def torsion_document(torsion: TreatedTorsion) -> dict[str, Any]:
         "F_cm-1": significant(torsion.F_cm1),
         "symmetry": torsion.bond.symmetry,
         "overlap": significant(torsion.overlap, 4),
+        "angle_deg": significant(torsion.angle_deg, 6),
+        "potential": _potential(torsion),
         "levels_cm-1": _numbers(levels[levels <= max(1.5 * torsion.potential.barrier_cm1, 500.0)]),
         "zero_point_cm-1": significant(torsion.ground_cm1),
+        "ground_cm-1": significant(torsion.rotor.ground_cm1),
         "source": torsion.source,
     }
+
+
+def _potential(torsion: TreatedTorsion) -> dict[str, Any]:
+    """V(φ) = a0 + sum of a_m cos mφ + b_m sin mφ, and the points of the scan that it was fitted to."""
+    potential, fit = torsion.potential, torsion.fit
+    document: dict[str, Any] = {
+        "constant_cm-1": significant(potential.constant_cm1),
+        "cosine_cm-1": _numbers(potential.cosine_cm1),
+        "sine_cm-1": _numbers(potential.sine_cm1),
+    }
+    if fit is not None:
+        document |= {"scan_deg": _numbers(fit.angles_deg), "scan_cm-1": _numbers(fit.energies_cm1)}
+    return document
 
 
 def source_document(molecule: Molecule) -> dict[str, Any]:
@@ -221,4 +274,16 @@ def residuals_document(quality: FitQuality) -> dict[str, float]:
         "max_dH_RT": significant(quality.dh_RT.largest, 4),
         "max_dS_R": significant(quality.ds_R.largest, 4),
         "minimax_dCp_R": significant(quality.minimax_dCp_R, 4),
+    }
+
+
+def _residual_curve(curve: ResidualCurve) -> dict[str, Any]:
+    def column(values: FloatArray) -> list[float]:
+        return [significant(float(v), 4) for v in values]
+
+    return {
+        "T_K": _numbers(curve.T_K),
+        "dCp_R": column(curve.dcp_R),
+        "dH_RT": column(curve.dh_RT),
+        "dS_R": column(curve.ds_R),
     }

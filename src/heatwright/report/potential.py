@@ -1,0 +1,112 @@
+"""A torsional potential with its levels and the points of the scan."""
+
+from __future__ import annotations
+
+from itertools import pairwise
+from typing import Final
+
+import numpy as np
+
+from heatwright.constants import CM1_KJ_MOL, SECOND_RADIATION_CM_K, STANDARD_TEMPERATURE_K
+from heatwright.partition.potential import Potential
+from heatwright.report.curves import LEFT, WIDTH
+from heatwright.report.drawing import Dots, Drawing, Figure, Mark, Point, Words, line, segments
+from heatwright.report.layout import Frame, Room, Scale, curve, frame, nice_ticks
+from heatwright.report.species import Species, Torsion
+
+_RIGHT: Final = 404.0
+_MOST_LEVELS: Final = 60
+_POINTS: Final = 181
+
+
+def torsional_potential(species: Species, index: int) -> Figure:
+    """V(φ) of the *index*-th torsion."""
+    t = species.torsions[index]
+    potential = Potential(t.constant_cm1, t.cosine_cm1, t.sine_cm1)
+    phi = np.linspace(-180.0, 180.0, _POINTS)
+    lowest = potential.minimum[1]
+    V = potential(np.radians(phi)) - lowest
+    kT = STANDARD_TEMPERATURE_K / SECOND_RADIATION_CM_K
+    top = 1.14 * max(t.barrier_cm1, 1.15 * kT, *t.scan_cm1, 1.0)
+    x, y = Scale(-180.0, 180.0, LEFT + 4.0, _RIGHT), Scale(0.0, top, 238.0, 26.0)
+    plot = frame(x, y, list(range(-180, 181, 60)), nice_ticks(0.0, top), x_name="dihedral angle / °", y_name="V / cm⁻¹")
+    well = curve(x, y, phi.tolist(), V.tolist())
+    ground = t.ground_cm1
+    levels = [ground + e for e in t.levels_cm1 if ground + e < top][:_MOST_LEVELS]
+    marks = [*plot.marks, *_marks(t, plot, well, levels, kT, lowest, V)]
+    name = "-".join(str(a) for a in t.atoms)
+    return Figure(
+        key=f"torsion-{index + 1}",
+        heading=f"Torsion {name}",
+        title=f"Torsion {name} of {species.name}",
+        description=f"The potential has a barrier of {t.barrier_cm1:.0f} cm⁻¹ ({t.barrier_cm1 * CM1_KJ_MOL:.2f} "
+        f"kJ/mol), {t.symmetry} equivalent orientations in a turn and {len(potential.minima)} minima; {len(levels)} "
+        f"levels are drawn, the lowest at {ground:.0f} cm⁻¹.",
+        caption=f"Potential of the torsion {name} of {species.name} ({t.source}): barrier {t.barrier_cm1:.0f} cm⁻¹, "
+        f"F = {t.F_cm1:.3g} cm⁻¹, symmetry {t.symmetry}{_overlap(t)}; horizontal lines: levels; dots: scan; triangle: "
+        "geometry of the frequencies.",
+        source=t.source or species.source,
+        drawing=Drawing(WIDTH, 274.0, tuple(marks)),
+        columns=("angle / °", "V / cm⁻¹", "level", "energy / cm⁻¹"),
+        rows=_rows(phi, V, levels),
+    )
+
+
+def _overlap(t: Torsion) -> str:
+    return "" if t.overlap is None else f", overlap with the low modes {t.overlap:.2f}"
+
+
+def _rows(phi: np.ndarray, V: np.ndarray, levels: list[float]) -> tuple[tuple[str, ...], ...]:
+    """Every 15° with its potential, and beside it the levels."""
+    angles = [(f"{a:.0f}".replace("-", "−"), f"{v:.1f}") for a, v in zip(phi.tolist(), V.tolist(), strict=True)]
+    left = [row for row, a in zip(angles, phi.tolist(), strict=True) if abs(a / 15.0 - round(a / 15.0)) < 0.01]
+    right = [(str(i), f"{e:.1f}") for i, e in enumerate(levels)]
+    n = max(len(left), len(right))
+    blank = [("", "")]
+    return tuple(
+        (*a, *b) for a, b in zip(left + blank * (n - len(left)), right + blank * (n - len(right)), strict=True)
+    )
+
+
+def _marks(
+    t: Torsion, plot: Frame, curve: list[Point], levels: list[float], kT: float, lowest: float, V: np.ndarray
+) -> list[Mark]:
+    x, y, (left, top, right, bottom) = plot.x, plot.y, plot.box
+    marks: list[Mark] = [segments([s for e in levels for s in _inside(e, curve, y)], "level")] if levels else []
+    marks += [segments([((left, y(kT)), (right, y(kT)))], "hair"), line(curve, "polynomial")]
+    room = Room((left + 2.0, top - 14.0, right, bottom - 2.0))
+    room.curve(curve)
+    for e in levels:
+        for a, b in _inside(e, curve, y):
+            room.curve([a, b])
+    if t.scan_deg:
+        turned = [((a + 180.0) % 360.0 - 180.0, v - lowest) for a, v in zip(t.scan_deg, t.scan_cm1, strict=True)]
+        dots = tuple((x(a), y(v)) for a, v in turned if v <= y.high)
+        marks += [Dots(dots, "ring"), Dots(dots, "hole")]
+        room.points += dots
+    at = x((t.angle_deg + 180.0) % 360.0 - 180.0)
+    point = (at, bottom + 1.0)
+    marks.append(segments([((at - 4.0, bottom + 7.0), point), (point, (at + 4.0, bottom + 7.0))], "bar"))
+    marks.append(Words((right, top - 9.0), f"barrier {t.barrier_cm1:.0f} cm⁻¹", "quiet", "end"))
+    free = [((px, y(kT) - 4.0), anchor) for px in np.linspace(left + 5.0, right - 5.0, 25).tolist()
+            for anchor in ("start", "end")]  # fmt: skip
+    words = room.place("kT, 298 K", "quiet", free)  # type: ignore[arg-type]
+    return [*marks, *([words] if words else [])]
+
+
+def _inside(energy: float, curve: list[Point], y: Scale) -> list[tuple[Point, Point]]:
+    """Where a level is above the potential: between its turning points."""
+    height = y(energy)
+    found: list[tuple[Point, Point]] = []
+    start: float | None = curve[0][0] if curve[0][1] >= height else None
+    for (x0, y0), (x1, y1) in pairwise(curve):
+        if (y0 >= height) != (y1 >= height):
+            cross = x0 + (x1 - x0) * (height - y0) / (y1 - y0)
+            if start is None:
+                start = cross
+            else:
+                found.append(((start, height), (cross, height)))
+                start = None
+    if start is not None:
+        found.append(((start, height), (curve[-1][0], height)))
+    return found

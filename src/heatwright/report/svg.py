@@ -1,0 +1,137 @@
+"""Drawings as SVG text, rounded to a tenth: inside a page, or as a file of its own."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Sequence
+from functools import lru_cache
+from html import escape
+from math import inf
+from typing import Final
+
+from heatwright.report.drawing import Ball, Dots, Figure, Mark, Path, Point, Words
+from heatwright.report.palette import figure_css, variables
+
+_ANCHOR: Final = {"start": "", "middle": " m", "end": " e"}
+NEAR: Final = 0.2
+"""How far a point may lie from the line that leaves it out, in canvas units."""
+
+
+def inline_svg(figure: Figure, prefix: str, group: str = "") -> str:
+    """The figure as an element of a page that holds the rules of :func:`palette.figure_css`.
+
+    prefix : of its ids, unique in the page.   group : id of the marks together, where they are to be shown elsewhere.
+    """
+    d, title, words = figure.drawing, f"{prefix}-t", f"{prefix}-d"
+    marks = marks_svg(d.marks)
+    drawn = f'<g id="{group}">{marks}</g>' if group else marks
+    return (
+        f'<svg class="fig" role="img" viewBox="0 0 {_n(d.width)} {_n(d.height)}" aria-labelledby="{title} {words}">'
+        f'<title id="{title}">{escape(figure.title)}</title><desc id="{words}">{escape(figure.description)}</desc>'
+        f"{drawn}</svg>"
+    )
+
+
+def standalone_svg(figure: Figure) -> str:
+    """The figure as a file: its own rules, light ground, dark where the reader's scheme is dark."""
+    d = figure.drawing
+    style = (
+        f"svg{{{variables(False)}}}"
+        f"@media (prefers-color-scheme:dark){{svg{{{variables(True)}}}}}\n{figure_css()}\n.back{{fill:var(--ground)}}"
+    )
+    return (
+        f'<svg xmlns="http://www.w3.org/2000/svg" class="fig" role="img" aria-labelledby="t d" '
+        f'width="{_n(d.width)}" height="{_n(d.height)}" viewBox="0 0 {_n(d.width)} {_n(d.height)}">\n'
+        f'<title id="t">{escape(figure.title)}</title>\n<desc id="d">{escape(figure.description)}</desc>\n'
+        f"<style>{escape(style, quote=False)}</style>\n"
+        f'<rect class="back" width="{_n(d.width)}" height="{_n(d.height)}"/>\n{marks_svg(d.marks)}\n</svg>\n'
+    )
+
+
+def marks_svg(marks: Iterable[Mark]) -> str:
+    """The marks one after another."""
+    return "".join(_mark(m) for m in marks)
+
+
+def _mark(mark: Mark) -> str:
+    if isinstance(mark, Path):
+        d = "".join(_line(points, mark.closed) for points in mark.lines)
+        return f'<path class="{mark.role}" d="{d}"/>'
+    if isinstance(mark, Dots):
+        d = "".join(f"M{_n(x)} {_n(y)}h0" for x, y in mark.points)
+        return f'<path class="{mark.role}" d="{d}"/>'
+    if isinstance(mark, Ball):
+        (x, y), r = mark.at, mark.radius
+        return f'<circle class="{mark.fill}" cx="{_n(x)}" cy="{_n(y)}" r="{_n(r)}"/>'
+    return _words(mark)
+
+
+def _words(mark: Words) -> str:
+    x, y = mark.at
+    return f'<text class="{mark.role}{_ANCHOR[mark.anchor]}" x="{_n(x)}" y="{_n(y)}">{escape(mark.text)}</text>'
+
+
+def _line(points: Sequence[Point], closed: bool) -> str:
+    """A path through the points in steps of whole tenths, so that rounding does not add up."""
+    tenths = [(round(10 * x), round(10 * y)) for x, y in simplified(points)]
+    (x, y), *rest = tenths
+    start = f"M{_t(x)} {_t(y)}"
+    if len(rest) == 1 and not closed and 0 in (rest[0][0] - x, rest[0][1] - y):
+        ((a, b),) = rest
+        return f"{start}h{_t(a - x)}" if b == y else f"{start}v{_t(b - y)}"
+    out = [f"{start}l" if rest else start]
+    for i, (a, b) in enumerate(rest):
+        dx, dy = _t(a - x), _t(b - y)
+        out.append(f"{'' if i == 0 or dx.startswith('-') else ' '}{dx}{'' if dy.startswith('-') else ' '}{dy}")
+        x, y = a, b
+    return "".join(out) + ("z" if closed else "")
+
+
+def simplified(points: Sequence[Point], near: float = NEAR) -> Sequence[Point]:
+    """Those points between which no other leaves the straight line by more than *near*, up or down.
+
+    From each point that is kept the slopes that pass all points so far stay in a narrowing wedge (after J. Sklansky and
+    V. Gonzalez, Pattern Recognition 12, 327 (1980), from memory); a line that turns back in x is kept at its turn.
+
+    >>> simplified([(0.0, 0.0), (1.0, 0.05), (2.0, 0.0), (3.0, 5.0)])
+    [(0.0, 0.0), (2.0, 0.0), (3.0, 5.0)]
+    """
+    if len(points) < 3:
+        return points
+    kept = [points[0]]
+    (x0, y0), last = points[0], points[0]
+    low, high = -inf, inf
+    for x, y in points[1:]:
+        dx = x - x0
+        ahead = dx * (last[0] - x0) >= 0.0 and abs(dx) >= abs(last[0] - x0) and dx != 0.0
+        slope = (y - y0) / dx if ahead else 0.0
+        if last is not kept[-1] and not (ahead and low <= slope <= high):
+            kept.append(last)
+            (x0, y0), low, high = last, -inf, inf
+            dx = x - x0
+            slope = (y - y0) / dx if dx else 0.0
+        if dx:
+            room = near / abs(dx)
+            low, high = max(low, slope - room), min(high, slope + room)
+        else:
+            low, high = inf, -inf
+        last = (x, y)
+    return [*kept, last]
+
+
+def _n(value: float) -> str:
+    """A number with at most one decimal."""
+    return _t(round(10 * value))
+
+
+@lru_cache(maxsize=1 << 15)
+def _t(tenths: int) -> str:
+    """A number of tenths as text, without a needless zero.
+
+    >>> _t(125), _t(-5), _t(30)
+    ('12.5', '-.5', '3')
+    """
+    whole, part = divmod(abs(tenths), 10)
+    sign = "-" if tenths < 0 else ""
+    if not part:
+        return f"{sign}{whole}"
+    return f"{sign}{whole or ''}.{part}"
