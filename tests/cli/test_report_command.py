@@ -66,7 +66,7 @@ def test_a_thermo_file_is_shown_with_its_audit(run, samples: Path, tmp_path: Pat
     assert done.code == 0
     assert "jump-cp" in done.out
     assert "<h1>therm.dat</h1>" in done.out
-    assert done.out.count("<figure>") == 1
+    assert done.out.count("<figure>") == 2  # Cp and its slope
     # what stood in the comment above the entry is shown as its evidence
     assert "harmonic oscillators unscaled (lowest 346 cm⁻¹); ΔfH° given" in done.out
 
