@@ -14,7 +14,6 @@ from heatwright.constants import GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
 from heatwright.findings import Finding, Refused
 from heatwright.formation.formation import Formation
 from heatwright.molecule import FloatArray
-from heatwright.partition.contribution import LnQ
 from heatwright.partition.model import ThermoModel
 from heatwright.partition.table import ThermoTable
 from heatwright.polynomial.fit import Fit, check_temperatures, common_temperature, fit_many
@@ -153,12 +152,20 @@ class _Grids:
     shown: slice
 
 
+def evaluation_grid(options: FitOptions) -> FloatArray | None:
+    """All temperatures at which an entry needs its model, 298.15 K first; None when they have to be looked for."""
+    if options.t_common_K == "auto":
+        return None
+    return _grids((float(options.t_low_K), float(options.t_common_K), float(options.t_high_K))).T_K
+
+
 @lru_cache(maxsize=64)
 def _grids(temperatures_K: tuple[float, float, float]) -> _Grids:
     fitted, judged = design(*temperatures_K).nodes_K, judged_temperatures(*temperatures_K)
     shown = table_grid(temperatures_K[0], temperatures_K[2])
     ends = np.cumsum([1, fitted.size, judged.size, shown.size])
     T = np.concatenate([[STANDARD_TEMPERATURE_K], fitted, judged, shown])
+    T.flags.writeable = False  # it is shared
     return _Grids(T, slice(1, ends[1]), slice(ends[1], ends[2]), slice(ends[2], ends[3]))
 
 
@@ -186,12 +193,9 @@ def _made_together(
     )
     made: dict[int, Entry | Refused] = {i: fit for i, fit in enumerate(fits) if isinstance(fit, Refused)}
     for i, fit, quality in zip(good, found, qualities, strict=True):
-        made[i] = _entry(requests[i], fit.polynomial, quality, _table(requests[i].model, parts[i], grids))
+        table = requests[i].model.table_from(parts[i], totals[i], grids.shown, grids.T_K[grids.shown])
+        made[i] = _entry(requests[i], fit.polynomial, quality, table)
     return [made[i] for i in range(len(requests))]
-
-
-def _table(model: ThermoModel, parts: Sequence[LnQ], grids: _Grids) -> ThermoTable:
-    return model.table_from([p[:1] for p in parts], [p[grids.shown] for p in parts], grids.T_K[grids.shown])
 
 
 def _entry(request: EntryRequest, polynomial: Nasa7, quality: FitQuality, table: ThermoTable) -> Entry:

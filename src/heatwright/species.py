@@ -41,9 +41,7 @@ Reader = Callable[..., "Molecule"]
 def usable_molecule(path: str, reading: Reading, read: Reader | None = None) -> Molecule:
     """The molecule of an output that a model can be built on; raises Refused with every reason why not."""
     from heatwright.findings import Refused, refusals
-    from heatwright.reading.single_point import with_energy
     from heatwright.reading.soundness import no_thermochemistry
-    from heatwright.structure.isotopes import with_isotopes
 
     if read is None:
         from heatwright.reading.outputs import read_output
@@ -64,8 +62,14 @@ def usable_molecule(path: str, reading: Reading, read: Reader | None = None) -> 
     if missing:
         raise Refused((*missing, *molecule.findings))
     if reading.energy is not None:
+        from heatwright.reading.single_point import with_energy
+
         other = read(reading.energy, charge=reading.charge, multiplicity=reading.multiplicity, accept=reading.accept)
         molecule = with_energy(molecule, other)
+    if not reading.isotopes:
+        return molecule
+    from heatwright.structure.isotopes import with_isotopes
+
     return with_isotopes(molecule, reading.isotopes)
 
 
@@ -94,7 +98,8 @@ def usable_species(
     models = []
     for path, energy in files:
         try:
-            molecule = usable_molecule(path, replace(reading, energy=energy), read)
+            own = reading if energy == reading.energy else replace(reading, energy=energy)
+            molecule = usable_molecule(path, own, read)
             models.append(build_model(molecule, options, rigid=rigid or rigid_body))
             if for_entry and (unfit := unfit_for_entry(molecule, reading.accept)):
                 raise Refused(unfit)

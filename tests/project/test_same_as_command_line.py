@@ -17,6 +17,7 @@ from heatwright.project.toml_text import toml_value
 from heatwright.resources import sample_outputs
 from kept_outputs import kept
 from manifest_entries import record
+from projects import built
 
 SAMPLES = Path(str(sample_outputs()))
 GIVEN = 'dHf298 = "-200.7 +/- 0.2 kJ/mol"\nsource = "ATcT 1.112"'
@@ -184,6 +185,21 @@ def test_the_same_choice_gives_the_same_bytes(project: Path, case: str, capfd: p
     assert by_manifest(project, output, lines, "X") == theirs
     plain = by_command(project, output, "", "X", capfd) if case in PLAIN_WORKS else ""
     assert theirs != plain, "the choice changed nothing, so this says nothing"
+
+
+@pytest.mark.parametrize("case", CASES)
+def test_a_build_gives_the_same_bytes(
+    project: Path, case: str, capfd: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    output, lines, words = CASES[case]
+    monkeypatch.chdir(project)
+    theirs = by_command(Path(), output, words, "X", capfd)
+    by_manifest(project, output, lines, "X")
+    outcome, told = built(project)
+    assert outcome.made == ("X",), told.failures
+    text = (project / "release" / "thermo.dat").read_text(encoding="utf-8")
+    assert text.replace("! reason for the symmetry: try\n", "") == theirs
+    assert str(project) not in text
 
 
 PLAIN_WORKS = [case for case in CASES if case not in ("nothing", "job", "accept", "accept-imaginary", "trust-levels")]

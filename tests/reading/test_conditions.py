@@ -32,6 +32,18 @@ REAL = {  # outputs run for this project: refusals and warnings of each
     "nwchem702_cn_uhf_freq.out": (set(), {"spin-contamination"}),
     "nwchem702_butyne_staggered_freq.out": ({"imaginary-modes"}, set()),
     "nwchem702_water_steep_freq.out": (set(), {"not-stationary"}),
+    "nwchem702_water_field_freq.out": ({"external-field"}, set()),
+    "nwchem702_h2_spring_freq.out": ({"constraints"}, {"not-stationary"}),
+    "xtb651_h2o2_held_torsion_ohess.out": ({"constraints"}, set()),
+    "xtb651_h2o2_fixed_atoms_ohess.out": ({"constraints", "imaginary-modes"}, set()),
+    "xtb651_water_alpb_ohess.out": ({"solvent"}, set()),
+    "xtb651_water_gfnff_alpb_ohess.out": ({"solvent", "no-multiplicity"}, {"energy-not-total", "program-scale"}),
+    "xtb651_water_charge_ohess.out": ({"external-field"}, set()),
+    "mopac2206_water_field_force.out": ({"external-field"}, {"energy-not-total", "no-energy", "not-stationary"}),
+    "mopac2206_water_second_root_force.out": (
+        {"excited-state", "imaginary-modes"}, {"energy-not-total", "no-energy", "not-stationary"},
+    ),
+    "mopac2206_h2o2_held_torsion_force.out": (set(), {"energy-not-total", "no-energy", "not-stationary"}),
 }  # fmt: skip
 
 
@@ -55,6 +67,11 @@ def test_the_sentences_say_where_and_what() -> None:
     assert "⟨S²⟩ is 1.560" in spin.text
     assert "0.750 for S = 0.5" in spin.text
     assert "COSMO, epsilon 78.4" in finding(read_output(kept("nwchem702_water_cosmo_freq.out")), "solvent").text
+    assert "ALPB, water" in finding(read_output(kept("xtb651_water_alpb_ohess.out")), "solvent").text
+    fixed = finding(read_output(kept("xtb651_h2o2_fixed_atoms_ohess.out")), "constraints").text
+    assert "3 degrees of freedom" in fixed
+    assert "expected 6 for 4 free atoms" in fixed
+    assert "Applied E-field" in finding(read_output(kept("nwchem702_water_field_freq.out")), "external-field").text
     hot = finding(read_output(kept("psi4_132_water_freq_400K_then_mp2.out")), "job-conditions")
     assert (hot.severity, "400 K" in hot.text) == ("note", True)
 
@@ -75,6 +92,12 @@ def test_accepted_by_name_and_recorded(name: str, word: str, code: str) -> None:
     assert f"The user accepted it (--accept {word})" in finding(m, code).text
     others = [w for w in ("solvent", "field", "constraints", "excited-state", "gradient") if w != word]
     assert finding(read_output(kept(name), accept=others), code) == finding(read_output(kept(name)), code)
+
+
+def test_mopac_derivatives_are_kcal_per_angstrom() -> None:
+    """The largest of the table under CARTESIAN COORDINATE DERIVATIVES, 3.415555 kcal/mol/Å, of the held torsion."""
+    m = read_output(kept("mopac2206_h2o2_held_torsion_force.out"))
+    assert m.max_gradient_hartree_bohr == pytest.approx(3.415555 / 627.5094740631 * 0.529177210903, rel=1e-9)
 
 
 def test_a_steep_geometry_is_unfit_for_an_entry_only() -> None:

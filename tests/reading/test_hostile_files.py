@@ -193,6 +193,56 @@ def test_memory_and_time_of_sixty_megabytes(tmp_path: Path, case: tuple[str, str
     small_and_large(tmp_path, case, 60_000_000)
 
 
+WHOLE = ["gaussian16_dvb_freq.out", "orca60_dvb_freq.out", WATER, "nwchem702_methanol_freq.out",
+         "psi4_132_h2o_opt_freq.out", "mopac2206_methanol_force_thermo.out"]  # fmt: skip
+"""Outputs of which many are joined to one: as many jobs of one molecule, the last of which is read."""
+TITLES = [
+    ("nwchem702_water_cosmo_freq.out", "ENERGY GRADIENTS"),
+    ("psi4_132_h2o_opt_freq.out", "Geometry (in Angstrom), charge = 0, multiplicity = 1:\n\n       Center  "),
+    ("psi4_132_h2o_opt_freq.out", "-Total Gradient:"),
+    ("nwchem702_d2o_freq.out", "NWChem Input Module\n NWChem SCF Module"),
+    ("mopac2206_methanol_force_thermo.out", "  298   VIB.  "),
+]
+"""Titles of tables, repeated without any table."""
+
+
+def seconds_to_read(path: Path, text: str) -> float:
+    path.write_text(text)
+    start = time.process_time()
+    assert read_output(path).wavenumbers_cm1.size > 0
+    return time.process_time() - start
+
+
+def four_times_as_long(path: Path, begin: str, part: str, end: str, size: int) -> None:
+    """Four times as much text takes not much more than four times as long."""
+    n = max(size // len(part), 2)
+    short = seconds_to_read(path, begin + part * n + end)
+    assert seconds_to_read(path, begin + part * (4 * n) + end) < 6.0 * short + 0.5
+
+
+@pytest.mark.parametrize("name", WHOLE)
+def test_many_jobs_in_one_file(tmp_path: Path, name: str) -> None:
+    four_times_as_long(tmp_path / "many", "", text_of(name), "", 800_000)
+
+
+@pytest.mark.parametrize(("name", "title"), TITLES)
+def test_titles_without_tables(tmp_path: Path, name: str, title: str) -> None:
+    text = text_of(name)
+    edge = text.index("\n", len(text) // 3) + 1
+    part = f" {title}\n" + "some words\n" * 20
+    four_times_as_long(tmp_path / "titles", text[:edge], part, text[edge:], 400_000)
+
+
+@pytest.mark.long
+@pytest.mark.parametrize("name", WHOLE)
+def test_a_file_of_many_jobs_and_twenty_megabytes(tmp_path: Path, name: str) -> None:
+    third_s, _ = cost(tmp_path / "third", text_of(name) * (7_000_000 // len(text_of(name))))
+    text = text_of(name) * (20_000_000 // len(text_of(name)))
+    seconds, megabytes = cost(tmp_path / "whole", text)
+    assert megabytes < 100.0 + 4.0 * len(text) / 1e6
+    assert seconds < 5.0 * third_s + 2.0
+
+
 @pytest.mark.parametrize("filling", ["x" * 3_000_000, "SCF Done:  E(" * 200_000, " \n" * 1_000_000, "9.9 " * 700_000])
 def test_endless_lines(tmp_path: Path, filling: str) -> None:
     for name, word in (("gaussian16_dvb_freq.out", " Standard orientation:"), (WATER, " Standard Nuclear Orientation")):

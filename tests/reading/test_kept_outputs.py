@@ -43,6 +43,9 @@ TABLE = {
     "nwchem702_water_d3bj_numerical.out": (
         "NWChem", "7.0.2", "frequency", "SCF", -76.358889725710, 0, 1, 3, 0, "B3LYP-D3BJ/def2-SVP", "ok",
     ),
+    "nwchem702_water_b3lyp_energy_then_freq.out": (
+        "NWChem", "7.0.2", "frequency", "SCF", -75.315239011078, 0, 1, 3, 0, "B3LYP/STO-3G", "ok",
+    ),
     "nwchem702_water_freq_then_ccsdt.out": (
         "NWChem", "7.0.2", "frequency", "SCF", -74.965901191748, 0, 1, 3, 0, "HF/STO-3G", "ok",
     ),
@@ -130,7 +133,10 @@ CONDITIONS = {  # read by test_conditions.py
     "psi4_132_cn_uhf_freq.out", "psi4_132_h2o2_frozen_torsion_freq.out", "nwchem702_water_cosmo_freq.out",
     "nwchem702_water_bq_freq.out", "nwchem702_h2o2_frozen_torsion_freq.out", "nwchem702_water_tddft_freq.out",
     "nwchem702_hcn_and_hnc.out", "nwchem702_cn_uhf_freq.out", "nwchem702_butyne_staggered_freq.out",
-    "nwchem702_water_steep_freq.out",
+    "nwchem702_water_steep_freq.out", "nwchem702_water_field_freq.out", "nwchem702_h2_spring_freq.out",
+    "xtb651_h2o2_held_torsion_ohess.out", "xtb651_h2o2_fixed_atoms_ohess.out", "xtb651_water_alpb_ohess.out",
+    "xtb651_water_gfnff_alpb_ohess.out", "xtb651_water_charge_ohess.out", "mopac2206_water_field_force.out",
+    "mopac2206_water_second_root_force.out", "mopac2206_h2o2_held_torsion_force.out",
 }  # fmt: skip
 REFUSED = {"multijob_qchem54_water_then_dvb.out", "nwchem702_water_and_n2.out", "psi4_132_h2_then_hf_failed.out"}
 

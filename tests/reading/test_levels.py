@@ -123,3 +123,17 @@ def test_unknown_parts_are_named() -> None:
     assert level_unknowns(REFERENCE, replace(REFERENCE, frozen_core="")) == ("frozen core",)
     assert level_unknowns(REFERENCE, replace(REFERENCE, frozen_core="", atoms=(1,))) == ()
     assert level_unknowns(REFERENCE, REFERENCE) == ()
+
+
+def test_a_task_that_finds_its_orbitals_converged_has_the_functional_of_the_task_before() -> None:
+    """NWChem does not print the functional again then."""
+    for job in (1, 2):
+        level = read_output(kept("nwchem702_water_b3lyp_energy_then_freq.out"), job=job).level
+        assert level is not None
+        assert (level.method, level.basis, level.functional) == ("B3LYP", "STO-3G", "VWN1RPA")
+
+
+def test_exact_exchange_alone_is_hartree_fock() -> None:
+    level = read_output(kept("nwchem702_water_field_freq.out")).level
+    assert level is not None
+    assert level.label == "HF/STO-3G"

@@ -80,6 +80,8 @@ def build(
 
 
 NOTHING = "Nothing to do."
+_MOST_LINES = 40
+"""Species named one by one before a build; with more, those with the same reason share a line (-n and -v name all)."""
 
 
 def _show(plan: Plan) -> None:
@@ -88,11 +90,23 @@ def _show(plan: Plan) -> None:
         click.echo(line)
 
 
-def _plan_lines(plan: Plan) -> list[str]:
+def _plan_lines(plan: Plan, most: int | None = None) -> list[str]:
+    """A line for each species that has to be made, or, for more than *most*, one for each reason; and the tally."""
     if plan.is_done:
         return [NOTHING]
     gone = [f"{name}: no longer in the manifest" for name in plan.removed]
-    return [*(decision.text for decision in plan.stale), *gone, plan.tally]
+    each = [decision.text for decision in plan.stale]
+    return [*(each if most is None or len(each) <= most else _by_reason(plan)), *gone, plan.tally]
+
+
+def _by_reason(plan: Plan) -> list[str]:
+    names: dict[str, list[str]] = {}
+    for decision in plan.stale:
+        names.setdefault(decision.text.partition(": ")[2], []).append(decision.name)
+    return [
+        f"{', '.join(some[:4])}{f' and {len(some) - 4} more' if len(some) > 4 else ''}: {why}"
+        for why, some in names.items()
+    ]
 
 
 def _sum_up(manifest: Manifest, outcome: Outcome, reporter: Reporter) -> None:
@@ -126,8 +140,9 @@ class Words(Watch):
 
     def planned(self, plan: Plan) -> None:
         """Each species that will be made with the reasons, and the tally."""
-        for line in _plan_lines(plan) if not plan.is_done else ():
-            self._reporter.say(line)
+        if not plan.is_done:
+            for line in _plan_lines(plan, None if self._reporter.verbose else _MOST_LINES):
+                self._reporter.say(line)
 
     def reading(self, done: int, total: int, path: str) -> None:
         """The bar."""

@@ -37,6 +37,11 @@ if TYPE_CHECKING:
     from heatwright.partition.uncertainty import TableUncertainty
 
 
+_AHEAD: Final = "_ahead"
+_NEAR_298: Final = np.array([STANDARD_TEMPERATURE_K, 300.0])
+"""298.15 K not alone: sums over a single temperature are added up in another order."""
+
+
 @dataclass(frozen=True, eq=False, kw_only=True)
 class ThermoModel:
     """A molecule's contributions and conventions; it knows how to tabulate, nothing else.
@@ -146,25 +151,39 @@ class ThermoModel:
 
     def parts(self, T: FloatArray) -> tuple[LnQ, ...]:
         """ln q and its derivatives of each contribution, in their order, at *T*, K; what all functions are made of."""
-        return tuple(contribution.ln_q(T) for contribution in self.contributions)
+        ahead = self.__dict__.get(_AHEAD)
+        if ahead is not None and ahead[0] is T:
+            known: tuple[LnQ, ...] = ahead[1]
+            return known
+        return tuple([contribution.ln_q(T) for contribution in self.contributions])
+
+    def evaluate_ahead(self, T: FloatArray) -> None:
+        """Evaluate at *T*, K, the first of which is 298.15: asked for this very array, :meth:`parts` has it then.
+
+        Nothing else changes: a value does not depend, to the last bit, on the other temperatures it is asked for with.
+        """
+        self.__dict__[_AHEAD] = (T, self.parts(T))
 
     def tabulate(self, T: ArrayLike) -> ThermoTable:
         """The table at the temperatures *T*, K."""
         grid = np.atleast_1d(checked_temperatures(T))
         parts = self.parts(np.concatenate([[STANDARD_TEMPERATURE_K], grid]))
-        return self.table_from([p[:1] for p in parts], [p[1:] for p in parts], grid)
+        return self.table_from(parts, reduce(add, parts), slice(1, None), grid)
 
-    def table_from(self, at_298: Sequence[LnQ], parts: Sequence[LnQ], grid: FloatArray) -> ThermoTable:
-        """The table from the values of the contributions (:meth:`parts`) at 298.15 K and at the grid, K."""
-        whole = share_of(reduce(add, parts), reduce(add, at_298), grid)
-        names = [contribution.name for contribution in self.contributions]
+    def table_from(self, parts: Sequence[LnQ], total: LnQ, shown: slice, grid: FloatArray) -> ThermoTable:
+        """The table from the values of the contributions (:meth:`parts`) and their sum.
+
+        They are at temperatures of which the first is 298.15 K; those at *shown* are the grid, K.
+        """
+        whole = share_of(total[shown], total[:1], grid)
+        each = zip(self.contributions, parts, strict=True)
         return ThermoTable(
             T_K=grid,
             cp_J_mol_K=whole.cp_J_mol_K,
             h_minus_h298_kJ_mol=whole.h_minus_h298_kJ_mol,
             s_J_mol_K=whole.s_J_mol_K,
             h298_minus_h0_kJ_mol=self.h298_minus_h0_kJ_mol,
-            parts=dict(zip(names, zip(at_298, parts, strict=True), strict=True)),
+            parts={contribution.name: (part[:1], part[shown]) for contribution, part in each},
             populations=self.populations(grid),
             uncertainty=self._uncertainty(grid),
         )
@@ -185,7 +204,10 @@ class ThermoModel:
     @cached_property
     def h298_minus_h0_kJ_mol(self) -> float:
         """H°(298.15 K) − H°(0 K), kJ/mol."""
-        return float(self.h_minus_h0_R(STANDARD_TEMPERATURE_K)) * GAS_CONSTANT_J_MOL_K / 1000.0
+        ahead = self.__dict__.get(_AHEAD)
+        parts = self.parts(_NEAR_298) if ahead is None else ahead[1]
+        u = float(reduce(add, [part.u[0] for part in parts]))
+        return u * STANDARD_TEMPERATURE_K * GAS_CONSTANT_J_MOL_K / 1000.0
 
     @property
     def classical_cp_R(self) -> float:

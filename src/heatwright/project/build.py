@@ -11,6 +11,7 @@ import json
 from collections.abc import Iterator, Sequence
 from contextlib import chdir
 from dataclasses import dataclass, replace
+from time import monotonic
 from typing import TYPE_CHECKING, Final
 
 from heatwright import __version__
@@ -42,6 +43,9 @@ if TYPE_CHECKING:
 
 _BATCH: Final = 128
 """Species made at a time: enough for the fit, few enough for the memory."""
+_WORTH_KEEPING_S: Final = 0.02
+"""Entries that took less than this each (torsions, conformers and sums over levels take more) are made again sooner
+than they would be kept."""
 _KEPT: Final = "kept from an earlier release"
 
 
@@ -116,7 +120,7 @@ class _Build:
         data = self._library.store.get([key]).get(key)
         if data is not None:
             try:
-                return lock_of(json.loads(data), file)
+                return lock_of(json.loads(data), file, trusted=True)
             except (ValueError, Refused):
                 self._library.store.drop(key)
         values = lock_values(text, file)
@@ -163,7 +167,8 @@ class _Build:
     def _made(self, decisions: Sequence[Decision]) -> Iterator[Record]:
         maker = Maker(self._library, self._shelves, self._watch.said)
         for start in range(0, len(decisions), _BATCH):
-            batch = decisions[start : start + _BATCH]
+            batch, began = decisions[start : start + _BATCH], monotonic()
+            self._library.fetch(task for decision in batch for task in tasks_of(decision.request))
             ready = [(decision, made) for decision in batch if (made := self._ingredients(maker, decision))]
             entries = entries_of([request for _, request in ready])
             good = []
@@ -174,11 +179,14 @@ class _Build:
                 elif not isinstance(entry, Refused):
                     rests_on = self._rests_on(decision, entry.composition)
                     good.append((decision, entry, entry_key(decision, rests_on), rests_on))
-            for (decision, *_), record in zip(good, records(good), strict=True):
+            finished = records(good)
+            costly = monotonic() - began > _WORTH_KEEPING_S * len(batch)
+            for (decision, *_), record in zip(good, finished, strict=True):
                 if isinstance(record, Refused):
                     self._fail(decision, record)
                     continue
-                self._library.store.put({self._result_key(decision): packed(record)})
+                if costly:
+                    self._library.store.put({self._result_key(decision): packed(record)})
                 self._watch.made(decision, record)
                 yield record
 
@@ -261,7 +269,8 @@ def _lock_key(text: str) -> str:
 
 
 def _text(data: bytes) -> str:
-    return data.decode("utf-8", "replace").replace("\r\n", "\n")
+    plain = data.replace(b"\r\n", b"\n") if b"\r" in data else data  # version control may have changed line ends
+    return plain.decode("utf-8", "replace")
 
 
 def _pressure_Pa(manifest: Manifest) -> float:

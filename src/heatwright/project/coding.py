@@ -1,4 +1,4 @@
-"""Molecules and what is found about them as bytes: JSON beside the raw numbers of arrays, compressed, with a checksum.
+"""Molecules and what is found about them as bytes: JSON beside the raw numbers of arrays, with a checksum.
 
 Only the types in :func:`_types` can come out of such bytes, whatever they hold: nothing in them is ever executed.
 """
@@ -8,13 +8,18 @@ from __future__ import annotations
 import json
 import zlib
 from collections.abc import Callable, Mapping
-from dataclasses import fields
+from dataclasses import MISSING, dataclass, fields
 from functools import cache
 from typing import Any, Final
 
 import numpy as np
 
-_MARK: Final = b"HW1"
+NAME: Final = "\0"
+"""Stands for the name of a file in what is kept of it; whoever uses it puts in how the file is to be called."""
+_NAME_IN_JSON: Final = "\\u0000"
+_PLAIN: Final = b"HW1"
+_PACKED: Final = b"HZ1"
+_WORTH_PACKING: Final = 1 << 14
 _DTYPES: Final = ("float64", "int64", "bool", "int32", "int16", "int8", "uint8")
 
 
@@ -25,9 +30,18 @@ class Unreadable(ValueError):
     """The bytes were not written by :func:`encoded`, or are damaged."""
 
 
+@dataclass(frozen=True, eq=False)
+class _Kind:
+    """A dataclass that may be encoded: its type, the names of its fields, and the defaults that need no writing."""
+
+    type: type
+    names: tuple[str, ...]
+    defaults: dict[str, Any]
+
+
 @cache
-def _types() -> dict[str, tuple[type, tuple[str, ...]]]:
-    """The dataclasses that may be encoded, by name, with the names of their fields."""
+def _types() -> dict[str, _Kind]:
+    """The dataclasses that may be encoded, by name."""
     from heatwright.findings import Finding
     from heatwright.molecule import DiatomicConstants, Level, Molecule, PrintedThermo, Source, Stated
     from heatwright.reading.torsion_scans import TorsionBarrier, TorsionScan
@@ -36,7 +50,12 @@ def _types() -> dict[str, tuple[type, tuple[str, ...]]]:
     from heatwright.structure.symmetry import Symmetry
 
     known = (Finding, DiatomicConstants, Level, Molecule, PrintedThermo, Source, Stated, TorsionBarrier, TorsionScan)
-    return {c.__name__: (c, tuple(f.name for f in fields(c))) for c in (*known, Inertia, Operations, Symmetry)}
+    return {c.__name__: _kind(c) for c in (*known, Inertia, Operations, Symmetry)}
+
+
+def _kind(c: Any) -> _Kind:
+    defaults = {f.name: f.default for f in fields(c) if f.default is not MISSING}
+    return _Kind(c, tuple(f.name for f in fields(c)), defaults)
 
 
 def encoded(value: object) -> bytes:
@@ -50,19 +69,29 @@ def encoded(value: object) -> bytes:
     arrays: list[bytes] = []
     text = json.dumps(_plain(value, arrays), ensure_ascii=False, separators=(",", ":")).encode()
     body = len(text).to_bytes(8, "little") + text + b"".join(arrays)
-    return _MARK + zlib.crc32(body).to_bytes(4, "little") + zlib.compress(body, 1)
+    mark, stored = (_PLAIN, body) if len(body) < _WORTH_PACKING else (_PACKED, zlib.compress(body, 1))
+    return mark + zlib.crc32(body).to_bytes(4, "little") + stored
 
 
-def decoded(data: bytes) -> Any:
-    """What :func:`encoded` was given; arrays are read-only.  Raises Unreadable when the bytes are damaged."""
+def decoded(data: bytes, name: str | None = None) -> Any:
+    """What :func:`encoded` was given; arrays are read-only.  Raises Unreadable when the bytes are damaged.
+
+    name : takes the place of :data:`NAME` wherever it stands in a text.
+
+    >>> decoded(encoded(("error in \\0", 1)), "a.out")
+    ('error in a.out', 1)
+    """
     try:
-        if not data.startswith(_MARK):
+        if data[:3] not in (_PLAIN, _PACKED):
             raise Unreadable("the bytes are not of this format")
-        body = zlib.decompress(data[7:])
+        body = data[7:] if data[:3] == _PLAIN else zlib.decompress(data[7:])
         if zlib.crc32(body) != int.from_bytes(data[3:7], "little"):
             raise Unreadable("the checksum is wrong")
         size = int.from_bytes(body[:8], "little")
-        return _value(json.loads(body[8 : 8 + size]), body, 8 + size)
+        text = body[8 : 8 + size].decode()
+        if name is not None:
+            text = text.replace(_NAME_IN_JSON, json.dumps(name)[1:-1])
+        return _value(json.loads(text), body, 8 + size)
     except Unreadable:
         raise
     except Exception as error:  # whatever damaged bytes provoke
@@ -85,9 +114,17 @@ def _plain(value: Any, arrays: list[bytes]) -> Any:
         return {"%": {str(key): _plain(item, arrays) for key, item in value.items()}}
     name = type(value).__name__
     kind = _types().get(name)
-    if kind is None or kind[0] is not type(value):
+    if kind is None or kind.type is not type(value):
         raise TypeError(f"{name} has no place in the store")
-    return {"@": [name, *(_plain(getattr(value, field), arrays) for field in kind[1])]}
+    return {"@": [name, {f: _plain(v, arrays) for f in kind.names if not _is_default(kind, f, v := getattr(value, f))}]}
+
+
+def _is_default(kind: _Kind, name: str, value: Any) -> bool:
+    """Whether a field holds its default, so that it need not be written."""
+    if name not in kind.defaults or isinstance(value, np.ndarray):
+        return False
+    default = kind.defaults[name]
+    return value is default or (type(value) is type(default) and bool(value == default))
 
 
 def _array(value: np.ndarray[Any, Any], arrays: list[bytes]) -> dict[str, Any]:
@@ -100,20 +137,21 @@ def _array(value: np.ndarray[Any, Any], arrays: list[bytes]) -> dict[str, Any]:
 
 
 def _value(plain: Any, body: bytes, start: int) -> Any:
-    kind = type(plain)
-    if kind in _SCALARS:
-        return plain
-    if kind is list:
+    """The value of a list or an object; scalars are left as they are by whoever calls."""
+    if type(plain) is list:
         return tuple([item if type(item) in _SCALARS else _value(item, body, start) for item in plain])
+    if type(plain) in _SCALARS:
+        return plain
     ((mark, inside),) = plain.items()
     return _MARKED[mark](inside, body, start)
 
 
 def _object(inside: list[Any], body: bytes, start: int) -> Any:
-    kind, names = _types()[inside[0]]
-    if len(names) != len(inside) - 1:
-        raise Unreadable(f"{inside[0]} has {len(inside) - 1} fields")
-    return kind(**dict(zip(names, _value(inside[1:], body, start), strict=True)))
+    name, given = inside
+    for field, value in given.items():
+        if type(value) not in _SCALARS:
+            given[field] = _value(value, body, start)
+    return _types()[name].type(**given)
 
 
 def _mapping(inside: dict[str, Any], body: bytes, start: int) -> dict[str, Any]:

@@ -11,6 +11,7 @@ import os
 import signal
 from collections import deque
 from collections.abc import Callable, Iterable, Iterator
+from contextlib import contextmanager
 from dataclasses import dataclass
 from queue import Empty, SimpleQueue
 from typing import TYPE_CHECKING, Final, Generic, TypeVar
@@ -86,17 +87,23 @@ class LocalProcesses(Engine):
         self._pool: ProcessPoolExecutor | None = None
 
     def submit(self, work: Callable[[A], R], task: A) -> Future[R]:
-        if self._pool is None:
-            self._pool = _pool(self._count)
-        return self._pool.submit(work, task)
+        if self._pool is not None:
+            return self._pool.submit(work, task)
+        self._pool = _pool(self._count)
+        with _interrupts_blocked():
+            return self._pool.submit(work, task)
 
     def mend(self) -> bool:
         self.close()
         return True
 
     def close(self) -> None:
-        if self._pool is not None:
-            self._pool.shutdown(wait=False, cancel_futures=True)
+        if self._pool is None:
+            return
+        workers = list((getattr(self._pool, "_processes", None) or {}).values())
+        self._pool.shutdown(wait=False, cancel_futures=True)
+        for worker in workers:  # what they are at is not wanted any more
+            worker.terminate()
         self._pool = None
 
 
@@ -108,11 +115,17 @@ def _pool(count: int) -> ProcessPoolExecutor:
         os.environ.setdefault(name, "1")  # each worker is one core's work; linear algebra must not add threads
     context = get_context("forkserver")
     context.set_forkserver_preload(list(_PRELOADED))
-    return ProcessPoolExecutor(count, mp_context=context, initializer=_leave_interrupts_to_the_driver)
+    return ProcessPoolExecutor(count, mp_context=context)
 
 
-def _leave_interrupts_to_the_driver() -> None:
-    signal.signal(signal.SIGINT, signal.SIG_IGN)
+@contextmanager
+def _interrupts_blocked() -> Iterator[None]:
+    """What is started inside never hears an interrupt from the terminal: that is the driver's business."""
+    before = signal.pthread_sigmask(signal.SIG_BLOCK, {signal.SIGINT})
+    try:
+        yield
+    finally:
+        signal.pthread_sigmask(signal.SIG_SETMASK, before)
 
 
 def unfit(where: str, found: str, action: str) -> Refused:
@@ -135,11 +148,8 @@ def run(engine: Engine, work: Callable[[A], R], tasks: Iterable[A]) -> Iterator[
     Raises Refused (``scheduler-unfit``) when a scheduler has lost its last worker.
     """
     runner = _Runner(engine, work, iter(tasks))
-    try:
-        while (item := runner.next_done()) is not None:
-            yield item
-    finally:
-        runner.stop()
+    while (item := runner.next_done()) is not None:
+        yield item
 
 
 class _Runner(Generic[A, R]):
@@ -168,11 +178,6 @@ class _Runner(Generic[A, R]):
             if deaths >= ATTEMPTS:
                 return task, Lost(f"what was at work on it died, {deaths + 1} times ({failure})")
             self._again.append((task, deaths + 1))
-
-    def stop(self) -> None:
-        """Wait for nothing more."""
-        for future in self._running:
-            future.cancel()
 
     def _fill(self) -> None:
         """Submit as many as the window holds; a task whose processes died twice goes alone, so that it shows."""

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import hashlib
 import json
 import os
 import stat
@@ -12,7 +13,7 @@ from typing import TYPE_CHECKING, Any, Final
 from heatwright.findings import Finding, Refused, refuse
 from heatwright.project.executors import Engine, Lost, run
 from heatwright.project.store import Store
-from heatwright.project.tasks import NAME, ReadResult, ReadTask, content_hash, do_task, read_key, renamed
+from heatwright.project.tasks import ReadResult, ReadTask, body_of, body_values, content_hash, do_task, read_key
 
 if TYPE_CHECKING:
     from heatwright.molecule import FloatArray, Molecule
@@ -35,6 +36,8 @@ class Library:
         self._engine = engine
         self._hashes: dict[str, str] = {}
         self._failed: dict[str, Finding] = {}
+        self._at_hand: dict[str, bytes] = {}
+        self._bodies: dict[object, Any] = {}
 
     def hashes(self, paths: Iterable[str]) -> dict[str, str]:
         """SHA-256 by absolute path, empty where there is nothing to be read; from the store where no time changed."""
@@ -54,11 +57,16 @@ class Library:
 
     def sha256(self, path: str) -> str:
         """SHA-256 of one file."""
-        return self.hashes([path])[path]
+        return self._hashes[path] if path in self._hashes else self.hashes([path])[path]
 
     def key(self, task: ReadTask) -> str:
         """The store's key of what a task gives now."""
         return read_key(task, self.sha256(task.path))
+
+    def fetch(self, tasks: Iterable[ReadTask]) -> None:
+        """Have what some tasks gave at hand; it is let go when the next ones are fetched."""
+        self._at_hand = self.store.get(self.key(task) for task in tasks)
+        self._bodies.clear()
 
     def read(self, tasks: Iterable[ReadTask], progress: Progress) -> None:
         """Have everything in the store that the tasks give and that is not there yet."""
@@ -86,27 +94,20 @@ class Library:
             self._failed[key] = refuse("task-broke", words, action="Please report it with the file.")
         else:
             mark = b"R" if result.failure else b"M"
-            self.store.put({key: mark + (result.failure or result.value), **dict(result.bodies)})
+            self.store.put({key: mark + (result.failure or result.value)})
 
     def molecule(self, task: ReadTask, shown: str) -> Molecule:
         """The molecule of an output that is called *shown*; raises Refused."""
-        from dataclasses import replace
-
-        molecule: Molecule = self._value(task, shown)
-        changes: dict[str, Any] = {"source": replace(molecule.source, file=shown)}
-        if any(NAME in f.found or NAME in f.where or NAME in f.action for f in molecule.findings):
-            changes["findings"] = renamed(molecule.findings, NAME, shown)
-        return molecule.but(**changes)
+        molecule: Molecule
+        molecule, bodies = self._value(task, shown)
+        for masses, tolerance, body in bodies:
+            self._bodies[_body_key(molecule, masses, tolerance)] = body
+        return molecule
 
     def scan(self, task: ReadTask, shown: str) -> TorsionScan:
         """The scan of a task whose file or folder is called *shown*; raises Refused."""
-        from dataclasses import replace
-
         scan: TorsionScan = self._value(task, shown)
-        molecules = tuple(
-            m.but(source=replace(m.source, file=m.source.file.replace(NAME, shown))) for m in scan.molecules
-        )
-        return replace(scan, source=shown, molecules=molecules)
+        return scan
 
     def _value(self, task: ReadTask, shown: str) -> Any:
         from heatwright.project.coding import Unreadable, decoded
@@ -117,19 +118,20 @@ class Library:
         for _ in range(2):
             if key in self._failed:
                 raise Refused([self._failed[key].at(shown)])
-            data = self.store.get([key]).get(key)
+            data = self._at_hand.get(key) or self.store.get([key]).get(key)
             try:
                 if data is not None:
-                    value = decoded(data[1:])
+                    value = decoded(data[1:], shown)
                     break
             except Unreadable:
+                self._at_hand.pop(key, None)
                 self.store.drop(key)
             self._take(task, do_task(task))
         else:
             words = "what was read of it could not be kept"
             raise Refused([refuse("task-broke", words, where=shown, action="Build again.")])
         if data[:1] == b"R":
-            raise Refused(renamed(value, NAME, shown))
+            raise Refused(value)
         return value
 
     def _unreadable(self, task: ReadTask, shown: str) -> tuple[Finding, ...]:
@@ -138,7 +140,8 @@ class Library:
 
         result = do_task(task)
         if result.failure:
-            return renamed(decoded(result.failure), NAME, shown)
+            found: tuple[Finding, ...] = decoded(result.failure, shown)
+            return found
         return (
             refuse("file-missing", "the file cannot be read", where=shown, action="Give the path of an output file."),
         )
@@ -146,20 +149,34 @@ class Library:
     def body(self, molecule: Molecule, masses_u: FloatArray, tolerance_A: float) -> tuple[Inertia, Symmetry]:
         """Rotor and symmetry as :func:`heatwright.partition.rigid.rigid_body` finds them, remembered."""
         from heatwright.partition.rigid import rigid_body
-        from heatwright.project.coding import Unreadable, decoded, encoded
-        from heatwright.project.tasks import body_key
+        from heatwright.project.coding import encoded
+        from heatwright.project.fingerprint import reader_fingerprint
 
-        key = body_key(molecule, masses_u, tolerance_A)
+        key = _body_key(molecule, masses_u, tolerance_A)
+        if key not in self._bodies:
+            kept = f"body:{hashlib.sha256(f'{reader_fingerprint()} {key!r}'.encode()).hexdigest()}"
+            known = self._kept_value(kept)
+            self._bodies[key] = known or body_values(*rigid_body(molecule, masses_u, tolerance_A))
+            if known is None:
+                self.store.put({kept: encoded(self._bodies[key])})
+        return body_of(self._bodies[key])
+
+    def _kept_value(self, key: str) -> Any:
+        """What the store holds under a key, None when that is nothing or damaged."""
+        from heatwright.project.coding import Unreadable, decoded
+
         data = self.store.get([key]).get(key)
-        if data is not None:
-            try:
-                found: tuple[Inertia, Symmetry] = decoded(data)
-                return found
-            except Unreadable:
-                self.store.drop(key)
-        found = rigid_body(molecule, masses_u, tolerance_A)
-        self.store.put({key: encoded(found)})
-        return found
+        try:
+            return None if data is None else decoded(data)
+        except Unreadable:
+            self.store.drop(key)
+            return None
+
+
+def _body_key(molecule: Molecule, masses_u: FloatArray, tolerance_A: float) -> tuple[object, ...]:
+    """Everything that the rigid body depends on."""
+    arrays = (molecule.atomic_numbers, masses_u, molecule.coordinates_A)
+    return (*(array.tobytes() for array in arrays), tolerance_A, molecule.stated)
 
 
 def _times(path: str) -> tuple[int, int, int, int] | None:

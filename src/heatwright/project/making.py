@@ -10,6 +10,7 @@ from typing import TYPE_CHECKING, Any
 from heatwright.errors import UsageError
 from heatwright.findings import Finding, Refused, refuse
 from heatwright.project.manifest_types import (
+    FitChoice,
     FormationChoice,
     ModelChoice,
     ProjectPath,
@@ -20,13 +21,15 @@ from heatwright.project.shelf import Shelf, route_of
 from heatwright.project.tasks import ReadTask
 
 if TYPE_CHECKING:
-    from heatwright.entry import Entry, EntryRequest
+    from heatwright.entry import Entry, EntryRequest, FitOptions
     from heatwright.formation.choices import EnergyChoices
     from heatwright.formation.formation import Formation
+    from heatwright.formation.reference_set import ReferenceSet
     from heatwright.molecule import Molecule
     from heatwright.partition.choices import ModelOptions
     from heatwright.partition.model import ThermoModel
     from heatwright.project.library import Library
+    from heatwright.species import Reading
 
 Say = Callable[[Finding], None]
 
@@ -69,16 +72,21 @@ class Maker:
         self._shelves = shelves
         self._say = say
         self._options: dict[ModelChoice, ModelOptions] = {}
+        self._fits: dict[FitChoice, FitOptions] = {}
+        self._readings: dict[object, Reading] = {}
         self._energies: dict[object, EnergyChoices] = {}
         self._own: dict[ProjectPath, Any] = {}
 
     def ingredients(self, request: SpeciesRequest) -> EntryRequest:
         """The model and the enthalpy of formation of one species, ready to be fitted.  Raises Refused."""
-        from heatwright.entry import EntryRequest
-        from heatwright.project.conversion import fit_options
+        from heatwright.entry import EntryRequest, evaluation_grid
 
         try:
+            options = self._fit_options(request.fit)
             model = self._model(request)
+            grid = evaluation_grid(options)
+            if grid is not None:
+                model.evaluate_ahead(grid)
             formation = self._formation(request, model)
         except UsageError as error:
             raise Refused([refuse("manifest-wrong", str(error), where=request.where)]) from error
@@ -87,10 +95,27 @@ class Maker:
             comments = (f"reason for the symmetry: {request.model.symmetry_reason}", *comments)
         if request.note:
             comments = (*comments, f"note: {request.note}")
-        return EntryRequest(request.name, model, formation, fit_options(request.fit), request.note, comments)
+        return EntryRequest(request.name, model, formation, options, request.note, comments)
+
+    def _fit_options(self, choice: FitChoice) -> FitOptions:
+        from heatwright.polynomial.fit import check_temperatures
+        from heatwright.project.conversion import fit_options
+
+        if choice not in self._fits:
+            options = fit_options(choice)
+            check_temperatures(options.t_low_K, options.t_common_K, options.t_high_K)
+            self._fits[choice] = options
+        return self._fits[choice]
+
+    def _reading(self, request: SpeciesRequest) -> Reading:
+        from heatwright.project.conversion import species_reading
+
+        key = (request.reading, bool(request.model.torsions))
+        if key not in self._readings:
+            self._readings[key] = species_reading(request)
+        return self._readings[key]
 
     def _model(self, request: SpeciesRequest) -> ThermoModel:
-        from heatwright.project.conversion import species_reading
         from heatwright.species import usable_species
 
         tasks = {path.shown: task for path, task in self._readable(request)}
@@ -100,7 +125,7 @@ class Maker:
 
         return usable_species(
             [(f.output.shown, None if f.energy is None else f.energy.shown) for f in request.files],
-            species_reading(request),
+            self._reading(request),
             self._model_options(request.model),
             trust_levels=request.formation.trust_levels,
             for_entry=True,
@@ -118,7 +143,7 @@ class Maker:
         from heatwright.project.conversion import model_options
         from heatwright.reading.torsion_scans import read_torsion
 
-        plain = replace(choice, torsions=())
+        plain = replace(choice, torsions=()) if choice.torsions else choice
         if plain not in self._options:
             self._options[plain] = model_options(plain)
         if not choice.torsions:
@@ -143,11 +168,17 @@ class Maker:
             name=request.name,
             given=stated_enthalpy(choice),
             atoms=shelf.atoms() if needed else None,
-            references=shelf.reference_set(own, self._model_options(request.model), self._say) if needed else None,
+            references=self._references(request, own) if needed else None,
             reaction=choice.reaction,
             choices=self._energy_choices(request, own),
         )
         return formation_of(model, asked)
+
+    def _references(self, request: SpeciesRequest, own: Any) -> ReferenceSet | None:
+        shelf = self._shelves[request.formation.folders]
+        if shelf.folders.references is None:
+            return None
+        return shelf.reference_set(own, self._model_options(request.model), self._say)
 
     def _own_references(self, choice: FormationChoice) -> Any:
         from heatwright.formation.species_references import read_references

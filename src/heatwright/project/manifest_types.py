@@ -9,6 +9,7 @@ import hashlib
 import json
 from dataclasses import dataclass, fields, is_dataclass
 from functools import cache, lru_cache
+from json.encoder import encode_basestring
 from typing import Literal
 
 
@@ -184,17 +185,18 @@ def canonical(value: object) -> str:
     >>> canonical(OutputFiles(ProjectPath("a.out", "/home/me/a.out")))
     '{"energy":null,"output":"a.out"}'
     """
+    if isinstance(value, str):
+        return encode_basestring(value)
     if isinstance(value, _SHARED):
         return _canonical_once(value)
     if isinstance(value, ProjectPath):
-        return _json(value.shown)
+        return encode_basestring(value.shown)
     if is_dataclass(value) and not isinstance(value, type):
-        names = _field_names(type(value))
-        return f"{{{','.join(f'{_json(name)}:{canonical(getattr(value, name))}' for name in names)}}}"
+        return _canonical_fields(value)
     if isinstance(value, tuple | list):
         return f"[{','.join(map(canonical, value))}]"
-    if value is None or isinstance(value, bool | int | float | str):
-        return _json(value)
+    if value is None or isinstance(value, bool | int | float):
+        return json.dumps(value, allow_nan=False)
     raise TypeError(f"{type(value).__name__} has no canonical text")
 
 
@@ -209,15 +211,14 @@ _SHARED = (ReadingChoice, ModelChoice, FitChoice, FormationChoice, ReferenceFold
 
 @lru_cache(maxsize=1024)
 def _canonical_once(value: object) -> str:
+    return _canonical_fields(value)
+
+
+def _canonical_fields(value: object) -> str:
     kind: type = type(value)
-    pairs = (f"{_json(name)}:{canonical(getattr(value, name))}" for name in _field_names(kind))
-    return f"{{{','.join(pairs)}}}"
+    return f"{{{','.join([f'{words}:{canonical(getattr(value, name))}' for name, words in _field_names(kind)])}}}"
 
 
 @cache
-def _field_names(kind: type) -> tuple[str, ...]:
-    return tuple(sorted(f.name for f in fields(kind) if f.name != "where"))
-
-
-def _json(value: object) -> str:
-    return json.dumps(value, ensure_ascii=False, allow_nan=False)
+def _field_names(kind: type) -> tuple[tuple[str, str], ...]:
+    return tuple((name, f'"{name}"') for name in sorted(f.name for f in fields(kind)) if name != "where")

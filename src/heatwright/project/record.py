@@ -8,7 +8,13 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
 from heatwright.findings import Finding, Refused
-from heatwright.project.lockfile import LockedReference, LockedSpecies, parse_lock_species, species_values
+from heatwright.project.lockfile import (
+    CP_TEMPERATURES_K,
+    LockedReference,
+    LockedSpecies,
+    parse_lock_species,
+    species_values,
+)
 from heatwright.project.texts import FILES, Texts, entry_texts, text_hash
 
 if TYPE_CHECKING:
@@ -49,16 +55,14 @@ def records(
 def _locked(
     decision: Decision, entry: Entry, key: str, rests_on: tuple[LockedReference, ...], texts: Texts
 ) -> LockedSpecies:
-    from heatwright.constants import GAS_CONSTANT_J_MOL_K
     from heatwright.elements import formula
-    from heatwright.project.lockfile import CP_TEMPERATURES_K, LockedFormation
+    from heatwright.project.lockfile import LockedFormation
     from heatwright.project.shelf import references_hash
     from heatwright.writing.comment import index_298
     from heatwright.writing.document import residuals_document
 
     model, table, polynomial = entry.model, entry.table, entry.polynomial
     molecule, formation = model.molecule, entry.formation
-    cp = model.cp_R(CP_TEMPERATURES_K) * GAS_CONSTANT_J_MOL_K
     return LockedSpecies(
         name=entry.name,
         formula=formula(model.composition, molecule.charge or 0),
@@ -80,13 +84,23 @@ def _locked(
         ),
         S298_J_mol_K=float(table.s_J_mol_K[index_298(table)]),
         H298_minus_H0_kJ_mol=table.h298_minus_h0_kJ_mol,
-        Cp_J_mol_K=tuple(cp.tolist()),
+        Cp_J_mol_K=_heat_capacities(entry),
         temperatures_K=(polynomial.t_low_K, polynomial.t_common_K, polynomial.t_high_K),
         residuals=residuals_document(entry.quality),
         findings=tuple(dict.fromkeys(f"{f.severity}:{f.code}" for f in entry.findings)),
         key=key,
         texts={file: text_hash(texts[file]) for file in FILES},
     )
+
+
+def _heat_capacities(entry: Entry) -> tuple[float, ...]:
+    """Cp° at the temperatures of the lock file, from the table where it has them all."""
+    at = dict(zip(entry.table.T_K.tolist(), entry.table.cp_J_mol_K.tolist(), strict=True))
+    if all(T in at for T in CP_TEMPERATURES_K):
+        return tuple(at[T] for T in CP_TEMPERATURES_K)
+    from heatwright.constants import GAS_CONSTANT_J_MOL_K
+
+    return tuple((entry.model.cp_R(CP_TEMPERATURES_K) * GAS_CONSTANT_J_MOL_K).tolist())
 
 
 def _conventions(entry: Entry) -> dict[str, Any]:

@@ -49,9 +49,10 @@ def check_folder(folder: str, root: str) -> None:
         return
     if not os.path.isdir(real):
         raise _unfit(folder, "it is not a folder")
-    for entry in os.scandir(real):
-        if entry.is_dir(follow_symlinks=False):
-            raise _unfit(folder, f"it holds the folder {entry.name}", "Give the release a folder of its own.")
+    with os.scandir(real) as entries:
+        inner = sorted(entry.name for entry in entries if entry.is_dir(follow_symlinks=False))
+    if inner:
+        raise _unfit(folder, f"it holds the folder {inner[0]}", "Give the release a folder of its own.")
 
 
 def switch(folder: str, files: Mapping[str, bytes]) -> None:
@@ -135,10 +136,10 @@ def _write(path: str, data: bytes) -> None:
 
 def _bring_along(real: str, new: str, files: Mapping[str, bytes]) -> None:
     """The other files of the folder, the same on disk where it can be."""
-    for entry in os.scandir(real):
+    with os.scandir(real) as entries:
+        others = [entry for entry in entries if entry.name not in files and not entry.is_dir(follow_symlinks=False)]
+    for entry in others:
         target = os.path.join(new, entry.name)
-        if entry.name in files or entry.is_dir(follow_symlinks=False):
-            continue
         try:
             os.link(entry.path, target, follow_symlinks=False)
         except (OSError, NotImplementedError):

@@ -10,16 +10,18 @@ import os
 import stat
 from collections.abc import Iterable
 from dataclasses import dataclass, replace
-from pathlib import Path, PurePath
+from pathlib import Path
 from threading import Lock
 from typing import TYPE_CHECKING, Any, Final
+
+from heatwright.project.coding import NAME, encoded
 
 if TYPE_CHECKING:
     from heatwright.findings import Finding
     from heatwright.molecule import FloatArray, MassKind, Molecule
+    from heatwright.structure.inertia import Inertia
+    from heatwright.structure.symmetry import Symmetry
 
-NAME: Final = "\0"
-"""Stands for the path in what a task gives back; whoever uses it puts in how the file is to be called."""
 _ONE_AT_A_TIME: Final = Lock()
 """Reading silences cclib by turning streams and warnings off, which is the whole process's; threads take turns."""
 _PIECE: Final = 1 << 20
@@ -47,22 +49,22 @@ class ReadTask:
 
 @dataclass(frozen=True, slots=True)
 class ReadResult:
-    """What came of a task: the hash of what was read and the encoded molecule or scan, or encoded findings.
+    """What came of a task: the hash of what was read, and the encoded value or the encoded findings.
 
-    bodies : encoded rotor and symmetry by :func:`body_key`.   broken : what went wrong that should not have.
+    The value is a scan, or a molecule with what was asked of its bodies: masses, tolerance, and the body as
+    :func:`body_values` has it.
+    broken : what went wrong that should not have.
     """
 
     sha256: str
     value: bytes = b""
     failure: bytes = b""
-    bodies: tuple[tuple[str, bytes], ...] = ()
     broken: str = ""
 
 
 def do_task(task: ReadTask) -> ReadResult:
     """Read what the task names; never raises."""
     from heatwright.findings import Refused
-    from heatwright.project.coding import encoded
 
     try:
         with _ONE_AT_A_TIME:
@@ -74,7 +76,6 @@ def do_task(task: ReadTask) -> ReadResult:
 
 
 def _output(task: ReadTask) -> ReadResult:
-    from heatwright.project.coding import encoded
     from heatwright.reading.outputs import read_output
 
     molecule = read_output(
@@ -88,11 +89,10 @@ def _output(task: ReadTask) -> ReadResult:
     )
     unnamed = replace(molecule.source, file=NAME)
     molecule = molecule.but(source=unnamed, findings=_unnamed(molecule.findings, task))
-    return ReadResult(molecule.source.sha256, encoded(molecule), bodies=tuple(_bodies(molecule, task)))
+    return ReadResult(molecule.source.sha256, encoded((molecule, tuple(_bodies(molecule, task)))))
 
 
 def _scan(task: ReadTask) -> ReadResult:
-    from heatwright.project.coding import encoded
     from heatwright.reading.torsion_scans import TorsionScan, read_torsion
 
     before = content_hash(task.path)
@@ -122,46 +122,54 @@ def renamed(findings: Iterable[Finding], old: str, new: str) -> tuple[Finding, .
     )
 
 
-def _bodies(molecule: Molecule, task: ReadTask) -> Iterable[tuple[str, bytes]]:
+def _bodies(molecule: Molecule, task: ReadTask) -> Iterable[tuple[FloatArray, float, tuple[Any, ...]]]:
     """Rotor and symmetry of a molecule that can be used; others have none."""
     from heatwright.findings import refusals
     from heatwright.partition.model import chosen_masses
     from heatwright.partition.rigid import rigid_body
-    from heatwright.project.coding import encoded
 
     if refusals(molecule.findings) or not molecule.has_thermochemistry:
         return
     for kind, tolerance in task.bodies:
         masses, _ = chosen_masses(molecule, kind)
         try:
-            body = rigid_body(molecule, masses, tolerance)
+            yield masses, tolerance, body_values(*rigid_body(molecule, masses, tolerance))
         except ValueError:
             continue  # it will be said when the model is built
-        yield body_key(molecule, masses, tolerance), encoded(body)
 
 
-def body_key(molecule: Molecule, masses_u: FloatArray, tolerance_A: float) -> str:
-    """The store's key of rotor and symmetry: everything that :func:`heatwright.partition.rigid.rigid_body` looks at."""
-    from heatwright.project.fingerprint import reader_fingerprint
+def body_values(rotor: Inertia, symmetry: Symmetry) -> tuple[Any, ...]:
+    """Rotor and symmetry as plain values, without the operations, which nothing asks for any more."""
+    s = symmetry
+    deviations = (s.tolerance_A, s.largest_accepted_deviation_A, s.smallest_rejected_deviation_A)
+    arrays = (rotor.centre_of_mass_A, rotor.principal_moments_u_A2, rotor.axes, rotor.rotational_constants_cm1)
+    found = (s.point_group, s.symmetry_number, s.chiral, *deviations, s.if_tighter, s.if_looser)
+    return (*arrays, rotor.kind), found
 
-    found = hashlib.sha256(f"{reader_fingerprint()} {tolerance_A!r} {molecule.stated!r}".encode())
-    for array in (molecule.atomic_numbers, masses_u, molecule.coordinates_A):
-        found.update(repr(array.shape).encode() + array.tobytes())
-    return f"body:{found.hexdigest()}"
+
+def body_of(values: tuple[Any, ...]) -> tuple[Inertia, Symmetry]:
+    """Rotor and symmetry from :func:`body_values`."""
+    from heatwright.structure.inertia import Inertia
+    from heatwright.structure.symmetry import Symmetry, stated_symmetry
+
+    rotor, (*found, tighter, looser) = values
+    operations = stated_symmetry("", 1).operations
+    return Inertia(*rotor), Symmetry(*(*found, operations, tighter, looser))
 
 
 def read_key(task: ReadTask, sha256: str) -> str:
     """The store's key of what a task gives for a file with this content: reader, content and every option.
 
-    The ending of the file is one of them, as it says what some files are.
+    The ending of the file is one of them, as it says what some files are; which bodies are wanted is not.
     """
     from heatwright.project.fingerprint import reader_fingerprint
 
-    options: tuple[Any, ...] = (
+    options = (
         task.job, task.charge, task.multiplicity, task.accept, task.accept_imaginary_cm1, task.with_hessian,
-        task.torsion, [s.lower() for s in PurePath(task.path).suffixes[-2:]],
+        task.torsion,
     )  # fmt: skip
-    words = f"{reader_fingerprint()} {sha256} {options!r}"
+    endings = ".".join(os.path.basename(task.path).lower().split(".")[1:][-2:])
+    words = f"{reader_fingerprint()} {sha256} {endings} {options!r}"
     return f"read:{hashlib.sha256(words.encode()).hexdigest()}"
 
 

@@ -38,7 +38,18 @@ class Sign:
 SIGNS: Final = (
     Sign("GAMESS", "solvent", lines=("INPUT FOR PCM SOLVATION CALCULATION",), echo=r"\$pcm\b"),
     Sign("MOPAC", "solvent", lines=("USE ANDREAS KLAMT'S COSMO",)),
-    Sign("NWChem", "external-field", lines=("Bq Structure Information", "Bq nuclear interaction energy")),
+    Sign(
+        "NWChem",
+        "external-field",
+        lines=("Bq Structure Information", "Bq nuclear interaction energy", "Applied E-field = ("),
+    ),
+    Sign("MOPAC", "external-field", lines=("AN EXTERNAL ELECTRIC FIELD IS TO BE USED", "THE ELECTRIC FIELD IS ")),
+    Sign(
+        "xTB",
+        "external-field",
+        lines=("PC potential                     true", "wallpotenial with", "wallpotential with"),
+        echo=r"--efield\b",
+    ),
     Sign(
         "Gaussian",
         "external-field",
@@ -54,7 +65,18 @@ SIGNS: Final = (
         echo=r"\bperturb_h\s+(?:true|1|yes|on)|\bexternal_potentials\s*=|['\"]extern['\"]",
     ),
     Sign("GAMESS", "external-field", echo=r"\$efield\b|\$efrag\b"),
-    Sign("NWChem", "constraints", count=("Number of frozen variables =",)),
+    Sign(
+        "NWChem",
+        "constraints",
+        lines=("fixed atoms     ", "adding spring #"),
+        count=("Number of frozen variables =",),
+    ),
+    Sign(
+        "xTB",
+        "constraints",
+        lines=("constraining bond ", "constraining angle ", "atoms frozen in Hessian calc."),
+        count=(":: add. restraining  ",),
+    ),
     Sign(
         "Gaussian",
         "constraints",
@@ -74,6 +96,11 @@ SIGNS: Final = (
     ),
     Sign("GAMESS", "constraints", echo=r"\bifreez\b|\biactat\b"),
     Sign("NWChem", "excited-state", lines=("NWChem TDDFT Gradient Module",)),
+    Sign(
+        "MOPAC",
+        "excited-state",
+        lines=("FIRST EXCITED STATE IS TO BE OPTIMIZED", *(f'CALCULATION, ROOT "{n}"' for n in range(2, 10))),
+    ),
     Sign("Gaussian", "excited-state", lines=("This state for optimization and/or second-order correction.",)),
     Sign("ORCA", "excited-state", lines=("ORCA TD-DFT", "TD-DFT EXCITED STATES", "CIS EXCITED STATES", "EOM-CCSD")),
     Sign("Q-Chem", "excited-state", echo=r"^[ \t]*(?:cis_state_deriv|cis_n_roots|ee_states)[ \t=]+[\[1-9]"),
@@ -185,6 +212,7 @@ _ECHO: Final = {
     "Psi4": ("==> Input File <==", "\n---", "#"),
     "GAMESS": ("ECHO OF THE FIRST FEW INPUT CARDS", "BASIS OPTIONS", "!"),
     "Gaussian": ("\n #", "\n ---", ""),
+    "xTB": ("program call  ", "\n", "#"),
 }
 """Where each program echoes its input, where the echo ends, and what starts a comment in it."""
 _LONGEST_ECHO: Final = 50000

@@ -8,6 +8,8 @@ from typing import Final
 
 HEAD: Final = 65536
 """Characters looked at: programs echo their input, a scheduler's prologue may come first."""
+_FIRST: Final = 4096
+"""Characters looked at first."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -99,9 +101,11 @@ def detect(text: str) -> Detected:
     >>> detect("mentions Gaussian, Inc. somewhere, and MOLCAS in a table head").program is None
     True
     """
-    head = text[:HEAD]
-    imitation = _IMITATION.search(head, 0, 2000)
+    imitation = _IMITATION.search(text, 0, 2000)
     if imitation:
         return Detected(None, f"a mode file for viewers written by {imitation.group(1)}")
-    found = [(spot, program) for program in PROGRAMS if (spot := program.spot(head)) >= 0]
-    return Detected(min(found, key=lambda pair: pair[0])[1]) if found else Detected(None)
+    for head in (text[: text.rfind("\n", 0, _FIRST) + 1], text[:HEAD]):  # most banners come at once
+        found = [(spot, program) for program in PROGRAMS if (spot := program.spot(head)) >= 0]
+        if found:
+            return Detected(min(found, key=lambda pair: pair[0])[1])
+    return Detected(None)

@@ -129,14 +129,19 @@ def checkpoint_array(job: Text, title: str) -> FloatArray | None:
     return np.array(found) if len(found) == int(head.group(1)) else None
 
 
-def gaussian_archive(job: Text) -> tuple[FloatArray, FloatArray] | None:
-    """Hessian (hartree/bohr²) and its geometry (Å, a frame of its own) of the archive that closes a frequency job."""
+def archive_parts(job: Text) -> list[str]:
+    """The parts of the archive that closes a Gaussian job, which double backslashes separate; empty without one."""
     end = job.rfind("\\\\@") if "\\\\@" in job else job.rfind("||@")
     start = max(job.rfind("\n 1\\1\\", end), job.rfind("\n 1|1|", end)) if end >= 0 else -1
     if start < 0:
-        return None
+        return []
     text = "".join(line[1:] for line in str(job.part(start + 1, end)).split("\n")).replace("|", "\\")
-    parts = text.split("\\\\")
+    return text.split("\\\\")
+
+
+def gaussian_archive(job: Text) -> tuple[FloatArray, FloatArray] | None:
+    """Hessian (hartree/bohr²) and its geometry (Å, a frame of its own) of the archive that closes a frequency job."""
+    parts = archive_parts(job)
     places = next((found for part in parts[3:5] if (found := _archive_places(part)) is not None), None)
     if places is None:
         return None

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 
 from heatwright.elements import composition, formula
@@ -9,13 +10,17 @@ from heatwright.findings import Finding, Refused, note, refuse, warn
 from heatwright.reading.dialects.base import Dialect, Identity
 from heatwright.reading.text import Text
 
+_MOST_NAMED = 12
+"""Molecules that the refusal of a file with several of them names."""
+
 
 @dataclass(frozen=True, slots=True)
 class Choice:
     """The job to read, the pieces of text it needs, its number and what has to be said about the choice.
 
     related : the job, and the last optimisation of the same molecule before it, whose constraints are the job's too.
-    other_analyses : numbers of other jobs that hold modes of the same formula, when none was asked for.
+    other_analyses : gives the other jobs with modes of the same formula, when no job was asked for; each with a text of
+        its own, so that reading all of them takes no longer than the file is long.
     """
 
     job: Text
@@ -25,7 +30,7 @@ class Choice:
     n_jobs: int
     findings: tuple[Finding, ...]
     related: tuple[Text, ...] = ()
-    other_analyses: tuple[int, ...] = ()
+    other_analyses: Callable[[], Iterator[Choice]] = lambda: iter(())
 
 
 def choose(dialect: Dialect, whole: Text, wanted: int | None) -> Choice:
@@ -34,7 +39,7 @@ def choose(dialect: Dialect, whole: Text, wanted: int | None) -> Choice:
     Raises Refused when the file holds several molecules and no job was asked for, or has no job of that number.
     """
     jobs = dialect.jobs(whole)
-    identities = [dialect.identity(job) for job in jobs]
+    identities = dialect.identities(jobs)
     groups = _groups(identities)
     if wanted is not None:
         index = _asked_for(wanted, len(jobs))
@@ -45,16 +50,38 @@ def choose(dialect: Dialect, whole: Text, wanted: int | None) -> Choice:
         group = groups[0]
         with_modes = [i for i in group if identities[i].has_modes]
         index = with_modes[-1] if with_modes else _last_telling(group, identities)
+    shared = _completed(Identity(), [identities[i] for i in group])
+    before = [identities[i] for i in reversed(group) if i < index]
     return Choice(
         jobs[index],
-        _completed(identities[index], [identities[i] for i in group]),
-        _pieces(dialect, jobs, identities, group, index),
+        _completed(identities[index], [*before, shared]),
+        _pieces(dialect, jobs, [*(i for i in group if i < index and not identities[i].has_modes), index], 0 in group),
         index + 1,
         len(jobs),
         _remarks(identities, group, index, wanted),
         _related(jobs, identities, group, index),
-        tuple(i + 1 for i in group if i != index and identities[i].has_modes) if wanted is None else (),
+        lambda: iter(()) if wanted is not None else _others(dialect, jobs, identities, group, index, shared),
     )
+
+
+def _others(
+    dialect: Dialect, jobs: list[Text], identities: list[Identity], group: list[int], index: int, shared: Identity
+) -> Iterator[Choice]:
+    """The other analyses of the group; of cumulative outputs with the head and the jobs since the analysis before."""
+    since: list[int] = []
+    known = Identity()
+    for i in group:
+        known = _completed(identities[i], [known])
+        if not identities[i].has_modes:
+            since.append(i)
+            continue
+        if i != index:
+            pieces = _pieces(dialect, jobs, [*since, i], 0 in group)
+            before = "".join(str(piece) for piece in pieces[:-1])
+            whole = Text.of(f"{before}{pieces[-1]}")
+            parts = (whole.part(0, len(before)), whole.part(len(before)))
+            yield Choice(parts[1], _completed(known, [shared]), parts, i + 1, len(jobs), ())
+        since = []
 
 
 def _asked_for(wanted: int, n_jobs: int) -> int:
@@ -92,17 +119,15 @@ def _last_telling(group: list[int], identities: list[Identity]) -> int:
     return next((i for i in reversed(group) if identities[i].atoms), group[-1])
 
 
-def _pieces(
-    dialect: Dialect, jobs: list[Text], identities: list[Identity], group: list[int], index: int
-) -> tuple[Text, ...]:
-    """The job's own text; for programs that print things only once, also the prologue and the jobs before it."""
+def _pieces(dialect: Dialect, jobs: list[Text], needed: list[int], same_molecule: bool) -> tuple[Text, ...]:
+    """The text of the last of these jobs; for programs that print things only once, also the head and the others."""
+    index = needed[-1]
     if not dialect.cumulative or index == 0:
         return (jobs[index],)
-    before = [i for i in group if i < index and not identities[i].has_modes]
-    pieces = [jobs[i] for i in before]
-    if 0 not in before:
-        pieces.insert(0, dialect.prologue(jobs[0], 0 in group))
-    return (*pieces, jobs[index])
+    pieces = [jobs[i] for i in needed]
+    if needed[0] != 0:
+        pieces.insert(0, dialect.prologue(jobs[0], same_molecule))
+    return tuple(pieces)
 
 
 def _related(jobs: list[Text], identities: list[Identity], group: list[int], index: int) -> tuple[Text, ...]:
@@ -118,9 +143,10 @@ def _name(identity: Identity) -> str:
 
 def _several(jobs: list[Text], identities: list[Identity], groups: list[list[int]]) -> Finding:
     parts = []
-    for group in groups:
+    for group in groups[:_MOST_NAMED]:
         numbers = f"job {group[0] + 1}" if len(group) == 1 else f"jobs {group[0] + 1} to {group[-1] + 1}"
         parts.append(f"{_name(_completed(Identity(), [identities[i] for i in group]))} in {numbers}")
+    parts += ["…"] if len(groups) > _MOST_NAMED else []
     return refuse(
         "several-molecules",
         f"the file holds {len(jobs)} jobs for {len(groups)} molecules: {', '.join(parts)}",

@@ -65,10 +65,9 @@ def read_output(
     source = Source(name, stored.sha256, program.name, "")
     user = (charge, multiplicity)
     molecule = _molecule(source, program, dialect, choice, user, stored.findings, with_hessian)
-    for number in choice.other_analyses:
-        other = _molecule(source, program, dialect, choose(dialect, text, number), user, (), False)
-        if bonded_differently(molecule, other):
-            molecule = molecule.but(findings=(isomers(number, choice.number), *molecule.findings))
+    other = next((o.number for o in choice.other_analyses() if _is_isomer(molecule, program, dialect, o)), None)
+    if other is not None:
+        molecule = molecule.but(findings=(isomers(other, choice.number), *molecule.findings))
     return with_accepted(molecule, accept, accept_imaginary_cm1)
 
 
@@ -101,6 +100,14 @@ def _molecule(
     return molecule.but(findings=_once(findings))
 
 
+def _is_isomer(molecule: Molecule, program: Program, dialect: Dialect, other: Choice) -> bool:
+    """Whether another analysis is of a structure with other bonds, as far as it can be read."""
+    parsed = parse(program.parser, other.pieces, due=_due(dialect, other))
+    with np.errstate(all="ignore"):
+        found, _ = assemble(molecule.source, other.identity, parsed, _facts(dialect, other, parsed), (None, None))
+    return found is not None and bonded_differently(molecule, found)
+
+
 def _due(dialect: Dialect, choice: Choice) -> list[str]:
     """What cclib has to find in a job, as the dialect knows no better."""
     due = ["atomnos", "atomcoords"]
@@ -110,7 +117,7 @@ def _due(dialect: Dialect, choice: Choice) -> list[str]:
         due.append("charge")
     if choice.identity.multiplicity is None:
         due.append("mult")
-    return due
+    return [name for name in due if name not in dialect.own]
 
 
 def _whole_lines(text: str, dialect: Dialect) -> str:
@@ -195,7 +202,7 @@ def _whole_modes(molecule: Molecule, dialect: Dialect, choice: Choice, parsed: P
 
 
 def _cut(choice: Choice) -> bool:
-    return choice.job.end >= len(choice.job.whole.rstrip())
+    return choice.job.is_last
 
 
 def _endings(

@@ -11,7 +11,7 @@ import io
 import logging
 import re
 import warnings
-from collections.abc import Collection, Iterator, Sequence
+from collections.abc import Collection, Sequence
 from contextlib import redirect_stderr, redirect_stdout
 from dataclasses import dataclass, field
 from typing import Any
@@ -19,43 +19,16 @@ from typing import Any
 import numpy as np
 
 from heatwright.reading.deferral import without_unused_packages
+from heatwright.reading.lines import Lines
 from heatwright.reading.skipping import shown_lines
 from heatwright.reading.text import Text
 
 _WANTED = frozenset(
-    [
-        "atomnos",
-        "atomcoords",
-        "atommasses",
-        "vibfreqs",
-        "vibdisps",
-        "grads",
-        "scfenergies",
-        "mpenergies",
-        "ccenergies",
-        "dispersionenergies",
-        "scanenergies",
-        "scannames",
-        "scanparm",
-        "optdone",
-        "optstatus",
-        "charge",
-        "mult",
-        "natom",
-        "metadata",
-        "zpve",
-        "enthalpy",
-        "entropy",
-        "temperature",
-        "pressure",
-        "coreelectrons",
-        "rotconsts",
-    ]
-)
-"""Attributes used here; the others (orbitals, populations) are dropped before cclib turns them into arrays."""
+    ["atomnos", "atomcoords", "atommasses", "natom", "charge", "mult", "vibfreqs", "vibdisps", "scfenergies",
+     "mpenergies", "ccenergies", "scanenergies", "scannames", "optstatus", "metadata"]
+)  # fmt: skip
+"""Attributes used here; the others (orbitals, gradients) are dropped before cclib turns them into arrays."""
 _MOST_MISHAPS = 10
-_BLOCK = 1 << 18
-_LINE = re.compile(r"[^\n]*\n|[^\n]+")
 
 
 @dataclass(frozen=True, slots=True)
@@ -120,10 +93,10 @@ def _parsed(parser: str, pieces: Sequence[Text], pattern: re.Pattern[str] | None
 def _values(
     parser: str, pieces: Sequence[Text], pattern: re.Pattern[str] | None, log: list[Mishap], ended: list[bool]
 ) -> dict[str, Any]:
-    guarded = _guarded(_parser_class(parser), pattern, log, ended)
+    guarded = _guarded(_parser_class(parser), log, ended)
     run: Any = None
     try:
-        run = guarded(_lines(pieces), loglevel=logging.CRITICAL + 1, logstream=io.StringIO())
+        run = guarded(_source(pieces, pattern), loglevel=logging.CRITICAL + 1, logstream=io.StringIO())
         return {name: value for name, value in vars(run.parse()).items() if name in _WANTED}
     except Exception as error:
         _note(log, sum(piece.end - piece.start for piece in pieces), error)
@@ -133,45 +106,11 @@ def _values(
             run.logger.handlers.clear()
 
 
-def _lines(pieces: Sequence[Text]) -> Any:
-    """The pieces as the kind of input cclib reads from, without a copy of the text."""
+def _source(pieces: Sequence[Text], pattern: re.Pattern[str] | None) -> Any:
+    """The pieces as the kind of input cclib reads from."""
     from cclib.parser.logfilewrapper import FileWrapper
 
-    class Lines(FileWrapper):
-        def __init__(self) -> None:
-            super().__init__()
-            self.filenames = ["output"]
-            self.size = sum(piece.end - piece.start for piece in pieces)
-            self.rest = _line_by_line(pieces)
-
-        def __next__(self) -> str:
-            line = next(self.rest)
-            self.last_lines.append(line)
-            self.pos += len(line)
-            return line
-
-        def sort(self, order: list[str]) -> None:
-            """There is one source."""
-
-        def reset(self) -> None:
-            self.rest, self.pos = _line_by_line(pieces), 0
-
-        def finish(self) -> None:
-            self.rest, self.pos = iter(()), self.size
-
-    return Lines()
-
-
-def _line_by_line(pieces: Sequence[Text]) -> Iterator[str]:
-    """Each line with its end; a block of lines is split at once, which is cheaper than line by line."""
-    for piece in pieces:
-        first = piece.start
-        while first < piece.end:
-            last = piece.end if piece.end - first <= _BLOCK else piece.whole.rfind("\n", first, first + _BLOCK) + 1
-            if last <= first:  # one line longer than a block
-                last = piece.whole.find("\n", first, piece.end) + 1 or piece.end
-            yield from _LINE.findall(piece.whole, first, last)
-            first = last
+    return type("Source", (Lines, FileWrapper), {})(pieces, pattern)
 
 
 def _parser_class(name: str) -> Any:
@@ -184,15 +123,13 @@ def _note(log: list[Mishap], spot: int, error: Exception) -> None:
         log.append(Mishap(spot, f"{type(error).__name__}: {error}".rstrip(": ")))
 
 
-def _guarded(base: Any, pattern: re.Pattern[str] | None, log: list[Mishap], ended: list[bool]) -> Any:
+def _guarded(base: Any, log: list[Mishap], ended: list[bool]) -> Any:
     from cclib.parser.logfileparser import StopParsing
 
-    show, extract = None if pattern is None else pattern.search, base.extract
+    extract = base.extract
 
     class Guarded(base):  # type: ignore[misc]
         def extract(self, inputfile: Any, line: str) -> None:
-            if show is not None and not show(line):
-                return
             try:
                 extract(self, inputfile, line)
             except StopIteration:
@@ -234,7 +171,7 @@ def _attribute_names() -> frozenset[str]:
 
 def _drop_ragged(parser: Any, log: list[Mishap]) -> None:
     """Remove what cannot become an array (a table cut short), so that the rest survives cclib's own conversion."""
-    for name in ("atomcoords", "grads", "vibdisps", "vibfreqs", "mpenergies", "scfenergies", "ccenergies", "atomnos"):
+    for name in ("atomcoords", "vibdisps", "vibfreqs", "mpenergies", "scfenergies", "ccenergies", "atomnos"):
         value = getattr(parser, name, None)
         if value is None:
             continue

@@ -10,6 +10,7 @@ _NUMBER = re.compile(r"[-+]?(?:\d+\.?\d*|\.\d+)(?:[eEdD][-+]?\d+)?")
 _LONG_EXPONENT = re.compile(r"([-+]?\d*\.\d+)([-+]\d{3})")  # Fortran drops the letter before three digits
 LONGEST_LINE = 2048
 """Characters looked at on either side of an anchor: a file without line ends must not be copied for each of them."""
+_BLANKS = re.compile(r"\s*")
 _NO_NUMBER = re.compile(r"[-+]?(?:nan|inf|infinity)|\*{3,}", re.IGNORECASE)
 
 
@@ -137,6 +138,12 @@ class Text:
         """The first number that follows the last (or first) *anchor* on its line."""
         found = numbers(self.rest_of_last(anchor) if last else self.rest_of_first(anchor))
         return found[0] if found else None
+
+    @property
+    def is_last(self) -> bool:
+        """Whether nothing but blanks and line ends follows in the whole."""
+        match = _BLANKS.match(self.whole, min(self.end, len(self.whole)))
+        return match is not None and match.end() == len(self.whole)
 
     @property
     def last_line(self) -> int:

@@ -114,6 +114,8 @@ _ASCII: Final = str.maketrans(
 
 def ascii_text(text: str) -> str:
     """*text* in printable ASCII on one line; what has no usual spelling there is written as its code point."""
+    if text.isascii():
+        return " ".join(text.split())
     one_line = " ".join(text.translate(_ASCII).split())
     return one_line.encode("ascii", "backslashreplace").decode("ascii")
 

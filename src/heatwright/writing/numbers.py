@@ -4,7 +4,8 @@ from __future__ import annotations
 
 import json
 import re
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
+from functools import lru_cache
 from math import isfinite
 from typing import Any
 
@@ -46,6 +47,7 @@ def fixed(value: float, width: int, decimals: int) -> str:
     return text
 
 
+@lru_cache(maxsize=4096)
 def coefficient(value: float) -> str:
     """One polynomial coefficient in 15 columns, nine significant digits, two-digit exponent.
 
@@ -58,6 +60,15 @@ def coefficient(value: float) -> str:
             [refuse("value-unfit", f"the coefficient {value!r} does not fit 15 columns with a two-digit exponent")]
         )
     return text
+
+
+def coefficients(values: Sequence[float]) -> str:
+    """Coefficients as a list of plain numbers, each as :func:`coefficient` writes it.
+
+    >>> coefficients([2.5, -1.0e-3])
+    '2.50000000E+00, -1.00000000E-03'
+    """
+    return ", ".join([coefficient(value).strip() for value in values])
 
 
 def element_fields(atoms: Mapping[str, int]) -> str:

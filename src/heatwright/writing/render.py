@@ -31,6 +31,7 @@ def _environment(folder: str) -> SandboxedEnvironment:
         left=numbers.left,
         fixed=numbers.fixed,
         coefficient=numbers.coefficient,
+        coefficients=numbers.coefficients,
         element_fields=numbers.element_fields,
         continuation=numbers.continuation,
         yaml=numbers.yaml_text,

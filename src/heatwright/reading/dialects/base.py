@@ -33,6 +33,7 @@ METHOD_RANK: Final[dict[str, int]] = {
             "CEPA",
             "QCISD",
             "BD",
+            "CCD",
             "CC2",
             "CCSD",
             "CASPT2",
@@ -133,6 +134,8 @@ class Dialect:
     """Anchors at which another job begins."""
     mode_anchors: ClassVar[tuple[str, ...]] = ()
     """Anchors that show that a job prints vibrational modes."""
+    own: ClassVar[frozenset[str]] = frozenset()
+    """Attributes that cclib need not find: the dialect reads them from the text, or the program never prints them."""
     cumulative: ClassVar[bool] = False
     """Whether a job needs the text of the jobs before it (programs that print atoms and version only once)."""
 
@@ -152,6 +155,10 @@ class Dialect:
     def identity(self, job: Text) -> Identity:
         """Which molecule a job is about; the plain dialect cannot tell."""
         return Identity(has_modes=any(anchor in job for anchor in self.mode_anchors))
+
+    def identities(self, jobs: Sequence[Text]) -> list[Identity]:
+        """The identity of each job of a file."""
+        return [self.identity(job) for job in jobs]
 
     def terminated(self, job: Text) -> bool:
         """Whether the program closed the job in the way it does when all went well."""
@@ -235,8 +242,11 @@ def or_plain(point: dict[str, float], kind: str, parsed: Parsed, first: bool) ->
     return (point, kind) if point else plain_energies(parsed, first)
 
 
-def plain_energies(parsed: Parsed, first: bool) -> tuple[dict[str, float], str]:
-    """Energies and the kind in use from cclib's attributes: the first geometry of a Hessian job, else the last."""
+def plain_energies(parsed: Parsed, first: bool, coupled: str = "CCSD(T)") -> tuple[dict[str, float], str]:
+    """Energies and the kind in use from cclib's attributes: the first geometry of a Hessian job, else the last.
+
+    coupled : which coupled-cluster energy the output holds, which cclib does not say.
+    """
     index = 0 if first else -1
     found: dict[str, float] = {}
     scf, mp, cc = (parsed.array(name) for name in ("scfenergies", "mpenergies", "ccenergies"))
@@ -246,7 +256,7 @@ def plain_energies(parsed: Parsed, first: bool) -> tuple[dict[str, float], str]:
         for order, value in enumerate(mp[index], start=2):
             found[f"MP{order}"] = float(value) / CCLIB_EV_PER_HARTREE
     if cc is not None and cc.size:
-        found["CCSD(T)"] = float(cc.flat[index]) / CCLIB_EV_PER_HARTREE
+        found[coupled] = float(cc.flat[index]) / CCLIB_EV_PER_HARTREE
     return found, highest(found)
 
 

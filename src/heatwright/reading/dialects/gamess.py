@@ -33,6 +33,12 @@ class GAMESS(Plain):
         Failure("SCF IS UNCONVERGED", "the SCF did not converge"),
         Failure("FAILURE TO LOCATE STATIONARY POINT", "the geometry optimisation did not converge"),
     )
+    coupled_marks: ClassVar = (
+        ("CCSD(T) ENERGY:", "CCSD(T)"),
+        ("CCSD[T] ENERGY:", "CCSD[T]"),
+        ("CCSD    ENERGY:", "CCSD"),
+        ("CCD ENERGY:", "CCD"),
+    )
     mode_anchors: ClassVar = ("       FREQUENCY:  ", "NORMAL COORDINATE ANALYSIS IN THE HARMONIC APPROXIMATION")
 
     def level(self, job: Text, kind: str) -> Level | None:

@@ -23,6 +23,7 @@ from heatwright.reading.dialects.base import (
     or_plain,
     reconciled,
 )
+from heatwright.reading.dialects.gaussian_archive import contradictions
 from heatwright.reading.fundamentals import gaussian_fundamentals
 from heatwright.reading.hessians import gaussian_archive
 from heatwright.reading.levels import normalise_basis, normalise_method
@@ -95,7 +96,7 @@ class Gaussian(Dialect):
             kind=_scan_kind(job),
             wavenumbers_cm1=wavenumbers,
             normal_modes=None if wavenumbers is None else parsed.array("vibdisps"),
-            findings=(*_remarks(level), *disagree),
+            findings=(*_remarks(level), *disagree, *contradictions(job, point, kind)),
         )
 
 

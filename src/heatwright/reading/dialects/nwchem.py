@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 import re
+from collections.abc import Sequence
+from dataclasses import replace
 from typing import ClassVar, Final
 
 import numpy as np
@@ -28,6 +30,7 @@ from heatwright.reading.text import Text, number, numbers
 
 _TASK = "NWChem Input Module"
 _ATOM_INFORMATION: Final = "---- Atom information ----"
+_TABLE: Final = "  No.       Tag          Charge"
 _BOHR_PER_ANGSTROM: Final = 1.889725989
 """The scale NWChem itself prints over its coordinates; used to turn its bohr back into the ångströms it was given."""
 _ENERGIES: Final = (
@@ -45,6 +48,8 @@ _ENERGIES: Final = (
     ("QCISD total energy / hartree", "QCISD"),
     ("CISD total energy / hartree", "CISD"),
 )
+_TITLE_LINES: Final = 12
+"""Lines after the title of a table within which its rows start; a title may be repeated without any."""
 _MODULES: Final = re.compile(r"^ +NWChem (?:\S+ )*(?:Module|Optimization|Analysis|Calculation)\s*$", re.MULTILINE)
 
 
@@ -82,14 +87,21 @@ class NWChem(Dialect):
         return first.part(first.start, start if start >= 0 else first.end)
 
     def identity(self, job: Text) -> Identity:
-        whole = Text(job.whole, 0, job.end)
         return Identity(
-            atoms=_atoms(whole),
+            atoms=_atoms(job),
             charge=_charge(job),
             multiplicity=_multiplicity(job),
             has_modes=any(anchor in job for anchor in self.mode_anchors),
             optimises="NWChem Geometry Optimization" in job,
         )
+
+    def identities(self, jobs: Sequence[Text]) -> list[Identity]:
+        """A task that prints no atoms works on those of the task before."""
+        found: list[Identity] = []
+        for job in jobs:
+            own = self.identity(job)
+            found.append(own if _TABLE in job or not found else replace(own, atoms=found[-1].atoms))
+        return found
 
     def terminated(self, job: Text) -> bool:
         """The closing line stands once, after the last task; a task followed by another one has ended well too."""
@@ -99,7 +111,9 @@ class NWChem(Dialect):
         energies = [Energy(spot, kind, value) for anchor, kind in _ENERGIES for spot, value in _values(job, anchor)]
         finite = "NWChem Finite-difference Hessian" in job
         has_modes = any(anchor in job for anchor in self.mode_anchors)
-        point, kind = chosen_point(energies, first=finite or has_modes)
+        heading = job.rfind("NWChem Nuclear Hessian and Frequency Analysis")
+        own = [e for e in energies if e.spot > heading] if has_modes else energies
+        point, kind = chosen_point(own or energies, first=finite)
         if kind == "SCS-MP2":  # printed beside every MP2 energy, never the task's own method
             kind = "MP2"
         atoms, coordinates, masses = _atom_information(job)
@@ -156,7 +170,7 @@ def _multiplicity(job: Text) -> int | None:
 
 def _atoms(whole: Text) -> tuple[int, ...]:
     """Nuclear charges of the last table of atoms; ghost atoms have none."""
-    spot = whole.rfind("  No.       Tag          Charge")
+    spot = whole.rfind(_TABLE)
     found: list[int] = []
     if spot < 0:
         return ()
@@ -218,7 +232,7 @@ def _unread_masses(job: Text, masses: FloatArray | None) -> tuple[Finding, ...]:
 
 def _masses_by_tag(whole: Text, atoms: tuple[int, ...]) -> FloatArray | None:
     """Masses of the table of tags under the geometry, for jobs without a Hessian."""
-    table, spot = whole.rfind("  No.       Tag          Charge"), whole.rfind("Atomic Mass")
+    table, spot = whole.rfind(_TABLE), whole.rfind("Atomic Mass")
     if table < 0 or spot < table:
         return None
     rows = [line.split() for line in whole.part(table, spot).lines(table)]
@@ -244,12 +258,12 @@ def _max_gradient(whole: Text, coordinates: FloatArray | None) -> float | None:
     """Largest gradient component of the last gradient that was computed at the geometry of the frequencies."""
     for spot in reversed(whole.spots("ENERGY GRADIENTS")):
         rows: list[list[float]] = []
-        for line in whole.part(spot).lines(spot):
+        for index, line in enumerate(whole.lines(spot)):
             fields = line.split()
             values = [number(f) for f in fields[2:]] if len(fields) == 8 and fields[0].isdigit() else []
             if len(values) == 6 and all(v is not None for v in values):
                 rows.append([v for v in values if v is not None])
-            elif rows or len(line) > 200:
+            elif rows or index > _TITLE_LINES or len(line) > 200:
                 break
         table = np.array(rows, dtype=float)
         if coordinates is None and table.size:

@@ -26,6 +26,9 @@ _PAIRS: Final = (
 )
 
 
+_FUNCTIONAL: Final = "              XC Information"
+
+
 def level_of(job: Text, kind: str) -> Level | None:
     """The level of a task: functional with its parts, basis with its kind of functions, and what surrounds them."""
     basis_spot = max(job.rfind('Basis "ao basis" -> "ao basis" ('), job.rfind('Summary of "ao basis" -> "'))
@@ -33,8 +36,10 @@ def level_of(job: Text, kind: str) -> Level | None:
     if basis_spot < 0:
         basis_spot = whole.rfind('Summary of "ao basis" -> "')
     header = whole.line(basis_spot).lower() if basis_spot >= 0 else ""
-    is_dft = job.rfind("SCF calculation type: DFT") > job.rfind("NWChem SCF Module")
-    method, functional = _functional(job) if is_dft else ("HF" if kind == "SCF" else kind, "")
+    marks = ("SCF calculation type: DFT", "The DFT is already converged")
+    is_dft = max(job.rfind(mark) for mark in marks) > job.rfind("NWChem SCF Module")
+    stated = job if _FUNCTIONAL in job else whole  # a task that finds its orbitals converged does not say it again
+    method, functional = _functional(stated) if is_dft else ("HF" if kind == "SCF" else kind, "")
     if not method and basis_spot < 0:
         return None
     return Level(
@@ -44,7 +49,7 @@ def level_of(job: Text, kind: str) -> Level | None:
         spherical=True if "(spherical)" in header else False if "(cartesian)" in header else None,
         frozen_core=_frozen(job) if kind not in ("SCF", "") else "",
         core_potential=_core_potential(whole),
-        dispersion=_dispersion(job) if is_dft else "",
+        dispersion=_dispersion(stated) if is_dft and "Dispersion correction" in job else "",
         solvent=_solvent(job),
         program="NWChem",
     )
@@ -66,7 +71,7 @@ def _basis_name(whole: Text) -> str:
 
 
 def _functional(job: Text) -> tuple[str, str]:
-    spot = job.rfind("              XC Information")
+    spot = job.rfind(_FUNCTIONAL)
     block = job.part(spot, job.find("Grid Information", spot)) if spot >= 0 else job.part(job.start, job.start)
     text = str(block)
     named = re.search(r"^ +(\S.*?) Method XC (?:Potential|Functional)", text, re.MULTILINE)
@@ -77,6 +82,8 @@ def _functional(job: Text) -> tuple[str, str]:
         if exchange in text and correlation in text and "Hartree-Fock (Exact)" not in text:
             return name, local
     parts = re.findall(r"^ +(\S.*?) (?:Functional|Exchange) +(\d\.\d+)", text, re.MULTILINE)
+    if parts == [("Hartree-Fock (Exact)", "1.000")]:
+        return "HF", local
     return " + ".join(f"{weight} {part}" for part, weight in parts), local
 
 

@@ -78,7 +78,7 @@ class ORCA(Dialect):
         )
 
     def terminated(self, job: Text) -> bool:
-        return super().terminated(job) or job.end < len(job.whole.rstrip())
+        return super().terminated(job) or not job.is_last
 
     def read(self, job: Text, parsed: Parsed) -> Facts:
         kind = _highest(job)

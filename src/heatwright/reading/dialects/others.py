@@ -71,6 +71,15 @@ class ADF(Plain):
         yield warn("energy-not-total", words, action="It cannot enter an atomization or a reaction.")
 
 
+_CFOUR_KINDS: Final = {
+    "MBPT(2)": "MP2",
+    "MBPT(3)": "MP3",
+    "MBPT(4)": "MP4",
+    "SDQ-MBPT(4)": "MP4(SDQ)",
+    "M4SDQ": "MP4(SDQ)",
+}
+
+
 class CFOUR(Plain):
     """CFOUR: the pressure (1 bar) and the symmetry number of its table are not printed."""
 
@@ -81,11 +90,18 @@ class CFOUR(Plain):
     mode_anchors: ClassVar = ("Normal Coordinate Analysis", "IVIB           ANALYTIC", "IVIB           FINDIF")
 
     def energies(self, job: Text, parsed: Parsed, has_modes: bool) -> tuple[dict[str, float], str]:
-        """cclib takes whatever stands in an MP2 line; the level asked for decides."""
+        """cclib takes whatever stands in an MP2 or CC line; the level asked for and the closing line decide."""
         found, kind = super().energies(job, parsed, has_modes)
-        if re.match(r" *ICLLVL +(?:SCF|HF) ", job.rest_of_last("       CALCLEVEL")):
-            return {name: value for name, value in found.items() if name == "SCF"}, "SCF" if "SCF" in found else ""
-        return found, kind
+        asked = re.match(r" *ICLLVL +(\S+)", job.rest_of_last("       CALCLEVEL"))
+        if asked is None:
+            return found, kind
+        scf = {name: value for name, value in found.items() if name == "SCF"}
+        if asked.group(1) in ("SCF", "HF"):
+            return scf, "SCF" if scf else ""
+        kind = _CFOUR_KINDS.get(asked.group(1), asked.group(1))
+        first = has_modes and "IVIB           FINDIF" in job  # displaced geometries follow
+        final = job.number_after("The final electronic energy is", last=not first)
+        return ({**scf, kind: final}, kind) if final is not None else (scf, "")
 
     def masses(self, job: Text) -> FloatArray | None:
         return wrapped_numbers(job, "masses used (in AMU) in vibrational analysis:")
@@ -119,6 +135,7 @@ class DALTON(Plain):
     """DALTON: frequencies without thermochemistry."""
 
     name = "DALTON"
+    coupled_marks: ClassVar = (("Total energy CCSD(T)", "CCSD(T)"),)
     version_pattern = r"Release DALTON(\S+)"
     endings: ClassVar = ("Total wall time used in DALTON",)
     failures: ClassVar = (Failure("--- SEVERE ERROR, PROGRAM WILL BE ABORTED ---", "DALTON stopped with an error"),)
@@ -157,6 +174,8 @@ class Jaguar(Plain):
     def printed(self, job: Text) -> tuple[PrintedThermo, ...]:
         zpe = re.search(r"([\d.]+) kcal/mol", job.rest_of_last("The zero point energy (ZPE):"))
         zero = float(zpe.group(1)) * _KCAL if zpe else None
+        pressure = job.number_after("Thermochemical properties at ")
+        sigma = as_integer(job.number_after("rotational symmetry number:"))
         found = []
         for spot in job.spots("\n  T =  "):
             block = job.part(spot, spot + 1500)
@@ -164,12 +183,11 @@ class Jaguar(Plain):
             totals = numbers(total.group(1)) if total else []
             if len(totals) < 5:
                 continue
-            pressure = job.number_after("Thermochemical properties at ")
             found.append(
                 PrintedThermo(
                     temperature_K=next(iter(numbers(job.line(spot + 1).replace("K", " "))), None),
                     pressure_Pa=None if pressure is None else pressure * ATMOSPHERE_PA,
-                    symmetry_number=as_integer(job.number_after("rotational symmetry number:")),
+                    symmetry_number=sigma,
                     zpe_hartree=zero,
                     enthalpy_correction_hartree=None if zero is None else totals[3] * _KCAL + zero,
                     entropy_J_mol_K=totals[2] * CALORIE_J,
@@ -182,10 +200,12 @@ class Molcas(Plain):
     """OpenMolcas and Molcas: imaginary modes left out of its sums; several temperatures."""
 
     name = "Molcas"
+    coupled_marks: ClassVar = ()
     version_pattern = r"version +(\d\S*)"
     endings: ClassVar = ("Happy landing!", "    Timing: Wall=")
     failures: ClassVar = (Failure("Non-zero return code", "Molcas stopped with an error"),)
     mode_anchors: ClassVar = ("Harmonic frequencies in cm-1", "Harmonic frequencies in")
+    own = frozenset({"mult"})
 
     def multiplicity(self, job: Text, parsed: Parsed) -> int | None:
         spin = job.number_after("Total spin, S   ")
@@ -198,7 +218,8 @@ class Molcas(Plain):
         spots = job.spots("\n Temperature = ")
         zpe = re.search(r"([\d.]+) +(?:au|hartree)", job.rest_of_last("Zero-point vibrational energy"), re.IGNORECASE)
         blocks = [job.part(a, b) for a, b in zip(spots, [*spots, job.end][1:], strict=True)]
-        items = [_molcas(block, job) for block in blocks]
+        sigma = as_integer(job.number_after("Rotational Symmetry factor:"))
+        items = [_molcas(block, sigma) for block in blocks]
         zero = float(zpe.group(1)) if zpe else None
         if zero is None and blocks and items[0].temperature_K == 0.0:
             zero = items[0].enthalpy_correction_hartree
@@ -206,14 +227,14 @@ class Molcas(Plain):
         return tuple(sorted(found, key=lambda i: abs((i.temperature_K or 0.0) - 298.15)))
 
 
-def _molcas(block: Text, job: Text) -> PrintedThermo:
+def _molcas(block: Text, sigma: int | None) -> PrintedThermo:
     head = re.search(r"([\d.]+) Kelvin, Pressure = +([\d.]+) atm", block.line(block.start + 1))
     entropy = numbers(block.rest_of_first("\n TOTAL  "))
     enthalpy = re.search(r"(-?[\d.]+) au", block.rest_of_first("\n ENTHALPY  "))
     return PrintedThermo(
         temperature_K=float(head.group(1)) if head else None,
         pressure_Pa=float(head.group(2)) * ATMOSPHERE_PA if head else None,
-        symmetry_number=as_integer(job.number_after("Rotational Symmetry factor:")),
+        symmetry_number=sigma,
         enthalpy_correction_hartree=float(enthalpy.group(1)) if enthalpy else None,
         entropy_J_mol_K=entropy[-1] * CALORIE_J if entropy else None,
     )
@@ -223,6 +244,7 @@ class Molpro(Plain):
     """Molpro: average masses; only the zero-point energy is printed."""
 
     name = "Molpro"
+    coupled_marks: ClassVar = (("!CCSD(T)", "CCSD(T)"), ("!CCSD", "CCSD"), ("!CCD", "CCD"))
     version_pattern = r"Version (\d\S*)"
     endings: ClassVar = ("Variable memory released",)
     failures: ClassVar = (Failure("GLOBAL ERROR fehler", "Molpro stopped with an error"),)
@@ -274,6 +296,7 @@ class Turbomole(Plain):
     """Turbomole's aoforce: neither energy nor charge nor multiplicity."""
 
     name = "Turbomole"
+    coupled_marks: ClassVar = (("Final CCSD energy", "CCSD"), ("Final CC2 energy", "CC2"))
     version_pattern = r"TURBOMOLE (?:rev\. )?V(\S+)"
     endings: ClassVar = ("all done  ****", "ended normally")
     failures: ClassVar = (Failure("ended abnormally", "Turbomole stopped with an error"),)

@@ -20,6 +20,8 @@ class Plain(Dialect):
     """A dialect made of hooks; each may be left as it is."""
 
     version_pattern: ClassVar[str] = ""
+    coupled_marks: ClassVar[tuple[tuple[str, str], ...]] = (("CCSD(T)", "CCSD(T)"),)
+    """Texts that tell which coupled-cluster energy an output ends with, the highest first; without any it is CCSD."""
 
     def identity(self, job: Text) -> Identity:
         return Identity(has_modes=any(anchor in job for anchor in self.mode_anchors))
@@ -62,7 +64,8 @@ class Plain(Dialect):
         return None
 
     def energies(self, job: Text, parsed: Parsed, has_modes: bool) -> tuple[dict[str, float], str]:
-        return plain_energies(parsed, has_modes)
+        coupled = next((kind for mark, kind in self.coupled_marks if mark in job), "CCSD")
+        return plain_energies(parsed, has_modes, coupled)
 
     def level(self, job: Text, kind: str) -> Level | None:
         return None

@@ -32,6 +32,8 @@ _ENERGIES: Final = (
     ("CCSD(T) Total Energy (a.u.)", "CCSD(T)"),
 )
 _LOCAL: Final = (("VWN5_RPA", "VWN1RPA"), ("VWN_RPA", "VWN1RPA"), ("VWN5", "VWN5"), ("VWN3", "VWN3"))
+_TITLE_LINES: Final = 12
+"""Lines after the title of a table within which its rows start; a title may be repeated without any."""
 _REVISION: Final = re.compile(r"Git: Rev \{\} zzzzzzz")
 
 
@@ -46,6 +48,7 @@ class Psi4(Dialect):
         Failure("Psi4 encountered an error", "Psi4 stopped with an error"),
     )
     mode_anchors: ClassVar = (_ANALYSIS,)
+    own = frozenset({"vibfreqs", "vibdisps"})
     cumulative = True
 
     def repaired(self, text: str) -> str:
@@ -71,12 +74,12 @@ class Psi4(Dialect):
             atoms=_rows(job, spot)[0],
             charge=charge,
             multiplicity=multiplicity,
-            has_modes=_ANALYSIS in job or (job.end >= len(job.whole.rstrip()) and _asks_for_modes(job)),
+            has_modes=_ANALYSIS in job or (job.is_last and _asks_for_modes(job)),
             optimises="OPTKING" in job or "Final optimized geometry" in job,
         )
 
     def terminated(self, job: Text) -> bool:
-        return super().terminated(job) or job.end < len(job.whole.rstrip())
+        return super().terminated(job) or not job.is_last
 
     def read(self, job: Text, parsed: Parsed) -> Facts:
         freq = _ANALYSIS in job
@@ -155,7 +158,7 @@ def _rows(job: Text, spot: int) -> tuple[tuple[int, ...], FloatArray | None, Flo
     """Atomic numbers (0 for ghosts), coordinates (Å) and masses (u) of a table."""
     atoms: list[int] = []
     rows: list[list[float]] = []
-    for line in job.lines(spot) if spot >= 0 else ():
+    for index, line in enumerate(job.lines(spot) if spot >= 0 else ()):
         fields = line.split()
         values = [number(f) for f in fields[1:]]
         if len(fields) in (4, 5) and all(v is not None for v in values):
@@ -165,7 +168,7 @@ def _rows(job: Text, spot: int) -> tuple[tuple[int, ...], FloatArray | None, Flo
             except KeyError:
                 atoms.append(0)
             rows.append([v for v in values if v is not None])
-        elif rows:
+        elif rows or index > _TITLE_LINES:
             break
     else:  # no table, or one that the end of the file cuts off
         return (), None, None
@@ -197,7 +200,7 @@ def _energies(job: Text) -> list[Energy]:
             if values and not job.whole[spot - 1].strip("\t\n *"):  # not the spin-scaled ones, SCS-MP2 and the like
                 found.append(Energy(spot, kind, values[0]))
     for spot in job.spots("> DF-MP2 Energies <"):
-        values = numbers(job.line(job.find(" Total Energy", spot)))
+        values = numbers(job.part(spot, spot + 2000).rest_of_first(" Total Energy"))
         if values:
             found.append(Energy(spot, "MP2", values[0]))
     return found
@@ -262,9 +265,11 @@ def _entropy(millihartree_per_kelvin: float) -> float:
 def _max_gradient(job: Text, coordinates: FloatArray | None) -> float | None:
     """Largest component of the gradient at the geometry of the frequencies, not at a displaced one; None without it."""
     tables = list(_tables(job))
+    last, here = -1, None
     for spot in sorted([*job.spots("-Total Gradient:"), *job.spots("-Total gradient:")]):
         before = bisect_left(tables, spot)
-        _, here, _ = _rows(job, tables[before - 1] if before else -1)
+        if before and before != last:
+            last, here = before, _rows(job, tables[before - 1])[1]
         if here is None or coordinates is None or here.shape != coordinates.shape:
             continue
         if np.abs(here - coordinates).max() < 1e-6:
@@ -274,12 +279,12 @@ def _max_gradient(job: Text, coordinates: FloatArray | None) -> float | None:
 
 def _largest(job: Text, spot: int) -> float | None:
     found: list[float] = []
-    for line in job.lines(spot):
+    for index, line in enumerate(job.lines(spot)):
         fields = line.split()
         values = [number(f) for f in fields[1:]]
         if len(fields) == 4 and fields[0].isdigit() and all(v is not None for v in values):
             found += [abs(v) for v in values if v is not None]
-        elif found:
+        elif found or index > _TITLE_LINES:
             break
     return max(found, default=None)
 

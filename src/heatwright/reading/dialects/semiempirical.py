@@ -3,15 +3,15 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterable
+from collections.abc import Iterable, Iterator
 from itertools import islice
 from typing import ClassVar, Final
 
 import numpy as np
 
-from heatwright.constants import CALORIE_J, HARTREE_KJ_MOL
+from heatwright.constants import BOHR_ANGSTROM, CALORIE_J, HARTREE_KJ_MOL
 from heatwright.elements import atomic_number
-from heatwright.findings import Finding, warn
+from heatwright.findings import Finding, refuse, warn
 from heatwright.molecule import FloatArray, IntArray, Kind, Level, PrintedThermo
 from heatwright.reading.dialects.base import Failure, as_integer
 from heatwright.reading.dialects.plain import Plain
@@ -29,10 +29,11 @@ class MOPAC(Plain):
     endings: ClassVar = ("== MOPAC DONE ==",)
     job_starts: ClassVar = ("CALCULATION DONE:",)
     mode_anchors: ClassVar = ("NORMAL COORDINATE ANALYSIS", "DESCRIPTION OF VIBRATIONS")
+    own = frozenset({"atomnos", "atomcoords", "vibfreqs", "vibdisps"})
     cumulative = True
 
     def terminated(self, job: Text) -> bool:
-        return super().terminated(job) or job.end < len(job.whole.rstrip())
+        return super().terminated(job) or not job.is_last
 
     def energies(self, job: Text, parsed: Parsed, has_modes: bool) -> tuple[dict[str, float], str]:
         return {}, ""
@@ -80,13 +81,27 @@ class MOPAC(Plain):
         found = []
         for spot in job.spots("  VIB.  "):
             temperature = number(job.line(spot).split()[0])
-            totals = numbers(job.line(job.find(" TOT. ", spot)))
+            block = job.part(spot, spot + 2000)
+            totals = numbers(block.line(block.find(" TOT. "))) if " TOT. " in block else []
             if temperature is not None and len(totals) == 4 and zero is not None:
                 heat = totals[1] / 1000.0 * _KCAL
                 number_of_rotations = int(sigma.group(1)) if sigma else None
                 item = PrintedThermo(temperature, None, number_of_rotations, zero, heat + zero, totals[3] * CALORIE_J)
                 found.append(item)
         return tuple(found) or ((PrintedThermo(zpe_hartree=zero),) if zero is not None else ())
+
+    def max_gradient(self, job: Text) -> float | None:
+        """Of the table of derivatives, kcal/mol/Å, that a force calculation prints for its geometry."""
+        spot = job.rfind("CARTESIAN COORDINATE DERIVATIVES")
+        found: list[float] = []
+        for line in islice(job.lines(spot), 1, None) if spot >= 0 else ():
+            fields = line.split()
+            values = [number(token) for token in fields[2:]]
+            if len(fields) == 5 and fields[0].isdigit() and all(v is not None for v in values):
+                found += [abs(v) for v in values if v is not None]
+            elif found:
+                break
+        return max(found) * _KCAL * BOHR_ANGSTROM if found else None
 
     def remarks(self, job: Text) -> Iterable[Finding]:
         words = "the energy MOPAC prints is a heat of formation at 298 K, not a total energy"
@@ -109,6 +124,7 @@ class XTB(Plain):
     endings: ClassVar = ("* finished run on",)
     failures: ClassVar = (Failure("abnormal termination of xtb", "xtb stopped with an error"),)
     mode_anchors: ClassVar = ("vibrational frequencies",)
+    own = frozenset({"mult", "vibdisps"})
 
     def multiplicity(self, job: Text, parsed: Parsed) -> int | None:
         call = job.rest_of_first("program call               :")
@@ -126,9 +142,8 @@ class XTB(Plain):
 
     def level(self, job: Text, kind: str) -> Level | None:
         match = re.match(r" *(\S+)", job.rest_of_last(":  Hamiltonian  "))
-        solvent = re.match(r" *(\S+)", job.rest_of_last(":  GBSA solvation  "))
-        model = "" if solvent is None or solvent.group(1) == "false" else "GBSA/ALPB"
-        return Level(method=match.group(1), basis="", solvent=model, program=self.name) if match else None
+        method = match.group(1) if match else "GFN-FF" if _FORCE_FIELD in job else ""
+        return Level(method=method, basis="", solvent=_xtb_solvent(job), program=self.name) if method else None
 
     def geometry(self, job: Text) -> tuple[IntArray | None, FloatArray | None]:
         """The structure after an optimisation; a plain Hessian run prints none."""
@@ -148,6 +163,14 @@ class XTB(Plain):
     def job_kind(self, job: Text) -> Kind | None:
         return "relaxed scan" if "RELAXED SCAN" in job else None
 
+    def remarks(self, job: Text) -> Iterable[Finding]:
+        atoms, _ = self.geometry(job)
+        if atoms is not None and any(anchor in job for anchor in self.mode_anchors):
+            yield from _fixed_atoms(job, len(atoms))
+        if _FORCE_FIELD in job:
+            words = "the energy of a force field is no total energy"
+            yield warn("energy-not-total", words, action="It cannot enter an atomization or a reaction.")
+
     def printed(self, job: Text) -> tuple[PrintedThermo, ...]:
         rows = [job.line(spot) for spot in job.spots(" TOT  ")]
         values = next((v for v in map(numbers, rows) if len(v) >= 4), [])
@@ -164,6 +187,32 @@ class XTB(Plain):
             entropy_J_mol_K=values[2] * CALORIE_J if values else None,
         )
         return (item,)
+
+
+_FORCE_FIELD: Final = "G F N - F F"
+
+
+def _xtb_solvent(job: Text) -> str:
+    """The model by its name and the solvent, or what the table of settings says of it."""
+    model = job.rest_of_last("* Solvation model:")
+    if model:
+        name = re.search(r"^ +Solvent +(\S+)", str(job.part(job.rfind("* Solvation model:"))), re.MULTILINE)
+        return f"{model}, {name.group(1)}" if name else model
+    setting = re.match(r" *(\S+)", job.rest_of_last(":  GBSA solvation  "))
+    return "" if setting is None or setting.group(1) == "false" else "GBSA/ALPB"
+
+
+def _fixed_atoms(job: Text, n_atoms: int) -> Iterator[Finding]:
+    """Atoms that an optimisation held in place are not named; it has fewer degrees of freedom than the molecule."""
+    free = as_integer(job.number_after(":   degrees of freedom  "))
+    linear = job.rest_of_last(":   linear?").startswith("true")
+    if free is None or n_atoms < 3 or free >= 3 * n_atoms - (5 if linear else 6):
+        return
+    words = f"the optimisation had {free} degrees of freedom: atoms were held in place"
+    expected = f"{3 * n_atoms - (5 if linear else 6)} for {n_atoms} free atoms"
+    action = "Optimise without constraints first, or accept them with --accept constraints."
+    where = job.where(job.rfind(":   degrees of freedom  "))
+    yield refuse("constraints", words, where=where, expected=expected, action=action)
 
 
 def _xtb_temperature(job: Text) -> str:
