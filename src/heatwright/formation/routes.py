@@ -5,21 +5,17 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass, replace
 from math import hypot, inf
-from typing import Final, Literal, get_args
+from typing import TYPE_CHECKING, Final, Literal, get_args
 
 from heatwright.findings import Finding, Refused, note, refusals, refuse, warn
 from heatwright.formation.atomization import Atoms
-from heatwright.formation.by_network import formation_by_network
-from heatwright.formation.by_reaction import formation_by_reaction
 from heatwright.formation.choices import PLAIN, EnergyChoices, atomized
-from heatwright.formation.error_model import features, own_variance, shared_covariance
 from heatwright.formation.formation import Electron, Formation, GivenEnthalpy, formation_given
-from heatwright.formation.phrases import COVERAGE
-from heatwright.formation.reference_set import ReferenceSet
 from heatwright.formation.references import atom_reference
-from heatwright.formation.usable import usable_references
 from heatwright.partition.model import ThermoModel
-from heatwright.structure.bond_orders import bonding
+
+if TYPE_CHECKING:
+    from heatwright.formation.reference_set import ReferenceSet
 
 Route = Literal["given", "atomization", "reaction", "network", "best"]
 ROUTES: Final[tuple[str, ...]] = get_args(Route)
@@ -112,6 +108,11 @@ def _with_expected_error(
     made: Formation, model: ThermoModel, request: RouteRequest, references: ReferenceSet
 ) -> Formation:
     """Atomization with the uncertainty that the references at its level let expect, where there are enough of them."""
+    from heatwright.formation.error_model import features, own_variance, shared_covariance
+    from heatwright.formation.phrases import COVERAGE
+    from heatwright.formation.usable import usable_references
+    from heatwright.structure.bond_orders import bonding
+
     try:
         usable = usable_references(model, references, request.choices)
         mine = features([bonding(model.molecule)])
@@ -125,11 +126,15 @@ def _with_expected_error(
 
 
 def _reaction(model: ThermoModel, request: RouteRequest) -> Formation:
+    from heatwright.formation.by_reaction import formation_by_reaction
+
     references = _references(request)
     return formation_by_reaction(model, references, request.reaction, request.choices, name=request.name)
 
 
 def _network(model: ThermoModel, request: RouteRequest) -> Formation:
+    from heatwright.formation.by_network import formation_by_network
+
     return formation_by_network(model, _references(request), request.choices)
 
 

@@ -1,6 +1,6 @@
 """Molecules and what is found about them as bytes: JSON beside the raw numbers of arrays, with a checksum.
 
-Only the types in :func:`_types` can come out of such bytes, whatever they hold: nothing in them is ever executed.
+Only the types in :data:`_HOMES` can come out of such bytes, whatever they hold: nothing in them is ever executed.
 """
 
 from __future__ import annotations
@@ -10,6 +10,7 @@ import zlib
 from collections.abc import Callable, Mapping
 from dataclasses import MISSING, dataclass, fields
 from functools import cache
+from importlib import import_module
 from typing import Any, Final
 
 import numpy as np
@@ -39,21 +40,20 @@ class _Kind:
     defaults: dict[str, Any]
 
 
+_HOMES: Final = {
+    "Finding": "findings",
+    **dict.fromkeys(("DiatomicConstants", "Level", "Molecule", "PrintedThermo", "Source", "Stated"), "molecule"),
+    **dict.fromkeys(("TorsionBarrier", "TorsionScan"), "reading.torsion_scans"),
+}
+"""The dataclasses that may be encoded, and where they live; they are imported when they are met."""
+
+
 @cache
-def _types() -> dict[str, _Kind]:
-    """The dataclasses that may be encoded, by name."""
-    from heatwright.findings import Finding
-    from heatwright.molecule import DiatomicConstants, Level, Molecule, PrintedThermo, Source, Stated
-    from heatwright.reading.torsion_scans import TorsionBarrier, TorsionScan
-    from heatwright.structure.inertia import Inertia
-    from heatwright.structure.operations import Operations
-    from heatwright.structure.symmetry import Symmetry
-
-    known = (Finding, DiatomicConstants, Level, Molecule, PrintedThermo, Source, Stated, TorsionBarrier, TorsionScan)
-    return {c.__name__: _kind(c) for c in (*known, Inertia, Operations, Symmetry)}
-
-
-def _kind(c: Any) -> _Kind:
+def _kind_of(name: str) -> _Kind | None:
+    """One of the dataclasses that may be encoded, None for any other name."""
+    if name not in _HOMES:
+        return None
+    c = getattr(import_module(f"heatwright.{_HOMES[name]}"), name)
     defaults = {f.name: f.default for f in fields(c) if f.default is not MISSING}
     return _Kind(c, tuple(f.name for f in fields(c)), defaults)
 
@@ -113,7 +113,7 @@ def _plain(value: Any, arrays: list[bytes]) -> Any:
     if isinstance(value, Mapping):
         return {"%": {str(key): _plain(item, arrays) for key, item in value.items()}}
     name = type(value).__name__
-    kind = _types().get(name)
+    kind = _kind_of(name)
     if kind is None or kind.type is not type(value):
         raise TypeError(f"{name} has no place in the store")
     return {"@": [name, {f: _plain(v, arrays) for f in kind.names if not _is_default(kind, f, v := getattr(value, f))}]}
@@ -151,7 +151,10 @@ def _object(inside: list[Any], body: bytes, start: int) -> Any:
     for field, value in given.items():
         if type(value) not in _SCALARS:
             given[field] = _value(value, body, start)
-    return _types()[name].type(**given)
+    kind = _kind_of(name)
+    if kind is None:
+        raise Unreadable(f"an object of the type {name}")
+    return kind.type(**given)
 
 
 def _mapping(inside: dict[str, Any], body: bytes, start: int) -> dict[str, Any]:

@@ -15,11 +15,14 @@ if TYPE_CHECKING:
     from heatwright.entry import FitOptions
     from heatwright.formation.choices import EnergyChoices
     from heatwright.formation.formation import GivenEnthalpy
+    from heatwright.formation.references import AtomReference
     from heatwright.formation.species_references import SpeciesReference
     from heatwright.partition.choices import ModelOptions
     from heatwright.partition.lowmodes import LowModes
     from heatwright.partition.radicals import ElectronicOption
     from heatwright.project.manifest_types import FitChoice, FormationChoice, ModelChoice, ReadingChoice, SpeciesRequest
+    from heatwright.reading.torsion_scans import Torsion
+    from heatwright.structure.isotopes import Isotope
 
 
 _NAMED_LEVELS: Final[dict[str, Literal["table", "spin", "levels"]]] = {
@@ -34,7 +37,6 @@ def model_options(choice: ModelChoice) -> ModelOptions:
     from heatwright.constants import ATMOSPHERE_PA, BAR_PA
     from heatwright.partition.choices import ModelOptions
     from heatwright.partition.inputs import parse_uncertainties
-    from heatwright.reading.torsion_scans import read_torsion
 
     if choice.scale is not None and (choice.frequency_scale is not None or choice.zpe_scale is not None):
         raise UsageError("--scale published chooses both factors; leave out --frequency-scale and --zpe-scale")
@@ -52,9 +54,17 @@ def model_options(choice: ModelChoice) -> ModelOptions:
         electronic=_electronic(choice.electronic),
         masses=choice.masses,
         uncertainty=None if choice.uncertainty is None else parse_uncertainties(choice.uncertainty),
-        torsions=tuple(read_torsion(torsion.text) for torsion in choice.torsions),
+        torsions=_torsions(choice),
         torsion_coupling=choice.torsion_coupling,
     )
+
+
+def _torsions(choice: ModelChoice) -> tuple[Torsion, ...]:
+    if not choice.torsions:
+        return ()
+    from heatwright.reading.torsion_scans import read_torsion
+
+    return tuple(read_torsion(torsion.text) for torsion in choice.torsions)
 
 
 def _electronic(words: str) -> ElectronicOption:
@@ -78,17 +88,23 @@ def low_modes(choice: ModelChoice) -> LowModes:
 
 def reading_options(choice: ReadingChoice, *, torsions: bool = False) -> Reading:
     """How outputs are read; torsions : whether force constants are wanted.  Raises UsageError for isotopes."""
-    from heatwright.structure.isotopes import parse_isotope
-
     return Reading(
         choice.job,
         choice.charge,
         choice.multiplicity,
-        tuple(parse_isotope(text) for text in choice.isotopes),
+        _isotopes(choice),
         accept=choice.accept,
         accept_imaginary_cm1=choice.accept_imaginary_cm1,
         torsions=torsions,
     )
+
+
+def _isotopes(choice: ReadingChoice) -> tuple[Isotope, ...]:
+    if not choice.isotopes:
+        return ()
+    from heatwright.structure.isotopes import parse_isotope
+
+    return tuple(parse_isotope(text) for text in choice.isotopes)
 
 
 def species_reading(species: SpeciesRequest) -> Reading:
@@ -121,8 +137,6 @@ def energy_choices(
     """
     from heatwright.formation.choices import EnergyChoices
     from heatwright.formation.corrections import read_corrections
-    from heatwright.formation.references import atom_references
-    from heatwright.formation.species_references import own_atom_references
     from heatwright.formation.zero_kelvin import read_zero_kelvin_energies
 
     corrections, stated = choice.folders.corrections, choice.folders.zero_kelvin
@@ -132,6 +146,15 @@ def energy_choices(
         corrections=() if corrections is None else tuple(read_corrections(corrections.path)),
         zero_kelvin=None if stated is None else read_zero_kelvin_energies(stated.path),
         electron=choice.electron,
-        atom_values={**atom_references(), **own_atom_references(own)} if own else None,
+        atom_values=_atom_values(own),
         accept=accept,
     )
+
+
+def _atom_values(own: tuple[SpeciesReference, ...]) -> dict[str, AtomReference] | None:
+    if not own:
+        return None
+    from heatwright.formation.references import atom_references
+    from heatwright.formation.species_references import own_atom_references
+
+    return {**atom_references(), **own_atom_references(own)}

@@ -7,9 +7,9 @@ reader made must not be taken for new.
 from __future__ import annotations
 
 import hashlib
+import os
+from collections.abc import Iterator
 from functools import cache
-from importlib.resources import files
-from importlib.resources.abc import Traversable
 from importlib.util import find_spec
 from pathlib import Path
 from typing import Final
@@ -26,7 +26,6 @@ _FOR_ENTRIES: Final = (
     "project/conversion.py", "project/making.py", "project/record.py", "project/lockfile.py",
 )  # fmt: skip
 """What an entry goes through, from the molecule to its text."""
-_TABLES: Final = ".csv"
 _TEXTS: Final = ("nasa7.j2", "yaml.j2")
 
 
@@ -53,20 +52,26 @@ def tool_fingerprint() -> str:
     return _hash(_FOR_ENTRIES, reader_fingerprint() + texts)
 
 
+_PACKAGE: Final = os.path.dirname(os.path.dirname(os.path.abspath(__file__)))
+
+
 def _hash(parts: tuple[str, ...], more: str) -> str:
-    package = files("heatwright")
     found = hashlib.sha256(more.encode())
-    sources = [(part, package.joinpath(part)) for part in parts]
-    tables = [(f"data/{item.name}", item) for item in package.joinpath("data").iterdir() if item.name.endswith(_TABLES)]
-    for name, place in sorted([*sources, *tables], key=lambda pair: pair[0]):
-        _take(found, name, place)
+    for name in sorted({path for part in (*parts, "data") for path in _sources(part)}):
+        with open(os.path.join(_PACKAGE, name), "rb") as stream:
+            found.update(f"{name}\0".encode() + stream.read().replace(b"\r\n", b"\n") + b"\0")
     return found.hexdigest()[:16]
 
 
-def _take(found: hashlib._Hash, name: str, place: Traversable) -> None:
-    if place.is_dir():
-        for item in sorted(place.iterdir(), key=lambda item: item.name):
-            if item.is_dir() or item.name.endswith(".py"):
-                _take(found, f"{name}/{item.name}", item)
-    else:
-        found.update(f"{name}\0".encode() + place.read_bytes().replace(b"\r\n", b"\n") + b"\0")
+def _sources(part: str) -> Iterator[str]:
+    """The sources and tables in a part of the package, a file or a folder, as paths with ``/``."""
+    place = os.path.join(_PACKAGE, part)
+    if not os.path.isdir(place):
+        yield part
+        return
+    for name in os.listdir(place):
+        path = f"{part}/{name}"
+        if os.path.isdir(os.path.join(place, name)):
+            yield from _sources(path)
+        elif name.endswith((".py", ".csv")):
+            yield path

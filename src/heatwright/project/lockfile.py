@@ -7,7 +7,6 @@ import re
 import tomllib
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
-from difflib import get_close_matches
 from typing import Any, Final, NoReturn, TypeVar
 
 from heatwright.findings import Refused, refuse
@@ -339,6 +338,8 @@ class _Reader:
     def only(self, known: Sequence[str]) -> None:
         for key in self.values:
             if key not in known:
+                from difflib import get_close_matches
+
                 near = get_close_matches(key, known, 1, 0.5)
                 self.wrong(f"there is no key {key!r}", f"{near[0]!r}" if near else "")
 

@@ -141,13 +141,14 @@ class Maker:
 
     def _model_options(self, choice: ModelChoice) -> ModelOptions:
         from heatwright.project.conversion import model_options
-        from heatwright.reading.torsion_scans import read_torsion
 
         plain = replace(choice, torsions=()) if choice.torsions else choice
         if plain not in self._options:
             self._options[plain] = model_options(plain)
         if not choice.torsions:
             return self._options[plain]
+        from heatwright.reading.torsion_scans import read_torsion
+
         torsions = tuple(
             read_torsion(t.barrier)
             if t.scan is None
@@ -181,11 +182,11 @@ class Maker:
         return shelf.reference_set(own, self._model_options(request.model), self._say)
 
     def _own_references(self, choice: FormationChoice) -> Any:
-        from heatwright.formation.species_references import read_references
-
         table = choice.folders.reference_table
         if table is None:
             return ()
+        from heatwright.formation.species_references import read_references
+
         if table not in self._own:
             self._own[table] = read_references(_here(table).path)
         return self._own[table]

@@ -10,7 +10,6 @@ build finishes what was begun.  Other files in the folder, such as a README, com
 
 from __future__ import annotations
 
-import ctypes
 import errno
 import os
 import shutil
@@ -175,6 +174,8 @@ _UNKNOWN: Final = (errno.ENOSYS, errno.EINVAL, errno.ENOTSUP, errno.EOPNOTSUPP)
 
 def _exchanged(one: str, other: str) -> bool:
     """Let two folders change places in one step; False where the system or the file system cannot."""
+    import ctypes
+
     a, b = os.fsencode(one), os.fsencode(other)
     libc = ctypes.CDLL(None, use_errno=True) if os.name == "posix" else None
     if sys.platform == "darwin" and hasattr(libc, "renamex_np"):

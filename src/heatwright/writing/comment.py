@@ -77,17 +77,15 @@ def _is_recorded(finding: Finding) -> bool:
 
 def wrapped(text: str) -> list[str]:
     """Lines of at most :data:`WIDTH`, those after the first indented; as textwrap has it, in a fraction of the time."""
-    words = ascii_text(text).split(" ")
-    if max(map(len, words)) > WIDTH - len(_INDENT):
-        return textwrap.wrap(" ".join(words), WIDTH, subsequent_indent=_INDENT, break_on_hyphens=False)
-    lines, line = [], words[0]
-    for word in words[1:]:
-        if len(line) + 1 + len(word) <= WIDTH:
-            line = f"{line} {word}"
-        else:
-            lines.append(line)
-            line = _INDENT + word
-    return [*lines, line] if line else lines
+    rest, lines, indent = ascii_text(text), [], ""
+    while len(indent) + len(rest) > WIDTH:
+        cut = rest.rfind(" ", 0, WIDTH - len(indent) + 1)
+        if cut < 0:  # a word longer than a line
+            whole = ascii_text(text)
+            return textwrap.wrap(whole, WIDTH, subsequent_indent=_INDENT, break_on_hyphens=False)
+        lines.append(indent + rest[:cut])
+        rest, indent = rest[cut + 1 :], _INDENT
+    return [*lines, indent + rest] if rest else lines
 
 
 _INDENT: Final = "  "

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Mapping, Sequence
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -13,17 +13,18 @@ from heatwright.entry import Entry
 from heatwright.findings import Finding, Refused
 from heatwright.formation.formation import Formation
 from heatwright.molecule import FloatArray, Molecule
-from heatwright.partition.internal_rotation import TreatedTorsion
 from heatwright.partition.model import ThermoModel
 from heatwright.partition.table import ThermoTable
-from heatwright.partition.torsion import HinderedRotor
-from heatwright.partition.uncertainty import TableUncertainty
 from heatwright.polynomial.nasa7 import Nasa7
 from heatwright.polynomial.quality import FitQuality, ResidualCurve
 from heatwright.structure.bond_orders import bonding
 from heatwright.structure.bonds import bonds
 from heatwright.writing.evidence import evidence, evidence_without_entry
 from heatwright.writing.numbers import significant
+
+if TYPE_CHECKING:
+    from heatwright.partition.internal_rotation import TreatedTorsion
+    from heatwright.partition.uncertainty import TableUncertainty
 
 JSON_VERSION = 1
 """The version key of every JSON document; it changes when a key changes its meaning or goes."""
@@ -132,6 +133,8 @@ def _low_modes(model: ThermoModel) -> dict[str, Any]:
 
 def torsion_document(torsion: TreatedTorsion) -> dict[str, Any]:
     """A treated torsion: atoms counted from 1, levels above the ground level up to a little above the barrier."""
+    from heatwright.partition.torsion import HinderedRotor
+
     levels = torsion.rotor.levels_cm1 if isinstance(torsion.rotor, HinderedRotor) else np.empty(0)
     return {
         "atoms": [a + 1 for a in torsion.bond.atoms],
