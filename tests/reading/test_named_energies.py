@@ -158,3 +158,11 @@ def test_a_coupled_cluster_energy_has_the_name_of_its_method(program: str, line:
     energies, used = dialect.energies(text, Parsed(values), False)
     assert (used, sorted(energies)) == (kind, sorted(["SCF", kind]))
     assert energies[kind] == pytest.approx(-76.24, abs=1e-12)
+
+
+def test_a_correlated_module_without_its_energy_is_no_scf_job(tmp_path: Path) -> None:
+    name = "nwchem702_water_mp2_energy.out"
+    m = read_text(tmp_path, text_of(name).replace("MP2 energy", "MP2 e"))
+    (found,) = (f for f in m.findings if f.code == "parser-failed")
+    assert (found.severity, "MP2 Semi-direct" in found.text) == ("refuse", True)
+    assert codes(read_output(kept(name))) == set()

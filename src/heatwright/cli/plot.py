@@ -15,7 +15,7 @@ if TYPE_CHECKING:
     from heatwright.report.drawing import Figure
     from heatwright.report.species import Species
 
-KINDS = ("structure", "cp", "residuals", "cp-shares", "s-shares", "torsion", "conformers", "formation")
+KINDS = ("structure", "cp", "slope", "residuals", "cp-shares", "s-shares", "torsion", "conformers", "formation")
 CAPTIONS = "captions.md"
 
 

@@ -18,7 +18,7 @@ if TYPE_CHECKING:
 @inputs_argument
 @click.option("-o", "--output", "target", type=click.Path(), metavar="FILE", help="Write here, whole or not at all.")
 @click.option("--force", is_flag=True, help="Replace FILE when it exists.")
-@click.option("--title", metavar="TEXT", help="Of the page.  [default: from the inputs' names]")
+@click.option("--title", metavar="TEXT", help="Of the page.  [default: the mechanism's, else from the inputs' names]")
 @click.option(
     "--compare",
     "old",
@@ -65,7 +65,7 @@ def report(
     shown = shown_inputs(ctx, inputs, options, reporter)
     if shown.species:
         page = Page(
-            title=title or _title(inputs),
+            title=title or shown.title or _title(inputs),
             subtitle=_subtitle(shown.species),
             species=shown.species,
             failed=shown.failed,

@@ -47,7 +47,8 @@ def shown_inputs(ctx: click.Context, inputs: tuple[str, ...], options: dict[str,
     parts |= _made(outputs, options, reporter)
     species = [s for path in dict.fromkeys(inputs) for s in parts[path].species]
     failed = [f for path in dict.fromkeys(inputs) for f in parts[path].failed]
-    return Shown(tuple(species), tuple(failed))
+    titles = dict.fromkeys(parts[path].title for path in inputs)
+    return Shown(tuple(species), tuple(failed), next(iter(titles)) if len(titles) == 1 else "")
 
 
 def given_inputs(inputs: tuple[str, ...]) -> tuple[str, ...]:
@@ -134,7 +135,7 @@ def _of_manifest(path: str, reporter: Reporter) -> Shown:
     for file, findings in made.failed:
         reporter.fail(file, findings)
     failed = tuple((file, tuple(f.text for f in refusals_of(findings))) for file, findings in made.failed)
-    return Shown(tuple(_shown_entry(e, e.name) for e in made.entries), failed)
+    return Shown(tuple(_shown_entry(e, e.name) for e in made.entries), failed, manifest.mechanism.name)
 
 
 def refusals_of(findings: tuple[Finding, ...]) -> tuple[Finding, ...]:

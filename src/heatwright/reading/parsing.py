@@ -25,7 +25,7 @@ from heatwright.reading.text import Text
 
 _WANTED = frozenset(
     ["atomnos", "atomcoords", "atommasses", "natom", "charge", "mult", "vibfreqs", "vibdisps", "scfenergies",
-     "mpenergies", "ccenergies", "scanenergies", "scannames", "optstatus", "metadata"]
+     "mpenergies", "ccenergies", "scanenergies", "scannames", "scanparm", "optstatus", "metadata"]
 )  # fmt: skip
 """Attributes used here; the others (orbitals, gradients) are dropped before cclib turns them into arrays."""
 _MOST_MISHAPS = 10

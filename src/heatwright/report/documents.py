@@ -18,10 +18,14 @@ Failed = tuple[str, tuple[str, ...]]
 
 @dataclass(frozen=True, slots=True)
 class Shown:
-    """Species to be shown, and (file, sentences) of what could not be."""
+    """Species to be shown, and (file, sentences) of what could not be.
+
+    title : what they are together, where that is known.
+    """
 
     species: tuple[Species, ...]
     failed: tuple[Failed, ...] = ()
+    title: str = ""
 
 
 def read_documents(path: str) -> Shown:

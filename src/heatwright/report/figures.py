@@ -7,10 +7,11 @@ from heatwright.report.drawing import Figure
 from heatwright.report.potential import torsional_potential
 from heatwright.report.routes import formation_routes
 from heatwright.report.shares import populations, stacked_shares
+from heatwright.report.slopes import slope
 from heatwright.report.species import Species
 from heatwright.report.structure import structure
 
-KINDS = ("structure", "cp", "residuals", "cp-shares", "s-shares", "torsion", "conformers", "formation")
+KINDS = ("structure", "cp", "slope", "residuals", "cp-shares", "s-shares", "torsion", "conformers", "formation")
 """The kinds of figures; a species has as many of ``torsion`` as it has torsions."""
 
 
@@ -19,6 +20,7 @@ def figures_of(species: Species) -> tuple[Figure, ...]:
     found = (
         structure(species),
         heat_capacity(species),
+        slope(species),
         residual_strips(species),
         stacked_shares(species, "Cp"),
         stacked_shares(species, "S"),

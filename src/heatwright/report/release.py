@@ -29,7 +29,7 @@ def shown_release(folder: str) -> Shown:
     audit = audit_entries(file)
     usable = [a for a in audit.entries if a.entry.polynomial is not None]
     species = tuple(species_of(_document(file, a, lock), f"{folder}: {a.entry.name}") for a in usable)
-    return Shown(species, failed_entries(file, audit))
+    return Shown(species, failed_entries(file, audit), lock.mechanism)
 
 
 def _document(file: EntryFile, audited: AuditedEntry, lock: Lock) -> dict[str, Any]:

@@ -23,7 +23,7 @@ from heatwright.reading.dialects.base import (
     cut,
     reconciled,
 )
-from heatwright.reading.dialects.nwchem_level import level_of
+from heatwright.reading.dialects.nwchem_level import level_of, missed_correlation
 from heatwright.reading.hessians import nwchem_hessian
 from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text, number, numbers
@@ -131,7 +131,7 @@ class NWChem(Dialect):
             printed=_printed(job),
             wavenumbers_cm1=wavenumbers,
             normal_modes=None if wavenumbers is None else parsed.array("vibdisps"),
-            findings=(*_unread_masses(job, masses), *disagree),
+            findings=(*_unread_masses(job, masses), *disagree, *missed_correlation(job, kind)),
             max_gradient_hartree_bohr=_max_gradient(Text(job.whole, 0, job.end), coordinates) if has_modes else None,
         )
 

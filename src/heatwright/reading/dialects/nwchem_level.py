@@ -3,8 +3,10 @@
 from __future__ import annotations
 
 import re
+from collections.abc import Iterator
 from typing import Final
 
+from heatwright.findings import Finding, refuse
 from heatwright.molecule import Level
 from heatwright.reading.levels import normalise_basis, normalise_method
 from heatwright.reading.text import Text
@@ -118,3 +120,21 @@ def _solvent(job: Text) -> str:
     epsilon = job.number_after("dielectric constant -eps-     =")
     model = "SMD" if "SMD model" in job or "smd" in job.rest_of_last("do_cosmo_smd") else "COSMO"
     return f"{model}, epsilon {epsilon:g}" if epsilon is not None else model
+
+
+_CORRELATED: Final = (
+    "NWChem MP2 Semi-direct Energy/Gradient Module",
+    "NWChem RI-MP2 Module",
+    "NWChem Extensible Many-Electron Theory Module",
+    "NWChem Direct MCSCF Module",
+)
+
+
+def missed_correlation(job: Text, kind: str) -> Iterator[Finding]:
+    """The refusal of a task whose module goes beyond the SCF, and whose own energy was not found."""
+    title = next((title for title in _CORRELATED if title in job), None)
+    if title is None or kind not in ("", "SCF"):
+        return
+    words = f"the energy of the {title.removeprefix('NWChem ')} is not in the output, only that of the SCF"
+    action = "The output is damaged, or the energy of this module is not read."
+    yield refuse("parser-failed", words, where=job.where(job.find(title)), action=action)
