@@ -5,6 +5,7 @@ The kill is SIGKILL to the process of a real `heatwright build`, at a moment dra
 
 from __future__ import annotations
 
+import contextlib
 import os
 import random
 import signal
@@ -135,9 +136,11 @@ def test_two_builds_at_the_same_time(tmp_path: Path) -> None:
 
 
 def descendants(pid: int) -> list[int]:
-    """The processes under one, by the table of processes."""
-    table = subprocess.run(["ps", "-eo", "pid=,ppid="], capture_output=True, text=True, check=True).stdout
-    parents = {int(child): int(parent) for child, parent in (line.split() for line in table.splitlines())}
+    """The processes under one, by the table of processes (where there is one)."""
+    parents: dict[int, int] = {}
+    for file in Path("/proc").glob("[0-9]*/stat"):
+        with contextlib.suppress(OSError):  # a process may have gone meanwhile
+            parents[int(file.parent.name)] = int(file.read_text().rpartition(")")[2].split()[1])
     found, new = [], [pid]
     while new:
         new = [child for child, parent in parents.items() if parent in new]
