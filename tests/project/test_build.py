@@ -7,6 +7,7 @@ from collections.abc import Callable
 from pathlib import Path
 from typing import Any
 
+import numpy as np
 import pytest
 
 from heatwright.cli.main import main
@@ -363,3 +364,61 @@ def test_sixty_species_by_hand_are_made_together(tmp_path: Path) -> None:
     outcome, _ = built(folder)
     assert len(outcome.made) == 60
     assert build(load_manifest(folder), Watch()).plan.is_done
+
+
+def test_names_that_have_to_be_quoted(tmp_path: Path) -> None:
+    names = ["NO", "CH2(S)", "C3H4-a", "1,3-C4H6", "y", "A'B", "N+", "~x", '"q"']
+    tables = []
+    folder = project(tmp_path)
+    for i, name in enumerate(names):
+        shutil.copyfile(SAMPLES / "CO2.out", folder / f"{i}.out")
+        quoted = name.replace('"', '\\"')
+        tables.append(f'[species."{quoted}"]\noutput = "{i}.out"\n')
+    manifest = folder / "heatwright.toml"
+    manifest.write_text(manifest.read_text() + "\n".join(tables))
+    outcome, told = built(folder)
+    assert sorted(outcome.made) == sorted(names), told.failures
+    good = release(folder)
+    assert sorted(read_lock(folder / "release" / "thermo.lock.toml").species) == sorted(names)
+    assert built(folder)[0].plan.is_done
+    edit(manifest, {'output = "0.out"': 'output = "0.out"\nmasses = "average"'})
+    assert built(folder)[1].made_names == ["NO"]
+    edit(manifest, {'output = "0.out"\nmasses = "average"': 'output = "0.out"'})
+    built(folder)
+    assert release(folder) == good
+
+
+def test_line_ends_that_version_control_changed_are_no_change(tmp_path: Path) -> None:
+    folder = project(tmp_path, "CO2", "H2O")
+    built(folder)
+    for path in (folder / "release").iterdir():
+        path.write_bytes(path.read_bytes().replace(b"\n", b"\r\n"))
+    assert built(folder)[0].plan.is_done
+
+
+def test_the_mechanism_may_be_renamed(tmp_path: Path) -> None:
+    folder = project(tmp_path, "CO2")
+    built(folder)
+    edit(folder / "heatwright.toml", {'name = "test"': 'name = "other"'})
+    outcome, _ = built(folder)
+    assert (outcome.made, outcome.written) == ((), True)
+    assert read_lock(folder / "release" / "thermo.lock.toml").mechanism == "other"
+
+
+def test_torsions_and_conformers_are_watched_too(tmp_path: Path) -> None:
+    scan = "# atoms 3-1-2-4\nangle_deg,energy_kJ/mol\n" + "".join(
+        f"{a},{2.2 * (1 + np.cos(np.deg2rad(3 * a))):.6f}\n" for a in range(0, 360, 15)
+    )
+    more = '[species.CH3OH]\noutput = "CH3OH.out"\ntorsions = ["scan.csv"]\n'
+    folder = project(tmp_path, "H2O", more=more)
+    shutil.copyfile(SAMPLES / "CH3OH.out", folder / "CH3OH.out")
+    (folder / "scan.csv").write_text(scan)
+    outcome, told = built(folder)
+    assert outcome.failed == (), told.failures
+    assert read_lock(folder / "release" / "thermo.lock.toml").species["CH3OH"].conventions["torsions"] == 1
+    (folder / "scan.csv").write_text(scan.replace("60,0.000000", "60,0.000001", 1))
+    assert built(folder)[1].reason_texts == {"CH3OH": "output changed (scan.csv)"}
+    (folder / "scan.csv").write_text("nonsense\n")
+    outcome, told = built(folder)
+    assert [f.code for f in told.failures["CH3OH"]] == ["scan-unreadable"]
+    assert told.failures["CH3OH"][0].where.startswith("scan.csv")

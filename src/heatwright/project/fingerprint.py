@@ -23,7 +23,8 @@ _FOR_READING: Final = (
 """What the reading of an output goes through."""
 _FOR_ENTRIES: Final = (
     *_FOR_READING, "scales.py", "species.py", "entry.py", "partition", "formation", "polynomial", "writing",
-    "project/conversion.py", "project/making.py", "project/record.py", "project/lockfile.py",
+    "project/conversion.py", "project/making.py", "project/shelf.py", "project/record.py", "project/texts.py",
+    "project/lockfile.py",
 )  # fmt: skip
 """What an entry goes through, from the molecule to its text."""
 _TEXTS: Final = ("nasa7.j2", "yaml.j2")

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import json
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass
+from dataclasses import astuple, dataclass
 from typing import TYPE_CHECKING, Any
 
 from heatwright.findings import Finding, Refused
@@ -124,7 +124,7 @@ def _conventions(entry: Entry) -> dict[str, Any]:
 
 def packed(record: Record) -> bytes:
     """A record as the store keeps it."""
-    findings = [[f.severity, f.code, f.found, f.where, f.expected, f.action] for f in record.findings]
+    findings = [list(astuple(finding)) for finding in record.findings]
     rests_on = [[r.path, r.sha256, r.species] for r in record.rests_on]
     values = [record.locked.name, species_values(record.locked), dict(record.texts), rests_on, findings]
     return json.dumps(values, ensure_ascii=False, separators=(",", ":")).encode()

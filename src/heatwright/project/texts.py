@@ -45,13 +45,13 @@ def blocks_by_species(file: str, text: str) -> dict[str, str]:
     found: dict[str, str] = {}
     twice = set()
     for match in _BLOCKS[file].finditer(text):
-        name = _plain_name(match["name"])
+        name = _yaml_name(match["name"]) if file == YAML_NAME else match["name"]
         twice.update({name} & found.keys())
         found[name] = match.group()
     return {name: block for name, block in found.items() if name not in twice}
 
 
-def _plain_name(written: str) -> str:
+def _yaml_name(written: str) -> str:
     import json
 
     return str(json.loads(written)) if written.startswith('"') else written
