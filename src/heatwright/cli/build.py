@@ -150,6 +150,7 @@ class Words(Watch):
 
     def made(self, decision: Decision, record: Record) -> None:
         """The value of a finished entry, and what has to be looked at."""
+        self._bar.clear()
         f, units = record.locked.formation, self._units
         value = f"{f.dHf298_kJ_mol * units.factor:.2f} {units.enthalpy}, {f.route}"
         self._reporter.detail(f"{decision.name} made: dHf(298.15 K) = {value}")
@@ -158,6 +159,7 @@ class Words(Watch):
 
     def failed(self, decision: Decision, findings: Sequence[Finding]) -> None:
         """Why a species could not be made."""
+        self._bar.clear()
         self._reporter.fail(_first_file(decision), findings)
 
     def kept(self, decision: Decision) -> None:
@@ -187,8 +189,8 @@ class _Bar:
         """So many of so many are done."""
         if self._hidden:
             return
-        if not self._open:
-            self._began, self._open = time.monotonic(), True
+        if not done:
+            self._began = time.monotonic()
         seconds = max(time.monotonic() - self._began, 1e-3)
         filled = 24 * done // total
         name = os.path.relpath(path, self._root) if path else ""
@@ -197,11 +199,12 @@ class _Bar:
         width = get_terminal_size().columns - 1
         self._stream.write(f"\r{line[:width]:<{width}}")
         self._stream.flush()
+        self._open = True
         if done == total:
-            self.end()
+            self.clear()
 
-    def end(self) -> None:
-        """Clear the line."""
+    def clear(self) -> None:
+        """Take the bar away, for words to be written; the next file read draws it again."""
         if self._open:
             self._stream.write(f"\r{'':<{get_terminal_size().columns - 1}}\r")
             self._stream.flush()

@@ -8,11 +8,10 @@ from __future__ import annotations
 
 import hashlib
 import json
-from collections.abc import Iterator, Sequence
+from collections.abc import Mapping
 from contextlib import chdir
 from dataclasses import dataclass, replace
-from time import monotonic
-from typing import TYPE_CHECKING, Final
+from typing import Final
 
 from heatwright import __version__
 from heatwright.findings import Finding, Refused, refusals
@@ -22,30 +21,21 @@ from heatwright.project.library import Library
 from heatwright.project.lockfile import (
     LOCK_NAME,
     Lock,
-    LockedReference,
     document_text,
     lock_document,
     lock_of,
     lock_values,
 )
-from heatwright.project.making import Maker, broken, entries_of, tasks_of
 from heatwright.project.manifest_types import Manifest, ReferenceFolders
-from heatwright.project.plan import Decision, Plan, check_pressure, entry_key, make_plan
-from heatwright.project.record import Record, packed, records, unpacked
+from heatwright.project.pipeline import Pipeline
+from heatwright.project.plan import Plan, check_pressure, make_plan
+from heatwright.project.record import Record
 from heatwright.project.release import check_folder, locked, read_release, recover, switch
 from heatwright.project.shelf import Shelf
 from heatwright.project.store import Store
 from heatwright.project.texts import FILES, whole_texts, with_remark
 from heatwright.project.watch import Watch
 
-if TYPE_CHECKING:
-    from heatwright.entry import Entry, EntryRequest
-
-_BATCH: Final = 128
-"""Species made at a time: enough for the fit, few enough for the memory."""
-_WORTH_KEEPING_S: Final = 0.02
-"""Entries that took less than this each (torsions, conformers and sums over levels take more) are made again sooner
-than they would be kept."""
 _KEPT: Final = "kept from an earlier release"
 
 
@@ -96,14 +86,13 @@ class _Build:
         self._watch = watch
         self._library = library
         self._keep_previous = keep_previous
-        self._before: dict[str, bytes] = {}
+        names = (LOCK_NAME, *FILES)
+        self._before = read_release(manifest.mechanism.release.path, names)
         self._shelves: dict[ReferenceFolders, Shelf] = {}
-        self._failed: dict[str, tuple[Finding, ...]] = {}
 
     def plan(self) -> Plan:
         """The decisions for all species."""
         release = self._manifest.mechanism.release
-        self._before = read_release(release.path, (LOCK_NAME, *FILES))
         lock = None
         if LOCK_NAME in self._before:
             lock = self._lock(_text(self._before[LOCK_NAME]), f"{release.shown}/{LOCK_NAME}")
@@ -130,93 +119,30 @@ class _Build:
 
     def run(self) -> Outcome:
         """Plan, make, write."""
+        if not self._before:
+            self._library.engine.start()  # everything is new, so that there will be work
         plan = self.plan()
         self._watch.planned(plan)
         if plan.is_done:
             return Outcome(plan)
-        fresh = self._finished(plan.stale)
-        missing = [decision for decision in plan.stale if decision.name not in fresh]
-        self._library.read((task for decision in missing for task in tasks_of(decision.request)), self._watch.reading)
-        for record in self._made(missing):
-            fresh[record.locked.name] = record
+        pipeline = Pipeline(self._library, self._shelves, self._watch)
+        fresh = {record.locked.name: record for record in pipeline.records(plan.stale)}
         self._library.store.flush()
-        kept = self._kept(plan)
+        kept = self._kept(plan, pipeline.failed)
         written = self._write(plan, {**fresh, **kept})
-        return Outcome(plan, tuple(fresh), tuple(self._failed), tuple(kept), written)
+        return Outcome(plan, tuple(sorted(fresh)), tuple(sorted(pipeline.failed)), tuple(sorted(kept)), written)
 
-    # --- making ---------------------------------------------------------------------------------------------------
-
-    def _finished(self, decisions: Sequence[Decision]) -> dict[str, Record]:
-        """What an earlier build finished and did not come to release."""
-        keys = {self._result_key(decision): decision for decision in decisions}
-        found = {}
-        for key, data in self._library.store.get(keys).items():
-            record, decision = unpacked(data), keys[key]
-            if record is None:
-                self._library.store.drop(key)
-                continue
-            found[decision.name] = record
-            self._watch.made(decision, record)
-        return found
-
-    def _result_key(self, decision: Decision) -> str:
-        """Everything that an entry can depend on; more than it does, as its elements are not known beforehand."""
-        shelf = self._shelves[decision.request.formation.folders]
-        return f"result:{entry_key(decision, shelf.everything())}"
-
-    def _made(self, decisions: Sequence[Decision]) -> Iterator[Record]:
-        maker = Maker(self._library, self._shelves, self._watch.said)
-        for start in range(0, len(decisions), _BATCH):
-            batch, began = decisions[start : start + _BATCH], monotonic()
-            self._library.fetch(task for decision in batch for task in tasks_of(decision.request))
-            ready = [(decision, made) for decision in batch if (made := self._ingredients(maker, decision))]
-            entries = entries_of([request for _, request in ready])
-            good = []
-            for (decision, _), entry in zip(ready, entries, strict=True):
-                fault = entry if isinstance(entry, Refused) else _unfit(entry)
-                if isinstance(fault, Refused):
-                    self._fail(decision, fault)
-                elif not isinstance(entry, Refused):
-                    rests_on = self._rests_on(decision, entry.composition)
-                    good.append((decision, entry, entry_key(decision, rests_on), rests_on))
-            finished = records(good)
-            costly = monotonic() - began > _WORTH_KEEPING_S * len(batch)
-            for (decision, *_), record in zip(good, finished, strict=True):
-                if isinstance(record, Refused):
-                    self._fail(decision, record)
-                    continue
-                if costly:
-                    self._library.store.put({self._result_key(decision): packed(record)})
-                self._watch.made(decision, record)
-                yield record
-
-    def _ingredients(self, maker: Maker, decision: Decision) -> EntryRequest | None:
-        try:
-            return maker.ingredients(decision.request)
-        except Refused as error:
-            self._fail(decision, error)
-        except Exception as error:
-            self._fail(decision, broken(error))
-        return None
-
-    def _rests_on(self, decision: Decision, composition: dict[str, int]) -> tuple[LockedReference, ...]:
-        return self._shelves[decision.request.formation.folders].relevant(decision.request.formation, composition)
-
-    def _fail(self, decision: Decision, error: Refused) -> None:
-        self._failed[decision.name] = error.findings
-        self._watch.failed(decision, error.findings)
-
-    def _kept(self, plan: Plan) -> dict[str, Record]:
+    def _kept(self, plan: Plan, failed: Mapping[str, tuple[Finding, ...]]) -> dict[str, Record]:
         """The earlier entries of species that failed, each with a remark, where they are wanted and there."""
         found = {}
         for decision in plan.stale:
             old = plan.lock.species.get(decision.name) if plan.lock is not None else None
             block = plan.blocks.get(decision.name, {})
-            if not self._keep_previous or decision.name not in self._failed or old is None or set(block) != set(FILES):
+            if not self._keep_previous or decision.name not in failed or old is None or set(block) != set(FILES):
                 continue
             if plan.lock is None or plan.lock.standard_pressure_Pa != _pressure_Pa(self._manifest):
                 continue
-            why = refusals(self._failed[decision.name]) or self._failed[decision.name]
+            why = refusals(failed[decision.name]) or failed[decision.name]
             texts = {f: with_remark(f, block[f], f"{_KEPT}: {why[0].text}", _KEPT) for f in FILES}
             found[decision.name] = _with_texts(Record(replace(old, kept=why[0].code), texts))
             self._watch.kept(decision)
@@ -259,7 +185,8 @@ class _Build:
                 found.append(fresh[decision.name])
             elif not decision.reasons and plan.lock is not None:
                 old = plan.lock.species[decision.name]
-                rests_on = self._rests_on(decision, dict(old.composition))
+                shelf = self._shelves[decision.request.formation.folders]
+                rests_on = shelf.relevant(decision.request.formation, old.composition)
                 found.append(Record(old, plan.blocks[decision.name], rests_on))
         return found
 
@@ -283,14 +210,6 @@ def _pressure_Pa(manifest: Manifest) -> float:
 def _charged(record: Record) -> list[str]:
     """The element symbols of a species, with ``E`` for an ion."""
     return [*record.locked.composition, *(["E"] if record.locked.charge else [])]
-
-
-def _unfit(entry: Entry) -> Refused | None:
-    """Why an entry must not be written: its name, or a heat capacity that is not positive."""
-    from heatwright.writing.formats import FORMATS
-
-    faults = (*FORMATS["nasa7"].name_findings(entry.name), *refusals(entry.findings))
-    return Refused(faults) if faults else None
 
 
 def _with_texts(record: Record) -> Record:

@@ -8,7 +8,7 @@ from concurrent.futures import Future
 from typing import Any, TypeVar
 
 from heatwright.findings import Refused, refuse
-from heatwright.project.executors import ATTEMPTS, Engine, unfit
+from heatwright.project.executors import AHEAD, ATTEMPTS, Engine, unfit
 
 A = TypeVar("A")
 R = TypeVar("R")
@@ -27,7 +27,7 @@ class Distributed(Engine):
         self.words = f"by the scheduler at {address}"
         self._client = _client(address)
         try:
-            self.window = 3 * _checked_workers(self._client, address)
+            self.window = AHEAD * _checked_workers(self._client, address)
             # pure=False: else an earlier result for the same path would come back although the file has changed
             self._executor = self._client.get_executor(pure=False, retries=ATTEMPTS)
         except BaseException:

@@ -28,6 +28,8 @@ R = TypeVar("R")
 ATTEMPTS: Final = 2
 """How often the process at work on a task may die before the task goes alone, and is held responsible."""
 _PRELOADED: Final = ["heatwright.project.warm"]
+AHEAD: Final = 16
+"""Tasks under way for each worker, so that none waits while the driver makes a batch of entries."""
 _STALLED_S: Final = 30.0
 
 
@@ -39,6 +41,9 @@ class Engine:
 
     words = "in this process"
     window = 1
+
+    def start(self) -> None:
+        """There will be work; whoever has to be waited for may get ready."""
 
     def submit(self, work: Callable[[A], R], task: A) -> Future[R]:
         """The future of one task."""
@@ -68,7 +73,7 @@ class ExecutorEngine(Engine):
 
     def __init__(self, executor: Executor, workers: int, words: str) -> None:
         self._executor = executor
-        self.window = 3 * workers
+        self.window = AHEAD * workers
         self.words = words
 
     def submit(self, work: Callable[[A], R], task: A) -> Future[R]:
@@ -82,17 +87,22 @@ class LocalProcesses(Engine):
     """Processes of this machine, forked from one that has loaded the reader already; started when first needed."""
 
     def __init__(self, count: int) -> None:
-        self.window = 3 * count
+        self.window = AHEAD * count
         self.words = f"in {count} processes"
         self._count = count
         self._pool: ProcessPoolExecutor | None = None
 
+    def start(self) -> None:
+        if self._pool is None:
+            self._pool = _pool(self._count)
+            with _interrupts_blocked(), _same_modules():
+                for _ in range(self._count):
+                    self._pool.submit(os.getpid)  # each new task starts a process, as long as there are too few
+
     def submit(self, work: Callable[[A], R], task: A) -> Future[R]:
-        if self._pool is not None:
-            return self._pool.submit(work, task)
-        self._pool = _pool(self._count)
-        with _interrupts_blocked(), _same_modules():
-            return self._pool.submit(work, task)
+        self.start()
+        assert self._pool is not None
+        return self._pool.submit(work, task)
 
     def mend(self) -> bool:
         self.close()

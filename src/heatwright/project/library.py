@@ -7,7 +7,7 @@ import json
 import os
 import stat
 import time
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Iterable, Iterator
 from typing import TYPE_CHECKING, Any, Final
 
 from heatwright.findings import Finding, Refused, refuse
@@ -21,6 +21,7 @@ if TYPE_CHECKING:
     from heatwright.structure.inertia import Inertia
     from heatwright.structure.symmetry import Symmetry
 
+_WORTH_THREADS: Final = 16
 _SETTLED_NS: Final = 2_000_000_000
 """A file changed less than this before it was hashed could change again without its times telling."""
 
@@ -33,7 +34,7 @@ class Library:
 
     def __init__(self, store: Store, engine: Engine) -> None:
         self.store = store
-        self._engine = engine
+        self.engine = engine
         self._hashes: dict[str, str] = {}
         self._failed: dict[str, Finding] = {}
         self._at_hand: dict[str, bytes] = {}
@@ -45,15 +46,27 @@ class Library:
         fresh = [path for path in wanted if path not in self._hashes]
         known = self.store.get(f"hash:{path}" for path in fresh)
         learnt: dict[str, bytes] = {}
+        times = {path: _times(path) for path in fresh}
         for path in fresh:
-            before = _times(path)
-            kept = _kept_hash(known.get(f"hash:{path}"), before)
-            self._hashes[path] = kept or content_hash(path)
-            if not kept and before is not None and before == _times(path) and time.time_ns() - before[1] > _SETTLED_NS:
-                learnt[f"hash:{path}"] = json.dumps([*before, self._hashes[path]]).encode()
+            self._hashes[path] = _kept_hash(known.get(f"hash:{path}"), times[path])
+        unknown = [path for path in fresh if not self._hashes[path]]
+        for path, sha256 in zip(unknown, self._hashed(unknown), strict=True):
+            self._hashes[path] = sha256
+            before = times[path]
+            if before is not None and before == _times(path) and time.time_ns() - before[1] > _SETTLED_NS:
+                learnt[f"hash:{path}"] = json.dumps([*before, sha256]).encode()
         if learnt:
             self.store.put(learnt)
         return {path: self._hashes[path] for path in wanted}
+
+    def _hashed(self, paths: list[str]) -> Iterable[str]:
+        """The hashes of files, by several threads where several cores were asked for (hashing lets go of the lock)."""
+        if self.engine.window == 1 or len(paths) < _WORTH_THREADS:
+            return map(content_hash, paths)
+        from concurrent.futures import ThreadPoolExecutor
+
+        with ThreadPoolExecutor(min(4, os.cpu_count() or 1)) as threads:
+            return list(threads.map(content_hash, paths))
 
     def sha256(self, path: str) -> str:
         """SHA-256 of one file."""
@@ -70,15 +83,25 @@ class Library:
 
     def read(self, tasks: Iterable[ReadTask], progress: Progress) -> None:
         """Have everything in the store that the tasks give and that is not there yet."""
+        for _ in self.reading(tasks, progress):
+            pass
+
+    def reading(self, tasks: Iterable[ReadTask], progress: Progress) -> Iterator[str]:
+        """The key of each task as soon as what it gives is in the store (or is known to have failed), once each.
+
+        Tasks for files that cannot be read at all are left out.
+        """
         wanted = {self.key(task): task for task in tasks if self.sha256(task.path)}
         known = self.store.has(wanted)
         missing = [task for key, task in wanted.items() if key not in known]
-        if not missing:
-            return
-        progress(0, len(missing), "")
-        for count, (task, result) in enumerate(run(self._engine, do_task, missing), start=1):
+        if missing:
+            self.engine.start()
+            progress(0, len(missing), "")
+        yield from known
+        for count, (task, result) in enumerate(run(self.engine, do_task, missing), start=1):
             self._take(task, result)
             progress(count, len(missing), task.path)
+            yield self.key(task)
         self.store.flush()
 
     def _take(self, task: ReadTask, result: ReadResult | Lost) -> None:

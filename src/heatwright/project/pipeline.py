@@ -1,0 +1,133 @@
+"""From stale species to finished records: outputs are read and entries made side by side, failures are values."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping, Sequence
+from time import monotonic
+from typing import TYPE_CHECKING, Final
+
+from heatwright.findings import Finding, Refused, refusals
+from heatwright.project.library import Library
+from heatwright.project.lockfile import LockedReference
+from heatwright.project.making import Maker, broken, entries_of, tasks_of
+from heatwright.project.manifest_types import ReferenceFolders
+from heatwright.project.plan import Decision, entry_key
+from heatwright.project.record import Record, packed, records, unpacked
+from heatwright.project.shelf import Shelf
+from heatwright.project.watch import Watch
+
+if TYPE_CHECKING:
+    from heatwright.entry import Entry, EntryRequest
+    from heatwright.project.tasks import ReadTask
+
+_BATCH: Final = 128
+"""Species made at a time: enough for the fit, few enough for the memory."""
+_WORTH_KEEPING_S: Final = 0.02
+"""Entries that took less than this each (torsions, conformers and sums over levels take more) are made again sooner
+than they would be kept."""
+
+
+class Pipeline:
+    """Makes the records of species; ``failed`` says of which it could not and why."""
+
+    def __init__(self, library: Library, shelves: Mapping[ReferenceFolders, Shelf], watch: Watch) -> None:
+        self.failed: dict[str, tuple[Finding, ...]] = {}
+        self._library = library
+        self._shelves = shelves
+        self._watch = watch
+        self._maker = Maker(library, shelves, watch.said)
+
+    def records(self, decisions: Sequence[Decision]) -> Iterator[Record]:
+        """A record for each species that can be made, in the order in which they are finished."""
+        finished = self._finished(decisions)
+        yield from finished.values()
+        tasks = {d.name: tuple(tasks_of(d.request)) for d in decisions if d.name not in finished}
+        for ready in self._ready([d for d in decisions if d.name in tasks], tasks):
+            yield from self._made(ready, tasks)
+
+    def _ready(
+        self, decisions: Sequence[Decision], tasks: Mapping[str, tuple[ReadTask, ...]]
+    ) -> Iterator[list[Decision]]:
+        """The species in batches, each as soon as everything that they need is read."""
+        waiting: dict[str, list[Decision]] = {}
+        missing: dict[str, int] = {}
+        for decision in decisions:
+            keys = {self._library.key(task) for task in tasks[decision.name] if self._library.sha256(task.path)}
+            missing[decision.name] = len(keys)
+            for key in keys:
+                waiting.setdefault(key, []).append(decision)
+        ready = [decision for decision in decisions if not missing[decision.name]]
+        for key in self._library.reading((t for d in decisions for t in tasks[d.name]), self._watch.reading):
+            for decision in waiting[key]:
+                missing[decision.name] -= 1
+                if not missing[decision.name]:
+                    ready.append(decision)
+            if len(ready) >= _BATCH:
+                yield ready
+                ready = []
+        yield ready
+
+    def _finished(self, decisions: Sequence[Decision]) -> dict[str, Record]:
+        """What an earlier build finished and did not come to release."""
+        keys = {self._result_key(decision): decision for decision in decisions}
+        found = {}
+        for key, data in self._library.store.get(keys).items():
+            record, decision = unpacked(data), keys[key]
+            if record is None:
+                self._library.store.drop(key)
+                continue
+            found[decision.name] = record
+            self._watch.made(decision, record)
+        return found
+
+    def _result_key(self, decision: Decision) -> str:
+        """Everything that an entry can depend on; more than it does, as its elements are not known beforehand."""
+        shelf = self._shelves[decision.request.formation.folders]
+        return f"result:{entry_key(decision, shelf.everything())}"
+
+    def _made(self, batch: Sequence[Decision], tasks: Mapping[str, tuple[ReadTask, ...]]) -> Iterator[Record]:
+        began = monotonic()
+        self._library.fetch(task for decision in batch for task in tasks[decision.name])
+        ready = [(decision, made) for decision in batch if (made := self._ingredients(decision))]
+        entries = entries_of([request for _, request in ready])
+        good: list[tuple[Decision, Entry, str, tuple[LockedReference, ...]]] = []
+        for (decision, _), entry in zip(ready, entries, strict=True):
+            if isinstance(entry, Refused):
+                self._fail(decision, entry)
+            elif (unfit := _unfit(entry)) is not None:
+                self._fail(decision, unfit)
+            else:
+                shelf = self._shelves[decision.request.formation.folders]
+                rests_on = shelf.relevant(decision.request.formation, entry.composition)
+                good.append((decision, entry, entry_key(decision, rests_on), rests_on))
+        finished = records(good)
+        costly = monotonic() - began > _WORTH_KEEPING_S * len(batch)
+        for (decision, *_), record in zip(good, finished, strict=True):
+            if isinstance(record, Refused):
+                self._fail(decision, record)
+                continue
+            if costly:
+                self._library.store.put({self._result_key(decision): packed(record)})
+            self._watch.made(decision, record)
+            yield record
+
+    def _ingredients(self, decision: Decision) -> EntryRequest | None:
+        try:
+            return self._maker.ingredients(decision.request)
+        except Refused as error:
+            self._fail(decision, error)
+        except Exception as error:
+            self._fail(decision, broken(error))
+        return None
+
+    def _fail(self, decision: Decision, error: Refused) -> None:
+        self.failed[decision.name] = error.findings
+        self._watch.failed(decision, error.findings)
+
+
+def _unfit(entry: Entry) -> Refused | None:
+    """Why an entry must not be written: its name, or a heat capacity that is not positive."""
+    from heatwright.writing.formats import FORMATS
+
+    faults = (*FORMATS["nasa7"].name_findings(entry.name), *refusals(entry.findings))
+    return Refused(faults) if faults else None
