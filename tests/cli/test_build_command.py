@@ -30,7 +30,7 @@ def test_the_bar_is_for_terminals_and_names_the_file(
     drawn = screen.getvalue()
     assert "\rreading [" in drawn
     assert "/s H2O.out" in drawn
-    assert "2/2" in drawn
+    assert "6/6" in drawn  # two outputs and four atoms
     assert "2 made; release written to release." in drawn.splitlines()[-1]
 
 

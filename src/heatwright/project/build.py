@@ -98,8 +98,10 @@ class _Build:
             lock = self._lock(_text(self._before[LOCK_NAME]), f"{release.shown}/{LOCK_NAME}")
         known = {r.path: r for r in lock.references} if lock is not None else {}
         for folders in dict.fromkeys(request.formation.folders for request in self._manifest.species):
-            self._shelves[folders] = shelf = Shelf(folders, self._library, known)
-            shelf.label_all(self._watch.reading)
+            self._shelves[folders] = Shelf(folders, self._library, known)
+        if lock is not None:  # what a species rests on can be a reason
+            for shelf in self._shelves.values():
+                shelf.label_all(self._watch.reading)
         texts = {file: _text(self._before[file]) for file in FILES if file in self._before}
         return make_plan(self._manifest, self._library, self._shelves, lock, texts)
 

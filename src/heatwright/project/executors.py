@@ -15,6 +15,7 @@ from collections.abc import Callable, Iterable, Iterator
 from contextlib import contextmanager
 from dataclasses import dataclass
 from queue import Empty, SimpleQueue
+from threading import Thread
 from typing import TYPE_CHECKING, Final, Generic, TypeVar
 
 from heatwright.findings import Refused, refuse
@@ -90,18 +91,27 @@ class LocalProcesses(Engine):
         self.window = AHEAD * count
         self.words = f"in {count} processes"
         self._count = count
+        self._starting: Thread | None = None
         self._pool: ProcessPoolExecutor | None = None
 
     def start(self) -> None:
-        if self._pool is None:
-            self._pool = _pool(self._count)
-            with _interrupts_blocked(), _same_modules():
-                for _ in range(self._count):
-                    self._pool.submit(os.getpid)  # each new task starts a process, as long as there are too few
+        if self._starting is None:  # beside the driver, as the first process has the reader to import
+            self._starting = Thread(target=self._begin)
+            self._starting.start()
+
+    def _begin(self) -> None:
+        pool = _pool(self._count)
+        with _interrupts_blocked(), _same_modules():
+            for _ in range(self._count):
+                pool.submit(os.getpid)  # each new task starts a process, as long as there are too few
+        self._pool = pool
 
     def submit(self, work: Callable[[A], R], task: A) -> Future[R]:
         self.start()
-        assert self._pool is not None
+        assert self._starting is not None
+        self._starting.join()
+        if self._pool is None:
+            raise RuntimeError("no process could be started")
         return self._pool.submit(work, task)
 
     def mend(self) -> bool:
@@ -109,6 +119,9 @@ class LocalProcesses(Engine):
         return True
 
     def close(self) -> None:
+        if self._starting is not None:
+            self._starting.join()
+        self._starting = None
         if self._pool is None:
             return
         workers = list((getattr(self._pool, "_processes", None) or {}).values())
@@ -133,7 +146,6 @@ def _end_with_the_driver() -> None:
     """In a worker: watch the driver, and end when it does, however that comes about."""
     from multiprocessing import parent_process
     from multiprocessing.connection import wait
-    from threading import Thread
 
     driver = parent_process()
     assert driver is not None  # this is a worker

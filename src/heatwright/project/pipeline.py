@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping, Sequence
+from itertools import chain
 from time import monotonic
 from typing import TYPE_CHECKING, Final
 
@@ -39,33 +40,51 @@ class Pipeline:
 
     def records(self, decisions: Sequence[Decision]) -> Iterator[Record]:
         """A record for each species that can be made, in the order in which they are finished."""
-        finished = self._finished(decisions)
-        yield from finished.values()
-        tasks = {d.name: tuple(tasks_of(d.request)) for d in decisions if d.name not in finished}
-        for ready in self._ready([d for d in decisions if d.name in tasks], tasks):
-            yield from self._made(ready, tasks)
+        tasks = {decision.name: tuple(tasks_of(decision.request)) for decision in decisions}
+        finished: dict[str, Record] | None = None
+        for ready in self._ready(decisions, tasks):
+            if finished is None:
+                finished = self._finished(decisions)
+                yield from finished.values()
+            yield from self._made([decision for decision in ready if decision.name not in finished], tasks)
 
     def _ready(
         self, decisions: Sequence[Decision], tasks: Mapping[str, tuple[ReadTask, ...]]
     ) -> Iterator[list[Decision]]:
-        """The species in batches, each as soon as everything that they need is read."""
+        """The species in batches, each as soon as everything that they need is read; references come first."""
+        first = [task for shelf in self._shelves.values() for task in shelf.unlabelled()]
+        of_references = self._keys(first)
         waiting: dict[str, list[Decision]] = {}
         missing: dict[str, int] = {}
         for decision in decisions:
-            keys = {self._library.key(task) for task in tasks[decision.name] if self._library.sha256(task.path)}
+            keys = self._keys(tasks[decision.name])
             missing[decision.name] = len(keys)
             for key in keys:
                 waiting.setdefault(key, []).append(decision)
         ready = [decision for decision in decisions if not missing[decision.name]]
-        for key in self._library.reading((t for d in decisions for t in tasks[d.name]), self._watch.reading):
-            for decision in waiting[key]:
+        every = chain(first, (task for decision in decisions for task in tasks[decision.name]))
+        labelled = False
+        for key in self._library.reading(every, self._watch.reading):
+            of_references.discard(key)
+            for decision in waiting.get(key, ()):
                 missing[decision.name] -= 1
                 if not missing[decision.name]:
                     ready.append(decision)
-            if len(ready) >= _BATCH:
+            if len(ready) >= _BATCH and not of_references:
+                labelled = labelled or self._label()
                 yield ready
                 ready = []
+        labelled = labelled or self._label()
         yield ready
+
+    def _keys(self, tasks: Sequence[ReadTask]) -> set[str]:
+        """Of those whose files can be read."""
+        return {self._library.key(task) for task in tasks if self._library.sha256(task.path)}
+
+    def _label(self) -> bool:
+        for shelf in self._shelves.values():
+            shelf.label_read()
+        return True
 
     def _finished(self, decisions: Sequence[Decision]) -> dict[str, Record]:
         """What an earlier build finished and did not come to release."""

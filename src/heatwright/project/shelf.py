@@ -56,6 +56,7 @@ class Shelf:
         self._library = library
         self._known = known
         self._labels: dict[str, str] = {}
+        self._unknown: dict[ProjectPath, str] = {}
         self._molecules: dict[str, Molecule | None] = {}
         self._sets: dict[object, ReferenceSet] = {}
         self._said: set[Finding] = set()
@@ -72,13 +73,13 @@ class Shelf:
             self._files[folder] = _files_in(folder)
         return self._files[folder]
 
-    def label_all(self, progress: Progress) -> None:
-        """Find out what each file is: from the store, from the last release, and only then by reading it."""
+    def unlabelled(self) -> tuple[ReadTask, ...]:
+        """What has to be read before it is known what each file is: what neither store nor last release know."""
         files = [*self.files(self.folders.atoms), *self.files(self.folders.references)]
         hashes = self._library.hashes(file.path for file in files)
         keys = {file: f"label:{self._library.key(ReadTask(path=file.path))}" for file in files}
         kept = self._library.store.get(keys.values())
-        unknown = []
+        self._unknown = {}
         for file, key in keys.items():
             locked = self._known.get(file.shown)
             if key in kept:
@@ -86,11 +87,20 @@ class Shelf:
             elif locked is not None and locked.sha256 == hashes[file.path]:
                 self._labels[file.path] = locked.species
             else:
-                unknown.append(file)
-        self._library.read((ReadTask(path=file.path) for file in unknown), progress)
-        for file in unknown:
+                self._unknown[file] = key
+        return tuple(ReadTask(path=file.path) for file in self._unknown)
+
+    def label_all(self, progress: Progress) -> None:
+        """Find out what each file is, reading what has to be read."""
+        self._library.read(self.unlabelled(), progress)
+        self.label_read()
+
+    def label_read(self) -> None:
+        """Find out what each file is, once those that are :meth:`unlabelled` have been read."""
+        for file, key in self._unknown.items():
             self._labels[file.path] = label = self._label(file)
-            self._library.store.put({keys[file]: label.encode()})
+            self._library.store.put({key: label.encode()})
+        self._unknown = {}
 
     def _label(self, file: ProjectPath) -> str:
         from heatwright.elements import symbol
