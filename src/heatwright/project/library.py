@@ -97,7 +97,7 @@ class Library:
         if missing:
             self.engine.start()
             progress(0, len(missing), "")
-        yield from known
+        yield from (key for key in wanted if key in known)
         for count, (task, result) in enumerate(run(self.engine, do_task, missing), start=1):
             self._take(task, result)
             progress(count, len(missing), task.path)
