@@ -229,12 +229,12 @@ def residual_strips(species: Species) -> Figure | None:
 
 
 def _residual_rows(r: Residuals) -> tuple[tuple[str, ...], ...]:
-    """Every fourth temperature, and those of the largest residuals."""
+    """Every eighth temperature, and those of the largest residuals: rows are what a long page costs."""
     largest = {_where(r, values) for values in (r.dcp_R, r.dh_RT, r.ds_R)}
     return tuple(
         (f"{T:g}", *(f"{1000.0 * v:z.2f}".replace("-", "−") for v in row))
         for i, (T, *row) in enumerate(zip(r.T_K, r.dcp_R, r.dh_RT, r.ds_R, strict=True))
-        if i % 4 == 0 or T in largest or i == len(r.T_K) - 1
+        if i % 8 == 0 or T in largest or i == len(r.T_K) - 1
     )
 
 
