@@ -7,6 +7,8 @@ import signal
 import time
 from pathlib import Path
 
+from heatwright.project.tasks import ReadResult, ReadTask, do_tasks
+
 
 def double(n: int) -> int:
     """Ordinary work."""
@@ -39,3 +41,10 @@ def own_number(_: int) -> int:
     """The number of the process at work."""
     time.sleep(0.05)
     return os.getpid()
+
+
+def reads_but_dies_of_one(tasks: tuple[ReadTask, ...]) -> tuple[ReadResult, ...]:
+    """Ordinary reading, but for one file."""
+    if any(task.path.endswith("M050.toml") for task in tasks):
+        os.kill(os.getpid(), signal.SIGKILL)
+    return do_tasks(tasks)

@@ -12,8 +12,8 @@ import pytest
 
 import worker_tasks
 from heatwright.findings import Refused
-from heatwright.project.executors import Engine, ExecutorEngine, LocalProcesses, Lost, engine_for, run
-from projects import built, project, release
+from heatwright.project.executors import Engine, ExecutorEngine, LocalProcesses, Lost, engine_for, portions, run
+from projects import add_by_hand, built, project, release
 
 
 @pytest.fixture
@@ -91,3 +91,25 @@ def test_a_scheduler_that_is_not_there_is_a_sentence() -> None:
     with pytest.raises(Refused) as error:
         engine_for(1, "tcp://127.0.0.1:9")
     assert [f.code for f in error.value.findings] == ["scheduler-unfit"]
+
+
+def test_a_file_that_kills_its_readers_is_named_and_the_others_are_made(
+    tmp_path: Path, two: LocalProcesses, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    folder = project(tmp_path)
+    add_by_hand(folder, 100)
+    monkeypatch.setattr("heatwright.project.library.do_tasks", worker_tasks.reads_but_dies_of_one)
+    outcome, told = built(folder, engine=two)
+    assert outcome.failed == ("M050",)
+    assert len(outcome.made) == 99
+    assert [f.code for f in told.failures["M050"]] == ["worker-lost"]
+    monkeypatch.undo()
+    assert built(folder)[0].made == ("M050",)
+
+
+def test_portions_hold_each_task_once() -> None:
+    for count in (0, 1, 7, 100, 1001):
+        for workers in (1, 2, 3, 50, 5000):
+            cut = portions(range(count), workers)
+            assert [task for portion in cut for task in portion] == list(range(count))
+            assert len(cut) <= max(count, 1)

@@ -27,7 +27,8 @@ class Distributed(Engine):
         self.words = f"by the scheduler at {address}"
         self._client = _client(address)
         try:
-            self.window = AHEAD * _checked_workers(self._client, address)
+            self.workers = _checked_workers(self._client, address)
+            self.window = AHEAD * self.workers
             # pure=False: else an earlier result for the same path would come back although the file has changed
             self._executor = self._client.get_executor(pure=False, retries=ATTEMPTS)
         except BaseException:

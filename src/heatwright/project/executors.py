@@ -11,7 +11,7 @@ import os
 import signal
 import sys
 from collections import deque
-from collections.abc import Callable, Iterable, Iterator
+from collections.abc import Callable, Iterable, Iterator, Sequence
 from contextlib import contextmanager
 from dataclasses import dataclass
 from queue import Empty, SimpleQueue
@@ -29,7 +29,7 @@ R = TypeVar("R")
 ATTEMPTS: Final = 2
 """How often the process at work on a task may die before the task goes alone, and is held responsible."""
 _PRELOADED: Final = ["heatwright.project.warm"]
-AHEAD: Final = 16
+AHEAD: Final = 6
 """Tasks under way for each worker, so that none waits while the driver makes a batch of entries."""
 _STALLED_S: Final = 30.0
 
@@ -37,10 +37,11 @@ _STALLED_S: Final = 30.0
 class Engine:
     """Work in this process, one task after the other; the engines that are elsewhere derive from it.
 
-    words : what it is, for people.   window : tasks under way at a time.
+    words : what it is, for people.   workers : how many there are.   window : tasks under way at a time.
     """
 
     words = "in this process"
+    workers = 1
     window = 1
 
     def start(self) -> None:
@@ -74,6 +75,7 @@ class ExecutorEngine(Engine):
 
     def __init__(self, executor: Executor, workers: int, words: str) -> None:
         self._executor = executor
+        self.workers = workers
         self.window = AHEAD * workers
         self.words = words
 
@@ -88,6 +90,7 @@ class LocalProcesses(Engine):
     """Processes of this machine, forked from one that has loaded the reader already; started when first needed."""
 
     def __init__(self, count: int) -> None:
+        self.workers = count
         self.window = AHEAD * count
         self.words = f"in {count} processes"
         self._count = count
@@ -184,6 +187,19 @@ def _same_modules() -> Iterator[None]:
 def unfit(where: str, found: str, action: str) -> Refused:
     """That an engine cannot be used."""
     return Refused([refuse("scheduler-unfit", found, where=where, action=action)])
+
+
+def portions(tasks: Sequence[A], workers: int) -> list[tuple[A, ...]]:
+    """The tasks in portions: a few for each of many workers, as whoever hands them out takes 1 or 2 ms for each.
+
+    >>> [len(portion) for portion in portions(range(10), 1)], len(portions(range(100_000), 2000))
+    ([1, 1, 1, 1, 1, 1, 1, 1, 1, 1], 4000)
+    """
+    if workers == 1:
+        return [(task,) for task in tasks]
+    each = max(2, min(32, 256 // workers))
+    size = max(1, len(tasks) // (workers * each))
+    return [tuple(tasks[start : start + size]) for start in range(0, len(tasks), size)]
 
 
 @dataclass(frozen=True, slots=True)

@@ -11,9 +11,18 @@ from collections.abc import Callable, Iterable, Iterator
 from typing import TYPE_CHECKING, Any, Final
 
 from heatwright.findings import Finding, Refused, refuse
-from heatwright.project.executors import Engine, Lost, run
+from heatwright.project.executors import Engine, Lost, portions, run
 from heatwright.project.store import Store
-from heatwright.project.tasks import ReadResult, ReadTask, body_of, body_values, content_hash, do_task, read_key
+from heatwright.project.tasks import (
+    ReadResult,
+    ReadTask,
+    body_of,
+    body_values,
+    content_hash,
+    do_task,
+    do_tasks,
+    read_key,
+)
 
 if TYPE_CHECKING:
     from heatwright.molecule import FloatArray, Molecule
@@ -98,11 +107,24 @@ class Library:
             self.engine.start()
             progress(0, len(missing), "")
         yield from (key for key in wanted if key in known)
-        for count, (task, result) in enumerate(run(self.engine, do_task, missing), start=1):
+        for count, (task, result) in enumerate(self._results(missing), start=1):
             self._take(task, result)
             progress(count, len(missing), task.path)
             yield self.key(task)
         self.store.flush()
+
+    def _results(self, tasks: list[ReadTask]) -> Iterator[tuple[ReadTask, ReadResult | Lost]]:
+        """What workers give for each task; what was lost with others is tried again by itself."""
+        again: list[ReadTask] = []
+        for portion, results in run(self.engine, do_tasks, portions(tasks, self.engine.workers)):
+            if not isinstance(results, Lost):
+                yield from zip(portion, results, strict=True)
+            elif len(portion) == 1:
+                yield portion[0], results
+            else:
+                again += portion
+        for (task,), single in run(self.engine, do_tasks, [(task,) for task in again]):
+            yield task, single if isinstance(single, Lost) else single[0]
 
     def _take(self, task: ReadTask, result: ReadResult | Lost) -> None:
         key = self.key(task)

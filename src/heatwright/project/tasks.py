@@ -75,6 +75,11 @@ def do_task(task: ReadTask) -> ReadResult:
         return ReadResult(content_hash(task.path), broken=f"{type(error).__name__}: {error}")
 
 
+def do_tasks(tasks: tuple[ReadTask, ...]) -> tuple[ReadResult, ...]:
+    """Read what each task names; never raises."""
+    return tuple(map(do_task, tasks))
+
+
 def _output(task: ReadTask) -> ReadResult:
     from heatwright.reading.outputs import read_output
 
