@@ -23,6 +23,12 @@ from scipy.spatial import ConvexHull
 import cclib.bridge
 assert cclib.bridge.__spec__ is not None
 assert cclib.io.ccread(sys.argv[1]).vibfreqs.size == 6
+import importlib.util
+if importlib.util.find_spec("pandas"):
+    assert "pandas" not in sys.modules
+    assert cclib.io.ccframe([cclib.io.ccread(sys.argv[1])]).shape[0] == 1
+    import pandas
+    assert pandas.DataFrame.__module__.startswith("pandas") and pandas.__spec__ is not None
 """
 
 

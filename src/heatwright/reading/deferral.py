@@ -17,7 +17,7 @@ from pathlib import Path
 from types import ModuleType
 from typing import Any
 
-NOT_NEEDED = ("scipy.spatial", "cclib.bridge")
+NOT_NEEDED = ("scipy.spatial", "cclib.bridge", "pandas")
 
 
 @contextmanager
@@ -39,6 +39,8 @@ def _stand_in(name: str) -> ModuleType | None:
     if found is None or not found.submodule_search_locations:
         return None
     module = ModuleType(name)
+    if not rest:
+        module.__spec__ = found  # cclib asks whether it is installed
     module.__path__ = [str(Path(found.submodule_search_locations[0]).joinpath(*rest))]
 
     def real(attribute: str) -> Any:
