@@ -101,6 +101,20 @@ def telling_rows(T: Sequence[float]) -> list[int]:
     return [i for i, t in enumerate(T) if i in (0, last) or any(abs(t - usual) < 0.005 for usual in TELLING_K)]
 
 
+FEW_K = (298.15, 1000.0)
+"""Temperatures that stay where even a short table is too long."""
+
+
+def fewest_rows(T: Sequence[float]) -> tuple[int, ...]:
+    """Places of :data:`FEW_K` and of both ends.
+
+    >>> fewest_rows([200.0, 298.15, 500.0, 1000.0, 2000.0])
+    (0, 1, 3, 4)
+    """
+    last = len(T) - 1
+    return tuple(i for i, t in enumerate(T) if i in (0, last) or any(abs(t - few) < 0.005 for few in FEW_K))
+
+
 def padded(low: float, high: float, share: float = 0.08, least: float = 1e-9) -> tuple[float, float]:
     """An interval with room at both ends; at least *least* wide."""
     room = max(share * (high - low), (least - (high - low)) / 2.0, 0.0)

@@ -60,6 +60,7 @@ LOOKS: Final[dict[str, Look]] = {
     "band": Look(fill="steel", opacity=0.13),
     "ring": Look(stroke="steel", width=6.4),
     "hole": Look(stroke="ground", width=3.6),
+    "point": Look(stroke="steel", width=4.6),
     "dot": Look(stroke="ember", width=7.5),
     "bar": Look(stroke="ink", width=1.6),
     "level": Look(stroke="steel", width=1.0),
@@ -116,11 +117,12 @@ def figure_css() -> str:
             f"{_element(role, look)}.{role}{{{_css(look, 'round' if is_round(role) else '')}}}"
             for role, look in LOOKS.items()
         ),
+        *(f".long path.area{i}{{{_css(LOOKS[f'edge{i}'], '').removesuffix(';fill:none')}}}" for i in range(len(SERIES))),
     ]
     return "\n".join(rules)
 
 
-_ROUND: Final = ("ring", "hole", "dot", "bond", "bonds", "turn")
+_ROUND: Final = ("ring", "hole", "point", "dot", "bond", "bonds", "turn")
 """Strokes with round ends: dots are strokes without length."""
 
 

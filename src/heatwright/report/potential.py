@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from itertools import pairwise
 from typing import Final
 
 import numpy as np
@@ -16,7 +15,7 @@ from heatwright.report.species import Species, Torsion
 
 _RIGHT: Final = 404.0
 _MOST_LEVELS: Final = 60
-_POINTS: Final = 181
+_POINTS: Final = 121
 
 
 def torsional_potential(species: Species, index: int) -> Figure:
@@ -33,7 +32,7 @@ def torsional_potential(species: Species, index: int) -> Figure:
     well = curve(x, y, phi.tolist(), V.tolist())
     ground = t.ground_cm1
     levels = [ground + e for e in t.levels_cm1 if ground + e < top][:_MOST_LEVELS]
-    marks = [*plot.marks, *_marks(t, plot, well, levels, kT, lowest, V)]
+    marks = [*plot.marks, *_marks(t, plot, well, levels, kT, lowest)]
     name = "-".join(str(a) for a in t.atoms)
     return Figure(
         key=f"torsion-{index + 1}",
@@ -49,6 +48,7 @@ def torsional_potential(species: Species, index: int) -> Figure:
         drawing=Drawing(WIDTH, 274.0, tuple(marks)),
         columns=("angle / °", "V / cm⁻¹", "level", "energy / cm⁻¹"),
         rows=_rows(phi, V, levels),
+        telling=tuple(range(0, 25, 4)),
     )
 
 
@@ -69,16 +69,16 @@ def _rows(phi: np.ndarray, V: np.ndarray, levels: list[float]) -> tuple[tuple[st
 
 
 def _marks(
-    t: Torsion, plot: Frame, curve: list[Point], levels: list[float], kT: float, lowest: float, V: np.ndarray
+    t: Torsion, plot: Frame, curve: list[Point], levels: list[float], kT: float, lowest: float
 ) -> list[Mark]:
     x, y, (left, top, right, bottom) = plot.x, plot.y, plot.box
-    marks: list[Mark] = [segments([s for e in levels for s in _inside(e, curve, y)], "level")] if levels else []
+    points = np.array(curve)
+    between = [s for e in levels for s in _inside(e, points, y)]
+    marks: list[Mark] = [segments(_apart(between), "level")] if levels else []
     marks += [segments([((left, y(kT)), (right, y(kT)))], "hair"), line(curve, "polynomial")]
     room = Room((left + 2.0, top - 14.0, right, bottom - 2.0))
     room.curve(curve)
-    for e in levels:
-        for a, b in _inside(e, curve, y):
-            room.curve([a, b])
+    room.boxes += [(a, height, b, height) for (a, height), (b, _) in between]
     if t.scan_deg:
         turned = [((a + 180.0) % 360.0 - 180.0, v - lowest) for a, v in zip(t.scan_deg, t.scan_cm1, strict=True)]
         dots = tuple((x(a), y(v)) for a, v in turned if v <= y.high)
@@ -94,19 +94,18 @@ def _marks(
     return [*marks, *([words] if words else [])]
 
 
-def _inside(energy: float, curve: list[Point], y: Scale) -> list[tuple[Point, Point]]:
-    """Where a level is above the potential: between its turning points."""
+def _apart(lines: list[tuple[Point, Point]]) -> list[tuple[Point, Point]]:
+    """The same without those that would be drawn over one of them: levels split by less than the eye sees."""
+    seen = {tuple(round(10.0 * v) for point in pair for v in point): pair for pair in lines}
+    return list(seen.values())
+
+
+def _inside(energy: float, curve: np.ndarray, y: Scale) -> list[tuple[Point, Point]]:
+    """Where a level is above the potential, whose points are rows of *curve*: between its turning points."""
     height = y(energy)
-    found: list[tuple[Point, Point]] = []
-    start: float | None = curve[0][0] if curve[0][1] >= height else None
-    for (x0, y0), (x1, y1) in pairwise(curve):
-        if (y0 >= height) != (y1 >= height):
-            cross = x0 + (x1 - x0) * (height - y0) / (y1 - y0)
-            if start is None:
-                start = cross
-            else:
-                found.append(((start, height), (cross, height)))
-                start = None
-    if start is not None:
-        found.append(((start, height), (curve[-1][0], height)))
-    return found
+    above = curve[:, 1] >= height
+    at = np.flatnonzero(above[1:] != above[:-1])
+    (x0, y0), (x1, y1) = curve[at].T, curve[at + 1].T
+    ends = (x0 + (x1 - x0) * (height - y0) / (y1 - y0)).tolist()
+    ends = [*([float(curve[0, 0])] if above[0] else []), *ends, *([float(curve[-1, 0])] if above[-1] else [])]
+    return [((a, height), (b, height)) for a, b in zip(ends[::2], ends[1::2], strict=True)]

@@ -10,7 +10,7 @@ from heatwright.polynomial.nasa7 import Nasa7, slope_of
 from heatwright.polynomial.quality import jumps_at_common
 from heatwright.report.curves import WIDTH, polynomial_temperatures, temperature_scale
 from heatwright.report.drawing import Drawing, Figure, Mark, Path, segments
-from heatwright.report.layout import Scale, curve, frame, nice_ticks, padded, temperature_ticks
+from heatwright.report.layout import Scale, curve, fewest_rows, frame, nice_ticks, padded, temperature_ticks
 from heatwright.report.species import Species
 
 _SAMPLES: Final = 60
@@ -34,6 +34,7 @@ def slope(species: Species) -> Figure | None:
         segments([((join, y.start), (join, y.end))], "hair"),
         Path(tuple(tuple(curve(x, y, T, half)) for T, half in halves), "polynomial"),
     ]
+    temperatures = polynomial_temperatures(p)
     jumps, T = jumps_at_common(p), p.t_common_K
     return Figure(
         key="slope",
@@ -45,7 +46,8 @@ def slope(species: Species) -> Figure | None:
         source=species.source,
         drawing=Drawing(WIDTH, 274.0, tuple(marks)),
         columns=("T / K", "T d(Cp°/R)/dT"),
-        rows=tuple((f"{t:g}", f"{t * p.dcp_R(t):z.4f}".replace("-", "−")) for t in polynomial_temperatures(p)),
+        rows=tuple((f"{t:g}", f"{t * p.dcp_R(t):z.4f}".replace("-", "−")) for t in temperatures),
+        telling=fewest_rows(temperatures),
     )
 
 

@@ -9,20 +9,21 @@ from math import inf
 from typing import Final
 
 from heatwright.report.drawing import Ball, Dots, Figure, Mark, Path, Point, Words
-from heatwright.report.palette import figure_css, variables
+from heatwright.report.palette import LOOKS, figure_css, variables
 
 _ANCHOR: Final = {"start": "", "middle": " m", "end": " e"}
 NEAR: Final = 0.2
 """How far a point may lie from the line that leaves it out, in canvas units."""
 
 
-def inline_svg(figure: Figure, prefix: str, group: str = "") -> str:
+def inline_svg(figure: Figure, prefix: str, group: str = "", *, brief: bool = False) -> str:
     """The figure as an element of a page that holds the rules of :func:`palette.figure_css`.
 
     prefix : of its ids, unique in the page.   group : id of the marks together, where they are to be shown elsewhere.
+    brief : the numbers of an axis as one element, see :func:`joined_ticks`.
     """
     d, title, words = figure.drawing, f"{prefix}-t", f"{prefix}-d"
-    marks = marks_svg(d.marks)
+    marks = _brief_svg(d.marks) if brief else marks_svg(together(d.marks))
     drawn = f'<g id="{group}">{marks}</g>' if group else marks
     return (
         f'<svg class="fig" role="img" viewBox="0 0 {_n(d.width)} {_n(d.height)}" aria-labelledby="{title} {words}">'
@@ -45,6 +46,95 @@ def standalone_svg(figure: Figure) -> str:
         f"<style>{escape(style, quote=False)}</style>\n"
         f'<rect class="back" width="{_n(d.width)}" height="{_n(d.height)}"/>\n{marks_svg(d.marks)}\n</svg>\n'
     )
+
+
+_TOGETHER: Final = frozenset(
+    ("grid", "axis", "zero", "hair", "bound", "leader", "polynomial", "bar", "ring", "hole", "dot")
+)
+"""Roles of which a drawing has several marks whose order among others does not matter."""
+
+
+def together(marks: Sequence[Mark]) -> list[Mark]:
+    """The marks with those of one such role as one, where the last of them was: elements are what a page costs."""
+    lines: dict[str, list[tuple[Point, ...]]] = {}
+    dots: dict[str, list[Point]] = {}
+    out: list[Mark] = []
+    for mark in reversed(marks):
+        if isinstance(mark, Path) and mark.role in _TOGETHER and not mark.closed:
+            if mark.role not in lines:
+                out.append(mark)
+            lines.setdefault(mark.role, [])[:0] = mark.lines
+        elif isinstance(mark, Dots) and mark.role in _TOGETHER:
+            if mark.role not in dots:
+                out.append(mark)
+            dots.setdefault(mark.role, [])[:0] = mark.points
+        else:
+            out.append(mark)
+    return [_whole(mark, lines, dots) for mark in reversed(out)]
+
+
+def _whole(mark: Mark, lines: dict[str, list[tuple[Point, ...]]], dots: dict[str, list[Point]]) -> Mark:
+    if isinstance(mark, Path) and mark.role in lines and not mark.closed:
+        return Path(tuple(lines[mark.role]), mark.role)
+    if isinstance(mark, Dots) and mark.role in dots:
+        return Dots(tuple(dots[mark.role]), mark.role)
+    return mark
+
+
+def _brief_svg(marks: Sequence[Mark]) -> str:
+    """Fewer elements: areas are outlined by their own class, the numbers of an axis and the letters of atoms are one."""
+    ticks = [m for m in marks if isinstance(m, Words) and m.role == "tick"]
+    letters = [m for m in marks if isinstance(m, Words) and m.role in _LETTERS and len(m.text) == 1]
+    rest = [m for m in marks if not (m.role.startswith("edge") if isinstance(m, Path) else m in ticks or m in letters)]
+    return marks_svg(together(rest)) + joined_ticks(ticks) + "".join(_letters(letters, role) for role in _LETTERS)
+
+
+_LETTERS: Final = ("letter", "small-letter")
+
+
+def _letters(words: Sequence[Words], role: str) -> str:
+    """The letters of one size, each at its place; those of hidden atoms are not among a drawing's marks."""
+    mine = [w for w in words if w.role == role]
+    if not mine:
+        return ""
+    x, y = (" ".join(_n(w.at[i]) for w in mine) for i in (0, 1))
+    return f'<text class="{role} m" x="{x}" y="{y}">{escape("".join(w.text for w in mine))}</text>'
+
+
+def joined_ticks(ticks: Sequence[Words]) -> str:
+    """The numbers along each axis as one text, every character at its place: elements are what a long page costs.
+
+    Numbers centred at one height are an axis of x, those that end at one place an axis of y.
+    """
+    axes: dict[tuple[str, float], list[Words]] = {}
+    for t in ticks:
+        axes.setdefault((t.anchor, t.at[1] if t.anchor == "middle" else t.at[0]), []).append(t)
+    return "".join(map(_axis_numbers, axes.values()))
+
+
+_PITCH: Final = {"−": 0.72, ".": 0.32, "e": 0.6}
+"""Widths of characters in units of the font size; figures all take 0.58, about what sans-serif faces have."""
+
+
+def _axis_numbers(words: Sequence[Words]) -> str:
+    size = LOOKS["tick"].size
+    x: list[str] = []
+    down: list[str] = []
+    height = words[0].at[1]
+    for w in words:
+        widths = [size * _PITCH.get(c, 0.58) for c in w.text]
+        at = w.at[0] - sum(widths) / (2.0 if w.anchor == "middle" else 1.0)
+        if x:  # the blank before it
+            x.append(x[-1])
+            down.append("0")
+        for i, width in enumerate(widths):
+            x.append(_n(at))
+            down.append(_n(w.at[1] - height) if i == 0 else "0")
+            at += width
+        height = w.at[1]
+    dy = f' dy="{" ".join(down)}"' if set(down) != {"0"} else ""
+    text = " ".join(w.text for w in words)
+    return f'<text class="tick" x="{" ".join(x)}" y="{_n(words[0].at[1])}"{dy}>{escape(text)}</text>'
 
 
 def marks_svg(marks: Iterable[Mark]) -> str:
