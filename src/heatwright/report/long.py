@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Collection, Sequence
+from dataclasses import replace
 from typing import Final
 
 from heatwright.report.drawing import Figure
@@ -52,6 +53,19 @@ def facts_line(species: Species, common: Collection[tuple[str, str]]) -> str:
     return "; ".join([*facts, *([f"wavenumbers: {nu} cm⁻¹, unscaled"] if nu else [])])
 
 
+def ledger_text(route: Route) -> str:
+    """A ledger as lines of text, the numbers below one another.
+
+    >>> print(ledger_text(Route("given", "", -1.5, None, 0.25, (("as given", -1.5, "a paper"),))))
+          -1.500  as given (a paper)
+          -1.500  ΔfH°(298.15 K), ± 0.25
+    """
+    items = [(value, f"{what}{f' ({source})' if source else ''}") for what, value, source in route.ledger]
+    unsure = "" if route.u95_kJ_mol is None else f", ± {route.u95_kJ_mol:.2f}"
+    items.append((route.dHf298_kJ_mol, f"ΔfH°(298.15 K){unsure}"))
+    return "\n".join(f"{value:z12.3f}  {what}" for value, what in items)
+
+
 def ledger_line(route: Route) -> str:
     """A ledger as one line: every item with its value; sources are in the sentence that goes with the route.
 
@@ -62,7 +76,11 @@ def ledger_line(route: Route) -> str:
     return "; ".join(items).replace(" -", " −")
 
 
-def telling(figure: Figure) -> tuple[tuple[str, ...], ...]:
-    """The rows of a figure that a long page shows."""
+def telling(figure: Figure) -> Figure:
+    """The figure with those rows that a long page shows; of a structure the coordinates in one column."""
     rows = figure.rows
-    return rows if figure.telling is None else tuple(rows[i] for i in figure.telling if i < len(rows))
+    if figure.key == "structure":
+        joined = tuple((atom, f"{x} {y} {z}", bonds) for atom, x, y, z, bonds in rows)
+        return replace(figure, columns=("atom", "x, y, z / Å", "bonds"), rows=joined)
+    few = rows if figure.telling is None else tuple(rows[i] for i in figure.telling if i < len(rows))
+    return replace(figure, rows=few)

@@ -24,6 +24,7 @@ from heatwright.report.long import (
     common_facts,
     facts_line,
     ledger_line,
+    ledger_text,
     legend,
     telling,
 )
@@ -208,7 +209,7 @@ def _shown(
         "kinds": [kind_of(f) for f in drawn] if long else [],
         "polynomial": s.polynomial,
         "coefficients": _coefficients(s.polynomial, long),
-        "routes": [_route(r) for r in s.routes],
+        "routes": [_route(r, long) for r in s.routes],
         "facts": s.facts,
         "facts_line": facts_line(s, common) if common is not None else "",
         "wavenumbers": ", ".join(f"{nu:.0f}".replace("-", "−") for nu in s.wavenumbers_cm1),
@@ -241,6 +242,7 @@ def _changes(changes: Mapping[str, Any]) -> dict[str, Any]:
 
 
 def _figure(f: Figure, i: int, long: bool) -> dict[str, Any]:
+    f = telling(f) if long else f
     return {
         "key": f.key,
         "title": f.title,
@@ -248,7 +250,7 @@ def _figure(f: Figure, i: int, long: bool) -> dict[str, Any]:
         "caption": f.caption if not long or kind_of(f) in OWN_CAPTIONS else "",
         "svg": Markup(inline_svg(f, f"f{i}{f.key}", f"g{i}" if f.key == "structure" else "", brief=long)),
         "columns": f.columns,
-        "body": _body(telling(f) if long else f.rows),
+        "body": _body(f.rows),
     }
 
 
@@ -262,7 +264,7 @@ def _escaped(row: Sequence[str]) -> Sequence[str]:
     return [str(escape(c)) for c in row] if _SPECIAL.search("".join(row)) else row
 
 
-def _route(r: Route) -> dict[str, Any]:
+def _route(r: Route, long: bool) -> dict[str, Any]:
     return {
         "method": r.method,
         "source": r.source,
@@ -270,7 +272,8 @@ def _route(r: Route) -> dict[str, Any]:
         "u": r.u95_kJ_mol,
         "ledger": _body((what, shown_number(value, 3), source) for what, value, source in r.ledger),
         "lines": len(r.ledger),
-        "line": ledger_line(r),
+        "line": ledger_line(r) if long else "",
+        "text": ledger_text(r) if long else "",
     }
 
 

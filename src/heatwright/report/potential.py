@@ -48,7 +48,7 @@ def torsional_potential(species: Species, index: int) -> Figure:
         drawing=Drawing(WIDTH, 274.0, tuple(marks)),
         columns=("angle / °", "V / cm⁻¹", "level", "energy / cm⁻¹"),
         rows=_rows(phi, V, levels),
-        telling=tuple(range(0, 25, 4)),
+        telling=tuple(range(0, 24, 4)),
     )
 
 
@@ -73,8 +73,9 @@ def _marks(
 ) -> list[Mark]:
     x, y, (left, top, right, bottom) = plot.x, plot.y, plot.box
     points = np.array(curve)
-    between = [s for e in levels for s in _inside(e, points, y)]
-    marks: list[Mark] = [segments(_apart(between), "level")] if levels else []
+    apart = {round(10.0 * y(e)): e for e in levels}.values()  # levels split by less than the eye sees are one line
+    between = [s for e in apart for s in _inside(e, points, y)]
+    marks: list[Mark] = [segments(between, "level")] if levels else []
     marks += [segments([((left, y(kT)), (right, y(kT)))], "hair"), line(curve, "polynomial")]
     room = Room((left + 2.0, top - 14.0, right, bottom - 2.0))
     room.curve(curve)
@@ -92,12 +93,6 @@ def _marks(
             for anchor in ("start", "end")]  # fmt: skip
     words = room.place("kT, 298 K", "quiet", free)  # type: ignore[arg-type]
     return [*marks, *([words] if words else [])]
-
-
-def _apart(lines: list[tuple[Point, Point]]) -> list[tuple[Point, Point]]:
-    """The same without those that would be drawn over one of them: levels split by less than the eye sees."""
-    seen = {tuple(round(10.0 * v) for point in pair for v in point): pair for pair in lines}
-    return list(seen.values())
 
 
 def _inside(energy: float, curve: np.ndarray, y: Scale) -> list[tuple[Point, Point]]:

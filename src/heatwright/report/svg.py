@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable, Sequence
 from functools import lru_cache
 from html import escape
+from itertools import pairwise
 from math import inf
 from typing import Final
 
@@ -20,11 +21,15 @@ def inline_svg(figure: Figure, prefix: str, group: str = "", *, brief: bool = Fa
     """The figure as an element of a page that holds the rules of :func:`palette.figure_css`.
 
     prefix : of its ids, unique in the page.   group : id of the marks together, where they are to be shown elsewhere.
-    brief : the numbers of an axis as one element, see :func:`joined_ticks`.
+    brief : with few elements, see :func:`joined_ticks`; name and description are those of SVG alone (SVG-AAM 1.0).
     """
     d, title, words = figure.drawing, f"{prefix}-t", f"{prefix}-d"
-    marks = _brief_svg(d.marks) if brief else marks_svg(together(d.marks))
-    drawn = f'<g id="{group}">{marks}</g>' if group else marks
+    if brief:
+        return (
+            f'<svg class="fig" role="img" viewBox="0 0 {_n(d.width)} {_n(d.height)}"><title>{escape(figure.title)}</title>'
+            f"<desc>{escape(figure.description)}</desc>{_grouped(_brief_svg(d.marks), group)}</svg>"
+        )
+    drawn = _grouped(marks_svg(together(d.marks)), group)
     return (
         f'<svg class="fig" role="img" viewBox="0 0 {_n(d.width)} {_n(d.height)}" aria-labelledby="{title} {words}">'
         f'<title id="{title}">{escape(figure.title)}</title><desc id="{words}">{escape(figure.description)}</desc>'
@@ -81,24 +86,29 @@ def _whole(mark: Mark, lines: dict[str, list[tuple[Point, ...]]], dots: dict[str
     return mark
 
 
+def _grouped(marks: str, group: str) -> str:
+    return f'<g id="{group}">{marks}</g>' if group else marks
+
+
 def _brief_svg(marks: Sequence[Mark]) -> str:
     """Fewer elements: areas are outlined by their own class, the numbers of an axis and the letters of atoms are one."""
-    ticks = [m for m in marks if isinstance(m, Words) and m.role == "tick"]
-    letters = [m for m in marks if isinstance(m, Words) and m.role in _LETTERS and len(m.text) == 1]
-    rest = [m for m in marks if not (m.role.startswith("edge") if isinstance(m, Path) else m in ticks or m in letters)]
-    return marks_svg(together(rest)) + joined_ticks(ticks) + "".join(_letters(letters, role) for role in _LETTERS)
-
-
-_LETTERS: Final = ("letter", "small-letter")
+    words: dict[str, list[Words]] = {"tick": [], "letter": [], "small-letter": []}
+    rest: list[Mark] = []
+    for m in marks:
+        if isinstance(m, Words) and m.role in words and (m.role == "tick" or len(m.text) == 1):
+            words[m.role].append(m)
+        elif not (isinstance(m, Path) and m.role.startswith("edge")):
+            rest.append(m)
+    letters = (_letters(words[role], role) for role in ("letter", "small-letter"))
+    return marks_svg(together(rest)) + joined_ticks(words["tick"]) + "".join(letters)
 
 
 def _letters(words: Sequence[Words], role: str) -> str:
     """The letters of one size, each at its place; those of hidden atoms are not among a drawing's marks."""
-    mine = [w for w in words if w.role == role]
-    if not mine:
+    if not words:
         return ""
-    x, y = (" ".join(_n(w.at[i]) for w in mine) for i in (0, 1))
-    return f'<text class="{role} m" x="{x}" y="{y}">{escape("".join(w.text for w in mine))}</text>'
+    x, y = (" ".join(_n(w.at[i]) for w in words) for i in (0, 1))
+    return f'<text class="{role} m" x="{x}" y="{y}">{escape("".join(w.text for w in words))}</text>'
 
 
 def joined_ticks(ticks: Sequence[Words]) -> str:
@@ -109,14 +119,15 @@ def joined_ticks(ticks: Sequence[Words]) -> str:
     axes: dict[tuple[str, float], list[Words]] = {}
     for t in ticks:
         axes.setdefault((t.anchor, t.at[1] if t.anchor == "middle" else t.at[0]), []).append(t)
-    return "".join(map(_axis_numbers, axes.values()))
+    return "".join(_axis_numbers(tuple(words)) for words in axes.values())
 
 
 _PITCH: Final = {"−": 0.72, ".": 0.32, "e": 0.6}
 """Widths of characters in units of the font size; figures all take 0.58, about what sans-serif faces have."""
 
 
-def _axis_numbers(words: Sequence[Words]) -> str:
+@lru_cache(maxsize=1 << 10)
+def _axis_numbers(words: tuple[Words, ...]) -> str:
     size = LOOKS["tick"].size
     x: list[str] = []
     down: list[str] = []
@@ -162,18 +173,28 @@ def _words(mark: Words) -> str:
 
 def _line(points: Sequence[Point], closed: bool) -> str:
     """A path through the points in steps of whole tenths, so that rounding does not add up."""
-    tenths = [(round(10 * x), round(10 * y)) for x, y in simplified(points)]
-    (x, y), *rest = tenths
+    tenths = [(round(10 * x), round(10 * y)) for x, y in (simplified(points) if len(points) > 2 else points)]
+    x, y = tenths[0]
     start = f"M{_t(x)} {_t(y)}"
-    if len(rest) == 1 and not closed and 0 in (rest[0][0] - x, rest[0][1] - y):
-        ((a, b),) = rest
-        return f"{start}h{_t(a - x)}" if b == y else f"{start}v{_t(b - y)}"
-    out = [f"{start}l" if rest else start]
-    for i, (a, b) in enumerate(rest):
-        dx, dy = _t(a - x), _t(b - y)
-        out.append(f"{'' if i == 0 or dx.startswith('-') else ' '}{dx}{'' if dy.startswith('-') else ' '}{dy}")
-        x, y = a, b
-    return "".join(out) + ("z" if closed else "")
+    if len(tenths) == 2 and not closed:
+        a, b = tenths[1]
+        if b == y:
+            return f"{start}h{_t(a - x)}"
+        if a == x:
+            return f"{start}v{_t(b - y)}"
+    steps = "".join(_step(b[0] - a[0], b[1] - a[1]) for a, b in pairwise(tenths)).removeprefix(" ")
+    return f"{start}{'l' if steps else ''}{steps}{'z' if closed else ''}"
+
+
+@lru_cache(maxsize=1 << 16)
+def _step(dx: int, dy: int) -> str:
+    """One step in tenths, with blanks where a number does not begin with a sign.
+
+    >>> _step(15, -20), _step(-3, 4)
+    (' 1.5-2', '-.3 .4')
+    """
+    x, y = _t(dx), _t(dy)
+    return f"{'' if dx < 0 else ' '}{x}{'' if dy < 0 else ' '}{y}"
 
 
 def simplified(points: Sequence[Point], near: float = NEAR) -> Sequence[Point]:
@@ -191,8 +212,8 @@ def simplified(points: Sequence[Point], near: float = NEAR) -> Sequence[Point]:
     (x0, y0), last = points[0], points[0]
     low, high = -inf, inf
     for x, y in points[1:]:
-        dx = x - x0
-        ahead = dx * (last[0] - x0) >= 0.0 and abs(dx) >= abs(last[0] - x0) and dx != 0.0
+        dx, before = x - x0, last[0] - x0
+        ahead = dx >= before >= 0.0 < dx or dx <= before <= 0.0 > dx
         slope = (y - y0) / dx if ahead else 0.0
         if last is not kept[-1] and not (ahead and low <= slope <= high):
             kept.append(last)
@@ -201,7 +222,10 @@ def simplified(points: Sequence[Point], near: float = NEAR) -> Sequence[Point]:
             slope = (y - y0) / dx if dx else 0.0
         if dx:
             room = near / abs(dx)
-            low, high = max(low, slope - room), min(high, slope + room)
+            if slope - room > low:
+                low = slope - room
+            if slope + room < high:
+                high = slope + room
         else:
             low, high = inf, -inf
         last = (x, y)
