@@ -21,10 +21,9 @@ from typing import Any
 sys.path.insert(0, str(Path(__file__).resolve().parents[1]))
 
 from browser import CHROMIUM, Browser  # noqa: E402
-from shown import many  # noqa: E402
-
 from heatwright.report.documents import shown_documents  # noqa: E402
 from heatwright.report.page import Page, page_html  # noqa: E402
+from shown import many  # noqa: E402
 
 LOADED = """(() => {
   const n = performance.getEntriesByType('navigation')[0];
@@ -85,7 +84,9 @@ def main() -> None:
                 seen = opened(browser, file, options.times)
                 print(f"  {seen['nodes']:.0f} nodes; first paint {shown_times(seen['paint'])}, parsed "
                       f"{shown_times(seen['parsed'])}, loaded {shown_times(seen['loaded'])}")  # fmt: skip
-                print("  of it " + ", ".join(f"{k.removesuffix('Duration')} {v:.2f} s" for k, v in seen["spent"].items()))
+                print(
+                    "  of it " + ", ".join(f"{k.removesuffix('Duration')} {v:.2f} s" for k, v in seen["spent"].items())
+                )
     if browser is not None:
         browser.close()
 

@@ -96,8 +96,7 @@ def _halves(p: Nasa7, samples: int) -> list[list[tuple[float, float]]]:
 
 
 def _cp_marks(
-    species: Species, plot: Frame, curves: list[list[Point]], dots: list[Point], limit: float | None,
-    *, brief: bool
+    species: Species, plot: Frame, curves: list[list[Point]], dots: list[Point], limit: float | None, *, brief: bool
 ) -> list[Mark]:
     p, (left, top, right, bottom) = species.polynomial, plot.box
     room = Room((left + 3.0, top - 4.0, right, bottom - 3.0))

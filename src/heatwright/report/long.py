@@ -57,13 +57,13 @@ def ledger_text(route: Route) -> str:
     """A ledger as lines of text, the numbers below one another.
 
     >>> print(ledger_text(Route("given", "", -1.5, None, 0.25, (("as given", -1.5, "a paper"),))))
-          -1.500  as given (a paper)
-          -1.500  ΔfH°(298.15 K), ± 0.25
+          −1.500  as given (a paper)
+          −1.500  ΔfH°(298.15 K), ± 0.25
     """
     items = [(value, f"{what}{f' ({source})' if source else ''}") for what, value, source in route.ledger]
     unsure = "" if route.u95_kJ_mol is None else f", ± {route.u95_kJ_mol:.2f}"
     items.append((route.dHf298_kJ_mol, f"ΔfH°(298.15 K){unsure}"))
-    return "\n".join(f"{value:z12.3f}  {what}" for value, what in items)
+    return "\n".join(f"{value:z12.3f}".replace("-", "−") + f"  {what}" for value, what in items)
 
 
 def ledger_line(route: Route) -> str:

@@ -180,9 +180,7 @@ def _orders(species: Sequence[Species]) -> list[str]:
     return [";".join(f"--{letter}:{place}" for letter, place in p.items()) for p in places]
 
 
-def _shown(
-    i: int, s: Species, anchor: str, order: str, common: Collection[tuple[str, str]] | None
-) -> dict[str, Any]:
+def _shown(i: int, s: Species, anchor: str, order: str, common: Collection[tuple[str, str]] | None) -> dict[str, Any]:
     """What the template needs of one species; *common* are the facts said elsewhere, on a long page."""
     long = common is not None
     drawn = figures_of(s, brief=long)

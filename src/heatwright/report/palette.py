@@ -117,7 +117,10 @@ def figure_css() -> str:
             f"{_element(role, look)}.{role}{{{_css(look, 'round' if is_round(role) else '')}}}"
             for role, look in LOOKS.items()
         ),
-        *(f".long path.area{i}{{{_css(LOOKS[f'edge{i}'], '').removesuffix(';fill:none')}}}" for i in range(len(SERIES))),
+        *(
+            f".long path.area{i}{{{_css(LOOKS[f'edge{i}'], '').removesuffix(';fill:none')}}}"
+            for i in range(len(SERIES))
+        ),
     ]
     return "\n".join(rules)
 

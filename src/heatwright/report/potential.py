@@ -68,9 +68,7 @@ def _rows(phi: np.ndarray, V: np.ndarray, levels: list[float]) -> tuple[tuple[st
     )
 
 
-def _marks(
-    t: Torsion, plot: Frame, curve: list[Point], levels: list[float], kT: float, lowest: float
-) -> list[Mark]:
+def _marks(t: Torsion, plot: Frame, curve: list[Point], levels: list[float], kT: float, lowest: float) -> list[Mark]:
     x, y, (left, top, right, bottom) = plot.x, plot.y, plot.box
     points = np.array(curve)
     apart = {round(10.0 * y(e)): e for e in levels}.values()  # levels split by less than the eye sees are one line

@@ -7,7 +7,17 @@ from typing import Final
 
 from heatwright.report.curves import LEFT, WIDTH, temperature_scale
 from heatwright.report.drawing import Drawing, Figure, Mark, Point, Words, area, line
-from heatwright.report.layout import Scale, curve, fewest_rows, frame, nice_ticks, padded, spread, telling_rows, temperature_ticks
+from heatwright.report.layout import (
+    Scale,
+    curve,
+    fewest_rows,
+    frame,
+    nice_ticks,
+    padded,
+    spread,
+    telling_rows,
+    temperature_ticks,
+)
 from heatwright.report.palette import series
 from heatwright.report.species import Species
 
@@ -133,9 +143,7 @@ def populations(species: Species) -> Figure | None:
         source=species.source,
         drawing=Drawing(WIDTH, 274.0, tuple(marks)),
         columns=("T / K", *(str(i) for i in range(1, len(conformers) + 1))),
-        rows=tuple(
-            (f"{table.T_K[i]:g}", *(f"{c.populations[i]:.4f}" for c in conformers)) for i in shown_rows
-        ),
+        rows=tuple((f"{table.T_K[i]:g}", *(f"{c.populations[i]:.4f}" for c in conformers)) for i in shown_rows),
         telling=fewest_rows([table.T_K[i] for i in shown_rows]),
     )
 
