@@ -32,6 +32,14 @@ LOADED = """(() => {
 })()"""
 
 
+NODES = """(() => {
+  const walker = document.createTreeWalker(document);
+  let n = 1;
+  while (walker.nextNode()) n += 1;
+  return n;
+})()"""
+
+
 def made(species: int, rich: bool) -> tuple[str, float]:
     """The page and the processor seconds it took, with everything imported before."""
     document = many(species, rich=rich)
@@ -50,7 +58,7 @@ def opened(browser: Browser, file: Path, times: int) -> dict[str, Any]:
         found.append([*browser.ask(LOADED), browser.counters(), before])
     paint, parsed, loaded, after, before = zip(*found, strict=True)
     spent = {k: statistics.median(a[k] - b[k] for a, b in zip(after, before, strict=True)) for k in SPENT}
-    return {"paint": paint, "parsed": parsed, "loaded": loaded, "spent": spent, "nodes": after[-1]["Nodes"]}
+    return {"paint": paint, "parsed": parsed, "loaded": loaded, "spent": spent, "nodes": browser.ask(NODES)}
 
 
 SPENT = ("TaskDuration", "LayoutDuration", "RecalcStyleDuration", "ScriptDuration")
@@ -84,9 +92,8 @@ def main() -> None:
                 seen = opened(browser, file, options.times)
                 print(f"  {seen['nodes']:.0f} nodes; first paint {shown_times(seen['paint'])}, parsed "
                       f"{shown_times(seen['parsed'])}, loaded {shown_times(seen['loaded'])}")  # fmt: skip
-                print(
-                    "  of it " + ", ".join(f"{k.removesuffix('Duration')} {v:.2f} s" for k, v in seen["spent"].items())
-                )
+                spent = (f"{k.removesuffix('Duration')} {v:.2f} s" for k, v in seen["spent"].items())
+                print(f"  of it {', '.join(spent)}")
     if browser is not None:
         browser.close()
 

@@ -17,7 +17,7 @@ OWN_CAPTIONS: Final = ("torsion", "conformers")
 
 LEGEND: Final = {
     "structure": "Structures are projected; bonds in colour are treated as torsions.",
-    "cp": "Heat capacity Cp°/R: the line is the two-range polynomial, circles are the table from the partition function "
+    "cp": "Heat capacity Cp°/R: the line is the two-range polynomial, dots are the table from the partition function "
     "(shaded: two standard uncertainties, where they were stated); the ranges meet at the dotted line.",
     "slope": "A step of T d(Cp°/R)/dT at the common temperature (dotted) is a kink of Cp°.",
     "residuals": "Polynomial less table: the band is the proven lower bound of the largest error in Cp°/R of any two "
@@ -29,7 +29,7 @@ LEGEND: Final = {
 
 HOW_TO_SEE_ALL: Final = (
     "the numbers beside each plot are few telling rows, and what all species have in common is said here once. Every "
-    "row is in a report of fewer of them; `heatwright table OUTPUT --format csv` gives the functions at any temperature."
+    "row is in a report of fewer of them; `heatwright table OUTPUT --format csv` has the functions at any temperature."
 )
 
 

@@ -117,10 +117,7 @@ def figure_css() -> str:
             f"{_element(role, look)}.{role}{{{_css(look, 'round' if is_round(role) else '')}}}"
             for role, look in LOOKS.items()
         ),
-        *(
-            f".long path.area{i}{{{_css(LOOKS[f'edge{i}'], '').removesuffix(';fill:none')}}}"
-            for i in range(len(SERIES))
-        ),
+        *(f".long path.area{i}{{{_stroke(LOOKS[f'edge{i}'])}}}" for i in range(len(SERIES))),
     ]
     return "\n".join(rules)
 
@@ -139,12 +136,14 @@ def _element(role: str, look: Look) -> str:
     return "text" if look.size else "circle" if role.startswith("ball-") else "path"
 
 
+def _stroke(look: Look) -> str:
+    dash = f";stroke-dasharray:{look.dash}" if look.dash else ""
+    return f"stroke:var(--{look.stroke});stroke-width:{look.width:g};stroke-linejoin:round{dash}"
+
+
 def _css(look: Look, cap: str) -> str:
     parts = [f"stroke-linecap:{cap}"] if cap else []
-    if look.stroke:
-        parts.append(f"stroke:var(--{look.stroke});stroke-width:{look.width:g};stroke-linejoin:round")
-    if look.dash:
-        parts.append(f"stroke-dasharray:{look.dash}")
+    parts += [_stroke(look)] if look.stroke else []
     parts.append(f"fill:var(--{look.fill})" if look.fill else "fill:none")
     if look.opacity < 1.0:
         parts.append(f"fill-opacity:{look.opacity:g}")

@@ -26,8 +26,8 @@ def inline_svg(figure: Figure, prefix: str, group: str = "", *, brief: bool = Fa
     d, title, words = figure.drawing, f"{prefix}-t", f"{prefix}-d"
     if brief:
         return (
-            f'<svg class="fig" role="img" viewBox="0 0 {_n(d.width)} {_n(d.height)}"><title>{escape(figure.title)}</title>'
-            f"<desc>{escape(figure.description)}</desc>{_grouped(_brief_svg(d.marks), group)}</svg>"
+            f'<svg class="fig" role="img" viewBox="0 0 {_n(d.width)} {_n(d.height)}">'
+            f"<title>{escape(figure.title)}</title><desc>{escape(figure.description)}</desc>{_grouped(_brief_svg(d.marks), group)}</svg>"
         )
     drawn = _grouped(marks_svg(together(d.marks)), group)
     return (
@@ -91,7 +91,10 @@ def _grouped(marks: str, group: str) -> str:
 
 
 def _brief_svg(marks: Sequence[Mark]) -> str:
-    """Fewer elements: areas are outlined by their own class, the numbers of an axis and the letters of atoms are one."""
+    """Fewer elements: areas are outlined by their own class, the numbers of an axis and the letters of atoms are one.
+
+    The letters come last: those that a nearer atom would touch are not among the marks.
+    """
     words: dict[str, list[Words]] = {"tick": [], "letter": [], "small-letter": []}
     rest: list[Mark] = []
     for m in marks:
@@ -104,7 +107,7 @@ def _brief_svg(marks: Sequence[Mark]) -> str:
 
 
 def _letters(words: Sequence[Words], role: str) -> str:
-    """The letters of one size, each at its place; those of hidden atoms are not among a drawing's marks."""
+    """The letters of one size, each at its place."""
     if not words:
         return ""
     x, y = (" ".join(_n(w.at[i]) for w in words) for i in (0, 1))
