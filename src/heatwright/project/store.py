@@ -38,7 +38,7 @@ class Store:
     def __init__(self, path: str, say: Say, *, read_only: bool = False) -> None:
         """Open the file at *path*, which is made when it is missing; *say* hears of troubles.
 
-        read_only : nothing is written, and a missing file stays missing.
+        read_only : nothing is written, not even a journal beside the file, and a missing file stays missing.
         """
         self.path = path
         self._say = say
@@ -47,7 +47,7 @@ class Store:
         self._waiting: dict[str, bytes] = {}
         self._since = time.monotonic()
         self._connection: sqlite3.Connection | None = None
-        if not (read_only and not os.path.exists(path)):
+        if not read_only or _is_readable(path):
             self._open()
 
     def __enter__(self) -> Store:
@@ -172,6 +172,12 @@ class Store:
         self._connection = None
 
 
+def _is_readable(path: str) -> bool:
+    """Whether the file can be read as it is: a log without its index is that of a build that was killed, and reading
+    it would write the index."""
+    return os.path.exists(path) and (os.path.exists(f"{path}-shm") or not os.path.exists(f"{path}-wal"))
+
+
 class _Unfit(Exception):
     """The file is no sound store of this version; the words say why."""
 
@@ -180,7 +186,8 @@ def _connected(path: str, read_only: bool) -> sqlite3.Connection:
     """An open connection to a sound store; raises _Unfit, sqlite3.Error or OSError."""
     if not read_only:
         os.makedirs(os.path.dirname(path) or ".", exist_ok=True)
-    mode = "ro" if read_only else "rwc"
+    # a reader leaves journal files behind, unless it takes the file for one that nobody changes
+    mode = "rwc" if not read_only else "ro" if os.path.exists(f"{path}-wal") else "ro&immutable=1"
     connection = sqlite3.connect(f"file:{_quoted(path)}?mode={mode}", uri=True, timeout=_WAIT_S, isolation_level=None)
     try:
         _check(connection, read_only)

@@ -43,7 +43,7 @@ class Page:
     """What a page is made of.
 
     title : of the page.   subtitle : where it is from, one line.   species : in their order.
-    failed : (file, sentences) of inputs that could not be shown.
+    failed : (file, sentences) of inputs that could not be shown.   remarks : sentences about all of them.
     changes : what a comparison found, see :mod:`heatwright.report.changes`; None without one.
     """
 
@@ -51,6 +51,7 @@ class Page:
     species: Sequence[Species]
     subtitle: str = ""
     failed: Sequence[tuple[str, Sequence[str]]] = ()
+    remarks: Sequence[str] = ()
     changes: Mapping[str, Any] | None = None
 
 
@@ -75,6 +76,7 @@ def page_html(page: Page) -> str:
         orders=_ORDERS,
         warned=sum(s["warnings"] > 0 for s in shown),
         failed=page.failed,
+        remarks=page.remarks,
         long=long,
         common=common,
         legend=legend({kind for s in shown for kind in s["kinds"]}) if long else [],

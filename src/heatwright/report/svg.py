@@ -27,7 +27,8 @@ def inline_svg(figure: Figure, prefix: str, group: str = "", *, brief: bool = Fa
     if brief:
         return (
             f'<svg class="fig" role="img" viewBox="0 0 {_n(d.width)} {_n(d.height)}">'
-            f"<title>{escape(figure.title)}</title><desc>{escape(figure.description)}</desc>{_grouped(_brief_svg(d.marks), group)}</svg>"
+            f"<title>{escape(figure.title)}</title><desc>{escape(figure.description)}</desc>"
+            f"{_grouped(_brief_svg(d.marks), group)}</svg>"
         )
     drawn = _grouped(marks_svg(together(d.marks)), group)
     return (
