@@ -132,10 +132,25 @@ def _read(path: str, kind: str, reporter: Reporter) -> Shown:
         if kind == "release":
             folder = path if Path(path).is_dir() else str(Path(path).parent)
             return shown_release(folder, lambda manifest: Words(manifest, reporter))
-        return read_documents(path) if kind == "document" else shown_entries(read_release(path))
+        shown = read_documents(path) if kind == "document" else shown_entries(read_release(path))
+        return _heard(path, shown, reporter)
     except Refused as error:
         reporter.fail(path, error.findings)
         return Shown((), ((path, tuple(f.text for f in error.findings)),))
+
+
+def _heard(path: str, shown: Shown, reporter: Reporter) -> Shown:
+    """What a file holds, with words on what of it cannot be shown; a file of nothing else has failed."""
+    from heatwright.findings import refuse
+
+    if shown.species:
+        for where, sentences in shown.failed:
+            reporter.say(f"not shown: {where}: {' '.join(sentences)}")
+    else:
+        said = [" ".join(sentences) for _, sentences in shown.failed]
+        found = f"there is nothing to show ({' '.join(said).rstrip('.') or 'the file has no entries'})"
+        reporter.fail(path, (refuse("no-entries", found),))
+    return shown
 
 
 def _of_manifest(path: str, reporter: Reporter) -> Shown:

@@ -24,7 +24,7 @@ from heatwright.report.layout import (
     round_below,
     temperature_ticks,
 )
-from heatwright.report.species import Residuals, Species
+from heatwright.report.species import Residuals, Species, is_one_set, range_text
 
 WIDTH: Final = 420.0
 LEFT: Final = 46.0
@@ -108,10 +108,12 @@ def _cp_marks(
         at = plot.y(limit)
         marks.append(segments([((left, at), (right, at))], "limit"))
         room.curve([(left, at), (right, at)])
-    if p is not None:
+    joined = p is not None and not is_one_set(p)
+    if p is not None and joined:
         join = plot.x(p.t_common_K)
         marks.append(segments([((join, bottom), (join, top))], "hair"))
         room.curve([(join, bottom), (join, top)])
+    if p is not None:
         marks.append(Path(tuple(map(tuple, curves)), "polynomial"))
     if dots:
         marks += [Dots(tuple(dots), "point")] if brief else [Dots(tuple(dots), "ring"), Dots(tuple(dots), "hole")]
@@ -120,7 +122,7 @@ def _cp_marks(
         ("table", "of-table", along(dots, True, 0.4)) if dots else None,
         (f"classical limit {limit:g}", "quiet", [((left + 6.0, plot.y(limit) - 5.0), "start"),
          ((left + 6.0, plot.y(limit) + 13.0), "start")]) if limit and plot.y.low < limit < plot.y.high else None,
-        (f"ranges meet, {p.t_common_K:g} K", "quiet", _beside(plot.x(p.t_common_K), plot)) if p else None,
+        (f"ranges meet, {p.t_common_K:g} K", "quiet", _beside(plot.x(p.t_common_K), plot)) if p and joined else None,
     )  # fmt: skip
     for what in named:
         words = room.place(*what) if what else None
@@ -153,9 +155,9 @@ def _cp_description(species: Species, T: Sequence[float], cp: Sequence[float]) -
     p, parts = species.polynomial, []
     if p is not None:
         ends = [p.cp_R(t) for t in (p.t_low_K, p.t_common_K, p.t_high_K)]
+        meet = "" if is_one_set(p) else f", {ends[1]:.3f} at {p.t_common_K:g} K, where its two ranges meet,"
         parts.append(
-            f"The polynomial's Cp°/R is {ends[0]:.3f} at {p.t_low_K:g} K, {ends[1]:.3f} at {p.t_common_K:g} K, where "
-            f"its two ranges meet, and {ends[2]:.3f} at {p.t_high_K:g} K."
+            f"The polynomial's Cp°/R is {ends[0]:.3f} at {p.t_low_K:g} K{meet} and {ends[2]:.3f} at {p.t_high_K:g} K."
         )
     if T:
         parts.append(f"The table has {len(T)} points from {cp[0]:.3f} at {T[0]:g} K to {cp[-1]:.3f} at {T[-1]:g} K.")
@@ -171,7 +173,8 @@ def _cp_caption(species: Species) -> str:
         unsure = ", shaded: two standard uncertainties" if species.table.u_cp_J_mol_K else ""
         what.append(f"circles: table from the partition function{unsure}")
     if p is not None:
-        what.append(f"line: two-range polynomial, {p.t_low_K:g}–{p.t_common_K:g}–{p.t_high_K:g} K")
+        kind = "polynomial of one set of coefficients" if is_one_set(p) else "two-range polynomial"
+        what.append(f"line: {kind}, {range_text(p)} K")
     if species.classical_limit_R is not None:
         what.append(f"classical limit {species.classical_limit_R:g}")
     return f"{'; '.join(what)}."

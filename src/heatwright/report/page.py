@@ -29,7 +29,7 @@ from heatwright.report.long import (
     telling,
 )
 from heatwright.report.palette import figure_css, variables
-from heatwright.report.species import Route, Species
+from heatwright.report.species import Route, Species, range_text
 from heatwright.report.svg import inline_svg
 from heatwright.resources import templates
 from heatwright.writing.comment import CAUTION
@@ -74,6 +74,7 @@ def page_html(page: Page) -> str:
         subtitle=page.subtitle,
         species=shown,
         orders=_ORDERS,
+        pictured=any(s["picture"] for s in shown),
         warned=sum(s["warnings"] > 0 for s in shown),
         failed=page.failed,
         remarks=page.remarks,
@@ -208,6 +209,7 @@ def _shown(i: int, s: Species, anchor: str, order: str, common: Collection[tuple
         "figures": [_figure(f, i, long) for f in drawn],
         "kinds": [kind_of(f) for f in drawn] if long else [],
         "polynomial": s.polynomial,
+        "range": "" if s.polynomial is None else range_text(s.polynomial),
         "coefficients": _coefficients(s.polynomial, long),
         "routes": [_route(r, long) for r in s.routes],
         "facts": s.facts,

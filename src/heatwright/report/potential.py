@@ -39,14 +39,13 @@ def torsional_potential(species: Species, index: int) -> Figure:
         heading=f"Torsion {name}",
         title=f"Torsion {name} of {species.name}",
         description=f"The potential has a barrier of {t.barrier_cm1:.0f} cm⁻¹ ({t.barrier_cm1 * CM1_KJ_MOL:.2f} "
-        f"kJ/mol), {t.symmetry} equivalent orientations in a turn and {len(potential.minima)} minima; {len(levels)} "
-        f"levels are drawn, the lowest at {ground:.0f} cm⁻¹.",
+        f"kJ/mol), {t.symmetry} equivalent orientations in a turn and {len(potential.minima)} minima; "
+        f"{_levels_text(levels)}.",
         caption=f"Potential of the torsion {name} of {species.name} ({t.source}): barrier {t.barrier_cm1:.0f} cm⁻¹, "
-        f"F = {t.F_cm1:.3g} cm⁻¹, symmetry {t.symmetry}{_overlap(t)}; horizontal lines: levels; dots: scan; triangle: "
-        "geometry of the frequencies.",
+        f"F = {t.F_cm1:.3g} cm⁻¹, symmetry {t.symmetry}{_overlap(t)}; {_legend(t, levels)}.",
         source=t.source or species.source,
         drawing=Drawing(WIDTH, 274.0, tuple(marks)),
-        columns=("angle / °", "V / cm⁻¹", "level", "energy / cm⁻¹"),
+        columns=("angle / °", "V / cm⁻¹", *(("level", "energy / cm⁻¹") if levels else ())),
         rows=_rows(phi, V, levels),
         telling=tuple(range(0, 24, 4)),
     )
@@ -56,11 +55,28 @@ def _overlap(t: Torsion) -> str:
     return "" if t.overlap is None else f", overlap with the low modes {t.overlap:.2f}"
 
 
+def _levels_text(levels: list[float]) -> str:
+    """What the description says of the levels; the form of Pitzer and Gwinn has none."""
+    if not levels:
+        return "it is drawn without levels"
+    return f"{len(levels)} level{'s are' if len(levels) > 1 else ' is'} drawn, the lowest at {levels[0]:.0f} cm⁻¹"
+
+
+def _legend(t: Torsion, levels: list[float]) -> str:
+    """What is drawn beside the potential."""
+    drawn = ["horizontal lines: levels"] if levels else []
+    drawn += [] if t.levels_cm1 else ["treated in the form of Pitzer and Gwinn, without levels"]
+    drawn += ["dots: scan"] if t.scan_deg else []
+    return "; ".join([*drawn, "arrow: geometry of the frequencies"])
+
+
 def _rows(phi: np.ndarray, V: np.ndarray, levels: list[float]) -> tuple[tuple[str, ...], ...]:
     """Every 15° with its potential, and beside it the levels."""
     angles = [(f"{a:.0f}".replace("-", "−"), f"{v:.1f}") for a, v in zip(phi.tolist(), V.tolist(), strict=True)]
     left = [row for row, a in zip(angles, phi.tolist(), strict=True) if abs(a / 15.0 - round(a / 15.0)) < 0.01]
     right = [(str(i), f"{e:.1f}") for i, e in enumerate(levels)]
+    if not right:
+        return tuple(left)
     n = max(len(left), len(right))
     blank = [("", "")]
     return tuple(
@@ -84,8 +100,8 @@ def _marks(t: Torsion, plot: Frame, curve: list[Point], levels: list[float], kT:
         marks += [Dots(dots, "ring"), Dots(dots, "hole")]
         room.points += dots
     at = x((t.angle_deg + 180.0) % 360.0 - 180.0)
-    point = (at, bottom + 1.0)
-    marks.append(segments([((at - 4.0, bottom + 7.0), point), (point, (at + 4.0, bottom + 7.0))], "bar"))
+    point = (at, bottom + 0.5)
+    marks.append(segments([((at - 3.5, bottom + 5.0), point), (point, (at + 3.5, bottom + 5.0))], "bar"))
     marks.append(Words((right, top - 9.0), f"barrier {t.barrier_cm1:.0f} cm⁻¹", "quiet", "end"))
     free = [((px, y(kT) - 4.0), anchor) for px in np.linspace(left + 5.0, right - 5.0, 25).tolist()
             for anchor in ("start", "end")]  # fmt: skip
