@@ -86,7 +86,7 @@ def page_html(page: Page) -> str:
         caution=" ".join(CAUTION),
         version=__version__,
     )
-    return text
+    return re.sub(r">\n+<", "><", text) if long else text  # line ends between elements would be nodes as well
 
 
 @cache

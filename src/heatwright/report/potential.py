@@ -47,12 +47,18 @@ def torsional_potential(species: Species, index: int) -> Figure:
         drawing=Drawing(WIDTH, 274.0, tuple(marks)),
         columns=("angle / °", "V / cm⁻¹", *(("level", "energy / cm⁻¹") if levels else ())),
         rows=_rows(phi, V, levels),
-        telling=tuple(range(0, 24, 4)),
+        telling=_telling(V),
     )
 
 
 def _overlap(t: Torsion) -> str:
     return "" if t.overlap is None else f", overlap with the low modes {t.overlap:.2f}"
+
+
+def _telling(V: np.ndarray) -> tuple[int, ...]:
+    """Of the rows every 15°: both ends of a turn's half, the highest and the lowest."""
+    every = V[:: (_POINTS - 1) // 24]
+    return tuple(sorted({0, 12, int(every.argmax()), int(every.argmin())}))
 
 
 def _levels_text(levels: list[float]) -> str:
