@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, field
+from functools import lru_cache
 from itertools import pairwise
 from math import ceil, floor, log10
 
@@ -91,14 +92,19 @@ TELLING_K = (200.0, 298.15, 400.0, 500.0, 800.0, 1000.0, 1500.0, 2000.0, 3000.0,
 """Temperatures that a short table shows, K."""
 
 
-def telling_rows(T: Sequence[float]) -> list[int]:
+def telling_rows(T: Sequence[float]) -> tuple[int, ...]:
     """Which rows of a table to show where all would be many: those at :data:`TELLING_K`, and both ends.
 
     >>> telling_rows([200.0, 250.0, 298.15, 300.0, 400.0, 450.0])
-    [0, 2, 4, 5]
+    (0, 2, 4, 5)
     """
+    return _telling_rows(tuple(T))  # species share their temperatures
+
+
+@lru_cache(maxsize=256)
+def _telling_rows(T: tuple[float, ...]) -> tuple[int, ...]:
     last = len(T) - 1
-    return [i for i, t in enumerate(T) if i in (0, last) or any(abs(t - usual) < 0.005 for usual in TELLING_K)]
+    return tuple(i for i, t in enumerate(T) if i in (0, last) or any(abs(t - usual) < 0.005 for usual in TELLING_K))
 
 
 FEW_K = (298.15, 1000.0)

@@ -67,14 +67,14 @@ def _radius_A(element: str) -> float:
 
 
 @lru_cache(maxsize=1)
-def _directions() -> FloatArray:
-    """Points spread evenly over half a sphere, (n, 3)."""
+def _directions() -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Points spread evenly over half a sphere, and two directions across each, (n, 3) each."""
     i = np.arange(_VIEWS)
     z = 1.0 - (i + 0.5) / _VIEWS
     angle = np.pi * (1.0 + 5.0**0.5) * i
     r = np.sqrt(1.0 - z * z)
     points: FloatArray = np.array([r * np.cos(angle), r * np.sin(angle), z]).T
-    return points
+    return points, *_across(points)
 
 
 def _turned(g: Geometry) -> FloatArray:
@@ -87,8 +87,7 @@ def _turned(g: Geometry) -> FloatArray:
     x = x - x.mean(axis=0)
     if len(x) == 1:
         return x
-    d = _directions()
-    first, second = _across(d)
+    d, first, second = _directions()
     flat = np.stack([x @ first.T, x @ second.T], axis=-1)  # (atoms, views, 2)
     i, j = np.triu_indices(len(x), 1)
     apart = np.linalg.norm(flat[i] - flat[j], axis=-1)
@@ -98,7 +97,7 @@ def _turned(g: Geometry) -> FloatArray:
     best = int(np.argmin(np.round(crowded + FORESHORTENED * short, 3)))
     plane = flat[:, best]
     turns = np.radians(np.arange(0.0, 180.0, 5.0))
-    heights = [float(np.ptp(plane @ np.array([-np.sin(t), np.cos(t)]))) for t in turns]
+    heights = np.ptp(plane @ np.array([-np.sin(turns), np.cos(turns)]), axis=0)
     t = float(turns[int(np.argmin(np.round(heights, 2)))])
     right, up = plane @ np.array([np.cos(t), np.sin(t)]), plane @ np.array([-np.sin(t), np.cos(t)])
     seen: FloatArray = np.stack([right, up, x @ d[best]], axis=1)
