@@ -22,6 +22,7 @@ from heatwright.report.layout import (
     nice_ticks,
     padded,
     round_below,
+    telling_rows,
     temperature_ticks,
 )
 from heatwright.report.species import Residuals, Species, is_one_set, range_text
@@ -59,6 +60,8 @@ def heat_capacity(species: Species, *, brief: bool = False) -> Figure | None:
     plot = frame(x, y, temperature_ticks(*ends), nice_ticks(least, most), x_name="T / K", y_name="Cp°/R")
     curves = [curve(x, y, *zip(*half, strict=True)) for half in halves]
     dots = curve(x, y, T_table, cp_table)
+    if brief and len(dots) > len(TELLING_K):
+        dots = [dots[i] for i in telling_rows(T_table)]
     marks = [*plot.marks, *_cp_marks(species, plot, curves, dots, limit, brief=brief)]
     columns, rows = _function_rows(species)
     return Figure(

@@ -17,12 +17,12 @@ OWN_CAPTIONS: Final = ("torsion", "conformers")
 
 LEGEND: Final = {
     "structure": "Structures are projected; bonds in colour are treated as torsions.",
-    "cp": "Heat capacity Cp°/R: the line is the two-range polynomial, dots are the table from the partition function "
-    "(shaded: two standard uncertainties, where they were stated); the ranges meet at the dotted line.",
+    "cp": "Heat capacity Cp°/R: the line is the polynomial, whose two ranges meet at the dotted line.",
     "slope": "A step of T d(Cp°/R)/dT at the common temperature (dotted) is a kink of Cp°.",
     "residuals": "Polynomial less table: the band is the proven lower bound of the largest error in Cp°/R of any two "
     "quartics joined with continuous value and slope; dotted is the common temperature.",
-    "cp-shares": "Contributions are stacked in the order of the names at the right.",
+    "cp-shares": "Dots on the heat capacity are points of the table from the partition function (shaded: two standard "
+    "uncertainties, where they were stated). Contributions are stacked in the order of the names at the right.",
     "formation": "ΔfH°(298.15 K) is shown by each route, the first one in use; bars are 95 % uncertainties.",
 }
 """One sentence for each kind of figure."""

@@ -24,10 +24,15 @@ from heatwright.report.species import Species
 STACK_RIGHT: Final = 288.0
 """Where the frame ends to leave room for names at the right."""
 _GAP: Final = 14.0
+_ENOUGH: Final = 16
+"""Up to so many temperatures all are drawn."""
 
 
-def stacked_shares(species: Species, quantity: str) -> Figure | None:
-    """The shares in ``"Cp"`` or ``"S"`` above one another; None without a table of shares."""
+def stacked_shares(species: Species, quantity: str, *, brief: bool = False) -> Figure | None:
+    """The shares in ``"Cp"`` or ``"S"`` above one another; None without a table of shares.
+
+    brief : drawn through every second temperature.
+    """
     table = species.table
     if table is None or len(table.T_K) < 2 or not table.shares:
         return None
@@ -46,8 +51,11 @@ def stacked_shares(species: Species, quantity: str) -> Figure | None:
     plot = frame(x, y, temperature_ticks(*ends), nice_ticks(y.low, y.high), x_name="T / K", y_name=f"{name} / J/mol/K")
     marks: list[Mark] = list(plot.marks)
     wanted = []
+    last = len(table.T_K) - 1
+    drawn = [k for k in range(last + 1) if not brief or last < _ENOUGH or k % 2 == 0 or k == last]
+    T = [table.T_K[k] for k in drawn]
     for i, (lower, upper) in enumerate(layers):
-        top, foot = curve(x, y, table.T_K, upper), curve(x, y, table.T_K, lower)
+        top, foot = (curve(x, y, T, [edge[k] for k in drawn]) for edge in (upper, lower))
         marks += [area([*top, *reversed(foot)], f"area{series(i)}"), line(top, f"edge{series(i)}")]
         wanted.append((top[-1][1] + foot[-1][1]) / 2.0)
     marks += named_at_right([n for n, _ in shown], wanted, plot.box[1:4:2])

@@ -15,6 +15,8 @@ from heatwright.report.palette import LOOKS, figure_css, variables
 _ANCHOR: Final = {"start": "", "middle": " m", "end": " e"}
 NEAR: Final = 0.2
 """How far a point may lie from the line that leaves it out, in canvas units."""
+BRIEF_NEAR: Final = 0.35
+"""The same on a page of very many species."""
 
 
 def inline_svg(figure: Figure, prefix: str, group: str = "", *, brief: bool = False) -> str:
@@ -104,7 +106,7 @@ def _brief_svg(marks: Sequence[Mark]) -> str:
         elif not (isinstance(m, Path) and m.role.startswith("edge")):
             rest.append(m)
     letters = (_letters(words[role], role) for role in ("letter", "small-letter"))
-    return marks_svg(together(rest)) + joined_ticks(words["tick"]) + "".join(letters)
+    return marks_svg(together(rest), BRIEF_NEAR) + joined_ticks(words["tick"]) + "".join(letters)
 
 
 def _letters(words: Sequence[Words], role: str) -> str:
@@ -152,14 +154,14 @@ def _axis_numbers(words: tuple[Words, ...]) -> str:
     return f'<text class="tick" x="{" ".join(x)}" y="{_n(words[0].at[1])}"{dy}>{escape(text)}</text>'
 
 
-def marks_svg(marks: Iterable[Mark]) -> str:
-    """The marks one after another."""
-    return "".join(_mark(m) for m in marks)
+def marks_svg(marks: Iterable[Mark], near: float = NEAR) -> str:
+    """The marks one after another; points nearer to a line than *near* are left out of it."""
+    return "".join(_mark(m, near) for m in marks)
 
 
-def _mark(mark: Mark) -> str:
+def _mark(mark: Mark, near: float) -> str:
     if isinstance(mark, Path):
-        d = "".join(_line(points, mark.closed) for points in mark.lines)
+        d = "".join(_line(points, mark.closed, near) for points in mark.lines)
         return f'<path class="{mark.role}" d="{d}"/>'
     if isinstance(mark, Dots):
         d = "".join(f"M{_n(x)} {_n(y)}h0" for x, y in mark.points)
@@ -175,9 +177,9 @@ def _words(mark: Words) -> str:
     return f'<text class="{mark.role}{_ANCHOR[mark.anchor]}" x="{_n(x)}" y="{_n(y)}">{escape(mark.text)}</text>'
 
 
-def _line(points: Sequence[Point], closed: bool) -> str:
+def _line(points: Sequence[Point], closed: bool, near: float) -> str:
     """A path through the points in steps of whole tenths, so that rounding does not add up."""
-    tenths = [(round(10 * x), round(10 * y)) for x, y in (simplified(points) if len(points) > 2 else points)]
+    tenths = [(round(10 * x), round(10 * y)) for x, y in (simplified(points, near) if len(points) > 2 else points)]
     x, y = tenths[0]
     start = f"M{_t(x)} {_t(y)}"
     if len(tenths) == 2 and not closed:
