@@ -11,7 +11,7 @@ from typing import Final, Literal
 import numpy as np
 
 from heatwright.constants import GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
-from heatwright.findings import Finding, Refused
+from heatwright.findings import Finding, Refused, refusals
 from heatwright.formation.formation import Formation
 from heatwright.molecule import FloatArray
 from heatwright.partition.model import ThermoModel
@@ -102,7 +102,8 @@ class EntryRequest:
 def make_entry(name: str, model: ThermoModel, formation: Formation, options: FitOptions | None = None) -> Entry:
     """Tabulate, fit and judge: the entry of one species.
 
-    Raises Refused when the temperatures cannot carry a polynomial or a value is not finite.
+    Raises Refused when the temperatures cannot carry a polynomial, a value is not finite, the fitted heat capacity is
+    not positive (``cp-not-positive``), or something that was found before is a reason to refuse.
     """
     made = make_entries([EntryRequest(name, model, formation, options or FitOptions())])[0]
     if isinstance(made, Refused):
@@ -198,9 +199,12 @@ def _made_together(
     return [made[i] for i in range(len(requests))]
 
 
-def _entry(request: EntryRequest, polynomial: Nasa7, quality: FitQuality, table: ThermoTable) -> Entry:
+def _entry(request: EntryRequest, polynomial: Nasa7, quality: FitQuality, table: ThermoTable) -> Entry | Refused:
     model, formation = request.model, request.formation
     unsure = table.uncertainty.findings if table.uncertainty else ()
+    findings = (*model.molecule.findings, *model.findings, *unsure, *formation.findings, *quality.findings())
+    if refusals(findings):
+        return Refused(refusals(findings))
     return Entry(
         name=request.name,
         model=model,
@@ -210,7 +214,7 @@ def _entry(request: EntryRequest, polynomial: Nasa7, quality: FitQuality, table:
         table=table,
         note=request.note,
         comments=request.comments,
-        findings=(*model.molecule.findings, *model.findings, *unsure, *formation.findings, *quality.findings()),
+        findings=findings,
     )
 
 

@@ -356,3 +356,25 @@ def test_a_linear_radical_outside_the_table_is_warned_about(run, samples: Path) 
     assert "[linear-radical]" in run("entry", samples / "O2.out", "--dHf298", "0 kJ/mol", "--source", "element").err
     assert "[linear-radical]" not in run("entry", samples / "OH.out", *GIVEN).err
     assert "[linear-radical]" not in run("entry", samples / "HCO.out", *GIVEN).err
+
+
+STEEP = "0:1,3000:100000"
+"""Electronic levels whose heat capacity no two quartics follow: the closest of them is negative at 200 K."""
+
+
+@pytest.mark.parametrize("style", ["nasa7", "yaml", "json", "csv"])
+def test_an_entry_whose_heat_capacity_is_not_positive_is_not_written(run, samples: Path, style: str) -> None:
+    done = run("entry", samples / "N2.out", "--dHf298", "0 kJ/mol", "--electronic", STEEP, "--format", style)
+    assert done.code == 3
+    assert "N2.out: the polynomial's Cp/R is -7.02 at 200 K" in done.err
+    assert "fit a shorter range. [cp-not-positive]" in done.err
+    if style == "json":
+        document = json.loads(done.out)
+        assert document["species"] == []
+        assert [f["code"] for f in document["failed"][0]["findings"]] == ["cp-not-positive"]
+    else:
+        assert done.out == ""
+    shorter = ("--range", "250,1000", "--common", "450")  # the advice helps
+    again = run("entry", samples / "N2.out", "--dHf298", "0 kJ/mol", "--electronic", STEEP, *shorter)
+    assert again.code == 0
+    assert "cp-not-positive" not in again.err

@@ -422,3 +422,25 @@ def test_torsions_and_conformers_are_watched_too(tmp_path: Path) -> None:
     outcome, told = built(folder)
     assert [f.code for f in told.failures["CH3OH"]] == ["scan-unreadable"]
     assert told.failures["CH3OH"][0].where.startswith("scan.csv")
+
+
+def test_an_entry_whose_heat_capacity_is_not_positive_is_refused_as_on_the_command_line(
+    tmp_path: Path, run: Run
+) -> None:
+    steep = 'dHf298 = "0 kJ/mol"\nsource = "test"\nelectronic = "0:1,3000:100000"\n'
+    folder = project(tmp_path, "H2O", "N2", more=steep)
+    code, _, err = run("build", folder)
+    assert code == 3
+    assert "error: N2.out: the polynomial's Cp/R is -7.0" in err
+    assert "[cp-not-positive]" in err
+    assert "1 made, 1 failed (N2); release written to release." in err
+    assert b"\nN2 " not in release(folder)["thermo.dat"]
+
+
+def test_a_first_build_that_makes_nothing_speaks_of_no_release(tmp_path: Path, run: Run) -> None:
+    folder = project(tmp_path, "H2O")
+    (folder / "H2O.out").write_text("")
+    code, _, err = run("build", folder)
+    assert code == 3
+    assert "0 made, 1 failed (H2O); no release was written." in err
+    assert not (folder / "release").exists()

@@ -119,8 +119,12 @@ def _sum_up(manifest: Manifest, outcome: Outcome, reporter: Reporter) -> None:
         words.append(f"{len(outcome.failed)} failed ({', '.join(outcome.failed)})")
     if outcome.kept:
         words.append(f"{len(outcome.kept)} kept as before ({', '.join(outcome.kept)})")
-    shown = manifest.mechanism.release.shown
-    end = f"release written to {shown}" if outcome.written else f"the release in {shown} stays as it was"
+    release = manifest.mechanism.release
+    end = "no release was written"
+    if outcome.written:
+        end = f"release written to {release.shown}"
+    elif os.path.isdir(release.path):
+        end = f"the release in {release.shown} stays as it was"
     reporter.say(f"{', '.join(words)}; {end}.")
 
 

@@ -56,7 +56,7 @@ def round_coefficient(value: float, digits: int = TEXT_DIGITS) -> float:
                     "value-unfit",
                     f"a polynomial coefficient is {value:.8E}",
                     expected="a magnitude below 1E+100, which a two-digit exponent can hold",
-                    action="Check the heat capacity and the temperature range that were fitted",
+                    action="Check the heat capacity and the temperature range that were fitted.",
                 )
             ]
         )

@@ -92,7 +92,7 @@ class FitQuality:
             "cp-not-positive",
             f"the polynomial's Cp/R is {self.least_cp.largest:.4g} at {self.least_cp.at_K:g} K",
             expected="a positive heat capacity over the whole range",
-            action="Check the wavenumbers and electronic levels, or fit a shorter range",
+            action="Check the wavenumbers and electronic levels, or fit a shorter range.",
         )
 
     def _above_classical(self) -> Finding | None:
@@ -102,7 +102,7 @@ class FitQuality:
             "cp-above-classical",
             f"the polynomial's Cp/R is {self.greatest_cp.largest:.4f} at {self.greatest_cp.at_K:g} K",
             expected=f"at most the classical limit of {self.classical_limit_R:.4g}",
-            action="Check the number of modes, or fit a shorter range",
+            action="Check the number of modes, or fit a shorter range.",
         )
 
     def _far_from_minimax(self) -> Finding | None:
@@ -112,7 +112,7 @@ class FitQuality:
             "fit-not-closest",
             f"the largest error in Cp/R is {self.dcp_R.largest:.4g}, at {self.dcp_R.at_K:g} K",
             expected=f"at most {FAR_FROM_MINIMAX:g} times {self.minimax_dCp_R:.4g}, which no such polynomial can beat",
-            action="Look at the heat capacity for a step or a kink, or fit a shorter range",
+            action="Look at the heat capacity for a step or a kink, or fit a shorter range.",
         )
 
 

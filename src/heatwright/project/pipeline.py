@@ -7,7 +7,7 @@ from itertools import chain
 from time import monotonic
 from typing import TYPE_CHECKING, Final
 
-from heatwright.findings import Finding, Refused, refusals
+from heatwright.findings import Finding, Refused
 from heatwright.project.library import Library
 from heatwright.project.lockfile import LockedReference
 from heatwright.project.making import Maker, broken, entries_of, tasks_of
@@ -145,8 +145,8 @@ class Pipeline:
 
 
 def _unfit(entry: Entry) -> Refused | None:
-    """Why an entry must not be written: its name, or a heat capacity that is not positive."""
+    """Why an entry must not be written: a name that does not fit."""
     from heatwright.writing.formats import FORMATS
 
-    faults = (*FORMATS["nasa7"].name_findings(entry.name), *refusals(entry.findings))
+    faults = FORMATS["nasa7"].name_findings(entry.name)
     return Refused(faults) if faults else None
