@@ -95,3 +95,9 @@ def test_wrong_usage(run, samples: Path, options: list[str], words: str) -> None
     assert done.code == 2
     assert words in done.err
     assert done.out == ""
+
+
+def test_a_symmetry_tolerance_that_is_too_large_is_wrong_usage(run, samples) -> None:
+    done = run("table", samples / "H2O.out", "--symmetry-tolerance", 3)
+    assert done.code == 2
+    assert "the symmetry tolerance is at most 0.35 Å, not 3" in done.err

@@ -444,3 +444,29 @@ def test_a_first_build_that_makes_nothing_speaks_of_no_release(tmp_path: Path, r
     assert code == 3
     assert "0 made, 1 failed (H2O); no release was written." in err
     assert not (folder / "release").exists()
+
+
+def test_options_in_words_about_a_species_are_keys(tmp_path: Path, run: Run) -> None:
+    folder = project(tmp_path, "H2O", head="[mechanism]\n")
+    code, _, err = run("build", folder)
+    assert code == 3
+    assert 'expected --dHf298 "VALUE kJ/mol" --source TEXT' in err
+    assert err.count("is the key of that name in the manifest") == 1
+    edit(folder / "heatwright.toml", {'output = "H2O.out"': 'output = "nix.out"'})
+    assert "is the key of that name" not in run("build", folder)[2]
+
+
+def test_a_manifest_without_species_is_no_build(tmp_path: Path, run: Run) -> None:
+    folder = project(tmp_path)
+    code, _, err = run("build", folder)
+    assert code == 3
+    assert err.startswith(f"error: {folder}: the manifest names no species. Write a table [species.NAME]")
+    assert not (folder / ".heatwright.sqlite").exists()
+
+
+def test_words_about_the_store_begin_with_its_path(tmp_path: Path, run: Run) -> None:
+    folder = project(tmp_path, "H2O")
+    (folder / ".heatwright.sqlite").write_bytes(b"this is no store")
+    code, _, err = run("build", folder)
+    assert code == 0
+    assert f"\nwarning: {folder}/.heatwright.sqlite: the store cannot be used" in f"\n{err}"

@@ -13,6 +13,7 @@ from heatwright.partition.inputs import InputUncertainties
 from heatwright.partition.lowmodes import LowModes
 from heatwright.partition.motion import RotationKind
 from heatwright.partition.radicals import ElectronicOption
+from heatwright.structure.symmetry import LARGEST_TOLERANCE_A
 
 if TYPE_CHECKING:
     from heatwright.reading.torsion_scans import Torsion
@@ -59,6 +60,9 @@ class ModelOptions:
             value = getattr(self, name)
             if value is not None and not (isfinite(value) and value > 0.0):
                 raise UsageError(f"{name} must be a positive number, not {value}")
+        if self.symmetry_tolerance_A > LARGEST_TOLERANCE_A:
+            words = f"the symmetry tolerance is at most {LARGEST_TOLERANCE_A} Å, not {self.symmetry_tolerance_A:g}"
+            raise UsageError(words)
         for name in ("symmetry_number", "optical_isomers"):
             value = getattr(self, name)
             if value is not None and value < 1:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import re
 from collections.abc import Sequence
 from dataclasses import dataclass
@@ -113,6 +114,8 @@ def parse_levels(text: str) -> Levels:
 def checked_levels(levels: Sequence[tuple[float, int]]) -> Levels:
     """The levels in ascending order; raises UsageError unless the lowest one is at zero."""
     ordered = tuple(sorted(levels))
+    if not all(math.isfinite(wavenumber) for wavenumber, _ in ordered):
+        raise UsageError("an electronic level has no finite wavenumber; expected a number of 1/cm, such as 139.21:2")
     if not ordered or ordered[0][0] != 0.0:
         raise UsageError(
             "electronic levels are counted from the ground level: the lowest one must be at 0, such as 0:2,139.21:2"

@@ -87,7 +87,7 @@ def take_inventory(
 
 def _sort(inventory: Inventory, path: str, file: str) -> None:
     if not path.isprintable():
-        inventory.unusable.append((path.encode("ascii", "backslashreplace").decode(), "the name cannot be written"))
+        inventory.unusable.append((_printable(path), "the name holds a character that no manifest can; rename it"))
         return
     try:
         molecule = read_output(file)
@@ -98,6 +98,10 @@ def _sort(inventory: Inventory, path: str, file: str) -> None:
             inventory.unusable.append((path, reason(error, file)))
         return
     _sort_molecule(inventory, Found(path, molecule), file)
+
+
+def _printable(path: str) -> str:
+    return "".join(c if c.isprintable() else c.encode("unicode_escape", "replace").decode() for c in path)
 
 
 def _sort_molecule(inventory: Inventory, found: Found, file: str) -> None:
