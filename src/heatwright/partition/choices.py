@@ -8,13 +8,13 @@ from typing import TYPE_CHECKING, Final, Literal, get_args
 
 from heatwright.constants import BAR_PA
 from heatwright.errors import UsageError
-from heatwright.molecule import MassKind
-from heatwright.partition.inputs import InputUncertainties
 from heatwright.partition.lowmodes import LowModes
 from heatwright.partition.motion import RotationKind
-from heatwright.partition.radicals import ElectronicOption
 
 if TYPE_CHECKING:
+    from heatwright.molecule import MassKind
+    from heatwright.partition.inputs import InputUncertainties
+    from heatwright.partition.radicals import ElectronicOption
     from heatwright.reading.torsion_scans import Torsion
 
 HARMONIC: Final = LowModes()

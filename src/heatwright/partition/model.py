@@ -14,12 +14,10 @@ from numpy.typing import ArrayLike
 from heatwright.constants import CM1_KJ_MOL, GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
 from heatwright.elements import composition, element
 from heatwright.findings import Finding, warn
-from heatwright.molecule import FloatArray, MassKind, Molecule
 from heatwright.partition.anharmonic import anharmonic_findings, oscillators
 from heatwright.partition.choices import HARMONIC, ModelOptions
 from heatwright.partition.conformers import Conformer, ConformerMixture
 from heatwright.partition.contribution import ConstantFactor, Contribution, LnQ, total_ln_q
-from heatwright.partition.electronic import Levels
 from heatwright.partition.isomers import isomers_with_torsions
 from heatwright.partition.motion import Motion, motion
 from heatwright.partition.radicals import electronic_choice
@@ -28,13 +26,15 @@ from heatwright.partition.scaling import published_choice, scale_findings
 from heatwright.partition.table import ThermoTable, checked_temperatures, share_of
 from heatwright.partition.translation import Translation
 from heatwright.partition.vibration import zero_point_energy_kJ_mol
-from heatwright.scales import ScaleChoice
-from heatwright.structure.inertia import Inertia
-from heatwright.structure.symmetry import Symmetry
 
 if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, MassKind, Molecule
+    from heatwright.partition.electronic import Levels
     from heatwright.partition.internal_rotation import InternalRotation, TreatedTorsion
     from heatwright.partition.uncertainty import TableUncertainty
+    from heatwright.scales import ScaleChoice
+    from heatwright.structure.inertia import Inertia
+    from heatwright.structure.symmetry import Symmetry
 
 
 _AHEAD: Final = "_ahead"

@@ -14,7 +14,6 @@ from pathlib import Path
 from threading import Lock
 from typing import TYPE_CHECKING, Any, Final
 
-
 if TYPE_CHECKING:
     from heatwright.findings import Finding
     from heatwright.molecule import FloatArray, MassKind, Molecule

@@ -3,9 +3,10 @@
 from __future__ import annotations
 
 import re
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
-from heatwright.molecule import Level
+if TYPE_CHECKING:
+    from heatwright.molecule import Level
 
 _METHODS: Final = {
     "hf": "HF", "rhf": "HF", "uhf": "HF", "rohf": "HF", "scf": "HF", "hartree-fock": "HF",
