@@ -173,4 +173,4 @@ def zero_point_energy_kJ_mol(wavenumbers_cm1: Sequence[float] | FloatArray) -> f
     >>> round(zero_point_energy_kJ_mol([2143.237]), 3)
     12.819
     """
-    return float(0.5 * np.sum(np.asarray(wavenumbers_cm1, dtype=float)) * CM1_KJ_MOL)
+    return float(0.5 * np.asarray(wavenumbers_cm1, dtype=float).sum() * CM1_KJ_MOL)
