@@ -6,19 +6,14 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import cached_property, lru_cache, reduce
 from operator import add
-from typing import Final, Literal
+from typing import TYPE_CHECKING, Final, Literal
 
 import numpy as np
 
 from heatwright.constants import GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
 from heatwright.findings import Finding, Refused, refusals
-from heatwright.formation.formation import Formation
-from heatwright.molecule import FloatArray
-from heatwright.partition.model import ThermoModel
-from heatwright.partition.table import ThermoTable
 from heatwright.polynomial.fit import Fit, check_temperatures, common_temperature, fit_many
 from heatwright.polynomial.minimax import design
-from heatwright.polynomial.nasa7 import Nasa7
 from heatwright.polynomial.quality import (
     FitQuality,
     ResidualCurve,
@@ -26,6 +21,13 @@ from heatwright.polynomial.quality import (
     judged_temperatures,
     residual_curve,
 )
+
+if TYPE_CHECKING:
+    from heatwright.formation.formation import Formation
+    from heatwright.molecule import FloatArray
+    from heatwright.partition.model import ThermoModel
+    from heatwright.partition.table import ThermoTable
+    from heatwright.polynomial.nasa7 import Nasa7
 
 TABLE_TEMPERATURES_K = (
     100.0, 150.0, 200.0, 250.0, 298.15, 300.0, 350.0, 400.0, 500.0, 600.0, 700.0, 800.0, 900.0, 1000.0, 1100.0, 1200.0,

@@ -8,14 +8,14 @@ from math import hypot, inf
 from typing import TYPE_CHECKING, Final, Literal, get_args
 
 from heatwright.findings import Finding, Refused, note, refusals, refuse, warn
-from heatwright.formation.atomization import Atoms
 from heatwright.formation.choices import PLAIN, EnergyChoices, atomized
 from heatwright.formation.formation import Electron, Formation, GivenEnthalpy, formation_given
 from heatwright.formation.references import atom_reference
-from heatwright.partition.model import ThermoModel
 
 if TYPE_CHECKING:
+    from heatwright.formation.atomization import Atoms
     from heatwright.formation.reference_set import ReferenceSet
+    from heatwright.partition.model import ThermoModel
 
 Route = Literal["given", "atomization", "reaction", "network", "best"]
 ROUTES: Final[tuple[str, ...]] = get_args(Route)

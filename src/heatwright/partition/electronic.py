@@ -7,15 +7,17 @@ import re
 from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import cache
-from typing import ClassVar
+from typing import TYPE_CHECKING, ClassVar
 
 import numpy as np
 
 from heatwright.constants import SECOND_RADIATION_CM_K
 from heatwright.errors import UsageError
-from heatwright.molecule import FloatArray
 from heatwright.partition.contribution import LnQ
 from heatwright.resources import data_rows
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
 
 Levels = tuple[tuple[float, int], ...]
 """(wavenumber above the ground level in 1/cm, degeneracy), ascending; the first one is (0, g₀)."""

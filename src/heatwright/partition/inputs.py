@@ -4,11 +4,13 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from math import isfinite
-from typing import Final, Literal
+from typing import TYPE_CHECKING, Final, Literal
 
 from heatwright.errors import UsageError
-from heatwright.molecule import Level
 from heatwright.scales import all_factors, published_factors
+
+if TYPE_CHECKING:
+    from heatwright.molecule import Level
 
 LOW_MODES: Final = 0.2
 """Default relative standard uncertainty of a low mode."""

@@ -10,15 +10,17 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 from math import log, pi
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
 from heatwright.constants import SECOND_RADIATION_CM_K
-from heatwright.molecule import FloatArray
 from heatwright.partition.contribution import LnQ
-from heatwright.partition.potential import Potential
 from heatwright.partition.vibration import HarmonicVibration
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
+    from heatwright.partition.potential import Potential
 
 _POINTS: Final = 720
 """Points in one turn; for a periodic function the mean over equal steps converges faster than any power."""

@@ -217,7 +217,7 @@ def residual_curve(
     phase = (1.0 - np.cos(np.linspace(0.0, np.pi, CURVE_POINTS))) / 2.0  # Chebyshev-Lobatto: dense at the ends
     spread = [low * (high / low) ** phase for low, high in pairwise(edges)]
     inside = np.concatenate([*spread, np.asarray(also_K, dtype=float)])
-    T = np.unique(np.clip(np.append(inside.round(2), edges), edges[0], edges[2]))
+    T = _ascending(np.clip(np.append(inside.round(2), edges), edges[0], edges[2]))
     return ResidualCurve(T, polynomial.cp_R(T) - cp_R(T), polynomial.h_RT(T) - h_RT(T), polynomial.s_R(T) - s_R(T))
 
 
@@ -252,7 +252,14 @@ def _spread(start: float, end: float) -> FloatArray:
             np.geomspace(start, end, POINTS_PER_SPACING)[1:-1],
         ]
     )
-    return np.unique(np.concatenate([[start], inside[(inside > start) & (inside < end)], [end]]))
+    return _ascending(np.concatenate([[start], inside[(inside > start) & (inside < end)], [end]]))
+
+
+def _ascending(values: FloatArray) -> FloatArray:
+    """Each value once, in order: ``numpy.unique`` imports all of ``numpy.ma`` first."""
+    ordered: FloatArray = np.sort(values)
+    first: FloatArray = ordered[np.append(True, ordered[1:] != ordered[:-1])]
+    return first
 
 
 def _values(reference: Reference, T: FloatArray) -> FloatArray:

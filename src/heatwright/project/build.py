@@ -176,7 +176,9 @@ class _Build:
         if files == self._before:
             return False
         switch(release.path, files)
-        self._library.store.put({_lock_key(whole[LOCK_NAME]): json.dumps(document, ensure_ascii=False).encode()})
+        key = _lock_key(whole[LOCK_NAME])
+        self._library.store.put({key: json.dumps(document, ensure_ascii=False).encode()})
+        self._library.store.drop_others("lock", key)  # they are large, and a lock file of old is rarely put back
         return True
 
     def _together(self, plan: Plan, fresh: dict[str, Record]) -> list[Record]:

@@ -12,8 +12,8 @@ from typing import Any, Final
 from heatwright.findings import Finding, Refused, refuse
 from heatwright.project.keys import KEYS
 from heatwright.project.manifest_types import Manifest, Mechanism, OutputFiles, ProjectPath, SpeciesRequest
-from heatwright.project.merging import Draft, contradictions, over, species_request, with_level
-from heatwright.project.paths import Here
+from heatwright.project.merging import Draft, alike, contradictions, over, species_request, with_level
+from heatwright.project.paths import Here, RealPaths
 from heatwright.project.places import Places
 from heatwright.project.tables import CODE, FileTables, Given, Stated, found_files, read_tables
 
@@ -74,6 +74,7 @@ class _Loading:
     faults: list[Finding] = field(default_factory=list)
     broken: set[str] = field(default_factory=set)
     mechanism_is_broken: bool = False
+    real_paths: RealPaths = field(default_factory=RealPaths)
     real: dict[str, str] = field(default_factory=dict)
 
     def outermost(self) -> None:
@@ -181,9 +182,10 @@ class _Loading:
         made = [request for draft in self.drafts if (request := self._request(draft)) is not None]
         taken = {self._real(p.path) for draft in self.drafts for p in _named_files(draft.own)}
         for where, stated, inherited, here in self.globs:
-            for draft in self._found(where, stated, inherited, here, taken):
-                request = self._request(draft)
-                made += [request] if request is not None else []
+            drafts = self._found(where, stated, inherited, here, taken)
+            first = self._request(drafts[0]) if drafts else None
+            if first is not None:
+                made += [first, *(alike(first, draft) for draft in drafts[1:])]
         return made
 
     def _request(self, draft: Draft) -> SpeciesRequest | None:
@@ -232,7 +234,7 @@ class _Loading:
 
     def _real(self, path: str) -> str:
         if path not in self.real:
-            self.real[path] = os.path.realpath(path)
+            self.real[path] = self.real_paths(path)
         return self.real[path]
 
     def check_names(self, species: list[SpeciesRequest]) -> None:

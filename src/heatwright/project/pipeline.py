@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
+from contextlib import suppress
 from itertools import chain
 from time import monotonic
-from typing import TYPE_CHECKING, Final
+from typing import TYPE_CHECKING, Final, TypeVar
 
 from heatwright.findings import Finding, Refused
 from heatwright.project.library import Library
@@ -18,9 +19,10 @@ from heatwright.project.shelf import Shelf
 from heatwright.project.watch import Watch
 
 if TYPE_CHECKING:
-    from heatwright.entry import Entry, EntryRequest
+    from heatwright.entry import Entry
     from heatwright.project.tasks import ReadTask
 
+T = TypeVar("T")
 _BATCH: Final = 128
 """Species made at a time: enough for the fit, few enough for the memory."""
 _WORTH_KEEPING_S: Final = 0.02
@@ -107,7 +109,12 @@ class Pipeline:
     def _made(self, batch: Sequence[Decision], tasks: Mapping[str, tuple[ReadTask, ...]]) -> Iterator[Record]:
         began = monotonic()
         self._library.fetch(task for decision in batch for task in tasks[decision.name])
-        ready = [(decision, made) for decision in batch if (made := self._ingredients(decision))]
+        models = self._each(batch, lambda decision: self._maker.model(decision.request))
+        with suppress(Exception):  # each is asked again by itself, and the one at fault says so
+            self._maker.evaluate((decision.request, model) for decision, model in models)
+        known = {decision.name: model for decision, model in models}
+        sound = [decision for decision, _ in models]
+        ready = self._each(sound, lambda decision: self._maker.ingredients(decision.request, known[decision.name]))
         entries = entries_of([request for _, request in ready])
         good: list[tuple[Decision, Entry, str, tuple[LockedReference, ...]]] = []
         for (decision, _), entry in zip(ready, entries, strict=True):
@@ -130,14 +137,17 @@ class Pipeline:
             self._watch.made(decision, record)
             yield record
 
-    def _ingredients(self, decision: Decision) -> EntryRequest | None:
-        try:
-            return self._maker.ingredients(decision.request)
-        except Refused as error:
-            self._fail(decision, error)
-        except Exception as error:
-            self._fail(decision, broken(error))
-        return None
+    def _each(self, decisions: Sequence[Decision], work: Callable[[Decision], T]) -> list[tuple[Decision, T]]:
+        """What *work* gives for each, without those that fail, which is told."""
+        done = []
+        for decision in decisions:
+            try:
+                done.append((decision, work(decision)))
+            except Refused as error:
+                self._fail(decision, error)
+            except Exception as error:
+                self._fail(decision, broken(error))
+        return done
 
     def _fail(self, decision: Decision, error: Refused) -> None:
         self.failed[decision.name] = error.findings

@@ -18,7 +18,7 @@ from typing import Any, Final, TypeVar
 
 from heatwright.findings import Finding, warn
 
-STORE_VERSION: Final = 1
+STORE_VERSION: Final = 2
 """The layout of the file (``PRAGMA user_version``); a file of another one is set aside."""
 _APPLICATION: Final = 0x48574B31
 _WAIT_S: Final = 60.0
@@ -93,6 +93,13 @@ class Store:
         self._memory.pop(key, None)
         if not self._read_only:
             self._guarded(lambda c: c.execute("DELETE FROM kept WHERE key = ?", (key,)))
+
+    def drop_others(self, kind: str, key: str) -> None:
+        """Forget all values of a kind (``lock``) but one that may still be of use."""
+        if self._read_only:
+            return
+        ends = (f"{kind}:", f"{kind};", key)  # a semicolon comes right after a colon
+        self._guarded(lambda c: c.execute("DELETE FROM kept WHERE key >= ? AND key < ? AND key != ?", ends))
 
     def flush(self) -> None:
         """Write what is waiting, in one transaction."""
@@ -203,7 +210,8 @@ def _check(connection: sqlite3.Connection, read_only: bool) -> None:
     if not tables and not found and not read_only:
         _use_wal(connection)
         connection.execute("BEGIN IMMEDIATE")  # another build may be doing the same
-        connection.execute("CREATE TABLE IF NOT EXISTS kept (key TEXT PRIMARY KEY, value BLOB NOT NULL) WITHOUT ROWID")
+        # with rows, so that keys are found in an index of keys alone: among values of megabytes they are slow to find
+        connection.execute("CREATE TABLE IF NOT EXISTS kept (key TEXT PRIMARY KEY, value BLOB NOT NULL)")
         connection.execute(f"PRAGMA application_id = {_APPLICATION}")
         connection.execute(f"PRAGMA user_version = {STORE_VERSION}")
         connection.execute("COMMIT")

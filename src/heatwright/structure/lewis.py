@@ -13,10 +13,12 @@ from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from heapq import heappop, heappush
 from itertools import product
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
-from heatwright.structure.frame import Frame
 from heatwright.structure.valence import ELECTRONEGATIVITY_UNIT, HIGHEST_ORDER
+
+if TYPE_CHECKING:
+    from heatwright.structure.frame import Frame
 
 DEGENERATE: Final = round(0.6 * ELECTRONEGATIVITY_UNIT)
 """Structures whose charges sit on elements that differ by less than this count alike: O and N do, O and C do not."""

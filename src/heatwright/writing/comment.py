@@ -3,18 +3,20 @@
 from __future__ import annotations
 
 import textwrap
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 from heatwright.constants import ATMOSPHERE_PA, BAR_PA, STANDARD_TEMPERATURE_K
 from heatwright.elements import formula
-from heatwright.entry import Entry
 from heatwright.findings import SEVERITY_WORD, Finding
-from heatwright.formation.formation import Formation
-from heatwright.molecule import Molecule
-from heatwright.partition.model import ThermoModel
-from heatwright.partition.table import ThermoTable
 from heatwright.writing.evidence import evidence
 from heatwright.writing.units import UNITS, Units
+
+if TYPE_CHECKING:
+    from heatwright.entry import Entry
+    from heatwright.formation.formation import Formation
+    from heatwright.molecule import Molecule
+    from heatwright.partition.model import ThermoModel
+    from heatwright.partition.table import ThermoTable
 
 WIDTH: Final = 76
 """Longest comment text, so that a line with its mark stays inside 80 columns."""

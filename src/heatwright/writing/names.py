@@ -5,12 +5,14 @@ from __future__ import annotations
 from collections import Counter
 from collections.abc import Mapping, Sequence
 from pathlib import PurePath
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 from heatwright.elements import formula
 from heatwright.findings import Finding, note, refuse
-from heatwright.molecule import Molecule
 from heatwright.writing.formats import fits_record_name
+
+if TYPE_CHECKING:
+    from heatwright.molecule import Molecule
 
 OUTPUT_ENDINGS: Final = frozenset(
     {".out", ".log", ".gz", ".bz2", ".xz", ".txt", ".fchk", ".fch", ".adfout", ".c4", ".qcout", ".output"}

@@ -7,7 +7,7 @@ import tempfile
 from collections.abc import Mapping, Sequence
 from functools import cache
 from pathlib import Path
-from typing import Any
+from typing import Any, Final
 
 from jinja2 import FileSystemLoader, StrictUndefined, TemplateError
 from jinja2.sandbox import SandboxedEnvironment
@@ -17,9 +17,21 @@ from heatwright.resources import templates
 from heatwright.writing import numbers
 
 
+class _Environment(SandboxedEnvironment):
+    """Sandboxed; what stands in a plain dict, as nearly all that templates ask for does, is found without detours."""
+
+    def getattr(self, obj: Any, attribute: str) -> Any:
+        if type(obj) is dict and attribute in obj and attribute not in _OF_DICTS:
+            return obj[attribute]
+        return super().getattr(obj, attribute)
+
+
+_OF_DICTS: Final = frozenset(dir(dict))
+
+
 @cache
 def _environment(folder: str) -> SandboxedEnvironment:
-    environment = SandboxedEnvironment(
+    environment = _Environment(
         loader=FileSystemLoader(folder),
         undefined=StrictUndefined,
         keep_trailing_newline=True,
@@ -32,6 +44,8 @@ def _environment(folder: str) -> SandboxedEnvironment:
         fixed=numbers.fixed,
         coefficient=numbers.coefficient,
         coefficients=numbers.coefficients,
+        columns=numbers.columns,
+        marked=numbers.marked,
         element_fields=numbers.element_fields,
         continuation=numbers.continuation,
         yaml=numbers.yaml_text,
