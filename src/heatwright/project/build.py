@@ -132,6 +132,7 @@ class _Build:
         self._library.store.flush()
         kept = self._kept(plan, pipeline.failed)
         written = self._write(plan, {**fresh, **kept})
+        pipeline.forget_finished()
         return Outcome(plan, tuple(sorted(fresh)), tuple(sorted(pipeline.failed)), tuple(sorted(kept)), written)
 
     def _kept(self, plan: Plan, failed: Mapping[str, tuple[Finding, ...]]) -> dict[str, Record]:

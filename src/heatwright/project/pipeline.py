@@ -39,6 +39,7 @@ class Pipeline:
         self._shelves = shelves
         self._watch = watch
         self._maker = Maker(library, shelves, watch.said)
+        self._kept: set[str] = set()
 
     def records(self, decisions: Sequence[Decision]) -> Iterator[Record]:
         """A record for each species that can be made, in the order in which they are finished."""
@@ -98,8 +99,13 @@ class Pipeline:
                 self._library.store.drop(key)
                 continue
             found[decision.name] = record
+            self._kept.add(key)
             self._watch.made(decision, record)
         return found
+
+    def forget_finished(self) -> None:
+        """The store need not keep what was finished once that is in the release."""
+        self._library.store.drop_all(self._kept)
 
     def _result_key(self, decision: Decision) -> str:
         """Everything that an entry can depend on; more than it does, as its elements are not known beforehand."""
@@ -133,7 +139,9 @@ class Pipeline:
                 self._fail(decision, record)
                 continue
             if costly:
-                self._library.store.put({self._result_key(decision): packed(record)})
+                key = self._result_key(decision)
+                self._library.store.put({key: packed(record)})
+                self._kept.add(key)
             self._watch.made(decision, record)
             yield record
 

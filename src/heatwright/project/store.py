@@ -4,7 +4,8 @@ It may be deleted at any time and is never the only copy of anything.  Whatever 
 that is damaged or of another version is set aside under another name, and where nothing can be written (a full disk, a
 folder that must not be written to) things are remembered in memory until the end of the run.  Both are said.
 
-Keys are ``KIND:HASH``; the hash covers everything that decides about the value, so a value never gets stale.
+Keys are ``KIND:HASH``; the hash covers everything that decides about the value, so a value never gets stale.  Each
+value has a checksum, which SQLite itself does not keep: one that was damaged on the disk is as good as missing.
 """
 
 from __future__ import annotations
@@ -12,13 +13,14 @@ from __future__ import annotations
 import os
 import sqlite3
 import time
-from collections.abc import Callable, Iterable, Mapping
+import zlib
+from collections.abc import Callable, Iterable, Mapping, Sequence
 from contextlib import suppress
 from typing import Any, Final, TypeVar
 
 from heatwright.findings import Finding, warn
 
-STORE_VERSION: Final = 2
+STORE_VERSION: Final = 3
 """The layout of the file (``PRAGMA user_version``); a file of another one is set aside."""
 _APPLICATION: Final = 0x48574B31
 _WAIT_S: Final = 60.0
@@ -62,7 +64,8 @@ class Store:
         found = {key: value for key in wanted if (value := self._waiting.get(key, self._memory.get(key))) is not None}
         missing = [key for key in wanted if key not in found]
         for start in range(0, len(missing), _AT_ONCE):
-            found.update(self._rows("key, value", missing[start : start + _AT_ONCE]))
+            rows = self._rows("key, value", missing[start : start + _AT_ONCE])
+            found.update({key: sealed[_SEAL:] for key, sealed in rows if _is_whole(key, sealed)})
         return found
 
     def has(self, keys: Iterable[str]) -> set[str]:
@@ -94,6 +97,12 @@ class Store:
         if not self._read_only:
             self._guarded(lambda c: c.execute("DELETE FROM kept WHERE key = ?", (key,)))
 
+    def drop_all(self, keys: Iterable[str]) -> None:
+        """Forget values that have served, in one transaction."""
+        rows = [(key,) for key in keys]
+        if rows and not self._read_only:
+            self._guarded(lambda c: _change(c, "DELETE FROM kept WHERE key = ?", rows))
+
     def drop_others(self, kind: str, key: str) -> None:
         """Forget all values of a kind (``lock``) but one that may still be of use."""
         if self._read_only:
@@ -108,7 +117,8 @@ class Store:
         if not rows:
             return
         self._memory.update(rows)  # so that they are not lost when the file turns out to be unusable
-        done = self._guarded(lambda c: _write(c, rows))
+        sealed = [(key, _sealed(key, value)) for key, value in rows]
+        done = self._guarded(lambda c: _change(c, "INSERT OR REPLACE INTO kept (key, value) VALUES (?, ?)", sealed))
         self._waiting.clear()
         if done is not None:
             for key, _ in rows:
@@ -187,7 +197,9 @@ def _connected(path: str, read_only: bool) -> sqlite3.Connection:
     """An open connection to a sound store; raises _Unfit, sqlite3.Error or OSError."""
     if not read_only:
         os.makedirs(os.path.dirname(path) or ".", exist_ok=True)
-    mode = "ro" if read_only else "rwc"
+    mode = "rwc"
+    if read_only:  # one that could write clears its journal files away at the end; it is told not to write below
+        mode = "rw" if os.access(path, os.W_OK) and os.access(os.path.dirname(path) or ".", os.W_OK) else "ro"
     connection = sqlite3.connect(f"file:{_quoted(path)}?mode={mode}", uri=True, timeout=_WAIT_S, isolation_level=None)
     try:
         _check(connection, read_only)
@@ -220,9 +232,10 @@ def _check(connection: sqlite3.Connection, read_only: bool) -> None:
     elif found != STORE_VERSION:
         raise _Unfit(f"it is of version {found}, and this heatwright uses version {STORE_VERSION}")
     connection.execute("SELECT count(*) FROM (SELECT key FROM kept LIMIT 1)")
-    connection.execute(
-        "PRAGMA synchronous = NORMAL"
-    )  # with WAL a power failure may cost the last values, never the file
+    if read_only:
+        connection.execute("PRAGMA query_only = ON")
+    # with WAL a power failure may cost the last values, never the file
+    connection.execute("PRAGMA synchronous = NORMAL")
 
 
 def _use_wal(connection: sqlite3.Connection) -> None:
@@ -238,10 +251,22 @@ def _use_wal(connection: sqlite3.Connection) -> None:
             time.sleep(0.02)
 
 
-def _write(connection: sqlite3.Connection, rows: list[tuple[str, bytes]]) -> bool:
+_SEAL: Final = 4
+
+
+def _sealed(key: str, value: bytes) -> bytes:
+    return zlib.crc32(value, zlib.crc32(key.encode())).to_bytes(_SEAL, "little") + value
+
+
+def _is_whole(key: str, sealed: object) -> bool:
+    """Whether this is what was once put under the key."""
+    return isinstance(sealed, bytes) and sealed == _sealed(key, sealed[_SEAL:])
+
+
+def _change(connection: sqlite3.Connection, statement: str, rows: Sequence[tuple[Any, ...]]) -> bool:
     connection.execute("BEGIN IMMEDIATE")
     try:
-        connection.executemany("INSERT OR REPLACE INTO kept (key, value) VALUES (?, ?)", rows)
+        connection.executemany(statement, rows)
         connection.execute("COMMIT")
     except sqlite3.Error:
         with suppress(sqlite3.Error):
