@@ -320,6 +320,12 @@ def test_a_template_of_the_users_own(run, methanol: Path, tmp_path: Path) -> Non
         ("{% for %}\n", 1),
         ("one\ntwo\n{{ 1 / 0 }}\n", 3),
         ("{{ ''.__class__.__mro__ }}", 1),
+        ("x\n{{ cycler.__init__.__globals__ }}", 2),
+        ("{% include '/etc/hostname' %}", 1),
+        ("{% include '../hidden.txt' %}", 1),
+        ("{% macro a() %}{{ a() }}{% endmacro %}\n{{ a() }}", 1),
+        ("{{ species.append(1) }}", 1),
+        ("{{ document.update({}) }}", 1),
     ],
 )
 def test_a_template_with_a_fault(run, methanol: Path, tmp_path: Path, text: str, line: int) -> None:
@@ -334,6 +340,7 @@ def test_a_template_with_a_fault(run, methanol: Path, tmp_path: Path, text: str,
 
 def test_a_missing_template(run, methanol: Path, tmp_path: Path) -> None:
     assert refused(run, "entry", methanol, *GIVEN, "--template", tmp_path / "none.j2") == "template-failed"
+    assert refused(run, "entry", methanol, *GIVEN, "--template", tmp_path) == "template-failed"
 
 
 def test_a_users_symmetry_number_is_recorded(run, methanol: Path) -> None:

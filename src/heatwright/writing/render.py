@@ -10,15 +10,15 @@ from pathlib import Path
 from typing import Any, Final
 
 from jinja2 import FileSystemLoader, StrictUndefined, TemplateError
-from jinja2.sandbox import SandboxedEnvironment
+from jinja2.sandbox import ImmutableSandboxedEnvironment
 
 from heatwright.findings import Refused, refuse
 from heatwright.resources import templates
 from heatwright.writing import numbers
 
 
-class _Environment(SandboxedEnvironment):
-    """Sandboxed; what stands in a plain dict, as nearly all that templates ask for does, is found without detours."""
+class _Environment(ImmutableSandboxedEnvironment):
+    """Sandboxed, and nothing that it sees can be changed by it; what stands in a plain dict, as nearly all that templates ask for does, is found without detours."""
 
     def getattr(self, obj: Any, attribute: str) -> Any:
         if type(obj) is dict and attribute in obj and attribute not in _OF_DICTS:
@@ -30,7 +30,7 @@ _OF_DICTS: Final = frozenset(dir(dict))
 
 
 @cache
-def _environment(folder: str) -> SandboxedEnvironment:
+def _environment(folder: str) -> ImmutableSandboxedEnvironment:
     environment = _Environment(
         loader=FileSystemLoader(folder),
         undefined=StrictUndefined,
@@ -60,17 +60,25 @@ def render_format(template: str, context: Mapping[str, Any]) -> str:
     return _environment(str(templates())).get_template(template).render(context)
 
 
+_FAULTS: Final = (
+    TemplateError, ArithmeticError, LookupError, TypeError, ValueError, OSError, RecursionError, MemoryError,
+)  # fmt: skip
+"""What a template can come to, other than a refusal of one of our filters."""
+
+
 def render_user_template(path: str, context: Mapping[str, Any]) -> str:
     """The text of the user's own template.
 
     Raises Refused with file and line when it cannot be read, is not a template, or asks for an unknown variable.
     """
     file = Path(path)
+    if file.is_dir():
+        raise Refused([refuse("template-failed", "this is a folder", where=path, expected="the file of a template")])
     try:
         return _environment(str(file.parent)).get_template(file.name).render(context)
     except Refused:
         raise
-    except (TemplateError, ArithmeticError, LookupError, TypeError, ValueError, UnicodeDecodeError) as error:
+    except _FAULTS as error:
         line = getattr(error, "lineno", None) or _line_in_template(error, file)
         raise Refused(
             [
