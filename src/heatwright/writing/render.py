@@ -18,7 +18,10 @@ from heatwright.writing import numbers
 
 
 class _Environment(ImmutableSandboxedEnvironment):
-    """Sandboxed, and nothing that it sees can be changed by it; what stands in a plain dict, as nearly all that templates ask for does, is found without detours."""
+    """Sandboxed, and what it sees stays as it is.
+
+    What stands in a plain dict, as nearly all that templates ask for does, is found without detours.
+    """
 
     def getattr(self, obj: Any, attribute: str) -> Any:
         if type(obj) is dict and attribute in obj and attribute not in _OF_DICTS:
