@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 import shutil
 from collections.abc import Callable
 from pathlib import Path
@@ -470,3 +471,14 @@ def test_words_about_the_store_begin_with_its_path(tmp_path: Path, run: Run) -> 
     code, _, err = run("build", folder)
     assert code == 0
     assert f"\nwarning: {folder}/.heatwright.sqlite: the store cannot be used" in f"\n{err}"
+
+
+def test_a_folder_of_atoms_that_may_not_be_read(tmp_path: Path, monkeypatch: pytest.MonkeyPatch, run: Run) -> None:
+    folder = project(tmp_path, "H2O")
+    built(folder)
+    good, access = release(folder), os.access
+    monkeypatch.setattr(os, "access", lambda path, *a, **k: Path(path).name != "atoms" and access(path, *a, **k))
+    code, _, err = run("build", folder)
+    assert code == 3
+    assert "error: H2O.out: atoms: the folder may not be read (permission denied). Correct the folder" in err
+    assert release(folder) == good

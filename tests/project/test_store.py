@@ -248,6 +248,18 @@ def test_a_dry_run_leaves_nothing_behind(tmp_path: Path) -> None:
     assert {path.name: path.read_bytes() for path in folder.iterdir() if path.is_file()} == before
 
 
+def test_a_store_that_may_not_be_written_is_read_all_the_same(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    path = tmp_path / "store.sqlite"
+    with opened(path)[0] as store:
+        store.put({"k": b"1"})
+    before = path.read_bytes()
+    monkeypatch.setattr(os, "access", lambda *_: False)  # root may write anywhere
+    store, said = opened(path, read_only=True)
+    with store:
+        assert store.get(["k"]) == {"k": b"1"}
+    assert (said, path.read_bytes(), [p.name for p in tmp_path.iterdir()]) == ([], before, ["store.sqlite"])
+
+
 def kinds(store: Path) -> dict[str, int]:
     """How many values of each kind are in a store."""
     connection = sqlite3.connect(store)

@@ -197,10 +197,8 @@ def _connected(path: str, read_only: bool) -> sqlite3.Connection:
     """An open connection to a sound store; raises _Unfit, sqlite3.Error or OSError."""
     if not read_only:
         os.makedirs(os.path.dirname(path) or ".", exist_ok=True)
-    mode = "rwc"
-    if read_only:  # one that could write clears its journal files away at the end; it is told not to write below
-        mode = "rw" if os.access(path, os.W_OK) and os.access(os.path.dirname(path) or ".", os.W_OK) else "ro"
-    connection = sqlite3.connect(f"file:{_quoted(path)}?mode={mode}", uri=True, timeout=_WAIT_S, isolation_level=None)
+    how = _way_to_read(path) if read_only else "mode=rwc"
+    connection = sqlite3.connect(f"file:{_quoted(path)}?{how}", uri=True, timeout=_WAIT_S, isolation_level=None)
     try:
         _check(connection, read_only)
     except sqlite3.OperationalError:
@@ -213,6 +211,13 @@ def _connected(path: str, read_only: bool) -> sqlite3.Connection:
         connection.close()
         raise
     return connection
+
+
+def _way_to_read(path: str) -> str:
+    """One that could write clears its journal files away at the end (it is told not to write anything else); where
+    nothing can be written no journal can be opened either, and the file is read as it stands."""
+    may_write = os.access(path, os.W_OK) and os.access(os.path.dirname(path) or ".", os.W_OK)
+    return "mode=rw" if may_write else "mode=ro&immutable=1"
 
 
 def _check(connection: sqlite3.Connection, read_only: bool) -> None:
