@@ -14,11 +14,16 @@ import pytest
 from heatwright.cli.main import main
 from heatwright.findings import Refused
 from heatwright.project.build import build, dry_run
+from heatwright.project.executors import Engine
+from heatwright.project.library import Library
 from heatwright.project.lockfile import read_lock
 from heatwright.project.manifest import load_manifest
 from heatwright.project.manifest_types import ModelChoice, SpeciesRequest
 from heatwright.project.plan import check_pressure
+from heatwright.project.store import Store
+from heatwright.project.tasks import ReadTask
 from heatwright.project.watch import Watch
+from outside import SHARED, needs_shared
 from projects import MECHANISM, SAMPLES, Told, add_by_hand, built, edit, project, release
 
 Run = Callable[..., tuple[int, str, str]]
@@ -482,3 +487,39 @@ def test_a_folder_of_atoms_that_may_not_be_read(tmp_path: Path, monkeypatch: pyt
     assert code == 3
     assert "error: H2O.out: atoms: the folder may not be read (permission denied). Correct the folder" in err
     assert release(folder) == good
+
+
+def test_the_points_beside_an_output_of_xtb_belong_to_the_scan(tmp_path: Path) -> None:
+    folder = project(tmp_path, "CH3OH", more='torsions = "scan/x.out"\n')
+    (folder / "scan").mkdir()
+    (folder / "scan" / "x.out").write_text("the output")
+    scan = ReadTask(path=str(folder / "scan" / "x.out"), torsion="")
+
+    def looked() -> tuple[str, list[str]]:
+        (decision,) = dry_run(load_manifest(folder), Told()).decisions
+        with Store(str(folder / "none"), lambda finding: None, read_only=True) as store:
+            return Library(store, Engine()).key(scan), [file.path for file in decision.files]
+
+    alone, files = looked()
+    assert files == ["CH3OH.out", "scan/x.out"]
+    keys = {alone}
+    for content in ("one", "two"):
+        (folder / "scan" / "xtbscan.log").write_text(content)
+        key, files = looked()
+        keys.add(key)
+        assert files == ["CH3OH.out", "scan/x.out", "scan/xtbscan.log"]
+    assert len(keys) == 3
+
+
+@needs_shared
+def test_a_scan_by_xtb_whose_points_come_later(tmp_path: Path, run: Run) -> None:
+    assert SHARED is not None
+    source = SHARED / "outputs" / "xtb651_h2o2_relaxed_torsion_scan"
+    folder = project(tmp_path, "H2O", more='torsions = "scan/h2o2_scan.out"\n')
+    (folder / "scan").mkdir()
+    shutil.copy(source / "h2o2_scan.out", folder / "scan")
+    assert "xTB writes the points of a scan into xtbscan.log, and there is none beside" in run("build", folder)[2]
+    shutil.copy(source / "xtbscan.log", folder / "scan")
+    err = run("build", folder)[2]
+    assert "there is none beside" not in err
+    assert "[scan-of-another]" in err

@@ -21,6 +21,7 @@ from heatwright.project.tasks import (
     content_hash,
     do_task,
     do_tasks,
+    points_beside,
     read_key,
 )
 
@@ -85,7 +86,8 @@ class Library:
     def key(self, task: ReadTask) -> str:
         """The store's key of what a task gives now."""
         if task not in self._keys:
-            self._keys[task] = read_key(task, self.sha256(task.path))
+            beside = points_beside(task.path) if task.torsion is not None else ""
+            self._keys[task] = read_key(task, self.sha256(task.path) + (self.sha256(beside) if beside else ""))
         return self._keys[task]
 
     def fetch(self, tasks: Iterable[ReadTask]) -> None:

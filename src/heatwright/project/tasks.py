@@ -181,6 +181,15 @@ def read_key(task: ReadTask, sha256: str) -> str:
     return f"read:{hashlib.sha256(words.encode()).hexdigest()}"
 
 
+_SCAN_POINTS: Final = "xtbscan.log"
+
+
+def points_beside(scan: str) -> str:
+    """The file with the points that is read along with the output of a scan by xTB; empty when there is none."""
+    beside = os.path.join(os.path.dirname(scan), _SCAN_POINTS)
+    return beside if not os.path.isdir(scan) and beside != scan and os.path.isfile(beside) else ""
+
+
 def content_hash(path: str) -> str:
     """SHA-256 of a file's bytes, or of names and contents of the files in a folder; empty when it cannot be read."""
     try:
