@@ -280,8 +280,11 @@ def test_a_changed_pressure_does_not_let_an_old_entry_stay(tmp_path: Path) -> No
     built(folder)
     edit(folder / "heatwright.toml", {"[mechanism]\n": '[mechanism]\npressure = "1atm"\n'})
     (folder / "H2O.out").write_text("no output\n")
-    outcome, _ = built(folder, keep_previous=True)
+    outcome, told = built(folder, keep_previous=True)
     assert (outcome.failed, outcome.kept) == (("H2O",), ())
+    assert [f.found for f in told.findings] == [
+        "the earlier entry of H2O is for another standard pressure and cannot be kept"
+    ]
     lock = read_lock(folder / "release" / "thermo.lock.toml")
     assert (list(lock.species), lock.standard_pressure_Pa) == (["CO2"], 101325.0)
 

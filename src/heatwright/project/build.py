@@ -14,7 +14,7 @@ from dataclasses import dataclass, replace
 from typing import Final
 
 from heatwright import __version__
-from heatwright.findings import Finding, Refused, refusals
+from heatwright.findings import Finding, Refused, refusals, warn
 from heatwright.project.executors import Engine
 from heatwright.project.fingerprint import tool_fingerprint
 from heatwright.project.library import Library
@@ -144,6 +144,8 @@ class _Build:
             if not self._keep_previous or decision.name not in failed or old is None or set(block) != set(FILES):
                 continue
             if plan.lock is None or plan.lock.standard_pressure_Pa != _pressure_Pa(self._manifest):
+                words = f"the earlier entry of {decision.name} is for another standard pressure and cannot be kept"
+                self._watch.said(warn("pressures-mixed", words, where=decision.request.where))
                 continue
             why = refusals(failed[decision.name]) or failed[decision.name]
             texts = {f: with_remark(f, block[f], f"{_KEPT}: {why[0].text}", _KEPT) for f in FILES}
