@@ -46,7 +46,7 @@ def round_coefficient(value: float, digits: int = TEXT_DIGITS) -> float:
     """
     if not isfinite(value):
         raise Refused([refuse("not-a-number", f"a polynomial coefficient is {value}", expected="a finite number")])
-    rounded = float(f"{value:.{digits - 1}E}")
+    rounded = float(f"{value:.{digits}g}")
     if abs(rounded) < 1.0e-99:
         return 0.0
     if abs(rounded) >= 1.0e100:

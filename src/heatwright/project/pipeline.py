@@ -25,6 +25,8 @@ if TYPE_CHECKING:
 T = TypeVar("T")
 _BATCH: Final = 128
 """Species made at a time: enough for the fit, few enough for the memory."""
+_BATCH_BESIDE: Final = 32
+"""The same while others read, who would have to wait for the last ones."""
 _WORTH_KEEPING_S: Final = 0.02
 """Entries that took less than this each (torsions, conformers and sums over levels take more) are made again sooner
 than they would be kept."""
@@ -67,13 +69,14 @@ class Pipeline:
         ready = [decision for decision in decisions if not missing[decision.name]]
         every = chain(first, (task for decision in decisions for task in tasks[decision.name]))
         labelled = False
+        batch = _BATCH if self._library.engine.workers == 1 else _BATCH_BESIDE
         for key in self._library.reading(every, self._watch.reading):
             of_references.discard(key)
             for decision in waiting.get(key, ()):
                 missing[decision.name] -= 1
                 if not missing[decision.name]:
                     ready.append(decision)
-            if len(ready) >= _BATCH and not of_references:
+            if len(ready) >= batch and not of_references:
                 labelled = labelled or self._label()
                 yield ready
                 ready = []

@@ -285,7 +285,8 @@ def _output_reasons(files: tuple[LockedFile, ...], old: LockedSpecies) -> tuple[
 
 
 def _option_reasons(choices: Mapping[str, Any], old: LockedSpecies) -> tuple[Reason, ...]:
-    names = [name for name, _ in _FIELDS if choices.get(name) != old.choices.get(name)]
+    moved = {name for name in choices.keys() | old.choices.keys() if choices.get(name) != old.choices.get(name)}
+    names = [name for name, _ in _FIELDS if name in moved]
     words = [f"{name} {_word(old.choices.get(name))} -> {_word(choices.get(name))}" for name in names]
     return (Reason("options changed", ", ".join(words)),) if words else ()
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 import re
 from collections.abc import Callable, Mapping, Sequence
 from functools import lru_cache
-from json.encoder import encode_basestring
+from json.encoder import JSONEncoder, encode_basestring
 from math import isfinite
 from typing import Any, Final
 
@@ -54,6 +54,8 @@ def _flag(value: bool) -> str:
 
 
 def _list(value: Sequence[object]) -> str:
+    if _SCALARS.issuperset(map(type, value)):
+        return _ENCODED(value).replace("\x7f", "\\u007f")  # of these JSON and TOML have the same spelling
     return f"[{', '.join([_value(item) for item in value])}]"
 
 
@@ -66,6 +68,8 @@ def _text(value: str) -> str:
     return encode_basestring(value).replace("\x7f", "\\u007f")
 
 
+_SCALARS: Final = frozenset({str, int, float, bool})
+_ENCODED: Final = JSONEncoder(ensure_ascii=False, allow_nan=False).encode
 _WRITERS: Final[dict[type, Callable[[Any], str]]] = {
     str: _text, float: _number, bool: _flag, int: str, list: _list, tuple: _list, dict: _table,
 }  # fmt: skip

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 from collections import Counter
 from collections.abc import Mapping, Sequence
 from pathlib import PurePath
@@ -27,9 +28,11 @@ def name_of_file(path: str) -> str:
     >>> name_of_file("runs/CH3OH.log.gz")
     'CH3OH'
     """
-    name = PurePath(path).name
-    while PurePath(name).suffix.lower() in OUTPUT_ENDINGS:
-        name = PurePath(name).stem
+    name = os.path.basename(path) or PurePath(path).name
+    stem, ending = os.path.splitext(name)
+    while ending.lower() in OUTPUT_ENDINGS:
+        name = stem
+        stem, ending = os.path.splitext(name)
     return name
 
 
