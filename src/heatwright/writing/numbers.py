@@ -132,6 +132,24 @@ def yaml_text(text: str) -> str:
     return json.dumps(text, ensure_ascii=False)
 
 
+def yaml_map(values: Mapping[str, int]) -> str:
+    """Whole numbers by name as a YAML mapping on one line.
+
+    >>> yaml_map({"N": 1, "O": 1})
+    '{"N": 1, O: 1}'
+    """
+    return f"{{{', '.join([f'{yaml_text(name)}: {value}' for name, value in values.items()])}}}"
+
+
+def comma(values: Sequence[float]) -> str:
+    """Numbers with commas between them, each in the shortest form that reads back.
+
+    >>> comma([200.0, 1000.0])
+    '200.0, 1000.0'
+    """
+    return ", ".join(map(str, values))
+
+
 def csv_text(text: str) -> str:
     """*text* as one CSV field.
 

@@ -52,6 +52,8 @@ def _environment(folder: str) -> ImmutableSandboxedEnvironment:
         element_fields=numbers.element_fields,
         continuation=numbers.continuation,
         yaml=numbers.yaml_text,
+        yaml_map=numbers.yaml_map,
+        comma=numbers.comma,
         json=numbers.json_text,
         csv=numbers.csv_text,
     )
