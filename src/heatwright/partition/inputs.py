@@ -133,6 +133,7 @@ def default_scale(level: Level | None) -> tuple[float, str]:
 
     Where none is published for the level, the one that is published for another level stands in, and it is said.
 
+    >>> from heatwright.molecule import Level
     >>> value, source = default_scale(Level("HF", "6-31G*"))
     >>> round(value, 4), source[:14]
     (0.0256, 'Irikura, Johns')

@@ -37,6 +37,7 @@ class PitzerGwinnRotor:
     potential, F_cm1 : V(φ) and the rotational constant, 1/cm.   symmetry_number : σ.
     With a constant potential this is the classical free rotor.
 
+    >>> from heatwright.partition.potential import Potential
     >>> ethane = PitzerGwinnRotor(Potential(512.0, (0.0, 0.0, -512.0), (0.0, 0.0, 0.0)), 10.70, 3)
     >>> round(float(ethane.ln_q(np.array([298.15])).s_R[0]) * 8.31446261815324, 1)
     6.9

@@ -236,6 +236,7 @@ def lewis_structures(frame: Frame) -> Solution | None:
 
     Raises TooWide when the graph is too large and too branched to be counted.
 
+    >>> from heatwright.structure.frame import Frame
     >>> ozone = lewis_structures(Frame((8, 8, 8), ((0, 1), (1, 2)), 0, 0)).structures()
     >>> ozone.count, [sorted(o) for o in ozone.orders], ozone.charges
     (2, [[1, 2], [1, 2]], (-0.5, 1.0, -0.5))
