@@ -63,7 +63,11 @@ def formation_of(model: ThermoModel, request: RouteRequest) -> Formation:
         raise Refused([_no_way(model)])
     if route == "best":
         return _best(model, request)
-    return _BY_ROUTE[route](model, request)
+    made = _BY_ROUTE[route](model, request)
+    if request.given is None or route == "given":
+        return made
+    words = f"the enthalpy of formation that is given ({request.given[0].text}) is not used, as the route is {route}"
+    return replace(made, findings=(*made.findings, note("route", f"{words}, which gives {_value(made)}")))
 
 
 def _no_way(model: ThermoModel) -> Finding:

@@ -26,6 +26,9 @@ TEXT_RESOLUTION_R: Final = 1.0e-5
 """Errors in Cp/R below this come from the nine digits of the text, not from the fit."""
 FAR_FROM_MINIMAX: Final = 1.10
 """A fit whose error is more than this times the proven lower bound is pointed out."""
+COARSE: Final = 0.02
+"""An error above this part of the largest Cp is pointed out however close to the bound it is (molecules from 200 to
+6000 K have half a percent at most; common practice, no source)."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -82,7 +85,7 @@ class FitQuality:
 
     def findings(self) -> tuple[Finding, ...]:
         """What has to be said about the polynomial; empty when all is well."""
-        candidates = (self._not_positive(), self._above_classical(), self._far_from_minimax())
+        candidates = (self._not_positive(), self._above_classical(), self._far_from_minimax(), self._coarse())
         return tuple(f for f in candidates if f is not None)
 
     def _not_positive(self) -> Finding | None:
@@ -113,6 +116,17 @@ class FitQuality:
             f"the largest error in Cp/R is {self.dcp_R.largest:.4g}, at {self.dcp_R.at_K:g} K",
             expected=f"at most {FAR_FROM_MINIMAX:g} times {self.minimax_dCp_R:.4g}, which no such polynomial can beat",
             action="Look at the heat capacity for a step or a kink, or fit a shorter range.",
+        )
+
+    def _coarse(self) -> Finding | None:
+        most = COARSE * self.greatest_cp.largest
+        if self.dcp_R.largest <= most:
+            return None
+        return warn(
+            "fit-coarse",
+            f"the polynomial's Cp/R is off by {self.dcp_R.largest:.4g} at {self.dcp_R.at_K:g} K",
+            expected=f"at most {most:.4g}, {COARSE:.0%} of the largest Cp/R",
+            action="Two quartics cannot follow this heat capacity: fit a shorter range, or find what makes the step.",
         )
 
 

@@ -120,10 +120,10 @@ def fit_options(choice: FitChoice) -> FitOptions:
 
 
 def stated_enthalpy(choice: FormationChoice) -> tuple[GivenEnthalpy, str | None] | None:
-    """The enthalpy of formation that is stated and its source; None where the route makes no use of one."""
+    """The enthalpy of formation that is stated and its source; None where there is none."""
     from heatwright.formation.formation import parse_enthalpy
 
-    if choice.dHf298 is None or choice.route in ("atomization", "reaction", "network"):
+    if choice.dHf298 is None:
         return None
     return parse_enthalpy(choice.dHf298), choice.source
 
