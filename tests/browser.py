@@ -59,7 +59,7 @@ class Browser:
         self.events: list[dict[str, Any]] = []
         target = self._call("Target.createTarget", url="about:blank")["targetId"]
         self._session = self._call("Target.attachToTarget", targetId=target, flatten=True)["sessionId"]
-        for domain in ("Page", "Network", "Log", "Runtime"):
+        for domain in ("Page", "Network", "Log", "Runtime", "Performance"):
             self._call(f"{domain}.enable")
 
     def close(self) -> None:
@@ -97,6 +97,10 @@ class Browser:
     def picture(self) -> bytes:
         """What is seen, as PNG."""
         return base64.b64decode(self._call("Page.captureScreenshot", format="png")["data"])
+
+    def counters(self) -> dict[str, float]:
+        """The browser's own counters of the tab: nodes, seconds of style, layout, scripts and tasks."""
+        return {m["name"]: m["value"] for m in self._call("Performance.getMetrics")["metrics"]}
 
     def _call(self, method: str, **parameters: Any) -> Any:
         self._number += 1

@@ -42,12 +42,23 @@ def _given(value: str = "-200.7 +/- 0.2 kJ/mol") -> RouteRequest:
 
 
 @cache
+def _outputs() -> tuple[list[Any], list[Any]]:
+    """Molecules and atoms of the sample outputs."""
+    molecules = [read_output(str(f), with_hessian=True) for f in sorted(SAMPLES.glob("*.out"))]
+    return molecules, [read_output(str(f)) for f in sorted((SAMPLES / "atoms").iterdir()) if f.suffix == ".out"]
+
+
+@cache
+def _references() -> Any:
+    molecules, atoms = _outputs()
+    return collect_references(molecules, collect_atoms(tuple(atoms)), reference_species(), ModelOptions(**SCALES))
+
+
+@cache
 def entries() -> dict[str, Entry]:
     """A hindered rotor, a scan, conformers with uncertainties, routes through references, an atom, a small molecule."""
-    molecules = [read_output(str(f), with_hessian=True) for f in sorted(SAMPLES.glob("*.out"))]
-    atoms = [read_output(str(f)) for f in sorted((SAMPLES / "atoms").iterdir()) if f.suffix == ".out"]
-    plain = ModelOptions(**SCALES)
-    references = collect_references(molecules, collect_atoms(tuple(atoms)), reference_species(), plain)
+    molecules, atoms = _outputs()
+    plain, references = ModelOptions(**SCALES), _references()
     by_name = {Path(m.source.file).stem: m for m in molecules}
     made: dict[str, Entry] = {}
 
@@ -90,10 +101,22 @@ def moved(kJ_mol: float) -> dict[str, Any]:
     return changes_of(set_of(old, "old"), set_of(list(shown().values()), "new"))
 
 
-def many(n: int) -> dict[str, Any]:
-    """A document of *n* species of the usual size: those of :func:`entries` over and over, under other names."""
-    documents = [document_of(e) for e in entries().values()]
+def many(n: int, *, rich: bool = False) -> dict[str, Any]:
+    """A document of *n* species of the usual size: those of :func:`entries` over and over, under other names.
+
+    rich : all of them with two torsions and the ledgers of three routes, see :func:`rich_entry`.
+    """
+    documents = [document_of(e) for e in ([rich_entry()] if rich else entries().values())]
     return whole_document([documents[i % len(documents)] | {"name": f"S{i}"} for i in range(n)], [])
+
+
+@cache
+def rich_entry() -> Entry:
+    """Dimethyl ether with two hindered rotors, and reactions, a network and atomization for its ΔfH°."""
+    texts = ("4-1-2-3 n=3 V=900 cm-1", "1-2-3-7 n=3 V=900 cm-1")
+    rotors = ModelOptions(**SCALES, torsions=tuple(map(read_torsion, texts)))
+    model = build_model(read_output(str(SAMPLES / "CH3OCH3.out"), with_hessian=True), rotors)
+    return make_entry("CH3OCH3", model, formation_of(model, RouteRequest(route="best", references=_references())))
 
 
 def places(mark_lines: Any, x: Any, y: Any) -> np.ndarray:

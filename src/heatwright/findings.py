@@ -225,6 +225,8 @@ CODES: Final[dict[str, str]] = {
     "no-release": "A folder holds no release, or the files of a release contradict each other.",
     "pressure-differs": "Entries for different standard pressures were compared, or were to be put into one file.",
     "entry-edited": "An entry of a release is not the one that the lock file records.",
+    "not-remade": "A species of a release could not be made again, or not the same; only the release is shown.",
+    "made-from-others": "A species of a release comes out the same, but not from the same files or choices.",
     "enthalpy-scale": "Two files count enthalpies from different zeros for the elements; no reaction notices.",
     "mechanism-wrong": "The phases, sections or equations of a mechanism cannot be read, or contradict each other.",
     "mechanism-choice": "Which reactions of a mechanism were taken is said.",

@@ -3,15 +3,17 @@
 from __future__ import annotations
 
 import json
+import re
 import subprocess
 import sys
 from collections.abc import Callable
 from dataclasses import replace
 from pathlib import Path
-from typing import Any
+from typing import Any, get_args
 
 import pytest
 
+from heatwright.findings import Severity
 from heatwright.reading.entries import read_entries
 from heatwright.resources import sample_files
 from thermo_files import CH4, cantera_data, record, section
@@ -65,14 +67,31 @@ def test_from_an_unknown_file_to_a_mended_one_in_two_commands(run: Run, strange:
 def test_thresholds_of_failing(run: Run, strange: Path, tmp_path: Path) -> None:
     clean = cantera_data() / "silicon.yaml"
     assert run("audit", str(clean)).code == 0
-    assert run("audit", str(clean), "--fail-on", "note").code == 1
+    assert run("audit", str(clean), "--fail-on", "none").code == 1
     warned = tmp_path / "warned.dat"
     p = read_entries(cantera_data() / "gri30.yaml").named("CH4")[0].polynomial
     assert p is not None
     shifted = replace(p, high=(*p.high[:5], p.high[5] + 2.0, p.high[6]))
     warned.write_bytes(section(record("CH4", {"C": 1, "H": 4}, shifted)))
-    assert [run("audit", str(warned), "--fail-on", t).code for t in ("refuse", "warn", "note")] == [0, 1, 1]
-    assert run("audit", str(strange), "--fail-on", "refuse").code == 1
+    levels = ("none", "note", "warn", "refuse")
+    assert [run("audit", str(clean), "--fail-on", t).code for t in levels] == [1, 0, 0, 0]
+    assert [run("audit", str(warned), "--fail-on", t).code for t in levels] == [1, 1, 0, 0]
+    assert [run("audit", str(strange), "--fail-on", t).code for t in levels] == [1, 1, 1, 0]
+    assert run("audit", str(warned)).code == 1
+    # what is allowed is not counted, and the words say what was not
+    assert "Worse than --fail-on note: 1 warning.\n" in run("audit", str(warned)).err
+    assert run("audit", str(warned), "--fail-on", "warn").err == ""
+    said = run("audit", str(strange), "--fail-on", "warn")
+    assert re.search(r"^Worse than --fail-on warn: \d+ errors\.$", said.err, re.MULTILINE)
+    assert run("audit", str(strange), str(warned), "--fail-on", "none", "-q").err == ""
+
+
+def test_levels_of_failing_are_the_severities_of_findings(run: Run) -> None:
+    said = run("audit", "--help").out
+    for level in ("none", *get_args(Severity)):
+        assert level in said
+    assert "worse than" in said
+    assert run("audit", "x.dat", "--fail-on", "error").code == 2
 
 
 def test_a_file_that_cannot_be_read_is_3_and_the_others_are_done(run: Run, strange: Path) -> None:

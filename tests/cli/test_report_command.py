@@ -272,3 +272,75 @@ def test_an_entry_that_the_lock_does_not_know(run, project: Path, tmp_path: Path
     done = run("report", folder)
     assert done.code == 0
     assert "thermo.lock.toml does not know CH3OCH3x" in done.out
+
+
+def test_a_file_without_anything_to_show_is_not_passed_over_in_silence(run, tmp_path: Path) -> None:
+    file = tmp_path / "other.yaml"
+    file.write_text(
+        "species:\n- name: AR\n  composition: {Ar: 1}\n  thermo:\n    model: constant-cp\n    cp0: 20.8\n",
+        encoding="utf-8",
+    )
+    for words in (("report", file, "-o", tmp_path / "x.html"), ("plot", file, "-o", tmp_path / "figures")):
+        done = run(*words)
+        assert done.code == 3
+        assert "there is nothing to show" in done.err
+        assert "constant-cp" in done.err
+    assert not (tmp_path / "x.html").exists()
+
+
+def test_what_of_a_file_is_not_shown_is_said(run, samples: Path, tmp_path: Path) -> None:
+    file = tmp_path / "therm.dat"
+    run("entry", samples / "CH3OH.out", samples / "H2O.out", *GIVEN, "--dHf298", "-241.8 kJ/mol", "-o", file)
+    lines = file.read_text(encoding="ascii").splitlines()
+    at = next(i for i, row in enumerate(lines) if row.startswith("H2O "))
+    lines[at + 1] = lines[at + 1].replace("E", "X", 1)
+    file.write_text("\r\n".join(lines), encoding="ascii")
+    done = run("report", file, "-o", tmp_path / "x.html")
+    assert done.code == 0
+    assert f"not shown: {file}: H2O: " in done.err
+    assert f"{file}: 2 entries; 1 error in 1, 0 warnings in 0" in run("audit", file).out
+
+
+UNUSUAL = """
+species:
+- name: "é-méthane"
+  composition: {C: 1, H: 4}
+  thermo: &ch4
+    model: NASA7
+    temperature-ranges: [200.0, 1000.0]
+    data:
+    - [5.14987613, -0.0136709788, 4.91800599e-05, -4.84743026e-08, 1.66693956e-11, -10246.6476, -4.64130376]
+- name: "CO"
+  composition: {C: 1, O: 1}
+  thermo:
+    model: NASA7
+    temperature-ranges: [200.0, 1000.0, 3500.0]
+    data:
+    - [3.57953347, -0.00061035368, 1.01681433e-06, 9.07005884e-10, -9.04424499e-13, -14344.086, 3.50840928]
+    - [2.71518561, 0.00206252743, -9.98825771e-07, 2.30053008e-10, -2.03647716e-14, -14151.8724, 7.81868772]
+- name: "Co"
+  composition: {Co: 1}
+  thermo:
+    model: NASA7
+    temperature-ranges: [200.0, 6000.0]
+    data:
+    - [2.5, 0.0, 0.0, 0.0, 0.0, 50000.0, 6.0]
+"""
+
+
+def test_unusual_names_and_one_range(run, tmp_path: Path) -> None:
+    file = tmp_path / "unusual.yaml"
+    file.write_text(UNUSUAL.replace(" &ch4", ""), encoding="utf-8")
+    done = run("report", file)
+    assert done.code == 0
+    assert '<div class="rows bare"' in done.out  # no column for pictures where there are none
+    assert "é-méthane" in done.out
+    first = done.out[done.out.index("<article") : done.out.index("</article")]
+    assert "<dt>polynomial</dt><dd>200–1000 <small>K" in first
+    assert "ranges meet" not in first
+    assert "ranges meet, 1000 K" in done.out
+    assert "Read from unusual.yaml; nothing is known" in first  # not its whole path; that is under provenance
+    assert f"<dd>{file}:" in first
+    assert run("plot", file, "-o", tmp_path / "figures", "--figure", "cp").code == 0
+    names = {f.name for f in (tmp_path / "figures").iterdir()}
+    assert names == {"é-méthane-cp.svg", "CO-cp.svg", "Co-2-cp.svg", "captions.md"}

@@ -11,9 +11,11 @@ import pytest
 
 from browser import LOOK, Browser, needs_chromium
 from heatwright.report.documents import shown_documents
+from heatwright.report.drawing import Words
 from heatwright.report.figures import figures_of
 from heatwright.report.page import Page, page_html
-from heatwright.report.svg import standalone_svg
+from heatwright.report.palette import figure_css
+from heatwright.report.svg import joined_ticks, marks_svg, standalone_svg
 from shown import many, moved, shown
 
 pytestmark = needs_chromium
@@ -58,6 +60,50 @@ def test_every_plot_is_drawn_and_words_do_not_overlap(browser: Browser, page: Pa
     assert seen["cut"] == []
     assert seen["small"] >= 9.0  # the smallest words of a plot, in px
     assert heard(browser, page) == []
+
+
+@pytest.mark.parametrize("width", list(WIDTHS))
+def test_a_long_page_is_drawn_as_well(
+    browser: Browser, tmp_path: Path, width: str, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr("heatwright.report.page.MOST_IN_FULL", 3)
+    species = (*shown().values(), shown_documents(many(1, rich=True)).species[0])
+    file = tmp_path / "long.html"
+    file.write_text(page_html(Page(title="Long", species=species)), encoding="utf-8")
+    browser.open(file, width=WIDTHS[width])
+    seen = browser.ask(LOOK)
+    assert seen["figures"] == sum(len(figures_of(s)) for s in species)
+    assert (seen["faults"], seen["cut"]) == ([], [])
+    browser.ask("document.querySelectorAll('details').forEach(d => d.open = true)")
+    assert browser.ask("document.documentElement.scrollWidth - document.documentElement.clientWidth") <= 0
+    assert heard(browser, file) == []
+    assert browser.printed().startswith(b"%PDF")
+
+
+def test_joined_numbers_stand_where_single_ones_stand(browser: Browser, tmp_path: Path) -> None:
+    """The middle of "1000" on a joined axis of x, the end of "200" on one of y, within 1.5 units."""
+    ticks = [Words((100.0, 50.0), "1000", "tick", "middle"), Words((200.0, 50.0), "−5", "tick", "middle"),
+             Words((40.0, 20.0), "200", "tick", "end"), Words((40.0, 90.0), "0.5", "tick", "end")]  # fmt: skip
+    svg = f'<svg class="fig" viewBox="0 0 300 100">{marks_svg(ticks)}{joined_ticks(ticks)}</svg>'
+    file = tmp_path / "ticks.html"
+    file.write_text(f"<!DOCTYPE html><meta charset='utf-8'><style>{figure_css()}</style>{svg}", encoding="utf-8")
+    browser.open(file)
+    boxes = browser.ask(
+        "[...document.querySelectorAll('text')].map(t => [...t.textContent].map((c, i) => {"
+        "const b = t.getExtentOfChar(i); return [c, b.x, b.x + b.width, b.y]}))"
+    )
+    single, joined = boxes[:4], [c for axis in boxes[4:] for c in axis if c[0] != " "]
+    assert [c[0] for word in single for c in word] == [c[0] for c in joined]
+    at = 0
+    for tick, word in zip(ticks, single, strict=True):
+        mine = joined[at : at + len(word)]
+        at += len(word)
+        assert mine[0][3] == pytest.approx(word[0][3], abs=0.2)
+        middle = [(w[0][1] + w[-1][2]) / 2.0 for w in (word, mine)]
+        end = [w[-1][2] for w in (word, mine)]
+        assert (middle if tick.anchor == "middle" else end)[1] == pytest.approx(
+            (middle if tick.anchor == "middle" else end)[0], abs=1.5
+        )
 
 
 def test_the_look_finds_faults(browser: Browser, tmp_path: Path) -> None:
@@ -167,10 +213,12 @@ def test_figures_stand_alone(browser: Browser, tmp_path: Path) -> None:
 def test_five_hundred_species_are_there_at_once(browser: Browser, tmp_path: Path) -> None:
     file = tmp_path / "many.html"
     file.write_text(page_html(Page(title="Many", species=shown_documents(many(500)).species)), encoding="utf-8")
-    first = []
+    first, loaded = [], []
     for _ in range(3):
         browser.open(file)
         first.append(browser.ask("performance.getEntriesByName('first-contentful-paint')[0].startTime"))
         assert heard(browser, file) == []
-    assert min(first) < 2000.0
+        loaded.append(browser.ask("performance.getEntriesByType('navigation')[0].loadEventEnd"))
+    assert min(first) < 1000.0
+    assert min(loaded) < 4000.0  # 0.8 s alone on the machine; the tests share it
     assert browser.ask("document.querySelectorAll('article').length") == 500

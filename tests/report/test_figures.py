@@ -127,6 +127,32 @@ def test_shares_add_up_to_the_table(name: str, quantity: str) -> None:
     assert np.sum(parts, axis=1) == pytest.approx(sums, abs=0.01 * len(parts[0]))
 
 
+def test_one_set_of_coefficients_has_no_joint() -> None:
+    p = shown()["CO2"].polynomial
+    alone = replace(shown()["CO2"], table=None, polynomial=replace(p, high=p.low))
+    for figure in (heat_capacity(alone), slope(alone)):
+        assert role(figure, "hair") == []
+        assert "meet" not in " ".join(m.text for m in figure.drawing.marks if isinstance(m, Words))
+        assert "meet" not in figure.description + figure.caption
+        assert "common temperature" not in figure.caption
+    assert role(heat_capacity(shown()["CO2"]), "hair")
+
+
+def test_a_torsion_without_levels_says_so() -> None:
+    """The form of Pitzer and Gwinn has no levels: none are drawn, listed or spoken of."""
+    species = shown()["methanol"]
+    none = replace(species.torsions[0], levels_cm1=(), ground_cm1=49.0)
+    figure = torsional_potential(replace(species, torsions=(none,)), 0)
+    assert role(figure, "level") == []
+    assert "drawn without levels" in figure.description
+    assert "horizontal lines" not in figure.caption
+    assert "Pitzer and Gwinn" in figure.caption
+    assert figure.columns == ("angle / °", "V / cm⁻¹")
+    usual = torsional_potential(species, 0)
+    assert "horizontal lines: levels; arrow" in usual.caption
+    assert "levels are drawn, the lowest at" in usual.description
+
+
 def test_a_kink_is_a_step_of_the_slope() -> None:
     species = replace(shown()["CO2"], table=None)
     p = species.polynomial

@@ -9,10 +9,13 @@ from html.parser import HTMLParser
 import pytest
 
 from heatwright.report.documents import shown_documents
-from heatwright.report.page import POLICY, Page, anchors_of, formula_markup, natural, page_html
+from heatwright.report.figures import figures_of
+from heatwright.report.long import LEGEND, common_facts, facts_line
+from heatwright.report.page import POLICY, Page, anchors_of, formula_markup, natural, page_html, shown_number
 from heatwright.report.species import Said, Species
+from heatwright.report.taking import species_of
 from heatwright.writing.comment import CAUTION
-from shown import many, shown
+from shown import document_of, many, rich_entry, shown
 
 
 def page(*species: Species, **changes) -> str:
@@ -130,14 +133,69 @@ def test_orders_of_the_index() -> None:
     assert sorted(places, key=lambda n: int(places[n]["--s"])) == anchors_of(by_s)
 
 
-def test_five_hundred_species() -> None:
-    document = many(500)
+@pytest.mark.parametrize(("rich", "most_MB", "most_elements"), [(False, 9.0, 350), (True, 15.0, 520)])
+def test_five_hundred_species(rich: bool, most_MB: float, most_elements: int) -> None:
+    n = 500 if not rich else 101
+    document = many(n, rich=rich)
     start = time.process_time()
     text = page(*shown_documents(document).species)
     spent = time.process_time() - start
-    assert spent < 10.0
-    assert len(text.encode()) < 15e6
-    assert text.count("<article") == 500
+    assert spent < 20.0 * n / 500
+    assert len(text.encode()) < most_MB * 1e6 * n / 500
+    assert text.count("<article") == n
+    assert len(Elements(text).tags) < most_elements * n  # what opening costs
+
+
+@pytest.fixture
+def long_page(monkeypatch: pytest.MonkeyPatch) -> str:
+    monkeypatch.setattr("heatwright.report.page.MOST_IN_FULL", 3)
+    return page(*shown().values(), species_of(document_of(rich_entry())))
+
+
+def test_a_long_page_says_that_it_is_in_brief(long_page: str) -> None:
+    assert "How to read what follows" in long_page
+    assert "few telling rows" in long_page
+    assert "in a report of fewer of them" in long_page
+    for kind in ("structure", "cp", "residuals", "cp-shares", "formation"):
+        assert long_page.count(LEGEND[kind]) == 1
+    assert LEGEND["slope"].replace("'", "&#39;") not in long_page
+
+
+def test_a_page_of_few_is_not_in_brief() -> None:
+    assert "How to read what follows" not in page()
+
+
+def test_a_long_page_has_every_plot_with_name_description_and_table(long_page: str) -> None:
+    figures = re.findall(r"<figure>.*?</figure>", long_page, re.DOTALL)
+    species = [*shown().values(), species_of(document_of(rich_entry()))]
+    assert len(figures) == sum(len(figures_of(s)) for s in species)
+    for figure in figures:
+        assert re.search(r"role=\"img\"[^>]*><title>[^<]+</title><desc>[^<]+</desc>", figure)
+        assert re.search(r"<details><summary>numbers</summary><table><tr><th>.*<tr><td>", figure, re.DOTALL)
+    ids = [a["id"] for _, a in Elements(long_page).tags if "id" in a]
+    assert len(set(ids)) == len(ids)
+
+
+def test_a_long_page_leaves_out_no_fact_ledger_or_finding(long_page: str) -> None:
+    words = " ".join(Elements(long_page).words)
+    for s in (*shown().values(), species_of(document_of(rich_entry()))):
+        for what, value in s.facts:
+            assert f"{what}: {value}" in words or (what in words and value in words)
+        assert all(f.text in words for f in s.findings)
+        for route in s.routes:
+            assert all(what in words.replace("−", "-") for what, _, _ in route.ledger)
+            assert shown_number(route.dHf298_kJ_mol, 1) in words
+
+
+def test_facts_in_common() -> None:
+    one, two = shown()["CO2"], shown()["methanol"]
+    common = common_facts((one, two))
+    assert dict(common)["program"] == dict(one.facts)["program"]
+    assert "file" not in dict(common)
+    assert common_facts((one,)) == ()
+    own = [fact for fact in one.facts if fact not in common]
+    assert own
+    assert all(": ".join(fact) in facts_line(one, common) for fact in own)
 
 
 @pytest.mark.parametrize("name", list(shown()))

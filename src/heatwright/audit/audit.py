@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections import defaultdict
 from collections.abc import Iterator
 from dataclasses import dataclass, replace
+from typing import Literal
 
 from heatwright.audit.between import composition_findings, copies, doubles, pressure_findings
 from heatwright.audit.facts import Facts, facts_of
@@ -52,9 +53,10 @@ class Audit:
         for finding in (*self.findings, *(f for e in self.entries for f in e.findings)):
             yield finding.at(self.file.path)
 
-    def fails(self, threshold: Severity) -> bool:
-        """Whether a finding is as bad as *threshold* or worse."""
-        return any(RANK[f.severity] >= RANK[threshold] for f in self.all_findings())
+    def worse_than(self, allowed: Severity | Literal["none"]) -> Iterator[Finding]:
+        """The findings that are worse than *allowed*; with ``"none"`` all of them, with ``"refuse"`` never one."""
+        limit = -1 if allowed == "none" else RANK[allowed]
+        return (f for f in self.all_findings() if RANK[f.severity] > limit)
 
 
 def audit_entries(file: EntryFile, *, against: EntryFile | None = None, published: bool = False) -> Audit:

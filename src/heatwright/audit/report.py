@@ -31,8 +31,8 @@ def audit_lines(audit: Audit, level: Severity) -> Iterator[str]:
 
 def _head(audit: Audit, found: list[Finding]) -> str:
     counts = Counter(f.severity for f in found)
-    faulty = sum(e.worst == "refuse" for e in audit.entries)
-    doubtful = sum(e.worst == "warn" for e in audit.entries)
+    each = [{f.severity for f in e.findings} for e in audit.entries]
+    faulty, doubtful = (sum(severity in severities for severities in each) for severity in ("refuse", "warn"))
     passed = f", {len(audit.file.passed_over)} of other models passed over" if audit.file.passed_over else ""
     return (
         f"{audit.file.path}: {len(audit.entries)} {_plural('entry', len(audit.entries))}{passed}; "

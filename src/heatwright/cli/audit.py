@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from typing import TYPE_CHECKING
 
 import click
@@ -13,6 +14,7 @@ if TYPE_CHECKING:
     from heatwright.reading.entry_file import EntryFile
 
 _CHECK_SAYS_NO = 1
+_WORDS = ("error", "warning", "note")
 
 
 @click.command(short_help="Is an existing thermo file sound? Format, continuity, physics.")
@@ -23,10 +25,11 @@ _CHECK_SAYS_NO = 1
 @click.option("--against-published", is_flag=True, help="Compare H°, S° and Cp° at 298.15 K with published values.")
 @click.option(
     "--fail-on",
-    type=click.Choice(["refuse", "warn", "note"]),
-    default="warn",
+    type=click.Choice(["none", "note", "warn", "refuse"]),
+    default="note",
     show_default=True,
-    help="Exit with 1 when a finding is as bad as this or worse.",
+    help="Exit with 1 when a finding is worse than this: `note` fails on warnings and errors, `warn` on errors alone, "
+    "`none` on notes too, `refuse` never.",
 )
 @click.option("--json", "as_json", is_flag=True, help="Every entry with its values and findings, for scripts.")
 @click.option("-q", "--quiet", is_flag=True, help="Say only what is an error.")
@@ -46,23 +49,30 @@ def audit(
     """Check the entries of each FILE (fixed 80-column records, also inside a mechanism, or Cantera YAML; a folder is a
     release).
 
+    Exit code 1 when anything is worse than --fail-on, whose level still passes: by default a note passes, a warning or
+    an error does not.
+
     \b
     Examples:
       heatwright audit therm.dat
-      heatwright audit gri30.yaml --against-published --fail-on refuse
+      heatwright audit gri30.yaml --against-published --fail-on warn
       heatwright audit mechanism.yaml --against release
 
     Errors, warnings and notes go to standard output with file and line; notes are counted unless -v is given.
     `heatwright explain CODE` says what a finding means, `heatwright mend` refits entries that jump.
     """
     from heatwright.audit.release import read_release
+    from heatwright.findings import SEVERITY_WORD
 
     reporter = Reporter(quiet=quiet, verbose=verbose)
     release = None if against is None else read_release(against)
     audits = [a for a in (_one(path, release, against_published, reporter) for path in files) if a is not None]
     _show(audits, reporter, as_json)
-    fails = any(a.fails(fail_on) for a in audits)  # type: ignore[arg-type]
-    ctx.exit(reporter.exit_code or (_CHECK_SAYS_NO if fails else 0))
+    worse = Counter(SEVERITY_WORD[f.severity] for a in audits for f in a.worse_than(fail_on))  # type: ignore[arg-type]
+    if worse:
+        each = [f"{worse[word]} {word}{'s' if worse[word] > 1 else ''}" for word in _WORDS if worse[word]]
+        reporter.say(f"Worse than --fail-on {fail_on}: {' and '.join(each)}.")
+    ctx.exit(reporter.exit_code or (_CHECK_SAYS_NO if worse else 0))
 
 
 def _one(path: str, release: EntryFile | None, published: bool, reporter: Reporter) -> Audit | None:

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import re
+from collections.abc import Sequence
 from typing import TYPE_CHECKING, Any
 
 import click
@@ -95,10 +97,27 @@ def _folder(folder: str) -> Path:
 def _figures(species: tuple[Species, ...]) -> list[tuple[str, tuple[Figure, ...]]]:
     """A name for files, and the figures, of each species."""
     from heatwright.report.figures import figures_of
-    from heatwright.report.page import anchors_of
 
-    names = anchors_of([s.name for s in species])
+    names = file_names([s.name for s in species])
     return [(name, figures_of(s)) for name, s in zip(names, species, strict=True)]
+
+
+def file_names(names: Sequence[str]) -> list[str]:
+    """A name for files of each species: letters of any script, digits and ``.+-_()``; none twice, whatever the case.
+
+    >>> file_names(["CH2(S)", "Co", "CO", "e-méthyl", "a/b", "..", "a:b"])
+    ['CH2(S)', 'Co', 'CO-2', 'e-méthyl', 'a-b', 'species', 'a-b-2']
+    """
+    taken: set[str] = set()
+    out = []
+    for name in names:
+        plain = re.sub(r"[^\w.+()-]", "-", name).strip(".-") or "species"
+        n = 1
+        while (file := plain if n == 1 else f"{plain}-{n}").casefold() in taken:
+            n += 1
+        taken.add(file.casefold())
+        out.append(file)
+    return out
 
 
 def _write(place: Path, named: list[tuple[str, Figure]], format_name: str, force: bool) -> None:

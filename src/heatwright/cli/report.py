@@ -69,6 +69,7 @@ def report(
             subtitle=_subtitle(shown.species),
             species=shown.species,
             failed=shown.failed,
+            remarks=shown.remarks,
             changes=None if before is None else _changes(before, inputs, shown.species),
         )
         text = page_html(page)

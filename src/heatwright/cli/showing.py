@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import re
 from collections.abc import Callable
 from typing import TYPE_CHECKING, Any, TypeVar
 
@@ -45,10 +44,25 @@ def shown_inputs(ctx: click.Context, inputs: tuple[str, ...], options: dict[str,
         _check_no_choices(ctx, options)
     parts = {path: _read(path, kinds[path], reporter) for path in inputs if kinds[path] != "output"}
     parts |= _made(outputs, options, reporter)
+    _say_of_releases([parts[path] for path in dict.fromkeys(inputs)], reporter)
     species = [s for path in dict.fromkeys(inputs) for s in parts[path].species]
     failed = [f for path in dict.fromkeys(inputs) for f in parts[path].failed]
     titles = dict.fromkeys(parts[path].title for path in inputs)
-    return Shown(tuple(species), tuple(failed), next(iter(titles)) if len(titles) == 1 else "")
+    remarks = tuple(dict.fromkeys(r for path in inputs for r in parts[path].remarks))
+    return Shown(tuple(species), tuple(failed), next(iter(titles)) if len(titles) == 1 else "", remarks)
+
+
+def _say_of_releases(parts: list[Shown], reporter: Reporter) -> None:
+    """What became of making releases again: of each as a whole, and (notes only with -v) of its species."""
+    from heatwright.findings import Finding
+
+    for part in parts:
+        for remark in part.remarks:
+            reporter.say(remark)
+        for s in part.species if part.remarks else ():
+            for f in s.findings:
+                if f.code == "not-remade" and (f.severity == "warn" or reporter.verbose):
+                    reporter.findings(s.name, [Finding(f.severity, f.code, f.text.rstrip("."))])  # type: ignore[arg-type]
 
 
 def given_inputs(inputs: tuple[str, ...]) -> tuple[str, ...]:
@@ -67,6 +81,7 @@ def kind_of_input(path: str) -> str:
     from pathlib import Path
 
     from heatwright.findings import Refused
+    from heatwright.project.beside import looks_like_manifest
     from heatwright.project.lockfile import LOCK_NAME
     from heatwright.reading.detection import detect
     from heatwright.reading.entries import looks_like_entries
@@ -85,9 +100,7 @@ def kind_of_input(path: str) -> str:
     except Refused:
         return "output"  # whose reader says what is wrong with the file
     if place.suffix.lower() == ".toml":
-        return (
-            "manifest" if re.search(r"^\s*\[+(?:mechanism|species|outputs|levels)\b", text, re.MULTILINE) else "output"
-        )
+        return "manifest" if looks_like_manifest(text) else "output"
     if is_document(text):
         return "document"
     return "entries" if detect(text).program is None and looks_like_entries(text) else "output"
@@ -107,6 +120,7 @@ def _read(path: str, kind: str, reporter: Reporter) -> Shown:
     from pathlib import Path
 
     from heatwright.audit.release import read_release
+    from heatwright.cli.build import Words
     from heatwright.findings import Refused
     from heatwright.report.documents import Shown, read_documents
     from heatwright.report.records import shown_entries
@@ -116,11 +130,27 @@ def _read(path: str, kind: str, reporter: Reporter) -> Shown:
         if kind == "manifest":
             return _of_manifest(path, reporter)
         if kind == "release":
-            return shown_release(path if Path(path).is_dir() else str(Path(path).parent))
-        return read_documents(path) if kind == "document" else shown_entries(read_release(path))
+            folder = path if Path(path).is_dir() else str(Path(path).parent)
+            return shown_release(folder, lambda manifest: Words(manifest, reporter))
+        shown = read_documents(path) if kind == "document" else shown_entries(read_release(path))
+        return _heard(path, shown, reporter)
     except Refused as error:
         reporter.fail(path, error.findings)
         return Shown((), ((path, tuple(f.text for f in error.findings)),))
+
+
+def _heard(path: str, shown: Shown, reporter: Reporter) -> Shown:
+    """What a file holds, with words on what of it cannot be shown; a file of nothing else has failed."""
+    from heatwright.findings import refuse
+
+    if shown.species:
+        for where, sentences in shown.failed:
+            reporter.say(f"not shown: {where}: {' '.join(sentences)}")
+    else:
+        said = [" ".join(sentences) for _, sentences in shown.failed]
+        found = f"there is nothing to show ({' '.join(said).rstrip('.') or 'the file has no entries'})"
+        reporter.fail(path, (refuse("no-entries", found),))
+    return shown
 
 
 def _of_manifest(path: str, reporter: Reporter) -> Shown:
@@ -147,10 +177,10 @@ def refusals_of(findings: tuple[Finding, ...]) -> tuple[Finding, ...]:
 
 def _shown_entry(made: Entry, where: str) -> Species:
     """An entry as a species to be shown, by way of its JSON document."""
+    from heatwright.report.documents import document_of_entry
     from heatwright.report.taking import species_of
-    from heatwright.writing.document import species_document
 
-    return species_of(species_document(made.name, made.model, made.table, made.findings, made), where)
+    return species_of(document_of_entry(made), where)
 
 
 def _made(outputs: tuple[str, ...], options: dict[str, Any], reporter: Reporter) -> dict[str, Shown]:

@@ -33,7 +33,7 @@ from heatwright.project.record import Record
 from heatwright.project.release import check_folder, locked, read_release, recover, switch
 from heatwright.project.shelf import Shelf
 from heatwright.project.store import Store
-from heatwright.project.texts import FILES, whole_texts, with_remark
+from heatwright.project.texts import FILES, plain_text, whole_texts, with_remark
 from heatwright.project.watch import Watch
 
 _KEPT: Final = "kept from an earlier release"
@@ -95,14 +95,14 @@ class _Build:
         release = self._manifest.mechanism.release
         lock = None
         if LOCK_NAME in self._before:
-            lock = self._lock(_text(self._before[LOCK_NAME]), f"{release.shown}/{LOCK_NAME}")
+            lock = self._lock(plain_text(self._before[LOCK_NAME]), f"{release.shown}/{LOCK_NAME}")
         known = {r.path: r for r in lock.references} if lock is not None else {}
         for folders in dict.fromkeys(request.formation.folders for request in self._manifest.species):
             self._shelves[folders] = Shelf(folders, self._library, known)
         if lock is not None:  # what a species rests on can be a reason
             for shelf in self._shelves.values():
                 shelf.label_all(self._watch.reading)
-        texts = {file: _text(self._before[file]) for file in FILES if file in self._before}
+        texts = {file: plain_text(self._before[file]) for file in FILES if file in self._before}
         return make_plan(self._manifest, self._library, self._shelves, lock, texts)
 
     def _lock(self, text: str, file: str) -> Lock:
@@ -200,11 +200,6 @@ class _Build:
 
 def _lock_key(text: str) -> str:
     return f"lock:{hashlib.sha256(text.encode()).hexdigest()}"
-
-
-def _text(data: bytes) -> str:
-    plain = data.replace(b"\r\n", b"\n") if b"\r" in data else data  # version control may have changed line ends
-    return plain.decode("utf-8", "replace")
 
 
 def _pressure_Pa(manifest: Manifest) -> float:

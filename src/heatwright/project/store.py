@@ -40,7 +40,7 @@ class Store:
     def __init__(self, path: str, say: Say, *, read_only: bool = False) -> None:
         """Open the file at *path*, which is made when it is missing; *say* hears of troubles.
 
-        read_only : nothing is written, and a missing file stays missing.
+        read_only : nothing is written, not even a journal beside the file, and a missing file stays missing.
         """
         self.path = path
         self._say = say
@@ -49,7 +49,7 @@ class Store:
         self._waiting: dict[str, bytes] = {}
         self._since = time.monotonic()
         self._connection: sqlite3.Connection | None = None
-        if not (read_only and not os.path.exists(path)):
+        if not read_only or _is_readable(path):
             self._open()
 
     def __enter__(self) -> Store:
@@ -187,6 +187,12 @@ class Store:
             with suppress(sqlite3.Error):
                 self._connection.close()
         self._connection = None
+
+
+def _is_readable(path: str) -> bool:
+    """Whether the file can be read as it is: a log without its index is that of a build that was killed, and reading
+    it would write the index."""
+    return os.path.exists(path) and (os.path.exists(f"{path}-shm") or not os.path.exists(f"{path}-wal"))
 
 
 class _Unfit(Exception):

@@ -23,6 +23,12 @@ Texts = Mapping[str, str]
 """The block of one species by the name of the file it is in."""
 
 
+def plain_text(data: bytes) -> str:
+    """The text of a release's file; version control may have changed its line ends."""
+    plain = data.replace(b"\r\n", b"\n") if b"\r" in data else data
+    return plain.decode("utf-8", "replace")
+
+
 def entry_texts(entries: Sequence[Entry]) -> list[dict[str, str]]:
     """The blocks of entries, by file, from the templates of the formats.  Raises Refused when a value does not fit."""
     from heatwright.writing.context import records_context

@@ -17,18 +17,20 @@ from heatwright.report.layout import (
     Scale,
     along,
     curve,
+    fewest_rows,
     frame,
     nice_ticks,
     padded,
     round_below,
     temperature_ticks,
 )
-from heatwright.report.species import Residuals, Species
+from heatwright.report.species import Residuals, Species, is_one_set, range_text
 
 WIDTH: Final = 420.0
 LEFT: Final = 46.0
 RIGHT: Final = 402.0
 _SAMPLES: Final = 50
+_FEWER: Final = 26
 
 
 def temperature_scale(low_K: float, high_K: float, right: float = RIGHT) -> Scale:
@@ -36,15 +38,18 @@ def temperature_scale(low_K: float, high_K: float, right: float = RIGHT) -> Scal
     return Scale(low_K, high_K, LEFT, right, log=True)
 
 
-def heat_capacity(species: Species) -> Figure | None:
-    """Cp°/R of the polynomial with the points of the table; None when there is neither."""
+def heat_capacity(species: Species, *, brief: bool = False) -> Figure | None:
+    """Cp°/R of the polynomial with the points of the table; None when there is neither.
+
+    brief : drawn with half as many points.
+    """
     p = species.polynomial
     T_table, cp_table = _table_points(species)
     ends = (p.t_low_K, p.t_high_K) if p else (T_table[0], T_table[-1]) if len(T_table) > 1 else None
     if ends is None:
         return None
     x = temperature_scale(*ends)
-    halves = _halves(p) if p else [list(zip(T_table, cp_table, strict=True))]
+    halves = _halves(p, _FEWER if brief else _SAMPLES) if p else [list(zip(T_table, cp_table, strict=True))]
     everything = [*(cp for half in halves for _, cp in half), *cp_table]
     least, most = padded(min(everything), max(everything), 0.1, 0.5)
     limit = species.classical_limit_R
@@ -54,7 +59,7 @@ def heat_capacity(species: Species) -> Figure | None:
     plot = frame(x, y, temperature_ticks(*ends), nice_ticks(least, most), x_name="T / K", y_name="Cp°/R")
     curves = [curve(x, y, *zip(*half, strict=True)) for half in halves]
     dots = curve(x, y, T_table, cp_table)
-    marks = [*plot.marks, *_cp_marks(species, plot, curves, dots, limit)]
+    marks = [*plot.marks, *_cp_marks(species, plot, curves, dots, limit, brief=brief)]
     columns, rows = _function_rows(species)
     return Figure(
         key="cp",
@@ -66,6 +71,7 @@ def heat_capacity(species: Species) -> Figure | None:
         drawing=Drawing(WIDTH, 274.0, tuple(marks)),
         columns=columns,
         rows=rows,
+        telling=fewest_rows([float(row[0]) for row in rows]),
     )  # fmt: skip
 
 
@@ -82,15 +88,15 @@ def _table_points(species: Species) -> tuple[list[float], list[float]]:
     return [T for T, _ in inside], [cp for _, cp in inside]
 
 
-def _halves(p: Nasa7) -> list[list[tuple[float, float]]]:
+def _halves(p: Nasa7, samples: int) -> list[list[tuple[float, float]]]:
     """(T, Cp/R) along each of the two ranges, both to the common temperature, so that a jump there is seen."""
-    joint = np.geomspace(p.t_low_K, p.t_common_K, _SAMPLES), np.geomspace(p.t_common_K, p.t_high_K, _SAMPLES)
+    joint = np.geomspace(p.t_low_K, p.t_common_K, samples), np.geomspace(p.t_common_K, p.t_high_K, samples)
     each = zip(joint, (p.low, p.high), strict=True)
     return [list(zip(T.tolist(), cp_of(a, T).tolist(), strict=True)) for T, a in each]
 
 
 def _cp_marks(
-    species: Species, plot: Frame, curves: list[list[Point]], dots: list[Point], limit: float | None
+    species: Species, plot: Frame, curves: list[list[Point]], dots: list[Point], limit: float | None, *, brief: bool
 ) -> list[Mark]:
     p, (left, top, right, bottom) = species.polynomial, plot.box
     room = Room((left + 3.0, top - 4.0, right, bottom - 3.0))
@@ -102,18 +108,21 @@ def _cp_marks(
         at = plot.y(limit)
         marks.append(segments([((left, at), (right, at))], "limit"))
         room.curve([(left, at), (right, at)])
-    if p is not None:
+    joined = p is not None and not is_one_set(p)
+    if p is not None and joined:
         join = plot.x(p.t_common_K)
         marks.append(segments([((join, bottom), (join, top))], "hair"))
         room.curve([(join, bottom), (join, top)])
+    if p is not None:
         marks.append(Path(tuple(map(tuple, curves)), "polynomial"))
-    marks += [Dots(tuple(dots), "ring"), Dots(tuple(dots), "hole")] if dots else []
+    if dots:
+        marks += [Dots(tuple(dots), "point")] if brief else [Dots(tuple(dots), "ring"), Dots(tuple(dots), "hole")]
     named = (
         ("polynomial", "of-polynomial", along([q for half in curves for q in half], False, 0.72)) if p else None,
         ("table", "of-table", along(dots, True, 0.4)) if dots else None,
         (f"classical limit {limit:g}", "quiet", [((left + 6.0, plot.y(limit) - 5.0), "start"),
          ((left + 6.0, plot.y(limit) + 13.0), "start")]) if limit and plot.y.low < limit < plot.y.high else None,
-        (f"ranges meet, {p.t_common_K:g} K", "quiet", _beside(plot.x(p.t_common_K), plot)) if p else None,
+        (f"ranges meet, {p.t_common_K:g} K", "quiet", _beside(plot.x(p.t_common_K), plot)) if p and joined else None,
     )  # fmt: skip
     for what in named:
         words = room.place(*what) if what else None
@@ -146,9 +155,9 @@ def _cp_description(species: Species, T: Sequence[float], cp: Sequence[float]) -
     p, parts = species.polynomial, []
     if p is not None:
         ends = [p.cp_R(t) for t in (p.t_low_K, p.t_common_K, p.t_high_K)]
+        meet = "" if is_one_set(p) else f", {ends[1]:.3f} at {p.t_common_K:g} K, where its two ranges meet,"
         parts.append(
-            f"The polynomial's Cp°/R is {ends[0]:.3f} at {p.t_low_K:g} K, {ends[1]:.3f} at {p.t_common_K:g} K, where "
-            f"its two ranges meet, and {ends[2]:.3f} at {p.t_high_K:g} K."
+            f"The polynomial's Cp°/R is {ends[0]:.3f} at {p.t_low_K:g} K{meet} and {ends[2]:.3f} at {p.t_high_K:g} K."
         )
     if T:
         parts.append(f"The table has {len(T)} points from {cp[0]:.3f} at {T[0]:g} K to {cp[-1]:.3f} at {T[-1]:g} K.")
@@ -164,7 +173,8 @@ def _cp_caption(species: Species) -> str:
         unsure = ", shaded: two standard uncertainties" if species.table.u_cp_J_mol_K else ""
         what.append(f"circles: table from the partition function{unsure}")
     if p is not None:
-        what.append(f"line: two-range polynomial, {p.t_low_K:g}–{p.t_common_K:g}–{p.t_high_K:g} K")
+        kind = "polynomial of one set of coefficients" if is_one_set(p) else "two-range polynomial"
+        what.append(f"line: {kind}, {range_text(p)} K")
     if species.classical_limit_R is not None:
         what.append(f"classical limit {species.classical_limit_R:g}")
     return f"{'; '.join(what)}."
@@ -196,8 +206,11 @@ def polynomial_temperatures(p: Nasa7) -> tuple[float, ...]:
     return tuple(sorted({T for T in TELLING_K if p.t_low_K <= T <= p.t_high_K} | set(ends)))
 
 
-def residual_strips(species: Species) -> Figure | None:
-    """ΔCp/R, ΔH/RT and ΔS/R of the polynomial one below the other, with the band that no polynomial can leave."""
+def residual_strips(species: Species, *, brief: bool = False) -> Figure | None:
+    """ΔCp/R, ΔH/RT and ΔS/R of the polynomial one below the other, with the band that no polynomial can leave.
+
+    brief : drawn through the points of the grid alone.
+    """
     r, p = species.residuals, species.polynomial
     if r is None or p is None:
         return None
@@ -207,10 +220,12 @@ def residual_strips(species: Species) -> Figure | None:
     marks: list[Mark] = []
     for i, (name, values, bound) in enumerate(strips):
         bottom = 84.0 + 92.0 * i
-        marks += _strip(name, r.T_K, values, bound, x, (bottom, bottom - 62.0), ticks, last=i == 2)
+        marks += _strip(name, r.T_K, values, bound, x, (bottom, bottom - 62.0), ticks, last=i == 2, brief=brief)
     join = x(p.t_common_K)
     marks.append(segments([((join, 84.0 + 92.0 * i), (join, 22.0 + 92.0 * i)) for i in range(3)], "hair"))
     worst = [max(map(abs, values)) for _, values, _ in strips]
+    largest = {_where(r, values) for _, values, _ in strips}
+    rows = _residual_rows(r, largest)
     no_less = "" if r.bound_dcp_R is None else f" No polynomial of this kind stays below {r.bound_dcp_R:.2g} in Cp°/R."
     return Figure(
         key="residuals",
@@ -224,18 +239,18 @@ def residual_strips(species: Species) -> Figure | None:
         source=species.source,
         drawing=Drawing(WIDTH, 304.0, tuple(marks)),
         columns=("T / K", "1000 ΔCp°/R", "1000 ΔH°/RT", "1000 ΔS°/R"),
-        rows=_residual_rows(r),
+        rows=tuple(row for _, row in rows),
+        telling=tuple(i for i, (T, _) in enumerate(rows) if T in largest),
     )
 
 
-def _residual_rows(r: Residuals) -> tuple[tuple[str, ...], ...]:
-    """Every eighth temperature, and those of the largest residuals: rows are what a long page costs."""
-    largest = {_where(r, values) for values in (r.dcp_R, r.dh_RT, r.ds_R)}
-    return tuple(
-        (f"{T:g}", *(f"{1000.0 * v:z.2f}".replace("-", "−") for v in row))
+def _residual_rows(r: Residuals, largest: set[float]) -> list[tuple[float, tuple[str, ...]]]:
+    """Every eighth temperature, and those of the largest residuals, each with its row."""
+    return [
+        (T, (f"{T:g}", *(f"{1000.0 * v:z.2f}".replace("-", "−") for v in row)))
         for i, (T, *row) in enumerate(zip(r.T_K, r.dcp_R, r.dh_RT, r.ds_R, strict=True))
         if i % 8 == 0 or T in largest or i == len(r.T_K) - 1
-    )
+    ]
 
 
 def _where(r: Residuals, values: Sequence[float]) -> float:
@@ -252,6 +267,7 @@ def _strip(
     ticks: Sequence[float],
     *,
     last: bool,
+    brief: bool,
 ) -> list[Mark]:
     """One strip, in thousandths: its name and largest value above it, the band, the zero line and the curve."""
     worst = max(map(abs, values))
@@ -268,7 +284,8 @@ def _strip(
         marks.append(segments([((left, e), (right, e)) for e in edge], "bound"))
         header += f" · best possible {1000.0 * bound:.3g} (band)"
     marks.append(segments([((left, y(0.0)), (right, y(0.0)))], "zero"))
-    marks.append(line(curve(x, y, *_between(T, [1000.0 * v for v in values])), "polynomial"))
+    thousandths = [1000.0 * v for v in values]
+    marks.append(line(curve(x, y, *((T, thousandths) if brief else _between(T, thousandths))), "polynomial"))
     marks.append(Words((left, top - 7.0), name, "name"))
     marks.append(Words((right, top - 7.0), header, "quiet", "end"))
     return marks

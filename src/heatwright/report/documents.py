@@ -4,14 +4,17 @@ from __future__ import annotations
 
 import json
 from dataclasses import dataclass
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from heatwright.findings import Refused, refuse
 from heatwright.reading.files import read_text
 from heatwright.report.species import Species
 from heatwright.report.taking import species_of
 from heatwright.report.values import Values
-from heatwright.writing.document import JSON_VERSION
+from heatwright.writing.document import JSON_VERSION, species_document
+
+if TYPE_CHECKING:
+    from heatwright.entry import Entry
 
 Failed = tuple[str, tuple[str, ...]]
 
@@ -20,12 +23,13 @@ Failed = tuple[str, tuple[str, ...]]
 class Shown:
     """Species to be shown, and (file, sentences) of what could not be.
 
-    title : what they are together, where that is known.
+    title : what they are together, where that is known.   remarks : what has to be said about all of them.
     """
 
     species: tuple[Species, ...]
     failed: tuple[Failed, ...] = ()
     title: str = ""
+    remarks: tuple[str, ...] = ()
 
 
 def read_documents(path: str) -> Shown:
@@ -49,6 +53,11 @@ def shown_documents(document: Any, where: str = "the document") -> Shown:
     for item in v.tables("failed"):
         failed.append((item.text("file"), tuple(f.text("text") for f in item.tables("findings"))))
     return Shown(tuple(species), tuple(failed))
+
+
+def document_of_entry(made: Entry) -> dict[str, Any]:
+    """An entry as the object of a JSON document."""
+    return species_document(made.name, made.model, made.table, made.findings, made)
 
 
 def is_document(text: str) -> bool:

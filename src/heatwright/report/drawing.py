@@ -69,7 +69,8 @@ class Figure:
     key : for file names and anchors, ``cp``.   heading : a few words beside others of the same species.
     title : the same alone.   description : what there is to see, in sentences, for those who do not see it.
     caption : for a paper, with conventions.   source : where the numbers are from.
-    columns, rows : the same numbers as a table.
+    columns, rows : the same numbers as a table.   telling : which of the rows say most, for a page of very many
+    species; None for all of them.
     """
 
     key: str
@@ -81,6 +82,7 @@ class Figure:
     drawing: Drawing
     columns: tuple[str, ...]
     rows: tuple[tuple[str, ...], ...]
+    telling: tuple[int, ...] | None = None
 
 
 def line(points: Sequence[Point], role: str) -> Path:

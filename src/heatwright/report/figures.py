@@ -15,13 +15,13 @@ KINDS = ("structure", "cp", "slope", "residuals", "cp-shares", "s-shares", "tors
 """The kinds of figures; a species has as many of ``torsion`` as it has torsions."""
 
 
-def figures_of(species: Species) -> tuple[Figure, ...]:
-    """Those figures that the species has the numbers for."""
+def figures_of(species: Species, *, brief: bool = False) -> tuple[Figure, ...]:
+    """Those figures that the species has the numbers for; with *brief* drawn with fewer points, for very many."""
     found = (
         structure(species),
-        heat_capacity(species),
+        heat_capacity(species, brief=brief),
         slope(species),
-        residual_strips(species),
+        residual_strips(species, brief=brief),
         stacked_shares(species, "Cp"),
         stacked_shares(species, "S"),
         *(torsional_potential(species, i) for i in range(len(species.torsions))),

@@ -101,6 +101,21 @@ def telling_rows(T: Sequence[float]) -> list[int]:
     return [i for i, t in enumerate(T) if i in (0, last) or any(abs(t - usual) < 0.005 for usual in TELLING_K)]
 
 
+FEW_K = (298.15, 1000.0)
+"""Temperatures that stay where even a short table is too long."""
+
+
+def fewest_rows(T: Sequence[float]) -> tuple[int, ...]:
+    """Places of :data:`FEW_K` and of the last; of the first as well where 298.15 K is not there.
+
+    >>> fewest_rows([200.0, 298.15, 500.0, 1000.0, 2000.0]), fewest_rows([300.0, 1000.0, 5000.0])
+    ((1, 3, 4), (0, 1, 2))
+    """
+    found = [i for i, t in enumerate(T) if any(abs(t - few) < 0.005 for few in FEW_K)]
+    ends = [len(T) - 1] if any(abs(T[i] - FEW_K[0]) < 0.005 for i in found) else [0, len(T) - 1]
+    return tuple(sorted({*found, *ends}))
+
+
 def padded(low: float, high: float, share: float = 0.08, least: float = 1e-9) -> tuple[float, float]:
     """An interval with room at both ends; at least *least* wide."""
     room = max(share * (high - low), (least - (high - low)) / 2.0, 0.0)
@@ -168,7 +183,8 @@ class Room:
             return False
         if any(meets(box, other) for other in self.boxes):
             return False
-        return not any(box[0] - 2 < x < box[2] + 2 and box[1] - 2 < y < box[3] + 2 for x, y in self.points)
+        x0, y0, x1, y1 = box[0] - 2, box[1] - 2, box[2] + 2, box[3] + 2
+        return not [1 for x, y in self.points if x0 < x < x1 and y0 < y < y1]
 
 
 def along(points: Sequence[Point], above: bool, first: float, offset: float = 7.0) -> list[tuple[Point, Anchor]]:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Iterable, Mapping, Sequence
+from collections.abc import Callable, Collection, Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from functools import cache
 from typing import Any, Final
@@ -16,9 +16,20 @@ from heatwright.findings import SEVERITY_WORD
 from heatwright.polynomial.nasa7 import Nasa7
 from heatwright.report.changes import values_of
 from heatwright.report.drawing import Ball, Drawing, Figure
-from heatwright.report.figures import figures_of
+from heatwright.report.figures import figures_of, kind_of
+from heatwright.report.long import (
+    HOW_TO_SEE_ALL,
+    MOST_IN_FULL,
+    OWN_CAPTIONS,
+    common_facts,
+    facts_line,
+    ledger_line,
+    ledger_text,
+    legend,
+    telling,
+)
 from heatwright.report.palette import figure_css, variables
-from heatwright.report.species import Route, Species
+from heatwright.report.species import Route, Species, range_text
 from heatwright.report.svg import inline_svg
 from heatwright.resources import templates
 from heatwright.writing.comment import CAUTION
@@ -32,7 +43,7 @@ class Page:
     """What a page is made of.
 
     title : of the page.   subtitle : where it is from, one line.   species : in their order.
-    failed : (file, sentences) of inputs that could not be shown.
+    failed : (file, sentences) of inputs that could not be shown.   remarks : sentences about all of them.
     changes : what a comparison found, see :mod:`heatwright.report.changes`; None without one.
     """
 
@@ -40,6 +51,7 @@ class Page:
     species: Sequence[Species]
     subtitle: str = ""
     failed: Sequence[tuple[str, Sequence[str]]] = ()
+    remarks: Sequence[str] = ()
     changes: Mapping[str, Any] | None = None
 
 
@@ -47,8 +59,10 @@ def page_html(page: Page) -> str:
     """The page as text."""
     anchors = [f"s-{anchor}" for anchor in anchors_of([s.name for s in page.species])]
     orders = _orders(page.species)
+    long = len(page.species) > MOST_IN_FULL
+    common = common_facts(page.species) if long else ()
     shown = [
-        _shown(i, s, anchor, order)
+        _shown(i, s, anchor, order, common if long else None)
         for i, (s, anchor, order) in enumerate(zip(page.species, anchors, orders, strict=True))
     ]
     text: str = _template().render(
@@ -60,8 +74,14 @@ def page_html(page: Page) -> str:
         subtitle=page.subtitle,
         species=shown,
         orders=_ORDERS,
+        pictured=any(s["picture"] for s in shown),
         warned=sum(s["warnings"] > 0 for s in shown),
         failed=page.failed,
+        remarks=page.remarks,
+        long=long,
+        common=common,
+        legend=legend({kind for s in shown for kind in s["kinds"]}) if long else [],
+        how_to_see_all=HOW_TO_SEE_ALL,
         changes=None if page.changes is None else _changes(page.changes),
         caution=" ".join(CAUTION),
         version=__version__,
@@ -163,9 +183,10 @@ def _orders(species: Sequence[Species]) -> list[str]:
     return [";".join(f"--{letter}:{place}" for letter, place in p.items()) for p in places]
 
 
-def _shown(i: int, s: Species, anchor: str, order: str) -> dict[str, Any]:
-    """What the template needs of one species."""
-    drawn = figures_of(s)
+def _shown(i: int, s: Species, anchor: str, order: str, common: Collection[tuple[str, str]] | None) -> dict[str, Any]:
+    """What the template needs of one species; *common* are the facts said elsewhere, on a long page."""
+    long = common is not None
+    drawn = figures_of(s, brief=long)
     pictured = bool(drawn) and drawn[0].key == "structure"
     return {
         "anchor": anchor,
@@ -185,11 +206,14 @@ def _shown(i: int, s: Species, anchor: str, order: str) -> dict[str, Any]:
         "notes": sum(f.severity == "note" for f in s.findings),
         "picture": f"g{i}" if pictured else "",
         "picture_box": _ball_box(drawn[0].drawing) if pictured else "",
-        "figures": [_figure(f, i) for f in drawn],
+        "figures": [_figure(f, i, long) for f in drawn],
+        "kinds": [kind_of(f) for f in drawn] if long else [],
         "polynomial": s.polynomial,
-        "coefficients": _coefficients(s.polynomial),
-        "routes": [_route(r) for r in s.routes],
+        "range": "" if s.polynomial is None else range_text(s.polynomial),
+        "coefficients": _coefficients(s.polynomial, long),
+        "routes": [_route(r, long) for r in s.routes],
         "facts": s.facts,
+        "facts_line": facts_line(s, common) if common is not None else "",
         "wavenumbers": ", ".join(f"{nu:.0f}".replace("-", "−") for nu in s.wavenumbers_cm1),
         "findings": [(SEVERITY_WORD.get(f.severity, f.severity), f.text, f.code) for f in s.findings],
     }
@@ -216,16 +240,17 @@ def _state(s: Species) -> str:
 def _changes(changes: Mapping[str, Any]) -> dict[str, Any]:
     figure = changes["figure"]
     rows = [{**row, "values": values_of(row)} for row in changes["rows"]]
-    return {**changes, "rows": rows, "figure": None if figure is None else _figure(figure, 0)}
+    return {**changes, "rows": rows, "figure": None if figure is None else _figure(figure, 0, False)}
 
 
-def _figure(f: Figure, i: int) -> dict[str, Any]:
+def _figure(f: Figure, i: int, long: bool) -> dict[str, Any]:
+    f = telling(f) if long else f
     return {
         "key": f.key,
         "title": f.title,
         "heading": f.heading,
-        "caption": f.caption,
-        "svg": Markup(inline_svg(f, f"f{i}{f.key}", f"g{i}" if f.key == "structure" else "")),
+        "caption": f.caption if not long or kind_of(f) in OWN_CAPTIONS else "",
+        "svg": Markup(inline_svg(f, f"f{i}{f.key}", f"g{i}" if f.key == "structure" else "", brief=long)),
         "columns": f.columns,
         "body": _body(f.rows),
     }
@@ -241,7 +266,7 @@ def _escaped(row: Sequence[str]) -> Sequence[str]:
     return [str(escape(c)) for c in row] if _SPECIAL.search("".join(row)) else row
 
 
-def _route(r: Route) -> dict[str, Any]:
+def _route(r: Route, long: bool) -> dict[str, Any]:
     return {
         "method": r.method,
         "source": r.source,
@@ -249,12 +274,16 @@ def _route(r: Route) -> dict[str, Any]:
         "u": r.u95_kJ_mol,
         "ledger": _body((what, shown_number(value, 3), source) for what, value, source in r.ledger),
         "lines": len(r.ledger),
+        "line": ledger_line(r) if long else "",
+        "text": ledger_text(r) if long else "",
     }
 
 
-def _coefficients(p: Nasa7 | None) -> Markup | None:
-    """The coefficients of both ranges as rows."""
+def _coefficients(p: Nasa7 | None, long: bool) -> Markup | None:
+    """The coefficients of both ranges as rows; on a long page as lines of text."""
     if p is None:
         return None
     pairs = enumerate(zip(p.low, p.high, strict=True), start=1)
+    if long:
+        return Markup("\n".join(f"a{i} {low:15.8E} {high:15.8E}" for i, (low, high) in pairs))
     return _body((f"a{i}", *(f"{a:.8E}" for a in pair)) for i, pair in pairs)

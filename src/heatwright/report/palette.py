@@ -60,6 +60,7 @@ LOOKS: Final[dict[str, Look]] = {
     "band": Look(fill="steel", opacity=0.13),
     "ring": Look(stroke="steel", width=6.4),
     "hole": Look(stroke="ground", width=3.6),
+    "point": Look(stroke="steel", width=4.6),
     "dot": Look(stroke="ember", width=7.5),
     "bar": Look(stroke="ink", width=1.6),
     "level": Look(stroke="steel", width=1.0),
@@ -116,11 +117,12 @@ def figure_css() -> str:
             f"{_element(role, look)}.{role}{{{_css(look, 'round' if is_round(role) else '')}}}"
             for role, look in LOOKS.items()
         ),
+        *(f".long path.area{i}{{{_stroke(LOOKS[f'edge{i}'])}}}" for i in range(len(SERIES))),
     ]
     return "\n".join(rules)
 
 
-_ROUND: Final = ("ring", "hole", "dot", "bond", "bonds", "turn")
+_ROUND: Final = ("ring", "hole", "point", "dot", "bond", "bonds", "turn")
 """Strokes with round ends: dots are strokes without length."""
 
 
@@ -134,12 +136,14 @@ def _element(role: str, look: Look) -> str:
     return "text" if look.size else "circle" if role.startswith("ball-") else "path"
 
 
+def _stroke(look: Look) -> str:
+    dash = f";stroke-dasharray:{look.dash}" if look.dash else ""
+    return f"stroke:var(--{look.stroke});stroke-width:{look.width:g};stroke-linejoin:round{dash}"
+
+
 def _css(look: Look, cap: str) -> str:
     parts = [f"stroke-linecap:{cap}"] if cap else []
-    if look.stroke:
-        parts.append(f"stroke:var(--{look.stroke});stroke-width:{look.width:g};stroke-linejoin:round")
-    if look.dash:
-        parts.append(f"stroke-dasharray:{look.dash}")
+    parts += [_stroke(look)] if look.stroke else []
     parts.append(f"fill:var(--{look.fill})" if look.fill else "fill:none")
     if look.opacity < 1.0:
         parts.append(f"fill-opacity:{look.opacity:g}")

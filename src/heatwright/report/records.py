@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 import re
 from typing import Any
 
@@ -40,7 +41,7 @@ def entry_document(file: EntryFile, audited: AuditedEntry) -> dict[str, Any]:
         "formula": record_formula(e.composition),
         "composition": e.composition,
         "charge": e.charge,
-        "evidence": _stated_evidence(file, e) or evidence_of_record(file.path, e.note, e.polynomial),
+        "evidence": _stated_evidence(file, e) or evidence_of_record(os.path.basename(file.path), e.note, e.polynomial),
         "standard_pressure_bar": None if pressure is None else pressure / BAR_PA,
         "nasa7": None if e.polynomial is None else _nasa7(e.polynomial),
         "source": {"file": f"{file.path}:{e.lines[0]}", "note": e.note or None},

@@ -1,7 +1,9 @@
-"""A release folder as species to be shown: the entries as written, with what the lock file says of each."""
+"""A release folder as species to be shown: remade from its project where that gives the released entry, and otherwise
+the entries as written, with what the lock file says of each."""
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from pathlib import Path
 from typing import Any
 
@@ -10,9 +12,12 @@ from heatwright.audit.release import read_release
 from heatwright.constants import BAR_PA
 from heatwright.findings import CODES, Finding, note
 from heatwright.project.lockfile import LOCK_NAME, Lock, LockedSpecies, read_lock
+from heatwright.project.manifest_types import Manifest
+from heatwright.project.watch import Watch
 from heatwright.reading.entry_file import EntryFile
 from heatwright.report.documents import Shown
 from heatwright.report.records import entry_document, failed_entries
+from heatwright.report.remaking import Again, Released, made_again
 from heatwright.report.taking import species_of
 
 _OF_COMPUTED = frozenset({"one-atmosphere", "stated-enthalpy"})
@@ -23,22 +28,35 @@ def is_release(path: Path) -> bool:
     return path.is_dir() and (path / LOCK_NAME).is_file()
 
 
-def shown_release(folder: str) -> Shown:
-    """The species of a release; raises Refused as the readers of its files do."""
+def shown_release(folder: str, watch_of: Callable[[Manifest], Watch] = lambda _: Watch()) -> Shown:
+    """The species of a release; raises Refused as the readers of its files do.
+
+    The manifest beside the release, its store and outputs are read and not changed.   watch_of : what hears of the
+    reading of a manifest's outputs.
+    """
     lock, file = read_lock(Path(folder) / LOCK_NAME), read_release(folder)
     audit = audit_entries(file)
     usable = [a for a in audit.entries if a.entry.polynomial is not None]
-    species = tuple(species_of(_document(file, a, lock), f"{folder}: {a.entry.name}") for a in usable)
-    return Shown(species, failed_entries(file, audit), lock.mechanism)
+    polynomials = {a.entry.name: a.entry.polynomial for a in usable if a.entry.polynomial is not None}
+    again = made_again(Released(folder, lock, polynomials), watch_of)
+    species = tuple(species_of(_document(file, a, lock, again), f"{folder}: {a.entry.name}") for a in usable)
+    return Shown(species, failed_entries(file, audit), lock.mechanism, again.remarks)
 
 
-def _document(file: EntryFile, audited: AuditedEntry, lock: Lock) -> dict[str, Any]:
+def _document(file: EntryFile, audited: AuditedEntry, lock: Lock, again: Again) -> dict[str, Any]:
+    """What is shown of one entry: the species made again, else what lock file and text say."""
+    name = audited.entry.name
+    record, made = lock.species.get(name), again.documents.get(name)
+    said = [f.as_json() for f in again.findings.get(name, ())]
+    if made is not None:
+        known = {f["code"] for f in made["findings"]}
+        of_text = [f.as_json() for f in audited.findings if f.code not in {*_OF_COMPUTED, *known}]
+        return made | {"findings": [*made["findings"], *of_text, *said]}
     document = entry_document(file, audited)
-    record = lock.species.get(audited.entry.name)
     if record is None:
-        missing = note("entry-edited", f"{LOCK_NAME} does not know {audited.entry.name}")
+        missing = note("entry-edited", f"{LOCK_NAME} does not know {name}")
         return document | {"findings": [*document["findings"], missing.as_json()]}
-    return document | _recorded(record, lock) | {"findings": _findings(audited, record)}
+    return document | _recorded(record, lock) | {"findings": [*_findings(audited, record), *said]}
 
 
 def _findings(audited: AuditedEntry, record: LockedSpecies) -> list[dict[str, str]]:

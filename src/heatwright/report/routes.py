@@ -51,7 +51,7 @@ def formation_routes(species: Species) -> Figure | None:
         rows=tuple(
             (
                 r.method,
-                f"{r.dHf298_kJ_mol:.2f}",
+                f"{r.dHf298_kJ_mol:.2f}".replace("-", "−"),
                 "not known" if r.u95_kJ_mol is None else f"{r.u95_kJ_mol:.2f}",
                 r.source,
             )

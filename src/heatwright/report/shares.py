@@ -7,7 +7,17 @@ from typing import Final
 
 from heatwright.report.curves import LEFT, WIDTH, temperature_scale
 from heatwright.report.drawing import Drawing, Figure, Mark, Point, Words, area, line
-from heatwright.report.layout import Scale, curve, frame, nice_ticks, padded, spread, telling_rows, temperature_ticks
+from heatwright.report.layout import (
+    Scale,
+    curve,
+    fewest_rows,
+    frame,
+    nice_ticks,
+    padded,
+    spread,
+    telling_rows,
+    temperature_ticks,
+)
 from heatwright.report.palette import series
 from heatwright.report.species import Species
 
@@ -41,6 +51,7 @@ def stacked_shares(species: Species, quantity: str) -> Figure | None:
         marks += [area([*top, *reversed(foot)], f"area{series(i)}"), line(top, f"edge{series(i)}")]
         wanted.append((top[-1][1] + foot[-1][1]) / 2.0)
     marks += named_at_right([n for n, _ in shown], wanted, plot.box[1:4:2])
+    shown_rows = telling_rows(table.T_K)
     total = [sum(column) for column in zip(*(values for _, values in shares), strict=True)]
     words = ", ".join(f"{n} {values[-1]:.1f}" for n, values in shown)
     return Figure(
@@ -55,8 +66,9 @@ def stacked_shares(species: Species, quantity: str) -> Figure | None:
         columns=("T / K", *(n for n, _ in shares), "sum"),
         rows=tuple(
             (f"{table.T_K[i]:g}", *(_decimals(values[i]) for _, values in shares), _decimals(total[i]))
-            for i in telling_rows(table.T_K)
+            for i in shown_rows
         ),
+        telling=fewest_rows([table.T_K[i] for i in shown_rows]),
     )
 
 
@@ -119,6 +131,7 @@ def populations(species: Species) -> Figure | None:
         f"{f', {c.degeneracy} mirror images' if c.degeneracy > 1 else ''}"
         for i, c in enumerate(conformers, start=1)
     )
+    shown_rows = telling_rows(table.T_K)
     at_298 = [table.at_298(c.populations) for c in conformers]
     said = ", ".join(f"{p:.3f}" for p in at_298 if p is not None)
     return Figure(
@@ -130,9 +143,8 @@ def populations(species: Species) -> Figure | None:
         source=species.source,
         drawing=Drawing(WIDTH, 274.0, tuple(marks)),
         columns=("T / K", *(str(i) for i in range(1, len(conformers) + 1))),
-        rows=tuple(
-            (f"{table.T_K[i]:g}", *(f"{c.populations[i]:.4f}" for c in conformers)) for i in telling_rows(table.T_K)
-        ),
+        rows=tuple((f"{table.T_K[i]:g}", *(f"{c.populations[i]:.4f}" for c in conformers)) for i in shown_rows),
+        telling=fewest_rows([table.T_K[i] for i in shown_rows]),
     )
 
 

@@ -10,10 +10,11 @@ from heatwright.polynomial.nasa7 import Nasa7, slope_of
 from heatwright.polynomial.quality import jumps_at_common
 from heatwright.report.curves import WIDTH, polynomial_temperatures, temperature_scale
 from heatwright.report.drawing import Drawing, Figure, Mark, Path, segments
-from heatwright.report.layout import Scale, curve, frame, nice_ticks, padded, temperature_ticks
-from heatwright.report.species import Species
+from heatwright.report.layout import Scale, curve, fewest_rows, frame, nice_ticks, padded, temperature_ticks
+from heatwright.report.species import Species, is_one_set
 
 _SAMPLES: Final = 60
+_STEP: Final = "; a step at the common temperature (dotted) is a kink of Cp°"
 
 
 def slope(species: Species) -> Figure | None:
@@ -31,21 +32,25 @@ def slope(species: Species) -> Figure | None:
     marks: list[Mark] = [
         *plot.marks,
         segments([((x.start, y(0.0)), (x.end, y(0.0)))], "zero"),
-        segments([((join, y.start), (join, y.end))], "hair"),
+        *([] if is_one_set(p) else [segments([((join, y.start), (join, y.end))], "hair")]),
         Path(tuple(tuple(curve(x, y, T, half)) for T, half in halves), "polynomial"),
     ]
+    temperatures = polynomial_temperatures(p)
     jumps, T = jumps_at_common(p), p.t_common_K
     return Figure(
         key="slope",
         heading="Slope of the heat capacity",
         title=f"Slope of the heat capacity of {species.name}",
-        description=f"At {T:g} K, from the low to the high range, Cp°/R changes by {jumps.cp_R:.2g}, H°/RT by "
+        description="One set of coefficients serves the whole range, so nothing jumps."
+        if is_one_set(p)
+        else f"At {T:g} K, from the low to the high range, Cp°/R changes by {jumps.cp_R:.2g}, H°/RT by "
         f"{jumps.h_R_K / T:.2g}, S°/R by {jumps.s_R:.2g} and T d(Cp°/R)/dT by {T * jumps.dcp_R_K:.2g}.",
-        caption=f"T d(Cp°/R)/dT of {species.name}; a step at the common temperature (dotted) is a kink of Cp°.",
+        caption=f"T d(Cp°/R)/dT of {species.name}{'' if is_one_set(p) else _STEP}.",
         source=species.source,
         drawing=Drawing(WIDTH, 274.0, tuple(marks)),
         columns=("T / K", "T d(Cp°/R)/dT"),
-        rows=tuple((f"{t:g}", f"{t * p.dcp_R(t):z.4f}".replace("-", "−")) for t in polynomial_temperatures(p)),
+        rows=tuple((f"{t:g}", f"{t * p.dcp_R(t):z.4f}".replace("-", "−")) for t in temperatures),
+        telling=fewest_rows(temperatures),
     )
 
 

@@ -11,6 +11,21 @@ from heatwright.polynomial.nasa7 import Nasa7
 Numbers = tuple[float, ...]
 
 
+def is_one_set(p: Nasa7) -> bool:
+    """Whether one set of coefficients serves the whole range, so that nothing meets at the common temperature."""
+    return p.low == p.high
+
+
+def range_text(p: Nasa7) -> str:
+    """The range of a polynomial without its unit.
+
+    >>> range_text(Nasa7(200.0, 1000.0, 6000.0, (2.5, 0, 0, 0, 0, 0, 1), (2.5, 0, 0, 0, 0, 0, 2)))
+    '200–1000–6000'
+    """
+    middle = "" if is_one_set(p) else f"–{p.t_common_K:g}"
+    return f"{p.t_low_K:g}{middle}–{p.t_high_K:g}"
+
+
 @dataclass(frozen=True, slots=True)
 class Geometry:
     """Elements and coordinates (Å) of the atoms; bonds as (atom, atom, order or None), atoms from 0."""
