@@ -59,6 +59,14 @@ BAD = {
         '[species]\nA = "a.out"\n',
         "heatwright.toml:2: species.A is 'a.out'; expected a table, [species.NAME].",
     ),
+    "species in a list": (
+        '[[species]]\nname = "A"\noutput = "a.out"\n',
+        "heatwright.toml:1: species is a list of tables, [[species]]; expected [species.NAME].",
+    ),
+    "mechanism in a list": (
+        "[[mechanism]]\n",
+        "heatwright.toml:1: mechanism is a list of tables, [[mechanism]]; expected [mechanism].",
+    ),
     "mechanism no table": (
         "mechanism = 1\n",
         "heatwright.toml:1: mechanism is 1; expected a table, [mechanism].",
@@ -86,6 +94,14 @@ BAD = {
     "levels": (
         '[species.A]\noutput = "a.out"\nelectronic = "1:2"\n',
         "heatwright.toml:3: electronic levels are counted from the ground level",
+    ),
+    "level without end": (
+        '[species.A]\noutput = "a.out"\nelectronic = "0:2,1e400:2"\n',
+        "heatwright.toml:3: an electronic level has no finite wavenumber",
+    ),
+    "tolerance": (
+        '[species.A]\noutput = "a.out"\nsymmetry-tolerance = 3\n',
+        "heatwright.toml:3: symmetry-tolerance is 3; expected a positive number of at most 0.35.",
     ),
     "barrier": (
         '[species.A]\noutput = "a.out"\ntorsions = "3-1-2-4 n=3 V=1 mile"\n',
@@ -201,7 +217,43 @@ BAD = {
     ),
     "name": (
         '[species."a b"]\noutput = "a"\n',
-        "heatwright.toml:1: the species name 'a b' is empty or holds ' '; expected printable ASCII characters without blanks, '!' and '&'. Write a table [species.NAME] with output = 'a' and a name that fits.",
+        "heatwright.toml:1: the species name 'a b' holds ' '; expected printable ASCII characters without blanks, '!' and '&'. Write a table [species.NAME] with output = 'a' and a name that fits.",
+    ),
+    "no name": (
+        '[species.""]\noutput = "a"\n',
+        "heatwright.toml:1: the species has no name. Write a table [species.NAME] with output = 'a'",
+    ),
+    "a keyword as a name": (
+        '[species.end]\noutput = "a"\n',
+        "heatwright.toml:1: the species name 'end' reads as the keyword of a section at the start of a record.",
+    ),
+    "store in the place of an output": (
+        '[mechanism]\nstore = "a.out"\n[species.A]\noutput = "a.out"\n',
+        "heatwright.toml:2: the store would take the place of a.out. Give the store a file of its own.",
+    ),
+    "store in the place of the manifest": (
+        '[mechanism]\nstore = "./heatwright.toml"\n[species.A]\noutput = "a.out"\n',
+        "heatwright.toml:2: the store would take the place of heatwright.toml.",
+    ),
+    "store in the release": (
+        '[mechanism]\nstore = "release/store"\n[species.A]\noutput = "a.out"\n',
+        "heatwright.toml:2: the store would lie in the release, release. Give the store another place.",
+    ),
+    "release in the place of the store": (
+        '[mechanism]\nrelease = ".heatwright.sqlite"\n[species.A]\noutput = "a.out"\n',
+        "heatwright.toml: the store would lie in the release, .heatwright.sqlite.",
+    ),
+    "release among outputs": (
+        '[mechanism]\nrelease = "runs"\n[species.A]\noutput = "runs/a.out"\n',
+        "heatwright.toml:2: the release would lie where runs/a.out is. Give the release a folder of its own.",
+    ),
+    "release among atoms": (
+        '[mechanism]\natoms = "atoms"\nrelease = "atoms"\n[species.A]\noutput = "a.out"\n',
+        "heatwright.toml:3: the release would lie where atoms is.",
+    ),
+    "release in a scan": (
+        '[mechanism]\nrelease = "scan"\n[species.A]\noutput = "a.out"\ntorsions = "scan"\n',
+        "heatwright.toml:2: the release would lie where scan is.",
     ),
     "empty glob": (
         '[[outputs]]\n\nglob = "*.out"\n',

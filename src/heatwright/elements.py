@@ -6,7 +6,8 @@ import re
 from collections import Counter
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
-from functools import cache
+from functools import cache, lru_cache
+from typing import Any
 
 from heatwright.resources import data_rows
 
@@ -87,6 +88,16 @@ def composition(numbers: Iterable[int], masses_u: Iterable[float] | None = None)
     >>> composition([8, 1, 1], [15.9949, 2.0141, 1.0078])
     {'H': 1, 'D': 1, 'O': 1}
     """
+    return dict(_counted(_plain(numbers), None if masses_u is None else _plain(masses_u)))
+
+
+def _plain(values: Iterable[Any]) -> tuple[Any, ...]:
+    """Plain numbers, which an array does not give when it is gone through."""
+    return tuple(values.tolist() if hasattr(values, "tolist") else values)
+
+
+@lru_cache(maxsize=1024)
+def _counted(numbers: tuple[int, ...], masses_u: tuple[float, ...] | None) -> dict[str, int]:
     if masses_u is None:
         counts = Counter(symbol(z) for z in numbers)
     else:

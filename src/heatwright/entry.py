@@ -6,19 +6,14 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import cached_property, lru_cache, reduce
 from operator import add
-from typing import Final, Literal
+from typing import TYPE_CHECKING, Final, Literal
 
 import numpy as np
 
 from heatwright.constants import GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
-from heatwright.findings import Finding, Refused
-from heatwright.formation.formation import Formation
-from heatwright.molecule import FloatArray
-from heatwright.partition.model import ThermoModel
-from heatwright.partition.table import ThermoTable
+from heatwright.findings import Finding, Refused, refusals
 from heatwright.polynomial.fit import Fit, check_temperatures, common_temperature, fit_many
 from heatwright.polynomial.minimax import design
-from heatwright.polynomial.nasa7 import Nasa7
 from heatwright.polynomial.quality import (
     FitQuality,
     ResidualCurve,
@@ -26,6 +21,13 @@ from heatwright.polynomial.quality import (
     judged_temperatures,
     residual_curve,
 )
+
+if TYPE_CHECKING:
+    from heatwright.formation.formation import Formation
+    from heatwright.molecule import FloatArray
+    from heatwright.partition.model import ThermoModel
+    from heatwright.partition.table import ThermoTable
+    from heatwright.polynomial.nasa7 import Nasa7
 
 TABLE_TEMPERATURES_K = (
     100.0, 150.0, 200.0, 250.0, 298.15, 300.0, 350.0, 400.0, 500.0, 600.0, 700.0, 800.0, 900.0, 1000.0, 1100.0, 1200.0,
@@ -102,7 +104,8 @@ class EntryRequest:
 def make_entry(name: str, model: ThermoModel, formation: Formation, options: FitOptions | None = None) -> Entry:
     """Tabulate, fit and judge: the entry of one species.
 
-    Raises Refused when the temperatures cannot carry a polynomial or a value is not finite.
+    Raises Refused when the temperatures cannot carry a polynomial, a value is not finite, the fitted heat capacity is
+    not positive (``cp-not-positive``), or something that was found before is a reason to refuse.
     """
     made = make_entries([EntryRequest(name, model, formation, options or FitOptions())])[0]
     if isinstance(made, Refused):
@@ -198,9 +201,12 @@ def _made_together(
     return [made[i] for i in range(len(requests))]
 
 
-def _entry(request: EntryRequest, polynomial: Nasa7, quality: FitQuality, table: ThermoTable) -> Entry:
+def _entry(request: EntryRequest, polynomial: Nasa7, quality: FitQuality, table: ThermoTable) -> Entry | Refused:
     model, formation = request.model, request.formation
     unsure = table.uncertainty.findings if table.uncertainty else ()
+    findings = (*model.molecule.findings, *model.findings, *unsure, *formation.findings, *quality.findings())
+    if refusals(findings):
+        return Refused(refusals(findings))
     return Entry(
         name=request.name,
         model=model,
@@ -210,7 +216,7 @@ def _entry(request: EntryRequest, polynomial: Nasa7, quality: FitQuality, table:
         table=table,
         note=request.note,
         comments=request.comments,
-        findings=(*model.molecule.findings, *model.findings, *unsure, *formation.findings, *quality.findings()),
+        findings=findings,
     )
 
 

@@ -149,6 +149,7 @@ CODES: Final[dict[str, str]] = {
     "temperature-range": "The temperatures asked for cannot carry a two-range polynomial anchored at 298.15 K.",
     "cp-not-positive": "The fitted heat capacity is zero or negative somewhere in the range.",
     "cp-above-classical": "The fitted heat capacity exceeds the classical limit by more than the fit error.",
+    "fit-coarse": "The polynomial cannot follow the heat capacity, whichever coefficients it has.",
     "fit-not-closest": "The fit is farther from the heat capacity than the best polynomial of this kind needs to be.",
     "name-unfit": "The species name does not fit the format's field or cannot be read back from it.",
     "value-unfit": "A number does not fit its fixed field.",

@@ -4,12 +4,13 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
-from typing import Any, Literal
+from typing import TYPE_CHECKING, Any, Literal
 
 import numpy as np
 from numpy.typing import NDArray
 
-from heatwright.findings import Finding
+if TYPE_CHECKING:
+    from heatwright.findings import Finding
 
 FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.int64]

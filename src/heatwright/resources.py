@@ -5,37 +5,38 @@ from __future__ import annotations
 import csv
 from collections.abc import Iterator
 from functools import cache
-from importlib.resources import files
-from importlib.resources.abc import Traversable
 from pathlib import Path
+from typing import Final
 
 from heatwright.errors import ShippedFileMissing
 
+_PACKAGE: Final = Path(__file__).resolve().parent
 
-def _shipped(name: str) -> Traversable:
+
+def _shipped(name: str) -> Path:
     """The folder *name*, which an installed package carries inside itself and a checkout at its top."""
-    installed = files("heatwright").joinpath(f"_{name}")
+    installed = _PACKAGE / f"_{name}"
     if installed.is_dir():
         return installed
-    checkout = Path(__file__).resolve().parents[2] / name
+    checkout = _PACKAGE.parents[1] / name
     if checkout.is_dir():
         return checkout
     raise ShippedFileMissing(f"the folder {name!r} is neither inside the installed package nor at {checkout}")
 
 
-def templates() -> Traversable:
+def templates() -> Path:
     """The folder of the text templates."""
     return _shipped("templates")
 
 
-def sample_outputs() -> Traversable:
+def sample_outputs() -> Path:
     """The folder of the sample outputs."""
     return _shipped("sample_outputs")
 
 
 def data_text(name: str) -> str:
     """The text of ``data/NAME``."""
-    return files("heatwright").joinpath("data", name).read_text(encoding="utf-8")
+    return (_PACKAGE / "data" / name).read_text(encoding="utf-8")
 
 
 @cache
@@ -62,7 +63,7 @@ def sample_files() -> dict[str, bytes]:
     return dict(sorted(_walk(sample_outputs(), "")))
 
 
-def _walk(folder: Traversable, prefix: str) -> Iterator[tuple[str, bytes]]:
+def _walk(folder: Path, prefix: str) -> Iterator[tuple[str, bytes]]:
     for item in folder.iterdir():
         if item.name.startswith((".", "__")):
             continue

@@ -213,3 +213,17 @@ def test_a_lock_file_of_the_future(run, tmp_path: Path) -> None:
     done = run("compare", path, GRI)
     assert done.code == 3
     assert "[lock-newer]" in done.err
+
+
+def test_what_is_no_thermo_file_is_said_to_be_none(run, samples: Path) -> None:
+    output, manifest = samples / "H2O.out", samples / "heatwright.toml"
+    for old, new in ((output, GRI), (GRI, output)):
+        done = run("compare", old, new)
+        assert done.code == 3
+        assert done.out == ""
+        assert f"error: {output}: the file holds no entry that can be read; expected a thermo file" in done.err
+        assert done.err.count("error: ") == 4  # three of the faults, as it may be one after all
+    assert run("splice", output, GRI, "-n").code == 3
+    done = run("compare", manifest, GRI)
+    assert (done.code, done.out) == (3, "")
+    assert "this is a manifest; expected a release, a lock file or a thermo file. Give the folder of" in done.err

@@ -320,6 +320,12 @@ def test_a_template_of_the_users_own(run, methanol: Path, tmp_path: Path) -> Non
         ("{% for %}\n", 1),
         ("one\ntwo\n{{ 1 / 0 }}\n", 3),
         ("{{ ''.__class__.__mro__ }}", 1),
+        ("x\n{{ cycler.__init__.__globals__ }}", 2),
+        ("{% include '/etc/hostname' %}", 1),
+        ("{% include '../hidden.txt' %}", 1),
+        ("{% macro a() %}{{ a() }}{% endmacro %}\n{{ a() }}", 1),
+        ("{{ species.append(1) }}", 1),
+        ("{{ document.update({}) }}", 1),
     ],
 )
 def test_a_template_with_a_fault(run, methanol: Path, tmp_path: Path, text: str, line: int) -> None:
@@ -334,6 +340,7 @@ def test_a_template_with_a_fault(run, methanol: Path, tmp_path: Path, text: str,
 
 def test_a_missing_template(run, methanol: Path, tmp_path: Path) -> None:
     assert refused(run, "entry", methanol, *GIVEN, "--template", tmp_path / "none.j2") == "template-failed"
+    assert refused(run, "entry", methanol, *GIVEN, "--template", tmp_path) == "template-failed"
 
 
 def test_a_users_symmetry_number_is_recorded(run, methanol: Path) -> None:
@@ -356,3 +363,25 @@ def test_a_linear_radical_outside_the_table_is_warned_about(run, samples: Path) 
     assert "[linear-radical]" in run("entry", samples / "O2.out", "--dHf298", "0 kJ/mol", "--source", "element").err
     assert "[linear-radical]" not in run("entry", samples / "OH.out", *GIVEN).err
     assert "[linear-radical]" not in run("entry", samples / "HCO.out", *GIVEN).err
+
+
+STEEP = "0:1,3000:100000"
+"""Electronic levels whose heat capacity no two quartics follow: the closest of them is negative at 200 K."""
+
+
+@pytest.mark.parametrize("style", ["nasa7", "yaml", "json", "csv"])
+def test_an_entry_whose_heat_capacity_is_not_positive_is_not_written(run, samples: Path, style: str) -> None:
+    done = run("entry", samples / "N2.out", "--dHf298", "0 kJ/mol", "--electronic", STEEP, "--format", style)
+    assert done.code == 3
+    assert "N2.out: the polynomial's Cp/R is -7.02 at 200 K" in done.err
+    assert "fit a shorter range. [cp-not-positive]" in done.err
+    if style == "json":
+        document = json.loads(done.out)
+        assert document["species"] == []
+        assert [f["code"] for f in document["failed"][0]["findings"]] == ["cp-not-positive"]
+    else:
+        assert done.out == ""
+    shorter = ("--range", "250,1000", "--common", "450")  # the advice helps
+    again = run("entry", samples / "N2.out", "--dHf298", "0 kJ/mol", "--electronic", STEEP, *shorter)
+    assert again.code == 0
+    assert "cp-not-positive" not in again.err

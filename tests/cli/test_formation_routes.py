@@ -207,3 +207,13 @@ def test_crosscheck_refuses(run, refs: Path, tmp_path: Path, text: str, code: st
     done = run("crosscheck", tmp_path / "entries", "--outputs", refs)
     assert done.code == 3
     assert f"[{code}]" in done.err
+
+
+def test_a_given_value_that_the_route_passes_over_is_named(run, samples: Path) -> None:
+    done = run(
+        "entry", samples / "CH3OH.out", "--atoms", samples / "atoms", "--route", "atomization", "--dHf298",
+        "-200.7 kJ/mol", "-v",
+    )  # fmt: skip
+    (line,) = [line for line in done.err.splitlines() if "[route]" in line]
+    assert done.code == 0
+    assert "-200.7 kJ/mol) is not used, as the route is atomization, which gives -172.5" in line

@@ -95,3 +95,18 @@ def test_wrong_usage(run, samples: Path, options: list[str], words: str) -> None
     assert done.code == 2
     assert words in done.err
     assert done.out == ""
+
+
+def test_a_symmetry_tolerance_that_is_too_large_is_wrong_usage(run, samples) -> None:
+    done = run("table", samples / "H2O.out", "--symmetry-tolerance", 3)
+    assert done.code == 2
+    assert "the symmetry tolerance is at most 0.35 Å, not 3" in done.err
+
+
+def test_the_largest_symmetry_tolerance_is_that_of_the_search() -> None:
+    from heatwright.partition.choices import LARGEST_SYMMETRY_TOLERANCE_A
+    from heatwright.project.keys import keys_of
+    from heatwright.structure.symmetry import LARGEST_TOLERANCE_A
+
+    assert LARGEST_SYMMETRY_TOLERANCE_A == LARGEST_TOLERANCE_A
+    assert keys_of("mechanism")["symmetry-tolerance"].kind.schema["maximum"] == LARGEST_TOLERANCE_A

@@ -104,20 +104,30 @@ def test_whole_numbers_as_terms_are_numbers() -> None:
 
 
 def test_time_of_a_rotor() -> None:
-    # 5 ms each, on one thread: with more, small matrices wait for whatever else the machine does.
+    # 3 ms each, 2 to 4 times what the eigenvalues of four 64 x 64 matrices take in the same run, whatever the machine
+    # and however busy it is; on one thread, as small matrices wait for other work with more.
     # F from ethane's to where the form of Pitzer and Gwinn takes over.
     code = """
 import sys, time
 sys.path[:0] = sys.argv[1:]
+import numpy as np
 import test_high_levels as t
+m = np.random.default_rng(1).normal(size=(64, 64))
+m += m.T
+def spent(work):
+    start = time.thread_time()
+    work()
+    return time.thread_time() - start
+def measure():
+    for _ in range(4):
+        np.linalg.eigvalsh(m)
 for p in t.POTENTIALS.values():
     for F in (40.0, 10.7, 5.0, 3.0, 2.0, 1.55):
-        taken = [1.0]
-        while len(taken) < 200 and min(taken) > 0.0045:  # other work on the machine can double a time
-            start = time.thread_time()
-            t.hindered_rotor(t.Potential(p.constant_cm1, p.cosine_cm1, p.sine_cm1), F)
-            taken.append(time.thread_time() - start)
-        print(min(taken))
+        taken, measured = [], []
+        while len(taken) < 5 or (len(taken) < 200 and min(taken) > 7.0 * min(measured)):  # the best of both
+            taken.append(spent(lambda: t.hindered_rotor(t.Potential(p.constant_cm1, p.cosine_cm1, p.sine_cm1), F)))
+            measured.append(spent(measure))
+        print(min(taken) / min(measured))
 """
     one = {"OPENBLAS_NUM_THREADS": "1", "OMP_NUM_THREADS": "1", "MKL_NUM_THREADS": "1"}
     path = os.pathsep.join([str(Path(__file__).parents[1]), *filter(None, sys.path)])
@@ -128,4 +138,4 @@ for p in t.POTENTIALS.values():
         text=True,
     )
     assert done.returncode == 0, done.stderr
-    assert max(map(float, done.stdout.split())) < 0.005
+    assert max(map(float, done.stdout.split())) < 10.0

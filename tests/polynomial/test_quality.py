@@ -54,8 +54,18 @@ def test_deviations_and_where_they_are():
     assert (quality.dh_RT.largest, quality.dh_RT.at_K) == (pytest.approx(0.25, rel=1e-12), 200.0)
     assert (quality.ds_R.largest, quality.ds_R.at_K) == (pytest.approx(0.125, rel=1e-12), 6000.0)
     assert quality.ratio == pytest.approx(1.25, rel=1e-12)
+    assert [(f.severity, f.code) for f in quality.findings()] == [("warn", "fit-not-closest"), ("warn", "fit-coarse")]
+
+
+def test_a_heat_capacity_that_no_two_quartics_can_follow_is_pointed_out():
+    def bump(T):  # as of an electronic level that is filled within a few kelvin
+        return 3.5 + 6.0 * np.exp(-(((T - 1500.0) / 60.0) ** 2))
+
+    fit = fit_nasa7(bump, 0.0, 20.0)
+    quality = fit_quality(fit.polynomial, bump, lambda T: fit.polynomial.h_RT(T), fit.polynomial.s_R, fit.minimax_dCp_R)
     (finding,) = quality.findings()
-    assert (finding.severity, finding.code) == ("warn", "fit-not-closest")
+    assert (finding.severity, finding.code) == ("warn", "fit-coarse")
+    assert 1.0 < quality.dcp_R.largest < 6.0
 
 
 def test_a_fault_on_one_side_of_the_joint_only_is_seen():

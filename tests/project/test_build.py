@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 import shutil
 from collections.abc import Callable
 from pathlib import Path
@@ -13,11 +14,16 @@ import pytest
 from heatwright.cli.main import main
 from heatwright.findings import Refused
 from heatwright.project.build import build, dry_run
+from heatwright.project.executors import Engine
+from heatwright.project.library import Library
 from heatwright.project.lockfile import read_lock
 from heatwright.project.manifest import load_manifest
 from heatwright.project.manifest_types import ModelChoice, SpeciesRequest
 from heatwright.project.plan import check_pressure
+from heatwright.project.store import Store
+from heatwright.project.tasks import ReadTask
 from heatwright.project.watch import Watch
+from outside import SHARED, needs_shared
 from projects import MECHANISM, SAMPLES, Told, add_by_hand, built, edit, project, release
 
 Run = Callable[..., tuple[int, str, str]]
@@ -274,8 +280,11 @@ def test_a_changed_pressure_does_not_let_an_old_entry_stay(tmp_path: Path) -> No
     built(folder)
     edit(folder / "heatwright.toml", {"[mechanism]\n": '[mechanism]\npressure = "1atm"\n'})
     (folder / "H2O.out").write_text("no output\n")
-    outcome, _ = built(folder, keep_previous=True)
+    outcome, told = built(folder, keep_previous=True)
     assert (outcome.failed, outcome.kept) == (("H2O",), ())
+    assert [f.found for f in told.findings] == [
+        "the earlier entry of H2O is for another standard pressure and cannot be kept"
+    ]
     lock = read_lock(folder / "release" / "thermo.lock.toml")
     assert (list(lock.species), lock.standard_pressure_Pa) == (["CO2"], 101325.0)
 
@@ -422,3 +431,98 @@ def test_torsions_and_conformers_are_watched_too(tmp_path: Path) -> None:
     outcome, told = built(folder)
     assert [f.code for f in told.failures["CH3OH"]] == ["scan-unreadable"]
     assert told.failures["CH3OH"][0].where.startswith("scan.csv")
+
+
+def test_an_entry_whose_heat_capacity_is_not_positive_is_refused_as_on_the_command_line(
+    tmp_path: Path, run: Run
+) -> None:
+    steep = 'dHf298 = "0 kJ/mol"\nsource = "test"\nelectronic = "0:1,3000:100000"\n'
+    folder = project(tmp_path, "H2O", "N2", more=steep)
+    code, _, err = run("build", folder)
+    assert code == 3
+    assert "error: N2.out: the polynomial's Cp/R is -7.0" in err
+    assert "[cp-not-positive]" in err
+    assert "1 made, 1 failed (N2); release written to release." in err
+    assert b"\nN2 " not in release(folder)["thermo.dat"]
+
+
+def test_a_first_build_that_makes_nothing_speaks_of_no_release(tmp_path: Path, run: Run) -> None:
+    folder = project(tmp_path, "H2O")
+    (folder / "H2O.out").write_text("")
+    code, _, err = run("build", folder)
+    assert code == 3
+    assert "0 made, 1 failed (H2O); no release was written." in err
+    assert not (folder / "release").exists()
+
+
+def test_options_in_words_about_a_species_are_keys(tmp_path: Path, run: Run) -> None:
+    folder = project(tmp_path, "H2O", head="[mechanism]\n")
+    code, _, err = run("build", folder)
+    assert code == 3
+    assert 'expected --dHf298 "VALUE kJ/mol" --source TEXT' in err
+    assert err.count("is the key of that name in the manifest") == 1
+    edit(folder / "heatwright.toml", {'output = "H2O.out"': 'output = "nix.out"'})
+    assert "is the key of that name" not in run("build", folder)[2]
+
+
+def test_a_manifest_without_species_is_no_build(tmp_path: Path, run: Run) -> None:
+    folder = project(tmp_path)
+    code, _, err = run("build", folder)
+    assert code == 3
+    assert err.startswith(f"error: {folder}: the manifest names no species. Write a table [species.NAME]")
+    assert not (folder / ".heatwright.sqlite").exists()
+
+
+def test_words_about_the_store_begin_with_its_path(tmp_path: Path, run: Run) -> None:
+    folder = project(tmp_path, "H2O")
+    (folder / ".heatwright.sqlite").write_bytes(b"this is no store")
+    code, _, err = run("build", folder)
+    assert code == 0
+    assert f"\nwarning: {folder}/.heatwright.sqlite: the store cannot be used" in f"\n{err}"
+
+
+def test_a_folder_of_atoms_that_may_not_be_read(tmp_path: Path, monkeypatch: pytest.MonkeyPatch, run: Run) -> None:
+    folder = project(tmp_path, "H2O")
+    built(folder)
+    good, access = release(folder), os.access
+    monkeypatch.setattr(os, "access", lambda path, *a, **k: Path(path).name != "atoms" and access(path, *a, **k))
+    code, _, err = run("build", folder)
+    assert code == 3
+    assert "error: H2O.out: atoms: the folder may not be read (permission denied). Correct the folder" in err
+    assert release(folder) == good
+
+
+def test_the_points_beside_an_output_of_xtb_belong_to_the_scan(tmp_path: Path) -> None:
+    folder = project(tmp_path, "CH3OH", more='torsions = "scan/x.out"\n')
+    (folder / "scan").mkdir()
+    (folder / "scan" / "x.out").write_text("the output")
+    scan = ReadTask(path=str(folder / "scan" / "x.out"), torsion="")
+
+    def looked() -> tuple[str, list[str]]:
+        (decision,) = dry_run(load_manifest(folder), Told()).decisions
+        with Store(str(folder / "none"), lambda finding: None, read_only=True) as store:
+            return Library(store, Engine()).key(scan), [file.path for file in decision.files]
+
+    alone, files = looked()
+    assert files == ["CH3OH.out", "scan/x.out"]
+    keys = {alone}
+    for content in ("one", "two"):
+        (folder / "scan" / "xtbscan.log").write_text(content)
+        key, files = looked()
+        keys.add(key)
+        assert files == ["CH3OH.out", "scan/x.out", "scan/xtbscan.log"]
+    assert len(keys) == 3
+
+
+@needs_shared
+def test_a_scan_by_xtb_whose_points_come_later(tmp_path: Path, run: Run) -> None:
+    assert SHARED is not None
+    source = SHARED / "outputs" / "xtb651_h2o2_relaxed_torsion_scan"
+    folder = project(tmp_path, "H2O", more='torsions = "scan/h2o2_scan.out"\n')
+    (folder / "scan").mkdir()
+    shutil.copy(source / "h2o2_scan.out", folder / "scan")
+    assert "xTB writes the points of a scan into xtbscan.log, and there is none beside" in run("build", folder)[2]
+    shutil.copy(source / "xtbscan.log", folder / "scan")
+    err = run("build", folder)[2]
+    assert "there is none beside" not in err
+    assert "[scan-of-another]" in err

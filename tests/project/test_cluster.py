@@ -7,7 +7,7 @@ import signal
 import subprocess
 import sys
 import time
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 from pathlib import Path
 
@@ -18,33 +18,50 @@ from heatwright.project.executors import Engine, engine_for
 from projects import SAMPLES, Told, built, project, release
 
 distributed = pytest.importorskip("distributed", reason="dask.distributed, the extra heatwright[cluster], is not here")
-pytestmark = [pytest.mark.long, pytest.mark.filterwarnings("default")]
+pytestmark = pytest.mark.filterwarnings("default")  # of the scheduler's own
 
 NAMES = sorted(p.stem for p in SAMPLES.glob("*.out"))
+
+
+WAIT_S = 120.0
+"""For what starts in two seconds on an idle machine."""
 
 
 @contextmanager
 def cluster(folder: Path, workers: int) -> Iterator[tuple[Path, list[subprocess.Popen[bytes]]]]:
     """The scheduler file of a cluster with so many workers, and the processes of the workers."""
     file = folder / "scheduler.json"
-    place = {"cwd": folder, "stdout": subprocess.DEVNULL, "stderr": subprocess.DEVNULL}
-    tool = [sys.executable, "-m", "distributed.cli.dask_scheduler"]
-    started = [subprocess.Popen([*tool, "--host", "127.0.0.1", "--port", "0", "--scheduler-file", str(file),
-                                 "--no-dashboard"], **place)]  # fmt: skip
-    while not file.exists():
-        time.sleep(0.1)
-    worker = [sys.executable, "-m", "distributed.cli.dask_worker", "--scheduler-file", str(file), "--nthreads", "1",
-              "--no-nanny", "--no-dashboard"]  # fmt: skip
-    started += [subprocess.Popen(worker, **place) for _ in range(workers)]
+    log = (folder / "cluster.log").open("wb")
+    started: list[subprocess.Popen[bytes]] = []
+
+    def start(module: str, *options: str) -> None:
+        command = [sys.executable, "-m", module, *options, "--scheduler-file", str(file), "--no-dashboard"]
+        started.append(subprocess.Popen(command, cwd=folder, stdout=log, stderr=log))
+
     try:
-        with distributed.Client(scheduler_file=str(file)) as client:
+        start("distributed.cli.dask_scheduler", "--host", "127.0.0.1", "--port", "0")  # a free one
+        for _ in range(workers):  # they wait for the file
+            start("distributed.cli.dask_worker", "--nthreads", "1", "--no-nanny")
+        wait_for(file.exists, started, folder / "cluster.log")
+        with distributed.Client(scheduler_file=str(file), timeout=WAIT_S) as client:
             if workers:
-                client.wait_for_workers(workers, timeout=60)
+                client.wait_for_workers(workers, timeout=WAIT_S)
         yield file, started[1:]
     finally:
         for process in reversed(started):
             process.kill()
             process.wait()
+        log.close()
+
+
+def wait_for(there: Callable[[], bool], started: list[subprocess.Popen[bytes]], log: Path) -> None:
+    """Wait until something is there; fail with what the processes said when one of them ends, or it takes too long."""
+    end = time.monotonic() + WAIT_S
+    while not there():
+        ended = any(process.poll() is not None for process in started)
+        if ended or time.monotonic() > end:
+            pytest.fail(f"the cluster does not start: {log.read_text(errors='replace')}")
+        time.sleep(0.05)
 
 
 def many(folder: Path) -> Path:
@@ -88,6 +105,8 @@ def test_the_same_bytes(tmp_path: Path, killed: bool) -> None:
             outcome, told = built(there, engine=work, told=Killing(workers[0] if killed else None))
         finally:
             work.close()
+        if killed:
+            workers[0].wait(WAIT_S)
         assert (workers[0].poll() is not None) == killed
     assert outcome.failed == ()
     assert len(told.read) == 4 + 4 * len(NAMES)
@@ -98,10 +117,12 @@ def test_a_changed_file_is_read_again(tmp_path: Path) -> None:
     folder = project(tmp_path / "p", "H2O")
     with cluster(tmp_path, 1) as (file, _):
         work = engine(file)
-        built(folder, engine=work)
-        (folder / "H2O.out").write_text((SAMPLES / "CO2.out").read_text())
-        _, told = built(folder, engine=work)
-        work.close()
+        try:
+            built(folder, engine=work)
+            (folder / "H2O.out").write_text((SAMPLES / "CO2.out").read_text())
+            _, told = built(folder, engine=work)
+        finally:
+            work.close()
     assert told.read == ["H2O.out"]
     assert b'formula = "CO2"' in release(folder)["thermo.lock.toml"]
 

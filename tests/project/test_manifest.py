@@ -306,6 +306,24 @@ def test_a_glob_makes_species_and_leaves_what_tables_name(write: Write) -> None:
     assert [p.shown for p in only(m, "water").outputs] == ["H2O.log.gz", "c1.out"]
 
 
+def test_a_glob_never_means_manifests_the_store_or_the_release(write: Write) -> None:
+    folder = write(
+        '[mechanism]\ninclude = "more/m.toml"\n[[outputs]]\nglob = "**"\n',
+        **{
+            "more/m.toml": '[species.B]\noutput = "b.out"\n',
+            "more/b.out": "",
+            "a.out": "",
+            "kept": "",
+            "release/thermo.dat": "",
+            "release/thermo.yaml": "",
+            "store.sqlite": "",
+        },
+    )
+    text = (folder / "heatwright.toml").read_text()
+    (folder / "heatwright.toml").write_text(text.replace("[mechanism]", '[mechanism]\nstore = "store.sqlite"'))
+    assert [s.name for s in load_manifest(folder).species] == ["B", "a", "kept"]
+
+
 def test_a_glob_of_conformers_leaves_out_the_output_itself(write: Write) -> None:
     text = '[species.A]\noutput = "a1.out"\nconformers = "a*.out"\n'
     m = load_manifest(write(text, **dict.fromkeys(("a3.out", "a1.out", "a2.out"), "")))

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 import re
 import shutil
 from collections.abc import Callable
@@ -12,6 +13,7 @@ import pytest
 
 from heatwright.cli.main import main
 from heatwright.elements import symbol
+from heatwright.findings import Refused
 from heatwright.molecule import Molecule
 from heatwright.project.manifest import load_manifest
 from heatwright.project.manifest_types import Manifest
@@ -311,7 +313,7 @@ def test_files_of_one_name_and_names_that_fit_no_record(copies: Copy) -> None:
 def test_a_file_name_with_a_line_break_cannot_break_the_manifest(copies: Copy) -> None:
     manifest, text = started(copies({"CO.out": sample("CO"), 'x\n[species.evil]\noutput = "y.out': sample("H2")}))
     assert shown(manifest) == {"CO": ["CO.out"]}
-    assert "the name cannot be written" in text
+    assert r'#   x\n[species.evil]\noutput = "y.out: the name holds a character that no manifest can; rename' in text
 
 
 # --- what cannot be made ---------------------------------------------------------------------------------------------
@@ -375,3 +377,24 @@ def test_folders_without_species(copies: Copy, capfd: pytest.CaptureFixture[str]
     assert f"error: {folder}: none of 1 outputs in the folder can be a species" in err
     assert not (folder / "heatwright.toml").exists()
     assert "there is no such folder" in run(capfd, folder / "nowhere")[2]
+
+
+def test_what_is_no_folder_and_what_may_not_be_read(
+    copies: Copy, capfd: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    folder = copies({"CO.out": sample("CO"), "closed/H2.out": sample("H2")})
+    for place, words in ((folder / "CO.out", "this is a file"), (folder / "nix", "there is no such folder")):
+        with pytest.raises(SystemExit) as stopped:
+            main(["start", str(place)])
+        assert stopped.value.code == 3
+        assert f"{place}: {words}; expected a folder of outputs." in capfd.readouterr().err
+    scan = os.scandir
+
+    def closed(path: str) -> object:
+        if Path(path).name == "closed":
+            raise PermissionError(13, "Permission denied", path)
+        return scan(path)
+
+    monkeypatch.setattr(os, "scandir", closed)
+    with pytest.raises(Refused, match=r"closed: the folder may not be read \(Permission denied\)"):
+        first_manifest(str(folder))

@@ -6,13 +6,18 @@ import os
 import sqlite3
 import subprocess
 import sys
+from itertools import pairwise
 from pathlib import Path
 
 import numpy as np
 import pytest
 
 from heatwright.findings import Finding
+from heatwright.project import build as work
+from heatwright.project import library, pipeline
+from heatwright.project.build import dry_run
 from heatwright.project.coding import Unreadable, decoded, encoded
+from heatwright.project.manifest import load_manifest
 from heatwright.project.store import STORE_VERSION, Store
 from heatwright.reading.outputs import read_output
 from projects import SAMPLES, Told, built, edit, project, release
@@ -200,6 +205,7 @@ def test_a_small_file_system_that_fills_up(tmp_path: Path) -> None:
 
 WRITER = """
 import sys
+from heatwright.project.manifest import load_manifest
 from heatwright.project.store import Store
 said = []
 with Store(sys.argv[1], said.append) as store:
@@ -232,6 +238,66 @@ def test_a_read_only_store_is_never_made_nor_written(tmp_path: Path) -> None:
         store.put({"k": b"3", "l": b"4"})
     with opened(path)[0] as store:
         assert store.get(["k", "l"]) == {"k": b"2"}
+
+
+def test_a_dry_run_leaves_nothing_behind(tmp_path: Path) -> None:
+    folder = project(tmp_path, "H2O")
+    built(folder)
+    before = {path.name: path.read_bytes() for path in folder.iterdir() if path.is_file()}
+    assert dry_run(load_manifest(folder), Told()).is_done
+    assert {path.name: path.read_bytes() for path in folder.iterdir() if path.is_file()} == before
+
+
+def test_a_store_that_may_not_be_written_is_read_all_the_same(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    path = tmp_path / "store.sqlite"
+    with opened(path)[0] as store:
+        store.put({"k": b"1"})
+    before = path.read_bytes()
+    monkeypatch.setattr(os, "access", lambda *_: False)  # root may write anywhere
+    store, said = opened(path, read_only=True)
+    with store:
+        assert store.get(["k"]) == {"k": b"1"}
+    assert (said, path.read_bytes(), [p.name for p in tmp_path.iterdir()]) == ([], before, ["store.sqlite"])
+
+
+def kinds(store: Path) -> dict[str, int]:
+    """How many values of each kind are in a store."""
+    connection = sqlite3.connect(store)
+    rows = connection.execute("SELECT substr(key, 1, instr(key, ':') - 1), count(*) FROM kept GROUP BY 1").fetchall()
+    connection.close()
+    return dict(rows)
+
+
+def test_changing_options_again_and_again_does_not_make_the_store_grow(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(pipeline, "_WORTH_KEEPING_S", 0.0)  # every entry is kept until it is released
+    folder = project(tmp_path, "H2O", "CO2")
+    built(folder)
+    first = kinds(folder / ".heatwright.sqlite")
+    scales = [f"frequency-scale = {0.9 + i / 100}" for i in range(5)]
+    for old, new in pairwise(["frequency-scale = 0.96", *scales]):
+        edit(folder / "heatwright.toml", {old: new})
+        built(folder)
+    assert kinds(folder / ".heatwright.sqlite") == first
+    assert "result" not in first
+
+
+def test_what_was_finished_is_kept_until_it_is_released(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(pipeline, "_WORTH_KEEPING_S", 0.0)
+    folder = project(tmp_path, "H2O", "CO2")
+    with monkeypatch.context() as patch:
+        patch.setattr(work, "switch", interrupted)
+        with pytest.raises(KeyboardInterrupt):
+            built(folder)
+    assert kinds(folder / ".heatwright.sqlite")["result"] == 2
+    outcome, told = built(folder)
+    assert (outcome.made, told.read) == (("CO2", "H2O"), [])
+    assert "result" not in kinds(folder / ".heatwright.sqlite")
+
+
+def interrupted(*_: object) -> None:
+    raise KeyboardInterrupt
 
 
 # --- what is kept: molecules as bytes ------------------------------------------------------------------------------
@@ -271,18 +337,35 @@ def test_unknown_types_are_not_taken() -> None:
             encoded(value)
 
 
-def test_a_damaged_value_in_the_store_is_read_again(tmp_path: Path) -> None:
-    folder = project(tmp_path, "CO2", "H2O")
+def test_a_damaged_value_in_the_store_is_as_good_as_missing(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(pipeline, "_WORTH_KEEPING_S", 0.0)
+    monkeypatch.setattr(library, "_SETTLED_NS", 0)  # the hashes of files that are new are kept too
+    folder = project(tmp_path / "p", "CO2", "H2O")
     built(folder)
-    good = release(folder)
-    with sqlite3.connect(folder / ".heatwright.sqlite") as connection:
-        connection.execute("UPDATE kept SET value = x'4D00' WHERE key LIKE 'read:%'")
-        connection.execute("UPDATE kept SET value = x'7B' WHERE key LIKE 'result:%' OR key LIKE 'lock:%'")
-        connection.execute("UPDATE kept SET value = x'00' WHERE key LIKE 'hash:%'")
+    edit(folder / "heatwright.toml", {"frequency-scale = 0.96": "frequency-scale = 0.97"})
+    with monkeypatch.context() as patch:
+        patch.setattr(work, "switch", interrupted)
+        with pytest.raises(KeyboardInterrupt):
+            built(folder)  # so that there are finished entries too
+    store = folder / ".heatwright.sqlite"
+    whole, before = store.read_bytes(), release(folder)
+    assert set(kinds(store)) >= {"hash", "label", "lock", "read", "result"}
+    connection = sqlite3.connect(store)
+    values = dict(connection.execute("SELECT key, value FROM kept").fetchall())
     connection.close()
-    for name in good:
-        (folder / "release" / name).unlink()
-    told = Told()
-    built(folder, told=told)
-    assert told.findings == []
-    assert release(folder) == good
+    good: dict[str, bytes] = {}
+    for key in ("none", *values):
+        store.write_bytes(whole)
+        for name, data in before.items():
+            (folder / "release" / name).write_bytes(data)
+        if key != "none":
+            value = bytearray(values[key])
+            value[-3] ^= 1  # a digit of a hash, of a number, a letter
+            with sqlite3.connect(store) as connection:
+                connection.execute("UPDATE kept SET value = ? WHERE key = ?", (bytes(value), key))
+            connection.close()
+        outcome, told = built(folder)
+        good = good or release(folder)
+        assert (key, outcome.failed, told.findings) == (key, (), [])
+        assert set(told.reason_texts.values()) == {"options changed (frequency-scale 0.96 -> 0.97)"}
+        assert release(folder) == good

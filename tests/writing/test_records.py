@@ -170,14 +170,31 @@ def test_csv_has_a_row_for_each_temperature_and_an_empty_cell_for_an_absent_cont
     assert set(cells) == {cells[0], cells[0] + 1}  # one more comma inside the quoted name
 
 
-@pytest.mark.parametrize("name", ["ABCDEFGHIJKLMNOPQRS", "H2 O", "", "naïve", "a!b", "X&", "tab\t"])
+@pytest.mark.parametrize(
+    "name",
+    [
+        "ABCDEFGHIJKLMNOPQRS",
+        "H2 O",
+        "",
+        "naïve",
+        "a!b",
+        "X&",
+        "tab\t",
+        "END",
+        "end",
+        "Reactions",
+        "THERMO",
+        "spec",
+        "REAC-1",
+    ],
+)
 def test_names_that_cannot_stand_in_the_record(name: str) -> None:
     (finding,) = FORMATS["nasa7"].name_findings(name)
     assert finding.code == "name-unfit"
     assert finding.severity == "refuse"
 
 
-@pytest.mark.parametrize("name", ["CH3OH", "C2H5-OH", "CH2(S)", "NH4+", "nC7H16", "a" * 18])
+@pytest.mark.parametrize("name", ["CH3OH", "ENDO", "trans-C4H8", "C2H5-OH", "CH2(S)", "NH4+", "nC7H16", "a" * 18])
 def test_names_that_can(name: str) -> None:
     assert FORMATS["nasa7"].name_findings(name) == ()
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 import os
 import sys
 import time
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 from shutil import get_terminal_size
 from typing import TYPE_CHECKING
 
@@ -58,6 +58,7 @@ def build(
       heatwright build -n
       heatwright build pilot/heatwright.toml -j 4
     """
+    from heatwright.findings import Refused, refuse
     from heatwright.project import build as work
     from heatwright.project.executors import engine_for
     from heatwright.project.manifest import load_manifest
@@ -66,6 +67,9 @@ def build(
         raise UsageError("-j is for processes of this machine; leave it out with --scheduler")
     reporter = Reporter(quiet=quiet, verbose=verbose)
     loaded = load_manifest(manifest, confine=confine)
+    if not loaded.species:
+        action = 'Write a table [species.NAME] with output = "FILE", or [[outputs]] with a glob.'
+        raise Refused([refuse("manifest-wrong", "the manifest names no species", where=manifest, action=action)])
     watch = Words(loaded, reporter)
     if dry_run:
         _show(work.dry_run(loaded, watch))
@@ -75,11 +79,17 @@ def build(
         outcome = work.build(loaded, watch, engine=engine, keep_previous=keep_previous)
     finally:
         engine.close()
+    if watch.speaks_of_options:
+        reporter.say(OPTIONS)
     _sum_up(loaded, outcome, reporter)
     ctx.exit(reporter.exit_code)
 
 
 NOTHING = "Nothing to do."
+OPTIONS = (
+    "An option in these words, such as --charge, is the key of that name in the manifest "
+    "(torsions, conformers and isotopes for --torsion, --conformer and --isotope)."
+)
 _MOST_LINES = 40
 """Species named one by one before a build; with more, those with the same reason share a line (-n and -v name all)."""
 
@@ -119,8 +129,12 @@ def _sum_up(manifest: Manifest, outcome: Outcome, reporter: Reporter) -> None:
         words.append(f"{len(outcome.failed)} failed ({', '.join(outcome.failed)})")
     if outcome.kept:
         words.append(f"{len(outcome.kept)} kept as before ({', '.join(outcome.kept)})")
-    shown = manifest.mechanism.release.shown
-    end = f"release written to {shown}" if outcome.written else f"the release in {shown} stays as it was"
+    release = manifest.mechanism.release
+    end = "no release was written"
+    if outcome.written:
+        end = f"release written to {release.shown}"
+    elif os.path.isdir(release.path):
+        end = f"the release in {release.shown} stays as it was"
     reporter.say(f"{', '.join(words)}; {end}.")
 
 
@@ -133,6 +147,7 @@ class Words(Watch):
         self._reporter = reporter
         self._units = UNITS[manifest.mechanism.units]
         self._bar = _Bar(manifest.root, reporter.quiet)
+        self.speaks_of_options = False
 
     def waiting(self) -> None:
         """Another build of the same release is at work."""
@@ -155,11 +170,13 @@ class Words(Watch):
         value = f"{f.dHf298_kJ_mol * units.factor:.2f} {units.enthalpy}, {f.route}"
         self._reporter.detail(f"{decision.name} made: dHf(298.15 K) = {value}")
         shown = [f for f in record.findings if f.severity == "warn" or self._reporter.verbose]
+        self._notice(shown)
         self._reporter.findings(_first_file(decision), shown)
 
     def failed(self, decision: Decision, findings: Sequence[Finding]) -> None:
         """Why a species could not be made."""
         self._bar.clear()
+        self._notice(findings)
         self._reporter.fail(_first_file(decision), findings)
 
     def kept(self, decision: Decision) -> None:
@@ -168,7 +185,10 @@ class Words(Watch):
 
     def said(self, finding: Finding) -> None:
         """A finding about the store or the references."""
-        self._reporter.findings("", [finding])
+        self._reporter.findings(finding.where, [finding])
+
+    def _notice(self, findings: Iterable[Finding]) -> None:
+        self.speaks_of_options = self.speaks_of_options or any(" --" in finding.text for finding in findings)
 
 
 def _first_file(decision: Decision) -> str:

@@ -253,7 +253,6 @@ def made_entry(job: Job, request: Request) -> Entry:
 
 def _describe(path: str, made: Entry, units_name: str, reporter: Reporter) -> None:
     """The words about one finished entry."""
-    from heatwright.findings import refusals
     from heatwright.writing.comment import formation_text, ledger_text, residual_text
     from heatwright.writing.units import UNITS
 
@@ -266,4 +265,4 @@ def _describe(path: str, made: Entry, units_name: str, reporter: Reporter) -> No
         reporter.detail(f"  beside it: {formation_text(other, units)}")
     for shift in made.model.motion.shifts:
         reporter.detail(f"  {shift.text}")
-    reporter.findings(path, [f for f in made.findings if f not in refusals(made.findings)])
+    reporter.findings(path, made.findings)

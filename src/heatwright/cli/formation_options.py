@@ -117,7 +117,7 @@ def given_enthalpies(
         raise UsageError("--route atomization needs the atoms' outputs: name their folder by --atoms")
     if route in ("reaction", "network", "best") and not options["references_folder"]:
         raise UsageError(f"--route {route} needs outputs of reference species: name their folder by --references")
-    if route in ("atomization", "reaction", "network") or (route in (None, "best") and not enthalpies):
+    if route != "given" and not enthalpies:
         return [None] * len(outputs)
     if route is None and others:
         raise UsageError(

@@ -5,29 +5,12 @@ from __future__ import annotations
 import os
 import sys
 from collections.abc import Sequence
+from importlib import import_module
 from typing import NoReturn
 
 import click
 
 from heatwright import __version__
-from heatwright.cli.audit import audit
-from heatwright.cli.build import build
-from heatwright.cli.compare import compare
-from heatwright.cli.crosscheck import crosscheck
-from heatwright.cli.entry import entry
-from heatwright.cli.explain import explain
-from heatwright.cli.mend import mend
-from heatwright.cli.plot import plot
-from heatwright.cli.reactions import reactions
-from heatwright.cli.references import references
-from heatwright.cli.report import report
-from heatwright.cli.rotors import rotors
-from heatwright.cli.samples import samples
-from heatwright.cli.scales import scales
-from heatwright.cli.splice import splice
-from heatwright.cli.start import start
-from heatwright.cli.survey import survey
-from heatwright.cli.table import table
 from heatwright.errors import HeatwrightError
 
 BUG = 70
@@ -43,11 +26,20 @@ SECTIONS = {
 
 
 class SectionedGroup(click.Group):
-    """A group whose help lists its commands under the headings of :data:`SECTIONS`."""
+    """A group of the commands of :data:`SECTIONS`, listed under its headings; each is imported when it is wanted."""
+
+    def list_commands(self, ctx: click.Context) -> list[str]:
+        return sorted(name for names in SECTIONS.values() for name in names)
+
+    def get_command(self, ctx: click.Context, cmd_name: str) -> click.Command | None:
+        if cmd_name not in self.commands and cmd_name in self.list_commands(ctx):
+            self.add_command(getattr(import_module(f"heatwright.cli.{cmd_name}"), cmd_name))
+        return super().get_command(ctx, cmd_name)
 
     def format_commands(self, ctx: click.Context, formatter: click.HelpFormatter) -> None:
         for heading, names in SECTIONS.items():
-            rows = [(name, self.commands[name].get_short_help_str(70)) for name in names]
+            commands = [(name, self.get_command(ctx, name)) for name in names]
+            rows = [(name, command.get_short_help_str(70)) for name, command in commands if command is not None]
             with formatter.section(heading):
                 formatter.write_dl(rows)
 
@@ -69,29 +61,6 @@ def cli() -> None:
     The product goes to standard output, words about it to standard error.  Computed data are not validated for safety
     decisions: flame, explosion and process-safety work needs evaluated data, local codes and licensed practice.
     """
-
-
-for _command in (
-    survey,
-    table,
-    entry,
-    rotors,
-    start,
-    build,
-    compare,
-    crosscheck,
-    report,
-    plot,
-    audit,
-    mend,
-    splice,
-    scales,
-    references,
-    reactions,
-    explain,
-    samples,
-):
-    cli.add_command(_command)
 
 
 def main(arguments: Sequence[str] | None = None) -> NoReturn:

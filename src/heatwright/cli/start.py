@@ -63,7 +63,7 @@ def start(ctx: click.Context, /, folder: str, target: str | None, force: bool, q
     if os.path.isdir(folder):
         check_target(file, force)
     hidden = quiet or not sys.stderr.isatty()
-    count = len(files_in(folder))
+    count = len(files_in(folder)) if os.path.isdir(folder) else 0
     with click.progressbar(length=count, label="reading", file=sys.stderr, hidden=hidden, show_pos=True) as bar:
         beside = None if target is None else os.path.dirname(os.path.abspath(target))
         made = first_manifest(folder, beside=beside, seen=lambda _: bar.update(1))

@@ -4,13 +4,16 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
 from heatwright.elements import ground_multiplicity, symbol
 from heatwright.findings import Finding, Refused, refusals, refuse
 from heatwright.formation.references import AtomReference, elements_with_reference
 from heatwright.formation.same_level import level_objections
-from heatwright.formation.zero_kelvin import ZeroKelvinEnergies, with_stated_energy
 from heatwright.molecule import Molecule
+
+if TYPE_CHECKING:
+    from heatwright.formation.zero_kelvin import ZeroKelvinEnergies
 
 Atoms = Mapping[str, tuple[Molecule, ...]]
 """Atom outputs by element symbol; several levels of theory may lie side by side."""
@@ -44,6 +47,17 @@ class ChosenAtoms:
         return molecule.energy_hartree
 
 
+def _with_stated_energy(
+    molecule: Molecule, candidates: Atoms, table: ZeroKelvinEnergies | None
+) -> tuple[Atoms | None, tuple[Finding, ...]]:
+    """As :func:`heatwright.formation.zero_kelvin.with_stated_energy`, which is imported when there is a table."""
+    if table is None:
+        return None, ()
+    from heatwright.formation.zero_kelvin import with_stated_energy
+
+    return with_stated_energy(molecule, candidates, table)
+
+
 def choose_atoms(
     molecule: Molecule,
     composition: Mapping[str, int],
@@ -55,7 +69,7 @@ def choose_atoms(
 ) -> ChosenAtoms:
     """The atoms for a molecule of this composition; raises Refused with a finding for each thing in the way."""
     needed = {element: atoms.get(element, ()) for element in composition}
-    stated, said = with_stated_energy(molecule, needed, zero_kelvin)
+    stated, said = _with_stated_energy(molecule, needed, zero_kelvin)
     findings = [*_obstacles(molecule, needed, references, energy_needed=stated is None), *said]
     chosen: dict[str, Molecule] = {}
     for element, candidates in (needed if stated is None else stated).items():

@@ -4,11 +4,11 @@ from __future__ import annotations
 
 from collections.abc import Collection, Iterable, Iterator, Mapping
 from math import fsum
+from typing import TYPE_CHECKING
 
 from heatwright.constants import HARTREE_KJ_MOL
 from heatwright.findings import Finding, Refused, note, refusals, refuse
 from heatwright.formation.atom_choice import Atoms, ChosenAtoms, choose_atoms, collect_atoms
-from heatwright.formation.corrections import Correction, correction_lines
 from heatwright.formation.formation import Electron, Formation, LedgerLine, electron_lines, with_electron
 from heatwright.formation.plausibility import energy_findings
 from heatwright.formation.references import (
@@ -17,8 +17,11 @@ from heatwright.formation.references import (
     atom_references,
     spin_orbit_lowering_kJ_mol,
 )
-from heatwright.formation.zero_kelvin import ZeroKelvinEnergies
-from heatwright.partition.model import ThermoModel
+
+if TYPE_CHECKING:
+    from heatwright.formation.corrections import Correction
+    from heatwright.formation.zero_kelvin import ZeroKelvinEnergies
+    from heatwright.partition.model import ThermoModel
 
 __all__ = ["Atoms", "collect_atoms", "formation_by_atomization"]
 
@@ -65,7 +68,7 @@ def formation_by_atomization(
     counted = {element: (n, known[element]) for element, n in model.composition.items()}
     added = (
         *(_spin_orbit_lines(model) if spin_orbit else ()),
-        *correction_lines(corrections, model.composition, model.molecule),
+        *_correction_lines(corrections, model),
     )
     at_0 = (*_atom_lines(counted), *_energy_lines(model, chosen), *added)
     charge = model.molecule.charge or 0
@@ -82,6 +85,14 @@ def formation_by_atomization(
         ledger=ledger,
         findings=said if certain else (*said, _level_error(model, chosen)),
     )
+
+
+def _correction_lines(corrections: Iterable[Correction], model: ThermoModel) -> tuple[LedgerLine, ...]:
+    if not corrections:
+        return ()
+    from heatwright.formation.corrections import correction_lines
+
+    return correction_lines(corrections, model.composition, model.molecule)
 
 
 def _added(lines: Collection[LedgerLine]) -> str:

@@ -5,10 +5,12 @@ from __future__ import annotations
 from collections import Counter
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
-from heatwright.molecule import Molecule
-from heatwright.partition.model import ThermoModel
-from heatwright.structure.bond_orders import Bonding
+if TYPE_CHECKING:
+    from heatwright.molecule import Molecule
+    from heatwright.partition.model import ThermoModel
+    from heatwright.structure.bond_orders import Bonding
 
 
 @dataclass(frozen=True, slots=True)

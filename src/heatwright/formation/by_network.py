@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 from heatwright.findings import Finding, Refused, note, refuse, warn
 from heatwright.formation.choices import PLAIN, EnergyChoices, atomized
@@ -11,11 +11,13 @@ from heatwright.formation.error_model import DEFAULT_SCALES, FEWEST_REFERENCES, 
 from heatwright.formation.formation import Formation, LedgerLine, with_electron
 from heatwright.formation.network import corrections
 from heatwright.formation.phrases import COVERAGE, level_label, sources
-from heatwright.formation.reference_set import Reference, ReferenceSet
 from heatwright.formation.usable import UsableReferences, usable_references
-from heatwright.molecule import FloatArray
-from heatwright.partition.model import ThermoModel
 from heatwright.structure.bond_orders import Bonding, bonding
+
+if TYPE_CHECKING:
+    from heatwright.formation.reference_set import Reference, ReferenceSet
+    from heatwright.molecule import FloatArray
+    from heatwright.partition.model import ThermoModel
 
 _SHOWN: Final = 0.005
 """References that move the result by less than this, kJ/mol, stand in the ledger as one line."""

@@ -4,13 +4,13 @@ from __future__ import annotations
 
 from collections.abc import Callable, Collection, Iterator
 from math import fsum
+from typing import TYPE_CHECKING
 
 from heatwright.constants import HARTREE_KJ_MOL
 from heatwright.findings import Finding, Refused, note, refuse, warn
 from heatwright.formation.balance import account, surplus
 from heatwright.formation.choices import PLAIN, EnergyChoices
 from heatwright.formation.equations import resolved
-from heatwright.formation.error_model import ErrorScales
 from heatwright.formation.formation import (
     Formation,
     LedgerLine,
@@ -22,9 +22,12 @@ from heatwright.formation.phrases import COVERAGE, LOWEST_LEVEL, element_lines, 
 from heatwright.formation.reactions import Reaction, balanced_kind, find_reactions, reaction_sd_kJ_mol
 from heatwright.formation.reference_set import Reference, ReferenceSet, species_name
 from heatwright.formation.usable import UsableReferences, usable_references
-from heatwright.formation.zero_kelvin import ZeroKelvinEnergies, ZeroKelvinEnergy
-from heatwright.partition.model import ThermoModel
 from heatwright.structure.bond_orders import Bonding, bonding
+
+if TYPE_CHECKING:
+    from heatwright.formation.error_model import ErrorScales
+    from heatwright.formation.zero_kelvin import ZeroKelvinEnergies, ZeroKelvinEnergy
+    from heatwright.partition.model import ThermoModel
 
 
 def formation_by_reaction(

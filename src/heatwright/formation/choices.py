@@ -4,13 +4,16 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
 from heatwright.formation.atomization import Atoms, formation_by_atomization
-from heatwright.formation.corrections import Correction
-from heatwright.formation.formation import Electron, Formation
-from heatwright.formation.references import AtomReference
-from heatwright.formation.zero_kelvin import ZeroKelvinEnergies
-from heatwright.partition.model import ThermoModel
+
+if TYPE_CHECKING:
+    from heatwright.formation.corrections import Correction
+    from heatwright.formation.formation import Electron, Formation
+    from heatwright.formation.references import AtomReference
+    from heatwright.formation.zero_kelvin import ZeroKelvinEnergies
+    from heatwright.partition.model import ThermoModel
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)

@@ -6,13 +6,15 @@ import os
 import re
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
-from typing import Final, Literal
+from typing import TYPE_CHECKING, Final, Literal
 
 from heatwright.elements import atomic_number
 from heatwright.formation.formation import KJ_MOL_PER_UNIT, LedgerLine
-from heatwright.molecule import Molecule
 from heatwright.reading.tables import Row, read_table
 from heatwright.structure.bond_orders import bonding
+
+if TYPE_CHECKING:
+    from heatwright.molecule import Molecule
 
 Kind = Literal["atom", "bond"]
 COLUMNS: Final = ("kind", "label", "value", "unit", "source")

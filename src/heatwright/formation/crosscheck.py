@@ -11,15 +11,17 @@ from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from itertools import combinations
 from math import hypot
-from typing import Literal
+from typing import TYPE_CHECKING, Literal
 
 from heatwright.formation.balance import account, surplus
-from heatwright.formation.entry_set import EntryRow
-from heatwright.formation.error_model import ErrorScales
 from heatwright.formation.phrases import COVERAGE
 from heatwright.formation.reactions import Reaction, find_reactions, reaction_sd_kJ_mol
-from heatwright.formation.reference_set import Reference
-from heatwright.formation.usable import ReferenceErrors
+
+if TYPE_CHECKING:
+    from heatwright.formation.entry_set import EntryRow
+    from heatwright.formation.error_model import ErrorScales
+    from heatwright.formation.reference_set import Reference
+    from heatwright.formation.usable import ReferenceErrors
 
 RelationKind = Literal["isomers", "bond dissociation", "reaction", "all others", "two routes"]
 

@@ -7,7 +7,7 @@ import os
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import PurePath
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from heatwright.elements import formula
 from heatwright.findings import Finding, Refused, note, refusals, refuse, warn
@@ -16,13 +16,15 @@ from heatwright.formation.formation import element_increment_kJ_mol
 from heatwright.formation.reference_set import Reference, ReferenceSet, reference_options, species_name
 from heatwright.formation.same_level import level_objections
 from heatwright.formation.species_references import SpeciesReference
-from heatwright.molecule import Molecule
-from heatwright.partition.choices import ModelOptions
 from heatwright.partition.model import ThermoModel, build_model
 from heatwright.reading.files import read_text
 from heatwright.reading.tables import read_table
 from heatwright.structure.bond_orders import bonding
 from heatwright.structure.identity import identity_of
+
+if TYPE_CHECKING:
+    from heatwright.molecule import Molecule
+    from heatwright.partition.choices import ModelOptions
 
 
 @dataclass(frozen=True, slots=True)

@@ -5,12 +5,15 @@ from __future__ import annotations
 import re
 from collections.abc import Collection, Sequence
 from difflib import get_close_matches
+from typing import TYPE_CHECKING
 
 from heatwright.elements import formula
 from heatwright.errors import UsageError
 from heatwright.findings import Finding, Refused, refuse
 from heatwright.formation.reference_set import Reference, species_name
-from heatwright.partition.model import ThermoModel
+
+if TYPE_CHECKING:
+    from heatwright.partition.model import ThermoModel
 
 Side = tuple[tuple[int, str], ...]
 

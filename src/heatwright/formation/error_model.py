@@ -16,12 +16,13 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
-from heatwright.molecule import FloatArray
-from heatwright.structure.bond_orders import Bonding
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
+    from heatwright.structure.bond_orders import Bonding
 
 FEWEST_REFERENCES: Final = 6
 """So many references are needed before the scales are fitted to them; fewer say too little about three numbers."""

@@ -12,11 +12,14 @@ grows where no reference has the target's bonds.
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
 import numpy as np
 
 from heatwright.formation.error_model import ErrorScales, Features, covariance, own_variance, shared_covariance
-from heatwright.molecule import FloatArray
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
 
 
 @dataclass(frozen=True, eq=False)

@@ -3,12 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 from heatwright.formation.formation import LedgerLine
-from heatwright.formation.reference_set import Reference
 from heatwright.formation.references import atom_reference
-from heatwright.partition.model import ThermoModel
+
+if TYPE_CHECKING:
+    from heatwright.formation.reference_set import Reference
+    from heatwright.partition.model import ThermoModel
 
 COVERAGE: Final = 2.0
 """Standard deviations in a 95 % uncertainty."""

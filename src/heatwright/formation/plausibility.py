@@ -4,12 +4,14 @@ from __future__ import annotations
 
 from collections.abc import Collection, Mapping
 from functools import cache
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 from heatwright.findings import Finding, Refused, refuse, warn
-from heatwright.molecule import Molecule
 from heatwright.resources import data_rows
 from heatwright.structure.bond_orders import bonding
+
+if TYPE_CHECKING:
+    from heatwright.molecule import Molecule
 
 BOUND_KJ_MOL: Final = (175.0, 25.0, 50.0)
 """By how much the two may differ: a fixed part, one for each atom and one for each unpaired electron, kJ/mol (our own

@@ -11,16 +11,18 @@ from collections import Counter
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from math import gcd, sqrt
-from typing import Any, Final, Literal
+from typing import TYPE_CHECKING, Any, Final, Literal
 
 import numpy as np
 
 from heatwright.formation.balance import Account, account, surplus
-from heatwright.formation.error_model import ErrorScales
-from heatwright.formation.reference_set import Reference
-from heatwright.molecule import FloatArray
-from heatwright.partition.model import ThermoModel
-from heatwright.structure.bond_orders import Bonding
+
+if TYPE_CHECKING:
+    from heatwright.formation.error_model import ErrorScales
+    from heatwright.formation.reference_set import Reference
+    from heatwright.molecule import FloatArray
+    from heatwright.partition.model import ThermoModel
+    from heatwright.structure.bond_orders import Bonding
 
 Kind = Literal["homodesmotic", "isodesmic", "unbalanced"]
 LARGEST_COEFFICIENT: Final = 3

@@ -5,19 +5,21 @@ from __future__ import annotations
 from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass, field, replace
 from pathlib import PurePath
-from typing import TypeVar
+from typing import TYPE_CHECKING, TypeVar
 
 from heatwright.constants import HARTREE_KJ_MOL
 from heatwright.elements import formula
 from heatwright.findings import Finding, Refused, note, refuse, warn
-from heatwright.formation.atomization import Atoms
 from heatwright.formation.formation import element_increment_kJ_mol
 from heatwright.formation.species_references import SpeciesReference, reference_for
-from heatwright.molecule import Molecule
 from heatwright.partition.choices import ModelOptions
 from heatwright.partition.model import ThermoModel, build_model
 from heatwright.structure.bond_orders import Bonding, bonding
-from heatwright.structure.identity import Identity
+
+if TYPE_CHECKING:
+    from heatwright.formation.atomization import Atoms
+    from heatwright.molecule import Molecule
+    from heatwright.structure.identity import Identity
 
 T = TypeVar("T")
 

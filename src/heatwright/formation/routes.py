@@ -8,14 +8,14 @@ from math import hypot, inf
 from typing import TYPE_CHECKING, Final, Literal, get_args
 
 from heatwright.findings import Finding, Refused, note, refusals, refuse, warn
-from heatwright.formation.atomization import Atoms
 from heatwright.formation.choices import PLAIN, EnergyChoices, atomized
 from heatwright.formation.formation import Electron, Formation, GivenEnthalpy, formation_given
 from heatwright.formation.references import atom_reference
-from heatwright.partition.model import ThermoModel
 
 if TYPE_CHECKING:
+    from heatwright.formation.atomization import Atoms
     from heatwright.formation.reference_set import ReferenceSet
+    from heatwright.partition.model import ThermoModel
 
 Route = Literal["given", "atomization", "reaction", "network", "best"]
 ROUTES: Final[tuple[str, ...]] = get_args(Route)
@@ -63,7 +63,11 @@ def formation_of(model: ThermoModel, request: RouteRequest) -> Formation:
         raise Refused([_no_way(model)])
     if route == "best":
         return _best(model, request)
-    return _BY_ROUTE[route](model, request)
+    made = _BY_ROUTE[route](model, request)
+    if request.given is None or route == "given":
+        return made
+    words = f"the enthalpy of formation that is given ({request.given[0].text}) is not used, as the route is {route}"
+    return replace(made, findings=(*made.findings, note("route", f"{words}, which gives {_value(made)}")))
 
 
 def _no_way(model: ThermoModel) -> Finding:

@@ -2,9 +2,13 @@
 
 from __future__ import annotations
 
+from typing import TYPE_CHECKING
+
 from heatwright.findings import Finding, refuse, warn
-from heatwright.molecule import Molecule
 from heatwright.reading.levels import level_differences, level_unknowns
+
+if TYPE_CHECKING:
+    from heatwright.molecule import Molecule
 
 
 def level_objections(what: str, other: Molecule, molecule: Molecule, *, trust: bool = False) -> tuple[Finding, ...]:

@@ -6,17 +6,20 @@ import os
 from collections.abc import Iterable
 from dataclasses import dataclass
 from functools import cache
+from typing import TYPE_CHECKING
 
 from heatwright.constants import GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
 from heatwright.elements import atomic_number, formula, ground_multiplicity, parse_formula
 from heatwright.findings import Finding, Refused, note
 from heatwright.formation.formation import element_increment_kJ_mol
 from heatwright.formation.references import AtomReference, atom_references
-from heatwright.molecule import Molecule
 from heatwright.reading.tables import Row, read_table
 from heatwright.resources import data_rows
 from heatwright.structure.cis_trans import has_sides, stated_sides
 from heatwright.structure.identity import Identity, identity_of, identity_of_smiles
+
+if TYPE_CHECKING:
+    from heatwright.molecule import Molecule
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -5,12 +5,11 @@ from __future__ import annotations
 from collections.abc import Collection, Iterable
 from dataclasses import dataclass, replace
 from functools import cached_property
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
 from heatwright.findings import Finding, Refused, note, refusals, refuse, warn
-from heatwright.formation.atomization import Atoms
 from heatwright.formation.choices import PLAIN, EnergyChoices, atomized
 from heatwright.formation.error_model import (
     DEFAULT_SCALES,
@@ -21,12 +20,15 @@ from heatwright.formation.error_model import (
     fit_scales,
 )
 from heatwright.formation.network import LeftOut, leave_one_out
-from heatwright.formation.reference_set import Reference, ReferenceSet
 from heatwright.formation.same_level import level_objections
-from heatwright.molecule import FloatArray, Molecule
-from heatwright.partition.model import ThermoModel
 from heatwright.reading.levels import level_differences
 from heatwright.structure.identity import identity_of
+
+if TYPE_CHECKING:
+    from heatwright.formation.atomization import Atoms
+    from heatwright.formation.reference_set import Reference, ReferenceSet
+    from heatwright.molecule import FloatArray, Molecule
+    from heatwright.partition.model import ThermoModel
 
 PLAUSIBLE_ERROR_KJ_MOL: Final = (100.0, 25.0)
 """An energy is not believed when the enthalpy of formation it gives is further from the evaluated one than the first

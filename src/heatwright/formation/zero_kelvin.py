@@ -5,11 +5,13 @@ from __future__ import annotations
 import os
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 from heatwright.findings import Finding, refuse
-from heatwright.molecule import Molecule
 from heatwright.reading.tables import Row, read_table
+
+if TYPE_CHECKING:
+    from heatwright.molecule import Molecule
 
 COLUMNS: Final = ("file", "energy0_hartree", "level", "source")
 """The columns of a table of 0 K energies, all of them needed."""

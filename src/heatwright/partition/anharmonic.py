@@ -7,14 +7,16 @@ H. F. Schaefer, J. Chem. Phys. 95, 5128 (1991) (from memory).
 
 from __future__ import annotations
 
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
 from heatwright.constants import CM1_KJ_MOL, HARTREE_CM1, HARTREE_KJ_MOL
 from heatwright.findings import Finding, Refused, note, refuse, warn
-from heatwright.molecule import FloatArray, Molecule
 from heatwright.partition.vibration import zero_point_energy_kJ_mol
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, Molecule
 
 _DIGITS_CM1: Final = 1.0
 """Zero-point energies printed in kcal/mol with three decimals are good to 0.2 cm⁻¹; this leaves room."""

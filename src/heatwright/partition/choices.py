@@ -8,15 +8,17 @@ from typing import TYPE_CHECKING, Final, Literal, get_args
 
 from heatwright.constants import BAR_PA
 from heatwright.errors import UsageError
-from heatwright.molecule import MassKind
-from heatwright.partition.inputs import InputUncertainties
 from heatwright.partition.lowmodes import LowModes
 from heatwright.partition.motion import RotationKind
-from heatwright.partition.radicals import ElectronicOption
 
 if TYPE_CHECKING:
+    from heatwright.molecule import MassKind
+    from heatwright.partition.inputs import InputUncertainties
+    from heatwright.partition.radicals import ElectronicOption
     from heatwright.reading.torsion_scans import Torsion
 
+LARGEST_SYMMETRY_TOLERANCE_A: Final = 0.35
+"""As in :mod:`heatwright.structure.symmetry`, which looks for no symmetry beyond it."""
 HARMONIC: Final = LowModes()
 """Low modes as they come: the default."""
 
@@ -59,6 +61,11 @@ class ModelOptions:
             value = getattr(self, name)
             if value is not None and not (isfinite(value) and value > 0.0):
                 raise UsageError(f"{name} must be a positive number, not {value}")
+        if self.symmetry_tolerance_A > LARGEST_SYMMETRY_TOLERANCE_A:
+            words = (
+                f"the symmetry tolerance is at most {LARGEST_SYMMETRY_TOLERANCE_A} Å, not {self.symmetry_tolerance_A:g}"
+            )
+            raise UsageError(words)
         for name in ("symmetry_number", "optical_isomers"):
             value = getattr(self, name)
             if value is not None and value < 1:

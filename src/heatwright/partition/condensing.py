@@ -15,11 +15,12 @@ Source: G. H. Golub, J. H. Welsch, Math. Comput. 23, 221 (1969) (from memory).
 
 from __future__ import annotations
 
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
-from heatwright.molecule import FloatArray, IntArray
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, IntArray
 
 NODES: Final = 6
 WIDTH: Final = 1.0 / 16.0

@@ -10,13 +10,15 @@ what belongs to the conformer alone: its symmetry number, and its mirror image a
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import ClassVar
+from typing import TYPE_CHECKING, ClassVar
 
 import numpy as np
 
 from heatwright.constants import GAS_CONSTANT_J_MOL_K
-from heatwright.molecule import FloatArray
 from heatwright.partition.contribution import Contribution, LnQ, total_ln_q
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
 
 
 @dataclass(frozen=True, eq=False, slots=True)

@@ -16,11 +16,12 @@ from collections.abc import Iterable
 from dataclasses import dataclass
 from functools import reduce
 from operator import add
-from typing import Protocol
+from typing import TYPE_CHECKING, Protocol
 
 import numpy as np
 
-from heatwright.molecule import FloatArray
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
 
 
 @dataclass(frozen=True, eq=False, slots=True)

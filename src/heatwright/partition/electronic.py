@@ -2,19 +2,22 @@
 
 from __future__ import annotations
 
+import math
 import re
 from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import cache
-from typing import ClassVar
+from typing import TYPE_CHECKING, ClassVar
 
 import numpy as np
 
 from heatwright.constants import SECOND_RADIATION_CM_K
 from heatwright.errors import UsageError
-from heatwright.molecule import FloatArray
 from heatwright.partition.contribution import LnQ
 from heatwright.resources import data_rows
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
 
 Levels = tuple[tuple[float, int], ...]
 """(wavenumber above the ground level in 1/cm, degeneracy), ascending; the first one is (0, g₀)."""
@@ -113,6 +116,8 @@ def parse_levels(text: str) -> Levels:
 def checked_levels(levels: Sequence[tuple[float, int]]) -> Levels:
     """The levels in ascending order; raises UsageError unless the lowest one is at zero."""
     ordered = tuple(sorted(levels))
+    if not all(math.isfinite(wavenumber) for wavenumber, _ in ordered):
+        raise UsageError("an electronic level has no finite wavenumber; expected a number of 1/cm, such as 139.21:2")
     if not ordered or ordered[0][0] != 0.0:
         raise UsageError(
             "electronic levels are counted from the ground level: the lowest one must be at 0, such as 0:2,139.21:2"

@@ -8,13 +8,15 @@ series cannot represent is refused, because a potential that is silently wrong c
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
 from heatwright.findings import Finding, Refused, refuse
-from heatwright.molecule import FloatArray
 from heatwright.partition.potential import Potential
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
 
 MOST_HARMONICS: Final = 5
 """Harmonics of the top's period that are fitted at most: with five of them 12 points leave less than 1 cm⁻¹."""

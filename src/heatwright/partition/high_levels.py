@@ -13,13 +13,15 @@ Sources: W. Magnus, S. Winkler, Hill's Equation (1966); R. M. Miura, C. S. Gardn
 from __future__ import annotations
 
 from math import cbrt, ceil, sqrt
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
-from heatwright.molecule import FloatArray, IntArray
 from heatwright.partition.plane_waves import torsional_levels
-from heatwright.partition.potential import Potential
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, IntArray
+    from heatwright.partition.potential import Potential
 
 _ORDERS: Final = 16
 _ABOVE: Final = 2.6

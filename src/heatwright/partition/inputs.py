@@ -4,11 +4,13 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from math import isfinite
-from typing import Final, Literal
+from typing import TYPE_CHECKING, Final, Literal
 
 from heatwright.errors import UsageError
-from heatwright.molecule import Level
 from heatwright.scales import all_factors, published_factors
+
+if TYPE_CHECKING:
+    from heatwright.molecule import Level
 
 LOW_MODES: Final = 0.2
 """Default relative standard uncertainty of a low mode."""
@@ -131,6 +133,7 @@ def default_scale(level: Level | None) -> tuple[float, str]:
 
     Where none is published for the level, the one that is published for another level stands in, and it is said.
 
+    >>> from heatwright.molecule import Level
     >>> value, source = default_scale(Level("HF", "6-31G*"))
     >>> round(value, 4), source[:14]
     (0.0256, 'Irikura, Johns')

@@ -4,21 +4,19 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
 import numpy as np
 
 from heatwright.constants import CM1_KJ_MOL, GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
 from heatwright.findings import Finding, Refused, note, refuse, warn
-from heatwright.molecule import FloatArray, Molecule
 from heatwright.partition.contribution import ConstantFactor, Contribution, total_ln_q
 from heatwright.partition.fourier import FittedPotential, tolerated_cm1
 from heatwright.partition.pitzer_gwinn import PitzerGwinnRotor
 from heatwright.partition.plane_waves import basis_size
-from heatwright.partition.potential import Potential
 from heatwright.partition.scans import WishedTorsion, wished
 from heatwright.partition.torsion import MOST_WAVES, HinderedRotor, hindered_rotor
 from heatwright.partition.vibration import HarmonicVibration
-from heatwright.reading.torsion_scans import Torsion
 from heatwright.structure.isotopes import force_constants
 from heatwright.structure.torsion_modes import without_torsions
 from heatwright.structure.torsions import (
@@ -30,6 +28,11 @@ from heatwright.structure.torsions import (
     rotational_constant_cm1,
     torsion_vectors,
 )
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, Molecule
+    from heatwright.partition.potential import Potential
+    from heatwright.reading.torsion_scans import Torsion
 
 LOW_CM1 = 1000.0
 """A torsion has a wavenumber below this (common practice, no source); the highest here is N2H4's at some 400."""

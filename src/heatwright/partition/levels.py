@@ -2,13 +2,15 @@
 
 from __future__ import annotations
 
-from typing import Literal
+from typing import TYPE_CHECKING, Literal
 
 from heatwright.elements import composition, formula
 from heatwright.findings import Finding, note, warn
-from heatwright.molecule import Molecule
 from heatwright.partition.electronic import Levels, tabulated_levels
-from heatwright.structure.inertia import Inertia
+
+if TYPE_CHECKING:
+    from heatwright.molecule import Molecule
+    from heatwright.structure.inertia import Inertia
 
 
 def chosen_levels(

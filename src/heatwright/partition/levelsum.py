@@ -4,14 +4,16 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from functools import cached_property
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
 from heatwright.constants import SECOND_RADIATION_CM_K
-from heatwright.molecule import FloatArray
 from heatwright.partition.condensing import condensed
 from heatwright.partition.contribution import LnQ
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
 
 HIGHEST_CM1: Final = 3.2e5
 """Levels above this are left out, 1/cm: at 10000 K their Boltzmann factor is below 10⁻²⁰."""

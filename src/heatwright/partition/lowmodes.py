@@ -14,7 +14,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 from math import isfinite
-from typing import ClassVar, Literal, get_args
+from typing import TYPE_CHECKING, ClassVar, Literal, get_args
 
 import numpy as np
 
@@ -27,9 +27,11 @@ from heatwright.constants import (
 )
 from heatwright.errors import UsageError
 from heatwright.findings import Finding, note
-from heatwright.molecule import FloatArray
 from heatwright.partition.contribution import Contribution, LnQ
 from heatwright.partition.vibration import HarmonicVibration, check_wavenumbers, harmonic_sums
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
 
 LowModesKind = Literal["harmonic", "floor", "interpolate"]
 

@@ -4,20 +4,22 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
 from dataclasses import replace
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
 from heatwright.constants import HARTREE_KJ_MOL
 from heatwright.elements import formula
 from heatwright.findings import Finding, Refused, note, refusals, refuse, warn
-from heatwright.molecule import Molecule
 from heatwright.partition.conformers import Conformer, ConformerMixture
-from heatwright.partition.model import ThermoModel
 from heatwright.reading.levels import level_differences, level_unknowns
 from heatwright.structure.bonds import bonds, fingerprint
 from heatwright.structure.likeness import Likeness, likeness
 from heatwright.structure.symmetry import atom_kinds
+
+if TYPE_CHECKING:
+    from heatwright.molecule import Molecule
+    from heatwright.partition.model import ThermoModel
 
 SAME_ENERGY_KJ_MOL: Final = 0.1
 """Energies of one conformer, optimised twice, differ by less than this, kJ/mol (common practice, no source)."""

@@ -14,12 +14,10 @@ from numpy.typing import ArrayLike
 from heatwright.constants import CM1_KJ_MOL, GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
 from heatwright.elements import composition, element
 from heatwright.findings import Finding, warn
-from heatwright.molecule import FloatArray, MassKind, Molecule
 from heatwright.partition.anharmonic import anharmonic_findings, oscillators
 from heatwright.partition.choices import HARMONIC, ModelOptions
 from heatwright.partition.conformers import Conformer, ConformerMixture
 from heatwright.partition.contribution import ConstantFactor, Contribution, LnQ, total_ln_q
-from heatwright.partition.electronic import Levels
 from heatwright.partition.isomers import isomers_with_torsions
 from heatwright.partition.motion import Motion, motion
 from heatwright.partition.radicals import electronic_choice
@@ -27,14 +25,16 @@ from heatwright.partition.rigid import RigidBody, rigid_body, symmetry_choice
 from heatwright.partition.scaling import published_choice, scale_findings
 from heatwright.partition.table import ThermoTable, checked_temperatures, share_of
 from heatwright.partition.translation import Translation
-from heatwright.partition.vibration import zero_point_energy_kJ_mol
-from heatwright.scales import ScaleChoice
-from heatwright.structure.inertia import Inertia
-from heatwright.structure.symmetry import Symmetry
+from heatwright.partition.vibration import HarmonicVibration, harmonic_sums_of_many, zero_point_energy_kJ_mol
 
 if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, MassKind, Molecule
+    from heatwright.partition.electronic import Levels
     from heatwright.partition.internal_rotation import InternalRotation, TreatedTorsion
     from heatwright.partition.uncertainty import TableUncertainty
+    from heatwright.scales import ScaleChoice
+    from heatwright.structure.inertia import Inertia
+    from heatwright.structure.symmetry import Symmetry
 
 
 _AHEAD: Final = "_ahead"
@@ -219,6 +219,15 @@ class ThermoModel:
     def classical_limit_R(self) -> float | None:
         """The same where it is a limit of this model, else None: electronic levels, level sums, conformer mixtures."""
         return self.classical_cp_R if len(self.levels) == 1 and self.motion.is_bounded and not self.conformers else None
+
+
+def evaluate_together(models: Sequence[ThermoModel], T: FloatArray) -> None:
+    """As :meth:`ThermoModel.evaluate_ahead` for each model, with all harmonic oscillators at once."""
+    harmonic = [c for model in models for c in model.contributions if isinstance(c, HarmonicVibration)]
+    sums = iter(harmonic_sums_of_many([np.array(c.wavenumbers_cm1) for c in harmonic], T))
+    for model in models:
+        parts = [next(sums) if isinstance(c, HarmonicVibration) else c.ln_q(T) for c in model.contributions]
+        model.__dict__[_AHEAD] = (T, tuple(parts))
 
 
 def build_model(

@@ -3,23 +3,25 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import Literal
+from typing import TYPE_CHECKING, Literal
 
 import numpy as np
 
 from heatwright.constants import GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
 from heatwright.findings import Finding, Refused, note, refuse, warn
-from heatwright.molecule import DiatomicConstants, FloatArray, Molecule
-from heatwright.partition.contribution import Contribution
 from heatwright.partition.diatomic import level_sum, rotational_levels, vibration_rotation_levels
 from heatwright.partition.electronic import ElectronicLevels
 from heatwright.partition.electronic import Levels as ElectronicPairs
 from heatwright.partition.levelsum import LevelSum
 from heatwright.partition.lowmodes import LowModes, ModeShift, low_mode_findings, mode_shifts
-from heatwright.partition.radicals import DoubletPi
 from heatwright.partition.rotation import ClassicalRotor, CorrectedRotor
 from heatwright.partition.spins import spin_weights
-from heatwright.structure.inertia import Inertia
+
+if TYPE_CHECKING:
+    from heatwright.molecule import DiatomicConstants, FloatArray, Molecule
+    from heatwright.partition.contribution import Contribution
+    from heatwright.partition.radicals import DoubletPi
+    from heatwright.structure.inertia import Inertia
 
 RotationKind = Literal["classical", "corrected", "sum"]
 

@@ -10,15 +10,17 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 from math import log, pi
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
 from heatwright.constants import SECOND_RADIATION_CM_K
-from heatwright.molecule import FloatArray
 from heatwright.partition.contribution import LnQ
-from heatwright.partition.potential import Potential
 from heatwright.partition.vibration import HarmonicVibration
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
+    from heatwright.partition.potential import Potential
 
 _POINTS: Final = 720
 """Points in one turn; for a periodic function the mean over equal steps converges faster than any power."""
@@ -35,6 +37,7 @@ class PitzerGwinnRotor:
     potential, F_cm1 : V(φ) and the rotational constant, 1/cm.   symmetry_number : σ.
     With a constant potential this is the classical free rotor.
 
+    >>> from heatwright.partition.potential import Potential
     >>> ethane = PitzerGwinnRotor(Potential(512.0, (0.0, 0.0, -512.0), (0.0, 0.0, 0.0)), 10.70, 3)
     >>> round(float(ethane.ln_q(np.array([298.15])).s_R[0]) * 8.31446261815324, 1)
     6.9

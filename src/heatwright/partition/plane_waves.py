@@ -11,14 +11,16 @@ Sources: E. B. Wilson, Chem. Rev. 27, 17 (1940); J. D. Lewis, T. B. Malloy, T. H
 from __future__ import annotations
 
 from math import ceil, sqrt
-from typing import Any, Final
+from typing import TYPE_CHECKING, Any, Final
 
 import numpy as np
 from numpy.typing import NDArray
 
 from heatwright.constants import SECOND_RADIATION_CM_K
-from heatwright.molecule import FloatArray, IntArray
 from heatwright.partition.potential import Potential
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, IntArray
 
 T_MAX_K: Final = 6000.0
 """Temperature for which the levels are made; at twice that, what is missing of ln q is still below 10⁻⁵."""

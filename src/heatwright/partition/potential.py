@@ -5,12 +5,13 @@ from __future__ import annotations
 from dataclasses import dataclass
 from functools import cached_property, reduce
 from math import gcd, sqrt
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 from numpy.typing import NDArray
 
-from heatwright.molecule import FloatArray
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
 
 _GRID: Final = np.linspace(0.0, 2.0 * np.pi, 1440, endpoint=False)
 

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
-from typing import Literal
+from typing import TYPE_CHECKING, Literal
 
 from heatwright.elements import composition, element, formula
 from heatwright.findings import Finding, note, warn
@@ -12,9 +12,11 @@ from heatwright.partition.diatomic import Levels, doublet_pi_levels, doublet_pi_
 from heatwright.partition.electronic import Levels as ElectronicPairs
 from heatwright.partition.electronic import tabulated_levels
 from heatwright.partition.levels import chosen_levels
-from heatwright.partition.levelsum import LevelSum
 from heatwright.resources import data_rows
-from heatwright.structure.inertia import Inertia
+
+if TYPE_CHECKING:
+    from heatwright.partition.levelsum import LevelSum
+    from heatwright.structure.inertia import Inertia
 
 ElectronicOption = Literal["table", "spin", "levels"] | ElectronicPairs
 

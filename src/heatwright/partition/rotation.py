@@ -4,13 +4,15 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from math import log, pi
-from typing import ClassVar
+from typing import TYPE_CHECKING, ClassVar
 
 import numpy as np
 
 from heatwright.constants import SECOND_RADIATION_CM_K
-from heatwright.molecule import FloatArray
 from heatwright.partition.contribution import LnQ
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
 
 
 @dataclass(frozen=True, slots=True)

@@ -4,17 +4,15 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
 import numpy as np
 
 from heatwright.findings import Finding, Refused
-from heatwright.molecule import FloatArray, Molecule
-from heatwright.partition.contribution import Contribution
 from heatwright.partition.internal_rotation import TreatedTorsion, internal_rotation
 from heatwright.partition.pitzer_gwinn import PitzerGwinnRotor
 from heatwright.partition.potential import cosine_potential
 from heatwright.partition.vibration import HarmonicVibration
-from heatwright.reading.torsion_scans import Torsion
 from heatwright.structure.isotopes import force_constants
 from heatwright.structure.modes import SQUARE_CM2
 from heatwright.structure.torsions import (
@@ -24,6 +22,11 @@ from heatwright.structure.torsions import (
     rotational_constant_cm1,
     torsion_vectors,
 )
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, Molecule
+    from heatwright.partition.contribution import Contribution
+    from heatwright.reading.torsion_scans import Torsion
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)

@@ -2,13 +2,17 @@
 
 from __future__ import annotations
 
+from typing import TYPE_CHECKING
+
 import numpy as np
 
 from heatwright.constants import GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
 from heatwright.findings import Finding, Refused, note, refuse, warn
-from heatwright.molecule import FloatArray, Molecule
 from heatwright.partition.vibration import HarmonicVibration
 from heatwright.scales import ScaleChoice, choose_published
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, Molecule
 
 
 def published_choice(molecule: Molecule) -> ScaleChoice | None:

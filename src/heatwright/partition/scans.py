@@ -3,13 +3,13 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
 import numpy as np
 
 from heatwright.constants import HARTREE_CM1
 from heatwright.elements import composition, formula
 from heatwright.findings import Finding, Refused, refuse, warn
-from heatwright.molecule import FloatArray, Molecule
 from heatwright.partition.fourier import FittedPotential, fitted_potential
 from heatwright.partition.potential import Potential, cosine_potential
 from heatwright.reading.levels import level_differences
@@ -24,6 +24,9 @@ from heatwright.structure.torsions import (
     rotatable_bond,
     rotatable_bonds,
 )
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, Molecule
 
 LOWER_CM1 = 20.0
 """A scan's energy so much below that of the frequencies is another minimum and not the optimiser's last digit."""

@@ -2,7 +2,10 @@
 
 from __future__ import annotations
 
-from heatwright.molecule import FloatArray, IntArray
+from typing import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, IntArray
 
 _HYDROGEN = {1: (0.25, 0.75, "para : ortho 1 : 3"), 2: (2 / 3, 1 / 3, "ortho : para 6 : 3"), 3: (0.25, 0.75, "1 : 3")}
 """By mass number: weights of even and odd J, normalised to the mean 1/2, and their ratio in words.  Spins ½, 1, ½."""

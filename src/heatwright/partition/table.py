@@ -12,10 +12,10 @@ from numpy.typing import ArrayLike
 
 from heatwright.constants import GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
 from heatwright.errors import UsageError
-from heatwright.molecule import FloatArray
-from heatwright.partition.contribution import LnQ
 
 if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
+    from heatwright.partition.contribution import LnQ
     from heatwright.partition.uncertainty import TableUncertainty
 
 

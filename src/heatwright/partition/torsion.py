@@ -4,17 +4,19 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from math import ceil, log
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
 from heatwright.constants import SECOND_RADIATION_CM_K
 from heatwright.errors import UsageError
-from heatwright.molecule import FloatArray
 from heatwright.partition.contribution import LnQ
 from heatwright.partition.high_levels import joined_levels
 from heatwright.partition.plane_waves import T_MAX_K, basis_size, torsional_levels
-from heatwright.partition.potential import Potential
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
+    from heatwright.partition.potential import Potential
 
 CONVERGED: Final = 1.0e-8
 """Largest change of ln q and its derivatives at T_MAX_K that a basis twice as large may make."""

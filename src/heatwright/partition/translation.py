@@ -4,13 +4,15 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from math import log, pi
-from typing import ClassVar
+from typing import TYPE_CHECKING, ClassVar
 
 import numpy as np
 
 from heatwright.constants import ATOMIC_MASS_KG, BAR_PA, BOLTZMANN_J_K, PLANCK_J_S
-from heatwright.molecule import FloatArray
 from heatwright.partition.contribution import LnQ
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
 
 
 @dataclass(frozen=True, slots=True)

@@ -13,18 +13,20 @@ from collections.abc import Callable, Iterable, Iterator, Sequence
 from dataclasses import dataclass, replace
 from functools import partial
 from math import exp
-from typing import Any, Final, Protocol, runtime_checkable
+from typing import TYPE_CHECKING, Any, Final, Protocol, runtime_checkable
 
 import numpy as np
 from numpy.typing import NDArray
 
 from heatwright.constants import GAS_CONSTANT_J_MOL_K, STANDARD_TEMPERATURE_K
 from heatwright.findings import Finding, warn
-from heatwright.molecule import FloatArray, Level
 from heatwright.partition.conformers import Conformer, conformer_ln_q, mixed
 from heatwright.partition.contribution import Contribution, LnQ
 from heatwright.partition.inputs import InputUncertainties, StatedInput, stated_inputs
 from heatwright.partition.vibration import HarmonicVibration, mode_sensitivities
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, Level
 
 MaskArray = NDArray[np.bool_]
 

@@ -4,13 +4,15 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import ClassVar, Final
+from typing import TYPE_CHECKING, ClassVar, Final
 
 import numpy as np
 
 from heatwright.constants import CM1_KJ_MOL, SECOND_RADIATION_CM_K
-from heatwright.molecule import FloatArray
 from heatwright.partition.contribution import LnQ
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
 
 _CHUNK: Final = 1 << 15
 """Mode-temperatures done at once: the three arrays of a block, 800 kB, then stay inside a processor's cache."""
@@ -171,4 +173,4 @@ def zero_point_energy_kJ_mol(wavenumbers_cm1: Sequence[float] | FloatArray) -> f
     >>> round(zero_point_energy_kJ_mol([2143.237]), 3)
     12.819
     """
-    return float(0.5 * np.sum(np.asarray(wavenumbers_cm1, dtype=float)) * CM1_KJ_MOL)
+    return float(0.5 * np.asarray(wavenumbers_cm1, dtype=float).sum() * CM1_KJ_MOL)

@@ -7,13 +7,15 @@ interval is scanned before anything is refined.  All candidates are fitted toget
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
 from heatwright.constants import STANDARD_TEMPERATURE_K
-from heatwright.molecule import FloatArray
 from heatwright.polynomial.minimax import NOISE, design, minimax_errors
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
 
 USUAL_COMMON_K: Final = 1000.0
 """The common temperature most files have, and the one preferred among equals."""

@@ -12,11 +12,12 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from functools import lru_cache
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
-from heatwright.molecule import FloatArray, IntArray
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, IntArray
 
 NODES_PER_RANGE: Final = 50
 MAX_ITERATIONS: Final = 100

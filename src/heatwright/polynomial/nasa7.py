@@ -46,7 +46,7 @@ def round_coefficient(value: float, digits: int = TEXT_DIGITS) -> float:
     """
     if not isfinite(value):
         raise Refused([refuse("not-a-number", f"a polynomial coefficient is {value}", expected="a finite number")])
-    rounded = float(f"{value:.{digits - 1}E}")
+    rounded = float(f"{value:.{digits}g}")
     if abs(rounded) < 1.0e-99:
         return 0.0
     if abs(rounded) >= 1.0e100:
@@ -56,7 +56,7 @@ def round_coefficient(value: float, digits: int = TEXT_DIGITS) -> float:
                     "value-unfit",
                     f"a polynomial coefficient is {value:.8E}",
                     expected="a magnitude below 1E+100, which a two-digit exponent can hold",
-                    action="Check the heat capacity and the temperature range that were fitted",
+                    action="Check the heat capacity and the temperature range that were fitted.",
                 )
             ]
         )

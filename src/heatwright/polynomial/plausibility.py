@@ -7,12 +7,14 @@ that ripple) the margins are those that the 748 gaseous species of NASA TM-4513 
 from __future__ import annotations
 
 from dataclasses import replace
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
-from heatwright.molecule import FloatArray
 from heatwright.polynomial.nasa7 import Nasa7, cp_of
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
 
 _POINTS: Final = 60
 _NOTICEABLE: Final = 0.1

@@ -14,7 +14,7 @@ from dataclasses import dataclass, replace
 from typing import Final
 
 from heatwright import __version__
-from heatwright.findings import Finding, Refused, refusals
+from heatwright.findings import Finding, Refused, refusals, warn
 from heatwright.project.executors import Engine
 from heatwright.project.fingerprint import tool_fingerprint
 from heatwright.project.library import Library
@@ -132,6 +132,7 @@ class _Build:
         self._library.store.flush()
         kept = self._kept(plan, pipeline.failed)
         written = self._write(plan, {**fresh, **kept})
+        pipeline.forget_finished()
         return Outcome(plan, tuple(sorted(fresh)), tuple(sorted(pipeline.failed)), tuple(sorted(kept)), written)
 
     def _kept(self, plan: Plan, failed: Mapping[str, tuple[Finding, ...]]) -> dict[str, Record]:
@@ -143,6 +144,8 @@ class _Build:
             if not self._keep_previous or decision.name not in failed or old is None or set(block) != set(FILES):
                 continue
             if plan.lock is None or plan.lock.standard_pressure_Pa != _pressure_Pa(self._manifest):
+                words = f"the earlier entry of {decision.name} is for another standard pressure and cannot be kept"
+                self._watch.said(warn("pressures-mixed", words, where=decision.request.where))
                 continue
             why = refusals(failed[decision.name]) or failed[decision.name]
             texts = {f: with_remark(f, block[f], f"{_KEPT}: {why[0].text}", _KEPT) for f in FILES}
@@ -176,7 +179,9 @@ class _Build:
         if files == self._before:
             return False
         switch(release.path, files)
-        self._library.store.put({_lock_key(whole[LOCK_NAME]): json.dumps(document, ensure_ascii=False).encode()})
+        key = _lock_key(whole[LOCK_NAME])
+        self._library.store.put({key: json.dumps(document, ensure_ascii=False).encode()})
+        self._library.store.drop_others("lock", key)  # they are large, and a lock file of old is rarely put back
         return True
 
     def _together(self, plan: Plan, fresh: dict[str, Record]) -> list[Record]:

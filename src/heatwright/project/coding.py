@@ -11,6 +11,7 @@ from collections.abc import Callable, Mapping
 from dataclasses import MISSING, dataclass, fields
 from functools import cache
 from importlib import import_module
+from math import prod
 from typing import Any, Final
 
 import numpy as np
@@ -21,7 +22,7 @@ _NAME_IN_JSON: Final = "\\u0000"
 _PLAIN: Final = b"HW1"
 _PACKED: Final = b"HZ1"
 _WORTH_PACKING: Final = 1 << 14
-_DTYPES: Final = ("float64", "int64", "bool", "int32", "int16", "int8", "uint8")
+_DTYPES: Final = {name: np.dtype(name) for name in ("float64", "int64", "bool", "int32", "int16", "int8", "uint8")}
 
 
 _SCALARS: Final = frozenset({str, int, float, bool, type(None)})
@@ -142,8 +143,9 @@ def _value(plain: Any, body: bytes, start: int) -> Any:
         return tuple([item if type(item) in _SCALARS else _value(item, body, start) for item in plain])
     if type(plain) in _SCALARS:
         return plain
-    ((mark, inside),) = plain.items()
-    return _MARKED[mark](inside, body, start)
+    for mark, inside in plain.items():  # there is one
+        return _MARKED[mark](inside, body, start)
+    raise Unreadable("an object without a mark")
 
 
 def _object(inside: list[Any], body: bytes, start: int) -> Any:
@@ -163,12 +165,11 @@ def _mapping(inside: dict[str, Any], body: bytes, start: int) -> dict[str, Any]:
 
 def _numbers(inside: list[Any], body: bytes, start: int) -> np.ndarray[Any, Any]:
     name, shape, offset = inside
-    if name not in _DTYPES:
+    dtype = _DTYPES.get(name)
+    if dtype is None:
         raise Unreadable(f"an array of {name}")
-    count = 1
-    for n in shape:
-        count *= n
-    return np.frombuffer(body, dtype=name, count=count, offset=start + offset).reshape(shape)
+    values = np.frombuffer(body, dtype, prod(shape), start + offset)
+    return values if len(shape) == 1 else values.reshape(shape)
 
 
 _MARKED: Final[dict[str, Callable[..., Any]]] = {"@": _object, "%": _mapping, "#": _numbers}

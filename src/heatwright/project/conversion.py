@@ -14,13 +14,22 @@ from heatwright.species import Reading
 if TYPE_CHECKING:
     from heatwright.entry import FitOptions
     from heatwright.formation.choices import EnergyChoices
+    from heatwright.formation.corrections import Correction
     from heatwright.formation.formation import GivenEnthalpy
     from heatwright.formation.references import AtomReference
     from heatwright.formation.species_references import SpeciesReference
+    from heatwright.formation.zero_kelvin import ZeroKelvinEnergies
     from heatwright.partition.choices import ModelOptions
     from heatwright.partition.lowmodes import LowModes
     from heatwright.partition.radicals import ElectronicOption
-    from heatwright.project.manifest_types import FitChoice, FormationChoice, ModelChoice, ReadingChoice, SpeciesRequest
+    from heatwright.project.manifest_types import (
+        FitChoice,
+        FormationChoice,
+        ModelChoice,
+        ProjectPath,
+        ReadingChoice,
+        SpeciesRequest,
+    )
     from heatwright.reading.torsion_scans import Torsion
     from heatwright.structure.isotopes import Isotope
 
@@ -120,10 +129,10 @@ def fit_options(choice: FitChoice) -> FitOptions:
 
 
 def stated_enthalpy(choice: FormationChoice) -> tuple[GivenEnthalpy, str | None] | None:
-    """The enthalpy of formation that is stated and its source; None where the route makes no use of one."""
+    """The enthalpy of formation that is stated and its source; None where there is none."""
     from heatwright.formation.formation import parse_enthalpy
 
-    if choice.dHf298 is None or choice.route in ("atomization", "reaction", "network"):
+    if choice.dHf298 is None:
         return None
     return parse_enthalpy(choice.dHf298), choice.source
 
@@ -136,19 +145,32 @@ def energy_choices(
     own : the reference enthalpies of the user's table.   accept : of the reading choice.
     """
     from heatwright.formation.choices import EnergyChoices
-    from heatwright.formation.corrections import read_corrections
-    from heatwright.formation.zero_kelvin import read_zero_kelvin_energies
 
-    corrections, stated = choice.folders.corrections, choice.folders.zero_kelvin
     return EnergyChoices(
         trust_levels=choice.trust_levels,
         spin_orbit=choice.spin_orbit,
-        corrections=() if corrections is None else tuple(read_corrections(corrections.path)),
-        zero_kelvin=None if stated is None else read_zero_kelvin_energies(stated.path),
+        corrections=_corrections(choice.folders.corrections),
+        zero_kelvin=_zero_kelvin(choice.folders.zero_kelvin),
         electron=choice.electron,
         atom_values=_atom_values(own),
         accept=accept,
     )
+
+
+def _corrections(table: ProjectPath | None) -> tuple[Correction, ...]:
+    if table is None:
+        return ()
+    from heatwright.formation.corrections import read_corrections
+
+    return tuple(read_corrections(table.path))
+
+
+def _zero_kelvin(table: ProjectPath | None) -> ZeroKelvinEnergies | None:
+    if table is None:
+        return None
+    from heatwright.formation.zero_kelvin import read_zero_kelvin_energies
+
+    return read_zero_kelvin_energies(table.path)
 
 
 def _atom_values(own: tuple[SpeciesReference, ...]) -> dict[str, AtomReference] | None:

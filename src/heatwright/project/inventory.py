@@ -9,7 +9,7 @@ from dataclasses import dataclass, field
 from pathlib import PurePath
 from typing import Final
 
-from heatwright.findings import Refused, refusals
+from heatwright.findings import Refused, refusals, refuse
 from heatwright.formation.references import atom_reference
 from heatwright.molecule import Molecule
 from heatwright.reading.outputs import read_output
@@ -60,14 +60,23 @@ class Inventory:
 
 
 def files_in(folder: str) -> list[str]:
-    """The files below a folder by their paths from it, sorted; hidden files and folders are left out."""
+    """The files below a folder by their paths from it, sorted; hidden files and folders are left out.
+
+    Raises Refused when a folder may not be read.
+    """
     found = []
-    for here, subfolders, names in os.walk(folder):
+    for here, subfolders, names in os.walk(folder, onerror=_unreadable):
         subfolders[:] = sorted(name for name in subfolders if not name.startswith("."))
         for name in names:
             if not name.startswith(".") and os.path.isfile(os.path.join(here, name)):
                 found.append(os.path.relpath(os.path.join(here, name), folder).replace(os.sep, "/"))
     return sorted(found)
+
+
+def _unreadable(error: OSError) -> None:
+    words = f"the folder may not be read ({error.strerror})"
+    action = "Give yourself the permission, or move it away."
+    raise Refused([refuse("file-missing", words, where=str(error.filename), action=action)]) from error
 
 
 def take_inventory(
@@ -87,7 +96,7 @@ def take_inventory(
 
 def _sort(inventory: Inventory, path: str, file: str) -> None:
     if not path.isprintable():
-        inventory.unusable.append((path.encode("ascii", "backslashreplace").decode(), "the name cannot be written"))
+        inventory.unusable.append((_printable(path), "the name holds a character that no manifest can; rename it"))
         return
     try:
         molecule = read_output(file)
@@ -98,6 +107,10 @@ def _sort(inventory: Inventory, path: str, file: str) -> None:
             inventory.unusable.append((path, reason(error, file)))
         return
     _sort_molecule(inventory, Found(path, molecule), file)
+
+
+def _printable(path: str) -> str:
+    return "".join(c if c.isprintable() else c.encode("unicode_escape", "replace").decode() for c in path)
 
 
 def _sort_molecule(inventory: Inventory, found: Found, file: str) -> None:

@@ -143,7 +143,7 @@ KEYS: Final[tuple[Key, ...]] = (
     Key(
         "symmetry-tolerance",
         EVERYWHERE,
-        kinds.POSITIVE,
+        number_between(0.0, 0.35, open_below=True),
         "How far (Å) an atom may be from its image.",
         "model.symmetry_tolerance_A",
         "0.05",

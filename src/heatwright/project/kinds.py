@@ -93,7 +93,7 @@ def number_between(least: float, most: float | None = None, *, open_below: bool 
     expected = "a positive number" if open_below and least == 0.0 else f"a number from {least:g}"
     if most is not None:
         schema["maximum"] = most
-        expected = f"{expected} to {most:g}"
+        expected = f"{expected} {'of at most' if open_below else 'to'} {most:g}"
     return Kind(expected, schema, read)
 
 

@@ -21,6 +21,7 @@ from heatwright.project.tasks import (
     content_hash,
     do_task,
     do_tasks,
+    points_beside,
     read_key,
 )
 
@@ -48,6 +49,7 @@ class Library:
         self._failed: dict[str, Finding] = {}
         self._at_hand: dict[str, bytes] = {}
         self._bodies: dict[object, Any] = {}
+        self._keys: dict[ReadTask, str] = {}
 
     def hashes(self, paths: Iterable[str]) -> dict[str, str]:
         """SHA-256 by absolute path, empty where there is nothing to be read; from the store where no time changed."""
@@ -83,7 +85,10 @@ class Library:
 
     def key(self, task: ReadTask) -> str:
         """The store's key of what a task gives now."""
-        return read_key(task, self.sha256(task.path))
+        if task not in self._keys:
+            beside = points_beside(task.path) if task.torsion is not None else ""
+            self._keys[task] = read_key(task, self.sha256(task.path) + (self.sha256(beside) if beside else ""))
+        return self._keys[task]
 
     def fetch(self, tasks: Iterable[ReadTask]) -> None:
         """Have what some tasks gave at hand; it is let go when the next ones are fetched."""

@@ -20,7 +20,7 @@ LOCK_VERSION: Final = 1
 CP_TEMPERATURES_K: Final = (300.0, 400.0, 500.0, 600.0, 800.0, 1000.0, 1500.0)
 """Where Cp° is recorded, K."""
 _HEAD: Final = "# How each entry of this release was made.  `heatwright build` writes and reads it, not for editing."
-_DIGITS: Final = 9
+_ROUNDED: Final = "%.9g"
 
 
 @dataclass(frozen=True, slots=True, order=True)
@@ -115,7 +115,7 @@ def rounded(value: float) -> float:
     >>> rounded(239.81234567891)
     239.812346
     """
-    return float(f"{value:.{_DIGITS - 1}e}") + 0.0
+    return float(_ROUNDED % value) + 0.0
 
 
 def lock_text(lock: Lock) -> str:

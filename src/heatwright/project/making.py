@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import os
-from collections.abc import Callable, Iterator, Mapping, Sequence
+from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
 from dataclasses import replace
 from typing import TYPE_CHECKING, Any
 
@@ -77,16 +77,33 @@ class Maker:
         self._energies: dict[object, EnergyChoices] = {}
         self._own: dict[ProjectPath, Any] = {}
 
-    def ingredients(self, request: SpeciesRequest) -> EntryRequest:
-        """The model and the enthalpy of formation of one species, ready to be fitted.  Raises Refused."""
-        from heatwright.entry import EntryRequest, evaluation_grid
-
+    def model(self, request: SpeciesRequest) -> ThermoModel:
+        """The model of one species.  Raises Refused."""
         try:
-            options = self._fit_options(request.fit)
-            model = self._model(request)
-            grid = evaluation_grid(options)
+            self._fit_options(request.fit)
+            return self._model(request)
+        except UsageError as error:
+            raise Refused([refuse("manifest-wrong", str(error), where=request.where)]) from error
+
+    def evaluate(self, made: Iterable[tuple[SpeciesRequest, ThermoModel]]) -> None:
+        """Evaluate models at the temperatures at which their entries need them, all together where that can be said."""
+        from heatwright.entry import evaluation_grid
+        from heatwright.partition.model import evaluate_together
+
+        alike: dict[FitChoice, list[ThermoModel]] = {}
+        for request, model in made:
+            alike.setdefault(request.fit, []).append(model)
+        for choice, models in alike.items():
+            grid = evaluation_grid(self._fit_options(choice))
             if grid is not None:
-                model.evaluate_ahead(grid)
+                evaluate_together(models, grid)
+
+    def ingredients(self, request: SpeciesRequest, model: ThermoModel) -> EntryRequest:
+        """The model and the enthalpy of formation of one species, ready to be fitted.  Raises Refused."""
+        from heatwright.entry import EntryRequest
+
+        options = self._fit_options(request.fit)
+        try:
             formation = self._formation(request, model)
         except UsageError as error:
             raise Refused([refuse("manifest-wrong", str(error), where=request.where)]) from error

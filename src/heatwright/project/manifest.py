@@ -6,13 +6,15 @@ import fnmatch
 import os
 from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
+from functools import cached_property
 from typing import Any, Final
 
 from heatwright.findings import Finding, Refused, refuse
 from heatwright.project.keys import KEYS
 from heatwright.project.manifest_types import Manifest, Mechanism, OutputFiles, ProjectPath, SpeciesRequest
-from heatwright.project.merging import Draft, contradictions, over, species_request, with_level
-from heatwright.project.paths import Here
+from heatwright.project.merging import Draft, alike, contradictions, over, species_request, with_level
+from heatwright.project.paths import Here, RealPaths
+from heatwright.project.places import Places
 from heatwright.project.tables import CODE, FileTables, Given, Stated, found_files, read_tables
 
 MANIFEST_NAME: Final = "heatwright.toml"
@@ -33,11 +35,13 @@ def load_manifest(path: str | os.PathLike[str], *, confine: bool = False) -> Man
     file = os.fspath(path)
     file = os.path.join(file, MANIFEST_NAME) if os.path.isdir(file) else file
     root = os.path.dirname(os.path.abspath(file))
-    loading = _Loading(Here(root, root, confine), os.path.basename(file))
-    loading.outermost(file)
+    loading = _Loading(Here(root, root, confine), file, os.path.basename(file))
+    loading.outermost()
     species = loading.requests()
     loading.check_names(species)
     loading.check_files(species)
+    stated = {key: given.where for key, given in loading.head.items()}
+    loading.faults += loading.places.faults(species, stated, loading.shown)
     if loading.faults:
         raise Refused(_in_order(loading.faults))
     return Manifest(
@@ -61,6 +65,7 @@ class _Loading:
     """What has been gathered so far."""
 
     here: Here
+    file: str
     shown: str
     head: Stated = field(default_factory=dict)
     drafts: list[Draft] = field(default_factory=list)
@@ -69,13 +74,14 @@ class _Loading:
     faults: list[Finding] = field(default_factory=list)
     broken: set[str] = field(default_factory=set)
     mechanism_is_broken: bool = False
+    real_paths: RealPaths = field(default_factory=RealPaths)
     real: dict[str, str] = field(default_factory=dict)
 
-    def outermost(self, file: str) -> None:
+    def outermost(self) -> None:
         """The manifest itself."""
-        tables = read_tables(_text(file, self.shown, ""), self.shown, self.here)
+        tables = read_tables(_text(self.file, self.shown, ""), self.shown, self.here)
         self.head = tables.mechanism
-        self._take(tables, {}, {}, self.here, (os.path.realpath(file),), (self.shown,))
+        self._take(tables, {}, {}, self.here, (os.path.realpath(self.file),), (self.shown,))
 
     def _take(
         self,
@@ -176,9 +182,10 @@ class _Loading:
         made = [request for draft in self.drafts if (request := self._request(draft)) is not None]
         taken = {self._real(p.path) for draft in self.drafts for p in _named_files(draft.own)}
         for where, stated, inherited, here in self.globs:
-            for draft in self._found(where, stated, inherited, here, taken):
-                request = self._request(draft)
-                made += [request] if request is not None else []
+            drafts = self._found(where, stated, inherited, here, taken)
+            first = self._request(drafts[0]) if drafts else None
+            if first is not None:
+                made += [first, *(alike(first, draft) for draft in drafts[1:])]
         return made
 
     def _request(self, draft: Draft) -> SpeciesRequest | None:
@@ -204,7 +211,8 @@ class _Loading:
         drafts: dict[str, Draft] = {}
         for pattern, place in stated["glob"].value:
             try:
-                paths = [p for p in found_files(pattern, place, here) if not _is_excepted(p, left_out)]
+                found = found_files(pattern, place, here)
+                paths = [p for p in found if not (_is_excepted(p, left_out) or self.places.holds(self._real(p.path)))]
             except Refused as error:
                 self.faults += error.findings
                 continue
@@ -217,9 +225,16 @@ class _Loading:
                     drafts.setdefault(path.path, Draft(name_of_file(path.shown), place, {**own, **output}, inherited))
         return list(drafts.values())
 
+    @cached_property
+    def places(self) -> Places:
+        """Where the build writes; to be asked for when all manifests are read."""
+        mechanism = self.mechanism()
+        manifests = {os.path.realpath(self.file): self.shown, **{real: name for name, real in self.included.items()}}
+        return Places(mechanism.store, mechanism.release, manifests)
+
     def _real(self, path: str) -> str:
         if path not in self.real:
-            self.real[path] = os.path.realpath(path)
+            self.real[path] = self.real_paths(path)
         return self.real[path]
 
     def check_names(self, species: list[SpeciesRequest]) -> None:

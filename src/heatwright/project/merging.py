@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any, Final
 
 from heatwright.findings import Finding, Refused, refuse
@@ -101,6 +101,11 @@ def species_request(draft: Draft) -> SpeciesRequest:
         where=draft.where,
         **fields.get("", {}),
     )
+
+
+def alike(first: SpeciesRequest, draft: Draft) -> SpeciesRequest:
+    """The species of a draft that differs from that of *first* in its name and its output alone."""
+    return replace(first, name=draft.name, files=_files(over(draft.own, draft.inherited)), where=draft.where)
 
 
 def _files(stated: Stated) -> tuple[OutputFiles, ...]:

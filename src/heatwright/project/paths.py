@@ -47,11 +47,14 @@ class Here:
         named = glob.glob(pattern, root_dir=self.folder, recursive=True)
         files = [text for text in named if os.path.isfile(os.path.join(self.folder, text))]
         once: dict[str, str] = {}
+        real = RealPaths()
         for text in sorted(files, key=lambda text: (len(text), text)):
-            once.setdefault(os.path.realpath(os.path.join(self.folder, text)), text)
+            once.setdefault(real(os.path.join(self.folder, text)), text)
         return tuple(sorted(self.path(text, where) for text in once.values()))
 
     def _shown(self, text: str) -> str:
+        if self.folder == self.root and not os.path.isabs(text):
+            return os.path.normpath(text).replace(os.sep, "/")
         relative = os.path.relpath(os.path.join(self.folder, text), self.root)
         leaves = relative.split(os.sep)[0] == os.pardir
         return (text if leaves and os.path.isabs(text) else relative).replace(os.sep, "/")
@@ -64,6 +67,21 @@ class Here:
                 found = f"{text!r} leads to {real}, outside of the project"
                 action = "Copy what is needed into the project, or build without --confine."
                 raise Refused([refuse("outside-project", found, where=where, expected=f"inside {root}", action=action)])
+
+
+class RealPaths:
+    """As ``os.path.realpath``, which asks about every folder on the way to a file; this one asks once for a folder."""
+
+    def __init__(self) -> None:
+        self._folders: dict[str, str] = {}
+
+    def __call__(self, path: str) -> str:
+        folder, name = os.path.split(path)
+        if name in ("", os.curdir, os.pardir) or os.path.islink(path):
+            return os.path.realpath(path)
+        if folder not in self._folders:
+            self._folders[folder] = os.path.realpath(folder)
+        return os.path.join(self._folders[folder], name)
 
 
 def _entries(path: str) -> Iterable[str]:

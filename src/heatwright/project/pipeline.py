@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
+from contextlib import suppress
 from itertools import chain
 from time import monotonic
-from typing import TYPE_CHECKING, Final
+from typing import TYPE_CHECKING, Final, TypeVar
 
-from heatwright.findings import Finding, Refused, refusals
+from heatwright.findings import Finding, Refused
 from heatwright.project.library import Library
 from heatwright.project.lockfile import LockedReference
 from heatwright.project.making import Maker, broken, entries_of, tasks_of
@@ -18,11 +19,14 @@ from heatwright.project.shelf import Shelf
 from heatwright.project.watch import Watch
 
 if TYPE_CHECKING:
-    from heatwright.entry import Entry, EntryRequest
+    from heatwright.entry import Entry
     from heatwright.project.tasks import ReadTask
 
+T = TypeVar("T")
 _BATCH: Final = 128
 """Species made at a time: enough for the fit, few enough for the memory."""
+_BATCH_BESIDE: Final = 32
+"""The same while others read, who would have to wait for the last ones."""
 _WORTH_KEEPING_S: Final = 0.02
 """Entries that took less than this each (torsions, conformers and sums over levels take more) are made again sooner
 than they would be kept."""
@@ -37,6 +41,7 @@ class Pipeline:
         self._shelves = shelves
         self._watch = watch
         self._maker = Maker(library, shelves, watch.said)
+        self._kept: set[str] = set()
 
     def records(self, decisions: Sequence[Decision]) -> Iterator[Record]:
         """A record for each species that can be made, in the order in which they are finished."""
@@ -64,13 +69,14 @@ class Pipeline:
         ready = [decision for decision in decisions if not missing[decision.name]]
         every = chain(first, (task for decision in decisions for task in tasks[decision.name]))
         labelled = False
+        batch = _BATCH if self._library.engine.workers == 1 else _BATCH_BESIDE
         for key in self._library.reading(every, self._watch.reading):
             of_references.discard(key)
             for decision in waiting.get(key, ()):
                 missing[decision.name] -= 1
                 if not missing[decision.name]:
                     ready.append(decision)
-            if len(ready) >= _BATCH and not of_references:
+            if len(ready) >= batch and not of_references:
                 labelled = labelled or self._label()
                 yield ready
                 ready = []
@@ -96,8 +102,13 @@ class Pipeline:
                 self._library.store.drop(key)
                 continue
             found[decision.name] = record
+            self._kept.add(key)
             self._watch.made(decision, record)
         return found
+
+    def forget_finished(self) -> None:
+        """The store need not keep what was finished once that is in the release."""
+        self._library.store.drop_all(self._kept)
 
     def _result_key(self, decision: Decision) -> str:
         """Everything that an entry can depend on; more than it does, as its elements are not known beforehand."""
@@ -107,7 +118,12 @@ class Pipeline:
     def _made(self, batch: Sequence[Decision], tasks: Mapping[str, tuple[ReadTask, ...]]) -> Iterator[Record]:
         began = monotonic()
         self._library.fetch(task for decision in batch for task in tasks[decision.name])
-        ready = [(decision, made) for decision in batch if (made := self._ingredients(decision))]
+        models = self._each(batch, lambda decision: self._maker.model(decision.request))
+        with suppress(Exception):  # each is asked again by itself, and the one at fault says so
+            self._maker.evaluate((decision.request, model) for decision, model in models)
+        known = {decision.name: model for decision, model in models}
+        sound = [decision for decision, _ in models]
+        ready = self._each(sound, lambda decision: self._maker.ingredients(decision.request, known[decision.name]))
         entries = entries_of([request for _, request in ready])
         good: list[tuple[Decision, Entry, str, tuple[LockedReference, ...]]] = []
         for (decision, _), entry in zip(ready, entries, strict=True):
@@ -126,18 +142,23 @@ class Pipeline:
                 self._fail(decision, record)
                 continue
             if costly:
-                self._library.store.put({self._result_key(decision): packed(record)})
+                key = self._result_key(decision)
+                self._library.store.put({key: packed(record)})
+                self._kept.add(key)
             self._watch.made(decision, record)
             yield record
 
-    def _ingredients(self, decision: Decision) -> EntryRequest | None:
-        try:
-            return self._maker.ingredients(decision.request)
-        except Refused as error:
-            self._fail(decision, error)
-        except Exception as error:
-            self._fail(decision, broken(error))
-        return None
+    def _each(self, decisions: Sequence[Decision], work: Callable[[Decision], T]) -> list[tuple[Decision, T]]:
+        """What *work* gives for each, without those that fail, which is told."""
+        done = []
+        for decision in decisions:
+            try:
+                done.append((decision, work(decision)))
+            except Refused as error:
+                self._fail(decision, error)
+            except Exception as error:
+                self._fail(decision, broken(error))
+        return done
 
     def _fail(self, decision: Decision, error: Refused) -> None:
         self.failed[decision.name] = error.findings
@@ -145,8 +166,8 @@ class Pipeline:
 
 
 def _unfit(entry: Entry) -> Refused | None:
-    """Why an entry must not be written: its name, or a heat capacity that is not positive."""
+    """Why an entry must not be written: a name that does not fit."""
     from heatwright.writing.formats import FORMATS
 
-    faults = (*FORMATS["nasa7"].name_findings(entry.name), *refusals(entry.findings))
+    faults = FORMATS["nasa7"].name_findings(entry.name)
     return Refused(faults) if faults else None

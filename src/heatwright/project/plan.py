@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import hashlib
+import os
 from collections import Counter
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field, replace
@@ -27,6 +28,7 @@ from heatwright.project.manifest_types import (
     canonical,
 )
 from heatwright.project.shelf import references_hash
+from heatwright.project.tasks import points_beside
 from heatwright.project.texts import FILES, Texts, blocks_by_species, text_hash
 
 if TYPE_CHECKING:
@@ -179,8 +181,16 @@ def locked_files(request: SpeciesRequest, library: Library) -> tuple[LockedFile,
         found.append(("conformer" if i else "output", files.output))
         if files.energy is not None:
             found.append(("energy", files.energy))
-    found += [("torsion", torsion.scan) for torsion in request.model.torsions if torsion.scan is not None]
+    for torsion in request.model.torsions:
+        if torsion.scan is not None:
+            found += [("torsion", path) for path in (torsion.scan, *_beside(torsion.scan))]
     return tuple(LockedFile(role, path.shown, library.sha256(path.path)) for role, path in found)
+
+
+def _beside(scan: ProjectPath) -> tuple[ProjectPath, ...]:
+    path = points_beside(scan.path)
+    shown = f"{scan.shown.rpartition('/')[0]}/{os.path.basename(path)}".lstrip("/")
+    return (ProjectPath(shown, path),) if path else ()
 
 
 def entry_key(decision: Decision, rests_on: Iterable[LockedReference]) -> str:
@@ -275,7 +285,8 @@ def _output_reasons(files: tuple[LockedFile, ...], old: LockedSpecies) -> tuple[
 
 
 def _option_reasons(choices: Mapping[str, Any], old: LockedSpecies) -> tuple[Reason, ...]:
-    names = [name for name, _ in _FIELDS if choices.get(name) != old.choices.get(name)]
+    moved = {name for name in choices.keys() | old.choices.keys() if choices.get(name) != old.choices.get(name)}
+    names = [name for name, _ in _FIELDS if name in moved]
     words = [f"{name} {_word(old.choices.get(name))} -> {_word(choices.get(name))}" for name in names]
     return (Reason("options changed", ", ".join(words)),) if words else ()
 

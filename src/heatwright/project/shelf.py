@@ -147,7 +147,7 @@ class Shelf:
     def _rows(self, folder: ProjectPath | None) -> list[LockedReference]:
         if folder is None:
             return []
-        if not os.path.isdir(folder.path):
+        if _trouble(folder):
             return [LockedReference(folder.shown, "", _MISSING)]
         rows = [
             LockedReference(f.shown, self._library.sha256(f.path), self._labels[f.path]) for f in self.files(folder)
@@ -198,9 +198,10 @@ class Shelf:
 
     def _outputs(self, folder: ProjectPath, ending: str = "") -> Iterable[Molecule]:
         """The molecules in a folder, only those whose label has this ending.  Raises Refused for a missing folder."""
-        if not os.path.isdir(folder.path):
-            action = "Correct the folder in the manifest."
-            raise Refused([refuse("file-missing", "there is no such folder", where=folder.shown, action=action)])
+        trouble = _trouble(folder)
+        if trouble:
+            action = "Correct the folder in the manifest, or its permissions."
+            raise Refused([refuse("file-missing", trouble, where=folder.shown, action=action)])
         for file in self.files(folder):
             if ending and not self._labels[file.path].endswith(ending):
                 continue
@@ -209,8 +210,15 @@ class Shelf:
                 yield molecule
 
 
-def _files_in(folder: ProjectPath) -> tuple[ProjectPath, ...]:
+def _trouble(folder: ProjectPath) -> str:
+    """Why a folder cannot be looked into, in words; empty when it can."""
     if not os.path.isdir(folder.path):
+        return "there is no such folder"
+    return "" if os.access(folder.path, os.R_OK | os.X_OK) else "the folder may not be read (permission denied)"
+
+
+def _files_in(folder: ProjectPath) -> tuple[ProjectPath, ...]:
+    if _trouble(folder):
         return ()
     names = sorted(e.name for e in os.scandir(folder.path) if e.is_file() and not e.name.startswith("."))
     start = "" if folder.shown == "." else f"{folder.shown.rstrip('/')}/"

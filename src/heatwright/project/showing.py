@@ -93,7 +93,9 @@ def _made(
 
 def _ingredients(maker: Maker, request: SpeciesRequest) -> EntryRequest | Refused:
     try:
-        return maker.ingredients(request)
+        model = maker.model(request)
+        maker.evaluate([(request, model)])
+        return maker.ingredients(request, model)
     except Refused as error:
         return error
     except Exception as error:

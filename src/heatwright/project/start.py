@@ -42,7 +42,8 @@ def first_manifest(
     Raises Refused when the folder is none or holds no output of a species.
     """
     if not os.path.isdir(folder):
-        raise Refused([refuse("file-missing", "there is no such folder", where=folder)])
+        found = "this is a file" if os.path.exists(folder) else "there is no such folder"
+        raise Refused([refuse("file-missing", found, where=folder, expected="a folder of outputs")])
     inventory = take_inventory(folder, files_in(folder), seen, (MANIFEST_NAME,))
     plan = planned(folder, inventory)
     if not plan.species:

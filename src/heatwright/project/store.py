@@ -4,7 +4,8 @@ It may be deleted at any time and is never the only copy of anything.  Whatever 
 that is damaged or of another version is set aside under another name, and where nothing can be written (a full disk, a
 folder that must not be written to) things are remembered in memory until the end of the run.  Both are said.
 
-Keys are ``KIND:HASH``; the hash covers everything that decides about the value, so a value never gets stale.
+Keys are ``KIND:HASH``; the hash covers everything that decides about the value, so a value never gets stale.  Each
+value has a checksum, which SQLite itself does not keep: one that was damaged on the disk is as good as missing.
 """
 
 from __future__ import annotations
@@ -12,13 +13,14 @@ from __future__ import annotations
 import os
 import sqlite3
 import time
-from collections.abc import Callable, Iterable, Mapping
+import zlib
+from collections.abc import Callable, Iterable, Mapping, Sequence
 from contextlib import suppress
 from typing import Any, Final, TypeVar
 
 from heatwright.findings import Finding, warn
 
-STORE_VERSION: Final = 1
+STORE_VERSION: Final = 3
 """The layout of the file (``PRAGMA user_version``); a file of another one is set aside."""
 _APPLICATION: Final = 0x48574B31
 _WAIT_S: Final = 60.0
@@ -62,7 +64,8 @@ class Store:
         found = {key: value for key in wanted if (value := self._waiting.get(key, self._memory.get(key))) is not None}
         missing = [key for key in wanted if key not in found]
         for start in range(0, len(missing), _AT_ONCE):
-            found.update(self._rows("key, value", missing[start : start + _AT_ONCE]))
+            rows = self._rows("key, value", missing[start : start + _AT_ONCE])
+            found.update({key: sealed[_SEAL:] for key, sealed in rows if _is_whole(key, sealed)})
         return found
 
     def has(self, keys: Iterable[str]) -> set[str]:
@@ -94,6 +97,19 @@ class Store:
         if not self._read_only:
             self._guarded(lambda c: c.execute("DELETE FROM kept WHERE key = ?", (key,)))
 
+    def drop_all(self, keys: Iterable[str]) -> None:
+        """Forget values that have served, in one transaction."""
+        rows = [(key,) for key in keys]
+        if rows and not self._read_only:
+            self._guarded(lambda c: _change(c, "DELETE FROM kept WHERE key = ?", rows))
+
+    def drop_others(self, kind: str, key: str) -> None:
+        """Forget all values of a kind (``lock``) but one that may still be of use."""
+        if self._read_only:
+            return
+        ends = (f"{kind}:", f"{kind};", key)  # a semicolon comes right after a colon
+        self._guarded(lambda c: c.execute("DELETE FROM kept WHERE key >= ? AND key < ? AND key != ?", ends))
+
     def flush(self) -> None:
         """Write what is waiting, in one transaction."""
         self._since = time.monotonic()
@@ -101,7 +117,8 @@ class Store:
         if not rows:
             return
         self._memory.update(rows)  # so that they are not lost when the file turns out to be unusable
-        done = self._guarded(lambda c: _write(c, rows))
+        sealed = [(key, _sealed(key, value)) for key, value in rows]
+        done = self._guarded(lambda c: _change(c, "INSERT OR REPLACE INTO kept (key, value) VALUES (?, ?)", sealed))
         self._waiting.clear()
         if done is not None:
             for key, _ in rows:
@@ -186,9 +203,8 @@ def _connected(path: str, read_only: bool) -> sqlite3.Connection:
     """An open connection to a sound store; raises _Unfit, sqlite3.Error or OSError."""
     if not read_only:
         os.makedirs(os.path.dirname(path) or ".", exist_ok=True)
-    # a reader leaves journal files behind, unless it takes the file for one that nobody changes
-    mode = "rwc" if not read_only else "ro" if os.path.exists(f"{path}-wal") else "ro&immutable=1"
-    connection = sqlite3.connect(f"file:{_quoted(path)}?mode={mode}", uri=True, timeout=_WAIT_S, isolation_level=None)
+    how = _way_to_read(path) if read_only else "mode=rwc"
+    connection = sqlite3.connect(f"file:{_quoted(path)}?{how}", uri=True, timeout=_WAIT_S, isolation_level=None)
     try:
         _check(connection, read_only)
     except sqlite3.OperationalError:
@@ -203,6 +219,13 @@ def _connected(path: str, read_only: bool) -> sqlite3.Connection:
     return connection
 
 
+def _way_to_read(path: str) -> str:
+    """One that could write clears its journal files away at the end (it is told not to write anything else); where
+    nothing can be written no journal can be opened either, and the file is read as it stands."""
+    may_write = os.access(path, os.W_OK) and os.access(os.path.dirname(path) or ".", os.W_OK)
+    return "mode=rw" if may_write else "mode=ro&immutable=1"
+
+
 def _check(connection: sqlite3.Connection, read_only: bool) -> None:
     """Raises _Unfit or sqlite3.Error for a file that is not a store of this version; a new file becomes one."""
     found = connection.execute("PRAGMA user_version").fetchone()[0]
@@ -210,7 +233,8 @@ def _check(connection: sqlite3.Connection, read_only: bool) -> None:
     if not tables and not found and not read_only:
         _use_wal(connection)
         connection.execute("BEGIN IMMEDIATE")  # another build may be doing the same
-        connection.execute("CREATE TABLE IF NOT EXISTS kept (key TEXT PRIMARY KEY, value BLOB NOT NULL) WITHOUT ROWID")
+        # with rows, so that keys are found in an index of keys alone: among values of megabytes they are slow to find
+        connection.execute("CREATE TABLE IF NOT EXISTS kept (key TEXT PRIMARY KEY, value BLOB NOT NULL)")
         connection.execute(f"PRAGMA application_id = {_APPLICATION}")
         connection.execute(f"PRAGMA user_version = {STORE_VERSION}")
         connection.execute("COMMIT")
@@ -219,9 +243,10 @@ def _check(connection: sqlite3.Connection, read_only: bool) -> None:
     elif found != STORE_VERSION:
         raise _Unfit(f"it is of version {found}, and this heatwright uses version {STORE_VERSION}")
     connection.execute("SELECT count(*) FROM (SELECT key FROM kept LIMIT 1)")
-    connection.execute(
-        "PRAGMA synchronous = NORMAL"
-    )  # with WAL a power failure may cost the last values, never the file
+    if read_only:
+        connection.execute("PRAGMA query_only = ON")
+    # with WAL a power failure may cost the last values, never the file
+    connection.execute("PRAGMA synchronous = NORMAL")
 
 
 def _use_wal(connection: sqlite3.Connection) -> None:
@@ -237,10 +262,22 @@ def _use_wal(connection: sqlite3.Connection) -> None:
             time.sleep(0.02)
 
 
-def _write(connection: sqlite3.Connection, rows: list[tuple[str, bytes]]) -> bool:
+_SEAL: Final = 4
+
+
+def _sealed(key: str, value: bytes) -> bytes:
+    return zlib.crc32(value, zlib.crc32(key.encode())).to_bytes(_SEAL, "little") + value
+
+
+def _is_whole(key: str, sealed: object) -> bool:
+    """Whether this is what was once put under the key."""
+    return isinstance(sealed, bytes) and sealed == _sealed(key, sealed[_SEAL:])
+
+
+def _change(connection: sqlite3.Connection, statement: str, rows: Sequence[tuple[Any, ...]]) -> bool:
     connection.execute("BEGIN IMMEDIATE")
     try:
-        connection.executemany("INSERT OR REPLACE INTO kept (key, value) VALUES (?, ?)", rows)
+        connection.executemany(statement, rows)
         connection.execute("COMMIT")
     except sqlite3.Error:
         with suppress(sqlite3.Error):

@@ -71,6 +71,10 @@ class Faults(list[Finding]):
 
 
 def _inner(block: Block, name: str, faults: Faults) -> Block:
+    if isinstance(block.values.get(name), list):
+        words = f"{name} is a list of tables, [[{name}]]"
+        faults.append(refuse(CODE, words, where=block.where(name), expected=_written(name)))
+        return Block(name, {}, block.lines, (*block.path, name), block.file, block.code)
     try:
         return block.block(name)
     except Refused as error:

@@ -14,8 +14,6 @@ from pathlib import Path
 from threading import Lock
 from typing import TYPE_CHECKING, Any, Final
 
-from heatwright.project.coding import NAME, encoded
-
 if TYPE_CHECKING:
     from heatwright.findings import Finding
     from heatwright.molecule import FloatArray, MassKind, Molecule
@@ -65,6 +63,7 @@ class ReadResult:
 def do_task(task: ReadTask) -> ReadResult:
     """Read what the task names; never raises."""
     from heatwright.findings import Refused
+    from heatwright.project.coding import encoded
 
     try:
         with _ONE_AT_A_TIME:
@@ -81,6 +80,7 @@ def do_tasks(tasks: tuple[ReadTask, ...]) -> tuple[ReadResult, ...]:
 
 
 def _output(task: ReadTask) -> ReadResult:
+    from heatwright.project.coding import NAME, encoded
     from heatwright.reading.outputs import read_output
 
     molecule = read_output(
@@ -98,6 +98,7 @@ def _output(task: ReadTask) -> ReadResult:
 
 
 def _scan(task: ReadTask) -> ReadResult:
+    from heatwright.project.coding import NAME, encoded
     from heatwright.reading.torsion_scans import TorsionScan, read_torsion
 
     before = content_hash(task.path)
@@ -110,6 +111,8 @@ def _scan(task: ReadTask) -> ReadResult:
 
 
 def _unnamed(findings: Iterable[Finding], task: ReadTask) -> tuple[Finding, ...]:
+    from heatwright.project.coding import NAME
+
     return renamed(findings, task.path, NAME)
 
 
@@ -176,6 +179,15 @@ def read_key(task: ReadTask, sha256: str) -> str:
     endings = ".".join(os.path.basename(task.path).lower().split(".")[1:][-2:])
     words = f"{reader_fingerprint()} {sha256} {endings} {options!r}"
     return f"read:{hashlib.sha256(words.encode()).hexdigest()}"
+
+
+_SCAN_POINTS: Final = "xtbscan.log"
+
+
+def points_beside(scan: str) -> str:
+    """The file with the points that is read along with the output of a scan by xTB; empty when there is none."""
+    beside = os.path.join(os.path.dirname(scan), _SCAN_POINTS)
+    return beside if not os.path.isdir(scan) and beside != scan and os.path.isfile(beside) else ""
 
 
 def content_hash(path: str) -> str:

@@ -13,6 +13,7 @@ from heatwright.constants import ATMOSPHERE_PA, BAR_PA
 from heatwright.findings import Finding, Refused, refuse, warn
 from heatwright.polynomial.nasa7 import Nasa7
 from heatwright.project.lockfile import LOCK_NAME, Lock, LockedSpecies, read_lock
+from heatwright.project.manifest import MANIFEST_NAME
 from heatwright.project.release import DAT_NAME, YAML_NAME
 from heatwright.project.texts import blocks_by_species, text_hash
 from heatwright.reading.entries import read_entries
@@ -75,17 +76,32 @@ def read_thermo_set(path: str | os.PathLike[str]) -> ThermoSet:
     shown = os.fspath(path)
     if os.path.isdir(path):
         return _release(shown)
+    if os.path.basename(shown) == MANIFEST_NAME:
+        found, expected = "this is a manifest", "a release, a lock file or a thermo file"
+        action = "Give the folder of its release, which `heatwright build` writes."
+        raise Refused([refuse("no-release", found, where=shown, expected=expected, action=action)])
     if shown.lower().endswith(".toml"):
         return _locked(read_lock(path), shown)
     return thermo_set_of(read_entry_file(shown))
 
 
 def read_entry_file(path: str) -> EntryFile:
-    """The thermo file at *path*; raises Refused with the path in every finding."""
+    """The thermo file at *path*, with an entry that can be read; raises Refused with the path in every finding."""
     try:
-        return read_entries(path)
+        file = read_entries(path)
     except Refused as error:
         raise Refused(f.at(path) for f in error.findings) from error
+    if not file.usable:
+        faults = [f for f in file.all_findings() if f.severity == "refuse"]
+        expected = "a thermo file: fixed 80-column records or Cantera YAML"
+        action = "`heatwright audit` says of each what is wrong."
+        words = "the file holds no entry that can be read"
+        raise Refused([*faults[:_SOME], refuse("no-entries", words, where=path, expected=expected, action=action)])
+    return file
+
+
+_SOME = 3
+"""Faults that are told of a file in which there is nothing else: it is probably no thermo file at all."""
 
 
 def thermo_set_of(file: EntryFile) -> ThermoSet:

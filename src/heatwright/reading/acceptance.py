@@ -4,13 +4,15 @@ from __future__ import annotations
 
 from collections.abc import Collection
 from dataclasses import replace
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
 from heatwright.errors import UsageError
 from heatwright.findings import Finding, refuse, warn
-from heatwright.molecule import Molecule
+
+if TYPE_CHECKING:
+    from heatwright.molecule import Molecule
 
 ACCEPTABLE: Final = {
     "solvent": "solvent",

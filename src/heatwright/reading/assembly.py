@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, field, replace
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -11,10 +11,12 @@ from numpy.typing import NDArray
 from heatwright.elements import element
 from heatwright.findings import Finding, note, refuse
 from heatwright.molecule import FloatArray, IntArray, Kind, Level, MassKind, Molecule, Source
-from heatwright.reading.dialects.base import Facts, Identity
 from heatwright.reading.fundamentals import Fundamentals
-from heatwright.reading.parsing import Parsed
 from heatwright.structure.modes import unit_displacements
+
+if TYPE_CHECKING:
+    from heatwright.reading.dialects.base import Facts, Identity
+    from heatwright.reading.parsing import Parsed
 
 ZERO_CM1 = 0.005
 """Wavenumbers below this are the translations and rotations that a program projected out and prints as 0.00."""

@@ -9,12 +9,14 @@ from __future__ import annotations
 
 import re
 from dataclasses import dataclass
-from typing import Final, Literal
+from typing import TYPE_CHECKING, Final, Literal
 
 from heatwright.findings import Finding, note, refuse, warn
-from heatwright.molecule import Molecule
-from heatwright.reading.jobs import Choice
 from heatwright.reading.text import Text, number, numbers
+
+if TYPE_CHECKING:
+    from heatwright.molecule import Molecule
+    from heatwright.reading.jobs import Choice
 
 Condition = Literal["solvent", "external-field", "constraints", "excited-state"]
 

@@ -1,9 +1,10 @@
 """Importing cclib without what it imports but the parsers never use.
 
-``cclib`` loads ``scipy.spatial`` (half of its import time) for a method that aligns geometries, and ``cclib.bridge``
-with whatever of pandas, ase and other packages happens to be installed.  For the moment of the import a stand-in takes
-the place of such a package in ``sys.modules``; it loads the real one on the first use of any of its names, and it is
-taken away again afterwards.  Nothing of cclib is changed, and whoever needs the packages later gets the real ones.
+``cclib`` loads ``scipy.spatial`` for a method that aligns geometries and ``scipy.constants`` for a few constants (most
+of its import time), and ``cclib.bridge`` with whatever of pandas, ase and other packages happens to be installed.
+For the moment of the import a stand-in takes the place of such a package in ``sys.modules``; it loads the real one on
+the first use of any of its names, and it is taken away again afterwards.  Nothing of cclib is changed, and whoever
+needs the packages later gets the real ones.
 """
 
 from __future__ import annotations
@@ -17,7 +18,7 @@ from pathlib import Path
 from types import ModuleType
 from typing import Any
 
-NOT_NEEDED = ("scipy.spatial", "cclib.bridge", "pandas")
+NOT_NEEDED = ("scipy.spatial", "scipy.constants", "cclib.bridge", "pandas")
 
 
 @contextmanager

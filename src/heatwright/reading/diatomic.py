@@ -3,10 +3,12 @@
 from __future__ import annotations
 
 from dataclasses import replace
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 from heatwright.molecule import DiatomicConstants, FloatArray, IntArray, Stated
-from heatwright.reading.strict import Block
+
+if TYPE_CHECKING:
+    from heatwright.reading.strict import Block
 
 DIATOMIC_KEYS: Final = ("we_cm1", "wexe_cm1", "Be_cm1", "alphae_cm1", "D_cm1", "D0_cm1", "A_cm1", "source")
 """Its keys; the first four and the source are needed."""

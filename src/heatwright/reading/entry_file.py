@@ -4,10 +4,12 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass, field, replace
-from typing import Final, Literal
+from typing import TYPE_CHECKING, Final, Literal
 
 from heatwright.findings import Finding, refusals
-from heatwright.polynomial.nasa7 import Nasa7
+
+if TYPE_CHECKING:
+    from heatwright.polynomial.nasa7 import Nasa7
 
 Ranges = Literal["both", "one", "low", "high"]
 Span = tuple[int, int]

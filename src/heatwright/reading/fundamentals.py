@@ -4,13 +4,15 @@ from __future__ import annotations
 
 import re
 from dataclasses import dataclass, field
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
 from heatwright.constants import CALORIE_J, HARTREE_CM1, HARTREE_KJ_MOL
-from heatwright.molecule import FloatArray
 from heatwright.reading.text import Text, number
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
 
 _SAME_CM1: Final = 0.5
 """How far the harmonic column of a table may be from the harmonic wavenumbers for the table to be believed, 1/cm."""

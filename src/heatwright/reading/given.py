@@ -4,11 +4,14 @@ from __future__ import annotations
 
 import os
 from pathlib import PurePath
+from typing import TYPE_CHECKING
 
 from heatwright.findings import Finding, Refused, note, refuse
 from heatwright.molecule import Molecule, Source
-from heatwright.reading.files import StoredText
 from heatwright.reading.soundness import soundness
+
+if TYPE_CHECKING:
+    from heatwright.reading.files import StoredText
 
 _PACKED = {".gz", ".bz2", ".xz"}
 

@@ -5,16 +5,18 @@ from __future__ import annotations
 import re
 from collections.abc import Iterable, Sequence
 from itertools import pairwise
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
 from heatwright.elements import atomic_number
 from heatwright.findings import Finding, note
-from heatwright.molecule import FloatArray, Molecule
 from heatwright.reading.text import Text, number
 from heatwright.structure.modes import projected_modes, turned_hessian
 from heatwright.structure.superposition import superposed
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, Molecule
 
 AGREEMENT_CM1: Final = 2.0
 """How far the wavenumbers of a Hessian may be from the printed ones, 1/cm."""

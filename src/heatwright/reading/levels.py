@@ -3,9 +3,11 @@
 from __future__ import annotations
 
 import re
-from typing import Final
+from functools import lru_cache
+from typing import TYPE_CHECKING, Final
 
-from heatwright.molecule import Level
+if TYPE_CHECKING:
+    from heatwright.molecule import Level
 
 _METHODS: Final = {
     "hf": "HF", "rhf": "HF", "uhf": "HF", "rohf": "HF", "scf": "HF", "hartree-fock": "HF",
@@ -96,6 +98,12 @@ def level_differences(a: Level, b: Level) -> tuple[str, ...]:
     Frozen cores are compared as policies (an atom freezes fewer orbitals than a molecule), and a dispersion correction
     or a core potential is not missed where it cannot act (a single atom, elements without a core to replace).
     """
+    return _differences(a, b, a.atoms, b.atoms)
+
+
+@lru_cache(maxsize=4096)
+def _differences(a: Level, b: Level, *_: tuple[int, ...]) -> tuple[str, ...]:
+    """Remembered by the atoms too, as levels of two molecules count as equal."""
     found: list[str] = []
     if a.method and b.method and a.method != b.method:
         found.append(f"method {a.method} and {b.method}")
@@ -121,6 +129,11 @@ def level_differences(a: Level, b: Level) -> tuple[str, ...]:
 
 def level_unknowns(a: Level, b: Level) -> tuple[str, ...]:
     """The parts of a level that matter and that only one of the two outputs prints, or neither."""
+    return _unknowns(a, b, a.atoms, b.atoms)
+
+
+@lru_cache(maxsize=4096)
+def _unknowns(a: Level, b: Level, *_: tuple[int, ...]) -> tuple[str, ...]:
     found: list[str] = []
     if not (a.method and b.method):
         found.append("method")

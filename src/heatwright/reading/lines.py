@@ -4,8 +4,10 @@ from __future__ import annotations
 
 import re
 from collections.abc import Iterator, Sequence
+from typing import TYPE_CHECKING
 
-from heatwright.reading.text import Text
+if TYPE_CHECKING:
+    from heatwright.reading.text import Text
 
 _LOOK_BACK = 10
 """Lines behind the present one that cclib's parsers may ask for."""

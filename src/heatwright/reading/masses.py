@@ -3,9 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from typing import TYPE_CHECKING
 
 from heatwright.elements import element
-from heatwright.molecule import FloatArray, MassKind
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, MassKind
 
 
 def mass_kind(masses_u: FloatArray | None, atoms: Sequence[int]) -> MassKind:

@@ -14,14 +14,16 @@ import warnings
 from collections.abc import Collection, Sequence
 from contextlib import redirect_stderr, redirect_stdout
 from dataclasses import dataclass, field
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
 from heatwright.reading.deferral import without_unused_packages
 from heatwright.reading.lines import Lines
 from heatwright.reading.skipping import shown_lines
-from heatwright.reading.text import Text
+
+if TYPE_CHECKING:
+    from heatwright.reading.text import Text
 
 _WANTED = frozenset(
     ["atomnos", "atomcoords", "atommasses", "natom", "charge", "mult", "vibfreqs", "vibdisps", "scfenergies",

@@ -3,11 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from typing import TYPE_CHECKING
 
 from heatwright.findings import refuse
 from heatwright.reading.compositions import count, element_symbol
-from heatwright.reading.record_line import Head
 from heatwright.reading.yaml_nodes import with_caret
+
+if TYPE_CHECKING:
+    from heatwright.reading.record_line import Head
 
 
 def read_elements(head: Head) -> None:

@@ -2,9 +2,13 @@
 
 from __future__ import annotations
 
+from typing import TYPE_CHECKING
+
 from heatwright.findings import Finding, note, refuse, warn
-from heatwright.reading.record import Line, Record
 from heatwright.reading.yaml_nodes import with_caret
+
+if TYPE_CHECKING:
+    from heatwright.reading.record import Line, Record
 
 
 def not_a_first(line: Line) -> Finding:

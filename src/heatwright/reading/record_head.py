@@ -8,12 +8,14 @@ the digit 1.  Source: the column table in the documentation of Mutation++ (docs/
 
 from __future__ import annotations
 
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
-from heatwright.findings import Severity
 from heatwright.reading.record_elements import read_elements
 from heatwright.reading.record_line import SHIFT_IT, Head, together
 from heatwright.reading.record_temperatures import read_temperatures
+
+if TYPE_CHECKING:
+    from heatwright.findings import Severity
 
 NAME_COLUMNS: Final = 18
 LONGEST_OLD_NAME: Final = 16

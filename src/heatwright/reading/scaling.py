@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 from heatwright.constants import HARTREE_CM1
 from heatwright.findings import Finding, refuse, warn
-from heatwright.molecule import Molecule
+
+if TYPE_CHECKING:
+    from heatwright.molecule import Molecule
 
 _APPLIED_TO_LIST: Final = frozenset({"ORCA"})
 """Programs that say of the printed wavenumbers themselves that the factor is already in them."""

@@ -3,14 +3,16 @@
 from __future__ import annotations
 
 from math import inf
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
 from heatwright.elements import composition, formula
 from heatwright.findings import Finding, Refused, note, refuse
-from heatwright.molecule import Molecule
 from heatwright.structure.superposition import Superposition, matched, superposed
+
+if TYPE_CHECKING:
+    from heatwright.molecule import Molecule
 
 SAME_GEOMETRY_A: Final = 0.01
 """Root-mean-square distance after superposition up to which two geometries are one, Å."""

@@ -4,17 +4,18 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from functools import cache
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
 from heatwright.constants import HARTREE_CM1
 from heatwright.elements import element, symbol
 from heatwright.findings import Finding, refuse, warn
-from heatwright.molecule import FloatArray, Molecule, PrintedThermo
-from heatwright.reading.structures import unbonded
 from heatwright.resources import data_rows
 from heatwright.structure.inertia import LINEAR_TOLERANCE_A
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, Molecule, PrintedThermo
 
 NEARLY_LINEAR_A: Final = 0.06
 """A molecule whose atoms are all nearer than this to one line, yet not on it, is said to be nearly linear, Å: a bond
@@ -292,6 +293,8 @@ def _zpe_differs(m: Molecule, item: PrintedThermo) -> Finding | None:
 
 
 def _parts(m: Molecule) -> list[Finding]:
+    from heatwright.reading.structures import unbonded
+
     return list(unbonded(m)) if m.kind != "rigid scan" else []
 
 

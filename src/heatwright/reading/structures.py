@@ -2,14 +2,16 @@
 
 from __future__ import annotations
 
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
 from heatwright.findings import Finding, refuse, warn
-from heatwright.molecule import FloatArray, Molecule
-from heatwright.reading.parsing import Parsed
 from heatwright.structure.bonds import bonds, fingerprint, fragments
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, Molecule
+    from heatwright.reading.parsing import Parsed
 
 SAME_GEOMETRY_A: Final = 5.0e-3
 """Largest difference of any two interatomic distances of one geometry printed twice, Å."""

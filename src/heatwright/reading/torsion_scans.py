@@ -5,16 +5,18 @@ from __future__ import annotations
 import re
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
 from heatwright.constants import CALORIE_J, CM1_KJ_MOL, EV_KJ_MOL, HARTREE_CM1, HARTREE_KJ_MOL
 from heatwright.errors import UsageError
 from heatwright.findings import Finding, Refused, refusals, refuse
-from heatwright.molecule import FloatArray, Molecule
 from heatwright.reading.files import read_text
 from heatwright.reading.outputs import read_output
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, Molecule
 
 Atoms4 = tuple[int, int, int, int]
 

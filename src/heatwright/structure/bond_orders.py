@@ -12,18 +12,20 @@ from collections import Counter
 from collections.abc import Iterator
 from dataclasses import dataclass
 from functools import cached_property, lru_cache
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 from numpy.typing import NDArray
 
 from heatwright.elements import symbol
 from heatwright.findings import Refused, refuse
-from heatwright.molecule import FloatArray, Molecule
 from heatwright.structure.bonds import bonds, covalent_radius_A, fragments
 from heatwright.structure.frame import Frame
 from heatwright.structure.lewis import Solution, Structures, TooWide, lewis_structures
 from heatwright.structure.valence import most_bonds, valence_electrons
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, Molecule
 
 BoolArray = NDArray[np.bool_]
 

@@ -5,14 +5,16 @@ from __future__ import annotations
 from collections.abc import Sequence
 from functools import cache
 from hashlib import blake2b
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 from numpy.typing import NDArray
 
 from heatwright.elements import symbol
-from heatwright.molecule import FloatArray
 from heatwright.resources import data_rows
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
 
 BOND_STRETCH: Final = 1.3
 """Two atoms are bonded when they are nearer than this times the sum of their covalent radii (common practice, no

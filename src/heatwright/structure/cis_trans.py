@@ -4,14 +4,17 @@ from __future__ import annotations
 
 from collections import Counter
 from functools import cache
+from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
 
-from heatwright.molecule import FloatArray, Molecule
 from heatwright.structure.bonds import atom_labels, bonds, covalent_radius_A
 from heatwright.structure.smiles import parse_smiles
 from heatwright.structure.torsions import MULTIPLE_BOND, side
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, Molecule
 
 Side = tuple[tuple[str, str], bool]
 """The labels of the two atoms of a double bond, sorted, and whether their higher-ranking neighbours are cis.

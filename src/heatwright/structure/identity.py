@@ -4,14 +4,17 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from functools import cache
+from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
 
 from heatwright.elements import composition, element
-from heatwright.molecule import Molecule
 from heatwright.structure.bonds import bonds, fingerprint
 from heatwright.structure.smiles import parse_smiles
+
+if TYPE_CHECKING:
+    from heatwright.molecule import Molecule
 
 
 @dataclass(frozen=True, slots=True)

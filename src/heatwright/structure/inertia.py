@@ -6,13 +6,15 @@ Source: G. Herzberg, Infrared and Raman Spectra of Polyatomic Molecules (1945), 
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import Final, Literal
+from typing import TYPE_CHECKING, Final, Literal
 
 import numpy as np
 from numpy.typing import ArrayLike
 
 from heatwright.constants import INERTIA_CM1_U_A2
-from heatwright.molecule import FloatArray
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
 
 RotorKind = Literal[
     "atom", "linear", "spherical top", "prolate symmetric top", "oblate symmetric top", "asymmetric top"

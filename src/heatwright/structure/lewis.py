@@ -13,10 +13,12 @@ from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from heapq import heappop, heappush
 from itertools import product
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
-from heatwright.structure.frame import Frame
 from heatwright.structure.valence import ELECTRONEGATIVITY_UNIT, HIGHEST_ORDER
+
+if TYPE_CHECKING:
+    from heatwright.structure.frame import Frame
 
 DEGENERATE: Final = round(0.6 * ELECTRONEGATIVITY_UNIT)
 """Structures whose charges sit on elements that differ by less than this count alike: O and N do, O and C do not."""
@@ -234,6 +236,7 @@ def lewis_structures(frame: Frame) -> Solution | None:
 
     Raises TooWide when the graph is too large and too branched to be counted.
 
+    >>> from heatwright.structure.frame import Frame
     >>> ozone = lewis_structures(Frame((8, 8, 8), ((0, 1), (1, 2)), 0, 0)).structures()
     >>> ozone.count, [sorted(o) for o in ozone.orders], ozone.charges
     (2, [[1, 2], [1, 2]], (-0.5, 1.0, -0.5))

@@ -4,12 +4,14 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from math import inf
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
-from heatwright.molecule import FloatArray, IntArray
 from heatwright.structure.superposition import matched, superposed
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, IntArray
 
 SAME_CONFORMER_A: Final = 0.1
 """Root-mean-square distance after superposition up to which two optimised geometries are one conformer, Å.

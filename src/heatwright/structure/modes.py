@@ -6,13 +6,15 @@ is removed at first order: displacements along and rotations about the axes, whi
 
 from __future__ import annotations
 
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
 from heatwright.constants import ATOMIC_MASS_KG, BOHR_M, HARTREE_J, LIGHT_SPEED_M_S
-from heatwright.molecule import FloatArray
 from heatwright.structure.inertia import LINEAR_TOLERANCE_A, line_distances
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
 
 SQUARE_CM2: Final = HARTREE_J / (BOHR_M**2 * ATOMIC_MASS_KG) / (2.0 * np.pi * LIGHT_SPEED_M_S * 100.0) ** 2
 """The square of the wavenumber (1/cm²) that a mass-weighted force constant of 1 hartree/bohr²/u stands for."""

@@ -15,12 +15,13 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 from numpy.typing import NDArray
 
-from heatwright.molecule import FloatArray, IntArray
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, IntArray
 
 BoolArray = NDArray[np.bool_]
 

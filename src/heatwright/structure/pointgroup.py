@@ -7,12 +7,13 @@ its reflections tells the groups that share it apart.
 
 from __future__ import annotations
 
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
-from heatwright.molecule import IntArray
-from heatwright.structure.operations import Operations
+if TYPE_CHECKING:
+    from heatwright.molecule import IntArray
+    from heatwright.structure.operations import Operations
 
 _CUBIC: Final = {(12, 3): "T", (24, 4): "O", (60, 5): "I"}
 """Rotational subgroups with several axes of high order, by number of rotations and highest order."""

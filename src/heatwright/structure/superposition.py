@@ -7,10 +7,12 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from itertools import combinations, permutations
+from typing import TYPE_CHECKING
 
 import numpy as np
 
-from heatwright.molecule import FloatArray, IntArray
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, IntArray
 
 _PAIR_A = 0.1
 """Distances that may belong to the same pair of atoms differ by less than this, Å."""

@@ -8,16 +8,18 @@ from __future__ import annotations
 
 import re
 from dataclasses import dataclass
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 from numpy.typing import ArrayLike
 
 from heatwright.findings import Finding, warn
-from heatwright.molecule import FloatArray, IntArray
 from heatwright.structure.inertia import LINEAR_TOLERANCE_A, checked_geometry, line_distances
 from heatwright.structure.operations import Operations, find_operations, linear_operations
 from heatwright.structure.pointgroup import largest_group, next_group, schoenflies
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, IntArray
 
 TOLERANCE_A: Final = 0.05
 """How far (Å) an operation may leave an atom from the place of another and still count, unless the caller says."""

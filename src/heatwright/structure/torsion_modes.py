@@ -6,10 +6,14 @@ with the internal rotation in the place of a reaction path.
 
 from __future__ import annotations
 
+from typing import TYPE_CHECKING
+
 import numpy as np
 
-from heatwright.molecule import FloatArray
 from heatwright.structure.modes import SQUARE_CM2, overall_motion
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray
 
 
 def without_torsions(

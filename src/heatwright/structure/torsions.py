@@ -9,16 +9,18 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from math import lcm
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 from numpy.typing import NDArray
 
 from heatwright.constants import INERTIA_CM1_U_A2
-from heatwright.molecule import FloatArray, IntArray
 from heatwright.structure.bonds import atom_labels, bonds, covalent_radius_A
 from heatwright.structure.modes import overall_motion
 from heatwright.structure.superposition import matched, superposed
+
+if TYPE_CHECKING:
+    from heatwright.molecule import FloatArray, IntArray
 
 Atoms4 = tuple[int, int, int, int]
 

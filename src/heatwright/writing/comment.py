@@ -3,18 +3,22 @@
 from __future__ import annotations
 
 import textwrap
-from typing import Final
+from functools import lru_cache
+from itertools import chain
+from typing import TYPE_CHECKING, Final
 
 from heatwright.constants import ATMOSPHERE_PA, BAR_PA, STANDARD_TEMPERATURE_K
 from heatwright.elements import formula
-from heatwright.entry import Entry
 from heatwright.findings import SEVERITY_WORD, Finding
-from heatwright.formation.formation import Formation
-from heatwright.molecule import Molecule
-from heatwright.partition.model import ThermoModel
-from heatwright.partition.table import ThermoTable
 from heatwright.writing.evidence import evidence
 from heatwright.writing.units import UNITS, Units
+
+if TYPE_CHECKING:
+    from heatwright.entry import Entry
+    from heatwright.formation.formation import Formation
+    from heatwright.molecule import Molecule
+    from heatwright.partition.model import ThermoModel
+    from heatwright.partition.table import ThermoTable
 
 WIDTH: Final = 76
 """Longest comment text, so that a line with its mark stays inside 80 columns."""
@@ -47,7 +51,7 @@ def comment_lines(entry: Entry) -> tuple[str, ...]:
         *(f"{SEVERITY_WORD[f.severity]}: {f.text}" for f in entry.findings if _is_recorded(f)),
         *entry.comments,
     )
-    return tuple(line for text in paragraphs for line in wrapped(text))
+    return tuple(chain.from_iterable(map(_wrapped, paragraphs)))
 
 
 _RECORDED_NOTES: Final = frozenset(
@@ -73,6 +77,12 @@ _RECORDED_NOTES: Final = frozenset(
 def _is_recorded(finding: Finding) -> bool:
     """Whether a reader of the entry must know of it: every warning, every value the user put in, published factors."""
     return finding.severity == "warn" or finding.code in _RECORDED_NOTES
+
+
+@lru_cache(maxsize=4096)
+def _wrapped(text: str) -> tuple[str, ...]:
+    """As :func:`wrapped`; most lines are the same for many species."""
+    return tuple(wrapped(text))
 
 
 def wrapped(text: str) -> list[str]:

@@ -3,13 +3,15 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
-from heatwright.entry import Entry
-from heatwright.findings import Finding
 from heatwright.writing.comment import CAUTION, comment_lines
 from heatwright.writing.document import failure_document, nasa7_document, species_document, whole_document
 from heatwright.writing.render import table_context
+
+if TYPE_CHECKING:
+    from heatwright.entry import Entry
+    from heatwright.findings import Finding
 
 
 def entries_context(entries: Sequence[Entry], failed: Iterable[tuple[str, Iterable[Finding]]] = ()) -> dict[str, Any]:

@@ -9,22 +9,20 @@ import numpy as np
 
 from heatwright.constants import BAR_PA
 from heatwright.elements import formula, symbol
-from heatwright.entry import Entry
 from heatwright.findings import Finding, Refused
-from heatwright.formation.formation import Formation
-from heatwright.molecule import FloatArray, Molecule
-from heatwright.partition.model import ThermoModel
-from heatwright.partition.table import ThermoTable
-from heatwright.polynomial.nasa7 import Nasa7
-from heatwright.polynomial.quality import FitQuality, ResidualCurve
-from heatwright.structure.bond_orders import bonding
-from heatwright.structure.bonds import bonds
 from heatwright.writing.evidence import evidence, evidence_without_entry
 from heatwright.writing.numbers import significant
 
 if TYPE_CHECKING:
+    from heatwright.entry import Entry
+    from heatwright.formation.formation import Formation
+    from heatwright.molecule import FloatArray, Molecule
     from heatwright.partition.internal_rotation import TreatedTorsion
+    from heatwright.partition.model import ThermoModel
+    from heatwright.partition.table import ThermoTable
     from heatwright.partition.uncertainty import TableUncertainty
+    from heatwright.polynomial.nasa7 import Nasa7
+    from heatwright.polynomial.quality import FitQuality, ResidualCurve
 
 JSON_VERSION = 1
 """The version key of every JSON document; it changes when a key changes its meaning or goes."""
@@ -99,6 +97,9 @@ def geometry_document(molecule: Molecule) -> dict[str, Any] | None:
         "elements": [symbol(int(z)) for z in molecule.atomic_numbers],
         "coordinates_A": [[round(float(c), 5) + 0.0 for c in atom] for atom in molecule.coordinates_A],
     }
+    from heatwright.structure.bond_orders import bonding
+    from heatwright.structure.bonds import bonds
+
     try:
         found = bonding(molecule)
     except Refused:

@@ -10,12 +10,14 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from typing import TYPE_CHECKING
 
-from heatwright.entry import Entry
-from heatwright.formation.formation import Formation
-from heatwright.molecule import Molecule
-from heatwright.partition.model import ThermoModel
-from heatwright.polynomial.nasa7 import Nasa7
+if TYPE_CHECKING:
+    from heatwright.entry import Entry
+    from heatwright.formation.formation import Formation
+    from heatwright.molecule import Molecule
+    from heatwright.partition.model import ThermoModel
+    from heatwright.polynomial.nasa7 import Nasa7
 
 
 def evidence(entry: Entry) -> str:

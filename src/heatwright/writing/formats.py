@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Final
@@ -23,7 +24,16 @@ NASA7_NAME_COLUMNS: Final = 18
 """Columns 1-18 of the fixed record hold the species name."""
 
 
+_KEYWORD: Final = re.compile(
+    r"(END|ELEM(ENTS)?|SPEC(IES)?|THER(M|MO)?|REAC(TIONS?)?|TRAN(SPORT)?|SITE|BULK|SURF(ACE)?|MATE(RIAL)?)\b",
+    re.IGNORECASE,
+)
+"""What opens or closes a section where a line begins with it."""
+
+
 def _nasa7_name(name: str) -> tuple[Finding, ...]:
+    if not name:
+        return (refuse("name-unfit", "the species has no name", action="Give one by --name."),)
     if len(name) > NASA7_NAME_COLUMNS:
         return (
             refuse(
@@ -34,15 +44,18 @@ def _nasa7_name(name: str) -> tuple[Finding, ...]:
             ),
         )
     bad = sorted({c for c in name if not ("!" < c <= "~")} | ({"&"} & set(name)))
-    if not name or bad:
+    if bad:
         return (
             refuse(
                 "name-unfit",
-                f"the species name {name!r} is empty or holds {' '.join(map(repr, bad))}",
+                f"the species name {name!r} holds {' '.join(map(repr, bad))}",
                 expected="printable ASCII characters without blanks, '!' and '&'",
                 action="Give another one by --name.",
             ),
         )
+    if _KEYWORD.match(name):
+        words = f"the species name {name!r} reads as the keyword of a section at the start of a record"
+        return (refuse("name-unfit", words, action="Give another one by --name."),)
     return ()
 
 

@@ -2,15 +2,18 @@
 
 from __future__ import annotations
 
+import os
 from collections import Counter
 from collections.abc import Mapping, Sequence
 from pathlib import PurePath
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 from heatwright.elements import formula
 from heatwright.findings import Finding, note, refuse
-from heatwright.molecule import Molecule
 from heatwright.writing.formats import fits_record_name
+
+if TYPE_CHECKING:
+    from heatwright.molecule import Molecule
 
 OUTPUT_ENDINGS: Final = frozenset(
     {".out", ".log", ".gz", ".bz2", ".xz", ".txt", ".fchk", ".fch", ".adfout", ".c4", ".qcout", ".output"}
@@ -25,9 +28,11 @@ def name_of_file(path: str) -> str:
     >>> name_of_file("runs/CH3OH.log.gz")
     'CH3OH'
     """
-    name = PurePath(path).name
-    while PurePath(name).suffix.lower() in OUTPUT_ENDINGS:
-        name = PurePath(name).stem
+    name = os.path.basename(path) or PurePath(path).name
+    stem, ending = os.path.splitext(name)
+    while ending.lower() in OUTPUT_ENDINGS:
+        name = stem
+        stem, ending = os.path.splitext(name)
     return name
 
 

@@ -71,6 +71,24 @@ def coefficients(values: Sequence[float]) -> str:
     return ", ".join([coefficient(value).strip() for value in values])
 
 
+def columns(values: Sequence[float]) -> str:
+    """Coefficients side by side, each as :func:`coefficient` writes it.
+
+    >>> columns([2.5, -1.0e-3])
+    ' 2.50000000E+00-1.00000000E-03'
+    """
+    return "".join([coefficient(value) for value in values])
+
+
+def marked(lines: Sequence[str], mark: str) -> str:
+    """Lines of a comment, each behind its mark.
+
+    >>> marked(["made from", "a.out"], "! ")
+    '! made from\\n! a.out'
+    """
+    return "\n".join([mark + line for line in lines])
+
+
 def element_fields(atoms: Mapping[str, int]) -> str:
     """Columns 25-44 of a fixed record: four fields of symbol (2) and count (3), or blanks when they cannot hold all.
 
@@ -112,6 +130,24 @@ def yaml_text(text: str) -> str:
     if _PLAIN_YAML.fullmatch(text) and text.lower() not in _YAML_WORDS:
         return text
     return json.dumps(text, ensure_ascii=False)
+
+
+def yaml_map(values: Mapping[str, int]) -> str:
+    """Whole numbers by name as a YAML mapping on one line.
+
+    >>> yaml_map({"N": 1, "O": 1})
+    '{"N": 1, O: 1}'
+    """
+    return f"{{{', '.join([f'{yaml_text(name)}: {value}' for name, value in values.items()])}}}"
+
+
+def comma(values: Sequence[float]) -> str:
+    """Numbers with commas between them, each in the shortest form that reads back.
+
+    >>> comma([200.0, 1000.0])
+    '200.0, 1000.0'
+    """
+    return ", ".join(map(str, values))
 
 
 def csv_text(text: str) -> str:

@@ -4,10 +4,13 @@ from __future__ import annotations
 
 import json
 from collections.abc import Mapping
+from typing import TYPE_CHECKING
 
 from heatwright.findings import Refused, refuse
-from heatwright.polynomial.nasa7 import Nasa7
 from heatwright.writing.numbers import coefficient, continuation, element_fields, fixed, left
+
+if TYPE_CHECKING:
+    from heatwright.polynomial.nasa7 import Nasa7
 
 NOTE_COLUMNS = 6
 

@@ -7,19 +7,34 @@ import tempfile
 from collections.abc import Mapping, Sequence
 from functools import cache
 from pathlib import Path
-from typing import Any
+from typing import Any, Final
 
 from jinja2 import FileSystemLoader, StrictUndefined, TemplateError
-from jinja2.sandbox import SandboxedEnvironment
+from jinja2.sandbox import ImmutableSandboxedEnvironment
 
 from heatwright.findings import Refused, refuse
 from heatwright.resources import templates
 from heatwright.writing import numbers
 
 
+class _Environment(ImmutableSandboxedEnvironment):
+    """Sandboxed, and what it sees stays as it is.
+
+    What stands in a plain dict, as nearly all that templates ask for does, is found without detours.
+    """
+
+    def getattr(self, obj: Any, attribute: str) -> Any:
+        if type(obj) is dict and attribute in obj and attribute not in _OF_DICTS:
+            return obj[attribute]
+        return super().getattr(obj, attribute)
+
+
+_OF_DICTS: Final = frozenset(dir(dict))
+
+
 @cache
-def _environment(folder: str) -> SandboxedEnvironment:
-    environment = SandboxedEnvironment(
+def _environment(folder: str) -> ImmutableSandboxedEnvironment:
+    environment = _Environment(
         loader=FileSystemLoader(folder),
         undefined=StrictUndefined,
         keep_trailing_newline=True,
@@ -32,9 +47,13 @@ def _environment(folder: str) -> SandboxedEnvironment:
         fixed=numbers.fixed,
         coefficient=numbers.coefficient,
         coefficients=numbers.coefficients,
+        columns=numbers.columns,
+        marked=numbers.marked,
         element_fields=numbers.element_fields,
         continuation=numbers.continuation,
         yaml=numbers.yaml_text,
+        yaml_map=numbers.yaml_map,
+        comma=numbers.comma,
         json=numbers.json_text,
         csv=numbers.csv_text,
     )
@@ -46,17 +65,25 @@ def render_format(template: str, context: Mapping[str, Any]) -> str:
     return _environment(str(templates())).get_template(template).render(context)
 
 
+_FAULTS: Final = (
+    TemplateError, ArithmeticError, LookupError, TypeError, ValueError, OSError, RecursionError, MemoryError,
+)  # fmt: skip
+"""What a template can come to, other than a refusal of one of our filters."""
+
+
 def render_user_template(path: str, context: Mapping[str, Any]) -> str:
     """The text of the user's own template.
 
     Raises Refused with file and line when it cannot be read, is not a template, or asks for an unknown variable.
     """
     file = Path(path)
+    if file.is_dir():
+        raise Refused([refuse("template-failed", "this is a folder", where=path, expected="the file of a template")])
     try:
         return _environment(str(file.parent)).get_template(file.name).render(context)
     except Refused:
         raise
-    except (TemplateError, ArithmeticError, LookupError, TypeError, ValueError, UnicodeDecodeError) as error:
+    except _FAULTS as error:
         line = getattr(error, "lineno", None) or _line_in_template(error, file)
         raise Refused(
             [

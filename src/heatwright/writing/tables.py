@@ -3,13 +3,16 @@
 from __future__ import annotations
 
 from collections.abc import Iterable
+from typing import TYPE_CHECKING
 
 from heatwright.elements import formula
-from heatwright.partition.model import ThermoModel
-from heatwright.partition.table import ThermoTable
-from heatwright.partition.uncertainty import TableUncertainty
 from heatwright.writing.comment import levels_text, pressure_text
 from heatwright.writing.units import UNITS, Units
+
+if TYPE_CHECKING:
+    from heatwright.partition.model import ThermoModel
+    from heatwright.partition.table import ThermoTable
+    from heatwright.partition.uncertainty import TableUncertainty
 
 
 def text_table(name: str, model: ThermoModel, table: ThermoTable, units: Units = UNITS["kJ"]) -> str:

@@ -5,16 +5,18 @@ from __future__ import annotations
 from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
 from itertools import pairwise
-from typing import ClassVar, Final
+from typing import TYPE_CHECKING, ClassVar, Final
 
 import numpy as np
 
 from heatwright.constants import CCLIB_EV_PER_HARTREE
 from heatwright.findings import Finding, refuse
 from heatwright.molecule import FloatArray, IntArray, Kind, Level, MassKind, PrintedThermo
-from heatwright.reading.fundamentals import Fundamentals
-from heatwright.reading.parsing import Parsed
-from heatwright.reading.text import Text
+
+if TYPE_CHECKING:
+    from heatwright.reading.fundamentals import Fundamentals
+    from heatwright.reading.parsing import Parsed
+    from heatwright.reading.text import Text
 
 METHOD_RANK: Final[dict[str, int]] = {
     kind: rank

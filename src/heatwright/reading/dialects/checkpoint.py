@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Iterable, Iterator
-from typing import ClassVar, Final
+from typing import TYPE_CHECKING, ClassVar, Final
 
 import numpy as np
 
@@ -14,8 +14,10 @@ from heatwright.reading.dialects.base import plain_energies
 from heatwright.reading.dialects.plain import Plain
 from heatwright.reading.hessians import checkpoint_array, from_triangle
 from heatwright.reading.levels import is_method, normalise_basis, normalise_method
-from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text, number
+
+if TYPE_CHECKING:
+    from heatwright.reading.parsing import Parsed
 
 _CORRELATED: Final = {
     **{name: name for name in ("MP2", "MP3", "MP4", "CCSD", "CCSD(T)", "QCISD", "QCISD(T)", "BD", "BD(T)", "CISD")},

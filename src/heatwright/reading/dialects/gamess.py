@@ -6,7 +6,7 @@ import re
 from collections.abc import Iterable, Iterator
 from dataclasses import replace
 from itertools import islice
-from typing import ClassVar
+from typing import TYPE_CHECKING, ClassVar
 
 import numpy as np
 
@@ -16,8 +16,10 @@ from heatwright.molecule import FloatArray, Kind, Level, PrintedThermo
 from heatwright.reading.dialects.base import Facts, Failure, as_integer
 from heatwright.reading.dialects.plain import Plain, last_column
 from heatwright.reading.levels import normalise_method
-from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text, numbers
+
+if TYPE_CHECKING:
+    from heatwright.reading.parsing import Parsed
 
 _RELATIVE = ("AM1", "PM3", "MNDO", "RM1")
 

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import re
 from itertools import pairwise
-from typing import ClassVar, Final
+from typing import TYPE_CHECKING, ClassVar, Final
 
 import numpy as np
 
@@ -27,8 +27,10 @@ from heatwright.reading.dialects.gaussian_archive import contradictions
 from heatwright.reading.fundamentals import gaussian_fundamentals
 from heatwright.reading.hessians import gaussian_archive
 from heatwright.reading.levels import normalise_basis, normalise_method
-from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text, number, numbers
+
+if TYPE_CHECKING:
+    from heatwright.reading.parsing import Parsed
 
 _STEP: Final = "Proceeding to internal job step number"
 _POST: Final = (

@@ -4,12 +4,14 @@ from __future__ import annotations
 
 import re
 from collections.abc import Iterator, Mapping
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 from heatwright.findings import Finding, refuse, warn
 from heatwright.reading.dialects.base import METHOD_RANK
 from heatwright.reading.hessians import archive_parts
-from heatwright.reading.text import Text
+
+if TYPE_CHECKING:
+    from heatwright.reading.text import Text
 
 _KINDS: Final = {
     "HF": "SCF",

@@ -5,7 +5,7 @@ from __future__ import annotations
 import re
 from collections.abc import Sequence
 from dataclasses import replace
-from typing import ClassVar, Final
+from typing import TYPE_CHECKING, ClassVar, Final
 
 import numpy as np
 
@@ -25,8 +25,10 @@ from heatwright.reading.dialects.base import (
 )
 from heatwright.reading.dialects.nwchem_level import level_of, missed_correlation
 from heatwright.reading.hessians import nwchem_hessian
-from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text, number, numbers
+
+if TYPE_CHECKING:
+    from heatwright.reading.parsing import Parsed
 
 _TASK = "NWChem Input Module"
 _ATOM_INFORMATION: Final = "---- Atom information ----"

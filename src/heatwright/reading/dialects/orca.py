@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from typing import ClassVar, Final
+from typing import TYPE_CHECKING, ClassVar, Final
 
 from heatwright.constants import ATMOSPHERE_PA, HARTREE_KJ_MOL
 from heatwright.elements import atomic_number
@@ -21,8 +21,10 @@ from heatwright.reading.dialects.base import (
 )
 from heatwright.reading.levels import is_method, normalise_basis, normalise_method
 from heatwright.reading.masses import mass_kind
-from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text, number, numbers
+
+if TYPE_CHECKING:
+    from heatwright.reading.parsing import Parsed
 
 _FINAL: Final = "FINAL SINGLE POINT ENERGY"
 _EXCITED: Final = ("ORCA TD-DFT", "ORCA CIS", "TD-DFT EXCITED STATES", "EOM-CCSD", "ROCIS", "STEOM")

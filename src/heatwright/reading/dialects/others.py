@@ -6,7 +6,7 @@ import re
 from collections.abc import Iterable
 from dataclasses import replace
 from itertools import islice
-from typing import ClassVar, Final
+from typing import TYPE_CHECKING, ClassVar, Final
 
 import numpy as np
 
@@ -27,8 +27,10 @@ from heatwright.reading.dialects.plain import Plain, last_column, wrapped_number
 from heatwright.reading.dialects.semiempirical import MOPAC, XTB
 from heatwright.reading.hessians import molpro_hessian
 from heatwright.reading.levels import normalise_basis, normalise_method
-from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text, number, numbers
+
+if TYPE_CHECKING:
+    from heatwright.reading.parsing import Parsed
 
 _KCAL: Final = CALORIE_J / HARTREE_KJ_MOL
 

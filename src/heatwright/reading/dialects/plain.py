@@ -4,16 +4,18 @@ from __future__ import annotations
 
 import re
 from collections.abc import Iterable
-from typing import ClassVar
+from typing import TYPE_CHECKING, ClassVar
 
 import numpy as np
 
-from heatwright.findings import Finding
-from heatwright.molecule import FloatArray, IntArray, Kind, Level, PrintedThermo
 from heatwright.reading.dialects.base import Dialect, Facts, Identity, plain_energies
 from heatwright.reading.masses import mass_kind
-from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text, number
+
+if TYPE_CHECKING:
+    from heatwright.findings import Finding
+    from heatwright.molecule import FloatArray, IntArray, Kind, Level, PrintedThermo
+    from heatwright.reading.parsing import Parsed
 
 
 class Plain(Dialect):

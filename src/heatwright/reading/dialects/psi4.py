@@ -5,7 +5,7 @@ from __future__ import annotations
 import re
 from bisect import bisect_left, bisect_right
 from collections.abc import Iterator
-from typing import ClassVar, Final
+from typing import TYPE_CHECKING, ClassVar, Final
 
 import numpy as np
 
@@ -13,8 +13,10 @@ from heatwright.elements import atomic_number
 from heatwright.molecule import FloatArray, Level, PrintedThermo
 from heatwright.reading.dialects.base import Dialect, Energy, Facts, Failure, Identity, chosen_point, cut
 from heatwright.reading.levels import normalise_basis, normalise_method
-from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text, number, numbers
+
+if TYPE_CHECKING:
+    from heatwright.reading.parsing import Parsed
 
 _ANALYSIS: Final = "==> Harmonic Vibrational Analysis <=="
 _TABLE: Final = "Geometry (in Angstrom), charge = "

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from typing import ClassVar, Final
+from typing import TYPE_CHECKING, ClassVar, Final
 
 import numpy as np
 
@@ -23,8 +23,10 @@ from heatwright.reading.dialects.base import (
 from heatwright.reading.fundamentals import qchem_fundamentals
 from heatwright.reading.hessians import qchem_hessian
 from heatwright.reading.levels import normalise_basis, normalise_method
-from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text, numbers
+
+if TYPE_CHECKING:
+    from heatwright.reading.parsing import Parsed
 
 _KCAL_HARTREE: Final = CALORIE_J / HARTREE_KJ_MOL
 _ENERGIES: Final = (

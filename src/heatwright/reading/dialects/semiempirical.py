@@ -5,7 +5,7 @@ from __future__ import annotations
 import re
 from collections.abc import Iterable, Iterator
 from itertools import islice
-from typing import ClassVar, Final
+from typing import TYPE_CHECKING, ClassVar, Final
 
 import numpy as np
 
@@ -15,8 +15,10 @@ from heatwright.findings import Finding, refuse, warn
 from heatwright.molecule import FloatArray, IntArray, Kind, Level, PrintedThermo
 from heatwright.reading.dialects.base import Failure, as_integer
 from heatwright.reading.dialects.plain import Plain
-from heatwright.reading.parsing import Parsed
 from heatwright.reading.text import Text, number, numbers
+
+if TYPE_CHECKING:
+    from heatwright.reading.parsing import Parsed
 
 _KCAL: Final = CALORIE_J / HARTREE_KJ_MOL
 
