@@ -52,13 +52,14 @@ class Distributed(Engine):
 
 def _client(address: str) -> Any:
     try:
-        from distributed import Client
+        import distributed
     except ImportError:
         action = "Install it: pip install 'heatwright[cluster]'."
         raise unfit(address, "dask.distributed is not installed here", action) from None
     named = {"scheduler_file": address} if os.path.isfile(address) else {"address": address}
+    connect: Any = distributed.Client  # which says of some of its types only
     try:
-        return Client(timeout=_ANSWER_S, **named)
+        return connect(timeout=_ANSWER_S, **named)
     except Exception as error:
         words = f"the scheduler does not answer ({type(error).__name__}: {error})"
         raise unfit(address, words, "Give the address that it printed, or the file of --scheduler-file.") from error
