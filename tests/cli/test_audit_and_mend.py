@@ -210,3 +210,13 @@ def test_neither_command_loads_cclib_or_scipy() -> None:
         "sys.exit(any(m in sys.modules for m in ('cclib', 'scipy', 'jinja2')))"
     )
     assert subprocess.run([sys.executable, "-c", code], capture_output=True, check=False).returncode == 0
+
+
+@pytest.mark.parametrize("command", [["audit"], ["mend", "-o", "x.dat"]])
+def test_an_output_is_no_thermo_file(run, samples: Path, tmp_path: Path, monkeypatch, command: list[str]) -> None:
+    monkeypatch.chdir(tmp_path)
+    done = run(*command, str(samples / "CH3OH.out"))
+    assert done.code == 3
+    (line,) = [line for line in done.err.splitlines() if line.startswith("error")]
+    assert "the file is an output of NWChem; expected a thermo file. `heatwright entry` makes" in line
+    assert not (tmp_path / "x.dat").exists()

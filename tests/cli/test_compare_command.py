@@ -215,14 +215,19 @@ def test_a_lock_file_of_the_future(run, tmp_path: Path) -> None:
     assert "[lock-newer]" in done.err
 
 
-def test_what_is_no_thermo_file_is_said_to_be_none(run, samples: Path) -> None:
+def test_what_is_no_thermo_file_is_said_to_be_none(run, samples: Path, tmp_path: Path) -> None:
     output, manifest = samples / "H2O.out", samples / "heatwright.toml"
-    for old, new in ((output, GRI), (GRI, output)):
-        done = run("compare", old, new)
-        assert done.code == 3
-        assert done.out == ""
-        assert f"error: {output}: the file holds no entry that can be read; expected a thermo file" in done.err
-        assert done.err.count("error: ") == 4  # three of the faults, as it may be one after all
+    numbers = tmp_path / "numbers.txt"
+    numbers.write_text("THERMO ALL\n" + f"{'X 1.0 2.0':79}1\n" * 5, encoding="utf-8")
+    for file, words, errors in (
+        (output, "the file is an output of NWChem", 1),
+        (numbers, "the file holds no entry that can be read", 4),  # three of the faults, as it may be one after all
+    ):
+        for old, new in ((file, GRI), (GRI, file)):
+            done = run("compare", old, new)
+            assert (done.code, done.out) == (3, "")
+            assert f"error: {file}: {words}; expected a thermo file" in done.err
+            assert done.err.count("error: ") == errors
     assert run("splice", output, GRI, "-n").code == 3
     done = run("compare", manifest, GRI)
     assert (done.code, done.out) == (3, "")

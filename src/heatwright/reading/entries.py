@@ -55,6 +55,8 @@ def parse_entries(data: bytes, path: str = "", *, format: Literal["nasa7", "yaml
         raise Refused([refuse("no-entries", "the file is written in UTF-16", expected="plain text", action=action)])
     kind = format or _format_of(data, path)
     file = _yaml_file(data, path) if kind == "yaml" else _record_file(data, path)
+    if not file.usable:
+        _refuse_output(data)
     if not file.entries and not file.passed_over:
         raise Refused(
             [
@@ -68,6 +70,17 @@ def parse_entries(data: bytes, path: str = "", *, format: Literal["nasa7", "yaml
             ]
         )
     return file
+
+
+def _refuse_output(data: bytes) -> None:
+    """Raises Refused for a quantum-chemistry output, many lines of which could be those of broken records."""
+    from heatwright.reading.detection import HEAD, detect
+
+    program = detect(data[:HEAD].decode("latin-1")).program
+    if program is not None:
+        words = f"the file is an output of {program.name}"
+        action = "`heatwright entry` makes a thermo entry of an output."
+        raise Refused([refuse("no-entries", words, expected="a thermo file", action=action)])
 
 
 def replace_entries(file: EntryFile, texts: Mapping[str | Span, str]) -> bytes:
