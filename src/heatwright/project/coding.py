@@ -143,9 +143,8 @@ def _value(plain: Any, body: bytes, start: int) -> Any:
         return tuple([item if type(item) in _SCALARS else _value(item, body, start) for item in plain])
     if type(plain) in _SCALARS:
         return plain
-    for mark, inside in plain.items():  # there is one
-        return _MARKED[mark](inside, body, start)
-    raise Unreadable("an object without a mark")
+    ((mark, inside),) = plain.items()
+    return _MARKED[mark](inside, body, start)
 
 
 def _object(inside: list[Any], body: bytes, start: int) -> Any:
